@@ -1,0 +1,1 @@
+//! Bytes to lines and columns and back.

@@ -1,0 +1,1 @@
+//! Expansion under a budget.

@@ -1,0 +1,1 @@
+//! Exact arithmetic for index notation.

@@ -1,0 +1,106 @@
+//! What is reported: plain data with byte spans into the text of one document.
+
+use indexwise_grammar::span::Span;
+
+/// How sure and how grave.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash)]
+pub enum Severity {
+    /// Certainly wrong as index notation.
+    Error,
+    /// Almost surely not meant, or wrong under the conventions in force.
+    Warning,
+    /// Worth a look.
+    Hint,
+}
+
+impl Severity {
+    /// The word used in every report.
+    pub const fn word(self) -> &'static str {
+        match self {
+            Self::Error => "error",
+            Self::Warning => "warning",
+            Self::Hint => "hint",
+        }
+    }
+}
+
+/// One thing reported.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Finding {
+    /// The name of the rule, as in the registry.
+    pub rule: &'static str,
+    /// How grave.
+    pub severity: Severity,
+    /// The exact place to blame.
+    pub span: Span,
+    /// One sentence that names the letters and the levels.
+    pub message: String,
+    /// Partners and disagreeing terms.
+    pub related: Vec<Related>,
+    /// Edits that the checker has tried: each removes the finding and adds none; best first.
+    pub fixes: Vec<Fix>,
+    /// The ledger of the statement, for the ledger view; nothing for findings that are not about balance.
+    pub ledger: Option<Ledger>,
+}
+
+/// A further place that a finding speaks of.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Related {
+    /// The place.
+    pub span: Span,
+    /// What is there.
+    pub message: String,
+}
+
+/// A mend.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Fix {
+    /// What it does, as an imperative sentence without a full stop.
+    pub title: String,
+    /// Non-overlapping edits of the document, in order.
+    pub edits: Vec<Edit>,
+    /// Whether it may be applied in bulk; if not, why it is left to a person.
+    pub bulk: Result<(), &'static str>,
+}
+
+/// Replaces the text of a span.
+#[derive(Clone, Debug, PartialEq, Eq, PartialOrd, Ord)]
+pub struct Edit {
+    /// What is replaced.
+    pub span: Span,
+    /// By what.
+    pub text: String,
+}
+
+/// The ledger of a statement as people see it: one row a side, or a term of a side.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Ledger {
+    /// The statement in the document.
+    pub statement: Span,
+    /// Its rows.
+    pub rows: Vec<LedgerRow>,
+}
+
+/// One side or term: which indices are free, which are summed.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct LedgerRow {
+    /// "left side", "right side", "side 3", "term 2 of the right side".
+    pub title: String,
+    /// Where it stands.
+    pub span: Span,
+    /// Free indices in order of first appearance.
+    pub free: Vec<LedgerIndex>,
+    /// Letters summed over.
+    pub summed: Vec<LedgerIndex>,
+}
+
+/// A letter of a ledger row.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct LedgerIndex {
+    /// The letter as printed for people: `k`, `μ`, `μ'`.
+    pub letter: String,
+    /// "up", "down" or "" where the level does not matter.
+    pub level: &'static str,
+    /// Whether the finding is about this entry.
+    pub odd: bool,
+}
