@@ -4,9 +4,14 @@
 //! notes what else the reader needs (macro definitions, parts, directives, headings). What stands in a
 //! comment, in a listing or in a skipped branch is not a region.
 
+mod body;
+mod directives;
 mod latex;
 mod markdown;
 mod note;
+mod references;
+mod vocabulary;
+mod wrappers;
 
 use crate::macros::{Definition, Macros};
 use crate::span::Span;
@@ -44,6 +49,8 @@ pub struct Region {
     pub setting: Setting,
     /// The heading it stands under, as an index into `Scan::headings`, if any.
     pub heading: Option<u32>,
+    /// Parts of the body that are no mathematics, in order: definitions in it, and the marks of quoted lines.
+    pub holes: Vec<Span>,
 }
 
 /// A file that this one asks for.
@@ -109,5 +116,67 @@ pub fn scan(text: &str, host: Host, macros: &Macros) -> Scan {
         Host::Latex => latex::scan(text, macros),
         Host::Markdown => markdown::scan(text, macros),
         Host::Note => note::scan(text),
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    #![allow(clippy::unwrap_used, clippy::expect_used, clippy::panic, clippy::indexing_slicing)]
+    use super::*;
+
+    /// Pieces that open, close and confuse, for all hosts at once.
+    const PIECES: &str = "$ $$ \\( \\) \\[ \\] \\begin{align} \\end{align} \\text{ { } % é 𝔸 \\def\\be{\\[} \\be | \
+        \\fi \\newcommand{\\q}[1]{$#1$} \\q{ \\iffalse \\else \\url{ ` ``` math > - # <!-- --> <code> </code> ($ \
+        \\verb| \\begin{tikzpicture} \\end{tikzpicture} \\item indexwise: ; \\ensuremath{ \\begin{document} \\section{ \
+        \\input{ \\let \\a = conventions \\begin{verbatim} \\end{verbatim} \\begin{e} \\end{e} \\ [ ] |-|-| u_i \
+        \\usepackage{ \\newenvironment{e}{\\begin{align}}{\\end{align}} 5 indexwise \\documentclass{a}";
+
+    const GAPS: &[&str] = &["", "", " ", "\n", "\n\n", "\r\n", "\r", "    ", "\t", "\n  ", "% "];
+
+    /// Spans stand in the text on character boundaries and in order.
+    #[track_caller]
+    fn in_order(text: &str, spans: impl Iterator<Item = Span>) {
+        let mut last = 0;
+        for span in spans {
+            assert!(span.start >= last && span.start <= span.end, "{text:?}");
+            assert!(text.get(span.range()).is_some(), "{text:?}");
+            last = span.start;
+        }
+    }
+
+    #[test]
+    fn any_soup_of_pieces_keeps_the_laws_of_a_scan() {
+        let pieces: Vec<&str> = PIECES.split_ascii_whitespace().collect();
+        let mut seed = 1_u64;
+        let mut next = |bound: usize| {
+            seed = seed.wrapping_mul(6_364_136_223_846_793_005).wrapping_add(1_442_695_040_888_963_407);
+            (seed >> 33) as usize % bound
+        };
+        for round in 0..2000 {
+            let mut text = String::new();
+            for _ in 0..=round % 60 {
+                text.push_str(pieces[next(pieces.len())]);
+                text.push_str(GAPS[next(GAPS.len())]);
+            }
+            for host in [Host::Latex, Host::Markdown, Host::Note] {
+                let scan = scan(&text, host, &Macros::default());
+                in_order(&text, scan.definitions.iter().map(|found| found.span));
+                in_order(&text, scan.references.iter().map(|found| found.span));
+                in_order(&text, scan.headings.iter().map(|found| found.span));
+                in_order(&text, scan.regions.iter().flat_map(|found| [found.span, found.body]));
+                for pair in scan.regions.windows(2) {
+                    assert!(pair[0].span.end <= pair[1].span.start, "{host:?} {text:?}");
+                }
+                for region in &scan.regions {
+                    assert!(region.span.holds(region.body), "{host:?} {text:?}");
+                    assert!(region.holes.iter().all(|hole| region.body.holds(*hole)), "{host:?} {text:?}");
+                    in_order(&text, region.holes.iter().copied());
+                }
+                in_order(&text, scan.directives.iter().map(|found| found.span));
+                for directive in &scan.directives {
+                    assert!(directive.sentences.iter().all(|(said, span)| span.of(&text) == said), "{text:?}");
+                }
+            }
+        }
     }
 }

@@ -3,6 +3,7 @@
 //! A definition keeps its body as text; expansion (see `expansion.rs`) runs under a budget and gives every
 //! token the span of the place in the document that produced it.
 
+pub(crate) mod cursor;
 mod definition;
 pub(crate) mod expansion;
 
@@ -11,7 +12,8 @@ use std::sync::Arc;
 
 use crate::span::Span;
 
-pub use definition::read_definition;
+pub(crate) use definition::{defines, defines_environment};
+pub use definition::{read_definition, read_environment};
 
 /// One parameter of a macro, in the order of its call.
 #[derive(Clone, Debug, PartialEq, Eq)]
@@ -60,14 +62,17 @@ impl Macros {
     /// Adds a meaning that holds from byte `from` of the file on (0: from its start).
     pub fn define(&mut self, meaning: Arc<Macro>, from: u32, provide: bool) {
         let meanings = self.meanings.entry(meaning.name.clone()).or_default();
-        if !(provide && !meanings.is_empty()) {
+        if !provide || meanings.is_empty() {
             meanings.push((from, meaning));
         }
     }
 
     /// The meaning of a name (without backslash) at a byte of the file.
     pub fn at(&self, name: &str, place: u32) -> Option<&Arc<Macro>> {
-        self.meanings.get(name)?.iter().rev().find(|(from, _)| *from <= place).map(|(_, meaning)| meaning)
+        // Invariant: meanings stand in the order of their places.
+        let all = self.meanings.get(name)?;
+        let known = all.partition_point(|(from, _)| *from <= place);
+        known.checked_sub(1).and_then(|at| all.get(at)).map(|(_, meaning)| meaning)
     }
 
     /// Whether no macro is defined.
@@ -79,5 +84,48 @@ impl Macros {
     pub fn inherited(&self) -> Self {
         let last = |all: &Vec<(u32, Arc<Macro>)>| all.last().map(|(_, m)| vec![(0, m.clone())]).unwrap_or_default();
         Self { meanings: self.meanings.iter().map(|(name, all)| (name.clone(), last(all))).collect() }
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    #![allow(clippy::unwrap_used, clippy::expect_used, clippy::panic, clippy::indexing_slicing)]
+    use super::*;
+
+    fn strain(body: &str) -> Arc<Macro> {
+        let (name, body) = ("strain".to_owned(), body.to_owned());
+        Arc::new(Macro { name, parameters: Vec::new(), body, operator: false })
+    }
+
+    #[track_caller]
+    fn means(macros: &Macros, place: u32, body: Option<&str>) {
+        assert_eq!(macros.at("strain", place).map(|meaning| meaning.body.as_str()), body);
+    }
+
+    #[test]
+    fn a_meaning_holds_from_its_place_on() {
+        let mut macros = Macros::default();
+        macros.define(strain("e"), 10, false);
+        macros.define(strain("u"), 20, false);
+        means(&macros, 9, None);
+        means(&macros, 10, Some("e"));
+        means(&macros, 25, Some("u"));
+    }
+
+    #[test]
+    fn a_provided_meaning_yields_to_one_that_is_there() {
+        let mut macros = Macros::default();
+        macros.define(strain("e"), 0, true);
+        macros.define(strain("u"), 5, true);
+        means(&macros, 9, Some("e"));
+    }
+
+    #[test]
+    fn another_file_inherits_the_last_meanings() {
+        let mut macros = Macros::default();
+        macros.define(strain("e"), 10, false);
+        macros.define(strain("u"), 20, false);
+        means(&macros.inherited(), 0, Some("u"));
+        assert!(Macros::default().inherited().is_empty());
     }
 }

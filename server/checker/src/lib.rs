@@ -1,8 +1,16 @@
 //! Meaning and judgement: what every index is, and what is wrong with it.
 //!
-//! One pipeline (`paper::check`) serves the command line, the language server and the tests. Nothing here
-//! reads a file, prints or knows a protocol.
+//! One pipeline (`paper::check`) serves the command line, the language server and the tests. Its stages: a
+//! statement becomes a `sketch`, the paper's habits are counted (`conventions`), the cheapest `reading` that
+//! balances is taken, the `ledger` holds the outcome and the `rules` report what is left. Nothing here reads a
+//! file, prints or knows a protocol.
 
+pub mod balance;
+pub mod changes;
+pub mod conventions;
 pub mod finding;
+pub mod ledger;
 pub mod paper;
+pub mod reading;
 pub mod rules;
+pub mod sketch;

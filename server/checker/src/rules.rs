@@ -1,8 +1,36 @@
-//! The registry of rules: one slice, from which everything else derives.
+//! The registry of rules: one slice, from which `explain`, the reports and the documentation derive.
+//!
+//! A rule is two files with one stem, `<rule>.rs` and `<rule>.md`. Rules about the balance of a statement run in
+//! the order of the slice, which is their precedence: a later one is asked only about what remains when the
+//! earlier finding is mended, so that one slip is one finding.
 
-use crate::finding::Severity;
+mod convention_unreadable;
+mod dummy_captured;
+mod dummy_levels;
+mod faults;
+mod free_index_levels;
+mod free_index_mismatch;
+mod idle_allow;
+mod index_also_quantity;
+mod index_thrice;
+mod mending;
+mod missing_part;
+mod script_swallows_factor;
+mod slot_order_unclear;
+mod unread;
+mod unsummed_repeat;
 
-/// What there is to know of a rule without running it.
+use crate::balance::Choice;
+use crate::finding::{Finding, Severity};
+use crate::ledger::Judged;
+use crate::sketch::Sketch;
+
+pub(crate) use convention_unreadable::convention_unreadable;
+pub(crate) use idle_allow::idle_allow;
+pub(crate) use missing_part::missing_part;
+pub(crate) use unread::unread;
+
+/// What there is to know of a rule.
 #[derive(Clone, Copy, Debug)]
 pub struct Rule {
     /// Kebab-case, never reused.
@@ -15,12 +43,79 @@ pub struct Rule {
     pub page: &'static str,
     /// Whether it is reported unless switched off.
     pub on: bool,
+    /// How it is found.
+    pub(crate) check: Check,
+}
+
+/// How a rule is found.
+#[derive(Clone, Copy, Debug)]
+pub(crate) enum Check {
+    /// In the balance of a statement, in the order of precedence.
+    Balance(fn(&Judged<'_>) -> Option<Report>),
+    /// In a statement, whatever else is found there.
+    Beside(fn(&Judged<'_>) -> Vec<Finding>),
+    /// By the pipeline, in a whole document.
+    Document,
+}
+
+/// A finding about balance, with the statement as the best fix would leave it.
+#[derive(Debug)]
+pub(crate) struct Report {
+    /// What is reported.
+    pub finding: Finding,
+    /// The statement after the best change, if one was found.
+    pub mended: Option<(Sketch, Choice)>,
 }
 
 /// All rules, in the order of precedence.
-pub const RULES: &[Rule] = &[];
+pub const RULES: &[Rule] = &[
+    unread::RULE,
+    script_swallows_factor::RULE,
+    index_thrice::RULE,
+    unsummed_repeat::RULE,
+    free_index_mismatch::RULE,
+    dummy_captured::RULE,
+    dummy_levels::RULE,
+    free_index_levels::RULE,
+    slot_order_unclear::RULE,
+    index_also_quantity::RULE,
+    missing_part::RULE,
+    convention_unreadable::RULE,
+    idle_allow::RULE,
+];
+
+/// Findings about balance in one statement beyond which no more are looked for.
+const FINDINGS_PER_STATEMENT: usize = 6;
 
 /// The rule of a name.
 pub fn find(name: &str) -> Option<&'static Rule> {
     RULES.iter().find(|rule| rule.name == name)
+}
+
+/// Everything that is wrong with a statement.
+pub(crate) fn check_statement(judged: &Judged<'_>) -> Vec<Finding> {
+    let mut out = balance_findings(judged.clone());
+    for rule in RULES {
+        if let Check::Beside(check) = rule.check {
+            out.extend(check(judged));
+        }
+    }
+    out
+}
+
+fn balance_findings(mut judged: Judged<'_>) -> Vec<Finding> {
+    let mut out = Vec::new();
+    while out.len() < FINDINGS_PER_STATEMENT {
+        let report = RULES.iter().find_map(|rule| match rule.check {
+            Check::Balance(check) => check(&judged),
+            _ => None,
+        });
+        let Some(report) = report else { break };
+        out.push(report.finding);
+        let Some((sketch, choice)) = report.mended else { break };
+        judged.reading.odd = faults::odd_letters(&sketch, &choice);
+        judged.sketch = sketch;
+        judged.reading.choice = choice;
+    }
+    out
 }

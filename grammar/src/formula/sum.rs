@@ -1,0 +1,50 @@
+//! Sums of terms, terms of factors.
+
+use chumsky::prelude::*;
+
+use crate::span::Span;
+use crate::tree::{Factor, Joint, Sum, Term};
+
+use super::lexeme::{Kind, Lexeme};
+use super::{Extra, Input, join_all, kind};
+
+/// Terms with signs between them; an empty side is an empty sum.
+pub(super) fn sum_of<'a>(
+    factor: impl Parser<'a, Input<'a>, Factor, Extra> + Clone + 'a,
+) -> impl Parser<'a, Input<'a>, Sum, Extra> + Clone + 'a {
+    let term = term_of(factor);
+    let sign = kind(Kind::Plus).map(|lexeme: &Lexeme| lexeme.span);
+    // A sign after a sign (`a + - b`) is taken with it.
+    let signs = sign.clone().foldl(sign.repeated(), Span::join);
+    let signed = signs.then(term.clone()).map(|(sign, term)| Term { sign: Some(sign), ..term });
+    term.map(|term| if term.factors.is_empty() { Vec::new() } else { vec![term] })
+        .foldl(signed.repeated(), |mut terms, term| {
+            terms.push(term);
+            terms
+        })
+        .map(|terms| {
+            let span = join_all(terms.iter().flat_map(|term| [term.sign.unwrap_or(term.span), term.span]));
+            Sum { span, terms }
+        })
+}
+
+/// Factors side by side or with signs of multiplication; may be empty.
+fn term_of<'a>(
+    factor: impl Parser<'a, Input<'a>, Factor, Extra> + Clone + 'a,
+) -> impl Parser<'a, Input<'a>, Term, Extra> + Clone + 'a {
+    let joint = select_ref! {
+        Lexeme { kind: Kind::Times, .. } => Joint::Times,
+        Lexeme { kind: Kind::Slash, .. } => Joint::Slash,
+        Lexeme { kind: Kind::Lone | Kind::Stagger | Kind::Prime | Kind::RomanSwitch, .. } => Joint::Beside,
+    };
+    let joints = empty()
+        .to(Joint::Beside)
+        .foldl(joint.clone().repeated(), |before, now| if now == Joint::Beside { before } else { now });
+    joints
+        .then(factor)
+        .map(|(joint, factor)| Factor { joint, ..factor })
+        .repeated()
+        .collect::<Vec<_>>()
+        .then_ignore(joint.repeated())
+        .map(|factors| Term { span: join_all(factors.iter().map(|factor| factor.span)), sign: None, factors })
+}

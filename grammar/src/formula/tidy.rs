@@ -1,0 +1,506 @@
+//! From tokens to lexemes: commands take their meaning, layout goes, words are folded.
+//!
+//! One pass over the tokens with a cursor; whatever a command swallows (an optional argument, a group of words, an
+//! environment) is swallowed here, so that the parsers see mathematics only. Nothing is ever refused: the worst
+//! that happens to a token is that it is passed over.
+
+use compact_str::CompactString;
+
+use crate::span::Span;
+use crate::tokens::{Token, TokenKind};
+use crate::vocabulary::{Class, class, latex_name};
+
+use super::lexeme::{Kind, Lexeme};
+
+/// Environments whose rows are rows of the formula they stand in.
+const TRANSPARENT: &[&str] = &[
+    "aligned", "alignedat", "split", "gathered", "multlined", "subequations", "equation", "align", "gather",
+    "multline", "eqnarray", "displaymath", "math", "flalign", "alignat", "empheq", "tightalign", "lgathered",
+    "rgathered", "IEEEeqnarraybox",
+];
+
+/// Words that stand between two statements.
+const LINK_WORDS: &[&str] = &[
+    "and", "or", "if", "for", "where", "with", "when", "since", "so", "then", "iff", "thus", "hence", "on", "in", "as",
+    "at", "but", "i.e.", "e.g.", "cf.", "but", "while", "otherwise", "therefore", "because", "from", "using", "by",
+    "via", "provided", "unless", "that", "is", "e", "und", "et", "y", "ou", "oder", "mit", "avec", "para",
+];
+
+/// What tidying yields.
+#[derive(Default)]
+pub(crate) struct Tidied {
+    pub lexemes: Vec<Lexeme>,
+    pub labels: Vec<(CompactString, Span)>,
+    pub unknown: Vec<(CompactString, Span)>,
+}
+
+/// Gives every token its meaning.
+pub(crate) fn tidy(tokens: &[Token<'_>]) -> Tidied {
+    let mut cursor = Cursor { tokens, at: 0, out: Tidied::default(), lefts: Vec::new(), digits_wanted: 0 };
+    cursor.out.lexemes.reserve(tokens.len());
+    while let Some(token) = cursor.next() {
+        cursor.token(token);
+    }
+    cursor.out
+}
+
+struct Cursor<'t, 'a> {
+    tokens: &'t [Token<'a>],
+    at: usize,
+    out: Tidied,
+    /// For every open `\left`, whether its bracket is the empty one.
+    lefts: Vec<bool>,
+    /// How many single digits the command before takes as arguments (`\frac12`, `x^10`).
+    digits_wanted: usize,
+}
+
+impl<'t, 'a> Cursor<'t, 'a> {
+    fn next(&mut self) -> Option<Token<'a>> {
+        let token = self.tokens.get(self.at).copied();
+        self.at += 1;
+        token
+    }
+
+    fn peek(&self) -> Option<Token<'a>> {
+        self.tokens.get(self.at).copied()
+    }
+
+    fn push(&mut self, kind: Kind, text: impl Into<CompactString>, span: Span) {
+        self.out.lexemes.push(Lexeme { kind, text: text.into(), span });
+    }
+
+    fn token(&mut self, token: Token<'a>) {
+        let wanted = std::mem::take(&mut self.digits_wanted);
+        let kind = match token.kind {
+            TokenKind::Number => return self.number(token, wanted),
+            TokenKind::Command => return self.command(token),
+            TokenKind::Letter => return self.letter(token),
+            TokenKind::Sign => return self.sign(token),
+            TokenKind::Colon => return self.colon(token),
+            TokenKind::Plus => return self.plus(token),
+            TokenKind::Down | TokenKind::Up => {
+                self.digits_wanted = 1;
+                if token.kind == TokenKind::Down { Kind::Down } else { Kind::Up }
+            }
+            TokenKind::BraceOpen => Kind::BraceOpen,
+            TokenKind::BraceClose => Kind::BraceClose,
+            TokenKind::Open => Kind::Open,
+            TokenKind::Close => Kind::Close,
+            TokenKind::Bar => Kind::Bar,
+            TokenKind::RowBreak => Kind::Row,
+            TokenKind::Cell => Kind::Cell,
+            TokenKind::Prime => Kind::Prime,
+            TokenKind::Comma => Kind::Comma,
+            TokenKind::Semicolon => Kind::Semicolon,
+            TokenKind::Dots => Kind::Dots,
+            TokenKind::Relation => relation_sign(token.text),
+            TokenKind::Arrow => Kind::Arrow,
+            TokenKind::Times => Kind::Times,
+            TokenKind::Slash => Kind::Slash,
+            TokenKind::Root => Kind::Root,
+            TokenKind::Space
+            | TokenKind::Comment
+            | TokenKind::Tie
+            | TokenKind::Dot
+            | TokenKind::Parameter
+            | TokenKind::Dollar
+            | TokenKind::Other => return,
+        };
+        self.push(kind, token.text, token.span);
+    }
+
+    /// A number; where single digits are wanted they are cut off its front.
+    fn number(&mut self, token: Token<'a>, wanted: usize) {
+        let at = token.span.start as usize;
+        let cut = wanted.min(token.text.len().saturating_sub(1));
+        let in_place = token.span.len() == token.text.len();
+        for (n, digit) in token.text.char_indices().take(cut) {
+            let span = if in_place { Span::new(at + n, at + n + 1) } else { token.span };
+            self.push(Kind::Number, digit.to_string(), span);
+        }
+        let span = if in_place { Span::new(at + cut, at + token.text.len()) } else { token.span };
+        self.push(Kind::Number, token.text.get(cut..).unwrap_or_default(), span);
+    }
+
+    fn plus(&mut self, token: Token<'a>) {
+        let arrow = token.text == "-" && self.peek().is_some_and(|next| next.text == ">");
+        if arrow {
+            self.at += 1;
+        }
+        self.push(if arrow { Kind::Arrow } else { Kind::Plus }, token.text, token.span);
+    }
+
+    /// `:=` is a relation, a lone colon a product of tensors or a mark.
+    fn colon(&mut self, token: Token<'a>) {
+        let equal = self.peek().filter(|next| next.text == "=");
+        match equal {
+            Some(next) => {
+                self.at += 1;
+                self.push(Kind::Equal, ":=", token.span.join(next.span));
+            }
+            None => self.push(Kind::Times, ":", token.span),
+        }
+    }
+
+    fn sign(&mut self, token: Token<'a>) {
+        match token.text {
+            "\\{" => self.push(Kind::Open, "\\{", token.span),
+            "\\}" => self.push(Kind::Close, "\\}", token.span),
+            "\\|" => self.push(Kind::Bar, "\\|", token.span),
+            "\\ " | "\\," | "\\;" | "\\:" | "\\!" | "\\>" => self.push(Kind::Stagger, "", token.span),
+            _ => {}
+        }
+    }
+
+    /// A letter, or a run of letters that spells a function (`det`, `diag`) typed without its backslash.
+    fn letter(&mut self, token: Token<'a>) {
+        if let Some((length, name)) = self.typed_function(token) {
+            let last = self.tokens.get(self.at + length - 2).map_or(token.span, |t| t.span);
+            self.at += length - 1;
+            return self.push(Kind::Function, name, token.span.join(last));
+        }
+        self.push(Kind::Letter, latex_name(token.text).unwrap_or(token.text), token.span);
+    }
+
+    fn typed_function(&self, token: Token<'a>) -> Option<(usize, &'static str)> {
+        const TYPED: &[&str] = &["det", "diag", "sin", "cos", "tan", "exp", "log", "const", "sgn", "max", "min"];
+        let starts = TYPED.iter().any(|word| word.starts_with(token.text));
+        let after_letter = self.out.lexemes.last().is_some_and(|l| l.kind == Kind::Letter && l.span.end == token.span.start);
+        if !starts || after_letter {
+            return None;
+        }
+        let mut word = String::from(token.text);
+        let mut end = token.span.end;
+        for next in self.tokens.get(self.at..)? {
+            if next.kind != TokenKind::Letter || next.span.start != end || word.len() > 5 {
+                break;
+            }
+            word.push_str(next.text);
+            end = next.span.end;
+        }
+        TYPED.iter().find(|known| **known == word).map(|known| (known.len(), *known))
+    }
+
+    fn command(&mut self, token: Token<'a>) {
+        let name = token.text.get(1..).unwrap_or_default();
+        let Some(class) = class(name) else {
+            self.out.unknown.push((name.into(), token.span));
+            return self.push(Kind::Unknown, name, token.span);
+        };
+        let kind = match class {
+            Class::Letter => Kind::Letter,
+            Class::Accent | Class::Font => Kind::Accent,
+            Class::Bold => Kind::Bold,
+            Class::Roman => return self.roman(token),
+            Class::RomanSwitch => Kind::RomanSwitch,
+            Class::Text => return self.text(token),
+            Class::Operator => return self.operator(token),
+            Class::Fraction => {
+                self.digits_wanted = 2;
+                Kind::Fraction
+            }
+            Class::Root => {
+                self.digits_wanted = 1;
+                Kind::Root
+            }
+            Class::Over => Kind::Over,
+            Class::Derivative => Kind::Derivative,
+            Class::Differential => Kind::Differential,
+            Class::Sum => Kind::Sum,
+            Class::Integral => Kind::Integral,
+            Class::Limit => Kind::Limit,
+            Class::Function => Kind::Function,
+            Class::Equal => Kind::Equal,
+            Class::Loose => Kind::Loose,
+            Class::Arrow => Kind::Arrow,
+            Class::ArrowWords => {
+                self.skip_optional();
+                self.skip_group();
+                if name == "xlongequal" { Kind::Equal } else { Kind::Arrow }
+            }
+            Class::Separator => Kind::Separator,
+            Class::Plus => Kind::Plus,
+            Class::Times => Kind::Times,
+            Class::Open => Kind::Open,
+            Class::Close => Kind::Close,
+            Class::Bar => Kind::Bar,
+            Class::Dots => Kind::Dots,
+            Class::Wrap | Class::Eval => Kind::Wrap,
+            Class::Brace => Kind::Brace,
+            Class::Norm => Kind::Norm,
+            Class::Average => Kind::Average,
+            Class::Pair | Class::Ket => Kind::Pair,
+            Class::Order => Kind::Order,
+            Class::Tensor => Kind::Tensor,
+            Class::Indices => Kind::Indices,
+            Class::Slashed => Kind::Slashed,
+            Class::Mark => Kind::Mark,
+            Class::Stagger => Kind::Stagger,
+            _ => return self.layout(token, class),
+        };
+        let text = if kind == Kind::Letter { token.text } else { name };
+        self.push(kind, text, token.span);
+        if takes_star(kind) && self.peek().is_some_and(|next| next.text == "*") {
+            self.at += 1;
+        }
+    }
+
+    /// Commands that print nothing of their own or swallow what follows.
+    fn layout(&mut self, token: Token<'a>, class: Class) {
+        match class {
+            Class::Drop => {
+                self.skip_optional();
+                self.skip_group();
+            }
+            Class::Drop2 => {
+                self.skip_group();
+                self.skip_group();
+            }
+            Class::Wrap2 | Class::Overset => {
+                self.skip_optional();
+                self.skip_group();
+            }
+            Class::Phantom => {
+                self.skip_group();
+                self.push(Kind::Stagger, "", token.span);
+            }
+            Class::Label => {
+                let label = self.group_words();
+                self.out.labels.push((label.into(), token.span));
+            }
+            Class::Number1 | Class::Number2 => {
+                self.skip_optional();
+                self.skip_group();
+                if class == Class::Number2 {
+                    self.skip_group();
+                }
+                self.push(Kind::Number, "1", token.span);
+            }
+            Class::Delimiter => self.delimiter(token),
+            Class::Not => self.negated(),
+            Class::Begin => self.begin(token),
+            Class::End => {
+                self.group_words();
+            }
+            Class::Block => {
+                self.skip_block();
+                self.push(Kind::Matrix, "", token.span);
+            }
+            _ => {}
+        }
+    }
+
+    fn negated(&mut self) {
+        if let Some(next) = self.next() {
+            self.push(Kind::Loose, "not", next.span);
+        }
+    }
+
+    /// `\left(`, `\big|`: what follows is a bracket, whichever way it is drawn.
+    fn delimiter(&mut self, token: Token<'a>) {
+        let Some(next) = self.next() else { return };
+        let empty = next.text == ".";
+        let bar = matches!(next.text, "|" | "\\|" | "\\vert" | "\\Vert" | "\\lvert" | "\\rvert" | "\\lVert" | "\\rVert");
+        let span = token.span.join(next.span);
+        match token.text {
+            "\\left" => {
+                self.lefts.push(empty);
+                match (empty, bar) {
+                    (true, _) => {}
+                    (_, true) => self.push(Kind::Open, "|", span),
+                    _ => self.push(Kind::Open, next.text, span),
+                }
+            }
+            "\\right" => {
+                let from_nothing = self.lefts.pop().unwrap_or(true);
+                match (empty, bar, from_nothing) {
+                    (true, ..) => {}
+                    (_, true, true) => self.push(Kind::Bar, "eval", span),
+                    (_, true, _) => self.push(Kind::Close, "|", span),
+                    _ => self.push(Kind::Close, next.text, span),
+                }
+            }
+            "\\middle" => {}
+            _ if bar => self.push(Kind::Bar, next.text, span),
+            _ if matches!(next.kind, TokenKind::Open | TokenKind::Close | TokenKind::Sign | TokenKind::Command) => {
+                self.token(Token { span, ..next });
+            }
+            _ => {}
+        }
+    }
+
+    /// Environments: those that only align are taken away, any other is a matrix.
+    fn begin(&mut self, token: Token<'a>) {
+        let name = self.group_words();
+        if TRANSPARENT.contains(&name.trim_end_matches('*')) {
+            self.skip_optional();
+            if name.contains("at") || name.starts_with("IEEE") || name == "empheq" {
+                self.skip_group();
+            }
+            return;
+        }
+        let mut depth = 1;
+        let mut end = token.span;
+        while depth > 0 {
+            let Some(next) = self.next() else { break };
+            end = next.span;
+            depth += match next.text {
+                "\\begin" => 1,
+                "\\end" => -1,
+                _ => 0,
+            };
+        }
+        self.group_words();
+        self.push(Kind::Matrix, name, token.span.join(end));
+    }
+
+    /// `\mathrm{..}`: a function's name, a differential, one letter or a word.
+    fn roman(&mut self, token: Token<'a>) {
+        let Some((word, end)) = self.plain_group() else {
+            return self.push(Kind::Roman, "mathrm", token.span);
+        };
+        self.word(&word, token.span.join(end), false);
+    }
+
+    fn operator(&mut self, token: Token<'a>) {
+        if self.peek().is_some_and(|next| next.text == "*") {
+            self.at += 1;
+        }
+        let end = self.peek().map_or(token.span, |next| next.span);
+        let name = self.group_words();
+        self.push(Kind::Function, name, token.span.join(end));
+    }
+
+    /// `\text{..}`: words between statements, or one word that stands for a quantity or a function. Mathematics
+    /// inside the words is read as statements of its own.
+    fn text(&mut self, token: Token<'a>) {
+        self.skip_optional();
+        let at = self.at;
+        if let Some((word, end)) = self.plain_group() {
+            return self.word(&word, token.span.join(end), true);
+        }
+        self.at = at;
+        let from = self.at;
+        self.skip_group();
+        let inner = self.tokens.get(from..self.at.min(self.tokens.len())).unwrap_or_default();
+        let span = inner.last().map_or(token.span, |last| token.span.join(last.span));
+        self.push(Kind::Text, "", span);
+        for (n, part) in inner.split(|t| t.kind == TokenKind::Dollar).enumerate() {
+            if n % 2 == 1 && !part.is_empty() {
+                let inner = tidy(part);
+                self.out.lexemes.extend(inner.lexemes);
+                self.push(Kind::Text, "", span);
+            }
+        }
+    }
+
+    fn word(&mut self, word: &str, span: Span, in_text: bool) {
+        let kind = match word {
+            "d" | "D" => return self.push(Kind::Letter, word, span),
+            "" => return,
+            _ if class(word) == Some(Class::Function) => Kind::Function,
+            _ if in_text && LINK_WORDS.contains(&word) => Kind::Text,
+            _ if word.contains(' ') => Kind::Text,
+            _ => Kind::Word,
+        };
+        self.push(kind, word, span);
+    }
+
+    /// The words of a group that holds only letters, digits and signs, not brackets, dollars or commands. Blanks
+    /// are gone by now, so words are told apart by the gaps between the places of their letters.
+    fn plain_group(&mut self) -> Option<(String, Span)> {
+        let open = self.peek()?;
+        if open.kind == TokenKind::Letter {
+            self.at += 1;
+            return Some((open.text.to_owned(), open.span));
+        }
+        if open.kind != TokenKind::BraceOpen {
+            return None;
+        }
+        let mut word = String::new();
+        let mut end = open.span.end;
+        for (n, token) in self.tokens.get(self.at + 1..)?.iter().enumerate() {
+            match token.kind {
+                TokenKind::BraceClose => {
+                    self.at += n + 2;
+                    return Some((word.trim().to_owned(), token.span));
+                }
+                TokenKind::Letter | TokenKind::Number | TokenKind::Plus | TokenKind::Prime => {}
+                TokenKind::Tie | TokenKind::Comma | TokenKind::Dot | TokenKind::Colon | TokenKind::Semicolon => {}
+                TokenKind::Slash | TokenKind::Other | TokenKind::Relation => {}
+                TokenKind::Sign => {
+                    word.push(' ');
+                    continue;
+                }
+                _ => return None,
+            }
+            let gap = token.span.start > end && !word.is_empty();
+            if gap || token.kind == TokenKind::Tie {
+                word.push(' ');
+            }
+            if token.kind != TokenKind::Tie {
+                word.push_str(token.text);
+            }
+            end = token.span.end;
+        }
+        None
+    }
+
+    /// Takes a group and returns its text without blanks.
+    fn group_words(&mut self) -> String {
+        let from = self.at;
+        self.skip_group();
+        let taken = self.tokens.get(from..self.at.min(self.tokens.len())).unwrap_or_default();
+        taken.iter().filter(|t| !matches!(t.kind, TokenKind::BraceOpen | TokenKind::BraceClose)).map(|t| t.text).collect()
+    }
+
+    /// Passes over one group or one token.
+    fn skip_group(&mut self) {
+        let Some(first) = self.peek().filter(|token| token.kind != TokenKind::BraceClose) else { return };
+        self.at += 1;
+        if first.kind != TokenKind::BraceOpen {
+            return;
+        }
+        let mut depth = 1;
+        while depth > 0 {
+            let Some(token) = self.next() else { break };
+            depth += i32::from(token.kind == TokenKind::BraceOpen) - i32::from(token.kind == TokenKind::BraceClose);
+        }
+    }
+
+    /// Passes over a group in braces or in brackets of any kind.
+    fn skip_block(&mut self) {
+        let Some(first) = self.peek() else { return };
+        if first.kind != TokenKind::Open {
+            return self.skip_group();
+        }
+        let mut depth = 0;
+        while let Some(token) = self.next() {
+            depth += i32::from(token.kind == TokenKind::Open) - i32::from(token.kind == TokenKind::Close);
+            if depth == 0 {
+                break;
+            }
+        }
+    }
+
+    /// Passes over `[..]`, if one follows.
+    fn skip_optional(&mut self) {
+        if self.peek().is_some_and(|next| next.text == "[") {
+            let rest = self.tokens.get(self.at..).unwrap_or_default();
+            if let Some(length) = rest.iter().position(|token| token.text == "]") {
+                self.at += length + 1;
+            }
+        }
+    }
+}
+
+fn takes_star(kind: Kind) -> bool {
+    matches!(
+        kind,
+        Kind::Derivative | Kind::Norm | Kind::Average | Kind::Pair | Kind::Tensor | Kind::Wrap | Kind::Bold
+    )
+}
+
+fn relation_sign(text: &str) -> Kind {
+    if matches!(text, "=" | ":=" | "=:" | "≡") { Kind::Equal } else { Kind::Loose }
+}

@@ -1,0 +1,340 @@
+//! The tree of a formula: notation only, no meaning.
+//!
+//! A formula is a list of statements, a statement a chain of sides with relations between them, a side a sum of
+//! terms, a term a product of factors, a factor an atom with scripts. What a script means (index, label, power)
+//! is not decided here. Every node knows its place in the document; where a macro produced it, the place is the
+//! macro call, so that several nodes may share a span.
+
+mod dump;
+
+use compact_str::CompactString;
+
+use crate::span::Span;
+
+pub use dump::dump;
+
+/// The level of a script: up (contravariant) or down (covariant).
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Hash, PartialOrd, Ord)]
+pub enum Level {
+    /// `^`
+    Up,
+    /// `_`
+    Down,
+}
+
+impl Level {
+    /// The other level.
+    pub const fn flipped(self) -> Self {
+        match self {
+            Self::Up => Self::Down,
+            Self::Down => Self::Up,
+        }
+    }
+
+    /// The word for it.
+    pub const fn word(self) -> &'static str {
+        match self {
+            Self::Up => "up",
+            Self::Down => "down",
+        }
+    }
+}
+
+/// One mathematical region, read.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct Formula {
+    /// The region with its delimiters.
+    pub span: Span,
+    /// Its statements in order.
+    pub statements: Vec<Statement>,
+    /// Parts that could not be read.
+    pub unread: Vec<Unread>,
+    /// Commands that are neither built in nor defined.
+    pub unknown: Vec<(CompactString, Span)>,
+    /// `\label`s, and the leading `(name)` of a note's formula.
+    pub labels: Vec<(CompactString, Span)>,
+    /// Whether the region is set on its own.
+    pub display: bool,
+}
+
+/// A part that could not be read, and why.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Unread {
+    /// The part.
+    pub span: Span,
+    /// The cause, as a phrase.
+    pub reason: &'static str,
+}
+
+/// `side rel side rel side`; a lone side has no relation.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct Statement {
+    /// From the first side to the last.
+    pub span: Span,
+    /// At least one.
+    pub sides: Vec<Sum>,
+    /// One fewer than sides.
+    pub relations: Vec<Relation>,
+}
+
+/// A relation sign.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Relation {
+    /// How it compares.
+    pub kind: RelationKind,
+    /// Where it stands.
+    pub span: Span,
+}
+
+/// What a relation asks of its sides.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Hash)]
+pub enum RelationKind {
+    /// `=`, `\equiv`, `:=` and kin: the sides have the same free indices.
+    Equal,
+    /// `<`, `\sim`, `\approx`, ...: as equal, if both sides carry free indices.
+    Loose,
+    /// Arrows, membership: nothing is compared.
+    Free,
+}
+
+/// A sum of terms.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct Sum {
+    /// From the first term to the last.
+    pub span: Span,
+    /// None for an empty side.
+    pub terms: Vec<Term>,
+}
+
+/// A product of factors, with the sign before it.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct Term {
+    /// Without the sign.
+    pub span: Span,
+    /// The sign before it, if one is written.
+    pub sign: Option<Span>,
+    /// Factors in order; none after a lone sign.
+    pub factors: Vec<Factor>,
+}
+
+/// How a factor is joined to the one before.
+#[derive(Clone, Copy, Debug, Default, PartialEq, Eq, Hash)]
+pub enum Joint {
+    /// Side by side.
+    #[default]
+    Beside,
+    /// A sign of multiplication: `\cdot`, `\times`, `\otimes`, ...
+    Times,
+    /// A slash: the factor is below the line.
+    Slash,
+}
+
+/// An atom with its scripts.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Factor {
+    /// Atom, scripts and primes.
+    pub span: Span,
+    /// What it is.
+    pub atom: Atom,
+    /// In the order written.
+    pub scripts: Vec<Script>,
+    /// How it hangs on the factor before.
+    pub joint: Joint,
+}
+
+/// What a factor is.
+#[derive(Clone, Debug, PartialEq)]
+pub enum Atom {
+    /// A letter or word that may carry indices.
+    Kernel(Kernel),
+    /// A number or a quantity with a unit.
+    Number(CompactString),
+    /// Something in brackets: one statement, or several separated by commas.
+    Group(Group),
+    /// `\frac{over}{under}`, `\dv`, `\pdv`.
+    Fraction(Box<Fraction>),
+    /// A root.
+    Root(Box<Sum>),
+    /// `\sum`, `\int`, `\lim`: its scripts are bounds.
+    Big(Big),
+    /// A named function: `\sin`, `\det`, `\operatorname{tr}`.
+    Function(CompactString),
+    /// A matrix, a list of cases or the like, not looked into.
+    Matrix,
+    /// Words.
+    Text(CompactString),
+    /// An ellipsis.
+    Dots,
+    /// `O(..)`: terms of an order, not written out.
+    Order,
+    /// A wrapped part that carries no bracket: a box, a strike, a group in braces.
+    Wrapped(Box<Sum>),
+    /// An under- or overbrace: its scripts are words about it.
+    Labelled(Box<Sum>),
+    /// A command that is neither built in nor defined, with its arguments.
+    Unknown(CompactString, Vec<Sum>),
+    /// Not read.
+    Unread(&'static str),
+}
+
+/// The letter or word that carries indices, with its decorations.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Kernel {
+    /// Decorations and fonts, outermost first, then the letter: `\bar h`, `\mathcal L`, `\Gamma`, `T''`.
+    pub name: CompactString,
+    /// The letter alone.
+    pub letter: CompactString,
+    /// Whether it is set bold or with an arrow (a vector written without indices).
+    pub bold: bool,
+    /// Whether it is a word in roman type rather than a letter.
+    pub word: bool,
+}
+
+/// Brackets of a group.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Hash)]
+pub enum Bracket {
+    /// `( )`
+    Round,
+    /// `[ ]`
+    Square,
+    /// `\{ \}`
+    Curly,
+    /// `| |`, `\lVert \rVert`, `\abs`
+    Bars,
+    /// `\langle \rangle`, averages
+    Angle,
+    /// A commutator or a Poisson bracket by command.
+    Pair,
+}
+
+/// Something in brackets.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Group {
+    /// The opening bracket.
+    pub bracket: Bracket,
+    /// What stands between commas.
+    pub parts: Vec<Statement>,
+}
+
+/// A fraction.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Fraction {
+    /// Above the line.
+    pub over: Sum,
+    /// Below the line.
+    pub under: Sum,
+    /// Whether it is a derivative by command (`\dv`, `\pdv`, `\fdv`).
+    pub derivative: bool,
+}
+
+/// A big operator.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Hash)]
+pub enum Big {
+    /// `\sum`, `\prod` and unions: binds the letters of its bounds.
+    Sum,
+    /// `\int` and kin.
+    Integral,
+    /// `\lim`, `\max`, ...
+    Limit,
+}
+
+/// A sub- or superscript.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Script {
+    /// With its `_` or `^`.
+    pub span: Span,
+    /// Which level.
+    pub level: Level,
+    /// Whether something (an empty group, a blank, a phantom) sets it apart from the script before, so that the
+    /// order of slots is plain.
+    pub staggered: bool,
+    /// Whether it stands before its kernel (`{}^{(3)}R`).
+    pub before: bool,
+    /// In order.
+    pub items: Vec<Item>,
+}
+
+/// One sign or letter of a script.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Item {
+    /// Where it stands.
+    pub span: Span,
+    /// What it is.
+    pub kind: ItemKind,
+}
+
+/// What an item of a script is, by notation.
+#[derive(Clone, Debug, PartialEq)]
+pub enum ItemKind {
+    /// A letter, with its primes, accents and number: `\mu`, `\mu'`, `\dot\alpha`, `i_1`.
+    Letter(CompactString),
+    /// A number.
+    Number(CompactString),
+    /// A word in roman type or text: a label.
+    Label(CompactString),
+    /// A letter set in roman, bold or calligraphic type: a label, unless it is one everywhere.
+    Styled(CompactString),
+    /// `,`
+    Comma,
+    /// `;`
+    Semicolon,
+    /// `|`
+    Bar,
+    /// `(`, `[` and kin; the text tells which.
+    Open(char),
+    /// `)`, `]`
+    Close(char),
+    /// `+`, `-`
+    Sign,
+    /// `*`, `\dagger`, `\prime`, `\circ`, `\top` and kin.
+    Mark(CompactString),
+    /// `=`, `<`, `\in`, `\to`, ...
+    Relation,
+    /// An ellipsis.
+    Dots,
+    /// A product or division sign.
+    Operator,
+    /// Anything with a structure of its own: a kernel with scripts, a fraction, a group.
+    Factor(Box<Factor>),
+}
+
+/// Notes the unread atoms of a formula's statements in `Formula::unread`.
+pub(crate) fn unread_parts(formula: &mut Formula) {
+    let mut found = Vec::new();
+    for side in formula.statements.iter().flat_map(|statement| &statement.sides) {
+        walk(side, &mut |factor| {
+            if let Atom::Unread(reason) = factor.atom {
+                found.push(Unread { span: factor.span, reason });
+            }
+        });
+    }
+    formula.unread.extend(found);
+}
+
+/// Visits every factor of a sum, those inside brackets, fractions and scripts among them, outer before inner.
+pub fn walk<'t>(sum: &'t Sum, visit: &mut impl FnMut(&'t Factor)) {
+    for factor in sum.terms.iter().flat_map(|term| &term.factors) {
+        walk_factor(factor, visit);
+    }
+}
+
+fn walk_factor<'t>(factor: &'t Factor, visit: &mut impl FnMut(&'t Factor)) {
+    visit(factor);
+    match &factor.atom {
+        Atom::Group(group) => {
+            group.parts.iter().flat_map(|part| &part.sides).for_each(|side| walk(side, visit));
+        }
+        Atom::Fraction(fraction) => {
+            walk(&fraction.over, visit);
+            walk(&fraction.under, visit);
+        }
+        Atom::Root(sum) | Atom::Wrapped(sum) | Atom::Labelled(sum) => walk(sum, visit),
+        Atom::Unknown(_, sums) => sums.iter().for_each(|sum| walk(sum, visit)),
+        _ => {}
+    }
+    for item in factor.scripts.iter().flat_map(|script| &script.items) {
+        if let ItemKind::Factor(inner) = &item.kind {
+            walk_factor(inner, visit);
+        }
+    }
+}

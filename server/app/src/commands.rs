@@ -1,0 +1,5 @@
+//! The commands, one file each: arguments in, exit status out.
+
+pub mod check;
+pub mod completions;
+pub mod explain;

@@ -1,0 +1,181 @@
+//! `indexwise check`: finds the files, has them checked, mends if asked, reports.
+
+use std::io::{self, BufWriter, IsTerminal, Write};
+use std::path::Path;
+use std::time::Instant;
+
+use indexwise_checker::finding::Severity;
+use indexwise_checker::paper::{Cancel, Paper, Settings};
+use indexwise_checker::rules::{RULES, find};
+use indexwise_grammar::hosts::Host;
+
+use crate::arguments::{CheckArguments, ReportKind};
+use crate::batch::{self, Outcome, Run};
+use crate::files::{self, Failure, Listed};
+use crate::mend::Mended;
+use crate::nearest::nearest;
+use crate::output::{Status, cause, gone_is_fine, printable};
+use crate::progress::Progress;
+use crate::project::Disk;
+use crate::reports::text::Palette;
+use crate::reports::{self, FileReport, Look};
+
+/// Runs the command.
+pub fn run(arguments: &CheckArguments) -> Status {
+    match checked(arguments) {
+        Ok(status) => status,
+        Err(failure) => {
+            failure.tell();
+            Status::Trouble
+        }
+    }
+}
+
+fn checked(arguments: &CheckArguments) -> Result<Status, Failure> {
+    let since = Instant::now();
+    let settings = settings(arguments)?;
+    let input = arguments.host.map_or(Host::Latex, Host::from);
+    let (listed, failures) = files::find(&arguments.paths, input);
+    refuse_own_output(arguments.output.as_deref(), &listed)?;
+    let mut outcome = check(arguments, &settings, &listed)?;
+    outcome.failures.splice(0..0, failures);
+    if arguments.fix && !arguments.dry_run {
+        write_mended(&mut outcome);
+    }
+    let written = report(arguments, &outcome, since);
+    outcome.failures.iter().for_each(Failure::tell);
+    written?;
+    Ok(status(&outcome, arguments.strict))
+}
+
+fn check(arguments: &CheckArguments, settings: &Settings, listed: &[Listed]) -> Result<Outcome, Failure> {
+    let progress = Progress::new(listed.len(), !arguments.no_progress);
+    let cancel = Cancel::default();
+    let checker = |paper: &Paper| indexwise_checker::paper::check(paper, settings, &cancel);
+    let run = Run { checker: &checker, mend: arguments.fix, progress: &progress };
+    let outcome = batch::pool(arguments.jobs)?.install(|| batch::check(listed, &Disk, &run));
+    progress.finish();
+    Ok(outcome)
+}
+
+/// What the checker is to look for.
+fn settings(arguments: &CheckArguments) -> Result<Settings, Failure> {
+    for name in arguments.only.iter().chain(&arguments.without) {
+        if find(name).is_none() {
+            return Err(Failure(unknown_rule(name)));
+        }
+    }
+    Ok(Settings {
+        only: arguments.only.clone(),
+        without: arguments.without.clone(),
+        // Off by default, it is on for those who ask for it by name.
+        unread: arguments.only.iter().any(|name| name == "unread"),
+    })
+}
+
+/// What to say of a rule's name that is none.
+pub fn unknown_rule(name: &str) -> String {
+    match nearest(name, RULES.iter().map(|rule| rule.name)) {
+        Some(near) => format!("{name}: there is no such rule; the nearest is {near}"),
+        None => format!("{name}: there is no such rule"),
+    }
+}
+
+/// A report must not be written over a document.
+fn refuse_own_output(output: Option<&Path>, listed: &[Listed]) -> Result<(), Failure> {
+    let Some(path) = output else { return Ok(()) };
+    let is_document = path.canonicalize().is_ok_and(|real| listed.iter().any(|file| file.path == real));
+    if is_document { Err(Failure::new(path.display(), "is checked, so the report cannot go there")) } else { Ok(()) }
+}
+
+/// Writes what was mended. A file that cannot be written, or that was changed meanwhile, is left.
+fn write_mended(outcome: &mut Outcome) {
+    for (mended, file) in outcome.mended.iter_mut().zip(&mut outcome.files) {
+        if mended.after == mended.before {
+            // It may still read otherwise, because another file of its paper was mended.
+            *file = mended.report.clone();
+            continue;
+        }
+        let unchanged = files::read(&mended.path).and_then(|now| {
+            if now == mended.before { Ok(()) } else { Err("was changed while it was being checked".to_owned()) }
+        });
+        let bytes = mended.after.bytes();
+        let written =
+            unchanged.and_then(|()| files::writing::replace(&mended.path, &bytes).map_err(|error| cause(&error)));
+        match written {
+            Ok(()) => *file = mended.report.clone(),
+            Err(cause) => {
+                outcome.failures.push(Failure::new(&mended.shown, format!("{cause}; the file is as it was")));
+                mended.done.clear();
+            }
+        }
+    }
+}
+
+/// Writes the report where it is wanted; with `--fix`, first what was done. In a report for programs that would
+/// be out of place, so there it goes to standard error.
+fn report(arguments: &CheckArguments, outcome: &Outcome, since: Instant) -> Result<(), Failure> {
+    let to_terminal = arguments.output.is_none() && io::stdout().is_terminal();
+    let palette = Palette { coloured: to_terminal && colours_are_welcome() };
+    let look = Look { kind: arguments.report, palette };
+    let mut text = Vec::new();
+    let told = tell_mended(&outcome.mended, arguments.dry_run);
+    if arguments.report == ReportKind::Text {
+        text.extend_from_slice(told.as_bytes());
+    } else {
+        let _ = io::stderr().lock().write_all(told.as_bytes());
+    }
+    // Writing to memory does not fail.
+    let _ = reports::write(&outcome.files, look, since.elapsed(), &mut text);
+    match &arguments.output {
+        Some(path) => std::fs::write(path, &text).map_err(|error| Failure::new(path.display(), cause(&error))),
+        None => print(&text),
+    }
+}
+
+fn print(text: &[u8]) -> Result<(), Failure> {
+    let mut out = BufWriter::new(io::stdout().lock());
+    let written = out.write_all(text).and_then(|()| out.flush());
+    gone_is_fine(written).map_err(|error| Failure::new("standard output", cause(&error)))
+}
+
+/// The convention: any value of NO_COLOR but the empty one says no.
+fn colours_are_welcome() -> bool {
+    let refused = std::env::var_os("NO_COLOR").is_some_and(|value| !value.is_empty());
+    !refused && std::env::var_os("TERM").is_none_or(|kind| kind != "dumb")
+}
+
+/// One line for each finding that was mended or left; with `--dry-run` also the lines that would change.
+fn tell_mended(mended: &[Mended], dry_run: bool) -> String {
+    let verb = if dry_run { "would mend" } else { "mended" };
+    let mut lines = Vec::new();
+    for file in mended {
+        let path = printable(&file.shown);
+        for done in &file.done {
+            lines.push(format!("{verb} {path}:{}: {}", done.line, printable(&done.title)));
+            if dry_run {
+                lines.extend(done.old.lines().map(|line| format!("    - {}", printable(line))));
+                lines.extend(done.new.lines().map(|line| format!("    + {}", printable(line))));
+            }
+        }
+        let left = file.left.iter();
+        lines.extend(
+            left.map(|left| format!("left {path}:{}: {} ({})", left.line, printable(&left.message), left.reason)),
+        );
+    }
+    if !lines.is_empty() {
+        lines.push(String::new());
+    }
+    lines.iter().map(|line| format!("{line}\n")).collect()
+}
+
+fn status(outcome: &Outcome, strict: bool) -> Status {
+    let counts = |file: &FileReport| file.findings.iter().any(|found| strict || found.severity != Severity::Hint);
+    if !outcome.failures.is_empty() {
+        Status::Trouble
+    } else if outcome.files.iter().any(counts) {
+        Status::Findings
+    } else {
+        Status::Clean
+    }
+}

@@ -1,0 +1,58 @@
+//! `indexwise explain [RULE]`: the page of a rule, or the list of rules.
+
+use std::fmt::Write;
+
+use indexwise_checker::rules::{RULES, Rule, find};
+
+use crate::commands::check::unknown_rule;
+use crate::output::{Status, complain, print};
+
+/// Prints the page or the list.
+pub fn run(name: Option<&str>) -> Status {
+    let Some(name) = name else { return print(&list(RULES)) };
+    match find(name) {
+        Some(rule) => print(&page(rule)),
+        None => {
+            complain(&unknown_rule(name));
+            Status::Trouble
+        }
+    }
+}
+
+fn page(rule: &Rule) -> String {
+    format!("{}\n", rule.page.trim_end())
+}
+
+/// One rule a line: name, severity, summary.
+fn list(rules: &[Rule]) -> String {
+    let width = rules.iter().map(|rule| rule.name.len()).max().unwrap_or_default();
+    rules.iter().fold(String::new(), |mut text, rule| {
+        let off = if rule.on { "" } else { " (off unless asked for with --only)" };
+        // Writing to a string does not fail.
+        let _ = writeln!(text, "{:width$}  {:7}  {}{off}", rule.name, rule.severity.word(), rule.summary);
+        text
+    })
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use indexwise_checker::finding::Severity;
+
+    const TWO: &[Rule] = &[
+        Rule { name: "aa-bb", severity: Severity::Error, summary: "First.", page: "# aa-bb\n", on: true },
+        Rule { name: "c", severity: Severity::Hint, summary: "Second.", page: "# c", on: false },
+    ];
+
+    #[test]
+    fn the_list_has_a_line_for_each_rule() {
+        let want = "aa-bb  error    First.\nc      hint     Second. (off unless asked for with --only)\n";
+        assert_eq!(list(TWO), want);
+    }
+
+    #[test]
+    fn a_page_ends_with_one_line_break() {
+        assert!(TWO.iter().all(|rule| page(rule).ends_with(rule.name) || page(rule).ends_with("\n")));
+        assert_eq!(page(&TWO[0]), "# aa-bb\n");
+    }
+}

@@ -1,0 +1,233 @@
+//! The report for people: the author's own source with the place marked, and under it the ledger of the
+//! statement, so that one sees which index is odd and not only that one is.
+
+mod excerpt;
+mod label;
+mod ledger;
+
+use std::io::{self, Write};
+use std::time::Duration;
+
+use indexwise_checker::finding::{Finding, Severity};
+use unicode_width::UnicodeWidthStr;
+
+use super::places::Places;
+use super::{FileReport, Totals};
+use crate::output::printable;
+
+/// The columns of a page; what stands at the right ends here.
+const PAGE: usize = 78;
+
+/// What stands before everything but the heading of a finding.
+const INDENT: &str = "    ";
+
+/// A style: the codes that switch it on. Plain text has none.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+enum Style {
+    Place,
+    Error,
+    Warning,
+    Hint,
+    Mark,
+    Quiet,
+}
+
+/// Colours, or none.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub struct Palette {
+    /// Whether any escape code is written.
+    pub coloured: bool,
+}
+
+impl Palette {
+    fn paint(self, style: Style, text: &str) -> String {
+        if !self.coloured || text.is_empty() {
+            return text.to_owned();
+        }
+        let code = match style {
+            Style::Place => "1",
+            Style::Error => "1;31",
+            Style::Warning => "1;33",
+            Style::Hint => "36",
+            Style::Mark => "35",
+            Style::Quiet => "2",
+        };
+        format!("\u{1b}[{code}m{text}\u{1b}[0m")
+    }
+}
+
+/// Writes the report.
+pub fn write(files: &[FileReport], palette: Palette, elapsed: Duration, out: &mut dyn Write) -> io::Result<()> {
+    for file in files.iter().filter(|file| !file.findings.is_empty()) {
+        let places = Places::new(&file.text);
+        for finding in &file.findings {
+            write_finding(file, &places, finding, palette, out)?;
+        }
+    }
+    write_closing(files, elapsed, out)
+}
+
+fn write_finding(
+    file: &FileReport,
+    places: &Places,
+    finding: &Finding,
+    palette: Palette,
+    out: &mut dyn Write,
+) -> io::Result<()> {
+    let text = &*file.text.text;
+    let ledger = finding.ledger.as_ref().filter(|ledger| !ledger.rows.is_empty());
+    let statement = finding.ledger.as_ref().map_or(finding.span, |ledger| ledger.statement.join(finding.span));
+    let heading = format!("{}, line {}", printable(&file.path), places.start(finding.span).line);
+    let label = label::of(file, places, statement).map(|label| format!("({})", printable(label)));
+    let label = label.unwrap_or_default();
+    writeln!(
+        out,
+        "{}{}",
+        palette.paint(Style::Place, &heading),
+        at_right(&heading, &palette.paint(Style::Quiet, &label), &label)
+    )?;
+    let mut rule = Some(finding.rule);
+    for line in excerpt::lines(text, places, statement, finding.span) {
+        match line {
+            excerpt::Line::Source(line) => writeln!(out, "{INDENT}{line}")?,
+            excerpt::Line::Mark(mark) if ledger.is_none() => {
+                let name = rule.take().unwrap_or_default();
+                let right = at_right(&format!("{INDENT}{mark}"), &palette.paint(Style::Quiet, name), name);
+                writeln!(out, "{INDENT}{}{right}", palette.paint(Style::Mark, &mark))?;
+            }
+            excerpt::Line::Mark(mark) => writeln!(out, "{INDENT}{}", palette.paint(Style::Mark, &mark))?,
+        }
+    }
+    writeln!(out)?;
+    if let Some(ledger) = ledger {
+        write_ledger(&ledger::lines(ledger), finding.rule, palette, out)?;
+    }
+    write_words(places, finding, palette, out)
+}
+
+/// The rows, with the name of the rule at the right of the last line.
+fn write_ledger(lines: &[ledger::Line], rule: &str, palette: Palette, out: &mut dyn Write) -> io::Result<()> {
+    for (at, line) in lines.iter().enumerate() {
+        let style = if line.is_mark { Style::Mark } else { Style::Place };
+        let painted = if line.is_mark { palette.paint(style, &line.text) } else { line.text.clone() };
+        let right = if at + 1 == lines.len() {
+            at_right(&format!("{INDENT}{}", line.text), &palette.paint(Style::Quiet, rule), rule)
+        } else {
+            String::new()
+        };
+        writeln!(out, "{INDENT}{painted}{right}")?;
+    }
+    writeln!(out)
+}
+
+/// The sentence, the further places and what is offered.
+fn write_words(places: &Places, finding: &Finding, palette: Palette, out: &mut dyn Write) -> io::Result<()> {
+    let style = match finding.severity {
+        Severity::Error => Style::Error,
+        Severity::Warning => Style::Warning,
+        Severity::Hint => Style::Hint,
+    };
+    let severity = palette.paint(style, finding.severity.word());
+    writeln!(out, "{INDENT}{severity}: {}", printable(&finding.message))?;
+    for related in &finding.related {
+        let place = places.start(related.span);
+        writeln!(out, "{INDENT}{}:{}: {}", place.line, place.column, printable(&related.message))?;
+    }
+    for fix in &finding.fixes {
+        writeln!(out, "{INDENT}Offered: {}.", printable(&fix.title))?;
+    }
+    writeln!(out)
+}
+
+/// The blanks and the words that stand at the right of a line, at least two blanks after it.
+fn at_right(line: &str, painted: &str, plain: &str) -> String {
+    if plain.is_empty() {
+        return String::new();
+    }
+    let gap = PAGE.saturating_sub(width(line) + width(plain)).max(2);
+    format!("{}{painted}", " ".repeat(gap))
+}
+
+/// Columns on a terminal; a tab counts as it does for the eye at worst.
+fn width(text: &str) -> usize {
+    text.width() + 7 * text.matches('\t').count()
+}
+
+fn write_closing(files: &[FileReport], elapsed: Duration, out: &mut dyn Write) -> io::Result<()> {
+    let totals = Totals::of(files);
+    writeln!(
+        out,
+        "{}: {}, {} with indices, {} unread; {}, {}, {}; {:.1} s",
+        counted(files.len(), "file"),
+        counted(totals.formulas, "formula"),
+        totals.indexed,
+        totals.unread,
+        counted(totals.errors, "error"),
+        counted(totals.warnings, "warning"),
+        counted(totals.hints, "hint"),
+        elapsed.as_secs_f64(),
+    )?;
+    writeln!(out, "A clean report is about notation only: it is not a review of the physics or of a design.")
+}
+
+fn counted(number: usize, thing: &str) -> String {
+    format!("{number} {thing}{}", if number == 1 { "" } else { "s" })
+}
+
+#[cfg(test)]
+mod tests {
+    #![allow(clippy::unwrap_used)]
+    use super::super::samples::{SHELL, file};
+    use super::*;
+
+    fn report(files: &[FileReport], coloured: bool) -> String {
+        let mut out = Vec::new();
+        write(files, Palette { coloured }, Duration::from_millis(120), &mut out).unwrap();
+        String::from_utf8(out).unwrap()
+    }
+
+    #[test]
+    fn a_finding_is_shown_with_its_ledger() {
+        let want = r"shell.tex, line 3                                                   (eq:trace)
+    \Gamma^i_{ik} = \frac12 g^{ij} \partial_m g_{ij}
+                                            ^
+
+    left side     free  k down            summed  i
+    right side    free  m down            summed  i j
+                        ^ these differ                     free-index-mismatch
+
+    error: k is free on the left (down) but the right has m
+    3:14: k stands here
+    Offered: Write k for m in \partial_m.
+
+1 file: 1 formula, 1 with indices, 0 unread; 1 error, 0 warnings, 0 hints; 0.1 s
+A clean report is about notation only: it is not a review of the physics or of a design.
+";
+        assert_eq!(report(&[file("shell.tex", SHELL, false)], false), want);
+    }
+
+    #[test]
+    fn a_finding_without_ledger_names_its_rule_under_the_place() {
+        let mut file = file("shell.tex", SHELL, false);
+        file.findings.iter_mut().for_each(|finding| finding.ledger = None);
+        let text = report(&[file], false);
+        assert!(text.lines().any(|line| line.contains('^') && line.ends_with("  free-index-mismatch")), "{text}");
+    }
+
+    #[test]
+    fn colours_change_nothing_but_colours() {
+        let files = [file("shell.tex", SHELL, false)];
+        let (plain, coloured) = (report(&files, false), report(&files, true));
+        assert!(!plain.contains('\u{1b}') && coloured.contains('\u{1b}'));
+        let bare = coloured.split('\u{1b}').enumerate().fold(String::new(), |text, (at, piece)| {
+            text + if at == 0 { piece } else { piece.split_once('m').unwrap().1 }
+        });
+        assert_eq!(bare, plain);
+    }
+
+    #[test]
+    fn an_empty_report_still_says_what_it_is() {
+        let text = report(&[], false);
+        assert!(text.starts_with("0 files: 0 formulas") && text.contains("notation only"), "{text}");
+    }
+}

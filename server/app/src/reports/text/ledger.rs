@@ -1,0 +1,170 @@
+//! The ledger as a table: one row for each side or term, what is free and what is summed, the odd ones marked.
+
+use indexwise_checker::finding::{Ledger, LedgerIndex};
+use unicode_width::UnicodeWidthStr;
+
+use crate::output::printable;
+
+/// Blanks between the columns.
+const GAP: usize = 4;
+/// The column of the free indices is at least so wide.
+const FREE: usize = 20;
+
+/// A line of the table.
+#[derive(Debug, PartialEq, Eq)]
+pub(super) struct Line {
+    /// Its text.
+    pub text: String,
+    /// Whether it holds carets.
+    pub is_mark: bool,
+}
+
+/// A cell with the columns of its odd entries.
+#[derive(Default)]
+struct Cell {
+    text: String,
+    odd: Vec<usize>,
+}
+
+/// The lines of the table.
+pub(super) fn lines(ledger: &Ledger) -> Vec<Line> {
+    let rows: Vec<(String, Cell, Cell)> = ledger
+        .rows
+        .iter()
+        .map(|row| (printable(&row.title), cell("free  ", &row.free), cell("summed  ", &row.summed)))
+        .collect();
+    let titles = rows.iter().map(|(title, ..)| title.width()).max().unwrap_or_default() + GAP;
+    let free = rows.iter().map(|(_, free, _)| free.text.width()).max().unwrap_or_default().max(FREE) + GAP;
+    let marks: Vec<Vec<usize>> = rows
+        .iter()
+        .map(|(_, of_free, of_summed)| {
+            let summed = of_summed.odd.iter().map(|at| titles + free + at);
+            of_free.odd.iter().map(|at| titles + at).chain(summed).collect()
+        })
+        .collect();
+    let texts = rows.iter().map(|(title, of_free, of_summed)| {
+        let line = format!("{}{}{}", padded(title, titles), padded(&of_free.text, free), of_summed.text);
+        line.trim_end().to_owned()
+    });
+    with_marks(texts.collect(), &marks)
+}
+
+/// Where the same columns are odd in every row that has odd ones, one line of carets under the last row does;
+/// else each row gets its own.
+fn with_marks(texts: Vec<String>, marks: &[Vec<usize>]) -> Vec<Line> {
+    let odd: usize = marks.iter().map(Vec::len).sum();
+    let mut kinds: Vec<&Vec<usize>> = marks.iter().filter(|columns| !columns.is_empty()).collect();
+    kinds.dedup();
+    let words = if odd > 1 { "these differ" } else { "here" };
+    let shared = match kinds.as_slice() {
+        [columns] if marks.last() == Some(columns) => Some(*columns),
+        _ => None,
+    };
+    let mut lines = Vec::new();
+    let last = texts.len().saturating_sub(1);
+    for (at, (text, columns)) in texts.into_iter().zip(marks).enumerate() {
+        lines.push(Line { text, is_mark: false });
+        match shared {
+            Some(columns) if at == last => lines.push(mark(columns, words)),
+            None if !columns.is_empty() => lines.push(mark(columns, words)),
+            _ => {}
+        }
+    }
+    lines
+}
+
+fn mark(columns: &[usize], words: &str) -> Line {
+    let mut text = String::new();
+    for column in columns {
+        text.push_str(&" ".repeat(column.saturating_sub(text.len())));
+        text.push('^');
+    }
+    Line { text: format!("{text} {words}"), is_mark: true }
+}
+
+/// "free  k down, m up" or "summed  i j"; what has no entries says so for free indices and is empty for others.
+fn cell(heading: &str, entries: &[LedgerIndex]) -> Cell {
+    if entries.is_empty() {
+        let text = if heading.starts_with("free") { format!("{heading}none") } else { String::new() };
+        return Cell { text, odd: Vec::new() };
+    }
+    let separator = if entries.iter().any(|entry| !entry.level.is_empty()) { ", " } else { " " };
+    let mut cell = Cell { text: heading.to_owned(), odd: Vec::new() };
+    for (at, entry) in entries.iter().enumerate() {
+        if at > 0 {
+            cell.text.push_str(separator);
+        }
+        if entry.odd {
+            cell.odd.push(cell.text.width());
+        }
+        cell.text.push_str(&printable(&entry.letter));
+        if !entry.level.is_empty() {
+            cell.text.push(' ');
+            cell.text.push_str(entry.level);
+        }
+    }
+    cell
+}
+
+fn padded(text: &str, columns: usize) -> String {
+    format!("{text}{}", " ".repeat(columns.saturating_sub(text.width())))
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use indexwise_checker::finding::LedgerRow;
+
+    /// A row from "k down*, m up" and "i j": a star marks an odd entry.
+    fn row(title: &str, free: &str, summed: &str) -> LedgerRow {
+        let entries = |text: &str, separator: &str| -> Vec<LedgerIndex> {
+            text.split(separator)
+                .filter(|entry| !entry.is_empty())
+                .map(|entry| {
+                    let odd = entry.ends_with('*');
+                    let (letter, level) =
+                        entry.trim_end_matches('*').split_once(' ').unwrap_or((entry.trim_end_matches('*'), ""));
+                    let level = ["up", "down"].into_iter().find(|known| *known == level).unwrap_or_default();
+                    LedgerIndex { letter: letter.into(), level, odd }
+                })
+                .collect()
+        };
+        LedgerRow {
+            title: title.into(),
+            span: Default::default(),
+            free: entries(free, ", "),
+            summed: entries(summed, " "),
+        }
+    }
+
+    #[track_caller]
+    fn table(rows: Vec<LedgerRow>) -> String {
+        let ledger = Ledger { statement: Default::default(), rows };
+        lines(&ledger).into_iter().map(|line| line.text + "\n").collect()
+    }
+
+    #[test]
+    fn odd_entries_in_one_column_share_a_mark() {
+        let want = "left side     free  μ up              summed  i\n\
+                    right side    free  ν up\n\
+                    \x20                   ^ these differ\n";
+        assert_eq!(table(vec![row("left side", "μ up*", "i"), row("right side", "ν up*", "")]), want);
+    }
+
+    #[test]
+    fn odd_entries_elsewhere_are_marked_row_by_row() {
+        let want = "left side     free  k down, m up\n\
+                    \x20                           ^ these differ\n\
+                    right side    free  m down\n\
+                    \x20                   ^ these differ\n";
+        assert_eq!(table(vec![row("left side", "k down, m up*", ""), row("right side", "m down*", "")]), want);
+    }
+
+    #[test]
+    fn a_single_odd_entry_is_pointed_at() {
+        let want = "left side     free  none\n\
+                    right side    free  none              summed  i j\n\
+                    \x20                                               ^ here\n";
+        assert_eq!(table(vec![row("left side", "", ""), row("right side", "", "i j*")]), want);
+    }
+}

@@ -1,0 +1,307 @@
+//! What a document shows of its own habits, counted over the statements that balance.
+//!
+//! Only statements that balance vote, so that a slip or a line half typed does not sway the document. The counts
+//! turn into scores of units (see `reading.rs`) and into the level habit of each class of letters. Counts of the
+//! whole paper are the prior, those of the file weigh double.
+
+use compact_str::CompactString;
+use rustc_hash::FxHashMap;
+
+use crate::balance::{Event, judge};
+use crate::reading::{Reading, letters};
+use crate::sketch::{Shape, Sketch, Unit};
+
+use super::built_in::{CLASSES, LetterClass, class_of, is_symbol_kernel, is_usual_coordinate};
+
+/// Counts over balanced statements.
+#[derive(Clone, Debug, Default)]
+pub struct Evidence {
+    /// Statements in which a letter is surely an index.
+    index: FxHashMap<CompactString, u32>,
+    /// Statements in which a kernel's lone script is an index, by kernel.
+    lone: FxHashMap<CompactString, u32>,
+    /// Statements that balance only if this letter on this kernel is no index.
+    label: FxHashMap<(CompactString, CompactString), u32>,
+    /// Statements that balance only if a usual coordinate is an index.
+    running: FxHashMap<CompactString, u32>,
+    /// Pairs on opposite levels and on one level, by class.
+    pairs: [[u32; 2]; 5],
+    /// The same by kernel.
+    kernel_pairs: FxHashMap<CompactString, [u32; 2]>,
+    /// Balanced statements whose free levels agree, and do not, by class.
+    free_levels: [[u32; 2]; 5],
+    /// Statements with indices that balance, and that do not, by class of the odd letters.
+    balanced: [[u32; 2]; 5],
+    /// Kernels that are staggered, and stacked.
+    staggered: FxHashMap<(CompactString, u8, u8), [u32; 2]>,
+}
+
+/// What is done about same-level pairs of a class.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum LevelHabit {
+    /// Pairs stand one up, one down.
+    InForce,
+    /// All indices down, or anything goes.
+    Cartesian,
+    /// Not clear: level rules are silent.
+    Unclear,
+}
+
+/// Opposite pairs from which levels may be in force.
+const OPPOSITE_PAIRS: u32 = 5;
+/// Share of same-level pairs, in percent, up to which levels are in force.
+const SAME_LEVEL_PERCENT: u32 = 10;
+/// Share of same-level pairs, in percent, from which a class is Cartesian.
+const CARTESIAN_PERCENT: u32 = 80;
+/// Balanced statements that `free-index-levels` asks for, and the share of them, in percent, that must agree.
+const FREE_STATEMENTS: u32 = 20;
+const FREE_PERCENT: u32 = 95;
+/// A document's class is not in index notation if more than this share of its statements, in percent, is odd.
+const ODD_PERCENT: u32 = 33;
+/// Odd statements that are forgiven before that share is taken.
+const ODD_FREE: u32 = 3;
+
+impl Evidence {
+    /// Takes the votes of a statement as it was read.
+    pub fn vote(&mut self, sketch: &Sketch, reading: &Reading) {
+        if sketch.unjudged.is_some() {
+            return;
+        }
+        self.vote_balance(sketch, reading);
+        if !reading.odd.is_empty() {
+            return;
+        }
+        self.vote_labels(sketch, reading);
+        for stacked in &sketch.stacked {
+            let counts = self.staggered.entry(stacked.kernel.clone()).or_default();
+            bump(counts, usize::from(!stacked.staggered));
+        }
+        for letter in letters(sketch) {
+            let mut events = Vec::new();
+            judge(sketch, &reading.choice, letter, &mut events);
+            self.vote_letter(sketch, letter, &events);
+        }
+    }
+
+    fn vote_balance(&mut self, sketch: &Sketch, reading: &Reading) {
+        if sketch.sides.len() < 2 && sketch.sides.iter().all(|side| side.terms.len() < 2) {
+            return;
+        }
+        let mut seen = [false; 5];
+        for place in &sketch.places {
+            let index = reading.choice.index.get(place.unit as usize).copied().unwrap_or(false);
+            if index && let Some(seen) = seen.get_mut(class_of(&place.letter) as usize) {
+                *seen = true;
+            }
+        }
+        for class in CLASSES {
+            let odd = reading.odd.iter().any(|(letter, _)| class_of(letter) == class);
+            if seen.get(class as usize) == Some(&true) && let Some(counts) = self.balanced.get_mut(class as usize) {
+                bump(counts, usize::from(odd));
+            }
+        }
+    }
+
+    fn vote_labels(&mut self, sketch: &Sketch, reading: &Reading) {
+        for (unit, index) in sketch.units.iter().zip(&reading.choice.index) {
+            let likely = unit.bias > 0;
+            if likely && !index {
+                *self.label.entry((unit.kernel.clone(), unit.letter.clone())).or_default() += 1;
+            }
+            if *index && is_usual_coordinate(&unit.letter) {
+                *self.running.entry(unit.letter.clone()).or_default() += 1;
+            }
+        }
+    }
+
+    fn vote_letter(&mut self, sketch: &Sketch, letter: &str, events: &[Event]) {
+        let class = class_of(letter) as usize;
+        let mut sure = false;
+        for event in events {
+            match event {
+                Event::Pair(first, second) => {
+                    sure = true;
+                    self.vote_pair(sketch, class, *first, *second);
+                    self.vote_lone(sketch, *first);
+                    self.vote_lone(sketch, *second);
+                }
+                Event::Terms(terms) if terms.len() > 1 => {
+                    sure = true;
+                    let places = || terms.iter().filter_map(|term| term.free);
+                    places().for_each(|place| self.vote_lone(sketch, place));
+                    let mut levels = places().filter_map(|place| sketch.place(place)).map(|place| place.level);
+                    let first = levels.next();
+                    let differ = levels.any(|level| Some(level) != first);
+                    if let Some(counts) = self.free_levels.get_mut(class) {
+                        bump(counts, usize::from(differ));
+                    }
+                }
+                _ => {}
+            }
+        }
+        if sure {
+            *self.index.entry(letter.into()).or_default() += 1;
+        }
+    }
+
+    fn vote_pair(&mut self, sketch: &Sketch, class: usize, first: u32, second: u32) {
+        let (Some(one), Some(two)) = (sketch.place(first), sketch.place(second)) else { return };
+        let same = usize::from(one.level == two.level);
+        let kernels = [one, two].map(|place| sketch.units.get(place.unit as usize).map(|unit| unit.kernel.clone()));
+        let symbol = [one, two]
+            .iter()
+            .any(|place| sketch.units.get(place.unit as usize).is_some_and(|unit| is_symbol_kernel(&unit.kernel_letter)));
+        for kernel in kernels.into_iter().flatten() {
+            bump(self.kernel_pairs.entry(kernel).or_default(), same);
+        }
+        if !symbol && let Some(counts) = self.pairs.get_mut(class) {
+            bump(counts, same);
+        }
+    }
+
+    fn vote_lone(&mut self, sketch: &Sketch, place: u32) {
+        let unit = sketch.place(place).and_then(|place| sketch.units.get(place.unit as usize));
+        if let Some(unit) = unit.filter(|unit| unit.shape != Shape::Several) {
+            *self.lone.entry(unit.kernel.clone()).or_default() += 1;
+        }
+    }
+
+    /// Adds the counts of another document of the paper.
+    pub fn add(&mut self, other: &Self) {
+        merge(&mut self.index, &other.index);
+        merge(&mut self.lone, &other.lone);
+        merge(&mut self.label, &other.label);
+        merge(&mut self.running, &other.running);
+        merge_pairs(&mut self.kernel_pairs, &other.kernel_pairs);
+        merge_pairs(&mut self.staggered, &other.staggered);
+        for (own, other) in [
+            (&mut self.pairs, &other.pairs),
+            (&mut self.free_levels, &other.free_levels),
+            (&mut self.balanced, &other.balanced),
+        ] {
+            own.iter_mut().flatten().zip(other.iter().flatten()).for_each(|(own, other)| *own += other);
+        }
+    }
+
+    fn class_counts(table: &[[u32; 2]; 5], class: LetterClass) -> [u32; 2] {
+        table.get(class as usize).copied().unwrap_or_default()
+    }
+}
+
+fn bump(counts: &mut [u32; 2], at: usize) {
+    if let Some(count) = counts.get_mut(at) {
+        *count += 1;
+    }
+}
+
+// Order does not matter for sums.
+#[allow(clippy::iter_over_hash_type)]
+fn merge<K: Clone + Eq + std::hash::Hash>(into: &mut FxHashMap<K, u32>, from: &FxHashMap<K, u32>) {
+    for (key, count) in from {
+        *into.entry(key.clone()).or_default() += count;
+    }
+}
+
+#[allow(clippy::iter_over_hash_type)]
+fn merge_pairs<K: Clone + Eq + std::hash::Hash>(into: &mut FxHashMap<K, [u32; 2]>, from: &FxHashMap<K, [u32; 2]>) {
+    for (key, [first, second]) in from {
+        let counts = into.entry(key.clone()).or_default();
+        counts[0] += first;
+        counts[1] += second;
+    }
+}
+
+/// Scores of units under the evidence of a file and of its paper.
+#[derive(Clone, Copy, Debug)]
+pub struct Prices<'e> {
+    /// Counts of the file.
+    pub file: &'e Evidence,
+    /// Counts of the whole paper, the file among them.
+    pub paper: &'e Evidence,
+    /// What the author declared: a letter is a label or a coordinate.
+    pub declared: &'e super::declared::Declared,
+    /// Macros in force, to read a statement again after a change of its text.
+    pub macros: &'e indexwise_grammar::macros::Macros,
+}
+
+impl Prices<'_> {
+    /// The score of a unit, in tenths: positive for an index; its size is the price of the other reading. The
+    /// weights were set by measurement on the corpus (see the changelog for the figures).
+    pub fn score(&self, unit: &Unit) -> i32 {
+        if self.declared.is_not_index(unit) {
+            return -1000;
+        }
+        let letter = &unit.letter;
+        if is_usual_coordinate(letter) {
+            let seen = self.count(|evidence| evidence.running.get(letter).copied());
+            return unit.bias + 12 * steps(seen).min(4);
+        }
+        let label_key = (unit.kernel.clone(), letter.clone());
+        let labels = self.count(|evidence| evidence.label.get(&label_key).copied());
+        let index = steps(self.count(|evidence| evidence.index.get(letter).copied())).min(3);
+        let lone = steps(self.count(|evidence| evidence.lone.get(&unit.kernel).copied())).min(3);
+        let by_document = match unit.shape {
+            Shape::Several => 5 * index,
+            Shape::Lone if unit.bias > -40 => 7 * index + if index > 0 { 8 * lone } else { 2 * lone },
+            Shape::OnGroup if unit.bias > -40 => 4 * index,
+            _ => 0,
+        };
+        unit.bias + by_document - 12 * steps(labels).min(4)
+    }
+
+    /// The count of the file, doubled, with that of the rest of the paper.
+    fn count(&self, of: impl Fn(&Evidence) -> Option<u32>) -> u32 {
+        of(self.file).unwrap_or(0) + of(self.paper).unwrap_or(0)
+    }
+
+    /// What is done about levels in a class of letters.
+    pub fn level_habit(&self, letter: &str) -> LevelHabit {
+        let class = class_of(letter);
+        let own = Evidence::class_counts(&self.file.pairs, class);
+        let all = Evidence::class_counts(&self.paper.pairs, class);
+        let [opposite, same] = if own[0] + own[1] >= OPPOSITE_PAIRS { own } else { all };
+        let total = opposite + same;
+        if opposite >= OPPOSITE_PAIRS && same * 100 <= SAME_LEVEL_PERCENT * total {
+            LevelHabit::InForce
+        } else if total >= OPPOSITE_PAIRS && same * 100 >= CARTESIAN_PERCENT * total {
+            LevelHabit::Cartesian
+        } else {
+            LevelHabit::Unclear
+        }
+    }
+
+    /// Whether a kernel's pairs usually stand on one level, as with internal indices.
+    pub fn kernel_ignores_levels(&self, unit: &Unit) -> bool {
+        if is_symbol_kernel(&unit.kernel_letter) {
+            return true;
+        }
+        let [opposite, same] = self.file.kernel_pairs.get(&unit.kernel).copied().unwrap_or_default();
+        same >= 3 && same > opposite
+    }
+
+    /// Whether free levels are consistent enough in a class for a difference to be a slip.
+    pub fn free_levels_in_force(&self, letter: &str) -> bool {
+        let class = class_of(letter);
+        let own = Evidence::class_counts(&self.file.free_levels, class);
+        let all = Evidence::class_counts(&self.paper.free_levels, class);
+        let [agree, differ] = if own[0] + own[1] >= FREE_STATEMENTS { own } else { all };
+        let total = agree + differ;
+        total >= FREE_STATEMENTS && agree * 100 >= FREE_PERCENT * total && self.level_habit(letter) == LevelHabit::InForce
+    }
+
+    /// Whether the file writes this class of letters in index notation at all.
+    pub fn is_index_notation(&self, letter: &str) -> bool {
+        let [balanced, odd] = Evidence::class_counts(&self.file.balanced, class_of(letter));
+        odd <= ODD_FREE || (odd - ODD_FREE) * 100 <= ODD_PERCENT * (balanced + odd)
+    }
+
+    /// How often a kernel with these scripts is staggered, and stacked.
+    pub fn staggering(&self, kernel: &(CompactString, u8, u8)) -> [u32; 2] {
+        self.paper.staggered.get(kernel).copied().unwrap_or_default()
+    }
+}
+
+/// 0, 1, 2, 3, ... for 0, 1, 3, 7, ... votes: coarse, so that one statement more rarely changes a score.
+fn steps(votes: u32) -> i32 {
+    i32::try_from((votes + 1).ilog2()).unwrap_or(0)
+}

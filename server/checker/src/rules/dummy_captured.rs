@@ -1,0 +1,61 @@
+//! A dummy of an inner factor meets the same letter outside.
+
+use indexwise_grammar::span::Span;
+
+use crate::balance::{Event, Odd};
+use crate::changes::{Change, fresh_letters};
+use crate::finding::{Finding, Related, Severity};
+use crate::ledger::{Judged, shown};
+
+use super::mending::{clear_winner, fixes, index_places, mends, odd_by};
+use super::{Check, Report, Rule};
+
+pub(super) const RULE: Rule = Rule {
+    name: "dummy-captured",
+    severity: Severity::Warning,
+    summary: "A dummy of an inner factor meets the same letter outside it.",
+    page: include_str!("dummy_captured.md"),
+    on: true,
+    check: Check::Balance(check),
+};
+
+fn check(judged: &Judged<'_>) -> Option<Report> {
+    let letter = odd_by(judged, Odd::Captured).into_iter().next()?;
+    let (outside, inner) = judged.events(&letter).into_iter().find_map(|event| match event {
+        Event::Captured(outside, inner) => Some((outside, inner)),
+        _ => None,
+    })?;
+    let scope = term_of(judged, inner)?;
+    let pair: Vec<u32> = index_places(judged, &letter)
+        .into_iter()
+        .filter(|place| scope.holds(judged.span(*place)) && !outside.contains(place))
+        .collect();
+    let changes = fresh_letters(&judged.sketch, &letter)
+        .into_iter()
+        .take(2)
+        .enumerate()
+        .map(|(n, fresh)| (Change::Rename(pair.clone(), fresh), if n == 0 { 1 } else { 0 }))
+        .collect();
+    let mends = mends(judged, changes);
+    let related = outside.iter().map(|place| Related {
+        span: judged.span(*place),
+        message: format!("{} stands outside here", shown(&letter)),
+    });
+    let finding = Finding {
+        rule: RULE.name,
+        severity: RULE.severity,
+        span: judged.span(inner),
+        message: format!("{0} is summed inside, and {0} stands outside in the same product", shown(&letter)),
+        related: related.collect(),
+        fixes: fixes(judged, &mends, clear_winner(&mends)),
+        ledger: Some(judged.view(std::slice::from_ref(&letter))),
+    };
+    let mended = mends.into_iter().next().map(|mend| (mend.sketch, mend.choice));
+    Some(Report { finding, mended })
+}
+
+/// The term of a side that a place stands in.
+fn term_of(judged: &Judged<'_>, place: u32) -> Option<Span> {
+    let at = judged.span(place);
+    judged.sketch.sides.iter().flat_map(|side| &side.terms).map(|term| term.span).find(|span| span.holds(at))
+}

@@ -1,0 +1,80 @@
+//! What is out of order in a statement under a fixed choice: the common ground of the balance rules and of the
+//! trial of fixes.
+
+use compact_str::CompactString;
+
+use crate::balance::{Choice, Event, Odd, judge, same_level};
+use crate::conventions::inferred::{LevelHabit, Prices};
+use crate::reading::letters;
+use crate::sketch::Sketch;
+
+/// One thing out of order.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub(super) enum Fault {
+    /// A letter is out of balance.
+    Odd(CompactString, Odd),
+    /// A pair on one level.
+    PairLevel(CompactString, u32, u32),
+    /// A free letter on two levels.
+    FreeLevel(CompactString),
+}
+
+/// Letters out of balance.
+pub(crate) fn odd_letters(sketch: &Sketch, choice: &Choice) -> Vec<(CompactString, Odd)> {
+    letters(sketch)
+        .into_iter()
+        .map(|letter| (letter.into(), judge(sketch, choice, letter, &mut Vec::new())))
+        .filter(|(_, odd)| *odd != Odd::Balanced)
+        .collect()
+}
+
+/// Everything out of order.
+pub(super) fn faults(sketch: &Sketch, choice: &Choice, prices: &Prices<'_>) -> Vec<Fault> {
+    let mut out = Vec::new();
+    for letter in letters(sketch) {
+        let mut events = Vec::new();
+        let odd = judge(sketch, choice, letter, &mut events);
+        if odd != Odd::Balanced {
+            out.push(Fault::Odd(letter.into(), odd));
+        }
+        out.extend(pair_faults(sketch, letter, &events, prices));
+        out.extend(free_fault(sketch, letter, &events, prices));
+    }
+    out
+}
+
+/// Pairs of a letter on one level where levels are in force.
+pub(super) fn pair_faults(sketch: &Sketch, letter: &str, events: &[Event], prices: &Prices<'_>) -> Vec<Fault> {
+    if prices.level_habit(letter) != LevelHabit::InForce {
+        return Vec::new();
+    }
+    let exempt = |place: u32| {
+        let unit = sketch.place(place).and_then(|place| sketch.units.get(place.unit as usize));
+        unit.is_none_or(|unit| prices.kernel_ignores_levels(unit))
+    };
+    events
+        .iter()
+        .filter_map(|event| match event {
+            Event::Pair(one, two) if same_level(sketch, *one, *two).is_some() && !exempt(*one) && !exempt(*two) => {
+                Some(Fault::PairLevel(letter.into(), *one, *two))
+            }
+            _ => None,
+        })
+        .collect()
+}
+
+/// A free letter up in one term and down in another where that is against the habit.
+pub(super) fn free_fault(sketch: &Sketch, letter: &str, events: &[Event], prices: &Prices<'_>) -> Option<Fault> {
+    if !prices.free_levels_in_force(letter) {
+        return None;
+    }
+    let differs = events.iter().any(|event| match event {
+        Event::Terms(terms) => {
+            let mut levels = terms.iter().filter_map(|term| term.free).filter_map(|place| sketch.place(place));
+            let first = levels.next().map(|place| place.level);
+            levels.any(|place| Some(place.level) != first)
+        }
+        _ => false,
+    });
+    differs.then(|| Fault::FreeLevel(letter.into()))
+}

@@ -1,0 +1,67 @@
+//! A script contains a whole tensor, and moving its brace restores the balance.
+
+use indexwise_grammar::span::Span;
+
+use crate::finding::{Edit, Finding, Fix, Severity};
+use crate::ledger::Judged;
+use crate::reading::read;
+use crate::sketch::Sketch;
+
+use super::{Check, Report, Rule};
+
+pub(super) const RULE: Rule = Rule {
+    name: "script-swallows-factor",
+    severity: Severity::Error,
+    summary: "A script contains a whole tensor, and moving its brace restores the balance.",
+    page: include_str!("script_swallows_factor.md"),
+    on: true,
+    check: Check::Balance(check),
+};
+
+fn check(judged: &Judged<'_>) -> Option<Report> {
+    for swallowed in &judged.sketch.swallowed {
+        let text = judged.text;
+        let last = Span { start: swallowed.script.end.saturating_sub(1), end: swallowed.script.end };
+        if last.of(text) != "}" {
+            continue;
+        }
+        let at = swallowed.kept.of(text).trim_end().len();
+        let at = Span::new(swallowed.kept.start as usize + at, swallowed.kept.start as usize + at);
+        let edits = vec![
+            Edit { span: at, text: "}".to_owned() },
+            Edit { span: last, text: String::new() },
+        ];
+        let Some((sketch, choice)) = reread(judged, &edits) else { continue };
+        let rest = Span { start: swallowed.from.start, end: last.start };
+        let finding = Finding {
+            rule: RULE.name,
+            severity: RULE.severity,
+            span: rest,
+            message: format!("the script swallows {}: its brace closes too late", rest.of(text)),
+            related: Vec::new(),
+            fixes: vec![Fix { title: format!("Close the brace before {}", rest.of(text)), edits, bulk: Ok(()) }],
+            ledger: Some(judged.view(&[])),
+        };
+        return Some(Report { finding, mended: Some((sketch, choice)) });
+    }
+    None
+}
+
+/// The statement read again with the edits made; nothing unless it is in balance then, and was not before or gains
+/// an index by it.
+fn reread(judged: &Judged<'_>, edits: &[Edit]) -> Option<(Sketch, crate::balance::Choice)> {
+    let statement = judged.sketch.span;
+    let mut text = statement.of(judged.text).to_owned();
+    for edit in edits.iter().rev() {
+        let start = edit.span.start.checked_sub(statement.start)? as usize;
+        let end = edit.span.end.checked_sub(statement.start)? as usize;
+        text.get(start..end)?;
+        text.replace_range(start..end, &edit.text);
+    }
+    let formula = indexwise_grammar::read_formula(&text, &judged.prices.macros.inherited());
+    let [statement] = formula.statements.as_slice() else { return None };
+    let sketch = Sketch::of(statement);
+    let reading = read(&sketch, &judged.prices);
+    let gains = sketch.places.len() > judged.sketch.places.len();
+    (reading.odd.is_empty() && gains && sketch.swallowed.is_empty()).then_some((sketch, reading.choice))
+}

@@ -1,0 +1,175 @@
+//! The sketch of a statement: every letter that stands in a script, and how products and sums hold them.
+//!
+//! A sketch is what remains of a statement when everything that cannot matter for the balance of indices is gone.
+//! It does not say yet what is an index: each letter belongs to a unit (one kernel with one letter in one kind of
+//! script), and a unit is read as an index or not; scopes that may or may not count are switches. `reading.rs`
+//! chooses; `balance.rs` judges a choice. A sketch depends on the formula's own tree alone.
+
+mod build;
+mod scripts;
+
+use compact_str::CompactString;
+use indexwise_grammar::span::Span;
+use indexwise_grammar::tree::{Level, RelationKind, Statement};
+
+/// A statement reduced to what matters for its balance.
+#[derive(Clone, Debug, Default)]
+pub struct Sketch {
+    /// The statement's place.
+    pub span: Span,
+    /// One node for each side.
+    pub sides: Vec<Side>,
+    /// Between the sides.
+    pub relations: Vec<RelationKind>,
+    /// Letters in scripts.
+    pub places: Vec<Place>,
+    /// What they may be read as, together.
+    pub units: Vec<Unit>,
+    /// Scopes that may count or not.
+    pub switches: Vec<Switch>,
+    /// The switch that lets sum signs reach over the following terms, if there is a sum sign.
+    pub reach: Option<u32>,
+    /// Letters and words that stand as quantities, with their places.
+    pub quantities: Vec<(CompactString, Span)>,
+    /// Scripts that hold a whole factor behind a letter.
+    pub swallowed: Vec<Swallowed>,
+    /// Stacked kernels: upper and lower scripts one above the other, with the kernel's name.
+    pub stacked: Vec<Stacked>,
+    /// Why the statement is not judged, if it is not.
+    pub unjudged: Option<&'static str>,
+}
+
+/// A side of a statement.
+#[derive(Clone, Debug)]
+pub struct Side {
+    /// Its place.
+    pub span: Span,
+    /// Its terms.
+    pub terms: Vec<TermNode>,
+    /// Whether it matches anything: zero, words, a list.
+    pub any: bool,
+}
+
+/// A term of a side or of a sum in brackets.
+#[derive(Clone, Debug)]
+pub struct TermNode {
+    /// Its place.
+    pub span: Span,
+    /// Its factors.
+    pub nodes: Vec<Node>,
+    /// Whether it matches anything.
+    pub any: bool,
+    /// Whether it is written without indices in a vector notation, so that it may stand for one with a free index.
+    pub shorthand: bool,
+}
+
+/// How letters are held together.
+#[derive(Clone, Debug)]
+pub enum Node {
+    /// A letter in a script.
+    Place(u32),
+    /// Factors, local to nothing.
+    Product(Vec<Node>),
+    /// A sum in brackets.
+    Sum(Vec<TermNode>),
+    /// A square: closes the free indices inside while the switch is on.
+    Square(Box<Node>, u32),
+    /// Another power: a free index inside is not judged.
+    Power(Box<Node>),
+    /// Counts only while the switch is on.
+    Switch(u32, Box<Node>),
+    /// A sum sign: letters bound in the rest of the product, each perhaps under a switch.
+    Bind(Vec<(CompactString, Option<u32>)>),
+}
+
+/// A letter in a script.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Place {
+    /// The letter in LaTeX spelling with its primes.
+    pub letter: CompactString,
+    /// The level that counts (below a fraction line it is flipped).
+    pub level: Level,
+    /// The level as written.
+    pub written: Level,
+    /// The letter.
+    pub span: Span,
+    /// The script it stands in.
+    pub script: Span,
+    /// How many letters share the script.
+    pub company: u16,
+    /// What it is read with.
+    pub unit: u32,
+}
+
+/// A kernel with one letter in one kind of script: read alike throughout the statement.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Unit {
+    /// The kernel's name with decorations; empty for a bracket.
+    pub kernel: CompactString,
+    /// The kernel's bare letter.
+    pub kernel_letter: CompactString,
+    /// The letter.
+    pub letter: CompactString,
+    /// The level as written.
+    pub level: Level,
+    /// The kind of script.
+    pub shape: Shape,
+    /// What notation alone says, in tenths of a unit of price: positive for an index.
+    pub bias: i32,
+}
+
+/// The kind of script that a letter stands in.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Hash)]
+pub enum Shape {
+    /// The only letter on its kernel.
+    Lone,
+    /// One of several letters or numbers on its kernel.
+    Several,
+    /// On a bracket.
+    OnGroup,
+}
+
+/// A scope that may count or not.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub struct Switch {
+    /// Whether it counts in the likelier reading.
+    pub on: bool,
+    /// What the other reading costs, in tenths.
+    pub price: i32,
+}
+
+/// A script that seems to have swallowed a factor: `\nabla_{\mu T^{\mu i}}`.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Swallowed {
+    /// The whole script with its braces.
+    pub script: Span,
+    /// Where the swallowed part begins.
+    pub from: Span,
+    /// The letters that the script would hold without it.
+    pub kept: Span,
+}
+
+/// A kernel with scripts on both levels, each with letters.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Stacked {
+    /// The kernel's name and numbers of letters above and below.
+    pub kernel: (CompactString, u8, u8),
+    /// Its place with scripts.
+    pub span: Span,
+    /// The later script.
+    pub second: Span,
+    /// Whether the scripts are staggered.
+    pub staggered: bool,
+}
+
+impl Sketch {
+    /// The sketch of a statement.
+    pub fn of(statement: &Statement) -> Self {
+        build::sketch(statement)
+    }
+
+    /// The place of a number.
+    pub fn place(&self, number: u32) -> Option<&Place> {
+        self.places.get(number as usize)
+    }
+}

@@ -1,0 +1,355 @@
+//! From the tree of a statement to its sketch.
+//!
+//! One walk over the factors of every term. Here stand the trade's habits of writing that need no vote: what
+//! matches anything, what is a function's argument, what flips below a line, what binds.
+
+use compact_str::CompactString;
+use indexwise_grammar::tree::{
+    Atom, Big, Bracket, Factor, Group, ItemKind, Joint, Kernel, Level, Statement, Sum, Term,
+};
+
+use crate::conventions::built_in::{is_derivative, is_point_kernel};
+
+use super::scripts::{Carrier, Power, read_scripts};
+use super::{Node, Side, Sketch, Switch, TermNode, Unit};
+
+/// Price of letting a bracket after a kernel count as a product when it looks like an argument, or the reverse.
+const ARGUMENT_PRICE: i32 = 10;
+/// The same where only the lack of a sum speaks for an argument.
+const DOUBTFUL_ARGUMENT_PRICE: i32 = 20;
+
+pub(super) fn sketch(statement: &Statement) -> Sketch {
+    let mut builder = Builder::default();
+    builder.sketch.span = statement.span;
+    builder.sketch.relations = statement.relations.iter().map(|relation| relation.kind).collect();
+    for side in &statement.sides {
+        let terms: Vec<TermNode> = side.terms.iter().map(|term| builder.term(term, false)).collect();
+        let any = terms.iter().all(|term| term.any);
+        builder.sketch.sides.push(Side { span: side.span, terms, any });
+    }
+    let mut sketch = builder.sketch;
+    if sketch.relations.is_empty() && sketch.sides.iter().all(|side| side.any) {
+        sketch.unjudged = sketch.unjudged.or(Some("nothing to compare"));
+    }
+    sketch
+}
+
+/// Gathers the sketch while the tree is walked.
+#[derive(Default)]
+pub(super) struct Builder {
+    pub sketch: Sketch,
+}
+
+impl Builder {
+    /// The number of a unit, new or known.
+    pub fn unit(&mut self, unit: Unit) -> u32 {
+        let known = self.sketch.units.iter().position(|other| *other == unit);
+        let at = known.unwrap_or_else(|| {
+            self.sketch.units.push(unit);
+            self.sketch.units.len() - 1
+        });
+        u32::try_from(at).unwrap_or(u32::MAX)
+    }
+
+    /// A new switch.
+    pub fn switch(&mut self, switch: Switch) -> u32 {
+        self.sketch.switches.push(switch);
+        u32::try_from(self.sketch.switches.len() - 1).unwrap_or(u32::MAX)
+    }
+
+    fn term(&mut self, term: &Term, flip: bool) -> TermNode {
+        let places = self.sketch.places.len();
+        let mut walk = Walk { factors: &term.factors, at: 0, flip, below: 0, nodes: Vec::new(), any: false, vector: false };
+        if matches_anything(term) {
+            walk.any = true;
+        }
+        while let Some(factor) = term.factors.get(walk.at) {
+            walk.at += 1;
+            self.factor(&mut walk, factor);
+        }
+        let bare = self.sketch.places.len() == places;
+        let (any, shorthand) = (walk.any, bare && walk.vector);
+        TermNode { span: term.span, nodes: walk.nodes, any, shorthand }
+    }
+
+    fn factor(&mut self, walk: &mut Walk<'_>, factor: &Factor) {
+        if factor.joint == Joint::Slash {
+            walk.below = 1 + usize::from(is_differential(factor));
+        }
+        let flip = walk.flip != (walk.below > 0);
+        walk.below = walk.below.saturating_sub(1);
+        match &factor.atom {
+            Atom::Kernel(kernel) => self.kernel(walk, factor, kernel, flip),
+            Atom::Group(group) => self.group(walk, factor, group, flip),
+            Atom::Fraction(fraction) => {
+                self.inline(walk, &fraction.over, flip);
+                self.inline(walk, &fraction.under, !flip);
+            }
+            Atom::Root(sum) | Atom::Labelled(sum) => self.inline(walk, sum, flip),
+            Atom::Wrapped(sum) if sum.terms.is_empty() => {}
+            Atom::Wrapped(sum) => {
+                let node = self.sum_node(walk, sum, flip);
+                self.scripted_group(walk, factor, node, flip);
+            }
+            Atom::Big(Big::Sum | Big::Limit) => self.bind(walk, factor),
+            Atom::Big(Big::Integral) | Atom::Number(_) | Atom::Unread(_) => {}
+            Atom::Function(name) => self.function(walk, name, flip),
+            Atom::Matrix | Atom::Text(_) | Atom::Dots | Atom::Order | Atom::Unknown(..) => walk.any = true,
+        }
+    }
+
+    fn kernel(&mut self, walk: &mut Walk<'_>, factor: &Factor, kernel: &Kernel, flip: bool) {
+        if walk.order_of(kernel, factor) {
+            walk.any = true;
+            walk.at += 1;
+            return;
+        }
+        walk.vector |= kernel.bold || kernel.letter == "\\nabla";
+        let carrier = Carrier { name: &kernel.name, letter: &kernel.letter, bold: kernel.bold, group: false };
+        let scripts = read_scripts(self, carrier, &factor.scripts, flip);
+        if scripts.nodes.is_empty() && !kernel.word {
+            self.sketch.quantities.push((kernel.letter.clone(), factor.span));
+        }
+        let indexed = !scripts.nodes.is_empty();
+        self.powered(walk, Node::Product(scripts.nodes), scripts.power);
+        self.arguments(walk, kernel, indexed);
+    }
+
+    /// Pushes a node under its power.
+    fn powered(&mut self, walk: &mut Walk<'_>, node: Node, power: Option<Power>) {
+        let empty = match &node {
+            Node::Product(nodes) => nodes.is_empty(),
+            Node::Sum(terms) => terms.iter().all(|term| term.nodes.is_empty()),
+            _ => false,
+        };
+        if empty {
+            return;
+        }
+        walk.nodes.push(match power {
+            None => node,
+            Some(Power::Square) => Node::Square(Box::new(node), self.switch(Switch { on: true, price: 0 })),
+            Some(Power::Other) => Node::Power(Box::new(node)),
+        });
+    }
+
+    /// A bracket right after a kernel: an argument, a factor, or whichever balances.
+    fn arguments(&mut self, walk: &mut Walk<'_>, kernel: &Kernel, indexed: bool) {
+        while let Some(next) = walk.factors.get(walk.at) {
+            let Atom::Group(group) = &next.atom else { return };
+            if next.joint != Joint::Beside || group.parts.is_empty() || is_derivative(&kernel.letter) {
+                return;
+            }
+            let Some((on, price)) = argument_odds(kernel, group, indexed) else { return };
+            walk.at += 1;
+            let nodes = group.parts.iter().flat_map(|part| &part.sides).map(|side| self.sum_only(side, walk.flip)).collect();
+            let switch = self.switch(Switch { on, price });
+            self.scripted_group(walk, next, Node::Switch(switch, Box::new(Node::Product(nodes))), walk.flip);
+            if indexed {
+                return;
+            }
+        }
+    }
+
+    fn group(&mut self, walk: &mut Walk<'_>, factor: &Factor, group: &Group, flip: bool) {
+        // An evaluation bar, or a condition in brackets: nothing of the term.
+        if group.parts.is_empty() || group.parts.iter().any(|part| !part.relations.is_empty()) {
+            return;
+        }
+        if group.parts.len() > 1 {
+            return self.list(walk, factor, group, flip);
+        }
+        let Some(sum) = group.parts.first().and_then(|part| part.sides.first()) else { return };
+        let mut node = self.sum_node(walk, sum, flip);
+        if walk.factors.len() == 1 && is_lone_kernel(sum) && factor.scripts.is_empty() {
+            // `(a_{ij})` alone names the matrix.
+            let switch = self.switch(Switch { on: true, price: 0 });
+            node = Node::Switch(switch, Box::new(node));
+        }
+        if matches!(group.bracket, Bracket::Bars | Bracket::Angle) {
+            let scripts = read_scripts(&mut Builder::default(), Carrier::BRACKET, &factor.scripts, flip);
+            return self.powered(walk, node, scripts.power);
+        }
+        self.scripted_group(walk, factor, node, flip);
+    }
+
+    /// Several parts in a bracket: a commutator multiplies them, a list in round brackets spells components out.
+    fn list(&mut self, walk: &mut Walk<'_>, factor: &Factor, group: &Group, flip: bool) {
+        if matches!(group.bracket, Bracket::Round | Bracket::Bars) {
+            walk.any = true;
+            return;
+        }
+        let nodes = group.parts.iter().flat_map(|part| &part.sides).map(|side| self.sum_only(side, flip)).collect();
+        let node = if group.bracket == Bracket::Curly {
+            let switch = self.switch(Switch { on: true, price: 0 });
+            Node::Switch(switch, Box::new(Node::Product(nodes)))
+        } else {
+            Node::Product(nodes)
+        };
+        self.scripted_group(walk, factor, node, flip);
+    }
+
+    fn scripted_group(&mut self, walk: &mut Walk<'_>, factor: &Factor, node: Node, flip: bool) {
+        let scripts = read_scripts(self, Carrier::BRACKET, &factor.scripts, flip);
+        self.powered(walk, node, scripts.power);
+        walk.nodes.extend(scripts.nodes);
+    }
+
+    /// Numerator, denominator, radicand: a sum of its own, like one in brackets.
+    fn inline(&mut self, walk: &mut Walk<'_>, sum: &Sum, flip: bool) {
+        let node = self.sum_node(walk, sum, flip);
+        walk.nodes.push(node);
+    }
+
+    fn sum_node(&mut self, walk: &mut Walk<'_>, sum: &Sum, flip: bool) -> Node {
+        let terms: Vec<TermNode> = sum.terms.iter().map(|term| self.term(term, flip)).collect();
+        walk.any |= matches!(terms.as_slice(), [term] if term.any) && !is_zero(sum);
+        walk.vector |= matches!(terms.as_slice(), [term] if term.shorthand);
+        Node::Sum(terms)
+    }
+
+    /// As `sum_node`, where a part that matches anything does not spoil the term around it.
+    fn sum_only(&mut self, sum: &Sum, flip: bool) -> Node {
+        Node::Sum(sum.terms.iter().map(|term| self.term(term, flip)).collect())
+    }
+
+    /// `\det`, `\operatorname{tr}` name a matrix by its components; other functions take an ordinary factor.
+    fn function(&mut self, walk: &mut Walk<'_>, name: &str, flip: bool) {
+        match name {
+            "diag" | "const" => walk.any = true,
+            "det" | "tr" | "Tr" | "trace" | "Trace" | "rank" | "rk" | "dim" | "ker" | "adj" | "cof" | "sym" | "skew" | "dev"
+            | "determinant" | "Det" | "span" | "Span" | "sgn" | "sign" | "vol" | "Vol" | "im" => {
+                let Some(next) = walk.factors.get(walk.at) else { return };
+                walk.at += 1;
+                let mut inner = Walk { factors: std::slice::from_ref(next), at: 1, ..Walk::of(flip) };
+                self.factor(&mut inner, next);
+                let switch = self.switch(Switch { on: false, price: 0 });
+                walk.nodes.push(Node::Switch(switch, Box::new(Node::Product(inner.nodes))));
+            }
+            _ => {}
+        }
+    }
+
+    /// A sum sign binds the letters of its bounds: those before a relation surely, those after one perhaps.
+    fn bind(&mut self, walk: &mut Walk<'_>, factor: &Factor) {
+        let mut bound: Vec<(CompactString, Option<u32>)> = Vec::new();
+        for script in factor.scripts.iter().filter(|script| script.level == Level::Down) {
+            let mut doubtful = None;
+            for item in &script.items {
+                match &item.kind {
+                    ItemKind::Relation => doubtful = Some(self.switch(Switch { on: true, price: 0 })),
+                    ItemKind::Letter(letter) | ItemKind::Styled(letter) => bound.push((letter.clone(), doubtful)),
+                    ItemKind::Factor(inner) => {
+                        if let Atom::Kernel(kernel) = &inner.atom {
+                            bound.push((kernel.name.clone(), doubtful));
+                        }
+                    }
+                    _ => {}
+                }
+            }
+        }
+        if !bound.is_empty() {
+            walk.nodes.push(Node::Bind(bound));
+        }
+        if self.sketch.reach.is_none() {
+            self.sketch.reach = Some(self.switch(Switch { on: false, price: 0 }));
+        }
+    }
+}
+
+/// The factors of one term on their way into nodes.
+struct Walk<'t> {
+    factors: &'t [Factor],
+    /// The next factor.
+    at: usize,
+    flip: bool,
+    /// How many factors more stand below a slash.
+    below: usize,
+    nodes: Vec<Node>,
+    any: bool,
+    vector: bool,
+}
+
+impl<'t> Walk<'t> {
+    fn of(flip: bool) -> Self {
+        Walk { factors: &[], at: 0, flip, below: 0, nodes: Vec::new(), any: false, vector: false }
+    }
+
+    /// `O(..)`, `\mathcal O(..)`.
+    fn order_of(&self, kernel: &Kernel, factor: &Factor) -> bool {
+        let next = self.factors.get(self.at).map(|next| &next.atom);
+        matches!(kernel.letter.as_str(), "O" | "o")
+            && factor.scripts.is_empty()
+            && matches!(next, Some(Atom::Group(Group { bracket: Bracket::Round | Bracket::Square, .. })))
+    }
+}
+
+impl Carrier<'_> {
+    pub(super) const BRACKET: Carrier<'static> = Carrier { name: "", letter: "", bold: false, group: true };
+}
+
+/// Terms that fit whatever indices the others have: nothing, zero, words, "h.c.".
+fn matches_anything(term: &Term) -> bool {
+    match term.factors.as_slice() {
+        [] => true,
+        [Factor { atom: Atom::Number(number), .. }] => number == "0",
+        [Factor { atom: Atom::Kernel(kernel), scripts, .. }] => {
+            (kernel.word && scripts.is_empty()) || (kernel.bold && kernel.letter == "0")
+        }
+        [first, second] => {
+            let letter = |factor: &Factor| match &factor.atom {
+                Atom::Kernel(kernel) if factor.scripts.is_empty() => Some(kernel.letter.clone()),
+                _ => None,
+            };
+            matches!(
+                (letter(first).as_deref(), letter(second).as_deref()),
+                (Some("h" | "c" | "H"), Some("c")) | (Some("h"), Some("o"))
+            ) && term.sign.is_some()
+        }
+        _ => false,
+    }
+}
+
+fn is_zero(sum: &Sum) -> bool {
+    matches!(sum.terms.as_slice(), [term] if matches!(term.factors.as_slice(), [Factor { atom: Atom::Number(n), .. }] if n == "0"))
+}
+
+fn is_lone_kernel(sum: &Sum) -> bool {
+    matches!(sum.terms.as_slice(), [term] if matches!(term.factors.as_slice(), [Factor { atom: Atom::Kernel(_), .. }]))
+}
+
+/// `\partial`, `d`, `\delta` without an index of their own: a slash before them reaches over the next factor too.
+fn is_differential(factor: &Factor) -> bool {
+    let Atom::Kernel(kernel) = &factor.atom else { return false };
+    let letters = factor.scripts.iter().flat_map(|script| &script.items).any(|item| matches!(item.kind, ItemKind::Letter(_)));
+    !letters && matches!(kernel.letter.as_str(), "\\partial" | "d" | "\\delta" | "D" | "\\Delta")
+}
+
+/// Whether a bracket after a kernel counts, and what the other reading costs; nothing where it is surely a factor.
+fn argument_odds(kernel: &Kernel, group: &Group, indexed: bool) -> Option<(bool, i32)> {
+    let sums = || group.parts.iter().flat_map(|part| &part.sides);
+    match group.bracket {
+        // A functional, `S[g]`; a commutator or a factor if the kernel has indices.
+        Bracket::Square if indexed => return None,
+        Bracket::Square => return (group.parts.len() == 1 && sums().all(is_lone_kernel)).then_some((false, ARGUMENT_PRICE)),
+        Bracket::Round => {}
+        Bracket::Curly | Bracket::Bars | Bracket::Angle | Bracket::Pair => return None,
+    }
+    if group.parts.len() > 1 || group.parts.iter().any(|part| !part.relations.is_empty()) {
+        return Some((false, ARGUMENT_PRICE));
+    }
+    let points = sums().all(|sum| !sum.terms.is_empty() && sum.terms.iter().all(begins_with_point));
+    if points {
+        return Some((false, ARGUMENT_PRICE));
+    }
+    let lone_term = sums().all(|sum| sum.terms.len() == 1 && sum.terms.iter().all(|term| term.sign.is_none()));
+    (lone_term && !indexed && kernel.letter != "d").then_some((true, DOUBTFUL_ARGUMENT_PRICE))
+}
+
+fn begins_with_point(term: &Term) -> bool {
+    let first = term.factors.iter().find(|factor| !matches!(factor.atom, Atom::Number(_)));
+    match first.map(|factor| &factor.atom) {
+        Some(Atom::Kernel(kernel)) => is_point_kernel(&kernel.letter),
+        None => true,
+        _ => false,
+    }
+}

@@ -1,0 +1,351 @@
+//! Scripts of one factor: which of their letters may be indices, and what notation alone says of each.
+
+use compact_str::{CompactString, format_compact};
+use indexwise_grammar::span::Span;
+use indexwise_grammar::tree::{Atom, Factor, Item, ItemKind, Level, Script};
+
+use crate::conventions::built_in::{
+    LetterClass, bare_letter, class_of, is_basis_kernel, is_derivative, is_index_kernel, is_label_word,
+    is_labelled_operator, is_usual_coordinate,
+};
+
+use super::{Node, Place, Shape, Stacked, Switch, Unit};
+use super::build::Builder;
+
+/// Who carries the scripts.
+#[derive(Clone, Copy)]
+pub(super) struct Carrier<'t> {
+    /// The name with decorations; empty for a bracket.
+    pub name: &'t str,
+    /// The bare letter.
+    pub letter: &'t str,
+    pub bold: bool,
+    pub group: bool,
+}
+
+/// What the scripts of a factor do to it.
+#[derive(Default)]
+pub(super) struct Scripts {
+    /// Letters that may be indices.
+    pub nodes: Vec<Node>,
+    /// A square or another power stands on the factor.
+    pub power: Option<Power>,
+    /// The factor carries anything at all.
+    pub scripted: bool,
+}
+
+/// A power on a factor.
+#[derive(Clone, Copy, PartialEq, Eq)]
+pub(super) enum Power {
+    Square,
+    Other,
+}
+
+/// A letter of a script that may be an index.
+struct Candidate<'t> {
+    letter: CompactString,
+    span: Span,
+    script: &'t Script,
+    fixed: Option<i32>,
+    parenthesised: bool,
+    after_number: bool,
+}
+
+/// Price of reading a word that is listed as a label as indices after all.
+const WORD_AS_INDICES: i32 = 10;
+/// Price of reading an unlisted word as a label.
+const INDICES_AS_WORD: i32 = 30;
+
+/// Reads the scripts of a factor.
+pub(super) fn read_scripts(builder: &mut Builder, carrier: Carrier<'_>, scripts: &[Script], flip: bool) -> Scripts {
+    let mut out = Scripts { scripted: !scripts.is_empty(), ..Scripts::default() };
+    let mut candidates: Vec<Candidate<'_>> = Vec::new();
+    let mut numbers = 0;
+    for script in scripts.iter().filter(|script| !script.before) {
+        if script.items.iter().any(|item| item.kind == ItemKind::Dots) {
+            builder.sketch.unjudged = Some("an ellipsis stands in a script");
+        }
+        if let Some(power) = power_of(script, carrier, scripts) {
+            out.power = Some(power);
+        } else if holds_indices(script) {
+            numbers += script.items.iter().filter(|item| matches!(item.kind, ItemKind::Number(_))).count();
+            collect(builder, carrier, script, &mut candidates);
+        }
+    }
+    note_stacked(builder, carrier, scripts, &candidates);
+    let slots = candidates.len() + numbers;
+    let components = candidates.iter().all(|c| is_usual_coordinate(&c.letter));
+    let words = words(&candidates);
+    let mut at = 0;
+    while at < candidates.len() {
+        let word = words.iter().find(|word| word.from == at);
+        let length = word.map_or(1, |word| word.length);
+        let nodes: Vec<Node> = candidates
+            .iter()
+            .skip(at)
+            .take(length)
+            .map(|candidate| place(builder, carrier, candidate, slots, components, flip))
+            .collect();
+        match word {
+            Some(word) => {
+                let (on, price) = if word.listed { (false, WORD_AS_INDICES) } else { (true, INDICES_AS_WORD) };
+                let switch = builder.switch(Switch { on, price });
+                out.nodes.push(Node::Switch(switch, Box::new(Node::Product(nodes))));
+            }
+            None => out.nodes.extend(nodes),
+        }
+        at += length;
+    }
+    out
+}
+
+/// A number above that is a power rather than a component: squares close, others are not judged.
+fn power_of(script: &Script, carrier: Carrier<'_>, all: &[Script]) -> Option<Power> {
+    if script.level == Level::Down {
+        return None;
+    }
+    let lower_letters = all.iter().filter(|other| other.level == Level::Down).flat_map(|other| &other.items);
+    let lower = lower_letters.filter(|item| matches!(item.kind, ItemKind::Letter(_))).count();
+    match script.items.as_slice() {
+        [Item { kind: ItemKind::Number(number), .. }] => match number.as_str() {
+            "2" => Some(Power::Square),
+            "0" | "1" => None,
+            "3" if lower > 1 && !carrier.group => None,
+            _ => Some(Power::Other),
+        },
+        // An exponent with an arithmetic of its own: a scalar formula, a scope apart.
+        items if items.iter().any(|item| is_arithmetic(&item.kind)) => Some(Power::Other),
+        [Item { kind: ItemKind::Letter(letter), .. }] if carrier.group && matches!(letter.as_str(), "n" | "N" | "p" | "w") => {
+            Some(Power::Other)
+        }
+        _ => None,
+    }
+}
+
+fn is_arithmetic(kind: &ItemKind) -> bool {
+    match kind {
+        ItemKind::Sign | ItemKind::Operator => true,
+        ItemKind::Factor(factor) => !matches!(factor.atom, Atom::Kernel(_) | Atom::Unknown(..) | Atom::Wrapped(_)),
+        _ => false,
+    }
+}
+
+/// Whether a script can hold indices: not a condition, not arithmetic.
+fn holds_indices(script: &Script) -> bool {
+    !script.items.iter().any(|item| matches!(item.kind, ItemKind::Relation | ItemKind::Sign | ItemKind::Operator))
+}
+
+/// Gathers the letters of a script.
+fn collect<'t>(builder: &mut Builder, carrier: Carrier<'_>, script: &'t Script, out: &mut Vec<Candidate<'t>>) {
+    let items = &script.items;
+    let inside = matches!(
+        (items.first().map(|i| &i.kind), items.last().map(|i| &i.kind)),
+        (Some(ItemKind::Open(_)), Some(ItemKind::Close(_)))
+    );
+    let letters = items.iter().filter(|item| matches!(item.kind, ItemKind::Letter(_))).count();
+    for (n, item) in items.iter().enumerate() {
+        let before = n.checked_sub(1).and_then(|n| items.get(n)).map(|item| &item.kind);
+        let candidate = |letter: CompactString, fixed| Candidate {
+            letter,
+            span: item.span,
+            script,
+            fixed,
+            parenthesised: inside && letters == 1,
+            after_number: matches!(before, Some(ItemKind::Number(number)) if number.as_str() > "3"),
+        };
+        match &item.kind {
+            ItemKind::Letter(letter) => out.push(candidate(letter.clone(), None)),
+            ItemKind::Factor(factor) => {
+                if let Some(letter) = lent(builder, carrier, script, item, factor) {
+                    out.push(candidate(letter, None));
+                }
+            }
+            _ => {}
+        }
+    }
+}
+
+/// A script that holds an indexed kernel lends its index (`\nabla_{e_\mu}`, `\partial_{x^i}`); a letter numbered by
+/// a letter is a letter of its own; several factors after a letter are a swallowed product.
+fn lent(
+    builder: &mut Builder,
+    carrier: Carrier<'_>,
+    script: &Script,
+    item: &Item,
+    factor: &Factor,
+) -> Option<CompactString> {
+    if let Atom::Unknown(_, sums) = &factor.atom {
+        // An unknown command with one argument is transparent.
+        let [sum] = sums.as_slice() else { return None };
+        let [term] = sum.terms.as_slice() else { return None };
+        let [Factor { atom: Atom::Kernel(kernel), .. }] = term.factors.as_slice() else { return None };
+        return Some(kernel.name.clone());
+    }
+    let Atom::Kernel(kernel) = &factor.atom else { return None };
+    let letters: Vec<&CompactString> = factor
+        .scripts
+        .iter()
+        .flat_map(|script| &script.items)
+        .filter_map(|item| if let ItemKind::Letter(letter) = &item.kind { Some(letter) } else { None })
+        .collect();
+    let derivative = is_derivative(&kernel_key(carrier));
+    if derivative && script.items.len() == 1 {
+        return letters.first().filter(|_| letters.len() == 1).map(|letter| (*letter).clone());
+    }
+    if derivative || letters.len() > 1 || factor.scripts.iter().any(|script| script.level == Level::Up) {
+        note_swallowed(builder, script, item);
+        return None;
+    }
+    letters.first().map(|letter| format_compact!("{}_{}", kernel.name, letter))
+}
+
+fn note_swallowed(builder: &mut Builder, script: &Script, item: &Item) {
+    let known = builder.sketch.swallowed.last().is_some_and(|swallowed| swallowed.script == script.span);
+    let first = script.items.first().map(|first| first.span).unwrap_or_default();
+    if !known && first != item.span {
+        let kept = Span { start: first.start, end: item.span.start };
+        builder.sketch.swallowed.push(super::Swallowed { script: script.span, from: item.span, kept });
+    }
+}
+
+fn kernel_key(carrier: Carrier<'_>) -> CompactString {
+    if carrier.name.starts_with("\\mathcal") { carrier.name.into() } else { carrier.letter.into() }
+}
+
+struct Word {
+    from: usize,
+    length: usize,
+    listed: bool,
+}
+
+/// Runs of plain Latin letters that touch and may spell a word.
+fn words(candidates: &[Candidate<'_>]) -> Vec<Word> {
+    let mut out = Vec::new();
+    let mut from = 0;
+    while from < candidates.len() {
+        let mut length = 1;
+        let mut word = String::new();
+        let latin = |c: &Candidate<'_>| c.letter.len() == 1 && c.letter.chars().all(|c| c.is_ascii_alphabetic());
+        let Some(first) = candidates.get(from) else { break };
+        if latin(first) {
+            word.push_str(&first.letter);
+            while let (Some(last), Some(next)) = (candidates.get(from + length - 1), candidates.get(from + length)) {
+                if !latin(next) || next.script.span != last.script.span || next.span.start != last.span.end {
+                    break;
+                }
+                word.push_str(&next.letter);
+                length += 1;
+            }
+        }
+        let listed = length > 1 && is_label_word(&word);
+        let odd = length > 2 && word.chars().any(|c| matches!(c, 'o' | 't'..='z'));
+        if listed || odd {
+            out.push(Word { from, length, listed });
+        }
+        from += length;
+    }
+    out
+}
+
+fn place(
+    builder: &mut Builder,
+    carrier: Carrier<'_>,
+    candidate: &Candidate<'_>,
+    slots: usize,
+    components: bool,
+    flip: bool,
+) -> Node {
+    let written = candidate.script.level;
+    let shape = match (carrier.group, slots) {
+        (true, 0 | 1) => Shape::OnGroup,
+        (_, 0 | 1) => Shape::Lone,
+        _ => Shape::Several,
+    };
+    let bias = candidate.fixed.unwrap_or_else(|| bias(carrier, candidate, shape, components));
+    let unit = builder.unit(Unit {
+        kernel: carrier.name.into(),
+        kernel_letter: carrier.letter.into(),
+        letter: candidate.letter.clone(),
+        level: written,
+        shape,
+        bias,
+    });
+    let company = candidate.script.items.iter().filter(|item| matches!(item.kind, ItemKind::Letter(_))).count();
+    builder.sketch.places.push(Place {
+        letter: candidate.letter.clone(),
+        level: if flip { written.flipped() } else { written },
+        written,
+        span: candidate.span,
+        script: candidate.script.span,
+        company: u16::try_from(company).unwrap_or(u16::MAX),
+        unit,
+    });
+    Node::Place(u32::try_from(builder.sketch.places.len() - 1).unwrap_or(u32::MAX))
+}
+
+/// What notation alone says of a letter, in tenths of a unit of price. Set by measurement on the corpus: what
+/// matters is the order (several letters over a derivative's over a lone Greek over a lone Latin over a capital)
+/// and that two lone late Latin letters together pass the margin of `reading.rs`.
+fn bias(carrier: Carrier<'_>, candidate: &Candidate<'_>, shape: Shape, components: bool) -> i32 {
+    let class = class_of(&candidate.letter);
+    let bare = bare_letter(&candidate.letter);
+    if is_labelled_operator(carrier.name) && shape == Shape::Lone {
+        return -90;
+    }
+    if is_usual_coordinate(&candidate.letter) {
+        return if components || shape != Shape::Several { -25 } else { -8 };
+    }
+    if candidate.parenthesised {
+        return 2;
+    }
+    let up = candidate.script.level == Level::Up;
+    let base = match (shape, class) {
+        (Shape::Several, LetterClass::Capital) => 30,
+        (Shape::Several, LetterClass::Other) => 10,
+        (Shape::Several, _) => 60,
+        (Shape::OnGroup, LetterClass::Capital | LetterClass::Other) => -20,
+        (Shape::OnGroup, _) => 10,
+        (Shape::Lone, LetterClass::Greek) => if up { 30 } else { 22 },
+        (Shape::Lone, LetterClass::LatinEarly) => 10,
+        (Shape::Lone, LetterClass::LatinLate) => match bare {
+            "i" | "j" => 25,
+            "k" | "l" => 21,
+            "m" | "n" => if up { 6 } else { 12 },
+            _ => 4,
+        },
+        (Shape::Lone, LetterClass::Capital) => if up && bare == "T" { -50 } else { -12 },
+        (Shape::Lone, LetterClass::Other) => -20,
+    };
+    let by_number = if candidate.after_number { -40 } else { 0 };
+    let by_kernel = if is_derivative(&kernel_key(carrier)) {
+        if class == LetterClass::Capital { 10 } else { 30 }
+    } else if shape == Shape::Several && is_index_kernel(carrier.letter) {
+        20
+    } else if carrier.bold && shape == Shape::Lone && !is_basis_kernel(carrier.letter) {
+        -30
+    } else {
+        0
+    };
+    base + by_kernel + by_number
+}
+
+fn note_stacked(builder: &mut Builder, carrier: Carrier<'_>, scripts: &[Script], candidates: &[Candidate<'_>]) {
+    let letters = |level: Level| candidates.iter().filter(|c| c.script.level == level).count();
+    let (up, down) = (letters(Level::Up), letters(Level::Down));
+    let (Some(first), Some(second)) = (candidates.first(), candidates.iter().find(|c| c.script.level != first_level(candidates))) else {
+        return;
+    };
+    if up == 0 || down == 0 || carrier.group {
+        return;
+    }
+    builder.sketch.stacked.push(Stacked {
+        kernel: (carrier.name.into(), u8::try_from(up).unwrap_or(9), u8::try_from(down).unwrap_or(9)),
+        span: first.script.span.join(second.script.span),
+        second: second.script.span,
+        staggered: scripts.iter().any(|script| script.staggered),
+    });
+}
+
+fn first_level(candidates: &[Candidate<'_>]) -> Level {
+    candidates.first().map_or(Level::Up, |candidate| candidate.script.level)
+}
