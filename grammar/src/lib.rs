@@ -21,7 +21,6 @@ use macros::Macros;
 use span::Span;
 use tree::Formula;
 
-
 /// A document, read.
 #[derive(Clone, Debug, Default)]
 pub struct Document {

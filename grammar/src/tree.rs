@@ -91,8 +91,10 @@ pub struct Relation {
 pub enum RelationKind {
     /// `=`, `\equiv`, `:=` and kin: the sides have the same free indices.
     Equal,
-    /// `<`, `\sim`, `\approx`, ...: as equal, if both sides carry free indices.
+    /// `\sim`, `\approx`, ...: as equal, if both sides carry free indices.
     Loose,
+    /// `<`, `\neq`, ...: as equal, if both sides carry two free indices or more, since mostly they compare numbers.
+    Order,
     /// Arrows, membership: nothing is compared.
     Free,
 }

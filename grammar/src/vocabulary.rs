@@ -217,7 +217,10 @@ const WORDS: &[(Class, &str)] = &[
          overdot wideparen",
     ),
     (Class::Font, "mathcal mathscr mathfrak mathbb mathit mathnormal cal mathds mathsf mathtt mathsfit"),
-    (Class::Bold, "mathbf boldsymbol bm pmb vb va vu vectorbold vectorarrow vectorunit bold symbf symbfit mathbfit mathbfsf"),
+    (
+        Class::Bold,
+        "mathbf boldsymbol bm pmb vb va vu vectorbold vectorarrow vectorunit bold symbf symbfit mathbfit mathbfsf",
+    ),
     (Class::Roman, "mathrm mathup symup textsubscript"),
     (Class::RomanSwitch, "rm sf tt sc normalfont rmfamily sffamily"),
     (Class::Switch, "bf it em mit bfseries itshape boldmath unboldmath sl"),
@@ -231,10 +234,7 @@ const WORDS: &[(Class, &str)] = &[
     (Class::Derivative, "dv pdv fdv odv mdv derivative partialderivative functionalderivative diffp diff difs jdv"),
     (Class::Differential, "dd dif differential odif var variation pdif fdif Dif"),
     (Class::Root, "sqrt"),
-    (
-        Class::Sum,
-        "sum prod coprod bigcup bigcap bigsqcup bigvee bigwedge bigodot bigoplus bigotimes biguplus sumint",
-    ),
+    (Class::Sum, "sum prod coprod bigcup bigcap bigsqcup bigvee bigwedge bigodot bigoplus bigotimes biguplus sumint"),
     (Class::Integral, "int iint iiint iiiint oint oiint idotsint intop ointop smallint fint"),
     (Class::Limit, "lim max min sup inf limsup liminf varlimsup varliminf injlim projlim argmax argmin"),
     (
@@ -245,7 +245,10 @@ const WORDS: &[(Class, &str)] = &[
          determinant Det Dim Ker Hom ad Ad Span span im supp vol Vol sym skew dev cof adj",
     ),
     (Class::Operator, "operatorname operatornamewithlimits mathop operator"),
-    (Class::Equal, "equiv coloneqq coloneq eqqcolon eqcolon triangleq doteq doteqdot defeq eqdef colonequals Coloneqq hateq measeq questeq circeq"),
+    (
+        Class::Equal,
+        "equiv coloneqq coloneq eqqcolon eqcolon triangleq doteq doteqdot defeq eqdef colonequals Coloneqq hateq measeq questeq circeq",
+    ),
     (
         Class::Loose,
         "approx simeq sim cong propto neq ne lt gt le leq ge geq leqslant geqslant ll gg lll ggg lesssim gtrsim \
@@ -291,7 +294,10 @@ const WORDS: &[(Class, &str)] = &[
     ),
     (Class::Drop2, "setcounter addtocounter setlength rule fontsize hypertarget"),
     (Class::Phantom, "phantom hphantom vphantom"),
-    (Class::ArrowWords, "xrightarrow xleftarrow xleftrightarrow xRightarrow xLeftarrow xLeftrightarrow xmapsto xlongequal"),
+    (
+        Class::ArrowWords,
+        "xrightarrow xleftarrow xleftrightarrow xRightarrow xLeftarrow xLeftrightarrow xmapsto xlongequal",
+    ),
     (Class::Label, "label"),
     (
         Class::Delimiter,
@@ -305,7 +311,7 @@ const WORDS: &[(Class, &str)] = &[
         Class::Wrap,
         "boxed cancel bcancel xcancel sout uline uwave smash mathmakebox underparen \
          overparen hl highlight ovalbox shadowbox doublebox vcenter uuline \
-         mathstrike",
+         mathstrike tcboxmath tcbhighmath Aboxed ovalnode",
     ),
     (Class::Wrap2, "textcolor colorbox mathcolor scalebox raisebox"),
     (Class::Brace, "underbrace overbrace underbracket overbracket"),
@@ -323,10 +329,16 @@ const WORDS: &[(Class, &str)] = &[
     (Class::Begin, "begin"),
     (Class::End, "end"),
     (Class::Slashed, "slashed cancelslash"),
-    (Class::Ket, "bra ket braket mel ip innerproduct op outerproduct ketbra matrixel matrixelement dyad Bra Ket Braket"),
+    (
+        Class::Ket,
+        "bra ket braket mel ip innerproduct op outerproduct ketbra matrixel matrixelement dyad Bra Ket Braket",
+    ),
     (Class::Eval, "eval evaluated"),
     (Class::Not, "not"),
-    (Class::Block, "mqty pmqty bmqty vmqty matrixquantity substack smqty sPmqty dmat admat ytableaushort young imat xmat zmat"),
+    (
+        Class::Block,
+        "mqty pmqty bmqty vmqty matrixquantity substack smqty sPmqty dmat admat ytableaushort young imat xmat zmat",
+    ),
 ];
 
 #[cfg(test)]

@@ -126,8 +126,24 @@ fn is_prefix(kind: Kind) -> bool {
     use Kind::*;
     matches!(
         kind,
-        Accent | Bold | Roman | Root | Fraction | Wrap | Brace | Norm | Average | Pair | Derivative | Differential
-            | Slashed | Order | Tensor | Up | Down | Unknown
+        Accent
+            | Bold
+            | Roman
+            | Root
+            | Fraction
+            | Wrap
+            | Brace
+            | Norm
+            | Average
+            | Pair
+            | Derivative
+            | Differential
+            | Slashed
+            | Order
+            | Tensor
+            | Up
+            | Down
+            | Unknown
     )
 }
 

@@ -47,7 +47,13 @@ fn script_before<'a>(
 ) -> impl Parser<'a, Input<'a>, Script, Extra> + Clone + 'a {
     kind(Kind::Up).or(kind(Kind::Down)).rewind().ignore_then(postfix).map(|postfix| match postfix {
         Postfix::Script(script) => Script { before: true, ..script },
-        _ => Script { span: Span::default(), level: crate::tree::Level::Up, staggered: false, before: true, items: Vec::new() },
+        _ => Script {
+            span: Span::default(),
+            level: crate::tree::Level::Up,
+            staggered: false,
+            before: true,
+            items: Vec::new(),
+        },
     })
 }
 
@@ -191,7 +197,8 @@ fn commands<'a>(
         let span = join_all([command.span].into_iter().chain(sums.iter().map(|(_, span)| *span)));
         group(Bracket::Pair, sums.into_iter().map(|(sum, _)| sum).collect(), span)
     });
-    let order = kind(Kind::Order).then(argument.or_not()).map(|(command, _): (&Lexeme, _)| plain(Atom::Order, command.span));
+    let order =
+        kind(Kind::Order).then(argument.or_not()).map(|(command, _): (&Lexeme, _)| plain(Atom::Order, command.span));
     let unknown = kind(Kind::Unknown).then(braces.clone().repeated().collect::<Vec<_>>()).map(
         |(command, sums): (&Lexeme, Vec<(Sum, Span)>)| {
             let span = join_all([command.span].into_iter().chain(sums.iter().map(|(_, span)| *span)));
@@ -233,10 +240,8 @@ fn tensor<'a>(
     option: impl Parser<'a, Input<'a>, (), Extra> + Clone + 'a,
     postfix: impl Parser<'a, Input<'a>, Postfix, Extra> + Clone + 'a,
 ) -> impl Parser<'a, Input<'a>, Factor, Extra> + Clone + 'a {
-    let scripts = kind(Kind::BraceOpen)
-        .ignore_then(postfix.repeated().collect::<Vec<_>>())
-        .then(kind(Kind::BraceClose))
-        .or_not();
+    let scripts =
+        kind(Kind::BraceOpen).ignore_then(postfix.repeated().collect::<Vec<_>>()).then(kind(Kind::BraceClose)).or_not();
     kind(Kind::Tensor).then_ignore(option).then(argument).then(scripts).map(
         |((command, (sum, end)), scripts): ((&Lexeme, _), Option<(Vec<Postfix>, &Lexeme)>)| {
             let (after, end) = scripts.map_or((Vec::new(), end), |(after, close)| (after, close.span));

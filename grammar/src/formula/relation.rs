@@ -13,7 +13,7 @@ pub(super) fn statement<'a>(
 ) -> impl Parser<'a, Input<'a>, Statement, Extra> + Clone + 'a {
     let relation = select_ref! {
         Lexeme { kind: Kind::Equal, span, .. } => Relation { kind: RelationKind::Equal, span: *span },
-        Lexeme { kind: Kind::Loose, span, .. } => Relation { kind: RelationKind::Loose, span: *span },
+        Lexeme { kind: Kind::Loose, span, text } => Relation { kind: loose(text), span: *span },
         Lexeme { kind: Kind::Arrow, span, .. } => Relation { kind: RelationKind::Free, span: *span },
     };
     let first = sum.clone().map(|side| Statement { span: side.span, sides: vec![side], relations: Vec::new() });
@@ -23,4 +23,27 @@ pub(super) fn statement<'a>(
         statement.sides.push(side);
         statement
     })
+}
+
+/// Relations of order and inequality compare numbers, the others (`\sim`, `\approx`) whole expressions.
+fn loose(text: &str) -> RelationKind {
+    const EXPRESSIONS: &[&str] = &[
+        "approx",
+        "simeq",
+        "sim",
+        "cong",
+        "propto",
+        "asymp",
+        "thickapprox",
+        "thicksim",
+        "approxeq",
+        "varpropto",
+        "eqsim",
+        "≈",
+        "∼",
+        "≃",
+        "≅",
+        "∝",
+    ];
+    if EXPRESSIONS.contains(&text) { RelationKind::Loose } else { RelationKind::Order }
 }

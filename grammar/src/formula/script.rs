@@ -84,11 +84,7 @@ fn bare<'a>(
         Lexeme { kind: Kind::Letter, text, span } => Item { span: *span, kind: ItemKind::Letter(text.clone()) },
         Lexeme { kind: Kind::Number, text, span } => Item { span: *span, kind: ItemKind::Number(text.clone()) },
     };
-    let command = any_ref()
-        .filter(|lexeme: &&Lexeme| is_command(lexeme.kind))
-        .rewind()
-        .ignore_then(atom)
-        .map(item_of);
+    let command = any_ref().filter(|lexeme: &&Lexeme| is_command(lexeme.kind)).rewind().ignore_then(atom).map(item_of);
     letter.or(command)
 }
 
@@ -105,7 +101,13 @@ fn items<'a>(
     factor: impl Parser<'a, Input<'a>, Factor, Extra> + Clone + 'a,
 ) -> impl Parser<'a, Input<'a>, Vec<Piece>, Extra> + Clone + 'a {
     recursive(move |items| {
-        let nested = kind(Kind::BraceOpen).ignore_then(items).then_ignore(kind(Kind::BraceClose)).map(Piece::Nested);
+        // A command that nobody knows is transparent in a script.
+        let nested = kind(Kind::Unknown)
+            .or_not()
+            .ignore_then(kind(Kind::BraceOpen))
+            .ignore_then(items)
+            .then_ignore(kind(Kind::BraceClose))
+            .map(Piece::Nested);
         let blank = kind(Kind::Stagger).to(Piece::Blank);
         let roman = kind(Kind::RomanSwitch).to(Piece::Roman);
         let structured = factor.map(item_of).map(Piece::Item);
@@ -115,10 +117,9 @@ fn items<'a>(
 
 /// Items of one lexeme that are no factor.
 fn sign<'a>() -> impl Parser<'a, Input<'a>, Item, Extra> + Clone {
-    any_ref().filter(|lexeme: &&Lexeme| sign_kind(lexeme).is_some()).map(|lexeme: &Lexeme| Item {
-        span: lexeme.span,
-        kind: sign_kind(lexeme).unwrap_or(ItemKind::Operator),
-    })
+    any_ref()
+        .filter(|lexeme: &&Lexeme| sign_kind(lexeme).is_some())
+        .map(|lexeme: &Lexeme| Item { span: lexeme.span, kind: sign_kind(lexeme).unwrap_or(ItemKind::Operator) })
 }
 
 fn sign_kind(lexeme: &Lexeme) -> Option<ItemKind> {
@@ -131,7 +132,9 @@ fn sign_kind(lexeme: &Lexeme) -> Option<ItemKind> {
         Kind::Open | Kind::Close | Kind::Lone if text.contains('|') || text.ends_with("ert") => ItemKind::Bar,
         Kind::Open | Kind::Close | Kind::Lone => bracket(text),
         Kind::Plus => ItemKind::Sign,
-        Kind::Times if text == "*" || text == "ast" || text == "star" || text == "circ" => ItemKind::Mark(lexeme.text.clone()),
+        Kind::Times if text == "*" || text == "ast" || text == "star" || text == "circ" => {
+            ItemKind::Mark(lexeme.text.clone())
+        }
         Kind::Times | Kind::Slash | Kind::Over => ItemKind::Operator,
         Kind::Mark | Kind::Prime => ItemKind::Mark(lexeme.text.clone()),
         Kind::Loose if text == "perp" || text == "parallel" => ItemKind::Mark(lexeme.text.clone()),

@@ -3,9 +3,9 @@
 //! A row that begins with a relation or a sign goes on with the statement above; a second pair of columns, a comma
 //! or a wide blank outside brackets begins another. Groups that hold a whole relation (`\boxed{A = B}`) open up.
 
+use super::lexeme::Prepared;
 use super::lexeme::{Kind, Lexeme};
 use super::tidy::Tidied;
-use super::lexeme::Prepared;
 
 /// Cuts into statements.
 pub(crate) fn cut(tidied: Tidied) -> Prepared {
@@ -15,15 +15,11 @@ pub(crate) fn cut(tidied: Tidied) -> Prepared {
         cutter.take(lexeme, lexemes.get(at + 1..).unwrap_or_default());
     }
     cutter.finish();
-    Prepared {
-        lexemes: cutter.out,
-        statements: cutter.statements,
-        labels: tidied.labels,
-        unknown: tidied.unknown,
-    }
+    Prepared { lexemes: cutter.out, statements: cutter.statements, labels: tidied.labels, unknown: tidied.unknown }
 }
 
-/// Takes away the braces (and the wrapping command) of groups outside all brackets that hold a relation or rows.
+/// Takes away the braces (and the wrapping command) of groups outside all brackets that hold a relation or rows, or
+/// that begin with a sign.
 fn open_up(lexemes: Vec<Lexeme>) -> Vec<Lexeme> {
     let partners = relation_groups(&lexemes);
     if partners.is_empty() {
@@ -40,10 +36,13 @@ fn open_up(lexemes: Vec<Lexeme>) -> Vec<Lexeme> {
                 let free = wrapped || !before.is_some_and(takes_group);
                 if let Some((_, close)) = partners.iter().find(|(open, _)| *open == at && depth == 0 && free) {
                     opened.push(*close);
-                    [Some(at), Some(*close), at.checked_sub(1).filter(|_| wrapped)]
-                        .into_iter()
-                        .flatten()
-                        .for_each(|n| if let Some(flag) = keep.get_mut(n) { *flag = false });
+                    [Some(at), Some(*close), at.checked_sub(1).filter(|_| wrapped)].into_iter().flatten().for_each(
+                        |n| {
+                            if let Some(flag) = keep.get_mut(n) {
+                                *flag = false
+                            }
+                        },
+                    );
                 } else {
                     depth += 1;
                 }
@@ -57,14 +56,18 @@ fn open_up(lexemes: Vec<Lexeme>) -> Vec<Lexeme> {
     lexemes.into_iter().zip(keep).filter_map(|(lexeme, keep)| keep.then_some(lexeme)).collect()
 }
 
-/// Brace groups that hold a relation, a row or a cell at their own level, outside scripts.
+/// Brace groups that hold a relation, a row or a cell at their own level, or begin with a sign.
 fn relation_groups(lexemes: &[Lexeme]) -> Vec<(usize, usize)> {
     const GROUPS: usize = 64;
     let mut open: Vec<(usize, bool, usize)> = Vec::new();
     let mut found = Vec::new();
     for (at, lexeme) in lexemes.iter().enumerate() {
         match lexeme.kind {
-            Kind::BraceOpen => open.push((at, false, 0)),
+            // A group that begins with a sign goes on with the sum around it: `a {- b}`.
+            Kind::BraceOpen => {
+                let signed = lexemes.get(at + 1).is_some_and(|next| next.kind == Kind::Plus);
+                open.push((at, signed, 0));
+            }
             Kind::BraceClose => {
                 if let Some((start, true, _)) = open.pop() {
                     found.push((start, at));
@@ -87,8 +90,22 @@ fn takes_group(kind: Kind) -> bool {
     use Kind::*;
     matches!(
         kind,
-        Up | Down | Fraction | Derivative | Differential | Root | Bold | Roman | Norm | Average | Pair | Order | Tensor
-            | Indices | Slashed | BraceClose | Close
+        Up | Down
+            | Fraction
+            | Derivative
+            | Differential
+            | Root
+            | Bold
+            | Roman
+            | Norm
+            | Average
+            | Pair
+            | Order
+            | Tensor
+            | Indices
+            | Slashed
+            | BraceClose
+            | Close
     )
 }
 
@@ -116,7 +133,9 @@ impl Cutter {
             Kind::BraceOpen | Kind::Open => self.depth += 1,
             Kind::BraceClose | Kind::Close => self.depth = self.depth.saturating_sub(1),
             Kind::Row | Kind::Cell | Kind::Separator if self.depth > 0 => return,
-            Kind::Stagger if self.depth == 0 && !rest.first().is_some_and(|l| matches!(l.kind, Kind::Up | Kind::Down)) => {
+            Kind::Stagger
+                if self.depth == 0 && !rest.first().is_some_and(|l| matches!(l.kind, Kind::Up | Kind::Down)) =>
+            {
                 return;
             }
             _ => {}
@@ -195,7 +214,8 @@ impl Cutter {
 
     fn separator(&mut self, lexeme: &Lexeme, rest: &[Lexeme]) {
         let soft = matches!(lexeme.text.as_str(), "quad" | "qquad" | "hfill" | "hfil");
-        let next = rest.iter().find(|l| !matches!(l.kind, Kind::Cell | Kind::Stagger | Kind::Separator)).map(|l| l.kind);
+        let next =
+            rest.iter().find(|l| !matches!(l.kind, Kind::Cell | Kind::Stagger | Kind::Separator)).map(|l| l.kind);
         let joined = self.row_begins || self.last().is_some_and(is_operator) || next.is_some_and(is_operator);
         if !(soft && joined) {
             self.part();

@@ -14,16 +14,73 @@ use super::lexeme::{Kind, Lexeme};
 
 /// Environments whose rows are rows of the formula they stand in.
 const TRANSPARENT: &[&str] = &[
-    "aligned", "alignedat", "split", "gathered", "multlined", "subequations", "equation", "align", "gather",
-    "multline", "eqnarray", "displaymath", "math", "flalign", "alignat", "empheq", "tightalign", "lgathered",
-    "rgathered", "IEEEeqnarraybox",
+    "aligned",
+    "alignedat",
+    "split",
+    "gathered",
+    "multlined",
+    "subequations",
+    "equation",
+    "align",
+    "gather",
+    "multline",
+    "eqnarray",
+    "displaymath",
+    "math",
+    "flalign",
+    "alignat",
+    "empheq",
+    "tightalign",
+    "lgathered",
+    "rgathered",
+    "IEEEeqnarraybox",
 ];
 
 /// Words that stand between two statements.
 const LINK_WORDS: &[&str] = &[
-    "and", "or", "if", "for", "where", "with", "when", "since", "so", "then", "iff", "thus", "hence", "on", "in", "as",
-    "at", "but", "i.e.", "e.g.", "cf.", "but", "while", "otherwise", "therefore", "because", "from", "using", "by",
-    "via", "provided", "unless", "that", "is", "e", "und", "et", "y", "ou", "oder", "mit", "avec", "para",
+    "and",
+    "or",
+    "if",
+    "for",
+    "where",
+    "with",
+    "when",
+    "since",
+    "so",
+    "then",
+    "iff",
+    "thus",
+    "hence",
+    "on",
+    "in",
+    "as",
+    "at",
+    "but",
+    "i.e.",
+    "e.g.",
+    "cf.",
+    "but",
+    "while",
+    "otherwise",
+    "therefore",
+    "because",
+    "from",
+    "using",
+    "by",
+    "via",
+    "provided",
+    "unless",
+    "that",
+    "is",
+    "e",
+    "und",
+    "et",
+    "y",
+    "ou",
+    "oder",
+    "mit",
+    "avec",
+    "para",
 ];
 
 /// What tidying yields.
@@ -165,7 +222,8 @@ impl<'t, 'a> Cursor<'t, 'a> {
     fn typed_function(&self, token: Token<'a>) -> Option<(usize, &'static str)> {
         const TYPED: &[&str] = &["det", "diag", "sin", "cos", "tan", "exp", "log", "const", "sgn", "max", "min"];
         let starts = TYPED.iter().any(|word| word.starts_with(token.text));
-        let after_letter = self.out.lexemes.last().is_some_and(|l| l.kind == Kind::Letter && l.span.end == token.span.start);
+        let after_letter =
+            self.out.lexemes.last().is_some_and(|l| l.kind == Kind::Letter && l.span.end == token.span.start);
         if !starts || after_letter {
             return None;
         }
@@ -185,6 +243,7 @@ impl<'t, 'a> Cursor<'t, 'a> {
         let name = token.text.get(1..).unwrap_or_default();
         let Some(class) = class(name) else {
             self.out.unknown.push((name.into(), token.span));
+            self.skip_optional_before_group();
             return self.push(Kind::Unknown, name, token.span);
         };
         let kind = match class {
@@ -225,7 +284,10 @@ impl<'t, 'a> Cursor<'t, 'a> {
             Class::Close => Kind::Close,
             Class::Bar => Kind::Bar,
             Class::Dots => Kind::Dots,
-            Class::Wrap | Class::Eval => Kind::Wrap,
+            Class::Wrap | Class::Eval => {
+                self.skip_optional_before_group();
+                Kind::Wrap
+            }
             Class::Brace => Kind::Brace,
             Class::Norm => Kind::Norm,
             Class::Average => Kind::Average,
@@ -300,7 +362,8 @@ impl<'t, 'a> Cursor<'t, 'a> {
     fn delimiter(&mut self, token: Token<'a>) {
         let Some(next) = self.next() else { return };
         let empty = next.text == ".";
-        let bar = matches!(next.text, "|" | "\\|" | "\\vert" | "\\Vert" | "\\lvert" | "\\rvert" | "\\lVert" | "\\rVert");
+        let bar =
+            matches!(next.text, "|" | "\\|" | "\\vert" | "\\Vert" | "\\lvert" | "\\rvert" | "\\lVert" | "\\rVert");
         let span = token.span.join(next.span);
         match token.text {
             "\\left" => {
@@ -376,7 +439,7 @@ impl<'t, 'a> Cursor<'t, 'a> {
     fn text(&mut self, token: Token<'a>) {
         self.skip_optional();
         let at = self.at;
-        if let Some((word, end)) = self.plain_group() {
+        if let Some((word, end)) = self.plain_group().filter(|_| !self.padded(at)) {
             return self.word(&word, token.span.join(end), true);
         }
         self.at = at;
@@ -446,12 +509,23 @@ impl<'t, 'a> Cursor<'t, 'a> {
         None
     }
 
+    /// Whether the group that starts at a token has a blank inside its braces: then its words are prose.
+    fn padded(&self, at: usize) -> bool {
+        let taken = self.tokens.get(at..self.at).unwrap_or_default();
+        let gap = |pair: &[Token<'_>]| matches!(pair, [one, two] if one.span.end < two.span.start);
+        taken.len() > 2 && (taken.get(..2).is_some_and(gap) || taken.get(taken.len() - 2..).is_some_and(gap))
+    }
+
     /// Takes a group and returns its text without blanks.
     fn group_words(&mut self) -> String {
         let from = self.at;
         self.skip_group();
         let taken = self.tokens.get(from..self.at.min(self.tokens.len())).unwrap_or_default();
-        taken.iter().filter(|t| !matches!(t.kind, TokenKind::BraceOpen | TokenKind::BraceClose)).map(|t| t.text).collect()
+        taken
+            .iter()
+            .filter(|t| !matches!(t.kind, TokenKind::BraceOpen | TokenKind::BraceClose))
+            .map(|t| t.text)
+            .collect()
     }
 
     /// Passes over one group or one token.
@@ -483,6 +557,15 @@ impl<'t, 'a> Cursor<'t, 'a> {
         }
     }
 
+    /// Passes over `[..]` where a group follows it: the options of a command.
+    fn skip_optional_before_group(&mut self) {
+        let at = self.at;
+        self.skip_optional();
+        if self.peek().is_none_or(|next| next.kind != TokenKind::BraceOpen) {
+            self.at = at;
+        }
+    }
+
     /// Passes over `[..]`, if one follows.
     fn skip_optional(&mut self) {
         if self.peek().is_some_and(|next| next.text == "[") {
@@ -495,10 +578,7 @@ impl<'t, 'a> Cursor<'t, 'a> {
 }
 
 fn takes_star(kind: Kind) -> bool {
-    matches!(
-        kind,
-        Kind::Derivative | Kind::Norm | Kind::Average | Kind::Pair | Kind::Tensor | Kind::Wrap | Kind::Bold
-    )
+    matches!(kind, Kind::Derivative | Kind::Norm | Kind::Average | Kind::Pair | Kind::Tensor | Kind::Wrap | Kind::Bold)
 }
 
 fn relation_sign(text: &str) -> Kind {

@@ -104,13 +104,17 @@ pub fn term_state(sketch: &Sketch, choice: &Choice, term: &TermNode, letter: &st
 fn compared_groups<'s>(sketch: &'s Sketch, choice: &Choice) -> Vec<Vec<(u32, &'s Side)>> {
     let mut groups: Vec<Vec<(u32, &Side)>> = Vec::new();
     let mut before: Option<&Side> = None;
+    // "all of these vanish": each stands for itself.
+    let vanish = sketch.sides.len() > 2 && sketch.sides.iter().any(|side| side.zero);
     for (number, side) in (0_u32..).zip(&sketch.sides) {
         let relation = (number as usize).checked_sub(1).and_then(|n| sketch.relations.get(n));
         let joined = match relation {
             None | Some(RelationKind::Free) => false,
-            Some(RelationKind::Equal) => true,
-            Some(RelationKind::Loose) => {
-                has_free(sketch, choice, side) && before.is_some_and(|before| has_free(sketch, choice, before))
+            Some(RelationKind::Equal) => !vanish,
+            Some(kind) => {
+                let asked = if *kind == RelationKind::Order { 2 } else { 1 };
+                let free = |side| free_letters(sketch, choice, side) >= asked;
+                free(side) && before.is_some_and(free)
             }
         };
         match groups.last_mut().filter(|_| joined) {
@@ -122,20 +126,21 @@ fn compared_groups<'s>(sketch: &'s Sketch, choice: &Choice) -> Vec<Vec<(u32, &'s
     groups
 }
 
-/// Whether any letter is free on a side.
-fn has_free(sketch: &Sketch, choice: &Choice, side: &Side) -> bool {
+/// How many letters are free on a side.
+fn free_letters(sketch: &Sketch, choice: &Choice, side: &Side) -> usize {
     let mut letters: Vec<&str> = Vec::new();
     for place in &sketch.places {
         if side.span.holds(place.span) && !letters.contains(&place.letter.as_str()) {
             letters.push(&place.letter);
         }
     }
-    letters.into_iter().any(|letter| {
+    let is_free = |letter: &&str| {
         let mut terms = Vec::new();
         let mut ignored = Vec::new();
         Count { sketch, choice, letter, events: &mut ignored }.terms(&side.terms, false, None, &mut terms);
         terms.iter().any(|term| term.free.is_some())
-    })
+    };
+    letters.iter().filter(|letter| is_free(letter)).count()
 }
 
 struct Count<'a> {
@@ -229,7 +234,13 @@ impl Count<'_> {
                 tally.open.clear();
                 tally
             }
-            Node::Switch(switch, inner) => if self.is_on(*switch) { self.node(inner, bound) } else { Tally::default() },
+            Node::Switch(switch, inner) => {
+                if self.is_on(*switch) {
+                    self.node(inner, bound)
+                } else {
+                    Tally::default()
+                }
+            }
             Node::Bind(letters) => {
                 let binds = |(letter, switch): &(compact_str::CompactString, Option<u32>)| {
                     letter == self.letter && switch.is_none_or(|switch| self.is_on(switch))

@@ -66,9 +66,16 @@ impl Change {
                 format!("Write {} for the dummy {from} in its {} places", shown(to), places.len())
             }
             Self::Insert(after, new) => {
-                format!("Insert {} after {} in {}", shown(new), letter(after), carrier(judged, *after, judged.span(*after)))
+                format!(
+                    "Insert {} after {} in {}",
+                    shown(new),
+                    letter(after),
+                    carrier(judged, *after, judged.span(*after))
+                )
             }
-            Self::Drop(place) => format!("Take {} out of {}", letter(place), carrier(judged, *place, judged.span(*place))),
+            Self::Drop(place) => {
+                format!("Take {} out of {}", letter(place), carrier(judged, *place, judged.span(*place)))
+            }
             Self::FlipScript(script) => format!("Move {} to the other level", script.of(judged.text)),
             Self::FlipLetter(place) => {
                 let to = judged.sketch.place(*place).map_or("up", |place| place.written.flipped().word());
@@ -233,7 +240,8 @@ fn replace_in(node: &mut Node, number: u32, by: &Node) {
 
 /// Letters of the same kind that the statement does not use, usual ones first.
 pub fn fresh_letters(sketch: &Sketch, like: &str) -> Vec<CompactString> {
-    const GREEK: &[&str] = &["\\mu", "\\nu", "\\rho", "\\sigma", "\\lambda", "\\kappa", "\\alpha", "\\beta", "\\gamma", "\\tau"];
+    const GREEK: &[&str] =
+        &["\\mu", "\\nu", "\\rho", "\\sigma", "\\lambda", "\\kappa", "\\alpha", "\\beta", "\\gamma", "\\tau"];
     const EARLY: &[&str] = &["a", "b", "c", "d", "e", "f"];
     const LATE: &[&str] = &["i", "j", "k", "l", "m", "n", "p", "q", "r", "s"];
     const CAPITAL: &[&str] = &["A", "B", "C", "D", "I", "J", "K", "L", "M", "N"];
@@ -244,7 +252,8 @@ pub fn fresh_letters(sketch: &Sketch, like: &str) -> Vec<CompactString> {
         LetterClass::LatinLate | LetterClass::Other => LATE,
     };
     let used = |letter: &str| {
-        sketch.places.iter().any(|place| place.letter == letter) || sketch.quantities.iter().any(|(name, _)| name == letter)
+        sketch.places.iter().any(|place| place.letter == letter)
+            || sketch.quantities.iter().any(|(name, _)| name == letter)
     };
     family.iter().filter(|letter| !used(letter)).map(|letter| CompactString::from(*letter)).collect()
 }

@@ -87,7 +87,8 @@ impl Judged<'_> {
         for side in 0..sides {
             let mine: Vec<&TermRow> = rows.iter().filter(|row| row.side == side && !row.any).collect();
             let names = |row: &TermRow| row.free.iter().map(|(letter, _)| letter.clone()).collect::<Vec<_>>();
-            let alike = mine.windows(2).all(|pair| matches!(pair, [one, two] if same_letters(&names(one), &names(two))));
+            let alike =
+                mine.windows(2).all(|pair| matches!(pair, [one, two] if same_letters(&names(one), &names(two))));
             if alike {
                 let Some(first) = mine.first() else { continue };
                 let mut row = self.row(side_title(sides, side), first, odd);

@@ -117,7 +117,8 @@ pub fn check(paper: &Paper, settings: &Settings, cancel: &Cancel) -> Analysis {
         if cancel.is_cancelled() {
             return DocumentAnalysis::default();
         }
-        let prices = Prices { file: own, paper: &all, declared: &document.read.declared, macros: &document.read.macros };
+        let prices =
+            Prices { file: own, paper: &all, declared: &document.read.declared, macros: &document.read.macros };
         let mut analysis = judge_document(document, prices, settings);
         let troubles = paper.troubles.iter().filter(|trouble| trouble.document == number);
         analysis.findings.extend(troubles.map(rules::missing_part));
@@ -188,7 +189,8 @@ fn gather(documents: &[Sketched<'_>], cancel: &Cancel) -> Vec<Evidence> {
         let all = total(&evidence);
         let mut next = Vec::with_capacity(documents.len());
         for (document, own) in documents.iter().zip(&evidence) {
-            let prices = Prices { file: own, paper: &all, declared: &document.read.declared, macros: &document.read.macros };
+            let prices =
+                Prices { file: own, paper: &all, declared: &document.read.declared, macros: &document.read.macros };
             let mut votes = Evidence::default();
             for (_, sketch) in document.statements.iter().filter(|_| !cancel.is_cancelled()) {
                 votes.vote(sketch, &reading::read(sketch, &prices));
@@ -218,7 +220,7 @@ fn judge_document(document: &Sketched<'_>, prices: Prices<'_>, settings: &Settin
             *flag |= any_index;
         }
         reading.odd.retain(|(letter, _)| prices.is_index_notation(letter));
-        if sketch.unjudged.is_none() {
+        if sketch.unjudged.is_none() && prices.trusts(&sketch.unknown) {
             let judged = Judged { text: document.read.text, formula, sketch: sketch.clone(), reading, prices };
             findings.extend(rules::check_statement(&judged).into_iter().map(|finding| (*number, finding)));
         }

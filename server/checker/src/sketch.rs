@@ -29,6 +29,8 @@ pub struct Sketch {
     pub switches: Vec<Switch>,
     /// The switch that lets sum signs reach over the following terms, if there is a sum sign.
     pub reach: Option<u32>,
+    /// Commands that nobody knows, outside scripts: their arguments are taken as factors, on trust.
+    pub unknown: Vec<CompactString>,
     /// Letters and words that stand as quantities, with their places.
     pub quantities: Vec<(CompactString, Span)>,
     /// Scripts that hold a whole factor behind a letter.
@@ -48,6 +50,8 @@ pub struct Side {
     pub terms: Vec<TermNode>,
     /// Whether it matches anything: zero, words, a list.
     pub any: bool,
+    /// Whether it is zero.
+    pub zero: bool,
 }
 
 /// A term of a side or of a sum in brackets.

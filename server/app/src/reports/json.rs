@@ -39,14 +39,6 @@ struct StatisticsObject {
     indexed: usize,
     unread: usize,
     unknown_macros: usize,
-    steps: StepsObject,
-}
-
-#[derive(Default, Serialize)]
-struct StepsObject {
-    holds: usize,
-    fails: usize,
-    undecided: usize,
 }
 
 #[derive(Serialize)]
@@ -108,7 +100,6 @@ fn object(file: &FileReport) -> FileObject<'_> {
             indexed: counts.indexed,
             unread: counts.unread,
             unknown_macros: counts.unknown_macros,
-            steps: StepsObject::default(),
         },
         findings: file.findings.iter().map(|finding| finding_object(finding, &places)).collect(),
     }
@@ -152,8 +143,7 @@ mod tests {
         assert_eq!(report["report"], 1);
         assert_eq!(report["tool"]["name"], "indexwise");
         let file = &report["files"][0];
-        let steps = json!({"holds": 0, "fails": 0, "undecided": 0});
-        let want = json!({"formulas": 1, "indexed": 1, "unread": 0, "unknown_macros": 0, "steps": steps});
+        let want = json!({"formulas": 1, "indexed": 1, "unread": 0, "unknown_macros": 0});
         assert_eq!(file["statistics"], want);
         let finding = &file["findings"][0];
         let offset = SHELL.find("m g_").unwrap() + 3;

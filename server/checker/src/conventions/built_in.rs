@@ -44,7 +44,21 @@ pub fn class_of(letter: &str) -> LetterClass {
 pub fn is_usual_coordinate(letter: &str) -> bool {
     matches!(
         bare_letter(letter),
-        "t" | "r" | "x" | "y" | "z" | "\\theta" | "\\phi" | "\\varphi" | "\\vartheta" | "T" | "X" | "Y" | "Z" | "u" | "v" | "w"
+        "t" | "r"
+            | "x"
+            | "y"
+            | "z"
+            | "\\theta"
+            | "\\phi"
+            | "\\varphi"
+            | "\\vartheta"
+            | "T"
+            | "X"
+            | "Y"
+            | "Z"
+            | "u"
+            | "v"
+            | "w"
     )
 }
 
@@ -52,8 +66,28 @@ pub fn is_usual_coordinate(letter: &str) -> bool {
 pub fn is_point_kernel(letter: &str) -> bool {
     matches!(
         letter,
-        "x" | "y" | "z" | "p" | "q" | "k" | "X" | "Y" | "r" | "\\xi" | "t" | "s" | "\\lambda" | "\\tau" | "\\sigma" | "\\omega"
-            | "\\theta" | "\\phi" | "\\varphi" | "\\eta" | "u" | "v" | "l"
+        "x" | "y"
+            | "z"
+            | "p"
+            | "q"
+            | "k"
+            | "X"
+            | "Y"
+            | "r"
+            | "\\xi"
+            | "t"
+            | "s"
+            | "\\lambda"
+            | "\\tau"
+            | "\\sigma"
+            | "\\omega"
+            | "\\theta"
+            | "\\phi"
+            | "\\varphi"
+            | "\\eta"
+            | "u"
+            | "v"
+            | "l"
     )
 }
 
@@ -66,7 +100,15 @@ pub fn is_derivative(letter: &str) -> bool {
 pub fn is_labelled_operator(name: &str) -> bool {
     matches!(
         name,
-        "\\mathcal L" | "\\mathscr L" | "\\cal L" | "\\pounds" | "\\Box" | "\\square" | "\\Delta" | "\\dAlembert" | "\\mathfrak L"
+        "\\mathcal L"
+            | "\\mathscr L"
+            | "\\cal L"
+            | "\\pounds"
+            | "\\Box"
+            | "\\square"
+            | "\\Delta"
+            | "\\dAlembert"
+            | "\\mathfrak L"
     )
 }
 
@@ -82,7 +124,10 @@ pub fn is_symbol_kernel(letter: &str) -> bool {
 
 /// Basis vectors: bold, yet their script is an index.
 pub fn is_basis_kernel(letter: &str) -> bool {
-    matches!(letter, "e" | "g" | "E" | "b" | "i" | "n" | "\\theta" | "\\omega" | "\\partial" | "\\sigma" | "\\gamma" | "\\epsilon")
+    matches!(
+        letter,
+        "e" | "g" | "E" | "b" | "i" | "n" | "\\theta" | "\\omega" | "\\partial" | "\\sigma" | "\\gamma" | "\\epsilon"
+    )
 }
 
 /// Letters in a script that together are a word, hence a label: `T_{eff}`, `p_{max}`.
@@ -91,15 +136,16 @@ pub fn is_label_word(word: &str) -> bool {
         "eff", "max", "min", "tot", "total", "in", "out", "int", "ext", "eq", "crit", "cr", "rel", "obs", "ref", "rad",
         "mat", "dec", "rec", "ini", "init", "fin", "end", "gas", "vac", "em", "gw", "bh", "ns", "sun", "ph", "kin",
         "pot", "grav", "rms", "avg", "av", "ave", "sat", "ss", "bulk", "surf", "wall", "edge", "top", "bot", "left",
-        "right", "old", "new", "true", "est", "fit", "mod", "num", "det", "sig", "bg", "bkg", "cm", "lab", "cut", "mid",
-        "thr", "th", "thermal", "elec", "mag", "nuc", "star", "disk", "halo", "gal", "host", "atm", "sea", "ice", "air",
-        "dry", "wet", "visc", "turb", "lam", "mol", "free", "fix", "opt", "best", "ideal", "real", "phys", "bare", "ren",
-        "reg", "sub", "sup", "sup", "sys", "env", "coll", "chem", "dyn", "stat", "orb", "rot", "spin", "esc", "vir",
-        "merg", "isco", "peak", "eV", "pl", "Pl", "mat", "conf", "prop", "phot", "bar", "dm", "de", "cdm", "cmb",
-        "nl", "loc", "glob", "inj", "abs", "abs", "emit", "rec", "em", "obs", "src", "det", "noise", "inst", "iso",
-        "adi", "ad", "ent", "inf", "reh", "kick", "sound", "light", "Newt", "red", "blue", "dS", "AdS", "ADM", "BH",
-        "TT", "GW", "EM", "NS", "CMB", "FRW", "GR", "SR", "CM", "LT", "PN", "YM", "EH", "MC", "QCD", "RN", "FP", "WKB",
-        "KG", "dom", "exp", "aff", "ave", "hor", "ergo", "std", "lin", "quad", "sph", "cyl", "pol", "tor", "per", "par",
+        "right", "old", "new", "true", "est", "fit", "mod", "num", "det", "sig", "bg", "bkg", "cm", "lab", "cut",
+        "mid", "thr", "th", "thermal", "elec", "mag", "nuc", "star", "disk", "halo", "gal", "host", "atm", "sea",
+        "ice", "air", "dry", "wet", "visc", "turb", "lam", "mol", "free", "fix", "opt", "best", "ideal", "real",
+        "phys", "bare", "ren", "reg", "sub", "sup", "sup", "sys", "env", "coll", "chem", "dyn", "stat", "orb", "rot",
+        "spin", "esc", "vir", "merg", "isco", "peak", "eV", "pl", "Pl", "mat", "conf", "prop", "phot", "bar", "dm",
+        "de", "cdm", "cmb", "nl", "loc", "glob", "inj", "abs", "abs", "emit", "rec", "em", "obs", "src", "det",
+        "noise", "inst", "iso", "adi", "ad", "ent", "inf", "reh", "kick", "sound", "light", "Newt", "red", "blue",
+        "dS", "AdS", "ADM", "BH", "TT", "GW", "EM", "NS", "CMB", "FRW", "GR", "SR", "CM", "LT", "PN", "YM", "EH", "MC",
+        "QCD", "RN", "FP", "WKB", "KG", "dom", "exp", "aff", "ave", "hor", "ergo", "std", "lin", "quad", "sph", "cyl",
+        "pol", "tor", "per", "par",
     ];
     WORDS.contains(&word)
 }

@@ -47,7 +47,8 @@ pub struct Declared {
 impl Declared {
     /// Reads the directives of a document, on top of what its root declares.
     pub fn read(directives: &[Directive], root: Option<&Self>) -> Self {
-        let mut declared = Self { not_index: root.map(|root| root.not_index.clone()).unwrap_or_default(), ..Self::default() };
+        let mut declared =
+            Self { not_index: root.map(|root| root.not_index.clone()).unwrap_or_default(), ..Self::default() };
         for (text, span) in directives.iter().flat_map(|directive| &directive.sentences) {
             match read_sentence(text) {
                 Some(sentence) => {

@@ -18,8 +18,8 @@ use super::built_in::{CLASSES, LetterClass, class_of, is_symbol_kernel, is_usual
 pub struct Evidence {
     /// Statements in which a letter is surely an index.
     index: FxHashMap<CompactString, u32>,
-    /// Statements in which a kernel's lone script is an index, by kernel.
-    lone: FxHashMap<CompactString, u32>,
+    /// Statements in which a kernel's lone script is an index, by kernel and class of the letter.
+    lone: FxHashMap<(CompactString, LetterClass), u32>,
     /// Statements that balance only if this letter on this kernel is no index.
     label: FxHashMap<(CompactString, CompactString), u32>,
     /// Statements that balance only if a usual coordinate is an index.
@@ -32,6 +32,8 @@ pub struct Evidence {
     free_levels: [[u32; 2]; 5],
     /// Statements with indices that balance, and that do not, by class of the odd letters.
     balanced: [[u32; 2]; 5],
+    /// Unknown commands in statements that balance with their arguments as factors, and that do not.
+    unknown: FxHashMap<CompactString, [u32; 2]>,
     /// Kernels that are staggered, and stacked.
     staggered: FxHashMap<(CompactString, u8, u8), [u32; 2]>,
 }
@@ -58,6 +60,10 @@ const FREE_STATEMENTS: u32 = 20;
 const FREE_PERCENT: u32 = 95;
 /// A document's class is not in index notation if more than this share of its statements, in percent, is odd.
 const ODD_PERCENT: u32 = 33;
+/// Balanced statements from which an unknown command's arguments are trusted to be factors, and the share of odd
+/// ones, in percent, up to which they are.
+const TRUSTED_STATEMENTS: u32 = 3;
+const TRUSTED_ODD_PERCENT: u32 = 20;
 /// Odd statements that are forgiven before that share is taken.
 const ODD_FREE: u32 = 3;
 
@@ -68,6 +74,7 @@ impl Evidence {
             return;
         }
         self.vote_balance(sketch, reading);
+        self.vote_unknown(sketch, reading);
         if !reading.odd.is_empty() {
             return;
         }
@@ -96,9 +103,21 @@ impl Evidence {
         }
         for class in CLASSES {
             let odd = reading.odd.iter().any(|(letter, _)| class_of(letter) == class);
-            if seen.get(class as usize) == Some(&true) && let Some(counts) = self.balanced.get_mut(class as usize) {
+            if seen.get(class as usize) == Some(&true)
+                && let Some(counts) = self.balanced.get_mut(class as usize)
+            {
                 bump(counts, usize::from(odd));
             }
+        }
+    }
+
+    /// A letter that stands at least twice and balances speaks for the way the unknown commands were taken.
+    fn vote_unknown(&mut self, sketch: &Sketch, reading: &Reading) {
+        let twice = letters(sketch)
+            .iter()
+            .any(|letter| sketch.places.iter().filter(|place| place.letter == *letter).count() > 1);
+        for name in sketch.unknown.iter().filter(|_| twice || !reading.odd.is_empty()) {
+            bump(self.unknown.entry(name.clone()).or_default(), usize::from(!reading.odd.is_empty()));
         }
     }
 
@@ -148,9 +167,9 @@ impl Evidence {
         let (Some(one), Some(two)) = (sketch.place(first), sketch.place(second)) else { return };
         let same = usize::from(one.level == two.level);
         let kernels = [one, two].map(|place| sketch.units.get(place.unit as usize).map(|unit| unit.kernel.clone()));
-        let symbol = [one, two]
-            .iter()
-            .any(|place| sketch.units.get(place.unit as usize).is_some_and(|unit| is_symbol_kernel(&unit.kernel_letter)));
+        let symbol = [one, two].iter().any(|place| {
+            sketch.units.get(place.unit as usize).is_some_and(|unit| is_symbol_kernel(&unit.kernel_letter))
+        });
         for kernel in kernels.into_iter().flatten() {
             bump(self.kernel_pairs.entry(kernel).or_default(), same);
         }
@@ -162,7 +181,7 @@ impl Evidence {
     fn vote_lone(&mut self, sketch: &Sketch, place: u32) {
         let unit = sketch.place(place).and_then(|place| sketch.units.get(place.unit as usize));
         if let Some(unit) = unit.filter(|unit| unit.shape != Shape::Several) {
-            *self.lone.entry(unit.kernel.clone()).or_default() += 1;
+            *self.lone.entry((unit.kernel.clone(), class_of(&unit.letter))).or_default() += 1;
         }
     }
 
@@ -173,6 +192,7 @@ impl Evidence {
         merge(&mut self.label, &other.label);
         merge(&mut self.running, &other.running);
         merge_pairs(&mut self.kernel_pairs, &other.kernel_pairs);
+        merge_pairs(&mut self.unknown, &other.unknown);
         merge_pairs(&mut self.staggered, &other.staggered);
         for (own, other) in [
             (&mut self.pairs, &other.pairs),
@@ -239,7 +259,8 @@ impl Prices<'_> {
         let label_key = (unit.kernel.clone(), letter.clone());
         let labels = self.count(|evidence| evidence.label.get(&label_key).copied());
         let index = steps(self.count(|evidence| evidence.index.get(letter).copied())).min(3);
-        let lone = steps(self.count(|evidence| evidence.lone.get(&unit.kernel).copied())).min(3);
+        let lone_key = (unit.kernel.clone(), class_of(letter));
+        let lone = steps(self.count(|evidence| evidence.lone.get(&lone_key).copied())).min(3);
         let by_document = match unit.shape {
             Shape::Several => 5 * index,
             Shape::Lone if unit.bias > -40 => 7 * index + if index > 0 { 8 * lone } else { 2 * lone },
@@ -286,13 +307,23 @@ impl Prices<'_> {
         let all = Evidence::class_counts(&self.paper.free_levels, class);
         let [agree, differ] = if own[0] + own[1] >= FREE_STATEMENTS { own } else { all };
         let total = agree + differ;
-        total >= FREE_STATEMENTS && agree * 100 >= FREE_PERCENT * total && self.level_habit(letter) == LevelHabit::InForce
+        total >= FREE_STATEMENTS
+            && agree * 100 >= FREE_PERCENT * total
+            && self.level_habit(letter) == LevelHabit::InForce
     }
 
     /// Whether the file writes this class of letters in index notation at all.
     pub fn is_index_notation(&self, letter: &str) -> bool {
         let [balanced, odd] = Evidence::class_counts(&self.file.balanced, class_of(letter));
         odd <= ODD_FREE || (odd - ODD_FREE) * 100 <= ODD_PERCENT * (balanced + odd)
+    }
+
+    /// Whether statements with these unknown commands may be judged.
+    pub fn trusts(&self, unknown: &[CompactString]) -> bool {
+        unknown.iter().all(|name| {
+            let [balanced, odd] = self.paper.unknown.get(name).copied().unwrap_or_default();
+            balanced >= TRUSTED_STATEMENTS && odd * 100 <= TRUSTED_ODD_PERCENT * (balanced + odd)
+        })
     }
 
     /// How often a kernel with these scripts is staggered, and stacked.

@@ -37,10 +37,9 @@ fn check(judged: &Judged<'_>) -> Option<Report> {
         .map(|(n, fresh)| (Change::Rename(pair.clone(), fresh), if n == 0 { 1 } else { 0 }))
         .collect();
     let mends = mends(judged, changes);
-    let related = outside.iter().map(|place| Related {
-        span: judged.span(*place),
-        message: format!("{} stands outside here", shown(&letter)),
-    });
+    let related = outside
+        .iter()
+        .map(|place| Related { span: judged.span(*place), message: format!("{} stands outside here", shown(&letter)) });
     let finding = Finding {
         rule: RULE.name,
         severity: RULE.severity,

@@ -30,7 +30,9 @@ fn check(judged: &Judged<'_>) -> Option<Report> {
             Event::Terms(terms) => Some(terms.into_iter().filter_map(|term| term.free).collect::<Vec<_>>()),
             _ => None,
         })
-        .find(|places| places.windows(2).any(|pair| matches!(pair, [one, two] if judged.level(*one) != judged.level(*two))))?;
+        .find(|places| {
+            places.windows(2).any(|pair| matches!(pair, [one, two] if judged.level(*one) != judged.level(*two)))
+        })?;
     let up = places.iter().filter(|place| judged.level(**place) == "up").count();
     let odd_level = if up * 2 > places.len() { "down" } else { "up" };
     let tie = up * 2 == places.len();
@@ -49,7 +51,12 @@ fn check(judged: &Judged<'_>) -> Option<Report> {
         rule: RULE.name,
         severity: RULE.severity,
         span: judged.span(blamed),
-        message: format!("{} is free {} here, but {} elsewhere", shown(&letter), judged.level(blamed), judged.level(other)),
+        message: format!(
+            "{} is free {} here, but {} elsewhere",
+            shown(&letter),
+            judged.level(blamed),
+            judged.level(other)
+        ),
         related: vec![Related {
             span: judged.span(other),
             message: format!("{} is free {} here", shown(&letter), judged.level(other)),

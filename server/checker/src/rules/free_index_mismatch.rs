@@ -26,9 +26,8 @@ fn check(judged: &Judged<'_>) -> Option<Report> {
     let first = odd.first()?;
     let mends = mends(judged, candidates(judged, &odd));
     let disagreement = Disagreement::of(judged, &odd);
-    let span = blamed(judged, &mends, &disagreement).unwrap_or_else(|| {
-        index_places(judged, first).first().map_or(judged.sketch.span, |place| judged.span(*place))
-    });
+    let span = blamed(judged, &mends, &disagreement)
+        .unwrap_or_else(|| index_places(judged, first).first().map_or(judged.sketch.span, |place| judged.span(*place)));
     let finding = Finding {
         rule: RULE.name,
         severity: RULE.severity,
@@ -97,10 +96,13 @@ fn insertions(
 ) -> Vec<(Change, i32)> {
     let mut out = Vec::new();
     for letter in odd {
-        let model = index_places(judged, letter).first().and_then(|place| judged.sketch.place(*place)).map(|place| place.level);
+        let model =
+            index_places(judged, letter).first().and_then(|place| judged.sketch.place(*place)).map(|place| place.level);
         for (number, place) in (0_u32..).zip(&judged.sketch.places) {
-            let last_of_script = judged.sketch.places.get(number as usize + 1).is_none_or(|next| next.script != place.script);
-            let other = place.letter != *letter && judged.is_index(number) && class_of(&place.letter) == class_of(letter);
+            let last_of_script =
+                judged.sketch.places.get(number as usize + 1).is_none_or(|next| next.script != place.script);
+            let other =
+                place.letter != *letter && judged.is_index(number) && class_of(&place.letter) == class_of(letter);
             if other && last_of_script && Some(place.level) == model {
                 out.push((Change::Insert(number, letter.clone()), holders(letter) - 2));
             }
@@ -132,9 +134,11 @@ impl Disagreement {
 
     /// A place of an odd letter that stands in the minority of the terms.
     fn odd_place(&self, judged: &Judged<'_>) -> Option<Span> {
-        let free = |letter: &CompactString| self.terms.iter().filter(|(term, l)| l == letter && term.free.is_some()).count();
+        let free =
+            |letter: &CompactString| self.terms.iter().filter(|(term, l)| l == letter && term.free.is_some()).count();
         let all = |letter: &CompactString| self.terms.iter().filter(|(_, l)| l == letter).count();
-        let rarest = self.terms.iter().map(|(_, letter)| letter).min_by_key(|letter| free(letter) * 100 / all(letter).max(1))?;
+        let rarest =
+            self.terms.iter().map(|(_, letter)| letter).min_by_key(|letter| free(letter) * 100 / all(letter).max(1))?;
         let holder = self.terms.iter().filter(|(_, letter)| letter == rarest).find_map(|(term, _)| term.free)?;
         Some(judged.span(holder))
     }
@@ -156,7 +160,11 @@ impl Disagreement {
             return None;
         }
         let both = if held.len() <= lacking.len() && held.len() < 3 {
-            format!("in {}, but not in {}", listed(&held), if lacking.len() > 2 { "the others".to_owned() } else { listed(&lacking) })
+            format!(
+                "in {}, but not in {}",
+                listed(&held),
+                if lacking.len() > 2 { "the others".to_owned() } else { listed(&lacking) }
+            )
         } else if lacking.len() < 3 {
             format!("everywhere but in {}", listed(&lacking))
         } else {
@@ -170,7 +178,11 @@ impl Disagreement {
         let Some(side) = term.side.map(|side| side as usize) else {
             return format!("{} in brackets", excerpt(term.span.of(judged.text)));
         };
-        let title = if sides == 1 { "the expression".to_owned() } else { format!("the {}", side_title(sides, side)).replace("the side", "side") };
+        let title = if sides == 1 {
+            "the expression".to_owned()
+        } else {
+            format!("the {}", side_title(sides, side)).replace("the side", "side")
+        };
         let terms = judged.sketch.sides.get(side).map_or(0, |side| side.terms.len());
         if terms < 2 { title } else { format!("{} of {title}", excerpt(term.span.of(judged.text))) }
     }
@@ -181,7 +193,10 @@ impl Disagreement {
             let Some(place) = term.free else { continue };
             let at = judged.span(place);
             if at != span && !out.iter().any(|related| related.span == at) && out.len() < 6 {
-                out.push(Related { span: at, message: format!("{} is free here ({})", shown(letter), judged.level(place)) });
+                out.push(Related {
+                    span: at,
+                    message: format!("{} is free here ({})", shown(letter), judged.level(place)),
+                });
             }
         }
         out

@@ -18,7 +18,8 @@ pub(super) const RULE: Rule = Rule {
 /// The finding for an `allow`.
 pub(crate) fn idle_allow(span: Span, rule: &str) -> Finding {
     let known = super::find(rule).is_some();
-    let message = if known { format!("nothing here needs allow {rule}") } else { format!("there is no rule named {rule}") };
+    let message =
+        if known { format!("nothing here needs allow {rule}") } else { format!("there is no rule named {rule}") };
     Finding {
         rule: RULE.name,
         severity: RULE.severity,

@@ -27,10 +27,7 @@ fn check(judged: &Judged<'_>) -> Option<Report> {
         }
         let at = swallowed.kept.of(text).trim_end().len();
         let at = Span::new(swallowed.kept.start as usize + at, swallowed.kept.start as usize + at);
-        let edits = vec![
-            Edit { span: at, text: "}".to_owned() },
-            Edit { span: last, text: String::new() },
-        ];
+        let edits = vec![Edit { span: at, text: "}".to_owned() }, Edit { span: last, text: String::new() }];
         let Some((sketch, choice)) = reread(judged, &edits) else { continue };
         let rest = Span { start: swallowed.from.start, end: last.start };
         let finding = Finding {

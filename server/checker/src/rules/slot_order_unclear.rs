@@ -32,7 +32,10 @@ fn check(judged: &Judged<'_>) -> Vec<Finding> {
             rule: RULE.name,
             severity: RULE.severity,
             span: stacked.second,
-            message: format!("the order of the slots of {} is unclear here: elsewhere they are staggered", shown(&stacked.kernel.0)),
+            message: format!(
+                "the order of the slots of {} is unclear here: elsewhere they are staggered",
+                shown(&stacked.kernel.0)
+            ),
             related: Vec::new(),
             fixes: Vec::new(),
             ledger: None,

@@ -28,7 +28,10 @@ fn check(judged: &Judged<'_>) -> Option<Report> {
         rule: RULE.name,
         severity: RULE.severity,
         span: judged.span(second),
-        message: format!("{0} stands twice here and once elsewhere: if no sum over {0} is meant, say so", shown(letter)),
+        message: format!(
+            "{0} stands twice here and once elsewhere: if no sum over {0} is meant, say so",
+            shown(letter)
+        ),
         related: vec![Related { span: judged.span(first), message: "the first of the two".to_owned() }],
         fixes: Vec::new(),
         ledger: Some(judged.view(&odd)),

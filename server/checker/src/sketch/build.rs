@@ -17,6 +17,8 @@ use super::{Node, Side, Sketch, Switch, TermNode, Unit};
 const ARGUMENT_PRICE: i32 = 10;
 /// The same where only the lack of a sum speaks for an argument.
 const DOUBTFUL_ARGUMENT_PRICE: i32 = 20;
+/// How much it speaks against an index that its letter is a quantity of the same statement.
+const QUANTITY_DOUBT: i32 = 35;
 
 pub(super) fn sketch(statement: &Statement) -> Sketch {
     let mut builder = Builder::default();
@@ -25,9 +27,10 @@ pub(super) fn sketch(statement: &Statement) -> Sketch {
     for side in &statement.sides {
         let terms: Vec<TermNode> = side.terms.iter().map(|term| builder.term(term, false)).collect();
         let any = terms.iter().all(|term| term.any);
-        builder.sketch.sides.push(Side { span: side.span, terms, any });
+        builder.sketch.sides.push(Side { span: side.span, terms, any, zero: is_zero(side) });
     }
     let mut sketch = builder.sketch;
+    doubt_quantities(&mut sketch);
     if sketch.relations.is_empty() && sketch.sides.iter().all(|side| side.any) {
         sketch.unjudged = sketch.unjudged.or(Some("nothing to compare"));
     }
@@ -59,7 +62,8 @@ impl Builder {
 
     fn term(&mut self, term: &Term, flip: bool) -> TermNode {
         let places = self.sketch.places.len();
-        let mut walk = Walk { factors: &term.factors, at: 0, flip, below: 0, nodes: Vec::new(), any: false, vector: false };
+        let mut walk =
+            Walk { factors: &term.factors, at: 0, flip, below: 0, nodes: Vec::new(), any: false, vector: false };
         if matches_anything(term) {
             walk.any = true;
         }
@@ -94,7 +98,8 @@ impl Builder {
             Atom::Big(Big::Sum | Big::Limit) => self.bind(walk, factor),
             Atom::Big(Big::Integral) | Atom::Number(_) | Atom::Unread(_) => {}
             Atom::Function(name) => self.function(walk, name, flip),
-            Atom::Matrix | Atom::Text(_) | Atom::Dots | Atom::Order | Atom::Unknown(..) => walk.any = true,
+            Atom::Unknown(name, arguments) => self.unknown(walk, factor, name, arguments, flip),
+            Atom::Matrix | Atom::Text(_) | Atom::Dots | Atom::Order => walk.any = true,
         }
     }
 
@@ -141,7 +146,8 @@ impl Builder {
             }
             let Some((on, price)) = argument_odds(kernel, group, indexed) else { return };
             walk.at += 1;
-            let nodes = group.parts.iter().flat_map(|part| &part.sides).map(|side| self.sum_only(side, walk.flip)).collect();
+            let nodes =
+                group.parts.iter().flat_map(|part| &part.sides).map(|side| self.sum_only(side, walk.flip)).collect();
             let switch = self.switch(Switch { on, price });
             self.scripted_group(walk, next, Node::Switch(switch, Box::new(Node::Product(nodes))), walk.flip);
             if indexed {
@@ -153,6 +159,8 @@ impl Builder {
     fn group(&mut self, walk: &mut Walk<'_>, factor: &Factor, group: &Group, flip: bool) {
         // An evaluation bar, or a condition in brackets: nothing of the term.
         if group.parts.is_empty() || group.parts.iter().any(|part| !part.relations.is_empty()) {
+            // `- (\mu \leftrightarrow \nu)`: another term like the one before.
+            walk.any |= walk.factors.len() == 1;
             return;
         }
         if group.parts.len() > 1 {
@@ -160,8 +168,9 @@ impl Builder {
         }
         let Some(sum) = group.parts.first().and_then(|part| part.sides.first()) else { return };
         let mut node = self.sum_node(walk, sum, flip);
-        if walk.factors.len() == 1 && is_lone_kernel(sum) && factor.scripts.is_empty() {
-            // `(a_{ij})` alone names the matrix.
+        let names = is_lone_kernel(sum) || group.bracket == Bracket::Square;
+        if walk.factors.len() == 1 && names && factor.scripts.is_empty() {
+            // `(a_{ij})` alone names the matrix, `[T_{ij}]` the dimension.
             let switch = self.switch(Switch { on: true, price: 0 });
             node = Node::Switch(switch, Box::new(node));
         }
@@ -174,7 +183,9 @@ impl Builder {
 
     /// Several parts in a bracket: a commutator multiplies them, a list in round brackets spells components out.
     fn list(&mut self, walk: &mut Walk<'_>, factor: &Factor, group: &Group, flip: bool) {
-        if matches!(group.bracket, Bracket::Round | Bracket::Bars) {
+        let components =
+            group.bracket == Bracket::Square && (group.parts.len() > 2 || group.parts.iter().any(is_number));
+        if matches!(group.bracket, Bracket::Round | Bracket::Bars) || components {
             walk.any = true;
             return;
         }
@@ -212,12 +223,43 @@ impl Builder {
         Node::Sum(sum.terms.iter().map(|term| self.term(term, flip)).collect())
     }
 
+    /// A command that nobody knows: with one argument it decorates it, with several they are factors, with none it is
+    /// a kernel. Whether that can be trusted the document decides (`inferred.rs`).
+    fn unknown(&mut self, walk: &mut Walk<'_>, factor: &Factor, name: &CompactString, arguments: &[Sum], flip: bool) {
+        self.sketch.unknown.push(name.clone());
+        let kernel = match arguments {
+            [] => Some(None),
+            [Sum { terms, .. }] => match terms.as_slice() {
+                [Term { factors, .. }] => match factors.as_slice() {
+                    [Factor { atom: Atom::Kernel(kernel), scripts, .. }] if scripts.is_empty() => Some(Some(kernel)),
+                    _ => None,
+                },
+                _ => None,
+            },
+            _ => None,
+        };
+        if let Some(kernel) = kernel {
+            let full =
+                kernel.map_or_else(|| name.clone(), |kernel| compact_str::format_compact!("\\{name} {}", kernel.name));
+            let letter = kernel.map_or(name, |kernel| &kernel.letter);
+            let carrier = Carrier { name: &full, letter, bold: false, group: false };
+            let scripts = read_scripts(self, carrier, &factor.scripts, flip);
+            walk.vector |= scripts.nodes.is_empty();
+            return self.powered(walk, Node::Product(scripts.nodes), scripts.power);
+        }
+        for argument in arguments {
+            self.inline(walk, argument, flip);
+        }
+        let scripts = read_scripts(self, Carrier::BRACKET, &factor.scripts, flip);
+        walk.nodes.extend(scripts.nodes);
+    }
+
     /// `\det`, `\operatorname{tr}` name a matrix by its components; other functions take an ordinary factor.
     fn function(&mut self, walk: &mut Walk<'_>, name: &str, flip: bool) {
         match name {
             "diag" | "const" => walk.any = true,
-            "det" | "tr" | "Tr" | "trace" | "Trace" | "rank" | "rk" | "dim" | "ker" | "adj" | "cof" | "sym" | "skew" | "dev"
-            | "determinant" | "Det" | "span" | "Span" | "sgn" | "sign" | "vol" | "Vol" | "im" => {
+            "det" | "tr" | "Tr" | "trace" | "Trace" | "rank" | "rk" | "dim" | "ker" | "adj" | "cof" | "sym"
+            | "skew" | "dev" | "determinant" | "Det" | "span" | "Span" | "sgn" | "sign" | "vol" | "Vol" | "im" => {
                 let Some(next) = walk.factors.get(walk.at) else { return };
                 walk.at += 1;
                 let mut inner = Walk { factors: std::slice::from_ref(next), at: 1, ..Walk::of(flip) };
@@ -313,6 +355,20 @@ fn is_zero(sum: &Sum) -> bool {
     matches!(sum.terms.as_slice(), [term] if matches!(term.factors.as_slice(), [Factor { atom: Atom::Number(n), .. }] if n == "0"))
 }
 
+fn is_number(part: &Statement) -> bool {
+    let number = |sum: &Sum| matches!(sum.terms.as_slice(), [term] if matches!(term.factors.as_slice(), [Factor { atom: Atom::Number(_), .. }]));
+    part.sides.iter().all(number)
+}
+
+/// A letter that is also a quantity of the statement is more likely a label (`h^k \cos kz`).
+fn doubt_quantities(sketch: &mut Sketch) {
+    for unit in &mut sketch.units {
+        if sketch.quantities.iter().any(|(letter, _)| *letter == unit.letter) {
+            unit.bias -= QUANTITY_DOUBT;
+        }
+    }
+}
+
 fn is_lone_kernel(sum: &Sum) -> bool {
     matches!(sum.terms.as_slice(), [term] if matches!(term.factors.as_slice(), [Factor { atom: Atom::Kernel(_), .. }]))
 }
@@ -320,7 +376,8 @@ fn is_lone_kernel(sum: &Sum) -> bool {
 /// `\partial`, `d`, `\delta` without an index of their own: a slash before them reaches over the next factor too.
 fn is_differential(factor: &Factor) -> bool {
     let Atom::Kernel(kernel) = &factor.atom else { return false };
-    let letters = factor.scripts.iter().flat_map(|script| &script.items).any(|item| matches!(item.kind, ItemKind::Letter(_)));
+    let letters =
+        factor.scripts.iter().flat_map(|script| &script.items).any(|item| matches!(item.kind, ItemKind::Letter(_)));
     !letters && matches!(kernel.letter.as_str(), "\\partial" | "d" | "\\delta" | "D" | "\\Delta")
 }
 
@@ -329,8 +386,13 @@ fn argument_odds(kernel: &Kernel, group: &Group, indexed: bool) -> Option<(bool,
     let sums = || group.parts.iter().flat_map(|part| &part.sides);
     match group.bracket {
         // A functional, `S[g]`; a commutator or a factor if the kernel has indices.
-        Bracket::Square if indexed => return None,
-        Bracket::Square => return (group.parts.len() == 1 && sums().all(is_lone_kernel)).then_some((false, ARGUMENT_PRICE)),
+        Bracket::Square if indexed => {
+            let functional = group.parts.len() == 1 && sums().all(is_lone_kernel);
+            return functional.then_some((true, ARGUMENT_PRICE));
+        }
+        Bracket::Square => {
+            return (group.parts.len() == 1 && sums().all(is_lone_kernel)).then_some((false, ARGUMENT_PRICE));
+        }
         Bracket::Round => {}
         Bracket::Curly | Bracket::Bars | Bracket::Angle | Bracket::Pair => return None,
     }
@@ -342,7 +404,10 @@ fn argument_odds(kernel: &Kernel, group: &Group, indexed: bool) -> Option<(bool,
         return Some((false, ARGUMENT_PRICE));
     }
     let lone_term = sums().all(|sum| sum.terms.len() == 1 && sum.terms.iter().all(|term| term.sign.is_none()));
-    (lone_term && !indexed && kernel.letter != "d").then_some((true, DOUBTFUL_ARGUMENT_PRICE))
+    if indexed {
+        return sums().all(is_lone_kernel).then_some((true, DOUBTFUL_ARGUMENT_PRICE));
+    }
+    (lone_term && kernel.letter != "d").then_some((true, DOUBTFUL_ARGUMENT_PRICE))
 }
 
 fn begins_with_point(term: &Term) -> bool {

@@ -6,11 +6,11 @@ use indexwise_grammar::tree::{Atom, Factor, Item, ItemKind, Level, Script};
 
 use crate::conventions::built_in::{
     LetterClass, bare_letter, class_of, is_basis_kernel, is_derivative, is_index_kernel, is_label_word,
-    is_labelled_operator, is_usual_coordinate,
+    is_labelled_operator, is_point_kernel, is_usual_coordinate,
 };
 
-use super::{Node, Place, Shape, Stacked, Switch, Unit};
 use super::build::Builder;
+use super::{Node, Place, Shape, Stacked, Switch, Unit};
 
 /// Who carries the scripts.
 #[derive(Clone, Copy)]
@@ -49,6 +49,8 @@ struct Candidate<'t> {
     fixed: Option<i32>,
     parenthesised: bool,
     after_number: bool,
+    /// The lower letter of a point with an upper index (`x^i_a`): a particle's name or a frame's index.
+    particle: bool,
 }
 
 /// Price of reading a word that is listed as a label as indices after all.
@@ -68,10 +70,11 @@ pub(super) fn read_scripts(builder: &mut Builder, carrier: Carrier<'_>, scripts:
         if let Some(power) = power_of(script, carrier, scripts) {
             out.power = Some(power);
         } else if holds_indices(script) {
-            numbers += script.items.iter().filter(|item| matches!(item.kind, ItemKind::Number(_))).count();
+            numbers += plain_numbers(script);
             collect(builder, carrier, script, &mut candidates);
         }
     }
+    mark_particles(carrier, &mut candidates);
     note_stacked(builder, carrier, scripts, &candidates);
     let slots = candidates.len() + numbers;
     let components = candidates.iter().all(|c| is_usual_coordinate(&c.letter));
@@ -113,13 +116,29 @@ fn power_of(script: &Script, carrier: Carrier<'_>, all: &[Script]) -> Option<Pow
             "3" if lower > 1 && !carrier.group => None,
             _ => Some(Power::Other),
         },
+        _ if is_exponential(script, carrier, all) => Some(Power::Other),
         // An exponent with an arithmetic of its own: a scalar formula, a scope apart.
         items if items.iter().any(|item| is_arithmetic(&item.kind)) => Some(Power::Other),
-        [Item { kind: ItemKind::Letter(letter), .. }] if carrier.group && matches!(letter.as_str(), "n" | "N" | "p" | "w") => {
+        [Item { kind: ItemKind::Letter(letter), .. }]
+            if carrier.group && matches!(letter.as_str(), "n" | "N" | "p" | "w") =>
+        {
             Some(Power::Other)
         }
         _ => None,
     }
+}
+
+/// Numbers that are components; in brackets they are orders, `\rho_b^{(0)}`.
+fn plain_numbers(script: &Script) -> usize {
+    if matches!(script.items.first().map(|item| &item.kind), Some(ItemKind::Open(_))) {
+        return 0;
+    }
+    script.items.iter().filter(|item| matches!(item.kind, ItemKind::Number(_))).count()
+}
+
+/// `e^{i\omega r}`: several letters above an e that carries nothing below.
+fn is_exponential(script: &Script, carrier: Carrier<'_>, all: &[Script]) -> bool {
+    carrier.name == "e" && all.len() == 1 && script.items.len() > 1
 }
 
 fn is_arithmetic(kind: &ItemKind) -> bool {
@@ -151,7 +170,8 @@ fn collect<'t>(builder: &mut Builder, carrier: Carrier<'_>, script: &'t Script, 
             script,
             fixed,
             parenthesised: inside && letters == 1,
-            after_number: matches!(before, Some(ItemKind::Number(number)) if number.as_str() > "3"),
+            after_number: matches!(before, Some(ItemKind::Number(number)) if number.as_str() > "3" || letters == 1 && lone_latin(&item.kind)),
+            particle: false,
         };
         match &item.kind {
             ItemKind::Letter(letter) => out.push(candidate(letter.clone(), None)),
@@ -174,13 +194,6 @@ fn lent(
     item: &Item,
     factor: &Factor,
 ) -> Option<CompactString> {
-    if let Atom::Unknown(_, sums) = &factor.atom {
-        // An unknown command with one argument is transparent.
-        let [sum] = sums.as_slice() else { return None };
-        let [term] = sum.terms.as_slice() else { return None };
-        let [Factor { atom: Atom::Kernel(kernel), .. }] = term.factors.as_slice() else { return None };
-        return Some(kernel.name.clone());
-    }
     let Atom::Kernel(kernel) = &factor.atom else { return None };
     let letters: Vec<&CompactString> = factor
         .scripts
@@ -205,6 +218,22 @@ fn note_swallowed(builder: &mut Builder, script: &Script, item: &Item) {
     if !known && first != item.span {
         let kept = Span { start: first.start, end: item.span.start };
         builder.sketch.swallowed.push(super::Swallowed { script: script.span, from: item.span, kept });
+    }
+}
+
+/// Latin letters past l after a number name something: `\Omega_{0m}`, but `T_{0i}`.
+fn lone_latin(kind: &ItemKind) -> bool {
+    matches!(kind, ItemKind::Letter(letter) if matches!(letter.as_bytes(), [b'm'..=b'z' | b'A'..=b'Z' | b'a'..=b'h']))
+}
+
+fn mark_particles(carrier: Carrier<'_>, candidates: &mut [Candidate<'_>]) {
+    let point = is_point_kernel(carrier.letter) && carrier.letter != "\\eta" && carrier.letter != "\\omega";
+    if let [one, two] = candidates
+        && point
+        && one.script.level != two.script.level
+    {
+        one.particle = one.script.level == Level::Down;
+        two.particle = two.script.level == Level::Down;
     }
 }
 
@@ -237,7 +266,8 @@ fn words(candidates: &[Candidate<'_>]) -> Vec<Word> {
                 length += 1;
             }
         }
-        let listed = length > 1 && is_label_word(&word);
+        let in_family = |family: &str| word.chars().all(|c| family.contains(c));
+        let listed = length > 1 && is_label_word(&word) && !in_family("abcdefgh") && !in_family("ijklmnpqrs");
         let odd = length > 2 && word.chars().any(|c| matches!(c, 'o' | 't'..='z'));
         if listed || odd {
             out.push(Word { from, length, listed });
@@ -298,22 +328,45 @@ fn bias(carrier: Carrier<'_>, candidate: &Candidate<'_>, shape: Shape, component
     if candidate.parenthesised {
         return 2;
     }
+    if candidate.particle {
+        return 15;
+    }
     let up = candidate.script.level == Level::Up;
     let base = match (shape, class) {
         (Shape::Several, LetterClass::Capital) => 30,
+        // Spherical harmonics.
+        (Shape::Several, _) if harmonic(candidate.script) => 12,
         (Shape::Several, LetterClass::Other) => 10,
         (Shape::Several, _) => 60,
         (Shape::OnGroup, LetterClass::Capital | LetterClass::Other) => -20,
         (Shape::OnGroup, _) => 10,
-        (Shape::Lone, LetterClass::Greek) => if up { 30 } else { 22 },
+        (Shape::Lone, LetterClass::Greek) => {
+            if up {
+                30
+            } else {
+                22
+            }
+        }
         (Shape::Lone, LetterClass::LatinEarly) => 10,
         (Shape::Lone, LetterClass::LatinLate) => match bare {
             "i" | "j" => 25,
             "k" | "l" => 21,
-            "m" | "n" => if up { 6 } else { 12 },
+            "m" | "n" => {
+                if up {
+                    6
+                } else {
+                    12
+                }
+            }
             _ => 4,
         },
-        (Shape::Lone, LetterClass::Capital) => if up && bare == "T" { -50 } else { -12 },
+        (Shape::Lone, LetterClass::Capital) => {
+            if up && bare == "T" {
+                -50
+            } else {
+                -12
+            }
+        }
         (Shape::Lone, LetterClass::Other) => -20,
     };
     let by_number = if candidate.after_number { -40 } else { 0 };
@@ -329,10 +382,22 @@ fn bias(carrier: Carrier<'_>, candidate: &Candidate<'_>, shape: Shape, component
     base + by_kernel + by_number
 }
 
+/// `Y_{\ell m}`, `a_{lm}`.
+fn harmonic(script: &Script) -> bool {
+    let letters: Vec<&str> = script
+        .items
+        .iter()
+        .filter_map(|item| if let ItemKind::Letter(letter) = &item.kind { Some(letter.as_str()) } else { None })
+        .collect();
+    matches!(letters.as_slice(), ["\\ell" | "l", "m"] | ["n", "\\ell" | "l", "m"])
+}
+
 fn note_stacked(builder: &mut Builder, carrier: Carrier<'_>, scripts: &[Script], candidates: &[Candidate<'_>]) {
     let letters = |level: Level| candidates.iter().filter(|c| c.script.level == level).count();
     let (up, down) = (letters(Level::Up), letters(Level::Down));
-    let (Some(first), Some(second)) = (candidates.first(), candidates.iter().find(|c| c.script.level != first_level(candidates))) else {
+    let (Some(first), Some(second)) =
+        (candidates.first(), candidates.iter().find(|c| c.script.level != first_level(candidates)))
+    else {
         return;
     };
     if up == 0 || down == 0 || carrier.group {

@@ -1,6 +1,6 @@
 //! The ledger as a table: one row for each side or term, what is free and what is summed, the odd ones marked.
 
-use indexwise_checker::finding::{Ledger, LedgerIndex};
+use indexwise_checker::finding::{Ledger, LedgerIndex, LedgerRow};
 use unicode_width::UnicodeWidthStr;
 
 use crate::output::printable;
@@ -9,6 +9,8 @@ use crate::output::printable;
 const GAP: usize = 4;
 /// The column of the free indices is at least so wide.
 const FREE: usize = 20;
+/// A longer table is cut down to its first row and the odd ones, at most so many.
+const MOST_ROWS: usize = 12;
 
 /// A line of the table.
 #[derive(Debug, PartialEq, Eq)]
@@ -28,8 +30,8 @@ struct Cell {
 
 /// The lines of the table.
 pub(super) fn lines(ledger: &Ledger) -> Vec<Line> {
-    let rows: Vec<(String, Cell, Cell)> = ledger
-        .rows
+    let shown = shown(&ledger.rows);
+    let rows: Vec<(String, Cell, Cell)> = shown
         .iter()
         .map(|row| (printable(&row.title), cell("free  ", &row.free), cell("summed  ", &row.summed)))
         .collect();
@@ -46,7 +48,20 @@ pub(super) fn lines(ledger: &Ledger) -> Vec<Line> {
         let line = format!("{}{}{}", padded(title, titles), padded(&of_free.text, free), of_summed.text);
         line.trim_end().to_owned()
     });
-    with_marks(texts.collect(), &marks)
+    let mut lines = with_marks(texts.collect(), &marks);
+    if shown.len() < ledger.rows.len() {
+        lines.push(Line { text: format!("({} more rows)", ledger.rows.len() - shown.len()), is_mark: false });
+    }
+    lines
+}
+
+fn shown(rows: &[LedgerRow]) -> Vec<&LedgerRow> {
+    if rows.len() <= MOST_ROWS {
+        return rows.iter().collect();
+    }
+    let odd = |row: &LedgerRow| row.free.iter().chain(&row.summed).any(|entry| entry.odd);
+    let kept = rows.iter().enumerate().filter(|(at, row)| *at == 0 || odd(row));
+    kept.map(|(_, row)| row).take(MOST_ROWS).collect()
 }
 
 /// Where the same columns are odd in every row that has odd ones, one line of carets under the last row does;
@@ -113,7 +128,6 @@ fn padded(text: &str, columns: usize) -> String {
 #[cfg(test)]
 mod tests {
     use super::*;
-    use indexwise_checker::finding::LedgerRow;
 
     /// A row from "k down*, m up" and "i j": a star marks an odd entry.
     fn row(title: &str, free: &str, summed: &str) -> LedgerRow {
@@ -166,5 +180,16 @@ mod tests {
                     right side    free  none              summed  i j\n\
                     \x20                                               ^ here\n";
         assert_eq!(table(vec![row("left side", "", ""), row("right side", "", "i j*")]), want);
+    }
+
+    #[test]
+    fn a_long_table_is_cut_down_to_what_is_odd() {
+        let mut rows: Vec<LedgerRow> = (1..=40).map(|at| row(&format!("side {at}"), "k up", "")).collect();
+        rows.push(row("side 41", "m up*", ""));
+        let want = "side 1     free  k up\n\
+                    side 41    free  m up\n\
+                    \x20                ^ here\n\
+                    (39 more rows)\n";
+        assert_eq!(table(rows), want);
     }
 }
