@@ -91,6 +91,7 @@ fn parse<'a>(
         display,
         labels: prepared.labels.clone(),
         unknown: prepared.unknown.clone(),
+        no_sum: prepared.no_sum,
         ..Formula::default()
     };
     for range in &prepared.statements {

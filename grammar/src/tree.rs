@@ -53,6 +53,8 @@ pub struct Formula {
     pub unknown: Vec<(CompactString, Span)>,
     /// `\label`s, and the leading `(name)` of a note's formula.
     pub labels: Vec<(CompactString, Span)>,
+    /// Whether words in it say that no sum is meant.
+    pub no_sum: bool,
     /// Whether the region is set on its own.
     pub display: bool,
 }

@@ -136,4 +136,6 @@ pub(crate) struct Prepared {
     pub labels: Vec<(CompactString, Span)>,
     /// Unknown commands found.
     pub unknown: Vec<(CompactString, Span)>,
+    /// Whether words in the formula say that no sum is meant.
+    pub no_sum: bool,
 }

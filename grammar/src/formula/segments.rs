@@ -15,7 +15,13 @@ pub(crate) fn cut(tidied: Tidied) -> Prepared {
         cutter.take(lexeme, lexemes.get(at + 1..).unwrap_or_default());
     }
     cutter.finish();
-    Prepared { lexemes: cutter.out, statements: cutter.statements, labels: tidied.labels, unknown: tidied.unknown }
+    Prepared {
+        lexemes: cutter.out,
+        statements: cutter.statements,
+        labels: tidied.labels,
+        unknown: tidied.unknown,
+        no_sum: tidied.no_sum,
+    }
 }
 
 /// Takes away the braces (and the wrapping command) of groups outside all brackets that hold a relation or rows, or
@@ -91,6 +97,7 @@ fn takes_group(kind: Kind) -> bool {
     matches!(
         kind,
         Up | Down
+            | Function
             | Fraction
             | Derivative
             | Differential

@@ -89,6 +89,8 @@ pub(crate) struct Tidied {
     pub lexemes: Vec<Lexeme>,
     pub labels: Vec<(CompactString, Span)>,
     pub unknown: Vec<(CompactString, Span)>,
+    /// Whether words in the formula say that no sum is meant.
+    pub no_sum: bool,
 }
 
 /// Gives every token its meaning.
@@ -194,6 +196,9 @@ impl<'t, 'a> Cursor<'t, 'a> {
             Some(next) => {
                 self.at += 1;
                 self.push(Kind::Equal, ":=", token.span.join(next.span));
+            }
+            None if self.peek().is_some_and(|next| matches!(next.text, "\\quad" | "\\qquad" | "\\ " | "\\;" | "&")) => {
+                self.push(Kind::Separator, ":", token.span);
             }
             None => self.push(Kind::Times, ":", token.span),
         }
@@ -447,6 +452,7 @@ impl<'t, 'a> Cursor<'t, 'a> {
         self.skip_group();
         let inner = self.tokens.get(from..self.at.min(self.tokens.len())).unwrap_or_default();
         let span = inner.last().map_or(token.span, |last| token.span.join(last.span));
+        self.out.no_sum |= says_no_sum(inner);
         self.push(Kind::Text, "", span);
         for (n, part) in inner.split(|t| t.kind == TokenKind::Dollar).enumerate() {
             if n % 2 == 1 && !part.is_empty() {
@@ -575,6 +581,11 @@ impl<'t, 'a> Cursor<'t, 'a> {
             }
         }
     }
+}
+
+fn says_no_sum(words: &[Token<'_>]) -> bool {
+    let letters = words.iter().filter(|token| token.kind == TokenKind::Letter).map(|token| token.text.to_lowercase());
+    letters.collect::<String>().contains("nosum")
 }
 
 fn takes_star(kind: Kind) -> bool {

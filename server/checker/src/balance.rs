@@ -6,7 +6,7 @@
 
 use indexwise_grammar::tree::{Level, RelationKind};
 
-use crate::sketch::{Node, Side, Sketch, TermNode};
+use crate::sketch::{Node, Shape, Side, Sketch, TermNode};
 
 /// Which units are read as indices and which switches are on.
 #[derive(Clone, Debug, Default, PartialEq, Eq)]
@@ -53,6 +53,8 @@ pub struct Compared {
     pub free: Option<u32>,
     /// The side that it belongs to, if the sides of the statement are compared.
     pub side: Option<u32>,
+    /// Whether it is a bare number.
+    pub number: bool,
 }
 
 #[derive(Clone, Debug, Default)]
@@ -64,6 +66,8 @@ struct Tally {
     odd: Odd,
     /// Not to be judged: a power of something with a free index.
     skip: bool,
+    /// An argument that does not count holds the letter.
+    lent: bool,
 }
 
 /// Judges one letter. Events go to `events` in the order of the text.
@@ -157,7 +161,9 @@ impl Count<'_> {
         if free == 0 {
             return Odd::Balanced;
         }
-        let agree = free == terms.len();
+        // `r_i + p_i = 1`: numbers named by a letter, one formula for each.
+        let numbered = || terms.iter().all(|term| term.free.is_some() || term.number) && self.all_lone();
+        let agree = free == terms.len() || numbered();
         self.events.push(Event::Terms(terms));
         if agree { Odd::Balanced } else { Odd::Mismatch }
     }
@@ -173,14 +179,15 @@ impl Count<'_> {
             if reach {
                 bound_so_far = bound_here;
             }
-            if term.any || term.shorthand || tally.skip {
+            let loose = term.loose.is_some_and(|switch| self.is_on(switch));
+            if term.any || term.shorthand || loose || tally.skip || (tally.lent && tally.open.is_empty()) {
                 continue;
             }
             let settled = self.settle(tally);
             sum.odd = sum.odd.max(settled.odd);
             sum.closed = sum.closed.or(settled.closed);
             if settled.odd <= Odd::Mismatch {
-                out.push(Compared { span: term.span, free: settled.open.first().copied(), side });
+                out.push(Compared { span: term.span, free: settled.open.first().copied(), side, number: term.number });
             }
         }
         sum
@@ -212,6 +219,7 @@ impl Count<'_> {
             tally.closed = tally.closed.or(one.closed);
             tally.odd = tally.odd.max(one.odd);
             tally.skip |= one.skip;
+            tally.lent |= one.lent;
         }
         tally
     }
@@ -234,6 +242,12 @@ impl Count<'_> {
                 tally.open.clear();
                 tally
             }
+            Node::Scope(inner) => Tally { closed: None, ..self.node(inner, bound) },
+            Node::Argument(switch, inner) if !self.is_on(*switch) => {
+                let inside = self.node(inner, bound);
+                Tally { lent: !inside.open.is_empty(), ..Tally::default() }
+            }
+            Node::Argument(_, inner) => self.node(inner, bound),
             Node::Switch(switch, inner) => {
                 if self.is_on(*switch) {
                     self.node(inner, bound)
@@ -273,6 +287,12 @@ impl Count<'_> {
             tally.odd = tally.odd.max(self.compare(compared));
         }
         tally
+    }
+
+    /// Whether the letter stands only on kernels that carry nothing else.
+    fn all_lone(&self) -> bool {
+        let mine = self.sketch.units.iter().filter(|unit| unit.letter == self.letter);
+        mine.into_iter().all(|unit| unit.shape == Shape::Lone)
     }
 
     fn is_on(&self, switch: u32) -> bool {

@@ -233,7 +233,11 @@ fn replace_in(node: &mut Node, number: u32, by: &Node) {
         }
         Node::Product(nodes) => nodes.iter_mut().for_each(|node| replace_in(node, number, by)),
         Node::Sum(terms) => terms.iter_mut().for_each(|term| replace_in_term(term, number, by)),
-        Node::Square(inner, _) | Node::Power(inner) | Node::Switch(_, inner) => replace_in(inner, number, by),
+        Node::Square(inner, _)
+        | Node::Power(inner)
+        | Node::Scope(inner)
+        | Node::Argument(_, inner)
+        | Node::Switch(_, inner) => replace_in(inner, number, by),
         Node::Bind(_) => {}
     }
 }

@@ -220,7 +220,7 @@ fn judge_document(document: &Sketched<'_>, prices: Prices<'_>, settings: &Settin
             *flag |= any_index;
         }
         reading.odd.retain(|(letter, _)| prices.is_index_notation(letter));
-        if sketch.unjudged.is_none() && prices.trusts(&sketch.unknown) {
+        if sketch.unjudged.is_none() && !formula.no_sum && prices.trusts(&sketch.unknown) {
             let judged = Judged { text: document.read.text, formula, sketch: sketch.clone(), reading, prices };
             findings.extend(rules::check_statement(&judged).into_iter().map(|finding| (*number, finding)));
         }

@@ -15,6 +15,8 @@ use crate::sketch::Sketch;
 pub const MARGIN: i32 = 40;
 /// A letter that this little puts in balance is not blamed beside others.
 const CHEAP: i32 = 15;
+/// Price of another letter on a kernel whose scripts are labels already.
+const REPEATED: i32 = 3;
 /// Units of one letter that are tried in all combinations; further ones keep their likelier reading.
 const UNITS_TRIED: usize = 6;
 /// Switches that are tried singly and in pairs.
@@ -96,6 +98,8 @@ fn try_letters(sketch: &Sketch, scores: &[i32], letters: &[&str], mut choice: Ch
     let likely = choice.clone();
     let mut wanted: Vec<(&str, Odd, i32, Option<Vec<usize>>)> = Vec::new();
     let mut total = cost;
+    // That a kernel's scripts are labels is one assumption, however many letters stand on it.
+    let mut assumed: Vec<(&str, i32)> = Vec::new();
     for letter in letters {
         let odd = judge(sketch, &choice, letter, &mut Vec::new());
         if odd == Odd::Balanced {
@@ -103,7 +107,12 @@ fn try_letters(sketch: &Sketch, scores: &[i32], letters: &[&str], mut choice: Ch
         }
         let flips = cheapest_flips(sketch, scores, letter, &likely);
         let price = flips.as_ref().map_or(MARGIN + 1, |(price, _)| *price);
-        total += price;
+        match &flips {
+            None => total += price,
+            Some((_, units)) => {
+                total += units.iter().map(|unit| assume(sketch, scores, *unit, &mut assumed)).sum::<i32>()
+            }
+        }
         wanted.push((letter, odd, price, flips.map(|(_, units)| units)));
     }
     let clean = total <= MARGIN;
@@ -123,6 +132,24 @@ fn try_letters(sketch: &Sketch, scores: &[i32], letters: &[&str], mut choice: Ch
         }
     }
     Reading { choice, cost: paid, odd }
+}
+
+/// What reading one more unit the other way adds: the whole price for a new kernel, else what it is dearer than the
+/// dearest before, and a little.
+fn assume<'s>(sketch: &'s Sketch, scores: &[i32], unit: usize, assumed: &mut Vec<(&'s str, i32)>) -> i32 {
+    let price = scores.get(unit).map_or(0, |score| score.abs());
+    let kernel = sketch.units.get(unit).map_or("", |unit| unit.kernel.as_str());
+    match assumed.iter_mut().find(|(known, _)| *known == kernel && !kernel.is_empty()) {
+        None => {
+            assumed.push((kernel, price));
+            price
+        }
+        Some((_, dearest)) => {
+            let more = (price - *dearest).max(0);
+            *dearest = (*dearest).max(price);
+            more + REPEATED
+        }
+    }
 }
 
 /// The cheapest set of this letter's units to read the other way so that the letter balances, within the margin.

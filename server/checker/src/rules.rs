@@ -111,8 +111,13 @@ fn balance_findings(mut judged: Judged<'_>) -> Vec<Finding> {
             _ => None,
         });
         let Some(report) = report else { break };
+        let mismatch = report.finding.rule == free_index_mismatch::RULE.name;
         out.push(report.finding);
         let Some((sketch, choice)) = report.mended else { break };
+        // A mismatch names all letters that differ; what one change leaves of it is no other slip.
+        if mismatch && faults::odd_letters(&sketch, &choice).iter().any(|left| judged.reading.odd.contains(left)) {
+            break;
+        }
         judged.reading.odd = faults::odd_letters(&sketch, &choice);
         judged.sketch = sketch;
         judged.reading.choice = choice;

@@ -63,6 +63,10 @@ pub struct TermNode {
     pub nodes: Vec<Node>,
     /// Whether it matches anything.
     pub any: bool,
+    /// Matches anything while this switch is on: a list of components, a map's value.
+    pub loose: Option<u32>,
+    /// Whether it is a bare number.
+    pub number: bool,
     /// Whether it is written without indices in a vector notation, so that it may stand for one with a free index.
     pub shorthand: bool,
 }
@@ -80,6 +84,10 @@ pub enum Node {
     Square(Box<Node>, u32),
     /// Another power: a free index inside is not judged.
     Power(Box<Node>),
+    /// The argument of a function: its dummies are local to it.
+    Scope(Box<Node>),
+    /// An argument: counts only while the switch is on; else a term that lacks a letter may have it from here.
+    Argument(u32, Box<Node>),
     /// Counts only while the switch is on.
     Switch(u32, Box<Node>),
     /// A sum sign: letters bound in the rest of the product, each perhaps under a switch.
@@ -131,6 +139,8 @@ pub enum Shape {
     Several,
     /// On a bracket.
     OnGroup,
+    /// Alone in brackets of its own, `e_{(a)}`: a frame's index or the name of an order.
+    Bracketed,
 }
 
 /// A scope that may count or not.

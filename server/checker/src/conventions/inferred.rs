@@ -22,6 +22,9 @@ pub struct Evidence {
     lone: FxHashMap<(CompactString, LetterClass), u32>,
     /// Statements that balance only if this letter on this kernel is no index.
     label: FxHashMap<(CompactString, CompactString), u32>,
+    /// The same by kernel and by letter alone.
+    label_kernel: FxHashMap<CompactString, u32>,
+    label_letter: FxHashMap<CompactString, u32>,
     /// Statements that balance only if a usual coordinate is an index.
     running: FxHashMap<CompactString, u32>,
     /// Pairs on opposite levels and on one level, by class.
@@ -126,6 +129,8 @@ impl Evidence {
             let likely = unit.bias > 0;
             if likely && !index {
                 *self.label.entry((unit.kernel.clone(), unit.letter.clone())).or_default() += 1;
+                *self.label_kernel.entry(unit.kernel.clone()).or_default() += 1;
+                *self.label_letter.entry(unit.letter.clone()).or_default() += 1;
             }
             if *index && is_usual_coordinate(&unit.letter) {
                 *self.running.entry(unit.letter.clone()).or_default() += 1;
@@ -139,15 +144,21 @@ impl Evidence {
         for event in events {
             match event {
                 Event::Pair(first, second) => {
-                    sure = true;
                     self.vote_pair(sketch, class, *first, *second);
-                    self.vote_lone(sketch, *first);
-                    self.vote_lone(sketch, *second);
+                    // The same kernel twice (`E_e E_e`) says nothing: a label repeats too.
+                    if differ(sketch, &[*first, *second]) {
+                        sure = true;
+                        self.vote_lone(sketch, *first);
+                        self.vote_lone(sketch, *second);
+                    }
                 }
                 Event::Terms(terms) if terms.len() > 1 => {
-                    sure = true;
+                    let free: Vec<u32> = terms.iter().filter_map(|term| term.free).collect();
+                    sure |= differ(sketch, &free);
                     let places = || terms.iter().filter_map(|term| term.free);
-                    places().for_each(|place| self.vote_lone(sketch, place));
+                    if differ(sketch, &free) {
+                        places().for_each(|place| self.vote_lone(sketch, place));
+                    }
                     let mut levels = places().filter_map(|place| sketch.place(place)).map(|place| place.level);
                     let first = levels.next();
                     let differ = levels.any(|level| Some(level) != first);
@@ -190,6 +201,8 @@ impl Evidence {
         merge(&mut self.index, &other.index);
         merge(&mut self.lone, &other.lone);
         merge(&mut self.label, &other.label);
+        merge(&mut self.label_kernel, &other.label_kernel);
+        merge(&mut self.label_letter, &other.label_letter);
         merge(&mut self.running, &other.running);
         merge_pairs(&mut self.kernel_pairs, &other.kernel_pairs);
         merge_pairs(&mut self.unknown, &other.unknown);
@@ -206,6 +219,16 @@ impl Evidence {
     fn class_counts(table: &[[u32; 2]; 5], class: LetterClass) -> [u32; 2] {
         table.get(class as usize).copied().unwrap_or_default()
     }
+}
+
+/// Whether places stand on more than one kernel, or on one with several indices.
+fn differ(sketch: &Sketch, places: &[u32]) -> bool {
+    let units: Vec<&Unit> = places
+        .iter()
+        .filter_map(|place| sketch.place(*place).and_then(|place| sketch.units.get(place.unit as usize)))
+        .collect();
+    let first = units.first().map(|unit| (&unit.kernel, unit.shape));
+    units.iter().any(|unit| unit.shape == Shape::Several || Some((&unit.kernel, unit.shape)) != first)
 }
 
 fn bump(counts: &mut [u32; 2], at: usize) {
@@ -261,11 +284,20 @@ impl Prices<'_> {
         let index = steps(self.count(|evidence| evidence.index.get(letter).copied())).min(3);
         let lone_key = (unit.kernel.clone(), class_of(letter));
         let lone = steps(self.count(|evidence| evidence.lone.get(&lone_key).copied())).min(3);
+        // A kernel that is never seen with an index of this class is more likely to carry a label.
+        let stranger = || {
+            let kernel = steps(self.count(|evidence| evidence.label_kernel.get(&unit.kernel).copied())).min(3);
+            let other = steps(self.count(|evidence| evidence.label_letter.get(letter).copied())).min(3);
+            index - 4 * kernel - 2 * other
+        };
         let by_document = match unit.shape {
-            Shape::Several => 5 * index,
-            Shape::Lone if unit.bias > -40 => 7 * index + if index > 0 { 8 * lone } else { 2 * lone },
+            Shape::Several => 7 * index,
+            Shape::Bracketed => return unit.bias,
+            Shape::Lone if unit.bias <= -40 => 0,
+            Shape::Lone if lone == 0 => stranger(),
+            Shape::Lone => 7 * index + 8 * lone,
             Shape::OnGroup if unit.bias > -40 => 4 * index,
-            _ => 0,
+            Shape::OnGroup => 0,
         };
         unit.bias + by_document - 12 * steps(labels).min(4)
     }
@@ -323,6 +355,14 @@ impl Prices<'_> {
         unknown.iter().all(|name| {
             let [balanced, odd] = self.paper.unknown.get(name).copied().unwrap_or_default();
             balanced >= TRUSTED_STATEMENTS && odd * 100 <= TRUSTED_ODD_PERCENT * (balanced + odd)
+        })
+    }
+
+    /// Whether neither kernel of a pair is ever seen with an index: then the two may be labels.
+    pub fn both_strange(&self, one: &Unit, two: &Unit) -> bool {
+        [one, two].iter().all(|unit| {
+            let key = (unit.kernel.clone(), class_of(&unit.letter));
+            unit.shape == Shape::Lone && !self.paper.lone.contains_key(&key)
         })
     }
 

@@ -4,6 +4,7 @@
 use compact_str::CompactString;
 
 use crate::balance::{Choice, Event, Odd, judge, same_level};
+use crate::conventions::built_in::is_symbol_kernel;
 use crate::conventions::inferred::{LevelHabit, Prices};
 use crate::reading::letters;
 use crate::sketch::Sketch;
@@ -52,8 +53,13 @@ pub(super) fn pair_faults(sketch: &Sketch, letter: &str, events: &[Event], price
         let unit = sketch.place(place).and_then(|place| sketch.units.get(place.unit as usize));
         unit.is_none_or(|unit| prices.kernel_ignores_levels(unit))
     };
+    let strange = |one: u32, two: u32| {
+        let unit = |place: u32| sketch.place(place).and_then(|place| sketch.units.get(place.unit as usize));
+        matches!((unit(one), unit(two)), (Some(one), Some(two)) if prices.both_strange(one, two))
+    };
     events
         .iter()
+        .filter(|event| !matches!(event, Event::Pair(one, two) if strange(*one, *two) || component(sketch, *one, *two)))
         .filter_map(|event| match event {
             Event::Pair(one, two) if same_level(sketch, *one, *two).is_some() && !exempt(*one) && !exempt(*two) => {
                 Some(Fault::PairLevel(letter.into(), *one, *two))
@@ -68,13 +74,33 @@ pub(super) fn free_fault(sketch: &Sketch, letter: &str, events: &[Event], prices
     if !prices.free_levels_in_force(letter) {
         return None;
     }
+    if same_kernel_sides(sketch) {
+        return None;
+    }
     let differs = events.iter().any(|event| match event {
         Event::Terms(terms) => {
-            let mut levels = terms.iter().filter_map(|term| term.free).filter_map(|place| sketch.place(place));
+            let symbol = |place: &u32| {
+                let unit = sketch.place(*place).and_then(|place| sketch.units.get(place.unit as usize));
+                unit.is_none_or(|unit| is_symbol_kernel(&unit.kernel_letter))
+            };
+            let free = terms.iter().filter_map(|term| term.free).filter(|place| !symbol(place));
+            let mut levels = free.filter_map(|place| sketch.place(place));
             let first = levels.next().map(|place| place.level);
             levels.any(|place| Some(place.level) != first)
         }
         _ => false,
     });
     differs.then(|| Fault::FreeLevel(letter.into()))
+}
+
+/// `\eta_{\mu\nu} = \eta^{\mu\nu}`: a statement about the components of one kernel.
+fn same_kernel_sides(sketch: &Sketch) -> bool {
+    let first = sketch.units.first().map(|unit| &unit.kernel);
+    sketch.units.iter().all(|unit| Some(&unit.kernel) == first) && sketch.quantities.is_empty()
+}
+
+/// `R_{\tau\tau}`, `\Gamma^0_{ii}`: one letter twice in a script of its own names a component, or a sum over equal ones.
+fn component(sketch: &Sketch, one: u32, two: u32) -> bool {
+    let (Some(one), Some(two)) = (sketch.place(one), sketch.place(two)) else { return false };
+    one.script == two.script && one.company == 2
 }

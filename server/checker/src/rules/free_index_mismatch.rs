@@ -9,6 +9,7 @@ use crate::conventions::built_in::class_of;
 use crate::finding::{Finding, Related, Severity};
 use crate::ledger::{Judged, shown, side_title};
 
+use super::faults::odd_letters;
 use super::mending::{Mend, clear_winner, fixes, index_places, mends, odd_by};
 use super::{Check, Report, Rule};
 
@@ -30,7 +31,7 @@ fn check(judged: &Judged<'_>) -> Option<Report> {
         .unwrap_or_else(|| index_places(judged, first).first().map_or(judged.sketch.span, |place| judged.span(*place)));
     let finding = Finding {
         rule: RULE.name,
-        severity: RULE.severity,
+        severity: severity(judged, &mends),
         span,
         message: disagreement.message(judged, &odd),
         related: disagreement.related(judged, span),
@@ -39,6 +40,25 @@ fn check(judged: &Judged<'_>) -> Option<Report> {
     };
     let mended = mends.into_iter().next().map(|mend| (mend.sketch, mend.choice));
     Some(Report { finding, mended })
+}
+
+/// An error where one change restores the balance. A statement that no single change can balance is more often
+/// written in a shorthand that is not known here than wrong in two places: a hint. So is a number or a letter without
+/// indices for the components of one kernel (`g^{ij} = a^{-2}`).
+fn severity(judged: &Judged<'_>, mends: &[Mend]) -> Severity {
+    let mendable = mends.iter().any(|mend| {
+        let left = odd_letters(&mend.sketch, &mend.choice);
+        left.iter().all(|(_, odd)| *odd != Odd::Mismatch)
+    });
+    if mendable && !names_components(judged) { RULE.severity } else { Severity::Hint }
+}
+
+/// One side is a single kernel with all its indices free on one level, the others carry none at all.
+fn names_components(judged: &Judged<'_>) -> bool {
+    let mut units = judged.sketch.places.iter().map(|place| (place.script, place.level));
+    let Some((script, _)) = units.next() else { return false };
+    let one_script = units.all(|(other, _)| other == script);
+    one_script && judged.sketch.places.len() > 1 && judged.rows().iter().all(|row| row.summed.is_empty())
 }
 
 /// The place to blame: where the best change is, if it is the clear one or stands in the minority.
@@ -103,8 +123,9 @@ fn insertions(
                 judged.sketch.places.get(number as usize + 1).is_none_or(|next| next.script != place.script);
             let other =
                 place.letter != *letter && judged.is_index(number) && class_of(&place.letter) == class_of(letter);
-            if other && last_of_script && Some(place.level) == model {
-                out.push((Change::Insert(number, letter.clone()), holders(letter) - 2));
+            if other && last_of_script {
+                let alike = class_of(&place.letter) == class_of(letter) && Some(place.level) == model;
+                out.push((Change::Insert(number, letter.clone()), holders(letter) - if alike { 2 } else { 6 }));
             }
         }
     }

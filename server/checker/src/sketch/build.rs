@@ -17,6 +17,10 @@ use super::{Node, Side, Sketch, Switch, TermNode, Unit};
 const ARGUMENT_PRICE: i32 = 10;
 /// The same where only the lack of a sum speaks for an argument.
 const DOUBTFUL_ARGUMENT_PRICE: i32 = 20;
+/// Price of taking several parts in a bracket for components rather than arguments or a commutator.
+const LIST_PRICE: i32 = 10;
+/// Price of taking `\psi(p)` for the value of a map, with whatever indices.
+const MAP_PRICE: i32 = 30;
 /// How much it speaks against an index that its letter is a quantity of the same statement.
 const QUANTITY_DOUBT: i32 = 35;
 
@@ -62,8 +66,16 @@ impl Builder {
 
     fn term(&mut self, term: &Term, flip: bool) -> TermNode {
         let places = self.sketch.places.len();
-        let mut walk =
-            Walk { factors: &term.factors, at: 0, flip, below: 0, nodes: Vec::new(), any: false, vector: false };
+        let mut walk = Walk {
+            factors: &term.factors,
+            at: 0,
+            flip,
+            below: 0,
+            nodes: Vec::new(),
+            any: false,
+            loose: None,
+            vector: false,
+        };
         if matches_anything(term) {
             walk.any = true;
         }
@@ -73,7 +85,8 @@ impl Builder {
         }
         let bare = self.sketch.places.len() == places;
         let (any, shorthand) = (walk.any, bare && walk.vector);
-        TermNode { span: term.span, nodes: walk.nodes, any, shorthand }
+        let number = !term.factors.is_empty() && term.factors.iter().all(is_numeric);
+        TermNode { span: term.span, nodes: walk.nodes, any, loose: walk.loose, number, shorthand }
     }
 
     fn factor(&mut self, walk: &mut Walk<'_>, factor: &Factor) {
@@ -109,7 +122,9 @@ impl Builder {
             walk.at += 1;
             return;
         }
-        walk.vector |= kernel.bold || kernel.letter == "\\nabla";
+        let frame = kernel.letter == "e" && !factor.scripts.is_empty();
+        let bare = factor.scripts.is_empty() && matches!(kernel.letter.as_str(), "\\partial" | "\\Gamma" | "D");
+        walk.vector |= kernel.bold || kernel.letter == "\\nabla" || frame || bare;
         let carrier = Carrier { name: &kernel.name, letter: &kernel.letter, bold: kernel.bold, group: false };
         let scripts = read_scripts(self, carrier, &factor.scripts, flip);
         if scripts.nodes.is_empty() && !kernel.word {
@@ -144,12 +159,23 @@ impl Builder {
             if next.joint != Joint::Beside || group.parts.is_empty() || is_derivative(&kernel.letter) {
                 return;
             }
+            // Components with a coefficient: `u^t (1, 0, 0, \Omega)`.
+            if group.parts.len() > 1 && group.parts.iter().any(is_number) {
+                walk.at += 1;
+                walk.any = true;
+                return;
+            }
             let Some((on, price)) = argument_odds(kernel, group, indexed) else { return };
             walk.at += 1;
             let nodes =
                 group.parts.iter().flat_map(|part| &part.sides).map(|side| self.sum_only(side, walk.flip)).collect();
             let switch = self.switch(Switch { on, price });
-            self.scripted_group(walk, next, Node::Switch(switch, Box::new(Node::Product(nodes))), walk.flip);
+            if walk.at == walk.factors.len() && !indexed && walk.loose.is_none() {
+                // The value of a map, or components with a coefficient.
+                let price = if group.parts.len() > 1 { LIST_PRICE } else { MAP_PRICE };
+                walk.loose = Some(self.switch(Switch { on: false, price }));
+            }
+            self.scripted_group(walk, next, Node::Argument(switch, Box::new(Node::Product(nodes))), walk.flip);
             if indexed {
                 return;
             }
@@ -174,6 +200,11 @@ impl Builder {
             let switch = self.switch(Switch { on: true, price: 0 });
             node = Node::Switch(switch, Box::new(node));
         }
+        if group.bracket == Bracket::Bars && is_lone_derivative(sum) {
+            // `|\partial F^i / \partial x^j|` is a determinant.
+            let switch = self.switch(Switch { on: true, price: 0 });
+            node = Node::Switch(switch, Box::new(node));
+        }
         if matches!(group.bracket, Bracket::Bars | Bracket::Angle) {
             let scripts = read_scripts(&mut Builder::default(), Carrier::BRACKET, &factor.scripts, flip);
             return self.powered(walk, node, scripts.power);
@@ -188,6 +219,10 @@ impl Builder {
         if matches!(group.bracket, Bracket::Round | Bracket::Bars) || components {
             walk.any = true;
             return;
+        }
+        if group.bracket == Bracket::Square && walk.factors.len() == 1 {
+            // A commutator by itself, or a list of components.
+            walk.loose = Some(self.switch(Switch { on: false, price: LIST_PRICE }));
         }
         let nodes = group.parts.iter().flat_map(|part| &part.sides).map(|side| self.sum_only(side, flip)).collect();
         let node = if group.bracket == Bracket::Curly {
@@ -267,7 +302,17 @@ impl Builder {
                 let switch = self.switch(Switch { on: false, price: 0 });
                 walk.nodes.push(Node::Switch(switch, Box::new(Node::Product(inner.nodes))));
             }
-            _ => {}
+            // The argument of `\exp(..)` is a scope of its own.
+            _ => {
+                let Some(next) = walk.factors.get(walk.at).filter(|next| matches!(next.atom, Atom::Group(_))) else {
+                    return;
+                };
+                walk.at += 1;
+                let mut inner = Walk { factors: std::slice::from_ref(next), at: 1, ..Walk::of(flip) };
+                self.factor(&mut inner, next);
+                walk.any |= inner.any;
+                walk.nodes.push(Node::Scope(Box::new(Node::Product(inner.nodes))));
+            }
         }
     }
 
@@ -281,9 +326,7 @@ impl Builder {
                     ItemKind::Relation => doubtful = Some(self.switch(Switch { on: true, price: 0 })),
                     ItemKind::Letter(letter) | ItemKind::Styled(letter) => bound.push((letter.clone(), doubtful)),
                     ItemKind::Factor(inner) => {
-                        if let Atom::Kernel(kernel) = &inner.atom {
-                            bound.push((kernel.name.clone(), doubtful));
-                        }
+                        bound.extend(letters_of(inner).into_iter().map(|letter| (letter, doubtful)));
                     }
                     _ => {}
                 }
@@ -308,12 +351,14 @@ struct Walk<'t> {
     below: usize,
     nodes: Vec<Node>,
     any: bool,
+    /// The term matches anything while this switch is on.
+    loose: Option<u32>,
     vector: bool,
 }
 
 impl<'t> Walk<'t> {
     fn of(flip: bool) -> Self {
-        Walk { factors: &[], at: 0, flip, below: 0, nodes: Vec::new(), any: false, vector: false }
+        Walk { factors: &[], at: 0, flip, below: 0, nodes: Vec::new(), any: false, loose: None, vector: false }
     }
 
     /// `O(..)`, `\mathcal O(..)`.
@@ -355,18 +400,49 @@ fn is_zero(sum: &Sum) -> bool {
     matches!(sum.terms.as_slice(), [term] if matches!(term.factors.as_slice(), [Factor { atom: Atom::Number(n), .. }] if n == "0"))
 }
 
+/// A number, or a fraction or a root of numbers.
+fn is_numeric(factor: &Factor) -> bool {
+    let sum = |sum: &Sum| sum.terms.iter().flat_map(|term| &term.factors).all(|f| matches!(f.atom, Atom::Number(_)));
+    match &factor.atom {
+        Atom::Number(_) => true,
+        Atom::Fraction(fraction) => sum(&fraction.over) && sum(&fraction.under),
+        Atom::Root(body) => sum(body),
+        _ => false,
+    }
+}
+
 fn is_number(part: &Statement) -> bool {
     let number = |sum: &Sum| matches!(sum.terms.as_slice(), [term] if matches!(term.factors.as_slice(), [Factor { atom: Atom::Number(_), .. }]));
     part.sides.iter().all(number)
 }
 
+/// The letters that a bound with scripts names: the kernel, the letters below it, and both together.
+fn letters_of(factor: &Factor) -> Vec<CompactString> {
+    let Atom::Kernel(kernel) = &factor.atom else { return Vec::new() };
+    let mut out = vec![kernel.name.clone()];
+    for item in factor.scripts.iter().flat_map(|script| &script.items) {
+        if let ItemKind::Letter(letter) = &item.kind {
+            out.push(compact_str::format_compact!("{}_{letter}", kernel.name));
+            out.push(letter.clone());
+        }
+    }
+    out
+}
+
 /// A letter that is also a quantity of the statement is more likely a label (`h^k \cos kz`).
 fn doubt_quantities(sketch: &mut Sketch) {
+    let kernels: Vec<CompactString> = sketch.units.iter().map(|unit| unit.kernel_letter.clone()).collect();
     for unit in &mut sketch.units {
-        if sketch.quantities.iter().any(|(letter, _)| *letter == unit.letter) {
+        // A derivative along a vector of the statement: `\nabla_m t = m^a ..`.
+        let along = matches!(unit.kernel_letter.as_str(), "\\nabla" | "D") && kernels.contains(&unit.letter);
+        if along || sketch.quantities.iter().any(|(letter, _)| *letter == unit.letter) {
             unit.bias -= QUANTITY_DOUBT;
         }
     }
+}
+
+fn is_lone_derivative(sum: &Sum) -> bool {
+    matches!(sum.terms.as_slice(), [term] if matches!(term.factors.as_slice(), [Factor { atom: Atom::Fraction(_), .. }]))
 }
 
 fn is_lone_kernel(sum: &Sum) -> bool {

@@ -48,9 +48,12 @@ struct Candidate<'t> {
     script: &'t Script,
     fixed: Option<i32>,
     parenthesised: bool,
+    mixed: bool,
     after_number: bool,
     /// The lower letter of a point with an upper index (`x^i_a`): a particle's name or a frame's index.
     particle: bool,
+    /// An m or n alone above a kernel that carries something below: it may be a power.
+    exponent: bool,
 }
 
 /// Price of reading a word that is listed as a label as indices after all.
@@ -69,14 +72,14 @@ pub(super) fn read_scripts(builder: &mut Builder, carrier: Carrier<'_>, scripts:
         }
         if let Some(power) = power_of(script, carrier, scripts) {
             out.power = Some(power);
-        } else if holds_indices(script) {
+        } else if holds_indices(script) || lends(carrier, script) {
             numbers += plain_numbers(script);
             collect(builder, carrier, script, &mut candidates);
         }
     }
     mark_particles(carrier, &mut candidates);
     note_stacked(builder, carrier, scripts, &candidates);
-    let slots = candidates.len() + numbers;
+    let slots = candidates.iter().filter(|candidate| !candidate.parenthesised).count() + numbers;
     let components = candidates.iter().all(|c| is_usual_coordinate(&c.letter));
     let words = words(&candidates);
     let mut at = 0;
@@ -117,6 +120,12 @@ fn power_of(script: &Script, carrier: Carrier<'_>, all: &[Script]) -> Option<Pow
             _ => Some(Power::Other),
         },
         _ if is_exponential(script, carrier, all) => Some(Power::Other),
+        // `x^{2n}`, `(..)^{2\alpha}`.
+        [Item { kind: ItemKind::Number(_), .. }, Item { kind: ItemKind::Letter(_), .. }]
+            if carrier.group || (all.len() == 1 && !matches!(carrier.letter, "T" | "R" | "G" | "g" | "h" | "F")) =>
+        {
+            Some(Power::Other)
+        }
         // An exponent with an arithmetic of its own: a scalar formula, a scope apart.
         items if items.iter().any(|item| is_arithmetic(&item.kind)) => Some(Power::Other),
         [Item { kind: ItemKind::Letter(letter), .. }]
@@ -151,7 +160,24 @@ fn is_arithmetic(kind: &ItemKind) -> bool {
 
 /// Whether a script can hold indices: not a condition, not arithmetic.
 fn holds_indices(script: &Script) -> bool {
-    !script.items.iter().any(|item| matches!(item.kind, ItemKind::Relation | ItemKind::Sign | ItemKind::Operator))
+    let operand = |at: Option<usize>| {
+        let item = at.and_then(|at| script.items.get(at)).map(|item| &item.kind);
+        matches!(item, Some(ItemKind::Letter(_) | ItemKind::Number(_) | ItemKind::Factor(_)))
+    };
+    // A sign with an operand on both sides is arithmetic; at the end or after a comma it names a polarisation.
+    !script.items.iter().enumerate().any(|(at, item)| match item.kind {
+        // `T^{<ij>}`: angle brackets typed as relations.
+        ItemKind::Relation => at > 0 && at + 1 < script.items.len() || script.items.len() == 1,
+        ItemKind::Sign | ItemKind::Operator => operand(at.checked_sub(1)) && operand(Some(at + 1)),
+        _ => false,
+    })
+}
+
+/// `\nabla_{\partial/\partial x^\mu}`: arithmetic, but it lends its index.
+fn lends(carrier: Carrier<'_>, script: &Script) -> bool {
+    let relation = script.items.iter().any(|item| item.kind == ItemKind::Relation);
+    let factor = script.items.iter().any(|item| matches!(item.kind, ItemKind::Factor(_)));
+    is_derivative(&kernel_key(carrier)) && script.level == Level::Down && factor && !relation
 }
 
 /// Gathers the letters of a script.
@@ -162,6 +188,8 @@ fn collect<'t>(builder: &mut Builder, carrier: Carrier<'_>, script: &'t Script, 
         (Some(ItemKind::Open(_)), Some(ItemKind::Close(_)))
     );
     let letters = items.iter().filter(|item| matches!(item.kind, ItemKind::Letter(_))).count();
+    let arithmetic = !holds_indices(script);
+    let mixed = mixes_alphabets(script);
     for (n, item) in items.iter().enumerate() {
         let before = n.checked_sub(1).and_then(|n| items.get(n)).map(|item| &item.kind);
         let candidate = |letter: CompactString, fixed| Candidate {
@@ -169,11 +197,16 @@ fn collect<'t>(builder: &mut Builder, carrier: Carrier<'_>, script: &'t Script, 
             span: item.span,
             script,
             fixed,
-            parenthesised: inside && letters == 1,
+            parenthesised: inside && letters == 1 || enclosed(items, n),
+            mixed,
             after_number: matches!(before, Some(ItemKind::Number(number)) if number.as_str() > "3" || letters == 1 && lone_latin(&item.kind)),
             particle: false,
+            exponent: script.level == Level::Up
+                && items.len() == 1
+                && matches!(&item.kind, ItemKind::Letter(l) if l == "n" || l == "m"),
         };
         match &item.kind {
+            ItemKind::Letter(letter) if arithmetic || is_no_letter(letter) => {}
             ItemKind::Letter(letter) => out.push(candidate(letter.clone(), None)),
             ItemKind::Factor(factor) => {
                 if let Some(letter) = lent(builder, carrier, script, item, factor) {
@@ -202,7 +235,7 @@ fn lent(
         .filter_map(|item| if let ItemKind::Letter(letter) = &item.kind { Some(letter) } else { None })
         .collect();
     let derivative = is_derivative(&kernel_key(carrier));
-    if derivative && script.items.len() == 1 {
+    if derivative && (script.items.len() == 1 || !holds_indices(script)) {
         return letters.first().filter(|_| letters.len() == 1).map(|letter| (*letter).clone());
     }
     if derivative || letters.len() > 1 || factor.scripts.iter().any(|script| script.level == Level::Up) {
@@ -219,6 +252,30 @@ fn note_swallowed(builder: &mut Builder, script: &Script, item: &Item) {
         let kept = Span { start: first.start, end: item.span.start };
         builder.sketch.swallowed.push(super::Swallowed { script: script.span, from: item.span, kept });
     }
+}
+
+/// A letter between brackets of its own: `T^{0,(\gamma)}`.
+fn enclosed(items: &[Item], at: usize) -> bool {
+    let kind = |at: Option<usize>| at.and_then(|at| items.get(at)).map(|item| &item.kind);
+    matches!((kind(at.checked_sub(1)), kind(Some(at + 1))), (Some(ItemKind::Open('(')), Some(ItemKind::Close(')'))))
+}
+
+/// Greek and Latin letters in one script: more often a label than two families.
+fn mixes_alphabets(script: &Script) -> bool {
+    let classes = script.items.iter().filter_map(|item| match &item.kind {
+        ItemKind::Letter(letter) => Some(class_of(letter) == LetterClass::Greek),
+        _ => None,
+    });
+    let (greek, latin): (Vec<bool>, Vec<bool>) = classes.partition(|greek| *greek);
+    !greek.is_empty() && !latin.is_empty()
+}
+
+/// Signs that are written like letters but name no index.
+fn is_no_letter(letter: &str) -> bool {
+    matches!(
+        letter,
+        "\\infty" | "\\partial" | "\\nabla" | "\\hbar" | "\\emptyset" | "\\varnothing" | "\\Box" | "\\forall"
+    )
 }
 
 /// Latin letters past l after a number name something: `\Omega_{0m}`, but `T_{0i}`.
@@ -287,6 +344,7 @@ fn place(
 ) -> Node {
     let written = candidate.script.level;
     let shape = match (carrier.group, slots) {
+        _ if candidate.parenthesised => Shape::Bracketed,
         (true, 0 | 1) => Shape::OnGroup,
         (_, 0 | 1) => Shape::Lone,
         _ => Shape::Several,
@@ -319,7 +377,7 @@ fn place(
 fn bias(carrier: Carrier<'_>, candidate: &Candidate<'_>, shape: Shape, components: bool) -> i32 {
     let class = class_of(&candidate.letter);
     let bare = bare_letter(&candidate.letter);
-    if is_labelled_operator(carrier.name) && shape == Shape::Lone {
+    if is_labelled_operator(carrier.name) {
         return -90;
     }
     if is_usual_coordinate(&candidate.letter) {
@@ -333,18 +391,23 @@ fn bias(carrier: Carrier<'_>, candidate: &Candidate<'_>, shape: Shape, component
     }
     let up = candidate.script.level == Level::Up;
     let base = match (shape, class) {
-        (Shape::Several, LetterClass::Capital) => 30,
         // Spherical harmonics.
         (Shape::Several, _) if harmonic(candidate.script) => 12,
+        (Shape::Several, LetterClass::Capital) => 30,
         (Shape::Several, LetterClass::Other) => 10,
-        (Shape::Several, _) => 60,
+        (Shape::Several, _) if candidate.exponent => 20,
+        (Shape::Several, LetterClass::Greek) => 55,
+        (Shape::Several, LetterClass::LatinLate) if matches!(bare, "i" | "j" | "k" | "l" | "m" | "n") => 45,
+        (Shape::Several, LetterClass::LatinEarly) => 36,
+        (Shape::Several, _) => 25,
+        (Shape::Bracketed, _) => 2,
         (Shape::OnGroup, LetterClass::Capital | LetterClass::Other) => -20,
         (Shape::OnGroup, _) => 10,
         (Shape::Lone, LetterClass::Greek) => {
             if up {
-                30
-            } else {
                 22
+            } else {
+                18
             }
         }
         (Shape::Lone, LetterClass::LatinEarly) => 10,
@@ -369,7 +432,13 @@ fn bias(carrier: Carrier<'_>, candidate: &Candidate<'_>, shape: Shape, component
         }
         (Shape::Lone, LetterClass::Other) => -20,
     };
-    let by_number = if candidate.after_number { -40 } else { 0 };
+    let by_number = if candidate.after_number {
+        -40
+    } else if candidate.mixed {
+        -20
+    } else {
+        0
+    };
     let by_kernel = if is_derivative(&kernel_key(carrier)) {
         if class == LetterClass::Capital { 10 } else { 30 }
     } else if shape == Shape::Several && is_index_kernel(carrier.letter) {
