@@ -207,7 +207,7 @@ const WORDS: &[(Class, &str)] = &[
         "alpha beta gamma delta epsilon varepsilon zeta eta theta vartheta iota kappa lambda mu nu xi pi varpi rho \
          varrho sigma varsigma tau upsilon phi varphi chi psi omega Gamma Delta Theta Lambda Xi Pi Sigma Upsilon Phi \
          Psi Omega varGamma varDelta varTheta varLambda varXi varPi varSigma varPhi varPsi varOmega digamma \
-         partial nabla Box square dAlembert hbar hslash ell imath jmath wp Re Im aleph infty emptyset varnothing \
+         partial nabla Box square dAlembert hbar hslash ell imath jmath wp aleph infty emptyset varnothing \
          laplacian dalembertian forall exists neg triangle bigtriangleup blacksquare i",
     ),
     (
@@ -242,7 +242,7 @@ const WORDS: &[(Class, &str)] = &[
         "sin cos tan cot sec csc sinh cosh tanh coth sech csch arcsin arccos arctan arccot asin acos atan log ln lg \
          exp det tr Tr trace Trace rank rk dim ker hom deg arg gcd Pr diag erf erfc sgn sign grad div curl rot \
          gradient divergence Res pv PV principalvalue real imaginary asinh acosh atanh arsinh arcosh artanh \
-         determinant Det Dim Ker Hom ad Ad Span span im supp vol Vol sym skew dev cof adj",
+         determinant Det Dim Ker Hom ad Ad Span span im supp vol Vol sym skew dev cof adj Re Im",
     ),
     (Class::Operator, "operatorname operatornamewithlimits mathop operator"),
     (

@@ -6,6 +6,7 @@
 
 use indexwise_grammar::tree::{Level, RelationKind};
 
+use crate::conventions::built_in::{LetterClass, class_of, is_derivative};
 use crate::sketch::{Node, Shape, Side, Sketch, TermNode};
 
 /// Which units are read as indices and which switches are on.
@@ -162,7 +163,7 @@ impl Count<'_> {
             return Odd::Balanced;
         }
         // `r_i + p_i = 1`: numbers named by a letter, one formula for each.
-        let numbered = || terms.iter().all(|term| term.free.is_some() || term.number) && self.all_lone();
+        let numbered = || terms.iter().all(|term| term.free.is_some() || term.number) && self.numbers_quantities();
         let agree = free == terms.len() || numbered();
         self.events.push(Event::Terms(terms));
         if agree { Odd::Balanced } else { Odd::Mismatch }
@@ -180,7 +181,11 @@ impl Count<'_> {
                 bound_so_far = bound_here;
             }
             let loose = term.loose.is_some_and(|switch| self.is_on(switch));
-            if term.any || term.shorthand || loose || tally.skip || (tally.lent && tally.open.is_empty()) {
+            if term.any || loose || tally.lent && tally.open.is_empty() || term.shorthand && self.takes_shorthand() {
+                continue;
+            }
+            if tally.skip {
+                sum.odd = sum.odd.max(tally.odd);
                 continue;
             }
             let settled = self.settle(tally);
@@ -245,7 +250,9 @@ impl Count<'_> {
             Node::Scope(inner) => Tally { closed: None, ..self.node(inner, bound) },
             Node::Argument(switch, inner) if !self.is_on(*switch) => {
                 let inside = self.node(inner, bound);
-                Tally { lent: !inside.open.is_empty(), ..Tally::default() }
+                // An argument by its looks; one that only might be one lends nothing.
+                let likely = self.sketch.switches.get(*switch as usize).is_some_and(|switch| !switch.on);
+                Tally { lent: likely && !inside.open.is_empty(), ..Tally::default() }
             }
             Node::Argument(_, inner) => self.node(inner, bound),
             Node::Switch(switch, inner) => {
@@ -289,10 +296,40 @@ impl Count<'_> {
         tally
     }
 
-    /// Whether the letter stands only on kernels that carry nothing else.
-    fn all_lone(&self) -> bool {
-        let mine = self.sketch.units.iter().filter(|unit| unit.letter == self.letter);
-        mine.into_iter().all(|unit| unit.shape == Shape::Lone)
+    /// Whether the letter numbers quantities rather than components: a small Latin letter, only on kernels that carry
+    /// nothing else and do not differentiate.
+    fn numbers_quantities(&self) -> bool {
+        let mut mine = self.sketch.units.iter().filter(|unit| unit.letter == self.letter);
+        class_of(self.letter) != LetterClass::Greek
+            && mine.all(|unit| unit.shape == Shape::Lone && !is_derivative(&unit.kernel_letter))
+    }
+
+    /// Whether a term in vector notation may stand for one with this letter free: not where the vectors themselves
+    /// carry indices (`\mathbf v = v_i \mathbf e_i` is closed), nor where two letters are free on a kernel each.
+    fn takes_shorthand(&self) -> bool {
+        let index = |place: &&crate::sketch::Place| self.choice.index.get(place.unit as usize) == Some(&true);
+        let places = || self.sketch.places.iter().filter(index);
+        let unit = |place: &crate::sketch::Place| self.sketch.units.get(place.unit as usize);
+        if places().any(|place| unit(place).is_some_and(|unit| unit.vector)) {
+            return false;
+        }
+        let lone = |letter: &str| {
+            let mut count = 0;
+            for place in places().filter(|place| place.letter == letter) {
+                if unit(place).is_none_or(|unit| unit.shape != Shape::Lone) {
+                    return false;
+                }
+                count += 1;
+            }
+            count % 2 == 1
+        };
+        let mut free: Vec<&str> = Vec::new();
+        for place in places() {
+            if !free.contains(&place.letter.as_str()) && lone(&place.letter) {
+                free.push(&place.letter);
+            }
+        }
+        free.len() < 2 || !free.contains(&self.letter)
     }
 
     fn is_on(&self, switch: u32) -> bool {

@@ -129,6 +129,33 @@ pub fn check(paper: &Paper, settings: &Settings, cancel: &Cancel) -> Analysis {
     Analysis { documents: documents.collect() }
 }
 
+/// How every statement of the first document is read, in words: its units with their scores and the letters out of
+/// balance. For people who tune the inference.
+pub fn readings(paper: &Paper) -> Vec<(Span, String)> {
+    let read = read_paper(paper);
+    let sketched: Vec<Sketched<'_>> = read.iter().map(Sketched::of).collect();
+    let evidence = gather(&sketched, &Cancel::default());
+    let all = total(&evidence);
+    let (Some(document), Some(own)) = (sketched.first(), evidence.first()) else { return Vec::new() };
+    let prices = Prices { file: own, paper: &all, declared: &document.read.declared, macros: &document.read.macros };
+    let words = |sketch: &Sketch| {
+        let reading = reading::read(sketch, &prices);
+        let units = sketch.units.iter().zip(&reading.choice.index).map(|(unit, index)| {
+            let score = prices.score(unit);
+            format!(
+                "    {} {} {:?} {:?} score {score} index {index}\n",
+                unit.kernel, unit.letter, unit.level, unit.shape
+            )
+        });
+        let trusted = prices.trusts(&sketch.unknown);
+        let gate: Vec<bool> = reading.odd.iter().map(|(letter, _)| prices.is_index_notation(letter)).collect();
+        let odd = format!("    odd {:?} gates {gate:?} cost {}", reading.odd, reading.cost);
+        let switches = format!("    switches {:?} now {:?}", sketch.switches, reading.choice.on);
+        format!("{}{odd} trusted {trusted} {:?}\n{switches}\n", units.collect::<String>(), sketch.unjudged)
+    };
+    document.statements.iter().map(|(_, sketch)| (sketch.span, words(sketch))).collect()
+}
+
 /// Rounds of counting: each reads with the counts of the round before. Two settle nearly all readings of the
 /// corpus; a third changed none that mattered.
 const ROUNDS: usize = 2;

@@ -147,7 +147,10 @@ fn assume<'s>(sketch: &'s Sketch, scores: &[i32], unit: usize, assumed: &mut Vec
         Some((_, dearest)) => {
             let more = (price - *dearest).max(0);
             *dearest = (*dearest).max(price);
-            more + REPEATED
+            // The usual index letters name no label together.
+            let usual =
+                sketch.units.get(unit).is_some_and(|unit| matches!(unit.letter.as_str(), "i" | "j" | "k" | "l"));
+            more + if usual { price / 3 } else { REPEATED }
         }
     }
 }

@@ -126,7 +126,18 @@ pub fn is_symbol_kernel(letter: &str) -> bool {
 pub fn is_basis_kernel(letter: &str) -> bool {
     matches!(
         letter,
-        "e" | "g" | "E" | "b" | "i" | "n" | "\\theta" | "\\omega" | "\\partial" | "\\sigma" | "\\gamma" | "\\epsilon"
+        "e" | "v"
+            | "g"
+            | "E"
+            | "b"
+            | "i"
+            | "n"
+            | "\\theta"
+            | "\\omega"
+            | "\\partial"
+            | "\\sigma"
+            | "\\gamma"
+            | "\\epsilon"
     )
 }
 

@@ -5,6 +5,7 @@
 //! whole paper are the prior, those of the file weigh double.
 
 use compact_str::CompactString;
+use indexwise_grammar::tree::Level;
 use rustc_hash::FxHashMap;
 
 use crate::balance::{Event, judge};
@@ -30,7 +31,7 @@ pub struct Evidence {
     /// Pairs on opposite levels and on one level, by class.
     pairs: [[u32; 2]; 5],
     /// The same by kernel.
-    kernel_pairs: FxHashMap<CompactString, [u32; 2]>,
+    kernel_pairs: FxHashMap<(CompactString, LetterClass), [u32; 2]>,
     /// Balanced statements whose free levels agree, and do not, by class.
     free_levels: [[u32; 2]; 5],
     /// Statements with indices that balance, and that do not, by class of the odd letters.
@@ -65,7 +66,7 @@ const FREE_PERCENT: u32 = 95;
 const ODD_PERCENT: u32 = 33;
 /// Balanced statements from which an unknown command's arguments are trusted to be factors, and the share of odd
 /// ones, in percent, up to which they are.
-const TRUSTED_STATEMENTS: u32 = 3;
+const TRUSTED_STATEMENTS: u32 = 2;
 const TRUSTED_ODD_PERCENT: u32 = 20;
 /// Odd statements that are forgiven before that share is taken.
 const ODD_FREE: u32 = 3;
@@ -182,7 +183,7 @@ impl Evidence {
             sketch.units.get(place.unit as usize).is_some_and(|unit| is_symbol_kernel(&unit.kernel_letter))
         });
         for kernel in kernels.into_iter().flatten() {
-            bump(self.kernel_pairs.entry(kernel).or_default(), same);
+            bump(self.kernel_pairs.entry((kernel, class_of(&one.letter))).or_default(), same);
         }
         if !symbol && let Some(counts) = self.pairs.get_mut(class) {
             bump(counts, same);
@@ -288,7 +289,13 @@ impl Prices<'_> {
         let stranger = || {
             let kernel = steps(self.count(|evidence| evidence.label_kernel.get(&unit.kernel).copied())).min(3);
             let other = steps(self.count(|evidence| evidence.label_letter.get(letter).copied())).min(3);
-            index - 4 * kernel - 2 * other
+            let usual = matches!(super::built_in::bare_letter(letter), "i" | "j" | "k" | "l");
+            let greek_up = class_of(letter) == LetterClass::Greek && unit.level == Level::Up && unit.bias > 20;
+            match (usual, greek_up) {
+                (true, _) => 6 * index - 4 * kernel - 4 * other,
+                (_, true) => 5 * index - 4 * kernel - 2 * other,
+                _ => index - 4 * kernel - 2 * other,
+            }
         };
         let by_document = match unit.shape {
             Shape::Several => 7 * index,
@@ -296,7 +303,7 @@ impl Prices<'_> {
             Shape::Lone if unit.bias <= -40 => 0,
             Shape::Lone if lone == 0 => stranger(),
             Shape::Lone => 7 * index + 8 * lone,
-            Shape::OnGroup if unit.bias > -40 => 4 * index,
+            Shape::OnGroup if unit.bias > -40 => 4 * index + 8 * lone,
             Shape::OnGroup => 0,
         };
         unit.bias + by_document - 12 * steps(labels).min(4)
@@ -328,7 +335,8 @@ impl Prices<'_> {
         if is_symbol_kernel(&unit.kernel_letter) {
             return true;
         }
-        let [opposite, same] = self.file.kernel_pairs.get(&unit.kernel).copied().unwrap_or_default();
+        let key = (unit.kernel.clone(), class_of(&unit.letter));
+        let [opposite, same] = self.file.kernel_pairs.get(&key).copied().unwrap_or_default();
         same >= 3 && same > opposite
     }
 

@@ -48,7 +48,9 @@ fn check(judged: &Judged<'_>) -> Option<Report> {
 fn severity(judged: &Judged<'_>, mends: &[Mend]) -> Severity {
     let mendable = mends.iter().any(|mend| {
         let left = odd_letters(&mend.sketch, &mend.choice);
-        left.iter().all(|(_, odd)| *odd != Odd::Mismatch)
+        let mended = judged.reading.odd.len().saturating_sub(left.len());
+        let renamed = matches!(mend.change, Change::Rename(..)) && mended > 1;
+        renamed || left.iter().all(|(_, odd)| *odd != Odd::Mismatch)
     });
     if mendable && !names_components(judged) { RULE.severity } else { Severity::Hint }
 }
@@ -121,8 +123,7 @@ fn insertions(
         for (number, place) in (0_u32..).zip(&judged.sketch.places) {
             let last_of_script =
                 judged.sketch.places.get(number as usize + 1).is_none_or(|next| next.script != place.script);
-            let other =
-                place.letter != *letter && judged.is_index(number) && class_of(&place.letter) == class_of(letter);
+            let other = place.letter != *letter;
             if other && last_of_script {
                 let alike = class_of(&place.letter) == class_of(letter) && Some(place.level) == model;
                 out.push((Change::Insert(number, letter.clone()), holders(letter) - if alike { 2 } else { 6 }));

@@ -23,6 +23,9 @@ fn check(judged: &Judged<'_>) -> Option<Report> {
     let odd = odd_by(judged, Odd::Mismatch);
     // Another letter out of balance means another slip: then this is no habit.
     let [letter] = odd.as_slice() else { return None };
+    if judged.rows().iter().any(|row| row.summed.iter().any(|summed| summed != letter)) {
+        return None;
+    }
     let (first, second) = repeat(judged, letter)?;
     let finding = Finding {
         rule: RULE.name,

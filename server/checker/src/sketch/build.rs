@@ -8,7 +8,7 @@ use indexwise_grammar::tree::{
     Atom, Big, Bracket, Factor, Group, ItemKind, Joint, Kernel, Level, Statement, Sum, Term,
 };
 
-use crate::conventions::built_in::{is_derivative, is_point_kernel};
+use crate::conventions::built_in::{is_basis_kernel, is_derivative, is_point_kernel};
 
 use super::scripts::{Carrier, Power, read_scripts};
 use super::{Node, Side, Sketch, Switch, TermNode, Unit};
@@ -84,7 +84,7 @@ impl Builder {
             self.factor(&mut walk, factor);
         }
         let bare = self.sketch.places.len() == places;
-        let (any, shorthand) = (walk.any, bare && walk.vector);
+        let (any, shorthand) = (walk.any, bare && walk.vector && !is_scalar_product(term));
         let number = !term.factors.is_empty() && term.factors.iter().all(is_numeric);
         TermNode { span: term.span, nodes: walk.nodes, any, loose: walk.loose, number, shorthand }
     }
@@ -261,7 +261,6 @@ impl Builder {
     /// A command that nobody knows: with one argument it decorates it, with several they are factors, with none it is
     /// a kernel. Whether that can be trusted the document decides (`inferred.rs`).
     fn unknown(&mut self, walk: &mut Walk<'_>, factor: &Factor, name: &CompactString, arguments: &[Sum], flip: bool) {
-        self.sketch.unknown.push(name.clone());
         let kernel = match arguments {
             [] => Some(None),
             [Sum { terms, .. }] => match terms.as_slice() {
@@ -273,11 +272,16 @@ impl Builder {
             },
             _ => None,
         };
+        // A command on one letter is a type or a decoration; anything else the document must speak for.
+        if !matches!(kernel, Some(Some(_))) {
+            self.sketch.unknown.push(name.clone());
+        }
         if let Some(kernel) = kernel {
             let full =
                 kernel.map_or_else(|| name.clone(), |kernel| compact_str::format_compact!("\\{name} {}", kernel.name));
             let letter = kernel.map_or(name, |kernel| &kernel.letter);
             let carrier = Carrier { name: &full, letter, bold: false, group: false };
+            let carrier = Carrier { bold: kernel.is_some() && is_basis_kernel(letter), ..carrier };
             let scripts = read_scripts(self, carrier, &factor.scripts, flip);
             walk.vector |= scripts.nodes.is_empty();
             return self.powered(walk, Node::Product(scripts.nodes), scripts.power);
@@ -398,6 +402,32 @@ fn matches_anything(term: &Term) -> bool {
 
 fn is_zero(sum: &Sum) -> bool {
     matches!(sum.terms.as_slice(), [term] if matches!(term.factors.as_slice(), [Factor { atom: Atom::Number(n), .. }] if n == "0"))
+}
+
+/// `\mathbf u \cdot \mathbf v`: two small Latin letters in one type with a dot are vectors, and a scalar together.
+fn is_scalar_product(term: &Term) -> bool {
+    let [first, second] = term.factors.as_slice() else { return false };
+    let vector = |factor: &Factor| match &factor.atom {
+        Atom::Kernel(kernel) if kernel.bold && factor.scripts.is_empty() => {
+            Some((kernel.name.strip_suffix(kernel.letter.as_str())?.to_owned(), kernel.letter.clone()))
+        }
+        Atom::Unknown(name, arguments) if factor.scripts.is_empty() => match arguments.as_slice() {
+            [Sum { terms, .. }] => match terms.as_slice() {
+                [Term { factors, .. }] => match factors.as_slice() {
+                    [Factor { atom: Atom::Kernel(kernel), .. }] => Some((name.to_string(), kernel.letter.clone())),
+                    _ => None,
+                },
+                _ => None,
+            },
+            _ => None,
+        },
+        _ => None,
+    };
+    let small = |letter: &str| letter.len() == 1 && letter.chars().all(|c| c.is_ascii_lowercase());
+    match (vector(first), vector(second)) {
+        (Some((one, a)), Some((two, b))) => second.joint == Joint::Times && one == two && small(&a) && small(&b),
+        _ => false,
+    }
 }
 
 /// A number, or a fraction or a root of numbers.

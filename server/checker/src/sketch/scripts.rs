@@ -356,6 +356,7 @@ fn place(
         letter: candidate.letter.clone(),
         level: written,
         shape,
+        vector: carrier.bold,
         bias,
     });
     let company = candidate.script.items.iter().filter(|item| matches!(item.kind, ItemKind::Letter(_))).count();
@@ -392,7 +393,7 @@ fn bias(carrier: Carrier<'_>, candidate: &Candidate<'_>, shape: Shape, component
     let up = candidate.script.level == Level::Up;
     let base = match (shape, class) {
         // Spherical harmonics.
-        (Shape::Several, _) if harmonic(candidate.script) => 12,
+        (Shape::Several, _) if harmonic(carrier, candidate.script) => 12,
         (Shape::Several, LetterClass::Capital) => 30,
         (Shape::Several, LetterClass::Other) => 10,
         (Shape::Several, _) if candidate.exponent => 20,
@@ -404,10 +405,12 @@ fn bias(carrier: Carrier<'_>, candidate: &Candidate<'_>, shape: Shape, component
         (Shape::OnGroup, LetterClass::Capital | LetterClass::Other) => -20,
         (Shape::OnGroup, _) => 10,
         (Shape::Lone, LetterClass::Greek) => {
-            if up {
-                22
-            } else {
+            if !up {
                 18
+            } else if is_constant(carrier.letter) {
+                12
+            } else {
+                30
             }
         }
         (Shape::Lone, LetterClass::LatinEarly) => 10,
@@ -451,8 +454,19 @@ fn bias(carrier: Carrier<'_>, candidate: &Candidate<'_>, shape: Shape, component
     base + by_kernel + by_number
 }
 
+/// Quantities whose superscript is a power.
+fn is_constant(letter: &str) -> bool {
+    matches!(letter, "c" | "\\hbar" | "G" | "m" | "M" | "e" | "a" | "\\pi" | "H" | "T" | "E" | "L")
+}
+
 /// `Y_{\ell m}`, `a_{lm}`.
-fn harmonic(script: &Script) -> bool {
+fn harmonic(carrier: Carrier<'_>, script: &Script) -> bool {
+    if !matches!(
+        carrier.letter,
+        "Y" | "a" | "\\Psi" | "\\psi" | "\\Phi" | "\\phi" | "S" | "C" | "c" | "Z" | "X" | "W" | "u" | "v"
+    ) {
+        return false;
+    }
     let letters: Vec<&str> = script
         .items
         .iter()
