@@ -180,12 +180,17 @@ impl Count<'_> {
             if reach {
                 bound_so_far = bound_here;
             }
+            // What an unknown command prints may close what is open here.
+            if term.opaque && tally.open.len() == 1 {
+                continue;
+            }
             let loose = term.loose.is_some_and(|switch| self.is_on(switch));
             if term.any || loose || tally.lent && tally.open.is_empty() || term.shorthand && self.takes_shorthand() {
                 continue;
             }
             if tally.skip {
                 sum.odd = sum.odd.max(tally.odd);
+                sum.skip = true;
                 continue;
             }
             let settled = self.settle(tally);
@@ -288,8 +293,7 @@ impl Count<'_> {
         let mut compared = Vec::new();
         let mut tally = self.terms(terms, bound, None, &mut compared);
         tally.open = compared.iter().filter_map(|term| term.free).take(1).collect();
-        let all_skip = compared.is_empty() && !terms.is_empty();
-        tally.skip = all_skip && terms.iter().any(|term| !term.any && !term.shorthand);
+        tally.skip &= compared.is_empty();
         if terms.len() > 1 {
             tally.odd = tally.odd.max(self.compare(compared));
         }

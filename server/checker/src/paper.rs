@@ -121,7 +121,7 @@ pub fn check(paper: &Paper, settings: &Settings, cancel: &Cancel) -> Analysis {
             Prices { file: own, paper: &all, declared: &document.read.declared, macros: &document.read.macros };
         let mut analysis = judge_document(document, prices, settings);
         let troubles = paper.troubles.iter().filter(|trouble| trouble.document == number);
-        analysis.findings.extend(troubles.map(rules::missing_part));
+        analysis.findings.extend(troubles.map(|trouble| rules::missing_part(trouble, document.read.text)));
         analysis.findings.retain(|finding| wanted(finding.rule, settings));
         analysis.findings.sort_by(|a, b| (a.span, a.rule, &a.message).cmp(&(b.span, b.rule, &b.message)));
         analysis

@@ -6,8 +6,9 @@
 //! sum over letters of small searches, once for each setting of the few switches.
 
 use crate::balance::{Choice, Odd, judge};
+use crate::conventions::built_in::{LetterClass, class_of, is_derivative};
 use crate::conventions::inferred::Prices;
-use crate::sketch::Sketch;
+use crate::sketch::{Shape, Sketch};
 
 /// Readings dearer than this do not excuse a statement, in tenths of a unit of price. Smaller than the price of
 /// calling an established index a label. Chosen by measurement on the corpus: at 30 noise rises by half, at 55
@@ -15,6 +16,8 @@ use crate::sketch::Sketch;
 pub const MARGIN: i32 = 40;
 /// A letter that this little puts in balance is not blamed beside others.
 const CHEAP: i32 = 15;
+/// How much it speaks against an index that nothing in the statement repeats.
+const LONE_DOUBT: i32 = 12;
 /// Price of another letter on a kernel whose scripts are labels already.
 const REPEATED: i32 = 3;
 /// Units of one letter that are tried in all combinations; further ones keep their likelier reading.
@@ -46,7 +49,8 @@ pub fn letters(sketch: &Sketch) -> Vec<&str> {
 
 /// Reads a statement.
 pub fn read(sketch: &Sketch, prices: &Prices<'_>) -> Reading {
-    let scores: Vec<i32> = sketch.units.iter().map(|unit| prices.score(unit)).collect();
+    let mut scores: Vec<i32> = sketch.units.iter().map(|unit| prices.score(unit)).collect();
+    doubt_lone_letters(sketch, &mut scores);
     let likely = Choice {
         index: scores.iter().map(|score| *score > 0).collect(),
         on: sketch.switches.iter().map(|switch| switch.on).collect(),
@@ -74,6 +78,20 @@ pub fn read(sketch: &Sketch, prices: &Prices<'_>) -> Reading {
         }
     }
     best
+}
+
+/// `Z = a_f / a_i`: where no letter stands twice and none shares its kernel, letters are labels more readily.
+fn doubt_lone_letters(sketch: &Sketch, scores: &mut [i32]) {
+    let twice = |letter: &str| sketch.places.iter().filter(|place| place.letter == letter).count() > 1;
+    let labels = sketch
+        .units
+        .iter()
+        .all(|unit| unit.shape == Shape::Lone && !twice(&unit.letter) && class_of(&unit.letter) != LetterClass::Greek);
+    if labels && sketch.sides.len() > 1 {
+        for (score, unit) in scores.iter_mut().zip(&sketch.units) {
+            *score -= if is_derivative(&unit.kernel_letter) { 0 } else { LONE_DOUBT };
+        }
+    }
 }
 
 /// Clean readings come first, then those with fewer odd letters, then the cheaper ones.
@@ -116,10 +134,15 @@ fn try_letters(sketch: &Sketch, scores: &[i32], letters: &[&str], mut choice: Ch
         wanted.push((letter, odd, price, flips.map(|(_, units)| units)));
     }
     let clean = total <= MARGIN;
+    // A letter that no reading puts in balance is wrong for certain; letters of other kinds that a label would excuse
+    // are then no part of it.
+    let certain: Vec<LetterClass> =
+        wanted.iter().filter(|(.., flips)| flips.is_none()).map(|(letter, ..)| class_of(letter)).collect();
     let mut odd = Vec::new();
     let mut paid = cost;
     for (letter, kind, price, flips) in wanted {
-        match flips.filter(|_| clean || price <= CHEAP) {
+        let apart = !certain.is_empty() && !certain.contains(&class_of(letter));
+        match flips.filter(|_| clean || apart || price <= CHEAP) {
             Some(units) => {
                 paid += price;
                 for unit in units {

@@ -65,6 +65,8 @@ pub struct TermNode {
     pub any: bool,
     /// Matches anything while this switch is on: a list of components, a map's value.
     pub loose: Option<u32>,
+    /// Whether a command stands in it that nobody knows and that may print indices of its own.
+    pub opaque: bool,
     /// Whether it is a bare number.
     pub number: bool,
     /// Whether it is written without indices in a vector notation, so that it may stand for one with a free index.

@@ -67,7 +67,7 @@ const ODD_PERCENT: u32 = 33;
 /// Balanced statements from which an unknown command's arguments are trusted to be factors, and the share of odd
 /// ones, in percent, up to which they are.
 const TRUSTED_STATEMENTS: u32 = 2;
-const TRUSTED_ODD_PERCENT: u32 = 20;
+const TRUSTED_ODD_PERCENT: u32 = 34;
 /// Odd statements that are forgiven before that share is taken.
 const ODD_FREE: u32 = 3;
 
@@ -287,8 +287,9 @@ impl Prices<'_> {
         let lone = steps(self.count(|evidence| evidence.lone.get(&lone_key).copied())).min(3);
         // A kernel that is never seen with an index of this class is more likely to carry a label.
         let stranger = || {
-            let kernel = steps(self.count(|evidence| evidence.label_kernel.get(&unit.kernel).copied())).min(3);
-            let other = steps(self.count(|evidence| evidence.label_letter.get(letter).copied())).min(3);
+            let kernel = self.count(|evidence| evidence.label_kernel.get(&unit.kernel).copied());
+            let kernel = steps(others(kernel)).min(3);
+            let other = steps(others(self.count(|evidence| evidence.label_letter.get(letter).copied()))).min(3);
             let usual = matches!(super::built_in::bare_letter(letter), "i" | "j" | "k" | "l");
             let greek_up = class_of(letter) == LetterClass::Greek && unit.level == Level::Up && unit.bias > 20;
             match (usual, greek_up) {
@@ -306,7 +307,7 @@ impl Prices<'_> {
             Shape::OnGroup if unit.bias > -40 => 4 * index + 8 * lone,
             Shape::OnGroup => 0,
         };
-        unit.bias + by_document - 12 * steps(labels).min(4)
+        unit.bias + by_document - 12 * steps(others(labels)).min(4)
     }
 
     /// The count of the file, doubled, with that of the rest of the paper.
@@ -370,7 +371,7 @@ impl Prices<'_> {
     pub fn both_strange(&self, one: &Unit, two: &Unit) -> bool {
         [one, two].iter().all(|unit| {
             let key = (unit.kernel.clone(), class_of(&unit.letter));
-            unit.shape == Shape::Lone && !self.paper.lone.contains_key(&key)
+            unit.shape == Shape::Lone && !self.file.lone.contains_key(&key)
         })
     }
 
@@ -378,6 +379,12 @@ impl Prices<'_> {
     pub fn staggering(&self, kernel: &(CompactString, u8, u8)) -> [u32; 2] {
         self.paper.staggered.get(kernel).copied().unwrap_or_default()
     }
+}
+
+/// Votes for a label without one statement's own (counted for the file and for the paper): else a slip that the
+/// margin excuses would excuse itself for good.
+fn others(votes: u32) -> u32 {
+    votes.saturating_sub(2)
 }
 
 /// 0, 1, 2, 3, ... for 0, 1, 3, 7, ... votes: coarse, so that one statement more rarely changes a score.

@@ -49,10 +49,22 @@ fn severity(judged: &Judged<'_>, mends: &[Mend]) -> Severity {
     let mendable = mends.iter().any(|mend| {
         let left = odd_letters(&mend.sketch, &mend.choice);
         let mended = judged.reading.odd.len().saturating_sub(left.len());
-        let renamed = matches!(mend.change, Change::Rename(..)) && mended > 1;
-        renamed || left.iter().all(|(_, odd)| *odd != Odd::Mismatch)
+        let (alike, renamed) = match &mend.change {
+            Change::Rename(places, to) => {
+                let from = places.first().and_then(|place| judged.sketch.place(*place)).map(|place| &place.letter);
+                let alike = from.is_some_and(|from| class_of(from) == class_of(to) && primes(from) == primes(to));
+                (alike, alike && mended > 1)
+            }
+            _ => (true, false),
+        };
+        alike && renamed || alike && left.iter().all(|(_, odd)| *odd != Odd::Mismatch)
     });
     if mendable && !names_components(judged) { RULE.severity } else { Severity::Hint }
+}
+
+/// Primes, accents and numbers on a letter: another chart's index is not a slip of the pen.
+fn primes(letter: &str) -> (usize, bool) {
+    (letter.matches(['\'', '_']).count(), letter.contains(' '))
 }
 
 /// One side is a single kernel with all its indices free on one level, the others carry none at all.

@@ -14,11 +14,12 @@ pub(super) const RULE: Rule = Rule {
     check: Check::Document,
 };
 
-/// The finding for a part that could not be had.
-pub(crate) fn missing_part(trouble: &Trouble) -> Finding {
+/// The finding for a part that could not be had. A preamble that is missing is a hint: nothing of the text is.
+pub(crate) fn missing_part(trouble: &Trouble, text: &str) -> Finding {
+    let preamble = text.find("\\begin{document}").is_some_and(|begin| (trouble.span.start as usize) < begin);
     Finding {
         rule: RULE.name,
-        severity: RULE.severity,
+        severity: if preamble { Severity::Hint } else { RULE.severity },
         span: trouble.span,
         message: trouble.message.clone(),
         related: Vec::new(),

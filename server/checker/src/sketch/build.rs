@@ -22,7 +22,9 @@ const LIST_PRICE: i32 = 10;
 /// Price of taking `\psi(p)` for the value of a map, with whatever indices.
 const MAP_PRICE: i32 = 30;
 /// How much it speaks against an index that its letter is a quantity of the same statement.
-const QUANTITY_DOUBT: i32 = 35;
+const QUANTITY_DOUBT: i32 = 55;
+/// The same for the imaginary unit and the like, which stand beside indices of the same letter by custom.
+const UNIT_DOUBT: i32 = 15;
 
 pub(super) fn sketch(statement: &Statement) -> Sketch {
     let mut builder = Builder::default();
@@ -75,6 +77,7 @@ impl Builder {
             any: false,
             loose: None,
             vector: false,
+            opaque: false,
         };
         if matches_anything(term) {
             walk.any = true;
@@ -86,7 +89,7 @@ impl Builder {
         let bare = self.sketch.places.len() == places;
         let (any, shorthand) = (walk.any, bare && walk.vector && !is_scalar_product(term));
         let number = !term.factors.is_empty() && term.factors.iter().all(is_numeric);
-        TermNode { span: term.span, nodes: walk.nodes, any, loose: walk.loose, number, shorthand }
+        TermNode { span: term.span, nodes: walk.nodes, any, loose: walk.loose, number, shorthand, opaque: walk.opaque }
     }
 
     fn factor(&mut self, walk: &mut Walk<'_>, factor: &Factor) {
@@ -170,7 +173,8 @@ impl Builder {
             let nodes =
                 group.parts.iter().flat_map(|part| &part.sides).map(|side| self.sum_only(side, walk.flip)).collect();
             let switch = self.switch(Switch { on, price });
-            if walk.at == walk.factors.len() && !indexed && walk.loose.is_none() {
+            let map = walk.factors.len() == 2 && !on || group.parts.len() > 1;
+            if walk.at == walk.factors.len() && !indexed && walk.loose.is_none() && map {
                 // The value of a map, or components with a coefficient.
                 let price = if group.parts.len() > 1 { LIST_PRICE } else { MAP_PRICE };
                 walk.loose = Some(self.switch(Switch { on: false, price }));
@@ -284,6 +288,8 @@ impl Builder {
             let carrier = Carrier { bold: kernel.is_some() && is_basis_kernel(letter), ..carrier };
             let scripts = read_scripts(self, carrier, &factor.scripts, flip);
             walk.vector |= scripts.nodes.is_empty();
+            // It may print indices of its own.
+            walk.opaque |= kernel.is_none() && scripts.nodes.is_empty();
             return self.powered(walk, Node::Product(scripts.nodes), scripts.power);
         }
         for argument in arguments {
@@ -358,11 +364,22 @@ struct Walk<'t> {
     /// The term matches anything while this switch is on.
     loose: Option<u32>,
     vector: bool,
+    opaque: bool,
 }
 
 impl<'t> Walk<'t> {
     fn of(flip: bool) -> Self {
-        Walk { factors: &[], at: 0, flip, below: 0, nodes: Vec::new(), any: false, loose: None, vector: false }
+        Walk {
+            factors: &[],
+            at: 0,
+            flip,
+            below: 0,
+            nodes: Vec::new(),
+            any: false,
+            loose: None,
+            vector: false,
+            opaque: false,
+        }
     }
 
     /// `O(..)`, `\mathcal O(..)`.
@@ -466,7 +483,7 @@ fn doubt_quantities(sketch: &mut Sketch) {
         // A derivative along a vector of the statement: `\nabla_m t = m^a ..`.
         let along = matches!(unit.kernel_letter.as_str(), "\\nabla" | "D") && kernels.contains(&unit.letter);
         if along || sketch.quantities.iter().any(|(letter, _)| *letter == unit.letter) {
-            unit.bias -= QUANTITY_DOUBT;
+            unit.bias -= if matches!(unit.letter.as_str(), "i" | "d" | "e") { UNIT_DOUBT } else { QUANTITY_DOUBT };
         }
     }
 }
