@@ -153,7 +153,8 @@ pub fn readings(paper: &Paper) -> Vec<(Span, String)> {
         let switches = format!("    switches {:?} now {:?}", sketch.switches, reading.choice.on);
         format!("{}{odd} trusted {trusted} {:?}\n{switches}\n", units.collect::<String>(), sketch.unjudged)
     };
-    document.statements.iter().map(|(_, sketch)| (sketch.span, words(sketch))).collect()
+    let habits = (Span::default(), format!("    habits {}\n", own.summary()));
+    std::iter::once(habits).chain(document.statements.iter().map(|(_, sketch)| (sketch.span, words(sketch)))).collect()
 }
 
 /// Rounds of counting: each reads with the counts of the round before. Two settle nearly all readings of the

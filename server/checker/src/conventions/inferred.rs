@@ -182,7 +182,9 @@ impl Evidence {
         let symbol = [one, two].iter().any(|place| {
             sketch.units.get(place.unit as usize).is_some_and(|unit| is_symbol_kernel(&unit.kernel_letter))
         });
-        for kernel in kernels.into_iter().flatten() {
+        let [first, second] = kernels;
+        let second = second.filter(|second| Some(second) != first.as_ref());
+        for kernel in [first, second].into_iter().flatten() {
             bump(self.kernel_pairs.entry((kernel, class_of(&one.letter))).or_default(), same);
         }
         if !symbol && let Some(counts) = self.pairs.get_mut(class) {
@@ -215,6 +217,20 @@ impl Evidence {
         ] {
             own.iter_mut().flatten().zip(other.iter().flatten()).for_each(|(own, other)| *own += other);
         }
+    }
+
+    /// The counts by class in words: pairs on opposite levels and on one, free levels, balanced statements.
+    pub fn summary(&self) -> String {
+        let counts = |class: LetterClass| {
+            let at = |table| Self::class_counts(table, class);
+            format!(
+                "{class:?} pairs {:?} free {:?} balanced {:?}",
+                at(&self.pairs),
+                at(&self.free_levels),
+                at(&self.balanced)
+            )
+        };
+        CLASSES.map(counts).join("; ")
     }
 
     fn class_counts(table: &[[u32; 2]; 5], class: LetterClass) -> [u32; 2] {
@@ -322,7 +338,8 @@ impl Prices<'_> {
         let all = Evidence::class_counts(&self.paper.pairs, class);
         let [opposite, same] = if own[0] + own[1] >= OPPOSITE_PAIRS { own } else { all };
         let total = opposite + same;
-        if opposite >= OPPOSITE_PAIRS && same * 100 <= SAME_LEVEL_PERCENT * total {
+        // One pair is forgiven: it may be the slip itself.
+        if opposite >= OPPOSITE_PAIRS && same.saturating_sub(1) * 100 <= SAME_LEVEL_PERCENT * total {
             LevelHabit::InForce
         } else if total >= OPPOSITE_PAIRS && same * 100 >= CARTESIAN_PERCENT * total {
             LevelHabit::Cartesian
@@ -338,7 +355,7 @@ impl Prices<'_> {
         }
         let key = (unit.kernel.clone(), class_of(&unit.letter));
         let [opposite, same] = self.file.kernel_pairs.get(&key).copied().unwrap_or_default();
-        same >= 3 && same > opposite
+        same >= 4 && same > opposite
     }
 
     /// Whether free levels are consistent enough in a class for a difference to be a slip.
@@ -349,7 +366,7 @@ impl Prices<'_> {
         let [agree, differ] = if own[0] + own[1] >= FREE_STATEMENTS { own } else { all };
         let total = agree + differ;
         total >= FREE_STATEMENTS
-            && agree * 100 >= FREE_PERCENT * total
+            && (agree + 1) * 100 >= FREE_PERCENT * total
             && self.level_habit(letter) == LevelHabit::InForce
     }
 

@@ -48,16 +48,14 @@ fn check(judged: &Judged<'_>) -> Option<Report> {
 fn severity(judged: &Judged<'_>, mends: &[Mend]) -> Severity {
     let mendable = mends.iter().any(|mend| {
         let left = odd_letters(&mend.sketch, &mend.choice);
-        let mended = judged.reading.odd.len().saturating_sub(left.len());
-        let (alike, renamed) = match &mend.change {
+        let alike = match &mend.change {
             Change::Rename(places, to) => {
                 let from = places.first().and_then(|place| judged.sketch.place(*place)).map(|place| &place.letter);
-                let alike = from.is_some_and(|from| class_of(from) == class_of(to) && primes(from) == primes(to));
-                (alike, alike && mended > 1)
+                from.is_some_and(|from| class_of(from) == class_of(to) && primes(from) == primes(to))
             }
-            _ => (true, false),
+            _ => true,
         };
-        alike && renamed || alike && left.iter().all(|(_, odd)| *odd != Odd::Mismatch)
+        alike && left.iter().all(|(_, odd)| *odd != Odd::Mismatch)
     });
     if mendable && !names_components(judged) { RULE.severity } else { Severity::Hint }
 }
