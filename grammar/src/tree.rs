@@ -131,6 +131,8 @@ pub enum Joint {
     Times,
     /// A slash: the factor is below the line.
     Slash,
+    /// A sign between sets or maps: `\cap`, `\circ`.
+    Set,
 }
 
 /// An atom with its scripts.
@@ -175,6 +177,8 @@ pub enum Atom {
     Wrapped(Box<Sum>),
     /// An under- or overbrace: its scripts are words about it.
     Labelled(Box<Sum>),
+    /// Struck out, or braced to zero.
+    Struck(Box<Sum>),
     /// A command that is neither built in nor defined, with its arguments.
     Unknown(CompactString, Vec<Sum>),
     /// Not read.
@@ -332,7 +336,7 @@ fn walk_factor<'t>(factor: &'t Factor, visit: &mut impl FnMut(&'t Factor)) {
             walk(&fraction.over, visit);
             walk(&fraction.under, visit);
         }
-        Atom::Root(sum) | Atom::Wrapped(sum) | Atom::Labelled(sum) => walk(sum, visit),
+        Atom::Root(sum) | Atom::Wrapped(sum) | Atom::Labelled(sum) | Atom::Struck(sum) => walk(sum, visit),
         Atom::Unknown(_, sums) => sums.iter().for_each(|sum| walk(sum, visit)),
         _ => {}
     }

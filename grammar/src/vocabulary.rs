@@ -86,6 +86,8 @@ pub(crate) enum Class {
     Wrap,
     /// Passes its second argument through: `\textcolor{c}{..}`.
     Wrap2,
+    /// `\cancelto{0}{..}`: struck out; the first argument says what it becomes.
+    Struck,
     /// `\underbrace{..}_{..}`: the script is a label.
     Brace,
     /// `\overset{label}{body}`.
@@ -313,6 +315,7 @@ const WORDS: &[(Class, &str)] = &[
          overparen hl highlight ovalbox shadowbox doublebox vcenter uuline \
          mathstrike tcboxmath tcbhighmath Aboxed ovalnode",
     ),
+    (Class::Struck, "cancelto"),
     (Class::Wrap2, "textcolor colorbox mathcolor scalebox raisebox"),
     (Class::Brace, "underbrace overbrace underbracket overbracket"),
     (Class::Overset, "overset underset stackrel"),

@@ -7,7 +7,9 @@ use chumsky::prelude::*;
 use compact_str::{CompactString, format_compact};
 
 use crate::span::Span;
-use crate::tree::{Atom, Big, Bracket, Factor, Fraction, Group, Joint, Kernel, Script, Statement, Sum, Term};
+use crate::tree::{
+    Atom, Big, Bracket, Factor, Fraction, Group, Item, ItemKind, Joint, Kernel, Script, Statement, Sum, Term,
+};
 
 use super::lexeme::{Kind, Lexeme};
 use super::script::{Postfix, scripts};
@@ -184,7 +186,11 @@ fn commands<'a>(
     let wrap = kind(Kind::Wrap).or(kind(Kind::Brace)).then_ignore(option.clone()).then(argument.clone()).map(
         |(command, (sum, end)): (&Lexeme, _)| {
             let body = Box::new(sum);
-            let atom = if command.kind == Kind::Brace { Atom::Labelled(body) } else { Atom::Wrapped(body) };
+            let atom = match command.kind {
+                Kind::Brace => Atom::Labelled(body),
+                _ if command.text.contains("cancel") || command.text == "sout" => Atom::Struck(body),
+                _ => Atom::Wrapped(body),
+            };
             plain(atom, command.span.join(end))
         },
     );
@@ -328,6 +334,16 @@ fn spelled(factor: &Factor) -> Option<CompactString> {
     term.factors.iter().map(letter).collect::<Option<Vec<_>>>().map(|letters| letters.concat().into())
 }
 
+/// `\underbrace{..}_{= 0}`.
+fn braced_to_zero(script: &Script) -> bool {
+    let zero = |item: &Item| matches!(&item.kind, ItemKind::Number(number) if number == "0");
+    match script.items.as_slice() {
+        [item] => zero(item),
+        [first, second, ..] => first.kind == ItemKind::Relation && zero(second),
+        [] => false,
+    }
+}
+
 /// Adds what follows an atom: primes to a kernel's name, scripts to its scripts.
 fn with_scripts(mut factor: Factor, after: Vec<Postfix>) -> Factor {
     let mut gap = false;
@@ -342,6 +358,9 @@ fn with_scripts(mut factor: Factor, after: Vec<Postfix>) -> Factor {
             }
             Postfix::Script(script) => {
                 factor.span = factor.span.join(script.span);
+                if let (Atom::Labelled(body), true) = (&mut factor.atom, braced_to_zero(&script)) {
+                    factor.atom = Atom::Struck(std::mem::take(body));
+                }
                 factor.scripts.push(Script { staggered: script.staggered || gap, ..script });
                 gap = false;
             }

@@ -33,7 +33,7 @@ fn term_of<'a>(
     factor: impl Parser<'a, Input<'a>, Factor, Extra> + Clone + 'a,
 ) -> impl Parser<'a, Input<'a>, Term, Extra> + Clone + 'a {
     let joint = select_ref! {
-        Lexeme { kind: Kind::Times, .. } => Joint::Times,
+        Lexeme { kind: Kind::Times, text, .. } => times(text),
         Lexeme { kind: Kind::Slash, .. } => Joint::Slash,
         Lexeme { kind: Kind::Lone | Kind::Stagger | Kind::Prime | Kind::RomanSwitch, .. } => Joint::Beside,
     };
@@ -47,4 +47,8 @@ fn term_of<'a>(
         .collect::<Vec<_>>()
         .then_ignore(joint.repeated())
         .map(|factors| Term { span: join_all(factors.iter().map(|factor| factor.span)), sign: None, factors })
+}
+
+fn times(text: &str) -> Joint {
+    if matches!(text, "cap" | "cup" | "setminus" | "circ" | "sqcup") { Joint::Set } else { Joint::Times }
 }

@@ -293,6 +293,10 @@ impl<'t, 'a> Cursor<'t, 'a> {
                 self.skip_optional_before_group();
                 Kind::Wrap
             }
+            Class::Struck => {
+                self.skip_group();
+                Kind::Wrap
+            }
             Class::Brace => Kind::Brace,
             Class::Norm => Kind::Norm,
             Class::Average => Kind::Average,

@@ -46,7 +46,7 @@ fn factor(factor: &Factor) -> String {
         Atom::Text(_) => "text".to_owned(),
         Atom::Dots => "…".to_owned(),
         Atom::Order => "O(..)".to_owned(),
-        Atom::Wrapped(body) | Atom::Labelled(body) => format!("⟨{}⟩", sum(body)),
+        Atom::Wrapped(body) | Atom::Labelled(body) | Atom::Struck(body) => format!("⟨{}⟩", sum(body)),
         Atom::Unknown(name, sums) => {
             let sums: Vec<String> = sums.iter().map(sum).collect();
             format!("?{name}({})", sums.join(", "))

@@ -182,6 +182,7 @@ impl Count<'_> {
             }
             // What an unknown command prints may close what is open here.
             if term.opaque && tally.open.len() == 1 {
+                sum.skip = true;
                 continue;
             }
             let loose = term.loose.is_some_and(|switch| self.is_on(switch));

@@ -32,6 +32,7 @@ pub fn class_of(letter: &str) -> LetterClass {
     let bare = bare_letter(letter);
     let mut signs = bare.chars();
     match (signs.next(), signs.next()) {
+        (Some('\\'), Some(_)) if bare == "\\ell" => LetterClass::LatinLate,
         (Some('\\'), Some(first)) if first.is_ascii_lowercase() => LetterClass::Greek,
         (Some('a'..='h'), None) => LetterClass::LatinEarly,
         (Some('i'..='z'), None) => LetterClass::LatinLate,

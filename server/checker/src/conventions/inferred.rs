@@ -338,8 +338,8 @@ impl Prices<'_> {
         let all = Evidence::class_counts(&self.paper.pairs, class);
         let [opposite, same] = if own[0] + own[1] >= OPPOSITE_PAIRS { own } else { all };
         let total = opposite + same;
-        // One pair is forgiven: it may be the slip itself.
-        if opposite >= OPPOSITE_PAIRS && same.saturating_sub(1) * 100 <= SAME_LEVEL_PERCENT * total {
+        // A single pair is forgiven: it may be the slip itself.
+        if opposite >= OPPOSITE_PAIRS && (same == 1 || same * 100 <= SAME_LEVEL_PERCENT * total) {
             LevelHabit::InForce
         } else if total >= OPPOSITE_PAIRS && same * 100 >= CARTESIAN_PERCENT * total {
             LevelHabit::Cartesian

@@ -7,7 +7,7 @@ use crate::balance::{Choice, Event, Odd, judge, same_level};
 use crate::conventions::built_in::is_symbol_kernel;
 use crate::conventions::inferred::{LevelHabit, Prices};
 use crate::reading::letters;
-use crate::sketch::Sketch;
+use crate::sketch::{Shape, Sketch};
 
 /// One thing out of order.
 #[derive(Clone, Debug, PartialEq, Eq)]
@@ -81,7 +81,7 @@ pub(super) fn free_fault(sketch: &Sketch, letter: &str, events: &[Event], prices
         Event::Terms(terms) => {
             let symbol = |place: &u32| {
                 let unit = sketch.place(*place).and_then(|place| sketch.units.get(place.unit as usize));
-                unit.is_none_or(|unit| is_symbol_kernel(&unit.kernel_letter))
+                unit.is_none_or(|unit| is_symbol_kernel(&unit.kernel_letter) || unit.shape == Shape::Bracketed)
             };
             let free = terms.iter().filter_map(|term| term.free).filter(|place| !symbol(place));
             let mut levels = free.filter_map(|place| sketch.place(place));

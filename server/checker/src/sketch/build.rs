@@ -96,6 +96,8 @@ impl Builder {
         if factor.joint == Joint::Slash {
             walk.below = 1 + usize::from(is_differential(factor));
         }
+        // Sets and maps are named, not summed.
+        walk.any |= factor.joint == Joint::Set;
         let flip = walk.flip != (walk.below > 0);
         walk.below = walk.below.saturating_sub(1);
         match &factor.atom {
@@ -115,6 +117,8 @@ impl Builder {
             Atom::Big(Big::Integral) | Atom::Number(_) | Atom::Unread(_) => {}
             Atom::Function(name) => self.function(walk, name, flip),
             Atom::Unknown(name, arguments) => self.unknown(walk, factor, name, arguments, flip),
+            // Zero takes any indices.
+            Atom::Struck(_) => walk.any |= walk.factors.len() == 1,
             Atom::Matrix | Atom::Text(_) | Atom::Dots | Atom::Order => walk.any = true,
         }
     }

@@ -438,7 +438,9 @@ fn bias(carrier: Carrier<'_>, candidate: &Candidate<'_>, shape: Shape, component
     let by_number = if candidate.after_number {
         -40
     } else if candidate.mixed {
-        -20
+        -40
+    } else if candidate.letter.contains("tilde") {
+        -30
     } else {
         0
     };

@@ -1,0 +1,99 @@
+//! The demonstration documents: what the program reports of them, to the letter, and that it is what was planted.
+//!
+//! `tests/documents/expected.lines` was read line by line when it was made. After a change that alters it on
+//! purpose, `INDEXWISE_TESTS=renew cargo test -p indexwise --test demo` writes it anew; read the difference before
+//! it goes in. That every slip is reported where it stands, and nothing else, is checked apart from that file, so
+//! that renewing it cannot hide a slip that is no longer found.
+
+#![allow(clippy::unwrap_used, clippy::panic)]
+
+use std::fs;
+use std::path::{Path, PathBuf};
+use std::process::{Command, Stdio};
+
+/// Documents of the demonstration, from the root of the repository.
+const DOCUMENTS: &str = "tests/documents";
+/// What stands before the name of the rule that has to report the formula after it.
+const MARK: &str = "Planted: ";
+
+fn root() -> PathBuf {
+    Path::new(env!("CARGO_MANIFEST_DIR")).join("../..")
+}
+
+/// The report of the demonstration documents, one finding a line.
+fn report() -> String {
+    let mut command = Command::new(env!("CARGO_BIN_EXE_indexwise"));
+    command.current_dir(root()).args(["check", "--report", "lines", "--no-progress", DOCUMENTS]);
+    let output = command.stdin(Stdio::null()).output().unwrap();
+    assert_eq!(output.status.code(), Some(1), "{}", String::from_utf8_lossy(&output.stderr));
+    assert!(output.stderr.is_empty(), "{}", String::from_utf8_lossy(&output.stderr));
+    String::from_utf8(output.stdout).unwrap()
+}
+
+#[test]
+fn the_report_of_the_documents_is_the_one_that_was_read() {
+    let path = root().join(DOCUMENTS).join("expected.lines");
+    let report = report();
+    if std::env::var_os("INDEXWISE_TESTS").is_some_and(|value| value == "renew") {
+        fs::write(&path, &report).unwrap();
+    }
+    let expected = fs::read_to_string(&path).unwrap();
+    let missing: Vec<&str> = expected.lines().filter(|line| !report.lines().any(|other| other == *line)).collect();
+    let new: Vec<&str> = report.lines().filter(|line| !expected.lines().any(|other| other == *line)).collect();
+    assert!(missing.is_empty() && new.is_empty(), "no longer:\n{}\nnew:\n{}", missing.join("\n"), new.join("\n"));
+    assert_eq!(report, expected, "the order of the lines changed");
+}
+
+/// A slip or a finding: line, rule.
+type Slip = (usize, String);
+
+/// Where slips were planted in a document.
+fn planted(text: &str) -> Vec<Slip> {
+    let slip = |(at, line): (usize, &str)| {
+        let rule = line.split_once(MARK)?.1;
+        let rule = rule.split(|sign: char| sign != '-' && !sign.is_ascii_lowercase()).next()?;
+        Some((at + 1, rule.to_owned()))
+    };
+    text.lines().enumerate().filter_map(slip).collect()
+}
+
+/// What is reported of a document.
+fn reported(report: &str, path: &str) -> Vec<Slip> {
+    let slip = |line: &str| {
+        let rest = line.strip_prefix(path)?.strip_prefix(':')?;
+        let number = rest.split(':').next()?.parse().ok()?;
+        let rule = rest.rsplit('[').next()?.trim_end_matches(']');
+        Some((number, rule.to_owned()))
+    };
+    report.lines().filter_map(slip).collect()
+}
+
+#[test]
+fn every_planted_slip_is_reported_and_nothing_else() {
+    let report = report();
+    let names =
+        ["field-notes.inote", "shell-waves/paper.tex", "shell-waves/review.md", "shell-waves/sections/stresses.tex"];
+    for name in names {
+        let path = format!("{DOCUMENTS}/{name}");
+        let slips = planted(&fs::read_to_string(root().join(&path)).unwrap());
+        let findings = reported(&report, &path);
+        let rules = |slips: &[Slip]| slips.iter().map(|(_, rule)| rule.clone()).collect::<Vec<_>>();
+        assert_eq!(rules(&findings), rules(&slips), "{path}");
+        for (at, ((line, rule), (mark, _))) in findings.iter().zip(&slips).enumerate() {
+            let next = slips.get(at + 1).map_or(usize::MAX, |(line, _)| *line);
+            assert!(mark < line && *line < next, "{path}:{line}: {rule} is not what was planted in line {mark}");
+        }
+    }
+    let count = names.iter().map(|name| reported(&report, &format!("{DOCUMENTS}/{name}")).len()).sum::<usize>();
+    assert_eq!(count, report.lines().count(), "a finding in a file that is not a document of the demonstration");
+}
+
+/// The rules that a document can show by itself; `unread` is off.
+#[test]
+fn every_rule_has_a_planted_slip() {
+    let report = report();
+    for rule in indexwise_checker::rules::RULES.iter().filter(|rule| rule.on) {
+        let shown = report.lines().any(|line| line.ends_with(&format!("[{}]", rule.name)));
+        assert!(shown, "{} is shown by no document", rule.name);
+    }
+}
