@@ -207,7 +207,7 @@ impl Count<'_> {
     /// Closes what a product holds twice.
     fn settle(&mut self, mut tally: Tally) -> Tally {
         let open = tally.open.len();
-        if open > 2 {
+        if open > 2 && !self.names_component(&tally.open) {
             tally.odd = tally.odd.max(Odd::Thrice);
             self.events.push(Event::Thrice(tally.open.clone()));
         } else if let (true, Some(inner)) = (open > 0, tally.closed) {
@@ -299,6 +299,15 @@ impl Count<'_> {
             tally.odd = tally.odd.max(self.compare(compared));
         }
         tally
+    }
+
+    /// `\Gamma^0_{jj} T^{jj}`: a letter that stands only twice over in scripts of its own names a component.
+    fn names_component(&self, places: &[u32]) -> bool {
+        let alone = |place: &crate::sketch::Place| {
+            let mine = self.sketch.places.iter().filter(|other| other.script == place.script);
+            place.company == 2 && mine.filter(|other| other.letter == self.letter).count() == 2
+        };
+        places.iter().all(|place| self.sketch.place(*place).is_some_and(alone))
     }
 
     /// Whether the letter numbers quantities rather than components: a small Latin letter, only on kernels that carry

@@ -17,7 +17,7 @@ pub const MARGIN: i32 = 40;
 /// A letter that this little puts in balance is not blamed beside others.
 const CHEAP: i32 = 15;
 /// How much it speaks against an index that nothing in the statement repeats.
-const LONE_DOUBT: i32 = 12;
+const LONE_DOUBT: i32 = 16;
 /// Price of another letter on a kernel whose scripts are labels already.
 const REPEATED: i32 = 3;
 /// Units of one letter that are tried in all combinations; further ones keep their likelier reading.

@@ -141,6 +141,8 @@ pub enum Shape {
     Lone,
     /// One of several letters or numbers on its kernel.
     Several,
+    /// Below a point with an upper index, `x^i_a`: a particle's name or a frame's index.
+    Particle,
     /// On a bracket.
     OnGroup,
     /// Alone in brackets of its own, `e_{(a)}`: a frame's index or the name of an order.

@@ -55,6 +55,8 @@ pub enum LevelHabit {
 
 /// Opposite pairs from which levels may be in force.
 const OPPOSITE_PAIRS: u32 = 5;
+/// Pairs from which a file's own habit counts rather than its paper's.
+const OWN_PAIRS: u32 = 5;
 /// Share of same-level pairs, in percent, up to which levels are in force.
 const SAME_LEVEL_PERCENT: u32 = 10;
 /// Share of same-level pairs, in percent, from which a class is Cartesian.
@@ -194,7 +196,7 @@ impl Evidence {
 
     fn vote_lone(&mut self, sketch: &Sketch, place: u32) {
         let unit = sketch.place(place).and_then(|place| sketch.units.get(place.unit as usize));
-        if let Some(unit) = unit.filter(|unit| unit.shape != Shape::Several) {
+        if let Some(unit) = unit.filter(|unit| !matches!(unit.shape, Shape::Several | Shape::Particle)) {
             *self.lone.entry((unit.kernel.clone(), class_of(&unit.letter))).or_default() += 1;
         }
     }
@@ -315,10 +317,12 @@ impl Prices<'_> {
             }
         };
         let by_document = match unit.shape {
-            Shape::Several => 7 * index,
+            Shape::Several | Shape::Particle => 7 * index,
             Shape::Bracketed => return unit.bias,
             Shape::Lone if unit.bias <= -40 => 0,
             Shape::Lone if lone == 0 => stranger(),
+            // Letters past n are labels more often.
+            Shape::Lone if (4..6).contains(&unit.bias) => 3 * index + 5 * lone,
             Shape::Lone => 7 * index + 8 * lone,
             Shape::OnGroup if unit.bias > -40 => 4 * index + 8 * lone,
             Shape::OnGroup => 0,
@@ -336,7 +340,7 @@ impl Prices<'_> {
         let class = class_of(letter);
         let own = Evidence::class_counts(&self.file.pairs, class);
         let all = Evidence::class_counts(&self.paper.pairs, class);
-        let [opposite, same] = if own[0] + own[1] >= OPPOSITE_PAIRS { own } else { all };
+        let [opposite, same] = if own[0] + own[1] >= OWN_PAIRS { own } else { all };
         let total = opposite + same;
         // A single pair is forgiven: it may be the slip itself.
         if opposite >= OPPOSITE_PAIRS && (same == 1 || same * 100 <= SAME_LEVEL_PERCENT * total) {

@@ -7,7 +7,7 @@ use crate::balance::{Choice, Event, Odd, judge, same_level};
 use crate::conventions::built_in::is_symbol_kernel;
 use crate::conventions::inferred::{LevelHabit, Prices};
 use crate::reading::letters;
-use crate::sketch::{Shape, Sketch};
+use crate::sketch::{Shape, Sketch, Unit};
 
 /// One thing out of order.
 #[derive(Clone, Debug, PartialEq, Eq)]
@@ -55,7 +55,13 @@ pub(super) fn pair_faults(sketch: &Sketch, letter: &str, events: &[Event], price
     };
     let strange = |one: u32, two: u32| {
         let unit = |place: u32| sketch.place(place).and_then(|place| sketch.units.get(place.unit as usize));
-        matches!((unit(one), unit(two)), (Some(one), Some(two)) if prices.both_strange(one, two))
+        let particles = |one: &Unit, two: &Unit| {
+            one.shape == Shape::Particle && two.shape == Shape::Particle && one.kernel == two.kernel
+        };
+        matches!(
+            (unit(one), unit(two)),
+            (Some(one), Some(two)) if prices.both_strange(one, two) || particles(one, two)
+        )
     };
     events
         .iter()

@@ -23,6 +23,8 @@ const LIST_PRICE: i32 = 10;
 const MAP_PRICE: i32 = 30;
 /// How much it speaks against an index that its letter is a quantity of the same statement.
 const QUANTITY_DOUBT: i32 = 55;
+/// How much it speaks against an index that its kernel stands in a bracket with scripts of its own.
+const NAME_DOUBT: i32 = 80;
 /// The same for the imaginary unit and the like, which stand beside indices of the same letter by custom.
 const UNIT_DOUBT: i32 = 15;
 
@@ -118,7 +120,7 @@ impl Builder {
             Atom::Function(name) => self.function(walk, name, flip),
             Atom::Unknown(name, arguments) => self.unknown(walk, factor, name, arguments, flip),
             // Zero takes any indices.
-            Atom::Struck(_) => walk.any |= walk.factors.len() == 1,
+            Atom::Struck(_) => walk.any = true,
             Atom::Matrix | Atom::Text(_) | Atom::Dots | Atom::Order => walk.any = true,
         }
     }
@@ -201,7 +203,11 @@ impl Builder {
             return self.list(walk, factor, group, flip);
         }
         let Some(sum) = group.parts.first().and_then(|part| part.sides.first()) else { return };
+        let before = self.sketch.places.len();
         let mut node = self.sum_node(walk, sum, flip);
+        if is_lone_kernel(sum) && !factor.scripts.is_empty() {
+            self.doubt_name(before);
+        }
         let names = is_lone_kernel(sum) || group.bracket == Bracket::Square;
         if walk.factors.len() == 1 && names && factor.scripts.is_empty() {
             // `(a_{ij})` alone names the matrix, `[T_{ij}]` the dimension.
@@ -240,6 +246,15 @@ impl Builder {
             Node::Product(nodes)
         };
         self.scripted_group(walk, factor, node, flip);
+    }
+
+    /// `(\partial_k)^i` is a component of the vector named `\partial_k`: a lone letter inside is part of the name.
+    fn doubt_name(&mut self, from: usize) {
+        if let [place] = self.sketch.places.get(from..).unwrap_or_default()
+            && let Some(unit) = self.sketch.units.get_mut(place.unit as usize)
+        {
+            unit.bias -= NAME_DOUBT;
+        }
     }
 
     fn scripted_group(&mut self, walk: &mut Walk<'_>, factor: &Factor, node: Node, flip: bool) {

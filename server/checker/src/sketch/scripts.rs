@@ -345,6 +345,7 @@ fn place(
     let written = candidate.script.level;
     let shape = match (carrier.group, slots) {
         _ if candidate.parenthesised => Shape::Bracketed,
+        _ if candidate.particle => Shape::Particle,
         (true, 0 | 1) => Shape::OnGroup,
         (_, 0 | 1) => Shape::Lone,
         _ => Shape::Several,
@@ -387,9 +388,7 @@ fn bias(carrier: Carrier<'_>, candidate: &Candidate<'_>, shape: Shape, component
     if candidate.parenthesised {
         return 2;
     }
-    if candidate.particle {
-        return 15;
-    }
+
     let up = candidate.script.level == Level::Up;
     let base = match (shape, class) {
         // Spherical harmonics.
@@ -402,6 +401,7 @@ fn bias(carrier: Carrier<'_>, candidate: &Candidate<'_>, shape: Shape, component
         (Shape::Several, LetterClass::LatinEarly) => 36,
         (Shape::Several, _) => 25,
         (Shape::Bracketed, _) => 2,
+        (Shape::Particle, _) => 15,
         (Shape::OnGroup, LetterClass::Capital | LetterClass::Other) => -20,
         (Shape::OnGroup, _) => 10,
         (Shape::Lone, LetterClass::Greek) => {
@@ -440,7 +440,7 @@ fn bias(carrier: Carrier<'_>, candidate: &Candidate<'_>, shape: Shape, component
     } else if candidate.mixed {
         -40
     } else if candidate.letter.contains("tilde") {
-        -30
+        -50
     } else {
         0
     };
