@@ -317,7 +317,11 @@ impl Prices<'_> {
             }
         };
         let by_document = match unit.shape {
-            Shape::Several | Shape::Particle => 7 * index,
+            Shape::Several | Shape::Particle if self.paper.kernel_pairs.contains_key(&lone_key) => 7 * index,
+            Shape::Several | Shape::Particle => {
+                let kernel = self.count(|evidence| evidence.label_kernel.get(&unit.kernel).copied());
+                7 * index - 7 * steps(others(kernel)).min(4)
+            }
             Shape::Bracketed => return unit.bias,
             Shape::Lone if unit.bias <= -40 => 0,
             Shape::Lone if lone == 0 => stranger(),
@@ -370,7 +374,7 @@ impl Prices<'_> {
         let [agree, differ] = if own[0] + own[1] >= FREE_STATEMENTS { own } else { all };
         let total = agree + differ;
         total >= FREE_STATEMENTS
-            && (agree + 1) * 100 >= FREE_PERCENT * total
+            && agree * 100 >= FREE_PERCENT * total
             && self.level_habit(letter) == LevelHabit::InForce
     }
 
@@ -388,11 +392,12 @@ impl Prices<'_> {
         })
     }
 
-    /// Whether neither kernel of a pair is ever seen with an index: then the two may be labels.
+    /// Whether neither kernel of a pair is ever seen in a pair on opposite levels: then the two may be labels.
     pub fn both_strange(&self, one: &Unit, two: &Unit) -> bool {
         [one, two].iter().all(|unit| {
             let key = (unit.kernel.clone(), class_of(&unit.letter));
-            unit.shape == Shape::Lone && !self.file.lone.contains_key(&key)
+            let opposite = self.file.kernel_pairs.get(&key).is_some_and(|[opposite, _]| *opposite > 0);
+            unit.shape == Shape::Lone && !opposite
         })
     }
 

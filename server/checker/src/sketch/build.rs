@@ -11,7 +11,7 @@ use indexwise_grammar::tree::{
 use crate::conventions::built_in::{is_basis_kernel, is_derivative, is_point_kernel};
 
 use super::scripts::{Carrier, Power, read_scripts};
-use super::{Node, Side, Sketch, Switch, TermNode, Unit};
+use super::{Node, Shape, Side, Sketch, Switch, TermNode, Unit};
 
 /// Price of letting a bracket after a kernel count as a product when it looks like an argument, or the reverse.
 const ARGUMENT_PRICE: i32 = 10;
@@ -39,6 +39,11 @@ pub(super) fn sketch(statement: &Statement) -> Sketch {
     }
     let mut sketch = builder.sketch;
     doubt_quantities(&mut sketch);
+    for unit in sketch.units.iter_mut().filter(|unit| unit.shape != Shape::Several) {
+        if builder.named.contains(&unit.letter) {
+            unit.bias -= NAME_DOUBT;
+        }
+    }
     if sketch.relations.is_empty() && sketch.sides.iter().all(|side| side.any) {
         sketch.unjudged = sketch.unjudged.or(Some("nothing to compare"));
     }
@@ -49,6 +54,8 @@ pub(super) fn sketch(statement: &Statement) -> Sketch {
 #[derive(Default)]
 pub(super) struct Builder {
     pub sketch: Sketch,
+    /// Letters that name one of several things.
+    named: Vec<CompactString>,
 }
 
 impl Builder {
@@ -106,8 +113,11 @@ impl Builder {
             Atom::Kernel(kernel) => self.kernel(walk, factor, kernel, flip),
             Atom::Group(group) => self.group(walk, factor, group, flip),
             Atom::Fraction(fraction) => {
+                let over = self.sketch.places.len();
                 self.inline(walk, &fraction.over, flip);
+                let under = self.sketch.places.len();
                 self.inline(walk, &fraction.under, !flip);
+                self.note_ratio(over, under);
             }
             Atom::Root(sum) | Atom::Labelled(sum) => self.inline(walk, sum, flip),
             Atom::Wrapped(sum) if sum.terms.is_empty() => {}
@@ -248,6 +258,19 @@ impl Builder {
         self.scripted_group(walk, factor, node, flip);
     }
 
+    /// `\delta\nu_\alpha / \nu_\alpha`: the same kernel with the same letter above and below is one of several
+    /// things with a name, not a sum.
+    fn note_ratio(&mut self, over: usize, under: usize) {
+        let lone = |place: &super::Place| {
+            let unit = self.sketch.units.get(place.unit as usize)?;
+            (unit.shape == Shape::Lone).then(|| (unit.kernel_letter.clone(), unit.letter.clone()))
+        };
+        let above: Vec<_> = self.sketch.places.get(over..under).unwrap_or_default().iter().filter_map(lone).collect();
+        let below = self.sketch.places.get(under..).unwrap_or_default().iter().filter_map(lone);
+        let named: Vec<CompactString> = below.filter(|one| above.contains(one)).map(|(_, letter)| letter).collect();
+        self.named.extend(named);
+    }
+
     /// `(\partial_k)^i` is a component of the vector named `\partial_k`: a lone letter inside is part of the name.
     fn doubt_name(&mut self, from: usize) {
         if let [place] = self.sketch.places.get(from..).unwrap_or_default()
@@ -349,7 +372,9 @@ impl Builder {
     fn bind(&mut self, walk: &mut Walk<'_>, factor: &Factor) {
         let mut bound: Vec<(CompactString, Option<u32>)> = Vec::new();
         for script in factor.scripts.iter().filter(|script| script.level == Level::Down) {
-            let mut doubtful = None;
+            // A limit may bind the letter of its variable or leave it free.
+            let limit = factor.atom == Atom::Big(Big::Limit);
+            let mut doubtful = limit.then(|| self.switch(Switch { on: true, price: 0 }));
             for item in &script.items {
                 match &item.kind {
                     ItemKind::Relation => doubtful = Some(self.switch(Switch { on: true, price: 0 })),
