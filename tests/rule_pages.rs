@@ -45,7 +45,8 @@ fn found(rule: &Rule, title: &str) -> Vec<Finding> {
     let parts = scan(&text, Host::Latex, &Macros::default()).references;
     let missing =
         parts.into_iter().filter(|part| part.kind == ReferenceKind::Part && !PARTS.contains(&part.path.as_str()));
-    let trouble = |span, path| Trouble { document: 0, span, message: format!("the part {path} was not found") };
+    let trouble =
+        |span, path| Trouble { document: 0, span, message: format!("the part {path} was not found"), preamble: false };
     let paper = Paper {
         troubles: missing.map(|part| trouble(part.span, part.path)).collect(),
         documents: vec![Source { path: "page.tex".to_owned(), text: Arc::from(text), host: Host::Latex }],

@@ -121,7 +121,7 @@ fn statement<'a>() -> impl Parser<'a, Input<'a>, Statement, Extra> {
 }
 
 /// One lexeme of a kind.
-fn kind<'a>(kind: Kind) -> impl Parser<'a, Input<'a>, &'a Lexeme, Extra> + Clone + Copy {
+fn kind<'a>(kind: Kind) -> impl Parser<'a, Input<'a>, &'a Lexeme, Extra> + Copy {
     any_ref().filter(move |lexeme: &&Lexeme| lexeme.kind == kind)
 }
 

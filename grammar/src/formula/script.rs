@@ -33,7 +33,7 @@ pub(super) fn scripts<'a>(
     let script = script(factor, atom).boxed();
     let next_is_script = kind(Kind::Up).or(kind(Kind::Down)).rewind();
     let stagger = kind(Kind::Stagger).ignored();
-    let empty_group = kind(Kind::BraceOpen).then(stagger.clone().repeated()).then(kind(Kind::BraceClose)).ignored();
+    let empty_group = kind(Kind::BraceOpen).then(stagger.repeated()).then(kind(Kind::BraceClose)).ignored();
     let gap = empty_group.or(stagger).then(next_is_script).to(Postfix::Gap);
     let prime = kind(Kind::Prime).map(|lexeme: &Lexeme| Postfix::Prime(lexeme.text.clone(), lexeme.span));
     let indices = kind(Kind::Indices)

@@ -15,7 +15,7 @@ pub(super) fn sum_of<'a>(
     let term = term_of(factor);
     let sign = kind(Kind::Plus).map(|lexeme: &Lexeme| lexeme.span);
     // A sign after a sign (`a + - b`) is taken with it.
-    let signs = sign.clone().foldl(sign.repeated(), Span::join);
+    let signs = sign.foldl(sign.repeated(), Span::join);
     let signed = signs.then(term.clone()).map(|(sign, term)| Term { sign: Some(sign), ..term });
     term.map(|term| if term.factors.is_empty() { Vec::new() } else { vec![term] })
         .foldl(signed.repeated(), |mut terms, term| {
@@ -39,7 +39,7 @@ fn term_of<'a>(
     };
     let joints = empty()
         .to(Joint::Beside)
-        .foldl(joint.clone().repeated(), |before, now| if now == Joint::Beside { before } else { now });
+        .foldl(joint.repeated(), |before, now| if now == Joint::Beside { before } else { now });
     joints
         .then(factor)
         .map(|(joint, factor)| Factor { joint, ..factor })

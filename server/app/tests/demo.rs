@@ -20,14 +20,19 @@ fn root() -> PathBuf {
     Path::new(env!("CARGO_MANIFEST_DIR")).join("../..")
 }
 
-/// The report of the demonstration documents, one finding a line.
-fn report() -> String {
+/// What `check` with further options prints of the demonstration documents; there are findings, and no trouble.
+fn check(options: &[&str]) -> String {
     let mut command = Command::new(env!("CARGO_BIN_EXE_indexwise"));
-    command.current_dir(root()).args(["check", "--report", "lines", "--no-progress", DOCUMENTS]);
+    command.current_dir(root()).args(["check", "--no-progress", DOCUMENTS]).args(options);
     let output = command.stdin(Stdio::null()).output().unwrap();
     assert_eq!(output.status.code(), Some(1), "{}", String::from_utf8_lossy(&output.stderr));
     assert!(output.stderr.is_empty(), "{}", String::from_utf8_lossy(&output.stderr));
     String::from_utf8(output.stdout).unwrap()
+}
+
+/// The report of the documents, one finding a line.
+fn report() -> String {
+    check(&["--report", "lines"])
 }
 
 #[test]
@@ -96,4 +101,19 @@ fn every_rule_has_a_planted_slip() {
         let shown = report.lines().any(|line| line.ends_with(&format!("[{}]", rule.name)));
         assert!(shown, "{} is shown by no document", rule.name);
     }
+}
+
+/// What the README shows of the program's output is what the program prints.
+#[test]
+fn the_tour_of_the_readme_is_real() {
+    let readme = fs::read_to_string(root().join("README.md")).unwrap();
+    let printed = [check(&[]), check(&["--fix", "--dry-run"]), report()];
+    let blocks =
+        readme.split("\n```\n").filter(|block| block.starts_with(DOCUMENTS) || block.starts_with("would mend "));
+    let mut shown = 0;
+    for block in blocks {
+        assert!(printed.iter().any(|text| text.contains(block)), "the program does not print\n{block}");
+        shown += 1;
+    }
+    assert!(shown >= 4, "only {shown} blocks of output in the README");
 }

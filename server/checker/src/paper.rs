@@ -37,6 +37,8 @@ pub struct Trouble {
     pub span: Span,
     /// One sentence: which path and why.
     pub message: String,
+    /// Whether only macros are missing by it: the main file that a part names.
+    pub preamble: bool,
 }
 
 /// Documents that are read together: they share macros, conventions and counts.

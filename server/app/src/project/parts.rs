@@ -236,7 +236,12 @@ impl<'a> Reader<'a> {
     /// The same trouble is told once for each document.
     fn tell(&mut self, document: usize, reference: &Reference, message: String) {
         if self.told.insert((document, message.clone())) {
-            self.loaded.paper.troubles.push(Trouble { document, span: reference.span, message });
+            self.loaded.paper.troubles.push(Trouble {
+                document,
+                span: reference.span,
+                message,
+                preamble: reference.kind == ReferenceKind::Root,
+            });
         }
     }
 

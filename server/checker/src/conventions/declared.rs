@@ -138,7 +138,7 @@ mod tests {
 
     #[test]
     fn what_fits_no_form_is_not_read() {
-        for text in ["", "skip that", "allow dummy-levels", "B is a lable", "is a label", "allow here in this file"] {
+        for text in ["", "skip that", "allow dummy-levels", "B is a lable", "is a label", "allow one two here"] {
             assert_eq!(read_sentence(text), None, "{text}");
         }
         assert_eq!(nearest_form("B is a lable"), "X is a label");

@@ -1,7 +1,6 @@
 //! Tries changes of a statement and keeps those that mend it.
 
 use compact_str::CompactString;
-use indexwise_grammar::span::Span;
 
 use crate::balance::{Choice, Odd};
 use crate::changes::Change;
@@ -89,11 +88,6 @@ pub(super) fn index_places(judged: &Judged<'_>, letter: &str) -> Vec<u32> {
 /// Letters out of balance in one way.
 pub(super) fn odd_by(judged: &Judged<'_>, kind: Odd) -> Vec<CompactString> {
     judged.reading.odd.iter().filter(|(_, odd)| *odd == kind).map(|(letter, _)| letter.clone()).collect()
-}
-
-/// The smallest span over places.
-pub(super) fn over(judged: &Judged<'_>, places: &[u32]) -> Span {
-    places.iter().map(|place| judged.span(*place)).reduce(Span::join).unwrap_or_default()
 }
 
 /// Whether a letter has a fault of its level.

@@ -16,7 +16,8 @@ pub(super) const RULE: Rule = Rule {
 
 /// The finding for a part that could not be had. A preamble that is missing is a hint: nothing of the text is.
 pub(crate) fn missing_part(trouble: &Trouble, text: &str) -> Finding {
-    let preamble = text.find("\\begin{document}").is_some_and(|begin| (trouble.span.start as usize) < begin);
+    let preamble =
+        trouble.preamble || text.find("\\begin{document}").is_some_and(|begin| (trouble.span.start as usize) < begin);
     Finding {
         rule: RULE.name,
         severity: if preamble { Severity::Hint } else { RULE.severity },

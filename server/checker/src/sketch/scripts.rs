@@ -30,8 +30,6 @@ pub(super) struct Scripts {
     pub nodes: Vec<Node>,
     /// A square or another power stands on the factor.
     pub power: Option<Power>,
-    /// The factor carries anything at all.
-    pub scripted: bool,
 }
 
 /// A power on a factor.
@@ -63,7 +61,7 @@ const INDICES_AS_WORD: i32 = 30;
 
 /// Reads the scripts of a factor.
 pub(super) fn read_scripts(builder: &mut Builder, carrier: Carrier<'_>, scripts: &[Script], flip: bool) -> Scripts {
-    let mut out = Scripts { scripted: !scripts.is_empty(), ..Scripts::default() };
+    let mut out = Scripts::default();
     let mut candidates: Vec<Candidate<'_>> = Vec::new();
     let mut numbers = 0;
     for script in scripts.iter().filter(|script| !script.before) {
@@ -435,9 +433,7 @@ fn bias(carrier: Carrier<'_>, candidate: &Candidate<'_>, shape: Shape, component
         }
         (Shape::Lone, LetterClass::Other) => -20,
     };
-    let by_number = if candidate.after_number {
-        -40
-    } else if candidate.mixed {
+    let by_number = if candidate.after_number || candidate.mixed {
         -40
     } else if candidate.letter.contains("tilde") {
         -50
