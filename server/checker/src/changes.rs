@@ -49,6 +49,7 @@ impl Change {
                 }
             }
         }
+        sketch.settle();
         (sketch, choice)
     }
 

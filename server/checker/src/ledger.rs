@@ -6,11 +6,11 @@ use compact_str::CompactString;
 use indexwise_grammar::span::Span;
 use indexwise_grammar::tree::Formula;
 
-use crate::balance::{Choice, Event, judge, term_state};
+use crate::balance::{self, Choice, Event, term_state};
 use crate::conventions::built_in::bare_letter;
 use crate::conventions::inferred::Prices;
 use crate::finding::{Ledger, LedgerIndex, LedgerRow};
-use crate::reading::{Reading, letters};
+use crate::reading::Reading;
 use crate::sketch::{Sketch, Unit};
 
 /// A statement with its reading and everything a rule may ask.
@@ -59,9 +59,8 @@ impl Judged<'_> {
 
     /// What the count of a letter met.
     pub fn events(&self, letter: &str) -> Vec<Event> {
-        let mut events = Vec::new();
-        judge(&self.sketch, &self.reading.choice, letter, &mut events);
-        events
+        let number = self.sketch.number_of(letter);
+        number.map(|number| balance::events(&self.sketch, &self.reading.choice, number).1).unwrap_or_default()
     }
 
     /// The terms of all sides.
@@ -128,18 +127,17 @@ fn same_letters(one: &[CompactString], two: &[CompactString]) -> bool {
 
 /// The terms of all sides of a sketch under a choice.
 pub fn rows(sketch: &Sketch, choice: &Choice) -> Vec<TermRow> {
-    let letters = letters(sketch);
     let mut out = Vec::new();
     for (side, held) in sketch.sides.iter().enumerate() {
         for (term, node) in held.terms.iter().enumerate() {
             let any = node.any || node.shorthand;
             let mut row = TermRow { side, term, span: node.span, any, free: Vec::new(), summed: Vec::new() };
-            for letter in &letters {
-                let state = term_state(sketch, choice, node, letter);
+            for (number, letter) in sketch.letter_numbers().zip(&sketch.letters) {
+                let state = term_state(sketch, choice, node, number);
                 if let Some(place) = state.free {
-                    row.free.push(((*letter).into(), place));
+                    row.free.push((letter.clone(), place));
                 } else if state.summed {
-                    row.summed.push((*letter).into());
+                    row.summed.push(letter.clone());
                 }
             }
             out.push(row);

@@ -36,17 +36,6 @@ pub struct Reading {
     pub odd: Vec<(compact_str::CompactString, Odd)>,
 }
 
-/// Letters of a sketch in the order of their first place.
-pub fn letters(sketch: &Sketch) -> Vec<&str> {
-    let mut letters: Vec<&str> = Vec::new();
-    for place in &sketch.places {
-        if !letters.contains(&place.letter.as_str()) {
-            letters.push(&place.letter);
-        }
-    }
-    letters
-}
-
 /// Reads a statement.
 pub fn read(sketch: &Sketch, prices: &Prices<'_>) -> Reading {
     let mut scores: Vec<i32> = sketch.units.iter().map(|unit| prices.score(unit)).collect();
@@ -55,8 +44,7 @@ pub fn read(sketch: &Sketch, prices: &Prices<'_>) -> Reading {
         index: scores.iter().map(|score| *score > 0).collect(),
         on: sketch.switches.iter().map(|switch| switch.on).collect(),
     };
-    let letters = letters(sketch);
-    let mut best = try_letters(sketch, &scores, &letters, likely.clone(), 0);
+    let mut best = try_letters(sketch, &scores, likely.clone(), 0);
     if best.odd.is_empty() && best.cost == 0 || sketch.unjudged.is_some() {
         return best;
     }
@@ -72,7 +60,7 @@ pub fn read(sketch: &Sketch, prices: &Prices<'_>) -> Reading {
         if cost > MARGIN || (best.odd.is_empty() && cost >= best.cost) {
             continue;
         }
-        let reading = try_letters(sketch, &scores, &letters, choice, cost);
+        let reading = try_letters(sketch, &scores, choice, cost);
         if rank(&reading) < rank(&best) {
             best = reading;
         }
@@ -112,18 +100,18 @@ fn switch_flips(sketch: &Sketch) -> Vec<Vec<usize>> {
 }
 
 /// The cheapest balance of each letter under fixed switches.
-fn try_letters(sketch: &Sketch, scores: &[i32], letters: &[&str], mut choice: Choice, cost: i32) -> Reading {
+fn try_letters(sketch: &Sketch, scores: &[i32], mut choice: Choice, cost: i32) -> Reading {
     let likely = choice.clone();
     let mut wanted: Vec<(&str, Odd, i32, Option<Vec<usize>>)> = Vec::new();
     let mut total = cost;
     // That a kernel's scripts are labels is one assumption, however many letters stand on it.
     let mut assumed: Vec<(&str, i32)> = Vec::new();
-    for letter in letters {
-        let odd = judge(sketch, &choice, letter, &mut Vec::new());
+    for (number, letter) in sketch.letter_numbers().zip(&sketch.letters) {
+        let odd = judge(sketch, &choice, number);
         if odd == Odd::Balanced {
             continue;
         }
-        let flips = cheapest_flips(sketch, scores, letter, &likely);
+        let flips = cheapest_flips(sketch, scores, number, &likely);
         let price = flips.as_ref().map_or(MARGIN + 1, |(price, _)| *price);
         match &flips {
             None => total += price,
@@ -179,12 +167,13 @@ fn assume<'s>(sketch: &'s Sketch, scores: &[i32], unit: usize, assumed: &mut Vec
 }
 
 /// The cheapest set of this letter's units to read the other way so that the letter balances, within the margin.
-fn cheapest_flips(sketch: &Sketch, scores: &[i32], letter: &str, likely: &Choice) -> Option<(i32, Vec<usize>)> {
+fn cheapest_flips(sketch: &Sketch, scores: &[i32], letter: u16, likely: &Choice) -> Option<(i32, Vec<usize>)> {
+    let name = sketch.letters.get(letter as usize)?;
     let mut units: Vec<(i32, usize)> = sketch
         .units
         .iter()
         .enumerate()
-        .filter(|(_, unit)| unit.letter == letter)
+        .filter(|(_, unit)| unit.letter == *name)
         .map(|(n, _)| (scores.get(n).map_or(0, |score| score.abs()), n))
         .filter(|(price, _)| *price <= MARGIN)
         .collect();
@@ -203,7 +192,7 @@ fn cheapest_flips(sketch: &Sketch, scores: &[i32], letter: &str, likely: &Choice
                 *index = !*index;
             }
         }
-        if judge(sketch, &choice, letter, &mut Vec::new()) == Odd::Balanced {
+        if judge(sketch, &choice, letter) == Odd::Balanced {
             best = Some((price, chosen().map(|(_, unit)| unit).collect()));
         }
     }

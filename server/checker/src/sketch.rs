@@ -23,6 +23,8 @@ pub struct Sketch {
     pub relations: Vec<RelationKind>,
     /// Letters in scripts.
     pub places: Vec<Place>,
+    /// The different letters among them, in the order of their first place.
+    pub letters: Vec<CompactString>,
     /// What they may be read as, together.
     pub units: Vec<Unit>,
     /// Scopes that may count or not.
@@ -61,6 +63,8 @@ pub struct TermNode {
     pub span: Span,
     /// Its factors.
     pub nodes: Vec<Node>,
+    /// The letters that stand in it, a bit for each (see `Sketch::bit`).
+    pub letters: u64,
     /// Whether it matches anything.
     pub any: bool,
     /// Matches anything while this switch is on: a list of components, a map's value.
@@ -101,6 +105,8 @@ pub enum Node {
 pub struct Place {
     /// The letter in LaTeX spelling with its primes.
     pub letter: CompactString,
+    /// Its number among the letters of the sketch.
+    pub number: u16,
     /// The level that counts (below a fraction line it is flipped).
     pub level: Level,
     /// The level as written.
@@ -188,8 +194,60 @@ impl Sketch {
         build::sketch(statement)
     }
 
+    /// The bit of a letter in `TermNode::letters`; letters from the 64th on share one.
+    pub const fn bit(letter: u16) -> u64 {
+        1 << if letter < 63 { letter } else { 63 }
+    }
+
+    /// The numbers of all letters.
+    pub fn letter_numbers(&self) -> impl Iterator<Item = u16> + use<> {
+        0..u16::try_from(self.letters.len()).unwrap_or(u16::MAX)
+    }
+
+    /// The number of a letter.
+    pub fn number_of(&self, letter: &str) -> Option<u16> {
+        self.letters.iter().position(|other| other == letter).and_then(|at| u16::try_from(at).ok())
+    }
+
+    /// Numbers the letters and notes where they stand; after every change of the places.
+    pub fn settle(&mut self) {
+        self.letters.clear();
+        for place in &mut self.places {
+            let known = self.letters.iter().position(|letter| *letter == place.letter);
+            let at = known.unwrap_or_else(|| {
+                self.letters.push(place.letter.clone());
+                self.letters.len() - 1
+            });
+            place.number = u16::try_from(at).unwrap_or(u16::MAX);
+        }
+        for term in self.sides.iter_mut().flat_map(|side| &mut side.terms) {
+            settle_term(term, &self.places);
+        }
+    }
+
     /// The place of a number.
     pub fn place(&self, number: u32) -> Option<&Place> {
         self.places.get(number as usize)
+    }
+}
+
+fn settle_term(term: &mut TermNode, places: &[Place]) {
+    term.letters = term.nodes.iter_mut().fold(0, |letters, node| letters | settle_node(node, places));
+}
+
+fn settle_node(node: &mut Node, places: &[Place]) -> u64 {
+    match node {
+        Node::Place(number) => places.get(*number as usize).map_or(0, |place| Sketch::bit(place.number)),
+        Node::Product(nodes) => nodes.iter_mut().fold(0, |letters, node| letters | settle_node(node, places)),
+        Node::Sum(terms) => terms.iter_mut().fold(0, |letters, term| {
+            settle_term(term, places);
+            letters | term.letters
+        }),
+        Node::Square(inner, _)
+        | Node::Power(inner)
+        | Node::Scope(inner)
+        | Node::Argument(_, inner)
+        | Node::Switch(_, inner) => settle_node(inner, places),
+        Node::Bind(_) => 0,
     }
 }

@@ -8,8 +8,8 @@ use compact_str::CompactString;
 use indexwise_grammar::tree::Level;
 use rustc_hash::FxHashMap;
 
-use crate::balance::{Event, judge};
-use crate::reading::{Reading, letters};
+use crate::balance::{self, Event};
+use crate::reading::Reading;
 use crate::sketch::{Shape, Sketch, Unit};
 
 use super::built_in::{CLASSES, LetterClass, class_of, is_symbol_kernel, is_usual_coordinate};
@@ -89,9 +89,8 @@ impl Evidence {
             let counts = self.staggered.entry(stacked.kernel.clone()).or_default();
             bump(counts, usize::from(!stacked.staggered));
         }
-        for letter in letters(sketch) {
-            let mut events = Vec::new();
-            judge(sketch, &reading.choice, letter, &mut events);
+        for (number, letter) in sketch.letter_numbers().zip(&sketch.letters) {
+            let (_, events) = balance::events(sketch, &reading.choice, number);
             self.vote_letter(sketch, letter, &events);
         }
     }
@@ -119,9 +118,9 @@ impl Evidence {
 
     /// A letter that stands at least twice and balances speaks for the way the unknown commands were taken.
     fn vote_unknown(&mut self, sketch: &Sketch, reading: &Reading) {
-        let twice = letters(sketch)
-            .iter()
-            .any(|letter| sketch.places.iter().filter(|place| place.letter == *letter).count() > 1);
+        let twice = sketch
+            .letter_numbers()
+            .any(|letter| sketch.places.iter().filter(|place| place.number == letter).count() > 1);
         for name in sketch.unknown.iter().filter(|_| twice || !reading.odd.is_empty()) {
             bump(self.unknown.entry(name.clone()).or_default(), usize::from(!reading.odd.is_empty()));
         }

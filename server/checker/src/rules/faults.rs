@@ -3,10 +3,9 @@
 
 use compact_str::CompactString;
 
-use crate::balance::{Choice, Event, Odd, judge, same_level};
+use crate::balance::{self, Choice, Event, Odd, judge, same_level};
 use crate::conventions::built_in::is_symbol_kernel;
 use crate::conventions::inferred::{LevelHabit, Prices};
-use crate::reading::letters;
 use crate::sketch::{Shape, Sketch, Unit};
 
 /// One thing out of order.
@@ -22,9 +21,10 @@ pub(super) enum Fault {
 
 /// Letters out of balance.
 pub(crate) fn odd_letters(sketch: &Sketch, choice: &Choice) -> Vec<(CompactString, Odd)> {
-    letters(sketch)
-        .into_iter()
-        .map(|letter| (letter.into(), judge(sketch, choice, letter, &mut Vec::new())))
+    sketch
+        .letter_numbers()
+        .zip(&sketch.letters)
+        .map(|(number, letter)| (letter.clone(), judge(sketch, choice, number)))
         .filter(|(_, odd)| *odd != Odd::Balanced)
         .collect()
 }
@@ -32,11 +32,10 @@ pub(crate) fn odd_letters(sketch: &Sketch, choice: &Choice) -> Vec<(CompactStrin
 /// Everything out of order.
 pub(super) fn faults(sketch: &Sketch, choice: &Choice, prices: &Prices<'_>) -> Vec<Fault> {
     let mut out = Vec::new();
-    for letter in letters(sketch) {
-        let mut events = Vec::new();
-        let odd = judge(sketch, choice, letter, &mut events);
+    for (number, letter) in sketch.letter_numbers().zip(&sketch.letters) {
+        let (odd, events) = balance::events(sketch, choice, number);
         if odd != Odd::Balanced {
-            out.push(Fault::Odd(letter.into(), odd));
+            out.push(Fault::Odd(letter.clone(), odd));
         }
         out.extend(pair_faults(sketch, letter, &events, prices));
         out.extend(free_fault(sketch, letter, &events, prices));

@@ -50,13 +50,13 @@ fn check(judged: &Judged<'_>) -> Option<Report> {
 fn candidates(judged: &Judged<'_>, letter: &CompactString, places: &[u32]) -> Vec<(Change, i32)> {
     let mut out = Vec::new();
     let missing: Vec<CompactString> = odd_by(judged, Odd::Mismatch);
-    let known = crate::reading::letters(&judged.sketch);
+    let known = &judged.sketch.letters;
     for place in places {
         for to in &missing {
             out.push((Change::Rename(vec![*place], to.clone()), 3));
         }
-        for to in known.iter().filter(|to| **to != letter.as_str() && class_of(to) == class_of(letter)) {
-            out.push((Change::Rename(vec![*place], (*to).into()), 1));
+        for to in known.iter().filter(|to| *to != letter && class_of(to) == class_of(letter)) {
+            out.push((Change::Rename(vec![*place], to.clone()), 1));
         }
     }
     if let (4, Some(fresh)) = (places.len(), fresh_letters(&judged.sketch, letter).into_iter().next()) {

@@ -47,6 +47,7 @@ pub(super) fn sketch(statement: &Statement) -> Sketch {
     if sketch.relations.is_empty() && sketch.sides.iter().all(|side| side.any) {
         sketch.unjudged = sketch.unjudged.or(Some("nothing to compare"));
     }
+    sketch.settle();
     sketch
 }
 
@@ -98,7 +99,16 @@ impl Builder {
         let bare = self.sketch.places.len() == places;
         let (any, shorthand) = (walk.any, bare && walk.vector && !is_scalar_product(term));
         let number = !term.factors.is_empty() && term.factors.iter().all(is_numeric);
-        TermNode { span: term.span, nodes: walk.nodes, any, loose: walk.loose, number, shorthand, opaque: walk.opaque }
+        TermNode {
+            span: term.span,
+            nodes: walk.nodes,
+            letters: 0,
+            any,
+            loose: walk.loose,
+            number,
+            shorthand,
+            opaque: walk.opaque,
+        }
     }
 
     fn factor(&mut self, walk: &mut Walk<'_>, factor: &Factor) {

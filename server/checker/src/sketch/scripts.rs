@@ -361,6 +361,7 @@ fn place(
     let company = candidate.script.items.iter().filter(|item| matches!(item.kind, ItemKind::Letter(_))).count();
     builder.sketch.places.push(Place {
         letter: candidate.letter.clone(),
+        number: 0,
         level: if flip { written.flipped() } else { written },
         written,
         span: candidate.span,
