@@ -50,6 +50,7 @@ pub(crate) fn prepare_note(body: &str, base: usize) -> Draft {
     match prepare_tokens(&note.tokens) {
         Draft::Prepared(mut prepared) => {
             prepared.labels.extend(note.label);
+            prepared.no_sum |= note.no_sum;
             Draft::Prepared(prepared)
         }
         unread => unread,

@@ -108,15 +108,19 @@ fn set(lexemes: &mut [Lexeme], at: usize, kind: Kind) {
     }
 }
 
-/// Bars of one stretch: an even number pairs up in order, an odd one stays lone.
+/// Bars of one stretch pair up in order. One that a script follows opens nothing: it evaluates, or differentiates
+/// (`m^{\alpha\beta}|_\beta`). The last of an odd number stays lone.
 fn pair_bars(bars: &[usize], lexemes: &mut [Lexeme]) {
-    if !bars.len().is_multiple_of(2) {
-        return;
-    }
-    for pair in bars.chunks_exact(2) {
-        if let [open, close] = pair {
-            set(lexemes, *open, Kind::Open);
-            set(lexemes, *close, Kind::Close);
+    let mut open: Option<usize> = None;
+    for at in bars {
+        let script = lexemes.get(at + 1).is_some_and(|next| matches!(next.kind, Kind::Down | Kind::Up));
+        match open.take() {
+            None if !script => open = Some(*at),
+            None => {}
+            Some(first) => {
+                set(lexemes, first, Kind::Open);
+                set(lexemes, *at, Kind::Close);
+            }
         }
     }
 }
@@ -194,9 +198,10 @@ mod tests {
     }
 
     #[test]
-    fn bars_match_in_even_numbers() {
+    fn bars_match_in_order() {
         assert_eq!(shape("|a|=|b|"), "<.>.<.>");
         assert_eq!(shape("a|b"), ".|.");
         assert_eq!(shape("(a|b)|c|"), "<.|.><.>");
+        assert_eq!(shape("a|_b+c|_b"), ".|_..|_.".replace('_', "."));
     }
 }

@@ -15,6 +15,8 @@ pub(crate) struct NoteFormula<'a> {
     pub tokens: Vec<Token<'a>>,
     /// The leading `(name)`.
     pub label: Option<(CompactString, Span)>,
+    /// Whether a line says `no sum`.
+    pub no_sum: bool,
 }
 
 /// Words that are commands in LaTeX.
@@ -40,15 +42,17 @@ const COMMANDS: &[(&str, &str)] = &[
 pub(crate) fn note_tokens(text: &str, base: usize) -> NoteFormula<'_> {
     let (label, text, base) = take_label(text, base);
     let mut out = Vec::new();
+    let mut no_sum = false;
     for line in lines(text) {
         let (start, line) = line;
-        let line = without_reason(line);
+        let (line, words) = (without_reason(line), line);
+        no_sum |= words.contains("no sum");
         if !out.is_empty() {
             out.push(made(TokenKind::RowBreak, "\\\\", Span::new(base + start, base + start)));
         }
         Writer { tokens: lex(line, base + start).collect(), at: 0, out: &mut out }.line();
     }
-    NoteFormula { tokens: out, label }
+    NoteFormula { tokens: out, label, no_sum }
 }
 
 fn lines(text: &str) -> impl Iterator<Item = (usize, &str)> {
@@ -77,9 +81,12 @@ fn take_label(text: &str, base: usize) -> (Option<(CompactString, Span)>, &str, 
     }
 }
 
-/// A trailing `[reason]` stands apart by a blank and holds a word; `T_[ij]` does not.
+/// A trailing `[reason]` or `(no sum over i)` stands apart by a blank and holds a word; `T_[ij]` does not.
 fn without_reason(line: &str) -> &str {
     let trimmed = line.trim_end();
+    if let Some(at) = trimmed.rfind("(no sum") {
+        return trimmed.get(..at).unwrap_or_default();
+    }
     let Some(open) = trimmed.rfind('[').filter(|_| trimmed.ends_with(']')) else { return line };
     let before = trimmed.get(..open).unwrap_or_default();
     if before.ends_with([' ', '\t']) { before } else { line }

@@ -8,7 +8,7 @@ use indexwise_grammar::span::Span;
 use indexwise_grammar::tree::Level;
 
 use crate::balance::Choice;
-use crate::conventions::built_in::{LetterClass, class_of};
+use crate::conventions::built_in::{LetterClass, bare_letter, class_of};
 use crate::finding::Edit;
 use crate::ledger::{Judged, shown};
 use crate::sketch::{Node, Place, Sketch, TermNode};
@@ -77,7 +77,12 @@ impl Change {
             Self::Drop(place) => {
                 format!("Take {} out of {}", letter(place), carrier(judged, *place, judged.span(*place)))
             }
-            Self::FlipScript(script) => format!("Move {} to the other level", script.of(judged.text)),
+            Self::FlipScript(script) => {
+                let first = judged.sketch.places.iter().position(|place| place.script == *script);
+                let unit = first.and_then(|at| judged.unit(u32::try_from(at).unwrap_or(u32::MAX)));
+                let kernel = unit.map(|unit| unit.kernel.as_str()).filter(|kernel| !kernel.is_empty());
+                format!("Move {} of {} to the other level", script.of(judged.text), kernel.unwrap_or("the bracket"))
+            }
             Self::FlipLetter(place) => {
                 let to = judged.sketch.place(*place).map_or("up", |place| place.written.flipped().word());
                 format!("Move {} {to} in {}", letter(place), carrier(judged, *place, judged.span(*place)))
@@ -243,8 +248,8 @@ fn replace_in(node: &mut Node, number: u32, by: &Node) {
     }
 }
 
-/// Letters of the same kind that the statement does not use, usual ones first.
-pub fn fresh_letters(sketch: &Sketch, like: &str) -> Vec<CompactString> {
+/// Letters of the same kind that the statement does not use: those that the file uses as indices, then usual ones.
+pub fn fresh_letters(judged: &Judged<'_>, like: &str) -> Vec<CompactString> {
     const GREEK: &[&str] =
         &["\\mu", "\\nu", "\\rho", "\\sigma", "\\lambda", "\\kappa", "\\alpha", "\\beta", "\\gamma", "\\tau"];
     const EARLY: &[&str] = &["a", "b", "c", "d", "e", "f"];
@@ -256,9 +261,22 @@ pub fn fresh_letters(sketch: &Sketch, like: &str) -> Vec<CompactString> {
         LetterClass::Capital => CAPITAL,
         LetterClass::LatinLate | LetterClass::Other => LATE,
     };
+    let sketch = &judged.sketch;
     let used = |letter: &str| {
         sketch.places.iter().any(|place| place.letter == letter)
             || sketch.quantities.iter().any(|(name, _)| name == letter)
     };
-    family.iter().filter(|letter| !used(letter)).map(|letter| CompactString::from(*letter)).collect()
+    let plain = |letter: &CompactString| letter == bare_letter(letter);
+    let mut letters: Vec<CompactString> = judged
+        .prices
+        .index_letters(class_of(like))
+        .into_iter()
+        .filter(|letter| plain(letter) && !used(letter))
+        .collect();
+    for letter in family.iter().map(|letter| CompactString::from(*letter)) {
+        if !used(&letter) && !letters.contains(&letter) {
+            letters.push(letter);
+        }
+    }
+    letters
 }

@@ -2,15 +2,18 @@
 //!
 //! Rules, messages and the ledger view all read this; nothing recomputes it.
 
+use std::borrow::Cow;
+
 use compact_str::CompactString;
 use indexwise_grammar::span::Span;
 use indexwise_grammar::tree::Formula;
 
 use crate::balance::{self, Choice, Event, term_state};
 use crate::conventions::built_in::bare_letter;
-use crate::conventions::inferred::Prices;
+use crate::conventions::inferred::{LevelHabit, Prices};
 use crate::finding::{Ledger, LedgerIndex, LedgerRow};
 use crate::reading::Reading;
+use crate::rules::faults::Fault;
 use crate::sketch::{Sketch, Unit};
 
 /// A statement with its reading and everything a rule may ask.
@@ -21,11 +24,13 @@ pub struct Judged<'a> {
     /// The formula that the statement stands in.
     pub formula: &'a Formula,
     /// The statement.
-    pub sketch: Sketch,
+    pub sketch: Cow<'a, Sketch>,
     /// How it is read.
     pub reading: Reading,
     /// The evidence.
     pub prices: Prices<'a>,
+    /// Everything out of order in the statement.
+    pub(crate) faults: Vec<Fault>,
 }
 
 /// A term with its indices.
@@ -75,7 +80,9 @@ impl Judged<'_> {
 
     /// The level of a place in words, empty where levels do not matter.
     pub fn level(&self, place: u32) -> &'static str {
-        self.sketch.place(place).map_or("", |place| place.level.word())
+        let Some(place) = self.sketch.place(place) else { return "" };
+        let cartesian = self.prices.level_habit(&place.letter) == LevelHabit::Cartesian;
+        if cartesian { "" } else { place.level.word() }
     }
 
     /// The ledger as people see it; `odd` are the letters that the finding is about.

@@ -1,5 +1,6 @@
 //! A paper is a root document with its parts and styles; `check` is the one pipeline.
 
+use std::borrow::Cow;
 use std::sync::Arc;
 use std::sync::atomic::{AtomicBool, Ordering};
 
@@ -121,15 +122,18 @@ pub fn check(paper: &Paper, settings: &Settings, cancel: &Cancel) -> Analysis {
         }
         let prices =
             Prices { file: own, paper: &all, declared: &document.read.declared, macros: &document.read.macros };
-        let mut analysis = judge_document(document, prices, settings);
         let troubles = paper.troubles.iter().filter(|trouble| trouble.document == number);
-        analysis.findings.extend(troubles.map(|trouble| rules::missing_part(trouble, document.read.text)));
+        let missing = troubles.map(|trouble| rules::missing_part(trouble, document.read.text)).collect();
+        let mut analysis = judge_document(document, prices, settings, missing);
         analysis.findings.retain(|finding| wanted(finding.rule, settings));
         analysis.findings.sort_by(|a, b| (a.span, a.rule, &a.message).cmp(&(b.span, b.rule, &b.message)));
         analysis
     });
     Analysis { documents: documents.collect() }
 }
+
+/// Rules that speak of a document rather than of a formula: `allow` silences them in the whole file.
+const DOCUMENT_RULES: &[&str] = &["missing-part", "unread", "convention-unreadable", "idle-allow"];
 
 /// How every statement of the first document is read, in words: its units with their scores and the letters out of
 /// balance. For people who tune the inference.
@@ -183,7 +187,9 @@ impl<'p> Sketched<'p> {
         let statements = read.document.formulas.iter().enumerate().flat_map(|(number, formula)| {
             formula.statements.iter().map(move |statement| (number, Sketch::of(statement)))
         });
-        Self { read, statements: statements.filter(|(_, sketch)| !sketch.places.is_empty()).collect() }
+        let skipped = skipped(&read.declared, &read.document.formulas);
+        let kept = statements.filter(|(number, sketch)| !sketch.places.is_empty() && !skipped.contains(number));
+        Self { read, statements: kept.collect() }
     }
 }
 
@@ -238,7 +244,12 @@ fn total(evidence: &[Evidence]) -> Evidence {
     all
 }
 
-fn judge_document(document: &Sketched<'_>, prices: Prices<'_>, settings: &Settings) -> DocumentAnalysis {
+fn judge_document(
+    document: &Sketched<'_>,
+    prices: Prices<'_>,
+    settings: &Settings,
+    missing: Vec<Finding>,
+) -> DocumentAnalysis {
     let formulas = &document.read.document.formulas;
     let mut indexed = vec![false; formulas.len()];
     let mut findings: Vec<(usize, Finding)> = Vec::new();
@@ -251,7 +262,10 @@ fn judge_document(document: &Sketched<'_>, prices: Prices<'_>, settings: &Settin
         }
         reading.odd.retain(|(letter, _)| prices.is_index_notation(letter));
         if sketch.unjudged.is_none() && !formula.no_sum && prices.trusts(&sketch.unknown) {
-            let judged = Judged { text: document.read.text, formula, sketch: sketch.clone(), reading, prices };
+            let mut faults = rules::faults::faults(sketch, &reading.choice, &prices);
+            faults.retain(|fault| fault.letter().is_none_or(|letter| prices.is_index_notation(letter)));
+            let (text, sketch) = (document.read.text, Cow::Borrowed(sketch));
+            let judged = Judged { text, formula, sketch, reading, prices, faults };
             findings.extend(rules::check_statement(&judged).into_iter().map(|finding| (*number, finding)));
         }
     }
@@ -264,16 +278,34 @@ fn judge_document(document: &Sketched<'_>, prices: Prices<'_>, settings: &Settin
         unread: formulas.iter().zip(&indexed).filter(|(formula, flag)| **flag && !formula.unread.is_empty()).count(),
         unknown_macros: formulas.iter().zip(&indexed).filter(|(f, flag)| **flag && !f.unknown.is_empty()).count(),
     };
-    DocumentAnalysis { statistics, findings: directed(&document.read.declared, formulas, findings) }
+    DocumentAnalysis { statistics, findings: directed(&document.read.declared, formulas, findings, missing) }
 }
 
-/// Findings after the author's `skip` and `allow`, with those about the directives themselves.
-fn directed(declared: &Declared, formulas: &[Formula], mut findings: Vec<(usize, Finding)>) -> Vec<Finding> {
-    let mut about = Vec::new();
+/// The formulas that the author says to skip: they neither vote nor are judged.
+fn skipped(declared: &Declared, formulas: &[Formula]) -> Vec<usize> {
+    let skips = declared.sentences.iter().filter(|(sentence, _)| *sentence == Sentence::Skip);
+    skips.filter_map(|(_, span)| target(*span, formulas)).collect()
+}
+
+/// The formula that a directive speaks of: the one around it, or the next.
+fn target(directive: Span, formulas: &[Formula]) -> Option<usize> {
+    formulas.iter().position(|formula| formula.span.end > directive.start)
+}
+
+/// Findings after the author's `skip` and `allow`, with those about the document (`about`) and about the directives.
+fn directed(
+    declared: &Declared,
+    formulas: &[Formula],
+    mut findings: Vec<(usize, Finding)>,
+    mut about: Vec<Finding>,
+) -> Vec<Finding> {
+    let mut allowed: Vec<&String> = Vec::new();
     for (sentence, span) in &declared.sentences {
-        let target = formulas.iter().position(|formula| formula.span.end > span.start);
+        let target = target(*span, formulas);
         match sentence {
             Sentence::Skip => findings.retain(|(number, _)| Some(*number) != target),
+            // What is not about one formula can be allowed for the file.
+            Sentence::Allow { rule, .. } if DOCUMENT_RULES.contains(&rule.as_str()) => allowed.push(rule),
             Sentence::Allow { rule, here } => {
                 let before = findings.len();
                 findings.retain(|(number, finding)| finding.rule != rule || (*here && Some(*number) != target));
@@ -286,6 +318,7 @@ fn directed(declared: &Declared, formulas: &[Formula], mut findings: Vec<(usize,
     }
     about.extend(declared.unreadable.iter().map(|(span, text)| rules::convention_unreadable(*span, text)));
     about.extend(findings.into_iter().map(|(_, finding)| finding));
+    about.retain(|finding| !allowed.iter().any(|rule| *rule == finding.rule));
     about
 }
 

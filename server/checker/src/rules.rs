@@ -7,7 +7,7 @@
 mod convention_unreadable;
 mod dummy_captured;
 mod dummy_levels;
-mod faults;
+pub(crate) mod faults;
 mod free_index_levels;
 mod free_index_mismatch;
 mod idle_allow;
@@ -19,6 +19,8 @@ mod script_swallows_factor;
 mod slot_order_unclear;
 mod unread;
 mod unsummed_repeat;
+
+use std::borrow::Cow;
 
 use crate::balance::Choice;
 use crate::finding::{Finding, Severity};
@@ -94,7 +96,8 @@ pub fn find(name: &str) -> Option<&'static Rule> {
 
 /// Everything that is wrong with a statement.
 pub(crate) fn check_statement(judged: &Judged<'_>) -> Vec<Finding> {
-    let mut out = balance_findings(judged.clone());
+    let broken = !judged.faults.is_empty() || !judged.sketch.swallowed.is_empty();
+    let mut out = if broken { balance_findings(judged.clone()) } else { Vec::new() };
     for rule in RULES {
         if let Check::Beside(check) = rule.check {
             out.extend(check(judged));
@@ -105,7 +108,7 @@ pub(crate) fn check_statement(judged: &Judged<'_>) -> Vec<Finding> {
 
 fn balance_findings(mut judged: Judged<'_>) -> Vec<Finding> {
     let mut out = Vec::new();
-    while out.len() < FINDINGS_PER_STATEMENT {
+    while out.len() < FINDINGS_PER_STATEMENT && !(judged.faults.is_empty() && judged.sketch.swallowed.is_empty()) {
         let report = RULES.iter().find_map(|rule| match rule.check {
             Check::Balance(check) => check(&judged),
             _ => None,
@@ -119,7 +122,8 @@ fn balance_findings(mut judged: Judged<'_>) -> Vec<Finding> {
             break;
         }
         judged.reading.odd = faults::odd_letters(&sketch, &choice);
-        judged.sketch = sketch;
+        judged.faults = faults::faults(&sketch, &choice, &judged.prices);
+        judged.sketch = Cow::Owned(sketch);
         judged.reading.choice = choice;
     }
     out

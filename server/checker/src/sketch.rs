@@ -6,11 +6,15 @@
 //! chooses; `balance.rs` judges a choice. A sketch depends on the formula's own tree alone.
 
 mod build;
+mod doubts;
+mod habits;
 mod scripts;
 
 use compact_str::CompactString;
 use indexwise_grammar::span::Span;
 use indexwise_grammar::tree::{Level, RelationKind, Statement};
+
+use crate::conventions::built_in::LetterClass;
 
 /// A statement reduced to what matters for its balance.
 #[derive(Clone, Debug, Default)]
@@ -35,6 +39,8 @@ pub struct Sketch {
     pub unknown: Vec<CompactString>,
     /// Letters and words that stand as quantities, with their places.
     pub quantities: Vec<(CompactString, Span)>,
+    /// Letters that the statement lists as coordinates: `x^\alpha = (s, \theta)`.
+    pub coordinates: Vec<CompactString>,
     /// Scripts that hold a whole factor behind a letter.
     pub swallowed: Vec<Swallowed>,
     /// Stacked kernels: upper and lower scripts one above the other, with the kernel's name.
@@ -130,6 +136,10 @@ pub struct Unit {
     pub kernel_letter: CompactString,
     /// The letter.
     pub letter: CompactString,
+    /// Its class.
+    pub class: LetterClass,
+    /// Whether it usually names a coordinate.
+    pub coordinate: bool,
     /// The level as written.
     pub level: Level,
     /// The kind of script.

@@ -2,7 +2,7 @@
 //! meaning of their own. All common practice, no source. A document may speak against every one of them.
 
 /// Class of letters that are used alike: the level habit of a document is counted per class.
-#[derive(Clone, Copy, Debug, PartialEq, Eq, Hash, PartialOrd, Ord)]
+#[derive(Clone, Copy, Debug, Default, PartialEq, Eq, Hash, PartialOrd, Ord)]
 pub enum LetterClass {
     /// Greek lower case.
     Greek,
@@ -13,6 +13,7 @@ pub enum LetterClass {
     /// Latin capitals.
     Capital,
     /// Anything else.
+    #[default]
     Other,
 }
 

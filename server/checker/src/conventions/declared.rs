@@ -65,7 +65,8 @@ impl Declared {
 
     /// Whether the author says that this letter is no index.
     pub fn is_not_index(&self, unit: &Unit) -> bool {
-        self.not_index.iter().any(|letter| *letter == unit.letter || letter == bare_letter(&unit.letter))
+        !self.not_index.is_empty()
+            && self.not_index.iter().any(|letter| *letter == unit.letter || letter == bare_letter(&unit.letter))
     }
 }
 

@@ -12,7 +12,7 @@ use crate::balance::{self, Event};
 use crate::reading::Reading;
 use crate::sketch::{Shape, Sketch, Unit};
 
-use super::built_in::{CLASSES, LetterClass, class_of, is_symbol_kernel, is_usual_coordinate};
+use super::built_in::{CLASSES, LetterClass, class_of, is_symbol_kernel};
 
 /// Counts over balanced statements.
 #[derive(Clone, Debug, Default)]
@@ -28,6 +28,8 @@ pub struct Evidence {
     label_letter: FxHashMap<CompactString, u32>,
     /// Statements that balance only if a usual coordinate is an index.
     running: FxHashMap<CompactString, u32>,
+    /// Letters that are listed as coordinates.
+    coordinates: FxHashMap<CompactString, u32>,
     /// Pairs on opposite levels and on one level, by class.
     pairs: [[u32; 2]; 5],
     /// The same by kernel.
@@ -78,6 +80,9 @@ impl Evidence {
     pub fn vote(&mut self, sketch: &Sketch, reading: &Reading) {
         if sketch.unjudged.is_some() {
             return;
+        }
+        for letter in &sketch.coordinates {
+            *self.coordinates.entry(letter.clone()).or_default() += 1;
         }
         self.vote_balance(sketch, reading);
         self.vote_unknown(sketch, reading);
@@ -134,7 +139,7 @@ impl Evidence {
                 *self.label_kernel.entry(unit.kernel.clone()).or_default() += 1;
                 *self.label_letter.entry(unit.letter.clone()).or_default() += 1;
             }
-            if *index && is_usual_coordinate(&unit.letter) {
+            if *index && unit.coordinate {
                 *self.running.entry(unit.letter.clone()).or_default() += 1;
             }
         }
@@ -196,7 +201,7 @@ impl Evidence {
     fn vote_lone(&mut self, sketch: &Sketch, place: u32) {
         let unit = sketch.place(place).and_then(|place| sketch.units.get(place.unit as usize));
         if let Some(unit) = unit.filter(|unit| !matches!(unit.shape, Shape::Several | Shape::Particle)) {
-            *self.lone.entry((unit.kernel.clone(), class_of(&unit.letter))).or_default() += 1;
+            *self.lone.entry((unit.kernel.clone(), unit.class)).or_default() += 1;
         }
     }
 
@@ -208,6 +213,7 @@ impl Evidence {
         merge(&mut self.label_kernel, &other.label_kernel);
         merge(&mut self.label_letter, &other.label_letter);
         merge(&mut self.running, &other.running);
+        merge(&mut self.coordinates, &other.coordinates);
         merge_pairs(&mut self.kernel_pairs, &other.kernel_pairs);
         merge_pairs(&mut self.unknown, &other.unknown);
         merge_pairs(&mut self.staggered, &other.staggered);
@@ -293,14 +299,18 @@ impl Prices<'_> {
             return -1000;
         }
         let letter = &unit.letter;
-        if is_usual_coordinate(letter) {
+        let listed = !unit.coordinate && unit.class != LetterClass::Greek && self.file.coordinates.contains_key(letter);
+        if listed && self.file.index.get(letter).is_none_or(|votes| *votes < 3) {
+            return -25;
+        }
+        if unit.coordinate {
             let seen = self.count(|evidence| evidence.running.get(letter).copied());
             return unit.bias + 12 * steps(seen).min(4);
         }
         let label_key = (unit.kernel.clone(), letter.clone());
         let labels = self.count(|evidence| evidence.label.get(&label_key).copied());
         let index = steps(self.count(|evidence| evidence.index.get(letter).copied())).min(3);
-        let lone_key = (unit.kernel.clone(), class_of(letter));
+        let lone_key = (unit.kernel.clone(), unit.class);
         let lone = steps(self.count(|evidence| evidence.lone.get(&lone_key).copied())).min(3);
         // A kernel that is never seen with an index of this class is more likely to carry a label.
         let stranger = || {
@@ -308,7 +318,7 @@ impl Prices<'_> {
             let kernel = steps(others(kernel)).min(3);
             let other = steps(others(self.count(|evidence| evidence.label_letter.get(letter).copied()))).min(3);
             let usual = matches!(super::built_in::bare_letter(letter), "i" | "j" | "k" | "l");
-            let greek_up = class_of(letter) == LetterClass::Greek && unit.level == Level::Up && unit.bias > 20;
+            let greek_up = unit.class == LetterClass::Greek && unit.level == Level::Up && unit.bias > 20;
             match (usual, greek_up) {
                 (true, _) => 6 * index - 4 * kernel - 4 * other,
                 (_, true) => 5 * index - 4 * kernel - 2 * other,
@@ -360,7 +370,7 @@ impl Prices<'_> {
         if is_symbol_kernel(&unit.kernel_letter) {
             return true;
         }
-        let key = (unit.kernel.clone(), class_of(&unit.letter));
+        let key = (unit.kernel.clone(), unit.class);
         let [opposite, same] = self.file.kernel_pairs.get(&key).copied().unwrap_or_default();
         same >= 4 && same > opposite
     }
@@ -394,10 +404,20 @@ impl Prices<'_> {
     /// Whether neither kernel of a pair is ever seen in a pair on opposite levels: then the two may be labels.
     pub fn both_strange(&self, one: &Unit, two: &Unit) -> bool {
         [one, two].iter().all(|unit| {
-            let key = (unit.kernel.clone(), class_of(&unit.letter));
+            let key = (unit.kernel.clone(), unit.class);
             let opposite = self.file.kernel_pairs.get(&key).is_some_and(|[opposite, _]| *opposite > 0);
             unit.shape == Shape::Lone && !opposite
         })
+    }
+
+    /// Letters of a class that the file uses as indices, the most used first.
+    pub fn index_letters(&self, class: LetterClass) -> Vec<CompactString> {
+        // Sorted below.
+        #[allow(clippy::iter_over_hash_type)]
+        let mut letters: Vec<(&CompactString, &u32)> =
+            self.file.index.iter().filter(|(letter, _)| class_of(letter) == class).collect();
+        letters.sort_by(|one, two| two.1.cmp(one.1).then(one.0.cmp(two.0)));
+        letters.into_iter().map(|(letter, _)| letter.clone()).collect()
     }
 
     /// How often a kernel with these scripts is staggered, and stacked.

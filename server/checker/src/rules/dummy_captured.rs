@@ -30,7 +30,7 @@ fn check(judged: &Judged<'_>) -> Option<Report> {
         .into_iter()
         .filter(|place| scope.holds(judged.span(*place)) && !outside.contains(place))
         .collect();
-    let changes = fresh_letters(&judged.sketch, &letter)
+    let changes = fresh_letters(judged, &letter)
         .into_iter()
         .take(2)
         .enumerate()

@@ -10,13 +10,23 @@ use crate::sketch::{Shape, Sketch, Unit};
 
 /// One thing out of order.
 #[derive(Clone, Debug, PartialEq, Eq)]
-pub(super) enum Fault {
+pub(crate) enum Fault {
     /// A letter is out of balance.
     Odd(CompactString, Odd),
     /// A pair on one level.
     PairLevel(CompactString, u32, u32),
     /// A free letter on two levels.
     FreeLevel(CompactString),
+}
+
+impl Fault {
+    /// The letter, if it is out of balance.
+    pub(crate) fn letter(&self) -> Option<&CompactString> {
+        match self {
+            Self::Odd(letter, _) => Some(letter),
+            _ => None,
+        }
+    }
 }
 
 /// Letters out of balance.
@@ -30,7 +40,7 @@ pub(crate) fn odd_letters(sketch: &Sketch, choice: &Choice) -> Vec<(CompactStrin
 }
 
 /// Everything out of order.
-pub(super) fn faults(sketch: &Sketch, choice: &Choice, prices: &Prices<'_>) -> Vec<Fault> {
+pub(crate) fn faults(sketch: &Sketch, choice: &Choice, prices: &Prices<'_>) -> Vec<Fault> {
     let mut out = Vec::new();
     for (number, letter) in sketch.letter_numbers().zip(&sketch.letters) {
         let (odd, events) = balance::events(sketch, choice, number);

@@ -33,13 +33,25 @@ fn check(judged: &Judged<'_>) -> Option<Report> {
         rule: RULE.name,
         severity: severity(judged, &mends),
         span,
-        message: disagreement.message(judged, &odd),
+        message: plain_message(judged, &mends).unwrap_or_else(|| disagreement.message(judged, &odd)),
         related: disagreement.related(judged, span),
         fixes: fixes(judged, &mends, clear_winner(&mends)),
         ledger: Some(judged.view(&odd)),
     };
     let mended = mends.into_iter().next().map(|mend| (mend.sketch, mend.choice));
     Some(Report { finding, mended })
+}
+
+/// Where one renamed letter would mend all: "l stands where the other terms have j".
+fn plain_message(judged: &Judged<'_>, mends: &[Mend]) -> Option<String> {
+    clear_winner(mends).ok()?;
+    let Mend { change: Change::Rename(places, to), sketch, choice, .. } = mends.first()? else { return None };
+    let place = judged.sketch.place(*places.first()?)?;
+    let others = judged.rows().iter().filter(|row| row.free.iter().any(|(letter, _)| letter == to)).count();
+    let level = judged.level(*places.first()?);
+    let level = if level.is_empty() { String::new() } else { format!(" ({level})") };
+    let whole = others > 1 && odd_letters(sketch, choice).is_empty();
+    whole.then(|| format!("{} stands free{level} where the other terms have {}", shown(&place.letter), shown(to)))
 }
 
 /// An error where one change restores the balance. A statement that no single change can balance is more often
@@ -102,7 +114,11 @@ fn candidates(judged: &Judged<'_>, odd: &[CompactString]) -> Vec<(Change, i32)> 
     let mut out = Vec::new();
     for from in odd {
         for place in index_places(judged, from) {
-            for to in odd.iter().filter(|to| *to != from) {
+            let script = judged.sketch.place(place).map(|place| place.script);
+            let beside = |letter: &CompactString| {
+                judged.sketch.places.iter().any(|other| Some(other.script) == script && other.letter == *letter)
+            };
+            for to in odd.iter().filter(|to| *to != from && !beside(to)) {
                 let alike = if class_of(to) == class_of(from) { 0 } else { -3 };
                 out.push((Change::Rename(vec![place], to.clone()), holders(to) - holders(from) + alike));
             }
@@ -186,6 +202,7 @@ impl Disagreement {
         let sides = judged.sketch.sides.len();
         let name = |term: &Compared| self.name(judged, term, sides);
         let level = mine().find_map(|term| term.free).map_or("", |place| judged.level(place));
+        let level = if level.is_empty() { String::new() } else { format!(" ({level})") };
         let held = gather(mine().filter(|term| term.free.is_some()).map(name));
         let lacking = gather(mine().filter(|term| term.free.is_none()).map(name));
         if held.is_empty() || lacking.is_empty() {
@@ -202,7 +219,7 @@ impl Disagreement {
         } else {
             "in some terms, but not in others".to_owned()
         };
-        Some(format!("{} is free ({level}) {both}", shown(letter)))
+        Some(format!("{} is free{level} {both}", shown(letter)))
     }
 
     /// The name of a compared term: its side where the whole side agrees.
@@ -225,14 +242,16 @@ impl Disagreement {
             let Some(place) = term.free else { continue };
             let at = judged.span(place);
             if at != span && !out.iter().any(|related| related.span == at) && out.len() < 6 {
-                out.push(Related {
-                    span: at,
-                    message: format!("{} is free here ({})", shown(letter), judged.level(place)),
-                });
+                out.push(Related { span: at, message: free_here(letter, judged.level(place)) });
             }
         }
         out
     }
+}
+
+fn free_here(letter: &str, level: &str) -> String {
+    let level = if level.is_empty() { String::new() } else { format!(" ({level})") };
+    format!("{} is free here{level}", shown(letter))
 }
 
 fn gather(names: impl Iterator<Item = String>) -> Vec<String> {

@@ -59,7 +59,7 @@ fn candidates(judged: &Judged<'_>, letter: &CompactString, places: &[u32]) -> Ve
             out.push((Change::Rename(vec![*place], to.clone()), 1));
         }
     }
-    if let (4, Some(fresh)) = (places.len(), fresh_letters(&judged.sketch, letter).into_iter().next()) {
+    if let (4, Some(fresh)) = (places.len(), fresh_letters(judged, letter).into_iter().next()) {
         let pairs = [[2, 3], [1, 3], [1, 2]];
         for (n, pair) in pairs.iter().enumerate() {
             let pair: Vec<u32> = pair.iter().filter_map(|at| places.get(*at).copied()).collect();

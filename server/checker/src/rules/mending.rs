@@ -32,7 +32,7 @@ pub(super) struct Mend {
 
 /// The changes that take faults away and add none, those that leave least first, then those with most support.
 pub(super) fn mends(judged: &Judged<'_>, changes: Vec<(Change, i32)>) -> Vec<Mend> {
-    let before = faults(&judged.sketch, &judged.reading.choice, &judged.prices);
+    let before = &judged.faults;
     let mut out: Vec<Mend> = changes
         .into_iter()
         .take(CHANGES_TRIED)
@@ -92,8 +92,5 @@ pub(super) fn odd_by(judged: &Judged<'_>, kind: Odd) -> Vec<CompactString> {
 
 /// Whether a letter has a fault of its level.
 pub(super) fn level_letters(judged: &Judged<'_>) -> Vec<Fault> {
-    faults(&judged.sketch, &judged.reading.choice, &judged.prices)
-        .into_iter()
-        .filter(|fault| !matches!(fault, Fault::Odd(..)))
-        .collect()
+    judged.faults.iter().filter(|fault| !matches!(fault, Fault::Odd(..))).cloned().collect()
 }

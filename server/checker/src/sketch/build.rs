@@ -8,25 +8,20 @@ use indexwise_grammar::tree::{
     Atom, Big, Bracket, Factor, Group, ItemKind, Joint, Kernel, Level, Statement, Sum, Term,
 };
 
-use crate::conventions::built_in::{is_basis_kernel, is_derivative, is_point_kernel};
+use crate::conventions::built_in::{is_basis_kernel, is_derivative};
 
+use super::doubts::{NAME_DOUBT, cast_doubts, listed_coordinates};
+use super::habits::{
+    argument_odds, is_differential, is_lone_derivative, is_lone_kernel, is_number, is_numeric, is_scalar_product,
+    is_zero, letters_of, matches_anything,
+};
 use super::scripts::{Carrier, Power, read_scripts};
 use super::{Node, Shape, Side, Sketch, Switch, TermNode, Unit};
 
-/// Price of letting a bracket after a kernel count as a product when it looks like an argument, or the reverse.
-const ARGUMENT_PRICE: i32 = 10;
-/// The same where only the lack of a sum speaks for an argument.
-const DOUBTFUL_ARGUMENT_PRICE: i32 = 20;
 /// Price of taking several parts in a bracket for components rather than arguments or a commutator.
 const LIST_PRICE: i32 = 10;
 /// Price of taking `\psi(p)` for the value of a map, with whatever indices.
 const MAP_PRICE: i32 = 30;
-/// How much it speaks against an index that its letter is a quantity of the same statement.
-const QUANTITY_DOUBT: i32 = 55;
-/// How much it speaks against an index that its kernel stands in a bracket with scripts of its own.
-const NAME_DOUBT: i32 = 80;
-/// The same for the imaginary unit and the like, which stand beside indices of the same letter by custom.
-const UNIT_DOUBT: i32 = 15;
 
 pub(super) fn sketch(statement: &Statement) -> Sketch {
     let mut builder = Builder::default();
@@ -38,12 +33,8 @@ pub(super) fn sketch(statement: &Statement) -> Sketch {
         builder.sketch.sides.push(Side { span: side.span, terms, any, zero: is_zero(side) });
     }
     let mut sketch = builder.sketch;
-    doubt_quantities(&mut sketch);
-    for unit in sketch.units.iter_mut().filter(|unit| unit.shape != Shape::Several) {
-        if builder.named.contains(&unit.letter) {
-            unit.bias -= NAME_DOUBT;
-        }
-    }
+    cast_doubts(&mut sketch, &builder.named);
+    sketch.coordinates = listed_coordinates(statement);
     if sketch.relations.is_empty() && sketch.sides.iter().all(|side| side.any) {
         sketch.unjudged = sketch.unjudged.or(Some("nothing to compare"));
     }
@@ -175,7 +166,10 @@ impl Builder {
             return;
         }
         walk.nodes.push(match power {
-            None => node,
+            None => match node {
+                Node::Product(nodes) => return walk.nodes.extend(nodes),
+                node => node,
+            },
             Some(Power::Square) => Node::Square(Box::new(node), self.switch(Switch { on: true, price: 0 })),
             Some(Power::Other) => Node::Power(Box::new(node)),
         });
@@ -214,7 +208,10 @@ impl Builder {
 
     fn group(&mut self, walk: &mut Walk<'_>, factor: &Factor, group: &Group, flip: bool) {
         // An evaluation bar, or a condition in brackets: nothing of the term.
-        if group.parts.is_empty() || group.parts.iter().any(|part| !part.relations.is_empty()) {
+        if group.parts.is_empty() {
+            return self.bar(walk, factor, flip);
+        }
+        if group.parts.iter().any(|part| !part.relations.is_empty()) {
             // `- (\mu \leftrightarrow \nu)`: another term like the one before.
             walk.any |= walk.factors.len() == 1;
             return;
@@ -244,6 +241,15 @@ impl Builder {
             return self.powered(walk, node, scripts.power);
         }
         self.scripted_group(walk, factor, node, flip);
+    }
+
+    /// A lone bar evaluates, or it differentiates covariantly: `m^{\alpha\beta}|_\beta`.
+    fn bar(&mut self, walk: &mut Walk<'_>, factor: &Factor, flip: bool) {
+        let scripts = read_scripts(self, Carrier::BRACKET, &factor.scripts, flip);
+        if !scripts.nodes.is_empty() && walk.at > 1 {
+            let switch = self.switch(Switch { on: true, price: 0 });
+            walk.nodes.push(Node::Switch(switch, Box::new(Node::Product(scripts.nodes))));
+        }
     }
 
     /// Several parts in a bracket: a commutator multiplies them, a list in round brackets spells components out.
@@ -447,151 +453,4 @@ impl<'t> Walk<'t> {
 
 impl Carrier<'_> {
     pub(super) const BRACKET: Carrier<'static> = Carrier { name: "", letter: "", bold: false, group: true };
-}
-
-/// Terms that fit whatever indices the others have: nothing, zero, words, "h.c.".
-fn matches_anything(term: &Term) -> bool {
-    match term.factors.as_slice() {
-        [] => true,
-        [Factor { atom: Atom::Number(number), .. }] => number == "0",
-        [Factor { atom: Atom::Kernel(kernel), scripts, .. }] => {
-            (kernel.word && scripts.is_empty()) || (kernel.bold && kernel.letter == "0")
-        }
-        [first, second] => {
-            let letter = |factor: &Factor| match &factor.atom {
-                Atom::Kernel(kernel) if factor.scripts.is_empty() => Some(kernel.letter.clone()),
-                _ => None,
-            };
-            matches!(
-                (letter(first).as_deref(), letter(second).as_deref()),
-                (Some("h" | "c" | "H"), Some("c")) | (Some("h"), Some("o"))
-            ) && term.sign.is_some()
-        }
-        _ => false,
-    }
-}
-
-fn is_zero(sum: &Sum) -> bool {
-    matches!(sum.terms.as_slice(), [term] if matches!(term.factors.as_slice(), [Factor { atom: Atom::Number(n), .. }] if n == "0"))
-}
-
-/// `\mathbf u \cdot \mathbf v`: two small Latin letters in one type with a dot are vectors, and a scalar together.
-fn is_scalar_product(term: &Term) -> bool {
-    let [first, second] = term.factors.as_slice() else { return false };
-    let vector = |factor: &Factor| match &factor.atom {
-        Atom::Kernel(kernel) if kernel.bold && factor.scripts.is_empty() => {
-            Some((kernel.name.strip_suffix(kernel.letter.as_str())?.to_owned(), kernel.letter.clone()))
-        }
-        Atom::Unknown(name, arguments) if factor.scripts.is_empty() => match arguments.as_slice() {
-            [Sum { terms, .. }] => match terms.as_slice() {
-                [Term { factors, .. }] => match factors.as_slice() {
-                    [Factor { atom: Atom::Kernel(kernel), .. }] => Some((name.to_string(), kernel.letter.clone())),
-                    _ => None,
-                },
-                _ => None,
-            },
-            _ => None,
-        },
-        _ => None,
-    };
-    let small = |letter: &str| letter.len() == 1 && letter.chars().all(|c| c.is_ascii_lowercase());
-    match (vector(first), vector(second)) {
-        (Some((one, a)), Some((two, b))) => second.joint == Joint::Times && one == two && small(&a) && small(&b),
-        _ => false,
-    }
-}
-
-/// A number, or a fraction or a root of numbers.
-fn is_numeric(factor: &Factor) -> bool {
-    let sum = |sum: &Sum| sum.terms.iter().flat_map(|term| &term.factors).all(|f| matches!(f.atom, Atom::Number(_)));
-    match &factor.atom {
-        Atom::Number(_) => true,
-        Atom::Fraction(fraction) => sum(&fraction.over) && sum(&fraction.under),
-        Atom::Root(body) => sum(body),
-        _ => false,
-    }
-}
-
-fn is_number(part: &Statement) -> bool {
-    let number = |sum: &Sum| matches!(sum.terms.as_slice(), [term] if matches!(term.factors.as_slice(), [Factor { atom: Atom::Number(_), .. }]));
-    part.sides.iter().all(number)
-}
-
-/// The letters that a bound with scripts names: the kernel, the letters below it, and both together.
-fn letters_of(factor: &Factor) -> Vec<CompactString> {
-    let Atom::Kernel(kernel) = &factor.atom else { return Vec::new() };
-    let mut out = vec![kernel.name.clone()];
-    for item in factor.scripts.iter().flat_map(|script| &script.items) {
-        if let ItemKind::Letter(letter) = &item.kind {
-            out.push(compact_str::format_compact!("{}_{letter}", kernel.name));
-            out.push(letter.clone());
-        }
-    }
-    out
-}
-
-/// A letter that is also a quantity of the statement is more likely a label (`h^k \cos kz`).
-fn doubt_quantities(sketch: &mut Sketch) {
-    let kernels: Vec<CompactString> = sketch.units.iter().map(|unit| unit.kernel_letter.clone()).collect();
-    for unit in &mut sketch.units {
-        // A derivative along a vector of the statement: `\nabla_m t = m^a ..`.
-        let along = matches!(unit.kernel_letter.as_str(), "\\nabla" | "D") && kernels.contains(&unit.letter);
-        if along || sketch.quantities.iter().any(|(letter, _)| *letter == unit.letter) {
-            unit.bias -= if matches!(unit.letter.as_str(), "i" | "d" | "e") { UNIT_DOUBT } else { QUANTITY_DOUBT };
-        }
-    }
-}
-
-fn is_lone_derivative(sum: &Sum) -> bool {
-    matches!(sum.terms.as_slice(), [term] if matches!(term.factors.as_slice(), [Factor { atom: Atom::Fraction(_), .. }]))
-}
-
-fn is_lone_kernel(sum: &Sum) -> bool {
-    matches!(sum.terms.as_slice(), [term] if matches!(term.factors.as_slice(), [Factor { atom: Atom::Kernel(_), .. }]))
-}
-
-/// `\partial`, `d`, `\delta` without an index of their own: a slash before them reaches over the next factor too.
-fn is_differential(factor: &Factor) -> bool {
-    let Atom::Kernel(kernel) = &factor.atom else { return false };
-    let letters =
-        factor.scripts.iter().flat_map(|script| &script.items).any(|item| matches!(item.kind, ItemKind::Letter(_)));
-    !letters && matches!(kernel.letter.as_str(), "\\partial" | "d" | "\\delta" | "D" | "\\Delta")
-}
-
-/// Whether a bracket after a kernel counts, and what the other reading costs; nothing where it is surely a factor.
-fn argument_odds(kernel: &Kernel, group: &Group, indexed: bool) -> Option<(bool, i32)> {
-    let sums = || group.parts.iter().flat_map(|part| &part.sides);
-    match group.bracket {
-        // A functional, `S[g]`; a commutator or a factor if the kernel has indices.
-        Bracket::Square if indexed => {
-            let functional = group.parts.len() == 1 && sums().all(is_lone_kernel);
-            return functional.then_some((true, ARGUMENT_PRICE));
-        }
-        Bracket::Square => {
-            return (group.parts.len() == 1 && sums().all(is_lone_kernel)).then_some((false, ARGUMENT_PRICE));
-        }
-        Bracket::Round => {}
-        Bracket::Curly | Bracket::Bars | Bracket::Angle | Bracket::Pair => return None,
-    }
-    if group.parts.len() > 1 || group.parts.iter().any(|part| !part.relations.is_empty()) {
-        return Some((false, ARGUMENT_PRICE));
-    }
-    let points = sums().all(|sum| !sum.terms.is_empty() && sum.terms.iter().all(begins_with_point));
-    if points {
-        return Some((false, ARGUMENT_PRICE));
-    }
-    let lone_term = sums().all(|sum| sum.terms.len() == 1 && sum.terms.iter().all(|term| term.sign.is_none()));
-    if indexed {
-        return sums().all(is_lone_kernel).then_some((true, DOUBTFUL_ARGUMENT_PRICE));
-    }
-    (lone_term && kernel.letter != "d").then_some((true, DOUBTFUL_ARGUMENT_PRICE))
-}
-
-fn begins_with_point(term: &Term) -> bool {
-    let first = term.factors.iter().find(|factor| !matches!(factor.atom, Atom::Number(_)));
-    match first.map(|factor| &factor.atom) {
-        Some(Atom::Kernel(kernel)) => is_point_kernel(&kernel.letter),
-        None => true,
-        _ => false,
-    }
 }

@@ -145,7 +145,8 @@ fn plain_numbers(script: &Script) -> usize {
 
 /// `e^{i\omega r}`: several letters above an e that carries nothing below.
 fn is_exponential(script: &Script, carrier: Carrier<'_>, all: &[Script]) -> bool {
-    carrier.name == "e" && all.len() == 1 && script.items.len() > 1
+    let greek = |item: &Item| matches!(&item.kind, ItemKind::Letter(letter) if class_of(letter) == LetterClass::Greek);
+    carrier.name == "e" && all.len() == 1 && script.items.len() > 1 && !script.items.iter().all(greek)
 }
 
 fn is_arithmetic(kind: &ItemKind) -> bool {
@@ -353,6 +354,8 @@ fn place(
         kernel: carrier.name.into(),
         kernel_letter: carrier.letter.into(),
         letter: candidate.letter.clone(),
+        class: class_of(&candidate.letter),
+        coordinate: is_usual_coordinate(&candidate.letter),
         level: written,
         shape,
         vector: carrier.bold,
