@@ -33,23 +33,36 @@ pub struct Document {
 /// Reads a text. `inherited` are the macros in force at its start: those of its styles and of the root it is a
 /// part of. Linear in the text; every budget that is passed shows as an unread formula.
 pub fn read(text: &str, host: Host, inherited: &Macros) -> Document {
+    read_each(text, host, inherited, |_, _| {})
+}
+
+/// Formulas that are read together before the caller sees them.
+const FORMULAS_AT_ONCE: usize = 256;
+
+/// As `read`, and hands every formula with its number to the caller once it is read; what the caller takes out of
+/// it (its statements) need not be kept for the whole document.
+pub fn read_each(text: &str, host: Host, inherited: &Macros, mut each: impl FnMut(usize, &mut Formula)) -> Document {
     let scan = scan(text, host, inherited);
     let macros = macros_of(&scan, inherited);
-    let drafts: Vec<(_, _, Draft)> = scan
-        .regions
-        .iter()
-        .map(|region| {
-            let body = without_holes(region, text);
-            let base = region.body.start as usize;
-            let draft = match host {
-                Host::Note => formula::prepare_note(&body, base),
-                _ => formula::prepare(&body, base, &macros),
-            };
-            (region.span, region.setting != Setting::Inline, draft)
-        })
-        .collect();
-    let formulas = formula::parse_all(&drafts);
+    let mut formulas = Vec::with_capacity(scan.regions.len());
+    for regions in scan.regions.chunks(FORMULAS_AT_ONCE) {
+        let drafts: Vec<_> = regions.iter().map(|region| draft(region, text, host, &macros)).collect();
+        for mut formula in formula::parse_all(&drafts) {
+            each(formulas.len(), &mut formula);
+            formulas.push(formula);
+        }
+    }
     Document { scan, formulas }
+}
+
+fn draft(region: &Region, text: &str, host: Host, macros: &Macros) -> (Span, bool, Draft) {
+    let body = without_holes(region, text);
+    let base = region.body.start as usize;
+    let draft = match host {
+        Host::Note => formula::prepare_note(&body, base),
+        _ => formula::prepare(&body, base, macros),
+    };
+    (region.span, region.setting != Setting::Inline, draft)
 }
 
 /// Reads the body of one formula by itself; places count from its start.

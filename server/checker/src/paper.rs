@@ -8,15 +8,16 @@ use indexwise_grammar::hosts::{self, Host};
 use indexwise_grammar::macros::Macros;
 use indexwise_grammar::span::Span;
 use indexwise_grammar::tree::Formula;
-use indexwise_grammar::{Document, macros_of, read};
+use indexwise_grammar::{Document, macros_of, read_each};
+use rustc_hash::FxHashMap;
 
 use crate::conventions::declared::{Declared, Sentence};
 use crate::conventions::inferred::{Evidence, Prices};
 use crate::finding::Finding;
 use crate::ledger::Judged;
-use crate::reading;
+use crate::reading::{self, Reading};
 use crate::rules;
-use crate::sketch::Sketch;
+use crate::sketch::{Sketch, Unit};
 
 /// One text of a paper.
 #[derive(Clone, Debug)]
@@ -145,7 +146,7 @@ pub fn readings(paper: &Paper) -> Vec<(Span, String)> {
     let (Some(document), Some(own)) = (sketched.first(), evidence.first()) else { return Vec::new() };
     let prices = Prices { file: own, paper: &all, declared: &document.read.declared, macros: &document.read.macros };
     let words = |sketch: &Sketch| {
-        let reading = reading::read(sketch, &prices);
+        let reading = reading::read(sketch, sketch.units.iter().map(|unit| prices.score(unit)).collect());
         let units = sketch.units.iter().zip(&reading.choice.index).map(|(unit, index)| {
             let score = prices.score(unit);
             format!(
@@ -160,36 +161,71 @@ pub fn readings(paper: &Paper) -> Vec<(Span, String)> {
         format!("{}{odd} trusted {trusted} {:?}\n{switches}\n", units.collect::<String>(), sketch.unjudged)
     };
     let habits = (Span::default(), format!("    habits {}\n", own.summary()));
-    std::iter::once(habits).chain(document.statements.iter().map(|(_, sketch)| (sketch.span, words(sketch)))).collect()
+    std::iter::once(habits)
+        .chain(document.statements.iter().map(|statement| (statement.sketch.span, words(statement.sketch))))
+        .collect()
 }
 
 /// Rounds of counting: each reads with the counts of the round before. Two settle nearly all readings of the
 /// corpus; a third changed none that mattered.
 const ROUNDS: usize = 2;
 
-/// A document as read, with what is in force in it.
+/// A document as read, with what is in force in it. Its formulas are without their statements: the sketches are
+/// all that is needed of them.
 struct Read<'p> {
     text: &'p str,
     document: Document,
+    /// The number of the formula, and the sketch of a statement with scripts.
+    sketches: Vec<(usize, Sketch)>,
     macros: Macros,
     declared: Declared,
 }
 
-/// A document with the sketches of its statements.
+/// A document with the sketches of its statements. The same units come again and again, so that each is numbered
+/// and its score is taken once a round.
 struct Sketched<'p> {
     read: &'p Read<'p>,
-    /// The number of the formula, and the sketch.
-    statements: Vec<(usize, Sketch)>,
+    statements: Vec<Statement<'p>>,
+    units: Vec<&'p Unit>,
+}
+
+/// A statement: the number of its formula, its sketch, and the numbers of its units in the document.
+struct Statement<'p> {
+    formula: usize,
+    sketch: &'p Sketch,
+    units: Vec<u32>,
+}
+
+impl Statement<'_> {
+    fn read(&self, scores: &[i32]) -> Reading {
+        let own = self.units.iter().map(|unit| scores.get(*unit as usize).copied().unwrap_or(0));
+        reading::read(self.sketch, own.collect())
+    }
 }
 
 impl<'p> Sketched<'p> {
     fn of(read: &'p Read<'p>) -> Self {
-        let statements = read.document.formulas.iter().enumerate().flat_map(|(number, formula)| {
-            formula.statements.iter().map(move |statement| (number, Sketch::of(statement)))
-        });
         let skipped = skipped(&read.declared, &read.document.formulas);
-        let kept = statements.filter(|(number, sketch)| !sketch.places.is_empty() && !skipped.contains(number));
-        Self { read, statements: kept.collect() }
+        let mut numbers: FxHashMap<&Unit, u32> = FxHashMap::default();
+        let mut units: Vec<&Unit> = Vec::new();
+        let mut number = |unit: &'p Unit| {
+            *numbers.entry(unit).or_insert_with(|| {
+                units.push(unit);
+                u32::try_from(units.len() - 1).unwrap_or(u32::MAX)
+            })
+        };
+        let kept = read.sketches.iter().filter(|(formula, _)| !skipped.contains(formula));
+        let statement = |(formula, sketch): &'p (usize, Sketch)| Statement {
+            formula: *formula,
+            sketch,
+            units: sketch.units.iter().map(&mut number).collect(),
+        };
+        let statements = kept.map(statement).collect();
+        Self { read, statements, units }
+    }
+
+    fn scores(&self, prices: &Prices<'_>) -> Vec<i32> {
+        self.units.iter().map(|unit| prices.score(unit)).collect()
     }
 }
 
@@ -210,10 +246,15 @@ fn read_paper(paper: &Paper) -> Vec<Read<'_>> {
     }
     let mut out: Vec<Read<'_>> = Vec::new();
     for source in &paper.documents {
-        let document = read(&source.text, source.host, &shared);
+        let mut sketches = Vec::new();
+        let document = read_each(&source.text, source.host, &shared, |number, formula| {
+            let statements = std::mem::take(&mut formula.statements);
+            let all = statements.iter().map(Sketch::of);
+            sketches.extend(all.filter(|sketch| !sketch.places.is_empty()).map(|sketch| (number, sketch)));
+        });
         let macros = macros_of(&document.scan, &shared);
         let declared = Declared::read(&document.scan.directives, out.first().map(|root| &root.declared));
-        out.push(Read { text: &source.text, document, macros, declared });
+        out.push(Read { text: &source.text, document, sketches, macros, declared });
     }
     out
 }
@@ -228,8 +269,9 @@ fn gather(documents: &[Sketched<'_>], cancel: &Cancel) -> Vec<Evidence> {
             let prices =
                 Prices { file: own, paper: &all, declared: &document.read.declared, macros: &document.read.macros };
             let mut votes = Evidence::default();
-            for (_, sketch) in document.statements.iter().filter(|_| !cancel.is_cancelled()) {
-                votes.vote(sketch, &reading::read(sketch, &prices));
+            let scores = document.scores(&prices);
+            for statement in document.statements.iter().filter(|_| !cancel.is_cancelled()) {
+                votes.vote(statement.sketch, &statement.read(&scores));
             }
             next.push(votes);
         }
@@ -253,11 +295,13 @@ fn judge_document(
     let formulas = &document.read.document.formulas;
     let mut indexed = vec![false; formulas.len()];
     let mut findings: Vec<(usize, Finding)> = Vec::new();
-    for (number, sketch) in &document.statements {
-        let Some(formula) = formulas.get(*number) else { continue };
-        let mut reading = reading::read(sketch, &prices);
+    let scores = document.scores(&prices);
+    for statement in &document.statements {
+        let (number, sketch) = (statement.formula, statement.sketch);
+        let Some(formula) = formulas.get(number) else { continue };
+        let mut reading = statement.read(&scores);
         let any_index = sketch.places.iter().any(|place| reading.choice.index.get(place.unit as usize) == Some(&true));
-        if let Some(flag) = indexed.get_mut(*number) {
+        if let Some(flag) = indexed.get_mut(number) {
             *flag |= any_index;
         }
         reading.odd.retain(|(letter, _)| prices.is_index_notation(letter));
@@ -266,7 +310,7 @@ fn judge_document(
             faults.retain(|fault| fault.letter().is_none_or(|letter| prices.is_index_notation(letter)));
             let (text, sketch) = (document.read.text, Cow::Borrowed(sketch));
             let judged = Judged { text, formula, sketch, reading, prices, faults };
-            findings.extend(rules::check_statement(&judged).into_iter().map(|finding| (*number, finding)));
+            findings.extend(rules::check_statement(&judged).into_iter().map(|finding| (number, finding)));
         }
     }
     for (number, formula) in formulas.iter().enumerate().filter(|_| settings.unread) {

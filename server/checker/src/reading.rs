@@ -7,7 +7,6 @@
 
 use crate::balance::{Choice, Odd, judge};
 use crate::conventions::built_in::{LetterClass, class_of, is_derivative};
-use crate::conventions::inferred::Prices;
 use crate::sketch::{Shape, Sketch};
 
 /// Readings dearer than this do not excuse a statement, in tenths of a unit of price. Smaller than the price of
@@ -36,9 +35,8 @@ pub struct Reading {
     pub odd: Vec<(compact_str::CompactString, Odd)>,
 }
 
-/// Reads a statement.
-pub fn read(sketch: &Sketch, prices: &Prices<'_>) -> Reading {
-    let mut scores: Vec<i32> = sketch.units.iter().map(|unit| prices.score(unit)).collect();
+/// Reads a statement by the scores of its units, in their order.
+pub fn read(sketch: &Sketch, mut scores: Vec<i32>) -> Reading {
     doubt_lone_letters(sketch, &mut scores);
     let likely = Choice {
         index: scores.iter().map(|score| *score > 0).collect(),

@@ -128,7 +128,7 @@ pub struct Place {
 }
 
 /// A kernel with one letter in one kind of script: read alike throughout the statement.
-#[derive(Clone, Debug, PartialEq, Eq)]
+#[derive(Clone, Debug, PartialEq, Eq, Hash)]
 pub struct Unit {
     /// The kernel's name with decorations; empty for a bracket.
     pub kernel: CompactString,

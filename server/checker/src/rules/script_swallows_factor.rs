@@ -58,7 +58,7 @@ fn reread(judged: &Judged<'_>, edits: &[Edit]) -> Option<(Sketch, crate::balance
     let formula = indexwise_grammar::read_formula(&text, &judged.prices.macros.inherited());
     let [statement] = formula.statements.as_slice() else { return None };
     let sketch = Sketch::of(statement);
-    let reading = read(&sketch, &judged.prices);
+    let reading = read(&sketch, sketch.units.iter().map(|unit| judged.prices.score(unit)).collect());
     let gains = sketch.places.len() > judged.sketch.places.len();
     (reading.odd.is_empty() && gains && sketch.swallowed.is_empty()).then_some((sketch, reading.choice))
 }
