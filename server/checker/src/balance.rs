@@ -9,7 +9,7 @@ mod count;
 use indexwise_grammar::span::Span;
 use indexwise_grammar::tree::{Level, RelationKind};
 
-use crate::sketch::{Side, Sketch, TermNode};
+use crate::sketch::{Run, Side, Sketch, Term};
 
 use count::Count;
 
@@ -84,8 +84,8 @@ pub struct TermState {
 }
 
 /// The state of a letter in a term of a side.
-pub fn term_state(sketch: &Sketch, choice: &Choice, term: &TermNode, letter: u16) -> TermState {
-    let (free, closed) = Count::new(sketch, choice, letter, None).term(term);
+pub fn term_state(sketch: &Sketch, choice: &Choice, (term, inside): (&Term, Run), letter: u16) -> TermState {
+    let (free, closed) = Count::new(sketch, choice, letter, None).term(term, inside);
     TermState { free, summed: closed.is_some() }
 }
 
@@ -120,8 +120,10 @@ fn compared_groups(sketch: &Sketch, choice: &Choice) -> Option<Vec<u32>> {
 
 /// How many letters are free on a side.
 fn free_letters(sketch: &Sketch, choice: &Choice, side: &Side) -> usize {
-    let free =
-        |letter: &u16| side.terms.iter().any(|term| Count::new(sketch, choice, *letter, None).term(term).0.is_some());
+    let free = |letter: &u16| {
+        let mut terms = sketch.side_terms(side);
+        terms.any(|(term, inside)| Count::new(sketch, choice, *letter, None).term(term, inside).0.is_some())
+    };
     sketch.letter_numbers().filter(free).count()
 }
 

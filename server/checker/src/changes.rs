@@ -11,7 +11,7 @@ use crate::balance::Choice;
 use crate::conventions::built_in::{LetterClass, bare_letter, class_of};
 use crate::finding::Edit;
 use crate::ledger::{Judged, shown};
-use crate::sketch::{Node, Place, Sketch, TermNode};
+use crate::sketch::{Op, Place, Sketch};
 
 /// A change of a statement.
 #[derive(Clone, Debug, PartialEq, Eq)]
@@ -39,7 +39,7 @@ impl Change {
                 }
             }
             Self::Insert(after, letter) => insert(&mut sketch, &mut choice, *after, letter),
-            Self::Drop(place) => replace(&mut sketch, *place, &Node::Product(Vec::new())),
+            Self::Drop(place) => drop_place(&mut sketch, *place),
             Self::FlipScript(script) => {
                 sketch.places.iter_mut().filter(|place| place.script == *script).for_each(flip);
             }
@@ -216,35 +216,15 @@ fn insert(sketch: &mut Sketch, choice: &mut Choice, after: u32, letter: &Compact
     let (Some(place), Ok(new)) = (sketch.place(after).cloned(), u32::try_from(sketch.places.len())) else { return };
     sketch.places.push(place);
     rename(sketch, choice, new, letter);
-    replace(sketch, after, &Node::Product(vec![Node::Place(after), Node::Place(new)]));
-}
-
-/// Puts another node where a place stands.
-fn replace(sketch: &mut Sketch, number: u32, by: &Node) {
-    for term in sketch.sides.iter_mut().flat_map(|side| &mut side.terms) {
-        replace_in_term(term, number, by);
+    if let Some(at) = sketch.code.iter().position(|op| *op == Op::Place(after)) {
+        sketch.insert_after(at, Op::Place(new));
     }
 }
 
-fn replace_in_term(term: &mut TermNode, number: u32, by: &Node) {
-    term.nodes.iter_mut().for_each(|node| replace_in(node, number, by));
-}
-
-fn replace_in(node: &mut Node, number: u32, by: &Node) {
-    match node {
-        Node::Place(place) => {
-            if *place == number {
-                *node = by.clone();
-            }
-        }
-        Node::Product(nodes) => nodes.iter_mut().for_each(|node| replace_in(node, number, by)),
-        Node::Sum(terms) => terms.iter_mut().for_each(|term| replace_in_term(term, number, by)),
-        Node::Square(inner, _)
-        | Node::Power(inner)
-        | Node::Scope(inner)
-        | Node::Argument(_, inner)
-        | Node::Switch(_, inner) => replace_in(inner, number, by),
-        Node::Bind(_) => {}
+/// A letter that is gone: its instruction binds nothing.
+fn drop_place(sketch: &mut Sketch, place: u32) {
+    if let Some(op) = sketch.code.iter_mut().find(|op| **op == Op::Place(place)) {
+        *op = Op::Bind(0, 0);
     }
 }
 

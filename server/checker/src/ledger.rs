@@ -136,11 +136,11 @@ fn same_letters(one: &[CompactString], two: &[CompactString]) -> bool {
 pub fn rows(sketch: &Sketch, choice: &Choice) -> Vec<TermRow> {
     let mut out = Vec::new();
     for (side, held) in sketch.sides.iter().enumerate() {
-        for (term, node) in held.terms.iter().enumerate() {
+        for (term, (node, inside)) in sketch.side_terms(held).enumerate() {
             let any = node.any || node.shorthand;
             let mut row = TermRow { side, term, span: node.span, any, free: Vec::new(), summed: Vec::new() };
             for (number, letter) in sketch.letter_numbers().zip(&sketch.letters) {
-                let state = term_state(sketch, choice, node, number);
+                let state = term_state(sketch, choice, (node, inside), number);
                 if let Some(place) = state.free {
                     row.free.push((letter.clone(), place));
                 } else if state.summed {

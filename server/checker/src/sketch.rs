@@ -7,6 +7,7 @@
 
 mod build;
 mod doubts;
+mod draft;
 mod habits;
 mod scripts;
 
@@ -21,8 +22,14 @@ use crate::conventions::built_in::LetterClass;
 pub struct Sketch {
     /// The statement's place.
     pub span: Span,
-    /// One node for each side.
+    /// Its sides.
     pub sides: Vec<Side>,
+    /// How their letters are held together.
+    pub code: Vec<Op>,
+    /// The terms of all sums.
+    pub terms: Vec<Term>,
+    /// Letters that sum signs bind, each perhaps under a switch.
+    pub bound: Vec<(CompactString, Option<u32>)>,
     /// Between the sides.
     pub relations: Vec<RelationKind>,
     /// Letters in scripts.
@@ -50,25 +57,34 @@ pub struct Sketch {
 }
 
 /// A side of a statement.
-#[derive(Clone, Debug)]
+#[derive(Clone, Copy, Debug)]
 pub struct Side {
     /// Its place.
     pub span: Span,
-    /// Its terms.
-    pub terms: Vec<TermNode>,
+    /// Its terms: a run of `Op::Term`s in the code.
+    pub code: Run,
+    /// How many terms.
+    pub terms: u32,
     /// Whether it matches anything: zero, words, a list.
     pub any: bool,
     /// Whether it is zero.
     pub zero: bool,
 }
 
+/// A stretch of the code.
+#[derive(Clone, Copy, Debug, Default, PartialEq, Eq)]
+pub struct Run {
+    /// The first instruction.
+    pub start: u32,
+    /// One past the last.
+    pub end: u32,
+}
+
 /// A term of a side or of a sum in brackets.
-#[derive(Clone, Debug)]
-pub struct TermNode {
+#[derive(Clone, Copy, Debug)]
+pub struct Term {
     /// Its place.
     pub span: Span,
-    /// Its factors.
-    pub nodes: Vec<Node>,
     /// The letters that stand in it, a bit for each (see `Sketch::bit`).
     pub letters: u64,
     /// Whether it matches anything.
@@ -83,27 +99,39 @@ pub struct TermNode {
     pub shorthand: bool,
 }
 
-/// How letters are held together.
-#[derive(Clone, Debug)]
-pub enum Node {
+/// How letters are held together, as a list of instructions: what holds others says where they end. One flat list
+/// for a statement, since the count walks it many times.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Op {
     /// A letter in a script.
     Place(u32),
-    /// Factors, local to nothing.
-    Product(Vec<Node>),
-    /// A sum in brackets.
-    Sum(Vec<TermNode>),
+    /// A sum in brackets; its terms follow.
+    Sum(u32),
+    /// A term, by its number; its factors follow.
+    Term(u32, u32),
     /// A square: closes the free indices inside while the switch is on.
-    Square(Box<Node>, u32),
+    Square(u32, u32),
     /// Another power: a free index inside is not judged.
-    Power(Box<Node>),
+    Power(u32),
     /// The argument of a function: its dummies are local to it.
-    Scope(Box<Node>),
+    Scope(u32),
     /// An argument: counts only while the switch is on; else a term that lacks a letter may have it from here.
-    Argument(u32, Box<Node>),
+    Argument(u32, u32),
     /// Counts only while the switch is on.
-    Switch(u32, Box<Node>),
-    /// A sum sign: letters bound in the rest of the product, each perhaps under a switch.
-    Bind(Vec<(CompactString, Option<u32>)>),
+    Switch(u32, u32),
+    /// A sum sign: these letters (of `Sketch::bound`) are bound in the rest of the product.
+    Bind(u32, u32),
+}
+
+impl Op {
+    /// Where what it holds ends, if it holds anything.
+    pub(crate) fn end_mut(&mut self) -> Option<&mut u32> {
+        match self {
+            Self::Place(_) | Self::Bind(..) => None,
+            Self::Sum(end) | Self::Power(end) | Self::Scope(end) => Some(end),
+            Self::Term(_, end) | Self::Square(_, end) | Self::Argument(_, end) | Self::Switch(_, end) => Some(end),
+        }
+    }
 }
 
 /// A letter in a script.
@@ -230,34 +258,47 @@ impl Sketch {
             });
             place.number = u16::try_from(at).unwrap_or(u16::MAX);
         }
-        for term in self.sides.iter_mut().flat_map(|side| &mut side.terms) {
-            settle_term(term, &self.places);
+        for at in 0..self.code.len() {
+            if let Some(Op::Term(term, end)) = self.code.get(at).copied() {
+                let inside = self.code.get(at..end as usize).unwrap_or_default();
+                let letters = inside.iter().fold(0, |letters, op| match op {
+                    Op::Place(place) => letters | self.place(*place).map_or(0, |place| Self::bit(place.number)),
+                    _ => letters,
+                });
+                if let Some(term) = self.terms.get_mut(term as usize) {
+                    term.letters = letters;
+                }
+            }
+        }
+    }
+
+    /// The terms of a side, each with its factors.
+    pub fn side_terms(&self, side: &Side) -> impl Iterator<Item = (&Term, Run)> {
+        let mut at = side.code.start;
+        std::iter::from_fn(move || {
+            let Some(Op::Term(number, end)) = self.code.get(at as usize).copied().filter(|_| at < side.code.end) else {
+                return None;
+            };
+            let inside = Run { start: at + 1, end };
+            at = end;
+            self.terms.get(number as usize).map(|term| (term, inside))
+        })
+    }
+
+    /// Puts an instruction after another.
+    pub(crate) fn insert_after(&mut self, at: usize, op: Op) {
+        let Ok(behind) = u32::try_from(at + 1) else { return };
+        self.code.insert(at + 1, op);
+        let ends = self.code.iter_mut().enumerate().filter(|(n, _)| *n != at + 1);
+        ends.filter_map(|(_, op)| op.end_mut()).filter(|end| **end >= behind).for_each(|end| *end += 1);
+        for side in &mut self.sides {
+            side.code.start += u32::from(side.code.start >= behind);
+            side.code.end += u32::from(side.code.end >= behind);
         }
     }
 
     /// The place of a number.
     pub fn place(&self, number: u32) -> Option<&Place> {
         self.places.get(number as usize)
-    }
-}
-
-fn settle_term(term: &mut TermNode, places: &[Place]) {
-    term.letters = term.nodes.iter_mut().fold(0, |letters, node| letters | settle_node(node, places));
-}
-
-fn settle_node(node: &mut Node, places: &[Place]) -> u64 {
-    match node {
-        Node::Place(number) => places.get(*number as usize).map_or(0, |place| Sketch::bit(place.number)),
-        Node::Product(nodes) => nodes.iter_mut().fold(0, |letters, node| letters | settle_node(node, places)),
-        Node::Sum(terms) => terms.iter_mut().fold(0, |letters, term| {
-            settle_term(term, places);
-            letters | term.letters
-        }),
-        Node::Square(inner, _)
-        | Node::Power(inner)
-        | Node::Scope(inner)
-        | Node::Argument(_, inner)
-        | Node::Switch(_, inner) => settle_node(inner, places),
-        Node::Bind(_) => 0,
     }
 }

@@ -4,7 +4,7 @@
 //! letter and allocates only where events are asked for.
 
 use crate::conventions::built_in::{LetterClass, class_of, is_derivative};
-use crate::sketch::{Node, Place, Shape, Sketch, TermNode};
+use crate::sketch::{Op, Place, Run, Shape, Sketch, Term};
 
 use super::{Choice, Compared, Event, Odd, compared_groups};
 
@@ -89,7 +89,7 @@ impl<'a> Count<'a> {
             let mut compared = Comparison::default();
             let mut odd = Odd::Balanced;
             for (number, side) in (0_u32..).zip(&sketch.sides) {
-                odd = odd.max(self.terms(&side.terms, false, Some(number), &mut compared).odd);
+                odd = odd.max(self.terms(side.code, false, Some(number), &mut compared).odd);
             }
             return odd.max(self.compare(compared));
         };
@@ -98,7 +98,7 @@ impl<'a> Count<'a> {
             let mut compared = Comparison::default();
             for ((number, side), own) in (0_u32..).zip(&sketch.sides).zip(&groups) {
                 if *own == group {
-                    odd = odd.max(self.terms(&side.terms, false, Some(number), &mut compared).odd);
+                    odd = odd.max(self.terms(side.code, false, Some(number), &mut compared).odd);
                 }
             }
             odd = odd.max(self.compare(compared));
@@ -107,12 +107,12 @@ impl<'a> Count<'a> {
     }
 
     /// One term: its free place and a place of a summed pair.
-    pub(super) fn term(&mut self, term: &TermNode) -> (Option<u32>, Option<u32>) {
+    pub(super) fn term(&mut self, term: &Term, inside: Run) -> (Option<u32>, Option<u32>) {
         if term.letters & self.bit == 0 {
             return (None, None);
         }
         let mut tally = Tally::default();
-        self.product(&term.nodes, &mut false, &mut tally);
+        self.product(inside, &mut false, &mut tally);
         let settled = self.settle(tally);
         (settled.open.first(), settled.closed)
     }
@@ -131,15 +131,17 @@ impl<'a> Count<'a> {
     }
 
     /// Settles every term of a sum; those that can be compared are added to `out`.
-    fn terms(&mut self, terms: &[TermNode], bound: bool, side: Option<u32>, out: &mut Comparison) -> Tally {
+    fn terms(&mut self, run: Run, bound: bool, side: Option<u32>, out: &mut Comparison) -> Tally {
         let reach = self.sketch.reach.is_some_and(|switch| self.is_on(switch));
         let mut sum = Tally::default();
         let mut bound_so_far = bound;
-        for term in terms {
+        let mut at = run.start;
+        while let Some((term, inside)) = self.term_at(at, run) {
+            at = inside.end;
             let mut bound_here = bound_so_far;
             let mut tally = Tally::default();
             if reach || term.letters & self.bit != 0 {
-                self.product(&term.nodes, &mut bound_here, &mut tally);
+                self.product(inside, &mut bound_here, &mut tally);
             }
             if reach {
                 bound_so_far = bound_here;
@@ -169,7 +171,7 @@ impl<'a> Count<'a> {
         sum
     }
 
-    fn note(&self, term: &TermNode, free: Option<u32>, side: Option<u32>, out: &mut Comparison) {
+    fn note(&self, term: &Term, free: Option<u32>, side: Option<u32>, out: &mut Comparison) {
         out.terms += 1;
         out.free += usize::from(free.is_some());
         out.lacking += usize::from(free.is_none() && !term.number);
@@ -203,81 +205,102 @@ impl<'a> Count<'a> {
         }
     }
 
-    fn product(&mut self, nodes: &[Node], bound: &mut bool, out: &mut Tally) {
-        for node in nodes {
-            self.node(node, bound, out);
+    /// The term that begins at an instruction of a run.
+    fn term_at(&self, at: u32, run: Run) -> Option<(&'a Term, Run)> {
+        if at >= run.end {
+            return None;
+        }
+        let Op::Term(number, end) = self.sketch.code.get(at as usize).copied()? else { return None };
+        self.sketch.terms.get(number as usize).map(|term| (term, Run { start: at + 1, end }))
+    }
+
+    fn product(&mut self, run: Run, bound: &mut bool, out: &mut Tally) {
+        let mut at = run.start;
+        while at < run.end {
+            let Some(op) = self.sketch.code.get(at as usize).copied() else { return };
+            at = self.op(op, at + 1, bound, out);
         }
     }
 
-    fn node(&mut self, node: &Node, bound: &mut bool, out: &mut Tally) {
-        match node {
-            Node::Place(number) => {
-                if !*bound && self.is_index(*number) {
-                    out.open.push(*number);
+    /// One instruction; what it holds begins at `inside`. Returns where the next one stands.
+    fn op(&mut self, op: Op, inside: u32, bound: &mut bool, out: &mut Tally) -> u32 {
+        match op {
+            Op::Place(number) => {
+                if !*bound && self.is_index(number) {
+                    out.open.push(number);
                 }
+                inside
             }
-            Node::Product(nodes) => self.product(nodes, bound, out),
-            Node::Sum(terms) => {
-                if terms.iter().any(|term| term.letters & self.bit != 0) {
-                    let sum = self.sum(terms, *bound);
-                    out.add(sum);
-                }
+            Op::Sum(end) | Op::Term(_, end) => {
+                let sum = self.sum(Run { start: inside, end }, *bound);
+                out.add(sum);
+                end
             }
-            Node::Square(inner, switch) => {
-                let mut tally = self.alone(inner, bound);
-                if self.is_on(*switch) && tally.open.count == 1 {
+            Op::Square(switch, end) => {
+                let mut tally = self.alone(inside, end, bound);
+                if self.is_on(switch) && tally.open.count == 1 {
                     tally.closed = tally.open.first();
                     tally.open = Open::default();
                 }
                 out.add(tally);
+                end
             }
-            Node::Power(inner) => {
-                let mut tally = self.alone(inner, bound);
+            Op::Power(end) => {
+                let mut tally = self.alone(inside, end, bound);
                 tally.skip |= tally.open.count == 1;
                 tally.open = Open::default();
                 out.add(tally);
+                end
             }
-            Node::Scope(inner) => {
-                let tally = self.alone(inner, bound);
+            Op::Scope(end) => {
+                let tally = self.alone(inside, end, bound);
                 out.add(Tally { closed: None, ..tally });
+                end
             }
-            Node::Argument(switch, inner) if !self.is_on(*switch) => {
-                let inside = self.alone(inner, bound);
+            Op::Argument(switch, end) if !self.is_on(switch) => {
+                let held = self.alone(inside, end, bound);
                 // An argument by its looks; one that only might be one lends nothing.
-                let likely = self.sketch.switches.get(*switch as usize).is_some_and(|switch| !switch.on);
-                out.lent |= likely && inside.open.count > 0;
+                let likely = self.sketch.switches.get(switch as usize).is_some_and(|switch| !switch.on);
+                out.lent |= likely && held.open.count > 0;
+                end
             }
-            Node::Argument(_, inner) => self.node(inner, bound, out),
-            Node::Switch(switch, inner) => {
-                if self.is_on(*switch) {
-                    self.node(inner, bound, out);
+            Op::Argument(_, end) => {
+                self.product(Run { start: inside, end }, bound, out);
+                end
+            }
+            Op::Switch(switch, end) => {
+                if self.is_on(switch) {
+                    self.product(Run { start: inside, end }, bound, out);
                 }
+                end
             }
-            Node::Bind(letters) => {
+            Op::Bind(start, end) => {
+                let letters = self.sketch.bound.get(start as usize..end as usize).unwrap_or_default();
                 let name = self.name();
                 let binds = |(letter, switch): &(compact_str::CompactString, Option<u32>)| {
                     letter == name && switch.is_none_or(|switch| self.is_on(switch))
                 };
                 *bound |= letters.iter().any(binds);
+                inside
             }
         }
     }
 
-    fn alone(&mut self, node: &Node, bound: &mut bool) -> Tally {
+    fn alone(&mut self, start: u32, end: u32, bound: &mut bool) -> Tally {
         let mut tally = Tally::default();
-        self.node(node, bound, &mut tally);
+        self.product(Run { start, end }, bound, &mut tally);
         tally
     }
 
     /// A sum in brackets brings a free index to the product around it; its dummies are its own.
-    fn sum(&mut self, terms: &[TermNode], bound: bool) -> Tally {
+    fn sum(&mut self, run: Run, bound: bool) -> Tally {
         let mut compared = Comparison::default();
-        let mut tally = self.terms(terms, bound, None, &mut compared);
+        let mut tally = self.terms(run, bound, None, &mut compared);
         if let Some(free) = compared.first_free {
             tally.open.push(free);
         }
         tally.skip &= compared.terms == 0;
-        if terms.len() > 1 {
+        if compared.terms > 1 {
             tally.odd = tally.odd.max(self.compare(compared));
         }
         tally

@@ -101,7 +101,7 @@ impl Evidence {
     }
 
     fn vote_balance(&mut self, sketch: &Sketch, reading: &Reading) {
-        if sketch.sides.len() < 2 && sketch.sides.iter().all(|side| side.terms.len() < 2) {
+        if sketch.sides.len() < 2 && sketch.sides.iter().all(|side| side.terms < 2) {
             return;
         }
         let mut seen = [false; 5];

@@ -56,5 +56,7 @@ fn check(judged: &Judged<'_>) -> Option<Report> {
 /// The term of a side that a place stands in.
 fn term_of(judged: &Judged<'_>, place: u32) -> Option<Span> {
     let at = judged.span(place);
-    judged.sketch.sides.iter().flat_map(|side| &side.terms).map(|term| term.span).find(|span| span.holds(at))
+    let sketch = &judged.sketch;
+    let mut spans = sketch.sides.iter().flat_map(|side| sketch.side_terms(side)).map(|(term, _)| term.span);
+    spans.find(|span| span.holds(at))
 }

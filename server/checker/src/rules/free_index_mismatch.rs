@@ -232,7 +232,7 @@ impl Disagreement {
         } else {
             format!("the {}", side_title(sides, side)).replace("the side", "side")
         };
-        let terms = judged.sketch.sides.get(side).map_or(0, |side| side.terms.len());
+        let terms = judged.sketch.sides.get(side).map_or(0, |side| side.terms);
         if terms < 2 { title } else { format!("{} of {title}", excerpt(term.span.of(judged.text))) }
     }
 

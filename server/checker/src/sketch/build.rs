@@ -11,12 +11,13 @@ use indexwise_grammar::tree::{
 use crate::conventions::built_in::{is_basis_kernel, is_derivative};
 
 use super::doubts::{NAME_DOUBT, cast_doubts, listed_coordinates};
+use super::draft::{Node, TermNode, add_side};
 use super::habits::{
     argument_odds, is_differential, is_lone_derivative, is_lone_kernel, is_number, is_numeric, is_scalar_product,
     is_zero, letters_of, matches_anything,
 };
 use super::scripts::{Carrier, Power, read_scripts};
-use super::{Node, Shape, Side, Sketch, Switch, TermNode, Unit};
+use super::{Shape, Sketch, Switch, Unit};
 
 /// Price of taking several parts in a bracket for components rather than arguments or a commutator.
 const LIST_PRICE: i32 = 10;
@@ -29,8 +30,7 @@ pub(super) fn sketch(statement: &Statement) -> Sketch {
     builder.sketch.relations = statement.relations.iter().map(|relation| relation.kind).collect();
     for side in &statement.sides {
         let terms: Vec<TermNode> = side.terms.iter().map(|term| builder.term(term, false)).collect();
-        let any = terms.iter().all(|term| term.any);
-        builder.sketch.sides.push(Side { span: side.span, terms, any, zero: is_zero(side) });
+        add_side(&mut builder.sketch, side.span, &terms, is_zero(side));
     }
     let mut sketch = builder.sketch;
     cast_doubts(&mut sketch, &builder.named);
@@ -90,16 +90,7 @@ impl Builder {
         let bare = self.sketch.places.len() == places;
         let (any, shorthand) = (walk.any, bare && walk.vector && !is_scalar_product(term));
         let number = !term.factors.is_empty() && term.factors.iter().all(is_numeric);
-        TermNode {
-            span: term.span,
-            nodes: walk.nodes,
-            letters: 0,
-            any,
-            loose: walk.loose,
-            number,
-            shorthand,
-            opaque: walk.opaque,
-        }
+        TermNode { span: term.span, nodes: walk.nodes, any, loose: walk.loose, number, shorthand, opaque: walk.opaque }
     }
 
     fn factor(&mut self, walk: &mut Walk<'_>, factor: &Factor) {

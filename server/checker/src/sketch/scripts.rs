@@ -10,7 +10,8 @@ use crate::conventions::built_in::{
 };
 
 use super::build::Builder;
-use super::{Node, Place, Shape, Stacked, Switch, Unit};
+use super::draft::Node;
+use super::{Place, Shape, Stacked, Switch, Unit};
 
 /// Who carries the scripts.
 #[derive(Clone, Copy)]
