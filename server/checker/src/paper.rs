@@ -305,7 +305,8 @@ fn judge_document(
             *flag |= any_index;
         }
         reading.odd.retain(|(letter, _)| prices.is_index_notation(letter));
-        if sketch.unjudged.is_none() && !formula.no_sum && prices.trusts(&sketch.unknown) {
+        let no_sum = formula.no_sum || says_no_sum(document.read.text, formula.span.end);
+        if sketch.unjudged.is_none() && !no_sum && prices.trusts(&sketch.unknown) {
             let mut faults = rules::faults::faults(sketch, &reading.choice, &prices);
             faults.retain(|fault| fault.letter().is_none_or(|letter| prices.is_index_notation(letter)));
             let (text, sketch) = (document.read.text, Cow::Borrowed(sketch));
@@ -323,6 +324,14 @@ fn judge_document(
         unknown_macros: formulas.iter().zip(&indexed).filter(|(f, flag)| **flag && !f.unknown.is_empty()).count(),
     };
     DocumentAnalysis { statistics, findings: directed(&document.read.declared, formulas, findings, missing) }
+}
+
+/// Whether the words right after a formula say that no sum is meant.
+fn says_no_sum(text: &str, end: u32) -> bool {
+    const WORDS: usize = 40;
+    let after = text.get(end as usize..).unwrap_or_default();
+    let words: String = after.chars().take(WORDS).collect::<String>().to_lowercase();
+    ["no sum", "not summed", "without sum"].iter().any(|phrase| words.contains(phrase))
 }
 
 /// The formulas that the author says to skip: they neither vote nor are judged.

@@ -17,12 +17,17 @@ pub const MARGIN: i32 = 40;
 const CHEAP: i32 = 15;
 /// How much it speaks against an index that nothing in the statement repeats.
 const LONE_DOUBT: i32 = 16;
+/// Price of taking a third letter in a product for a label of that name.
+const COINCIDENCE: i32 = 15;
 /// Price of another letter on a kernel whose scripts are labels already.
 const REPEATED: i32 = 3;
 /// Units of one letter that are tried in all combinations; further ones keep their likelier reading.
 const UNITS_TRIED: usize = 6;
 /// Switches that are tried singly and in pairs.
 const SWITCHES_TRIED: usize = 10;
+/// Switches that are taken one after the other, and those that are looked at for it.
+const SWITCHES_CLIMBED: usize = 4;
+const SWITCHES_SEEN: usize = 24;
 
 /// A reading of a statement.
 #[derive(Clone, Debug, Default)]
@@ -33,6 +38,10 @@ pub struct Reading {
     pub cost: i32,
     /// Letters out of balance in it; none if the statement is clean.
     pub odd: Vec<(compact_str::CompactString, Odd)>,
+    /// Letters that are in balance only because some place of theirs is read against the evidence.
+    pub excused: Vec<u16>,
+    /// The likeliest choice, before anything was read against the evidence.
+    pub likely: Choice,
 }
 
 /// Reads a statement by the scores of its units, in their order.
@@ -46,24 +55,48 @@ pub fn read(sketch: &Sketch, mut scores: Vec<i32>) -> Reading {
     if best.odd.is_empty() && best.cost == 0 || sketch.unjudged.is_some() {
         return best;
     }
-    for flips in switch_flips(sketch) {
+    let mut tried = |flips: &[usize], best: &mut Reading| {
         let mut choice = likely.clone();
         let mut cost = 0;
         for switch in flips {
-            if let (Some(on), Some(price)) = (choice.on.get_mut(switch), sketch.switches.get(switch)) {
+            if let (Some(on), Some(price)) = (choice.on.get_mut(*switch), sketch.switches.get(*switch)) {
                 *on = !*on;
                 cost += price.price;
             }
         }
         if cost > MARGIN || (best.odd.is_empty() && cost >= best.cost) {
-            continue;
+            return false;
         }
         let reading = try_letters(sketch, &scores, choice, cost);
-        if rank(&reading) < rank(&best) {
-            best = reading;
+        let better = rank(&reading) < rank(best);
+        if better {
+            *best = reading;
         }
+        better
+    };
+    climb(sketch, &mut best, &mut tried);
+    for flips in switch_flips(sketch) {
+        tried(&flips, &mut best);
     }
     best
+}
+
+/// Takes the best switch, then the best one more, as long as that helps.
+fn climb(sketch: &Sketch, best: &mut Reading, tried: &mut impl FnMut(&[usize], &mut Reading) -> bool) {
+    let mut taken: Vec<usize> = Vec::new();
+    while !best.odd.is_empty() && taken.len() < SWITCHES_CLIMBED {
+        let mut next = None;
+        for switch in (0..sketch.switches.len().min(SWITCHES_SEEN)).filter(|switch| !taken.contains(switch)) {
+            let with: Vec<usize> = taken.iter().copied().chain([switch]).collect();
+            if tried(&with, best) {
+                next = Some(switch);
+            }
+        }
+        match next {
+            Some(switch) => taken.push(switch),
+            None => return,
+        }
+    }
 }
 
 /// `Z = a_f / a_i`: where no letter stands twice and none shares its kernel, letters are labels more readily.
@@ -97,11 +130,19 @@ fn switch_flips(sketch: &Sketch) -> Vec<Vec<usize>> {
     out
 }
 
+/// A letter out of balance in the likeliest choice, and what would put it right.
+struct Wanted<'s> {
+    number: u16,
+    letter: &'s compact_str::CompactString,
+    odd: Odd,
+    price: i32,
+    flips: Option<Vec<usize>>,
+}
+
 /// The cheapest balance of each letter under fixed switches.
-fn try_letters(sketch: &Sketch, scores: &[i32], mut choice: Choice, cost: i32) -> Reading {
-    let likely = choice.clone();
-    let mut wanted: Vec<(&str, Odd, i32, Option<Vec<usize>>)> = Vec::new();
+fn try_letters(sketch: &Sketch, scores: &[i32], choice: Choice, cost: i32) -> Reading {
     let mut total = cost;
+    let mut wanted = Vec::new();
     // That a kernel's scripts are labels is one assumption, however many letters stand on it.
     let mut assumed: Vec<(&str, i32)> = Vec::new();
     for (number, letter) in sketch.letter_numbers().zip(&sketch.letters) {
@@ -109,38 +150,45 @@ fn try_letters(sketch: &Sketch, scores: &[i32], mut choice: Choice, cost: i32) -
         if odd == Odd::Balanced {
             continue;
         }
-        let flips = cheapest_flips(sketch, scores, number, &likely);
-        let price = flips.as_ref().map_or(MARGIN + 1, |(price, _)| *price);
-        match &flips {
-            None => total += price,
+        // A label that happens to have the letter of a dummy in its product would be a coincidence.
+        let coincidence = if matches!(odd, Odd::Thrice | Odd::Captured) { COINCIDENCE } else { 0 };
+        let flips = cheapest_flips(sketch, scores, number, &choice);
+        let price = flips.as_ref().map_or(MARGIN + 1, |(price, _)| *price + coincidence);
+        total += match &flips {
+            None => price,
             Some((_, units)) => {
-                total += units.iter().map(|unit| assume(sketch, scores, *unit, &mut assumed)).sum::<i32>()
+                coincidence + units.iter().map(|unit| assume(sketch, scores, *unit, &mut assumed)).sum::<i32>()
             }
-        }
-        wanted.push((letter, odd, price, flips.map(|(_, units)| units)));
+        };
+        wanted.push(Wanted { number, letter, odd, price, flips: flips.map(|(_, units)| units) });
     }
-    let clean = total <= MARGIN;
-    // A letter that no reading puts in balance is wrong for certain; letters of other kinds that a label would excuse
-    // are then no part of it.
+    settle(choice, cost, total <= MARGIN, wanted)
+}
+
+/// Takes the flips that excuse a letter: all of them if the statement is clean by them. Otherwise a letter that no
+/// reading puts in balance is wrong for certain, and letters of other kinds that a label would excuse are no part of
+/// it.
+fn settle(likely: Choice, cost: i32, clean: bool, wanted: Vec<Wanted<'_>>) -> Reading {
     let certain: Vec<LetterClass> =
-        wanted.iter().filter(|(.., flips)| flips.is_none()).map(|(letter, ..)| class_of(letter)).collect();
-    let mut odd = Vec::new();
-    let mut paid = cost;
-    for (letter, kind, price, flips) in wanted {
-        let apart = !certain.is_empty() && !certain.contains(&class_of(letter));
-        match flips.filter(|_| clean || apart || price <= CHEAP) {
+        wanted.iter().filter(|one| one.flips.is_none()).map(|one| class_of(one.letter)).collect();
+    let mut reading = Reading { choice: likely.clone(), cost, likely, ..Reading::default() };
+    for one in wanted {
+        let apart = !certain.is_empty() && !certain.contains(&class_of(one.letter));
+        let cheap = one.price <= CHEAP && certain.is_empty();
+        match one.flips.filter(|_| clean || apart || cheap) {
             Some(units) => {
-                paid += price;
+                reading.cost += one.price;
+                reading.excused.push(one.number);
                 for unit in units {
-                    if let Some(index) = choice.index.get_mut(unit) {
+                    if let Some(index) = reading.choice.index.get_mut(unit) {
                         *index = !*index;
                     }
                 }
             }
-            None => odd.push((letter.into(), kind)),
+            None => reading.odd.push((one.letter.clone(), one.odd)),
         }
     }
-    Reading { choice, cost: paid, odd }
+    reading
 }
 
 /// What reading one more unit the other way adds: the whole price for a new kernel, else what it is dearer than the

@@ -98,6 +98,9 @@ pub fn find(name: &str) -> Option<&'static Rule> {
 pub(crate) fn check_statement(judged: &Judged<'_>) -> Vec<Finding> {
     let broken = !judged.faults.is_empty() || !judged.sketch.swallowed.is_empty();
     let mut out = if broken { balance_findings(judged.clone()) } else { Vec::new() };
+    if judged.reading.odd.is_empty() && !judged.reading.excused.is_empty() {
+        out.extend(unsummed_repeat::excused(judged));
+    }
     for rule in RULES {
         if let Check::Beside(check) = rule.check {
             out.extend(check(judged));

@@ -317,7 +317,7 @@ impl Prices<'_> {
             let kernel = self.count(|evidence| evidence.label_kernel.get(&unit.kernel).copied());
             let kernel = steps(others(kernel)).min(3);
             let other = steps(others(self.count(|evidence| evidence.label_letter.get(letter).copied()))).min(3);
-            let usual = matches!(super::built_in::bare_letter(letter), "i" | "j" | "k" | "l");
+            let usual = matches!(letter.as_str(), "i" | "j" | "k" | "l" | "a" | "b" | "c" | "d");
             let greek_up = unit.class == LetterClass::Greek && unit.level == Level::Up && unit.bias > 20;
             match (usual, greek_up) {
                 (true, _) => 6 * index - 4 * kernel - 4 * other,

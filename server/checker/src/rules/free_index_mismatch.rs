@@ -33,7 +33,7 @@ fn check(judged: &Judged<'_>) -> Option<Report> {
         rule: RULE.name,
         severity: severity(judged, &mends),
         span,
-        message: plain_message(judged, &mends).unwrap_or_else(|| disagreement.message(judged, &odd)),
+        message: plain_message(judged, &mends).unwrap_or_else(|| disagreement.message(judged, &odd, span)),
         related: disagreement.related(judged, span),
         fixes: fixes(judged, &mends, clear_winner(&mends)),
         ledger: Some(judged.view(&odd)),
@@ -191,9 +191,39 @@ impl Disagreement {
         Some(judged.span(holder))
     }
 
-    fn message(&self, judged: &Judged<'_>, odd: &[CompactString]) -> String {
+    fn message(&self, judged: &Judged<'_>, odd: &[CompactString], span: Span) -> String {
+        if let Some(tie) = self.tie(judged, odd, span) {
+            return tie;
+        }
         let clauses: Vec<String> = odd.iter().filter_map(|letter| self.clause(judged, letter)).take(3).collect();
         if clauses.is_empty() { "the terms differ in their free indices".to_owned() } else { clauses.join("; ") }
+    }
+
+    /// Of two letters each is free where the other is not: "l is free (down) in the right side, but k in the left side".
+    fn tie(&self, judged: &Judged<'_>, odd: &[CompactString], span: Span) -> Option<String> {
+        let [one, two] = odd else { return None };
+        let free = |letter: &CompactString| -> Vec<&Compared> {
+            self.terms.iter().filter(|(term, l)| l == letter && term.free.is_some()).map(|(term, _)| term).collect()
+        };
+        let (first, second) = (free(one), free(two));
+        let all = self.terms.iter().filter(|(_, letter)| letter == one).count();
+        let apart = first.iter().all(|term| second.iter().all(|other| other.span != term.span));
+        if !apart || first.len() + second.len() != all || first.is_empty() || second.is_empty() {
+            return None;
+        }
+        let blamed_first = first.iter().filter_map(|term| term.free).any(|place| judged.span(place) == span);
+        let (blamed, theirs, other, others) =
+            if blamed_first { (one, first, two, second) } else { (two, second, one, first) };
+        let words = |letter: &CompactString, terms: &[&Compared]| {
+            let place = terms.iter().find_map(|term| term.free).unwrap_or_default();
+            let level = judged.level(place);
+            let level = if level.is_empty() { String::new() } else { format!(" ({level})") };
+            let names = gather(terms.iter().map(|term| self.name(judged, term, judged.sketch.sides.len())));
+            let names = if names.len() > 2 { "the others".to_owned() } else { listed(&names) };
+            (format!("{}{level}", shown(letter)), names)
+        };
+        let ((blamed, here), (other, there)) = (words(blamed, &theirs), words(other, &others));
+        Some(format!("{blamed} is free in {here}, but {other} in {there}"))
     }
 
     /// "k is free on the left (down), but not on the right".

@@ -19,6 +19,22 @@ pub(super) const RULE: Rule = Rule {
     check: Check::Balance(check),
 };
 
+/// The same where the statement is excused: one of the letters may be read as a name, so that it is in balance.
+pub(super) fn excused(judged: &Judged<'_>) -> Vec<Finding> {
+    let mut out = Vec::new();
+    for number in &judged.reading.excused {
+        let Some(letter) = judged.sketch.letters.get(*number as usize) else { continue };
+        let mut likely = judged.clone();
+        likely.reading.choice = judged.reading.likely.clone();
+        let usual = matches!(letter.as_str(), "i" | "j" | "k" | "l");
+        let alone = likely.rows().iter().all(|row| row.summed.iter().all(|summed| summed == letter));
+        if let Some((first, second)) = repeat(&likely, letter).filter(|_| usual && alone) {
+            out.push(finding(&likely, letter, first, second));
+        }
+    }
+    out
+}
+
 fn check(judged: &Judged<'_>) -> Option<Report> {
     let odd = odd_by(judged, Odd::Mismatch);
     // Another letter out of balance means another slip: then this is no habit.
@@ -27,7 +43,11 @@ fn check(judged: &Judged<'_>) -> Option<Report> {
         return None;
     }
     let (first, second) = repeat(judged, letter)?;
-    let finding = Finding {
+    Some(Report { finding: finding(judged, letter, first, second), mended: None })
+}
+
+fn finding(judged: &Judged<'_>, letter: &CompactString, first: u32, second: u32) -> Finding {
+    Finding {
         rule: RULE.name,
         severity: RULE.severity,
         span: judged.span(second),
@@ -37,9 +57,8 @@ fn check(judged: &Judged<'_>) -> Option<Report> {
         ),
         related: vec![Related { span: judged.span(first), message: "the first of the two".to_owned() }],
         fixes: Vec::new(),
-        ledger: Some(judged.view(&odd)),
-    };
-    Some(Report { finding, mended: None })
+        ledger: Some(judged.view(std::slice::from_ref(letter))),
+    }
 }
 
 /// The pair of a term that lacks the free letter, if every such term has one, on one level, each on a kernel of its

@@ -180,9 +180,11 @@ impl Builder {
                 return;
             }
             let Some((on, price)) = argument_odds(kernel, group, indexed) else { return };
+            let own = self.sketch.places.len();
             walk.at += 1;
             let nodes =
                 group.parts.iter().flat_map(|part| &part.sides).map(|side| self.sum_only(side, walk.flip)).collect();
+            let on = on || indexed && self.contracts(own);
             let switch = self.switch(Switch { on, price });
             let map = walk.factors.len() == 2 && !on || group.parts.len() > 1;
             if walk.at == walk.factors.len() && !indexed && walk.loose.is_none() && map {
@@ -232,6 +234,16 @@ impl Builder {
             return self.powered(walk, node, scripts.power);
         }
         self.scripted_group(walk, factor, node, flip);
+    }
+
+    /// Whether the places from a number on share a letter with the script right before them.
+    fn contracts(&self, from: usize) -> bool {
+        let (before, inside) = self.sketch.places.split_at(from.min(self.sketch.places.len()));
+        let kernel = before.last().map(|place| place.unit).and_then(|unit| self.sketch.units.get(unit as usize));
+        let mut own = before.iter().rev().take_while(|place| {
+            self.sketch.units.get(place.unit as usize).map(|unit| &unit.kernel) == kernel.map(|unit| &unit.kernel)
+        });
+        own.any(|place| inside.iter().any(|other| other.letter == place.letter))
     }
 
     /// A lone bar evaluates, or it differentiates covariantly: `m^{\alpha\beta}|_\beta`.

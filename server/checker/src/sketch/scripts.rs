@@ -440,6 +440,8 @@ fn bias(carrier: Carrier<'_>, candidate: &Candidate<'_>, shape: Shape, component
     };
     let by_number = if candidate.after_number || candidate.mixed {
         -40
+    } else if shape == Shape::Lone && candidate.letter.contains('_') {
+        -12
     } else if candidate.letter.contains("tilde") {
         -50
     } else {
