@@ -124,7 +124,7 @@ pub fn check(paper: &Paper, settings: &Settings, cancel: &Cancel) -> Analysis {
         let prices =
             Prices { file: own, paper: &all, declared: &document.read.declared, macros: &document.read.macros };
         let troubles = paper.troubles.iter().filter(|trouble| trouble.document == number);
-        let missing = troubles.map(|trouble| rules::missing_part(trouble, document.read.text)).collect();
+        let missing = troubles.map(|trouble| missing_part(trouble, document.read.text)).collect();
         let mut analysis = judge_document(document, prices, settings, missing);
         analysis.findings.retain(|finding| wanted(finding.rule, settings));
         analysis.findings.sort_by(|a, b| (a.span, a.rule, &a.message).cmp(&(b.span, b.rule, &b.message)));
@@ -324,6 +324,13 @@ fn judge_document(
         unknown_macros: formulas.iter().zip(&indexed).filter(|(f, flag)| **flag && !f.unknown.is_empty()).count(),
     };
     DocumentAnalysis { statistics, findings: directed(&document.read.declared, formulas, findings, missing) }
+}
+
+/// The finding for a part that could not be had; in a preamble only macros are missing by it.
+fn missing_part(trouble: &Trouble, text: &str) -> Finding {
+    let begin = text.find("\\begin{document}");
+    let preamble = trouble.preamble || begin.is_some_and(|begin| (trouble.span.start as usize) < begin);
+    rules::missing_part(trouble.span, &trouble.message, preamble)
 }
 
 /// Whether the words right after a formula say that no sum is meant.

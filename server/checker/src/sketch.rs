@@ -6,6 +6,7 @@
 //! chooses; `balance.rs` judges a choice. A sketch depends on the formula's own tree alone.
 
 mod build;
+mod builder;
 mod doubts;
 mod draft;
 mod habits;

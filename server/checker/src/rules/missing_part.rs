@@ -1,7 +1,8 @@
 //! An included file is missing, cyclic or outside the project.
 
+use indexwise_grammar::span::Span;
+
 use crate::finding::{Finding, Severity};
-use crate::paper::Trouble;
 
 use super::{Check, Rule};
 
@@ -15,14 +16,12 @@ pub(super) const RULE: Rule = Rule {
 };
 
 /// The finding for a part that could not be had. A preamble that is missing is a hint: nothing of the text is.
-pub(crate) fn missing_part(trouble: &Trouble, text: &str) -> Finding {
-    let preamble =
-        trouble.preamble || text.find("\\begin{document}").is_some_and(|begin| (trouble.span.start as usize) < begin);
+pub(crate) fn missing_part(span: Span, message: &str, preamble: bool) -> Finding {
     Finding {
         rule: RULE.name,
         severity: if preamble { Severity::Hint } else { RULE.severity },
-        span: trouble.span,
-        message: trouble.message.clone(),
+        span,
+        message: message.to_owned(),
         related: Vec::new(),
         fixes: Vec::new(),
         ledger: None,

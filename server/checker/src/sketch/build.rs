@@ -10,6 +10,7 @@ use indexwise_grammar::tree::{
 
 use crate::conventions::built_in::{is_basis_kernel, is_derivative};
 
+use super::builder::Builder;
 use super::doubts::{NAME_DOUBT, cast_doubts, listed_coordinates};
 use super::draft::{Node, TermNode, add_side};
 use super::habits::{
@@ -17,7 +18,7 @@ use super::habits::{
     is_zero, letters_of, matches_anything,
 };
 use super::scripts::{Carrier, Power, read_scripts};
-use super::{Shape, Sketch, Switch, Unit};
+use super::{Shape, Sketch, Switch};
 
 /// Price of taking several parts in a bracket for components rather than arguments or a commutator.
 const LIST_PRICE: i32 = 10;
@@ -42,31 +43,7 @@ pub(super) fn sketch(statement: &Statement) -> Sketch {
     sketch
 }
 
-/// Gathers the sketch while the tree is walked.
-#[derive(Default)]
-pub(super) struct Builder {
-    pub sketch: Sketch,
-    /// Letters that name one of several things.
-    named: Vec<CompactString>,
-}
-
 impl Builder {
-    /// The number of a unit, new or known.
-    pub fn unit(&mut self, unit: Unit) -> u32 {
-        let known = self.sketch.units.iter().position(|other| *other == unit);
-        let at = known.unwrap_or_else(|| {
-            self.sketch.units.push(unit);
-            self.sketch.units.len() - 1
-        });
-        u32::try_from(at).unwrap_or(u32::MAX)
-    }
-
-    /// A new switch.
-    pub fn switch(&mut self, switch: Switch) -> u32 {
-        self.sketch.switches.push(switch);
-        u32::try_from(self.sketch.switches.len() - 1).unwrap_or(u32::MAX)
-    }
-
     fn term(&mut self, term: &Term, flip: bool) -> TermNode {
         let places = self.sketch.places.len();
         let mut walk = Walk {

@@ -9,7 +9,7 @@ use crate::conventions::built_in::{
     is_labelled_operator, is_point_kernel, is_usual_coordinate,
 };
 
-use super::build::Builder;
+use super::builder::Builder;
 use super::draft::Node;
 use super::{Place, Shape, Stacked, Switch, Unit};
 
