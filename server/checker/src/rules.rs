@@ -5,6 +5,7 @@
 //! earlier finding is mended, so that one slip is one finding.
 
 mod convention_unreadable;
+mod disagreement;
 mod dummy_captured;
 mod dummy_levels;
 pub(crate) mod faults;

@@ -51,6 +51,9 @@ pub struct Sketch {
     pub coordinates: Vec<CompactString>,
     /// Scripts that hold a whole factor behind a letter.
     pub swallowed: Vec<Swallowed>,
+    /// Every use of a kernel with letters in its scripts: its name and how many letters and numbers stand above and
+    /// below.
+    pub forms: Vec<(CompactString, u8, u8)>,
     /// Stacked kernels: upper and lower scripts one above the other, with the kernel's name.
     pub stacked: Vec<Stacked>,
     /// Why the statement is not judged, if it is not.
@@ -152,6 +155,8 @@ pub struct Place {
     pub script: Span,
     /// How many letters share the script.
     pub company: u16,
+    /// The use of a kernel that it belongs to, as a number of `Sketch::forms`.
+    pub form: u16,
     /// What it is read with.
     pub unit: u32,
 }

@@ -40,6 +40,8 @@ pub struct Evidence {
     balanced: [[u32; 2]; 5],
     /// Unknown commands in statements that balance with their arguments as factors, and that do not.
     unknown: FxHashMap<CompactString, [u32; 2]>,
+    /// Kernels with how many letters and numbers above and below.
+    forms: FxHashMap<(CompactString, u8, u8), u32>,
     /// Kernels that are staggered, and stacked.
     staggered: FxHashMap<(CompactString, u8, u8), [u32; 2]>,
 }
@@ -90,6 +92,9 @@ impl Evidence {
             return;
         }
         self.vote_labels(sketch, reading);
+        for form in &sketch.forms {
+            *self.forms.entry(form.clone()).or_default() += 1;
+        }
         for stacked in &sketch.stacked {
             let counts = self.staggered.entry(stacked.kernel.clone()).or_default();
             bump(counts, usize::from(!stacked.staggered));
@@ -212,6 +217,7 @@ impl Evidence {
         merge(&mut self.label, &other.label);
         merge(&mut self.label_kernel, &other.label_kernel);
         merge(&mut self.label_letter, &other.label_letter);
+        merge(&mut self.forms, &other.forms);
         merge(&mut self.running, &other.running);
         merge(&mut self.coordinates, &other.coordinates);
         merge_pairs(&mut self.kernel_pairs, &other.kernel_pairs);
@@ -408,6 +414,11 @@ impl Prices<'_> {
             let opposite = self.file.kernel_pairs.get(&key).is_some_and(|[opposite, _]| *opposite > 0);
             unit.shape == Shape::Lone && !opposite
         })
+    }
+
+    /// In how many balanced statements a kernel carries so many letters and numbers above and below.
+    pub fn uses(&self, form: &(CompactString, u8, u8)) -> u32 {
+        self.paper.forms.get(form).copied().unwrap_or(0)
     }
 
     /// Letters of a class that the file uses as indices, the most used first.

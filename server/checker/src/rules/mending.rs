@@ -54,11 +54,12 @@ pub(super) fn fixes(judged: &Judged<'_>, mends: &[Mend], bulk: Result<(), &'stat
     let mut out: Vec<Fix> = Vec::new();
     for (n, mend) in mends.iter().enumerate() {
         let Some(edits) = mend.change.edits(judged) else { continue };
-        if out.iter().any(|fix| fix.edits == edits) {
+        let title = mend.change.title(judged);
+        if out.iter().any(|fix| fix.edits == edits || fix.title == title) {
             continue;
         }
         let bulk = if n == 0 { bulk } else { Err("another change comes first") };
-        out.push(Fix { title: mend.change.title(judged), edits, bulk });
+        out.push(Fix { title, edits, bulk });
         if out.len() == FIXES_OFFERED {
             break;
         }

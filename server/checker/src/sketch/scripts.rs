@@ -78,6 +78,7 @@ pub(super) fn read_scripts(builder: &mut Builder, carrier: Carrier<'_>, scripts:
     }
     mark_particles(carrier, &mut candidates);
     note_stacked(builder, carrier, scripts, &candidates);
+    note_form(builder, carrier, scripts, &candidates);
     let slots = candidates.iter().filter(|candidate| !candidate.parenthesised).count() + numbers;
     let components = candidates.iter().all(|c| is_usual_coordinate(&c.letter));
     let words = words(&candidates);
@@ -371,6 +372,7 @@ fn place(
         span: candidate.span,
         script: candidate.script.span,
         company: u16::try_from(company).unwrap_or(u16::MAX),
+        form: u16::try_from(builder.sketch.forms.len().saturating_sub(1)).unwrap_or(u16::MAX),
         unit,
     });
     Node::Place(u32::try_from(builder.sketch.places.len() - 1).unwrap_or(u32::MAX))
@@ -478,6 +480,20 @@ fn harmonic(carrier: Carrier<'_>, script: &Script) -> bool {
         .filter_map(|item| if let ItemKind::Letter(letter) = &item.kind { Some(letter.as_str()) } else { None })
         .collect();
     matches!(letters.as_slice(), ["\\ell" | "l", "m"] | ["n", "\\ell" | "l", "m"])
+}
+
+/// How many letters and numbers a kernel carries above and below.
+fn note_form(builder: &mut Builder, carrier: Carrier<'_>, scripts: &[Script], candidates: &[Candidate<'_>]) {
+    if candidates.is_empty() {
+        return;
+    }
+    let slots = |level: Level| {
+        let mine =
+            scripts.iter().filter(|script| script.level == level && !script.before).flat_map(|script| &script.items);
+        let count = mine.filter(|item| matches!(item.kind, ItemKind::Letter(_) | ItemKind::Number(_))).count();
+        u8::try_from(count).unwrap_or(u8::MAX)
+    };
+    builder.sketch.forms.push((carrier.name.into(), slots(Level::Up), slots(Level::Down)));
 }
 
 fn note_stacked(builder: &mut Builder, carrier: Carrier<'_>, scripts: &[Script], candidates: &[Candidate<'_>]) {
