@@ -32,13 +32,15 @@ fn check(judged: &Judged<'_>) -> Option<Report> {
     let disagreement = Disagreement::of(judged, &odd);
     let span = blamed(judged, &mends, &disagreement)
         .unwrap_or_else(|| index_places(judged, first).first().map_or(judged.sketch.span, |place| judged.span(*place)));
+    let severity = severity(judged, &mends);
+    let bulk = if severity == Severity::Hint { Err("it is only a hint") } else { clear_winner(&mends) };
     let finding = Finding {
         rule: RULE.name,
-        severity: severity(judged, &mends),
+        severity,
         span,
         message: plain_message(judged, &mends).unwrap_or_else(|| disagreement.message(judged, &odd, span)),
         related: disagreement.related(judged, span),
-        fixes: fixes(judged, &mends, clear_winner(&mends)),
+        fixes: fixes(judged, &mends, bulk),
         ledger: Some(judged.view(&odd)),
     };
     let mended = mends.into_iter().next().map(|mend| (mend.sketch, mend.choice));

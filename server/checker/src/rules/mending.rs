@@ -58,7 +58,12 @@ pub(super) fn fixes(judged: &Judged<'_>, mends: &[Mend], bulk: Result<(), &'stat
         if out.iter().any(|fix| fix.edits == edits || fix.title == title) {
             continue;
         }
-        let bulk = if n == 0 { bulk } else { Err("another change comes first") };
+        let bulk = match (&mend.change, n) {
+            (_, 1..) => Err("another change comes first"),
+            (Change::Insert(..), _) => Err("which slot the missing index takes is the author's choice"),
+            (Change::Drop(_), _) => Err("the index may belong somewhere else"),
+            _ => bulk,
+        };
         out.push(Fix { title, edits, bulk });
         if out.len() == FIXES_OFFERED {
             break;
