@@ -234,7 +234,7 @@ mod tests {
     #[test]
     fn a_generated_document_is_silent() {
         for seed in 0..4 {
-            let text = document(seed, 30_000);
+            let text = document(seed, 40_000);
             let analysis = crate::analyse(Host::Latex, &text);
             assert!(analysis.statistics.indexed > 50, "{:?}", analysis.statistics);
             let places: Vec<_> = analysis.findings.iter().map(|at| (at.rule, at.span.of(&text), &at.message)).collect();

@@ -307,7 +307,8 @@ fn judge_document(
         reading.odd.retain(|(letter, _)| prices.is_index_notation(letter));
         let no_sum = formula.no_sum || says_no_sum(document.read.text, formula.span.end);
         if sketch.unjudged.is_none() && !no_sum && prices.trusts(&sketch.unknown) {
-            let mut faults = rules::faults::faults(sketch, &reading.choice, &prices);
+            let search = if reading.odd.is_empty() { rules::faults::level_faults } else { rules::faults::faults };
+            let mut faults = search(sketch, &reading.choice, &prices);
             faults.retain(|fault| fault.letter().is_none_or(|letter| prices.is_index_notation(letter)));
             let (text, sketch) = (document.read.text, Cow::Borrowed(sketch));
             let judged = Judged { text, formula, sketch, reading, prices, faults };

@@ -2,6 +2,7 @@
 //! trial of fixes.
 
 use compact_str::CompactString;
+use indexwise_grammar::tree::Level;
 
 use crate::balance::{self, Choice, Event, Odd, judge, same_level};
 use crate::conventions::built_in::is_symbol_kernel;
@@ -41,8 +42,29 @@ pub(crate) fn odd_letters(sketch: &Sketch, choice: &Choice) -> Vec<(CompactStrin
 
 /// Everything out of order.
 pub(crate) fn faults(sketch: &Sketch, choice: &Choice, prices: &Prices<'_>) -> Vec<Fault> {
+    faults_of(sketch, choice, prices, |_, _| true)
+}
+
+/// The faults of a statement that is in balance: those of levels. Most letters need no look.
+pub(crate) fn level_faults(sketch: &Sketch, choice: &Choice, prices: &Prices<'_>) -> Vec<Fault> {
+    faults_of(sketch, choice, prices, |number, letter| {
+        let level = |wanted: Level| {
+            let mine = sketch.places.iter().filter(|place| place.number == number && place.level == wanted);
+            mine.filter(|place| choice.index.get(place.unit as usize) == Some(&true)).count()
+        };
+        let (up, down) = (level(Level::Up), level(Level::Down));
+        let pair = up > 1 || down > 1;
+        let free = up > 0 && down > 0 && prices.free_levels_in_force(letter);
+        (pair || free) && prices.level_habit(letter) == LevelHabit::InForce
+    })
+}
+
+fn faults_of(sketch: &Sketch, choice: &Choice, prices: &Prices<'_>, asked: impl Fn(u16, &str) -> bool) -> Vec<Fault> {
     let mut out = Vec::new();
     for (number, letter) in sketch.letter_numbers().zip(&sketch.letters) {
+        if !asked(number, letter) {
+            continue;
+        }
         let (odd, events) = balance::events(sketch, choice, number);
         if odd != Odd::Balanced {
             out.push(Fault::Odd(letter.clone(), odd));
