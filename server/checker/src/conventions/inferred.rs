@@ -38,6 +38,8 @@ pub struct Evidence {
     free_levels: [[u32; 2]; 5],
     /// Statements with indices that balance, and that do not, by class of the odd letters.
     balanced: [[u32; 2]; 5],
+    /// Pairs that are summed without a sum sign, and letters that a sum sign binds, by class.
+    sums: [[u32; 2]; 5],
     /// Unknown commands in statements that balance with their arguments as factors, and that do not.
     unknown: FxHashMap<CompactString, [u32; 2]>,
     /// Kernels with how many letters and numbers above and below.
@@ -74,6 +76,10 @@ const ODD_PERCENT: u32 = 33;
 /// ones, in percent, up to which they are.
 const TRUSTED_STATEMENTS: u32 = 2;
 const TRUSTED_ODD_PERCENT: u32 = 34;
+/// Sum signs from which a file may write its sums out rather than imply them; then it is not in index notation from a
+/// smaller share of odd statements on, in percent.
+const SUM_SIGNS: u32 = 4;
+const ODD_PERCENT_WRITTEN_OUT: u32 = 10;
 /// Odd statements that are forgiven before that share is taken.
 const ODD_FREE: u32 = 3;
 
@@ -86,6 +92,7 @@ impl Evidence {
         for letter in &sketch.coordinates {
             *self.coordinates.entry(letter.clone()).or_default() += 1;
         }
+        self.vote_sums(sketch);
         self.vote_balance(sketch, reading);
         self.vote_unknown(sketch, reading);
         if !reading.odd.is_empty() {
@@ -102,6 +109,17 @@ impl Evidence {
         for (number, letter) in sketch.letter_numbers().zip(&sketch.letters) {
             let (_, events) = balance::events(sketch, &reading.choice, number);
             self.vote_letter(sketch, letter, &events);
+        }
+    }
+
+    /// Sum signs speak against the summation convention, whether the statement balances or not.
+    fn vote_sums(&mut self, sketch: &Sketch) {
+        for (n, (letter, _)) in sketch.bound.iter().enumerate() {
+            let again = sketch.bound.iter().take(n).any(|(other, _)| other == letter);
+            let counts = self.sums.get_mut(class_of(letter) as usize).filter(|_| !again);
+            if let (Some(counts), Some(_)) = (counts, sketch.number_of(letter)) {
+                bump(counts, 1);
+            }
         }
     }
 
@@ -160,6 +178,9 @@ impl Evidence {
                     // The same kernel twice (`E_e E_e`) says nothing: a label repeats too.
                     if differ(sketch, &[*first, *second]) {
                         sure = true;
+                        if let Some(counts) = self.sums.get_mut(class) {
+                            bump(counts, 0);
+                        }
                         self.vote_lone(sketch, *first);
                         self.vote_lone(sketch, *second);
                     }
@@ -226,6 +247,7 @@ impl Evidence {
         for (own, other) in [
             (&mut self.pairs, &other.pairs),
             (&mut self.free_levels, &other.free_levels),
+            (&mut self.sums, &other.sums),
             (&mut self.balanced, &other.balanced),
         ] {
             own.iter_mut().flatten().zip(other.iter().flatten()).for_each(|(own, other)| *own += other);
@@ -393,9 +415,15 @@ impl Prices<'_> {
             && self.level_habit(letter) == LevelHabit::InForce
     }
 
-    /// Whether the file writes this class of letters in index notation at all.
+    /// Whether the file writes this class of letters in index notation at all: by the summation convention, and mostly
+    /// in balance.
     pub fn is_index_notation(&self, letter: &str) -> bool {
         let [balanced, odd] = Evidence::class_counts(&self.file.balanced, class_of(letter));
+        let [implied, signs] = Evidence::class_counts(&self.file.sums, class_of(letter));
+        let written_out = signs >= SUM_SIGNS && signs > implied;
+        if written_out && odd >= ODD_FREE && odd * 100 >= ODD_PERCENT_WRITTEN_OUT * (balanced + odd) {
+            return false;
+        }
         odd <= ODD_FREE || (odd - ODD_FREE) * 100 <= ODD_PERCENT * (balanced + odd)
     }
 

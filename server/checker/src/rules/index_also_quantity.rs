@@ -19,8 +19,8 @@ fn check(judged: &Judged<'_>) -> Vec<Finding> {
     let mut seen: Vec<&str> = Vec::new();
     for (number, place) in (0_u32..).zip(&judged.sketch.places) {
         let letter = place.letter.as_str();
-        // The differential d is no quantity.
-        if matches!(letter, "d" | "D") || seen.contains(&letter) || !judged.is_index(number) {
+        // The differential, the imaginary unit and Euler's number stand beside indices of their letters by custom.
+        if matches!(letter, "d" | "D" | "i" | "e") || seen.contains(&letter) || !judged.is_index(number) {
             continue;
         }
         seen.push(letter);
