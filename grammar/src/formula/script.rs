@@ -164,7 +164,7 @@ fn item_of(factor: Factor) -> Item {
         Atom::Dots => ItemKind::Dots,
         Atom::Kernel(kernel) if kernel.word => ItemKind::Label(kernel.name.clone()),
         Atom::Kernel(kernel) => match numbered(&kernel.name, &factor.scripts) {
-            Some(name) if is_styled(&kernel.name) => ItemKind::Styled(name),
+            Some(name) if kernel.bold || is_styled(&kernel.name) => ItemKind::Styled(name),
             Some(name) => ItemKind::Letter(name),
             None => ItemKind::Factor(Box::new(factor)),
         },

@@ -206,6 +206,15 @@ pub struct Switch {
     pub on: bool,
     /// What the other reading costs, in tenths.
     pub price: i32,
+    /// Whether an argument that does not count may give its letters to a term that lacks them.
+    pub lends: bool,
+}
+
+impl Switch {
+    /// A switch that only counts or does not.
+    pub const fn new(on: bool, price: i32) -> Self {
+        Self { on, price, lends: false }
+    }
 }
 
 /// A script that seems to have swallowed a factor: `\nabla_{\mu T^{\mu i}}`.

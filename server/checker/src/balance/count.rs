@@ -65,6 +65,8 @@ struct Comparison {
     first_free: Option<u32>,
     /// Terms without the letter that are not bare numbers.
     lacking: usize,
+    /// Terms in which the letter stands twice.
+    twice: usize,
     list: Vec<Compared>,
 }
 
@@ -123,7 +125,9 @@ impl<'a> Count<'a> {
             return Odd::Balanced;
         }
         // `r_i + p_i = 1`: numbers named by a letter, one formula for each.
-        let agree = compared.free == compared.terms || compared.lacking == 0 && self.numbers_quantities();
+        // Where sums are written out, a letter that stands twice need not be summed: `F c_i = \epsilon_i \sum_j S_j c_i`.
+        let unsummed = || self.sketch.reach.is_some() && compared.free + compared.twice == compared.terms;
+        let agree = compared.free == compared.terms || unsummed() || compared.lacking == 0 && self.numbers_quantities();
         if let Some(events) = &mut self.events {
             events.push(Event::Terms(compared.list));
         }
@@ -165,6 +169,7 @@ impl<'a> Count<'a> {
             sum.odd = sum.odd.max(settled.odd);
             sum.closed = sum.closed.or(settled.closed);
             if settled.odd <= Odd::Mismatch {
+                out.twice += usize::from(settled.open.count == 0 && settled.closed.is_some());
                 self.note(term, settled.open.first(), side, out);
             }
         }
@@ -260,8 +265,8 @@ impl<'a> Count<'a> {
             Op::Argument(switch, end) if !self.is_on(switch) => {
                 let held = self.alone(inside, end, bound);
                 // An argument by its looks; one that only might be one lends nothing.
-                let likely = self.sketch.switches.get(switch as usize).is_some_and(|switch| !switch.on);
-                out.lent |= likely && held.open.count > 0;
+                let lends = self.sketch.switches.get(switch as usize).is_some_and(|switch| switch.lends);
+                out.lent |= lends && held.open.count > 0;
                 end
             }
             Op::Argument(_, end) => {

@@ -67,6 +67,11 @@ const OWN_PAIRS: u32 = 5;
 const SAME_LEVEL_PERCENT: u32 = 10;
 /// Share of same-level pairs, in percent, from which a class is Cartesian.
 const CARTESIAN_PERCENT: u32 = 80;
+/// The same share for a file in which letters above are names, how much that speaks against an index, and what the
+/// other reading costs at least.
+const CARTESIAN_FILE_PERCENT: u32 = 95;
+const CARTESIAN_DOUBT: i32 = 90;
+const CHEAP_NAME: i32 = 10;
 /// Balanced statements that `free-index-levels` asks for, and the share of them, in percent, that must agree.
 const FREE_STATEMENTS: u32 = 20;
 const FREE_PERCENT: u32 = 95;
@@ -335,6 +340,10 @@ impl Prices<'_> {
             let seen = self.count(|evidence| evidence.running.get(letter).copied());
             return unit.bias + 12 * steps(seen).min(4);
         }
+        // Where all indices stand below, a letter above is a name: `\epsilon^p_{ij}`.
+        if unit.level == Level::Up && self.is_cartesian() {
+            return (unit.bias - CARTESIAN_DOUBT).min(-CHEAP_NAME);
+        }
         let label_key = (unit.kernel.clone(), letter.clone());
         let labels = self.count(|evidence| evidence.label.get(&label_key).copied());
         let index = steps(self.count(|evidence| evidence.index.get(letter).copied())).min(3);
@@ -374,6 +383,15 @@ impl Prices<'_> {
     /// The count of the file, doubled, with that of the rest of the paper.
     fn count(&self, of: impl Fn(&Evidence) -> Option<u32>) -> u32 {
         of(self.file).unwrap_or(0) + of(self.paper).unwrap_or(0)
+    }
+
+    /// Whether the file writes all its Latin indices below.
+    fn is_cartesian(&self) -> bool {
+        let latin = [LetterClass::LatinEarly, LetterClass::LatinLate];
+        let counts = latin.map(|class| Evidence::class_counts(&self.file.pairs, class));
+        let [opposite, same] = [0, 1].map(|at| counts.iter().filter_map(|pair| pair.get(at)).sum::<u32>());
+        let greek = Evidence::class_counts(&self.file.pairs, LetterClass::Greek);
+        same >= OPPOSITE_PAIRS && same * 100 >= CARTESIAN_FILE_PERCENT * (same + opposite) && greek[0] == 0
     }
 
     /// What is done about levels in a class of letters.

@@ -22,6 +22,8 @@ use super::{Shape, Sketch, Switch};
 
 /// Price of taking several parts in a bracket for components rather than arguments or a commutator.
 const LIST_PRICE: i32 = 10;
+/// Price of taking a function of a component by component, so that its indices are not summed with others.
+const FUNCTION_PRICE: i32 = 15;
 /// Price of taking `\psi(p)` for the value of a map, with whatever indices.
 const MAP_PRICE: i32 = 30;
 
@@ -138,7 +140,7 @@ impl Builder {
                 Node::Product(nodes) => return walk.nodes.extend(nodes),
                 node => node,
             },
-            Some(Power::Square) => Node::Square(Box::new(node), self.switch(Switch { on: true, price: 0 })),
+            Some(Power::Square) => Node::Square(Box::new(node), self.switch(Switch::new(true, 0))),
             Some(Power::Other) => Node::Power(Box::new(node)),
         });
     }
@@ -162,12 +164,12 @@ impl Builder {
             let nodes =
                 group.parts.iter().flat_map(|part| &part.sides).map(|side| self.sum_only(side, walk.flip)).collect();
             let on = on || indexed && self.contracts(own);
-            let switch = self.switch(Switch { on, price });
+            let switch = self.switch(Switch { on, price, lends: !on });
             let map = walk.factors.len() == 2 && !on || group.parts.len() > 1;
             if walk.at == walk.factors.len() && !indexed && walk.loose.is_none() && map {
                 // The value of a map, or components with a coefficient.
                 let price = if group.parts.len() > 1 { LIST_PRICE } else { MAP_PRICE };
-                walk.loose = Some(self.switch(Switch { on: false, price }));
+                walk.loose = Some(self.switch(Switch::new(false, price)));
             }
             self.scripted_group(walk, next, Node::Argument(switch, Box::new(Node::Product(nodes))), walk.flip);
             if indexed {
@@ -198,12 +200,12 @@ impl Builder {
         let names = is_lone_kernel(sum) || group.bracket == Bracket::Square;
         if walk.factors.len() == 1 && names && factor.scripts.is_empty() {
             // `(a_{ij})` alone names the matrix, `[T_{ij}]` the dimension.
-            let switch = self.switch(Switch { on: true, price: 0 });
+            let switch = self.switch(Switch::new(true, 0));
             node = Node::Switch(switch, Box::new(node));
         }
         if group.bracket == Bracket::Bars && is_lone_derivative(sum) {
             // `|\partial F^i / \partial x^j|` is a determinant.
-            let switch = self.switch(Switch { on: true, price: 0 });
+            let switch = self.switch(Switch::new(true, 0));
             node = Node::Switch(switch, Box::new(node));
         }
         if matches!(group.bracket, Bracket::Bars | Bracket::Angle) {
@@ -227,7 +229,7 @@ impl Builder {
     fn bar(&mut self, walk: &mut Walk<'_>, factor: &Factor, flip: bool) {
         let scripts = read_scripts(self, Carrier::BRACKET, &factor.scripts, flip);
         if !scripts.nodes.is_empty() && walk.at > 1 {
-            let switch = self.switch(Switch { on: true, price: 0 });
+            let switch = self.switch(Switch::new(true, 0));
             walk.nodes.push(Node::Switch(switch, Box::new(Node::Product(scripts.nodes))));
         }
     }
@@ -242,11 +244,11 @@ impl Builder {
         }
         if group.bracket == Bracket::Square && walk.factors.len() == 1 {
             // A commutator by itself, or a list of components.
-            walk.loose = Some(self.switch(Switch { on: false, price: LIST_PRICE }));
+            walk.loose = Some(self.switch(Switch::new(false, LIST_PRICE)));
         }
         let nodes = group.parts.iter().flat_map(|part| &part.sides).map(|side| self.sum_only(side, flip)).collect();
         let node = if group.bracket == Bracket::Curly {
-            let switch = self.switch(Switch { on: true, price: 0 });
+            let switch = self.switch(Switch::new(true, 0));
             Node::Switch(switch, Box::new(Node::Product(nodes)))
         } else {
             Node::Product(nodes)
@@ -347,19 +349,20 @@ impl Builder {
                 walk.at += 1;
                 let mut inner = Walk { factors: std::slice::from_ref(next), at: 1, ..Walk::of(flip) };
                 self.factor(&mut inner, next);
-                let switch = self.switch(Switch { on: false, price: 0 });
+                let switch = self.switch(Switch::new(false, 0));
                 walk.nodes.push(Node::Switch(switch, Box::new(Node::Product(inner.nodes))));
             }
-            // The argument of `\exp(..)` is a scope of its own.
+            // The argument of `\exp(..)` is a scope of its own, and `\cos\theta_{ij}` is taken component by component.
             _ => {
-                let Some(next) = walk.factors.get(walk.at).filter(|next| matches!(next.atom, Atom::Group(_))) else {
-                    return;
-                };
+                let argument = |next: &&Factor| matches!(next.atom, Atom::Group(_) | Atom::Kernel(_));
+                let Some(next) = walk.factors.get(walk.at).filter(argument) else { return };
                 walk.at += 1;
                 let mut inner = Walk { factors: std::slice::from_ref(next), at: 1, ..Walk::of(flip) };
                 self.factor(&mut inner, next);
                 walk.any |= inner.any;
-                walk.nodes.push(Node::Scope(Box::new(Node::Product(inner.nodes))));
+                let switch = self.switch(Switch { on: true, price: FUNCTION_PRICE, lends: true });
+                let scope = Node::Scope(Box::new(Node::Product(inner.nodes)));
+                walk.nodes.push(Node::Argument(switch, Box::new(scope)));
             }
         }
     }
@@ -370,10 +373,10 @@ impl Builder {
         for script in factor.scripts.iter().filter(|script| script.level == Level::Down) {
             // A limit may bind the letter of its variable or leave it free.
             let limit = factor.atom == Atom::Big(Big::Limit);
-            let mut doubtful = limit.then(|| self.switch(Switch { on: true, price: 0 }));
+            let mut doubtful = limit.then(|| self.switch(Switch::new(true, 0)));
             for item in &script.items {
                 match &item.kind {
-                    ItemKind::Relation => doubtful = Some(self.switch(Switch { on: true, price: 0 })),
+                    ItemKind::Relation => doubtful = Some(self.switch(Switch::new(true, 0))),
                     ItemKind::Letter(letter) | ItemKind::Styled(letter) => bound.push((letter.clone(), doubtful)),
                     ItemKind::Factor(inner) => {
                         bound.extend(letters_of(inner).into_iter().map(|letter| (letter, doubtful)));
@@ -386,7 +389,7 @@ impl Builder {
             walk.nodes.push(Node::Bind(bound));
         }
         if self.sketch.reach.is_none() {
-            self.sketch.reach = Some(self.switch(Switch { on: false, price: 0 }));
+            self.sketch.reach = Some(self.switch(Switch::new(false, 0)));
         }
     }
 }

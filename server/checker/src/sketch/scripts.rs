@@ -95,7 +95,7 @@ pub(super) fn read_scripts(builder: &mut Builder, carrier: Carrier<'_>, scripts:
         match word {
             Some(word) => {
                 let (on, price) = if word.listed { (false, WORD_AS_INDICES) } else { (true, INDICES_AS_WORD) };
-                let switch = builder.switch(Switch { on, price });
+                let switch = builder.switch(Switch::new(on, price));
                 out.nodes.push(Node::Switch(switch, Box::new(Node::Product(nodes))));
             }
             None => out.nodes.extend(nodes),
@@ -326,6 +326,9 @@ fn words(candidates: &[Candidate<'_>]) -> Vec<Word> {
         }
         let in_family = |family: &str| word.chars().all(|c| family.contains(c));
         let listed = length > 1 && is_label_word(&word) && !in_family("abcdefgh") && !in_family("ijklmnpqrs");
+        let first = word.chars().next();
+        let repeated = length > 1 && word.chars().all(|c| c.is_ascii_uppercase() && Some(c) == first);
+        let listed = listed || repeated;
         let odd = length > 2 && word.chars().any(|c| matches!(c, 'o' | 't'..='z'));
         if listed || odd {
             out.push(Word { from, length, listed });
@@ -384,7 +387,8 @@ fn place(
 fn bias(carrier: Carrier<'_>, candidate: &Candidate<'_>, shape: Shape, components: bool) -> i32 {
     let class = class_of(&candidate.letter);
     let bare = bare_letter(&candidate.letter);
-    if is_labelled_operator(carrier.name) {
+    let lie = carrier.name.starts_with('\\') && carrier.name.ends_with('L') || carrier.name == "\\pounds";
+    if is_labelled_operator(carrier.name) && (lie || shape == Shape::Lone) {
         return -90;
     }
     if is_usual_coordinate(&candidate.letter) {
