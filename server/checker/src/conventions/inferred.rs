@@ -38,6 +38,8 @@ pub struct Evidence {
     free_levels: [[u32; 2]; 5],
     /// Statements with indices that balance, and that do not, by class of the odd letters.
     balanced: [[u32; 2]; 5],
+    /// Pairs as they are written: one up and one down, and both down.
+    written: [u32; 2],
     /// Pairs that are summed without a sum sign, and letters that a sum sign binds, by class.
     sums: [[u32; 2]; 5],
     /// Unknown commands in statements that balance with their arguments as factors, and that do not.
@@ -215,6 +217,11 @@ impl Evidence {
     fn vote_pair(&mut self, sketch: &Sketch, class: usize, first: u32, second: u32) {
         let (Some(one), Some(two)) = (sketch.place(first), sketch.place(second)) else { return };
         let same = usize::from(one.level == two.level);
+        match (one.written, two.written) {
+            (Level::Down, Level::Down) => bump(&mut self.written, 1),
+            (Level::Up, Level::Up) => {}
+            _ => bump(&mut self.written, 0),
+        }
         let kernels = [one, two].map(|place| sketch.units.get(place.unit as usize).map(|unit| unit.kernel.clone()));
         let symbol = [one, two].iter().any(|place| {
             sketch.units.get(place.unit as usize).is_some_and(|unit| is_symbol_kernel(&unit.kernel_letter))
@@ -249,6 +256,7 @@ impl Evidence {
         merge_pairs(&mut self.kernel_pairs, &other.kernel_pairs);
         merge_pairs(&mut self.unknown, &other.unknown);
         merge_pairs(&mut self.staggered, &other.staggered);
+        self.written.iter_mut().zip(&other.written).for_each(|(own, other)| *own += other);
         for (own, other) in [
             (&mut self.pairs, &other.pairs),
             (&mut self.free_levels, &other.free_levels),
@@ -385,13 +393,10 @@ impl Prices<'_> {
         of(self.file).unwrap_or(0) + of(self.paper).unwrap_or(0)
     }
 
-    /// Whether the file writes all its Latin indices below.
+    /// Whether the file writes all its indices below.
     fn is_cartesian(&self) -> bool {
-        let latin = [LetterClass::LatinEarly, LetterClass::LatinLate];
-        let counts = latin.map(|class| Evidence::class_counts(&self.file.pairs, class));
-        let [opposite, same] = [0, 1].map(|at| counts.iter().filter_map(|pair| pair.get(at)).sum::<u32>());
-        let greek = Evidence::class_counts(&self.file.pairs, LetterClass::Greek);
-        same >= OPPOSITE_PAIRS && same * 100 >= CARTESIAN_FILE_PERCENT * (same + opposite) && greek[0] == 0
+        let [mixed, below] = self.file.written;
+        below >= OPPOSITE_PAIRS && below * 100 >= CARTESIAN_FILE_PERCENT * (below + mixed)
     }
 
     /// What is done about levels in a class of letters.

@@ -120,6 +120,12 @@ fn power_of(script: &Script, carrier: Carrier<'_>, all: &[Script]) -> Option<Pow
             _ => Some(Power::Other),
         },
         _ if is_exponential(script, carrier, all) => Some(Power::Other),
+        // `a_i^{\nu_i}`: a quantity with a name of its own.
+        [Item { kind: ItemKind::Factor(factor), .. }]
+            if matches!(factor.atom, Atom::Kernel(_)) && !factor.scripts.is_empty() =>
+        {
+            Some(Power::Other)
+        }
         // `x^{2n}`, `(..)^{2\alpha}`.
         [Item { kind: ItemKind::Number(_), .. }, Item { kind: ItemKind::Letter(_), .. }]
             if carrier.group || (all.len() == 1 && !matches!(carrier.letter, "T" | "R" | "G" | "g" | "h" | "F")) =>
