@@ -242,11 +242,17 @@ impl Builder {
             walk.any = true;
             return;
         }
-        if group.bracket == Bracket::Square && walk.factors.len() == 1 {
+        let mut nodes = Vec::new();
+        let mut indexed = 0;
+        for side in group.parts.iter().flat_map(|part| &part.sides) {
+            let before = self.sketch.places.len();
+            nodes.push(self.sum_only(side, flip));
+            indexed += usize::from(self.sketch.places.len() > before);
+        }
+        if group.bracket == Bracket::Square && walk.factors.len() == 1 && indexed < nodes.len() {
             // A commutator by itself, or a list of components.
             walk.loose = Some(self.switch(Switch::new(false, LIST_PRICE)));
         }
-        let nodes = group.parts.iter().flat_map(|part| &part.sides).map(|side| self.sum_only(side, flip)).collect();
         let node = if group.bracket == Bracket::Curly {
             let switch = self.switch(Switch::new(true, 0));
             Node::Switch(switch, Box::new(Node::Product(nodes)))
