@@ -163,7 +163,8 @@ impl Builder {
             walk.at += 1;
             let nodes =
                 group.parts.iter().flat_map(|part| &part.sides).map(|side| self.sum_only(side, walk.flip)).collect();
-            let on = on || indexed && self.contracts(own);
+            let sum = group.parts.iter().flat_map(|part| &part.sides).any(|side| side.terms.len() > 1);
+            let on = on || indexed && sum && self.contracts(own);
             let switch = self.switch(Switch { on, price, lends: !on });
             let map = walk.factors.len() == 2 && !on || group.parts.len() > 1;
             if walk.at == walk.factors.len() && !indexed && walk.loose.is_none() && map {
@@ -194,7 +195,9 @@ impl Builder {
         let Some(sum) = group.parts.first().and_then(|part| part.sides.first()) else { return };
         let before = self.sketch.places.len();
         let mut node = self.sum_node(walk, sum, flip);
-        if is_lone_kernel(sum) && !factor.scripts.is_empty() {
+        let lettered =
+            factor.scripts.iter().flat_map(|script| &script.items).any(|item| matches!(item.kind, ItemKind::Letter(_)));
+        if is_lone_kernel(sum) && lettered {
             self.doubt_name(before);
         }
         let names = is_lone_kernel(sum) || group.bracket == Bracket::Square;
