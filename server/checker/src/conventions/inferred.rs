@@ -70,10 +70,11 @@ const SAME_LEVEL_PERCENT: u32 = 10;
 /// Share of same-level pairs, in percent, from which a class is Cartesian.
 const CARTESIAN_PERCENT: u32 = 80;
 /// The same share for a file in which letters above are names, how much that speaks against an index, and what the
-/// other reading costs at least.
+/// other reading costs at least and at most.
 const CARTESIAN_FILE_PERCENT: u32 = 95;
 const CARTESIAN_DOUBT: i32 = 90;
 const CHEAP_NAME: i32 = 10;
+const DEAR_NAME: i32 = 25;
 /// Balanced statements that `free-index-levels` asks for, and the share of them, in percent, that must agree.
 const FREE_STATEMENTS: u32 = 20;
 const FREE_PERCENT: u32 = 95;
@@ -350,7 +351,7 @@ impl Prices<'_> {
         }
         // Where all indices stand below, a letter above is a name: `\epsilon^p_{ij}`.
         if unit.level == Level::Up && self.is_cartesian() {
-            return (unit.bias - CARTESIAN_DOUBT).min(-CHEAP_NAME);
+            return (unit.bias - CARTESIAN_DOUBT).clamp(-DEAR_NAME, -CHEAP_NAME);
         }
         let label_key = (unit.kernel.clone(), letter.clone());
         let labels = self.count(|evidence| evidence.label.get(&label_key).copied());
