@@ -10,7 +10,7 @@ use indexwise_grammar::tree::Formula;
 
 use crate::balance::{self, Choice, Event, term_state};
 use crate::conventions::built_in::bare_letter;
-use crate::conventions::inferred::{LevelHabit, Prices};
+use crate::conventions::inferred::Prices;
 use crate::finding::{Ledger, LedgerIndex, LedgerRow};
 use crate::reading::Reading;
 use crate::rules::faults::Fault;
@@ -81,8 +81,7 @@ impl Judged<'_> {
     /// The level of a place in words, empty where levels do not matter.
     pub fn level(&self, place: u32) -> &'static str {
         let Some(place) = self.sketch.place(place) else { return "" };
-        let cartesian = self.prices.level_habit(&place.letter) == LevelHabit::Cartesian;
-        if cartesian { "" } else { place.level.word() }
+        if self.prices.speaks_of_levels(&place.letter) { place.level.word() } else { "" }
     }
 
     /// The ledger as people see it; `odd` are the letters that the finding is about.

@@ -75,11 +75,12 @@ pub fn read_sentence(text: &str) -> Option<Sentence> {
     parser().parse(text.trim().trim_end_matches('.')).into_output()
 }
 
-/// The form that a sentence that cannot be read is nearest to: the one that shares most words, the first in a tie.
-pub fn nearest_form(text: &str) -> &'static str {
+/// The form that a sentence that cannot be read is nearest to: the one that shares most words, the first in a tie;
+/// nothing if none shares a word.
+pub fn nearest_form(text: &str) -> Option<&'static str> {
     let words: Vec<String> = text.split_whitespace().map(str::to_lowercase).collect();
     let shared = |form: &str| form.split(' ').filter(|word| words.iter().any(|other| close(other, word))).count();
-    FORMS.iter().copied().rev().max_by_key(|form| shared(form)).unwrap_or("skip this")
+    FORMS.iter().copied().rev().max_by_key(|form| shared(form)).filter(|form| shared(form) > 0)
 }
 
 /// Whether two words differ in one letter at most.
@@ -142,8 +143,9 @@ mod tests {
         for text in ["", "skip that", "allow dummy-levels", "B is a lable", "is a label", "allow one two here"] {
             assert_eq!(read_sentence(text), None, "{text}");
         }
-        assert_eq!(nearest_form("B is a lable"), "X is a label");
-        assert_eq!(nearest_form("allow dummy-levels"), "allow RULE here");
-        assert_eq!(nearest_form("skip these"), "skip this");
+        assert_eq!(nearest_form("B is a lable"), Some("X is a label"));
+        assert_eq!(nearest_form("allow dummy-levels"), Some("allow RULE here"));
+        assert_eq!(nearest_form("skip these"), Some("skip this"));
+        assert_eq!(nearest_form("i j run from 1 to 3"), None);
     }
 }

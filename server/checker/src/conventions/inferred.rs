@@ -350,7 +350,7 @@ impl Prices<'_> {
             return unit.bias + 12 * steps(seen).min(4);
         }
         // Where all indices stand below, a letter above is a name: `\epsilon^p_{ij}`.
-        if unit.level == Level::Up && self.is_cartesian() {
+        if unit.level == Level::Up && !unit.mirrored && self.is_cartesian() {
             return (unit.bias - CARTESIAN_DOUBT).clamp(-DEAR_NAME, -CHEAP_NAME);
         }
         let label_key = (unit.kernel.clone(), letter.clone());
@@ -398,6 +398,11 @@ impl Prices<'_> {
     fn is_cartesian(&self) -> bool {
         let [mixed, below] = self.file.written;
         below >= OPPOSITE_PAIRS && below * 100 >= CARTESIAN_FILE_PERCENT * (below + mixed)
+    }
+
+    /// Whether levels are worth a word in messages: the file writes pairs one up, one down.
+    pub fn speaks_of_levels(&self, letter: &str) -> bool {
+        self.file.written[0] > 0 || self.level_habit(letter) == LevelHabit::InForce
     }
 
     /// What is done about levels in a class of letters.

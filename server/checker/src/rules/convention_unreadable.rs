@@ -2,7 +2,7 @@
 
 use indexwise_grammar::span::Span;
 
-use crate::conventions::declared::nearest_form;
+use crate::conventions::declared::{FORMS, nearest_form};
 use crate::finding::{Finding, Severity};
 
 use super::{Check, Rule};
@@ -18,11 +18,15 @@ pub(super) const RULE: Rule = Rule {
 
 /// The finding for a sentence.
 pub(crate) fn convention_unreadable(span: Span, text: &str) -> Finding {
+    let message = match nearest_form(text) {
+        Some(form) => format!("this sentence has no known form; the nearest is \"{form}\""),
+        None => format!("this sentence has no known form; the forms are \"{}\"", FORMS.join("\", \"")),
+    };
     Finding {
         rule: RULE.name,
         severity: RULE.severity,
         span,
-        message: format!("this sentence has no known form; the nearest is \"{}\"", nearest_form(text)),
+        message,
         related: Vec::new(),
         fixes: Vec::new(),
         ledger: None,

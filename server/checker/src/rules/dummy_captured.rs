@@ -7,6 +7,7 @@ use crate::changes::{Change, fresh_letters};
 use crate::finding::{Finding, Related, Severity};
 use crate::ledger::{Judged, shown};
 
+use super::index_thrice::free_elsewhere;
 use super::mending::{clear_winner, fixes, index_places, mends, odd_by};
 use super::{Check, Report, Rule};
 
@@ -42,11 +43,15 @@ fn check(judged: &Judged<'_>) -> Option<Report> {
         .map(|place| Related { span: judged.span(*place), message: format!("{} stands outside here", shown(&letter)) });
     let finding = Finding {
         rule: RULE.name,
-        severity: RULE.severity,
+        severity: if free_elsewhere(judged, &letter) { Severity::Hint } else { RULE.severity },
         span: judged.span(inner),
         message: format!("{0} is summed inside, and {0} stands outside in the same product", shown(&letter)),
         related: related.collect(),
-        fixes: fixes(judged, &mends, clear_winner(&mends)),
+        fixes: fixes(
+            judged,
+            &mends,
+            if free_elsewhere(judged, &letter) { Err("it is only a hint") } else { clear_winner(&mends) },
+        ),
         ledger: Some(judged.view(std::slice::from_ref(&letter))),
     };
     let mended = mends.into_iter().next().map(|mend| (mend.sketch, mend.choice));

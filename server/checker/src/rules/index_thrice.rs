@@ -32,18 +32,41 @@ fn check(judged: &Judged<'_>) -> Option<Report> {
         _ => None,
     });
     let blamed = blamed.or_else(|| places.get(2).copied())?;
+    // Free once elsewhere: it numbers quantities, one formula for each.
+    let numbered = free_elsewhere(judged, &letter);
+    let severity = if numbered { Severity::Hint } else { RULE.severity };
+    let bulk = if numbered { Err("it is only a hint") } else { clear_winner(&mends) };
     let related = places.iter().filter(|place| **place != blamed);
     let finding = Finding {
         rule: RULE.name,
-        severity: RULE.severity,
+        severity,
         span: judged.span(blamed),
         message: format!("{} stands {} times in one product", shown(&letter), places.len()),
         related: related.map(|place| Related { span: judged.span(*place), message: "also here".to_owned() }).collect(),
-        fixes: fixes(judged, &mends, clear_winner(&mends)),
+        fixes: fixes(judged, &mends, bulk),
         ledger: Some(judged.view(&[letter])),
     };
     let mended = mends.into_iter().next().map(|mend| (mend.sketch, mend.choice));
     Some(Report { finding, mended })
+}
+
+/// Whether the letter is free in a term of another side.
+pub(super) fn free_elsewhere(judged: &Judged<'_>, letter: &CompactString) -> bool {
+    judged
+        .rows()
+        .iter()
+        .any(|row| row.free.iter().any(|(free, place)| free == letter && !is_odd(judged, row.side, *place, letter)))
+}
+
+/// Whether a place stands on a side in which the letter is out of balance by itself.
+fn is_odd(judged: &Judged<'_>, side: usize, place: u32, letter: &CompactString) -> bool {
+    let at = judged.span(place);
+    let inside = judged.sketch.sides.get(side).is_some_and(|side| side.span.holds(at));
+    inside
+        && judged.events(letter).iter().any(|event| match event {
+            Event::Thrice(places) | Event::Captured(places, _) => places.contains(&place),
+            _ => false,
+        })
 }
 
 /// One of the places takes a letter that is missing elsewhere; or, of four places, two take a fresh letter.
@@ -57,6 +80,16 @@ fn candidates(judged: &Judged<'_>, letter: &CompactString, places: &[u32]) -> Ve
         }
         for to in known.iter().filter(|to| *to != letter && class_of(to) == class_of(letter)) {
             out.push((Change::Rename(vec![*place], to.clone()), 1));
+        }
+    }
+    if let (3, Some(fresh)) = (places.len(), fresh_letters(judged, letter).into_iter().next()) {
+        // Two in one script are a trace that wants a letter of its own.
+        let script = |place: &u32| judged.sketch.place(*place).map(|place| place.script);
+        for pair in [[0, 1], [1, 2], [0, 2]] {
+            let pair: Vec<u32> = pair.iter().filter_map(|at| places.get(*at).copied()).collect();
+            if pair.first().map(script) == pair.last().map(script) {
+                out.push((Change::Rename(pair, fresh.clone()), 2));
+            }
         }
     }
     if let (4, Some(fresh)) = (places.len(), fresh_letters(judged, letter).into_iter().next()) {

@@ -5,7 +5,7 @@
 
 use compact_str::CompactString;
 use indexwise_grammar::tree::{
-    Atom, Big, Bracket, Factor, Group, ItemKind, Joint, Kernel, Level, Statement, Sum, Term,
+    Atom, Big, Bracket, Factor, Group, Item, ItemKind, Joint, Kernel, Level, Statement, Sum, Term,
 };
 
 use crate::conventions::built_in::{is_basis_kernel, is_derivative};
@@ -91,7 +91,14 @@ impl Builder {
                 self.note_ratio(over, under);
             }
             Atom::Root(sum) | Atom::Labelled(sum) => self.inline(walk, sum, flip),
-            Atom::Wrapped(sum) if sum.terms.is_empty() => {}
+            // `\{{}^\alpha_{\mu\nu}\}`: scripts on nothing are a symbol in its bracket.
+            Atom::Wrapped(sum) if sum.terms.is_empty() => {
+                if walk.factors.len() == 1 {
+                    let carrier = Carrier { group: false, ..Carrier::BRACKET };
+                    let scripts = read_scripts(self, carrier, &factor.scripts, flip);
+                    walk.nodes.extend(scripts.nodes);
+                }
+            }
             Atom::Wrapped(sum) => {
                 let node = self.sum_node(walk, sum, flip);
                 self.scripted_group(walk, factor, node, flip);
@@ -211,6 +218,10 @@ impl Builder {
             let switch = self.switch(Switch::new(true, 0));
             node = Node::Switch(switch, Box::new(node));
         }
+        // `\langle \theta_j \rangle_{|r_i - r_j| < r}`: a mean under a condition.
+        let relation = |item: &Item| item.kind == ItemKind::Relation;
+        walk.any |= group.bracket == Bracket::Angle
+            && factor.scripts.iter().any(|script| script.items.len() > 1 && script.items.iter().any(relation));
         if matches!(group.bracket, Bracket::Bars | Bracket::Angle) {
             let scripts = read_scripts(&mut Builder::default(), Carrier::BRACKET, &factor.scripts, flip);
             return self.powered(walk, node, scripts.power);
@@ -369,8 +380,11 @@ impl Builder {
                 let mut inner = Walk { factors: std::slice::from_ref(next), at: 1, ..Walk::of(flip) };
                 self.factor(&mut inner, next);
                 walk.any |= inner.any;
-                let switch = self.switch(Switch { on: true, price: FUNCTION_PRICE, lends: true });
                 let scope = Node::Scope(Box::new(Node::Product(inner.nodes)));
+                if matches!(next.atom, Atom::Group(_)) {
+                    return walk.nodes.push(scope);
+                }
+                let switch = self.switch(Switch { on: true, price: FUNCTION_PRICE, lends: true });
                 walk.nodes.push(Node::Argument(switch, Box::new(scope)));
             }
         }

@@ -2,7 +2,7 @@
 //! less likely an index.
 
 use compact_str::CompactString;
-use indexwise_grammar::tree::{Atom, Bracket, Factor, ItemKind, Statement, Sum};
+use indexwise_grammar::tree::{Atom, Bracket, Factor, ItemKind, Level, Statement, Sum};
 
 use super::{Shape, Sketch};
 
@@ -20,7 +20,10 @@ pub(super) const NAME_DOUBT: i32 = 80;
 pub(super) fn cast_doubts(sketch: &mut Sketch, named: &[CompactString]) {
     let kernels: Vec<(CompactString, Shape)> =
         sketch.units.iter().map(|unit| (unit.kernel_letter.clone(), unit.shape)).collect();
+    let below: Vec<CompactString> =
+        sketch.units.iter().filter(|unit| unit.level == Level::Down).map(|unit| unit.letter.clone()).collect();
     for unit in &mut sketch.units {
+        unit.mirrored = unit.level == Level::Up && below.contains(&unit.letter);
         let vector = |shape| kernels.iter().any(|(letter, other)| *letter == unit.letter && *other == shape);
         // A derivative along a vector of the statement, `\nabla_m t = m^a ..`, or a component along two of them,
         // `N_{\nu\tau} = N^{\alpha\beta} \nu_\alpha \tau_\beta`.

@@ -1,7 +1,7 @@
 //! Habits of writing that the tree alone shows: what matches anything, what is a function's argument.
 
 use compact_str::CompactString;
-use indexwise_grammar::tree::{Atom, Bracket, Factor, Group, ItemKind, Joint, Kernel, Statement, Sum, Term};
+use indexwise_grammar::tree::{Atom, Bracket, Factor, Group, Item, ItemKind, Joint, Kernel, Statement, Sum, Term};
 
 use crate::conventions::built_in::is_point_kernel;
 
@@ -15,6 +15,8 @@ pub(super) fn matches_anything(term: &Term) -> bool {
     match term.factors.as_slice() {
         [] => true,
         [Factor { atom: Atom::Number(number), .. }] => number == "0",
+        // `={}&` at the start of a row.
+        [Factor { atom: Atom::Wrapped(sum), scripts, .. }] => sum.terms.is_empty() && scripts.is_empty(),
         [Factor { atom: Atom::Kernel(kernel), scripts, .. }] => {
             (kernel.word && scripts.is_empty()) || (kernel.bold && kernel.letter == "0")
         }
@@ -125,7 +127,10 @@ pub(super) fn argument_odds(kernel: &Kernel, group: &Group, indexed: bool) -> Op
     if group.parts.len() > 1 || group.parts.iter().any(|part| !part.relations.is_empty()) {
         return Some((false, ARGUMENT_PRICE));
     }
-    let points = sums().all(|sum| !sum.terms.is_empty() && sum.terms.iter().all(begins_with_point));
+    let points = sums().all(|sum| {
+        let product = sum.terms.len() > 1 && sum.terms.iter().any(|term| indexed_factors(term) > 1);
+        !sum.terms.is_empty() && !product && sum.terms.iter().all(begins_with_point)
+    });
     if points {
         return Some((false, ARGUMENT_PRICE));
     }
@@ -134,6 +139,13 @@ pub(super) fn argument_odds(kernel: &Kernel, group: &Group, indexed: bool) -> Op
         return sums().all(is_lone_kernel).then_some((true, DOUBTFUL_ARGUMENT_PRICE));
     }
     (lone_term && kernel.letter != "d").then_some((true, DOUBTFUL_ARGUMENT_PRICE))
+}
+
+/// How many factors of a term carry letters in their scripts.
+fn indexed_factors(term: &Term) -> usize {
+    let letter = |item: &Item| matches!(item.kind, ItemKind::Letter(_));
+    let indexed = |factor: &&Factor| factor.scripts.iter().any(|script| script.items.iter().any(letter));
+    term.factors.iter().filter(indexed).count()
 }
 
 pub(super) fn begins_with_point(term: &Term) -> bool {

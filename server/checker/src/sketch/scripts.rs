@@ -64,6 +64,7 @@ const INDICES_AS_WORD: i32 = 30;
 pub(super) fn read_scripts(builder: &mut Builder, carrier: Carrier<'_>, scripts: &[Script], flip: bool) -> Scripts {
     let mut out = Scripts::default();
     let mut candidates: Vec<Candidate<'_>> = Vec::new();
+    let mut exponents: Vec<Candidate<'_>> = Vec::new();
     let mut numbers = 0;
     for script in scripts.iter().filter(|script| !script.before) {
         if script.items.iter().any(|item| item.kind == ItemKind::Dots) {
@@ -71,10 +72,18 @@ pub(super) fn read_scripts(builder: &mut Builder, carrier: Carrier<'_>, scripts:
         }
         if let Some(power) = power_of(script, carrier, scripts) {
             out.power = Some(power);
+        } else if is_exponential(script, carrier, scripts) {
+            collect(builder, carrier, script, &mut exponents);
         } else if holds_indices(script) || lends(carrier, script) {
             numbers += plain_numbers(script);
             collect(builder, carrier, script, &mut candidates);
         }
+    }
+    if !exponents.is_empty() {
+        // `e^{i\omega t}`, unless the letters are indices of a kernel e.
+        let nodes = exponents.iter().map(|one| place(builder, carrier, one, exponents.len(), false, flip)).collect();
+        let switch = builder.switch(Switch::new(false, WORD_AS_INDICES));
+        out.nodes.push(Node::Switch(switch, Box::new(Node::Product(nodes))));
     }
     mark_particles(carrier, &mut candidates);
     note_stacked(builder, carrier, scripts, &candidates);
@@ -119,7 +128,6 @@ fn power_of(script: &Script, carrier: Carrier<'_>, all: &[Script]) -> Option<Pow
             "3" if lower > 1 && !carrier.group => None,
             _ => Some(Power::Other),
         },
-        _ if is_exponential(script, carrier, all) => Some(Power::Other),
         // `a_i^{\nu_i}`: a quantity with a name of its own.
         [Item { kind: ItemKind::Factor(factor), .. }]
             if matches!(factor.atom, Atom::Kernel(_)) && !factor.scripts.is_empty() =>
@@ -369,6 +377,7 @@ fn place(
         coordinate: is_usual_coordinate(&candidate.letter),
         level: written,
         shape,
+        mirrored: false,
         vector: carrier.bold,
         bias,
     });
@@ -395,7 +404,7 @@ fn bias(carrier: Carrier<'_>, candidate: &Candidate<'_>, shape: Shape, component
     let bare = bare_letter(&candidate.letter);
     let lie = carrier.name.starts_with('\\') && carrier.name.ends_with('L') || carrier.name == "\\pounds";
     if is_labelled_operator(carrier.name) && (lie || shape == Shape::Lone) {
-        return -90;
+        return if lie { -90 } else { -22 };
     }
     if is_usual_coordinate(&candidate.letter) {
         return if components || shape != Shape::Several { -25 } else { -8 };
