@@ -1,6 +1,7 @@
 //! A dummy of an inner factor meets the same letter outside.
 
 use indexwise_grammar::span::Span;
+use indexwise_grammar::tree::Level;
 
 use crate::balance::{Event, Odd};
 use crate::changes::{Change, fresh_letters};
@@ -38,24 +39,28 @@ fn check(judged: &Judged<'_>) -> Option<Report> {
         .map(|(n, fresh)| (Change::Rename(pair.clone(), fresh), if n == 0 { 1 } else { 0 }))
         .collect();
     let mends = mends(judged, changes);
+    // Free elsewhere, it may number quantities; a pair of one up and one down is a sum however the rest is meant.
+    let numbered = free_elsewhere(judged, &letter) && !is_staggered(judged, &pair);
     let related = outside
         .iter()
         .map(|place| Related { span: judged.span(*place), message: format!("{} stands outside here", shown(&letter)) });
     let finding = Finding {
         rule: RULE.name,
-        severity: if free_elsewhere(judged, &letter) { Severity::Hint } else { RULE.severity },
+        severity: if numbered { Severity::Hint } else { RULE.severity },
         span: judged.span(inner),
         message: format!("{0} is summed inside, and {0} stands outside in the same product", shown(&letter)),
         related: related.collect(),
-        fixes: fixes(
-            judged,
-            &mends,
-            if free_elsewhere(judged, &letter) { Err("it is only a hint") } else { clear_winner(&mends) },
-        ),
+        fixes: fixes(judged, &mends, if numbered { Err("it is only a hint") } else { clear_winner(&mends) }),
         ledger: Some(judged.view(std::slice::from_ref(&letter))),
     };
     let mended = mends.into_iter().next().map(|mend| (mend.sketch, mend.choice));
     Some(Report { finding, mended })
+}
+
+/// Whether a pair is one above and one below.
+fn is_staggered(judged: &Judged<'_>, pair: &[u32]) -> bool {
+    let levels: Vec<Level> = pair.iter().filter_map(|place| judged.sketch.place(*place)).map(|p| p.level).collect();
+    levels.contains(&Level::Up) && levels.contains(&Level::Down)
 }
 
 /// The term of a side that a place stands in.

@@ -33,7 +33,7 @@ fn check(judged: &Judged<'_>) -> Option<Report> {
     });
     let blamed = blamed.or_else(|| places.get(2).copied())?;
     // Free once elsewhere: it numbers quantities, one formula for each.
-    let numbered = free_elsewhere(judged, &letter);
+    let numbered = free_elsewhere(judged, &letter) && !has_trace(judged, &places);
     let severity = if numbered { Severity::Hint } else { RULE.severity };
     let bulk = if numbered { Err("it is only a hint") } else { clear_winner(&mends) };
     let related = places.iter().filter(|place| **place != blamed);
@@ -48,6 +48,13 @@ fn check(judged: &Judged<'_>) -> Option<Report> {
     };
     let mended = mends.into_iter().next().map(|mend| (mend.sketch, mend.choice));
     Some(Report { finding, mended })
+}
+
+/// Whether two of the places stand in one script, as in `\sigma_{kk}`: a sum however the rest is meant.
+fn has_trace(judged: &Judged<'_>, places: &[u32]) -> bool {
+    let mut scripts: Vec<_> = places.iter().filter_map(|place| judged.sketch.place(*place)).map(|p| p.script).collect();
+    scripts.sort_unstable();
+    scripts.windows(2).any(|pair| pair.first() == pair.last())
 }
 
 /// Whether the letter is free in a term of another side.

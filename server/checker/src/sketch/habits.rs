@@ -128,7 +128,7 @@ pub(super) fn argument_odds(kernel: &Kernel, group: &Group, indexed: bool) -> Op
         return Some((false, ARGUMENT_PRICE));
     }
     let points = sums().all(|sum| {
-        let product = sum.terms.len() > 1 && sum.terms.iter().any(|term| indexed_factors(term) > 1);
+        let product = sum.terms.iter().any(|term| indexed_factors(term) > 1);
         !sum.terms.is_empty() && !product && sum.terms.iter().all(begins_with_point)
     });
     if points {

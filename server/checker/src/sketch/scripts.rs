@@ -162,7 +162,8 @@ fn plain_numbers(script: &Script) -> usize {
 /// `e^{i\omega r}`: several letters above an e that carries nothing below.
 fn is_exponential(script: &Script, carrier: Carrier<'_>, all: &[Script]) -> bool {
     let greek = |item: &Item| matches!(&item.kind, ItemKind::Letter(letter) if class_of(letter) == LetterClass::Greek);
-    carrier.name == "e" && all.len() == 1 && script.items.len() > 1 && !script.items.iter().all(greek)
+    let above = carrier.name == "e" && script.level == Level::Up;
+    above && all.len() == 1 && script.items.len() > 1 && !script.items.iter().all(greek)
 }
 
 fn is_arithmetic(kind: &ItemKind) -> bool {
