@@ -1,11 +1,12 @@
-//! Checks many files: groups them into papers, checks the papers in parallel, and puts the results back into
-//! the order of the files.
+//! Checks many files: groups them into papers, checks the papers in parallel, and hands the results on in the order
+//! of the files while the work goes on, so that a report on a large archive need not be held in memory.
 //!
 //! A panic in one paper becomes one line; the other papers go on. The checker is a parameter, so that tests can
 //! put one in its place that finds what they need.
 
-use std::collections::HashMap;
+use std::collections::{BTreeMap, HashMap};
 use std::path::PathBuf;
+use std::sync::{Mutex, MutexGuard, PoisonError};
 
 use indexwise_checker::paper::{Analysis, DocumentAnalysis, Paper};
 use rayon::prelude::*;
@@ -24,16 +25,18 @@ const STACK: usize = 16 << 20;
 /// What judges a paper.
 pub type Checker<'a> = dyn Fn(&Paper) -> Analysis + Sync + 'a;
 
-/// What came out, in the order of the files.
+/// What came out besides the reports, in the order of the files.
 #[derive(Debug, Default)]
 pub struct Outcome {
-    /// What was found in each file that could be checked.
-    pub files: Vec<FileReport>,
-    /// What was mended in them and what was left; empty unless mending was asked for.
+    /// What was mended in the files and what was left; empty unless mending was asked for.
     pub mended: Vec<Mended>,
     /// What went wrong.
     pub failures: Vec<Failure>,
 }
+
+/// Takes the reports, file by file in the order of the files, each as soon as all before it are there. The answer is
+/// whether more are wanted.
+pub type Taker<'a> = dyn FnMut(FileReport) -> bool + Send + 'a;
 
 /// How a run is done.
 pub struct Run<'a> {
@@ -52,7 +55,7 @@ pub fn pool(jobs: Option<u16>) -> Result<ThreadPool, Failure> {
 }
 
 /// Checks the files.
-pub fn check(listed: &[Listed], disk: &dyn Texts, run: &Run) -> Outcome {
+pub fn check(listed: &[Listed], disk: &dyn Texts, run: &Run, taker: &mut Taker) -> Outcome {
     let mut texts = Overlay::new(disk);
     for file in listed {
         if let Some(text) = &file.given {
@@ -61,26 +64,50 @@ pub fn check(listed: &[Listed], disk: &dyn Texts, run: &Run) -> Outcome {
     }
     let roots = Roots::new(&texts);
     let papers = papers(listed, &texts, &roots);
-    let mut results: Vec<Share> = papers
-        .into_par_iter()
-        .flat_map_iter(|paper| {
-            let results = check_paper(&paper, listed, &texts, run);
-            run.progress.advance(paper.members.len());
-            results
-        })
-        .collect();
-    results.sort_by_key(|(place, _)| *place);
-    let mut outcome = Outcome::default();
-    for (_, result) in results {
-        match result {
-            Ok(checked) => {
-                outcome.files.push(checked.report);
-                outcome.mended.extend(checked.mended);
+    let queue =
+        Mutex::new(Queue { taker, wanted: true, next: 0, waiting: BTreeMap::new(), outcome: Outcome::default() });
+    // A bridge gives the papers out in their order, so that few results wait for those before them.
+    papers.into_iter().par_bridge().for_each(|paper| {
+        if !locked(&queue).wanted {
+            return;
+        }
+        let shares = check_paper(&paper, listed, &texts, run);
+        run.progress.advance(paper.members.len());
+        locked(&queue).put(&paper.members, shares);
+    });
+    queue.into_inner().unwrap_or_else(PoisonError::into_inner).outcome
+}
+
+fn locked<'m, 'q, 't>(queue: &'m Mutex<Queue<'q, 't>>) -> MutexGuard<'m, Queue<'q, 't>> {
+    queue.lock().unwrap_or_else(PoisonError::into_inner)
+}
+
+/// Puts the results into the order of the files and hands them on.
+struct Queue<'q, 't> {
+    taker: &'q mut Taker<'t>,
+    wanted: bool,
+    next: usize,
+    waiting: BTreeMap<usize, Option<Result<Checked, Failure>>>,
+    outcome: Outcome,
+}
+
+impl Queue<'_, '_> {
+    /// Takes what came of a paper. One failure may stand for all its members, so the others may have no result.
+    fn put(&mut self, members: &[usize], shares: Vec<Share>) {
+        self.waiting.extend(members.iter().map(|place| (*place, None)));
+        self.waiting.extend(shares.into_iter().map(|(place, result)| (place, Some(result))));
+        while let Some(result) = self.waiting.remove(&self.next) {
+            self.next += 1;
+            match result {
+                Some(Ok(checked)) => {
+                    self.wanted = self.wanted && (self.taker)(checked.report);
+                    self.outcome.mended.extend(checked.mended);
+                }
+                Some(Err(failure)) => self.outcome.failures.push(failure),
+                None => {}
             }
-            Err(failure) => outcome.failures.push(failure),
         }
     }
-    outcome
 }
 
 /// A paper with those of its files that are to be reported on, as places in the list.
@@ -137,9 +164,17 @@ fn check_paper(paper: &Group, listed: &[Listed], texts: &dyn Texts, run: &Run) -
     let checked = panics::caught(|| check_members(key, &members, texts, run));
     match checked {
         Ok(Ok(results)) => results,
-        Ok(Err(cause)) => vec![(first, Err(Failure::new(&file.shown, cause)))],
+        Ok(Err(cause)) => members.iter().map(|(place, file)| (*place, Err(not_loaded(key, file, &cause)))).collect(),
         Err(cause) => vec![(first, Err(Failure(internal_error(&file.shown, members.len(), &cause))))],
     }
+}
+
+/// The root could be read when its paper was looked for, and cannot be read any more.
+fn not_loaded(key: &PaperKey, file: &Listed, cause: &str) -> Failure {
+    if file.path == key.root {
+        return Failure::new(&file.shown, cause);
+    }
+    Failure::new(&file.shown, format!("was not checked: its main file {} cannot be read: {cause}", key.root.display()))
 }
 
 fn internal_error(path: &str, files: usize, cause: &str) -> String {
@@ -187,7 +222,7 @@ fn report_of(shown: &str, file: &Listed, found: DocumentAnalysis, text: Option<&
 
 #[cfg(test)]
 mod tests {
-    #![allow(clippy::unwrap_used, clippy::expect_used, clippy::panic)]
+    #![allow(clippy::unwrap_used, clippy::expect_used, clippy::panic, clippy::indexing_slicing)]
     use super::*;
     use crate::files;
     use crate::project::Disk;
@@ -202,11 +237,22 @@ mod tests {
         folder
     }
 
-    fn run_on(folder: &tempfile::TempDir, checker: &Checker) -> Outcome {
+    /// The names of the files that were reported on, and what went wrong; no report is wanted after `last`.
+    fn run_until(last: &str, jobs: u16, folder: &tempfile::TempDir, checker: &Checker) -> (Vec<String>, Vec<Failure>) {
         let (listed, _) = files::find(&[folder.path().to_owned()], Host::Latex);
         let progress = Progress::new(listed.len(), false);
         let run = Run { checker, mend: false, progress: &progress };
-        pool(Some(2)).unwrap().install(|| check(&listed, &Disk, &run))
+        let mut names = Vec::new();
+        let mut taker = |file: FileReport| {
+            names.push(file.path.rsplit('/').next().unwrap().to_owned());
+            names.last().is_none_or(|name| name != last)
+        };
+        let outcome = pool(Some(jobs)).unwrap().install(|| check(&listed, &Disk, &run, &mut taker));
+        (names, outcome.failures)
+    }
+
+    fn run_on(folder: &tempfile::TempDir, checker: &Checker) -> (Vec<String>, Vec<Failure>) {
+        run_until("", 2, folder, checker)
     }
 
     fn nothing(paper: &Paper) -> Analysis {
@@ -220,19 +266,18 @@ mod tests {
             assert!(paper.documents.iter().all(|source| &*source.text != "bad"), "no way");
             nothing(paper)
         };
-        let outcome = run_on(&folder, &checker);
-        let names: Vec<_> = outcome.files.iter().map(|file| file.path.rsplit('/').next().unwrap()).collect();
+        let (names, failures) = run_on(&folder, &checker);
         assert_eq!(names, ["a.md", "c.md"]);
-        let [Failure(line)] = outcome.failures.as_slice() else { panic!("{:?}", outcome.failures) };
+        let [Failure(line)] = failures.as_slice() else { panic!("{failures:?}") };
         assert!(line.starts_with("internal error while checking ") && line.contains("b.md: no way"), "{line}");
     }
 
     #[test]
     fn an_unreadable_file_does_not_stop_the_others() {
         let folder = folder(&[("a.md", b"\xff"), ("b.md", b"b")]);
-        let outcome = run_on(&folder, &nothing);
-        assert_eq!(outcome.files.len(), 1);
-        let [Failure(line)] = outcome.failures.as_slice() else { panic!("{:?}", outcome.failures) };
+        let (names, failures) = run_on(&folder, &nothing);
+        assert_eq!(names, ["b.md"]);
+        let [Failure(line)] = failures.as_slice() else { panic!("{failures:?}") };
         assert!(line.ends_with("a.md: is not UTF-8: first bad byte at offset 0"), "{line}");
     }
 
@@ -246,8 +291,54 @@ mod tests {
             assert_eq!(paper.documents.len(), 2);
             nothing(paper)
         };
-        let outcome = run_on(&folder, &checker);
-        assert_eq!((outcome.files.len(), outcome.failures), (2, Vec::new()));
+        let (names, failures) = run_on(&folder, &checker);
+        assert_eq!((names.len(), failures), (2, Vec::new()));
         assert_eq!(count.into_inner(), 1);
+    }
+
+    #[test]
+    fn a_panic_in_a_paper_does_not_hold_up_what_comes_after_its_parts() {
+        let root: &[u8] = b"\\documentclass{article}\\input{c}\\input{e}";
+        let folder = folder(&[("a.tex", root), ("b.md", b"b"), ("c.tex", b"c"), ("d.md", b"d"), ("e.tex", b"e")]);
+        let checker = |paper: &Paper| {
+            assert!(paper.documents.len() == 1, "no way");
+            nothing(paper)
+        };
+        let (names, failures) = run_on(&folder, &checker);
+        assert_eq!(names, ["b.md", "d.md"]);
+        let [Failure(line)] = failures.as_slice() else { panic!("{failures:?}") };
+        assert!(line.contains("a.tex and 2 more of its paper: no way"), "{line}");
+    }
+
+    #[test]
+    fn a_report_is_handed_on_before_the_next_paper_is_checked() {
+        let folder = folder(&[("a.md", b"a"), ("b.md", b"b"), ("c.md", b"c")]);
+        let (listed, _) = files::find(&[folder.path().to_owned()], Host::Latex);
+        let (progress, taken) = (Progress::new(3, false), std::sync::atomic::AtomicUsize::new(0));
+        let checker = |paper: &Paper| {
+            let before = ["a", "b", "c"].iter().position(|text| *text == &*paper.documents[0].text).unwrap();
+            assert_eq!(taken.load(std::sync::atomic::Ordering::SeqCst), before);
+            nothing(paper)
+        };
+        let run = Run { checker: &checker, mend: false, progress: &progress };
+        let mut taker = |_| {
+            taken.fetch_add(1, std::sync::atomic::Ordering::SeqCst);
+            true
+        };
+        let outcome = pool(Some(1)).unwrap().install(|| check(&listed, &Disk, &run, &mut taker));
+        assert_eq!((outcome.failures, taken.into_inner()), (Vec::new(), 3));
+    }
+
+    #[test]
+    fn no_work_is_begun_once_no_report_is_wanted() {
+        let names: Vec<String> = (100..200).map(|at| format!("{at}.md")).collect();
+        let files: Vec<(&str, &[u8])> = names.iter().map(|name| (name.as_str(), &b"x"[..])).collect();
+        let count = std::sync::atomic::AtomicUsize::new(0);
+        let checker = |paper: &Paper| {
+            count.fetch_add(1, std::sync::atomic::Ordering::Relaxed);
+            nothing(paper)
+        };
+        let (taken, _) = run_until("101.md", 1, &folder(&files), &checker);
+        assert_eq!((taken, count.into_inner()), (vec!["100.md".to_owned(), "101.md".to_owned()], 2));
     }
 }

@@ -20,8 +20,11 @@ use crate::reports::places::Places;
 /// A fix may make another one possible; after so many rounds the rest is left.
 const ROUNDS: usize = 10;
 
-/// Of longer lines, in bytes, only what a fix touches is kept to be shown.
+/// Of longer lines, in bytes, only what a fix touches is kept to be shown, and some of what stands around it.
 const LONGEST_SHOWN: usize = 300;
+
+/// So many bytes of a long line are shown before and after what a fix touches.
+const AROUND: usize = 30;
 
 /// What became of a file.
 #[derive(Clone, Debug, PartialEq, Eq)]
@@ -242,7 +245,7 @@ fn apply<'a>(text: &str, edits: impl Iterator<Item = &'a Edit>) -> String {
 fn done(text: &str, places: &Places, finding: &Finding, fix: &Fix) -> Done {
     let touched = fix.edits.iter().map(|edit| edit.span).reduce(Span::join).unwrap_or(finding.span);
     let whole = places.lines_of(touched).reduce(Span::join).filter(|whole| whole.len() <= LONGEST_SHOWN);
-    let whole = whole.unwrap_or(touched);
+    let whole = whole.unwrap_or_else(|| widened(text, touched));
     let (start, lines) = (whole.range().start, whole.of(text));
     let moved: Vec<Edit> = fix
         .edits
@@ -258,6 +261,19 @@ fn done(text: &str, places: &Places, finding: &Finding, fix: &Fix) -> Done {
         old: lines.to_owned(),
         new: apply(lines, moved.iter()),
     }
+}
+
+/// A span with some of what stands around it on its lines.
+fn widened(text: &str, span: Span) -> Span {
+    let (before, after) = (text.get(..span.range().start), text.get(span.range().end..));
+    let on_line = |c: &char| !matches!(c, '\n' | '\r');
+    let within = |bytes: &mut usize, c: char| {
+        *bytes += c.len_utf8();
+        (*bytes <= AROUND).then_some(c.len_utf8())
+    };
+    let before: usize = before.unwrap_or_default().chars().rev().take_while(on_line).scan(0, within).sum();
+    let after: usize = after.unwrap_or_default().chars().take_while(on_line).scan(0, within).sum();
+    Span::new(span.range().start - before, span.range().end + after)
 }
 
 /// Which plans must be taken back: those whose file has more errors and warnings than before; all of them if
@@ -376,6 +392,13 @@ mod tests {
         assert!(mended.left.is_empty() && mended.report.findings.is_empty());
         assert_eq!(mended.done[0].old, "a slip slip. slip");
         assert_eq!(mended.done[0].new, "a mend slip. slip");
+    }
+
+    #[test]
+    fn of_a_long_line_the_surroundings_of_a_mend_are_shown() {
+        let mended = mended(&format!("x\n{}. a slip μ\ny", "μ".repeat(LONGEST_SHOWN)));
+        let shown = format!("{}. a slip μ", "μ".repeat((AROUND - 4) / 2));
+        assert_eq!((&mended.done[0].old, &mended.done[0].new), (&shown, &shown.replace("slip", "mend")));
     }
 
     #[test]

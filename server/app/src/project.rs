@@ -105,7 +105,7 @@ fn plain_name(reference: &Reference) -> Option<&str> {
 #[derive(Debug)]
 enum Named<'a> {
     Nothing,
-    Root(PathBuf),
+    Root(&'a Reference, PathBuf),
     Missing(&'a Reference),
     Outside(&'a Reference),
 }
@@ -119,7 +119,7 @@ fn named_root<'a>(texts: &dyn Texts, file: &Path, references: &'a [Reference]) -
         let Some(name) = plain_name(reference) else { continue };
         let place = locate(texts, name, ".tex", &[folder_of(file)], own);
         match place {
-            Place::File(root) if file.starts_with(project_of(texts, &root)) => return Named::Root(root),
+            Place::File(root) if file.starts_with(project_of(texts, &root)) => return Named::Root(reference, root),
             Place::File(_) | Place::Outside => named = Named::Outside(reference),
             Place::Missing if matches!(named, Named::Nothing) => named = Named::Missing(reference),
             Place::Missing => {}

@@ -63,6 +63,7 @@ fn bad_options_are_told_in_one_line() {
     complains(&[], "", "say what to do: check, explain or completions (see --help)");
     complains(&[], "check -", "-: say with --host latex, markdown or note what standard input holds");
     complains(&[], "check --fix --host note -", "--fix: cannot write to standard input");
+    complains(&[], "check --only ,", "--only and --without: a rule's name is missing");
     for line in ["chekc", "check --reprot text", "check --report pdf", "check --jobs none", "check --dry-run"] {
         let answer = Folder::new(&[]).run(line);
         assert_eq!((answer.status, answer.out.as_str()), (2, ""), "{line}");
@@ -93,6 +94,32 @@ fn help_version_and_completions_are_given() {
         let answer = folder.run(line);
         assert_eq!((answer.status, answer.err.as_str()), (0, ""), "{line}");
         assert!(answer.out.contains(word), "{line}: {}", answer.out);
+    }
+}
+
+#[test]
+fn every_listed_rule_is_explained() {
+    let folder = Folder::new(&[]);
+    let list = folder.run("explain").out;
+    let names: Vec<&str> = list.lines().filter_map(|line| line.split(' ').next()).collect();
+    assert!(names.len() > 10, "{list}");
+    for name in names {
+        let answer = folder.run(&format!("explain {name}"));
+        assert_eq!((answer.status, answer.err.as_str()), (0, ""), "{name}");
+        assert!(answer.out.starts_with(&format!("# {name}\n")), "{name}: {}", answer.out);
+    }
+}
+
+#[test]
+fn every_shell_gets_its_completions() {
+    for shell in ["bash", "elvish", "fish", "powershell", "zsh"] {
+        let answer = Folder::new(&[]).run(&format!("completions {shell}"));
+        assert_eq!((answer.status, answer.err.as_str()), (0, ""), "{shell}");
+        for word in ["dry-run", "explain", "json-lines"] {
+            // This shell's script knows the names of options and not their values.
+            let known = answer.out.contains(word) || (word == "json-lines" && matches!(shell, "elvish" | "powershell"));
+            assert!(known, "{shell}: {word}");
+        }
     }
 }
 

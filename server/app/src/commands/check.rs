@@ -1,6 +1,7 @@
 //! `indexwise check`: finds the files, has them checked, mends if asked, reports.
 
-use std::io::{self, BufWriter, IsTerminal, Write};
+use std::fs::File;
+use std::io::{self, IsTerminal, Write};
 use std::path::Path;
 use std::time::Instant;
 
@@ -32,28 +33,36 @@ pub fn run(arguments: &CheckArguments) -> Status {
 }
 
 fn checked(arguments: &CheckArguments) -> Result<Status, Failure> {
-    let since = Instant::now();
     let settings = settings(arguments)?;
     let input = arguments.host.map_or(Host::Latex, Host::from);
     let (listed, failures) = files::find(&arguments.paths, input);
     refuse_own_output(arguments.output.as_deref(), &listed)?;
-    let mut outcome = check(arguments, &settings, &listed)?;
+    let mut report = Report::begin(arguments)?;
+    let mut outcome = check(arguments, &settings, &listed, &mut report)?;
     outcome.failures.splice(0..0, failures);
     if arguments.fix && !arguments.dry_run {
-        write_mended(&mut outcome);
+        write_mended(&mut outcome, &mut report.files);
     }
-    let written = report(arguments, &outcome, since);
+    let written = report.end(&outcome.mended);
     outcome.failures.iter().for_each(Failure::tell);
     written?;
-    Ok(status(&outcome, arguments.strict))
+    Ok(if outcome.failures.is_empty() { report.status() } else { Status::Trouble })
 }
 
-fn check(arguments: &CheckArguments, settings: &Settings, listed: &[Listed]) -> Result<Outcome, Failure> {
-    let progress = Progress::new(listed.len(), !arguments.no_progress);
+fn check(
+    arguments: &CheckArguments,
+    settings: &Settings,
+    listed: &[Listed],
+    report: &mut Report,
+) -> Result<Outcome, Failure> {
+    // A report that grows on the terminal shows by itself how far the work has come.
+    let speaks = report.streams && report.on_terminal;
+    let progress = Progress::new(listed.len(), !(arguments.no_progress || speaks));
     let cancel = Cancel::default();
     let checker = |paper: &Paper| indexwise_checker::paper::check(paper, settings, &cancel);
     let run = Run { checker: &checker, mend: arguments.fix, progress: &progress };
-    let outcome = batch::pool(arguments.jobs)?.install(|| batch::check(listed, &Disk, &run));
+    let mut taker = |file: FileReport| report.take(file);
+    let outcome = batch::pool(arguments.jobs)?.install(|| batch::check(listed, &Disk, &run, &mut taker));
     progress.finish();
     Ok(outcome)
 }
@@ -61,6 +70,9 @@ fn check(arguments: &CheckArguments, settings: &Settings, listed: &[Listed]) -> 
 /// What the checker is to look for.
 fn settings(arguments: &CheckArguments) -> Result<Settings, Failure> {
     for name in arguments.only.iter().chain(&arguments.without) {
+        if name.is_empty() {
+            return Err(Failure("--only and --without: a rule's name is missing".into()));
+        }
         if find(name).is_none() {
             return Err(Failure(unknown_rule(name)));
         }
@@ -75,7 +87,7 @@ fn settings(arguments: &CheckArguments) -> Result<Settings, Failure> {
 
 /// What to say of a rule's name that is none.
 pub fn unknown_rule(name: &str) -> String {
-    match nearest(name, RULES.iter().map(|rule| rule.name)) {
+    match nearest(&name.to_ascii_lowercase(), RULES.iter().map(|rule| rule.name)) {
         Some(near) => format!("{name}: there is no such rule; the nearest is {near}"),
         None => format!("{name}: there is no such rule"),
     }
@@ -89,8 +101,8 @@ fn refuse_own_output(output: Option<&Path>, listed: &[Listed]) -> Result<(), Fai
 }
 
 /// Writes what was mended. A file that cannot be written, or that was changed meanwhile, is left.
-fn write_mended(outcome: &mut Outcome) {
-    for (mended, file) in outcome.mended.iter_mut().zip(&mut outcome.files) {
+fn write_mended(outcome: &mut Outcome, files: &mut [FileReport]) {
+    for (mended, file) in outcome.mended.iter_mut().zip(files) {
         if mended.after == mended.before {
             // It may still read otherwise, because another file of its paper was mended.
             *file = mended.report.clone();
@@ -112,31 +124,95 @@ fn write_mended(outcome: &mut Outcome) {
     }
 }
 
-/// Writes the report where it is wanted; with `--fix`, first what was done. In a report for programs that would
-/// be out of place, so there it goes to standard error.
-fn report(arguments: &CheckArguments, outcome: &Outcome, since: Instant) -> Result<(), Failure> {
-    let to_terminal = arguments.output.is_none() && io::stdout().is_terminal();
-    let palette = Palette { coloured: to_terminal && colours_are_welcome() };
-    let look = Look { kind: arguments.report, palette };
-    let mut text = Vec::new();
-    let told = tell_mended(&outcome.mended, arguments.dry_run);
-    if arguments.report == ReportKind::Text {
-        text.extend_from_slice(told.as_bytes());
-    } else {
-        let _ = io::stderr().lock().write_all(told.as_bytes());
-    }
-    // Writing to memory does not fail.
-    let _ = reports::write(&outcome.files, look, since.elapsed(), &mut text);
-    match &arguments.output {
-        Some(path) => std::fs::write(path, &text).map_err(|error| Failure::new(path.display(), cause(&error))),
-        None => print(&text),
-    }
+/// The report in the making.
+///
+/// One with an object for each file is written while the work goes on; the others speak of all files at once, or
+/// of what became of them when all were mended.
+struct Report<'a> {
+    arguments: &'a CheckArguments,
+    since: Instant,
+    out: Box<dyn Write + Send>,
+    on_terminal: bool,
+    streams: bool,
+    written: io::Result<()>,
+    /// Whether anything counts in files that are written already.
+    found: bool,
+    /// The files that are still to be written.
+    files: Vec<FileReport>,
 }
 
-fn print(text: &[u8]) -> Result<(), Failure> {
-    let mut out = BufWriter::new(io::stdout().lock());
-    let written = out.write_all(text).and_then(|()| out.flush());
-    gone_is_fine(written).map_err(|error| Failure::new("standard output", cause(&error)))
+impl<'a> Report<'a> {
+    fn begin(arguments: &'a CheckArguments) -> Result<Self, Failure> {
+        let out: Box<dyn Write + Send> = match &arguments.output {
+            Some(path) => Box::new(File::create(path).map_err(|error| Failure::new(path.display(), cause(&error)))?),
+            None => Box::new(io::stdout()),
+        };
+        Ok(Self {
+            arguments,
+            since: Instant::now(),
+            out,
+            on_terminal: arguments.output.is_none() && io::stdout().is_terminal(),
+            streams: arguments.report == ReportKind::JsonLines && !arguments.fix,
+            written: Ok(()),
+            found: false,
+            files: Vec::new(),
+        })
+    }
+
+    /// Takes what was found in a file; the answer is whether more is wanted.
+    fn take(&mut self, file: FileReport) -> bool {
+        if !self.streams {
+            self.files.push(file);
+            return true;
+        }
+        self.found |= self.counts(&file);
+        let text = self.text(std::slice::from_ref(&file));
+        self.write(&text);
+        self.written.is_ok()
+    }
+
+    /// Writes what is not written yet; with `--fix`, first what was done. In a report for programs that would be
+    /// out of place, so there it goes to standard error.
+    fn end(&mut self, mended: &[Mended]) -> Result<(), Failure> {
+        let told = tell_mended(mended, self.arguments.dry_run);
+        if self.arguments.report == ReportKind::Text {
+            self.write(told.as_bytes());
+        } else {
+            let _ = io::stderr().lock().write_all(told.as_bytes());
+        }
+        if !self.streams {
+            let text = self.text(&self.files);
+            self.write(&text);
+        }
+        let written = std::mem::replace(&mut self.written, Ok(()));
+        let name = self.arguments.output.as_ref().map_or("standard output".into(), |path| path.display().to_string());
+        gone_is_fine(written).map_err(|error| Failure::new(name, cause(&error)))
+    }
+
+    fn text(&self, files: &[FileReport]) -> Vec<u8> {
+        let palette = Palette { coloured: self.on_terminal && colours_are_welcome() };
+        let look = Look { kind: self.arguments.report, palette };
+        let mut text = Vec::new();
+        // Writing to memory does not fail.
+        let _ = reports::write(files, look, self.since.elapsed(), &mut text);
+        text
+    }
+
+    /// Writes, unless writing failed before.
+    fn write(&mut self, text: &[u8]) {
+        if self.written.is_ok() {
+            self.written = self.out.write_all(text).and_then(|()| self.out.flush());
+        }
+    }
+
+    /// Whether a file has something that counts at the chosen strictness.
+    fn counts(&self, file: &FileReport) -> bool {
+        file.findings.iter().any(|found| self.arguments.strict || found.severity != Severity::Hint)
+    }
+
+    fn status(&self) -> Status {
+        if self.found || self.files.iter().any(|file| self.counts(file)) { Status::Findings } else { Status::Clean }
+    }
 }
 
 /// The convention: any value of NO_COLOR but the empty one says no.
@@ -167,15 +243,4 @@ fn tell_mended(mended: &[Mended], dry_run: bool) -> String {
         lines.push(String::new());
     }
     lines.iter().map(|line| format!("{line}\n")).collect()
-}
-
-fn status(outcome: &Outcome, strict: bool) -> Status {
-    let counts = |file: &FileReport| file.findings.iter().any(|found| strict || found.severity != Severity::Hint);
-    if !outcome.failures.is_empty() {
-        Status::Trouble
-    } else if outcome.files.iter().any(counts) {
-        Status::Findings
-    } else {
-        Status::Clean
-    }
 }

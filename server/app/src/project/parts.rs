@@ -4,7 +4,7 @@
 //! a `Trouble` at the place that asks for it, once; a style that is not beside the document belongs to the TeX
 //! installation and is passed over.
 
-use std::collections::HashSet;
+use std::collections::{HashMap, HashSet};
 use std::path::{Path, PathBuf};
 use std::sync::Arc;
 use std::vec::IntoIter;
@@ -16,8 +16,9 @@ use super::roots::MOST_PARTS;
 use super::{Named, PaperKey, Place, Texts, folder_of, locate, named_root, outline, plain_name, project_of};
 use crate::files::Text;
 
-/// All texts of a paper together are not larger than this, in bytes.
-const LARGEST_PAPER: usize = 256 << 20;
+/// When the texts of a paper are larger than this together, in bytes, no more are read: dense mathematics takes a
+/// hundred times its length in memory while it is checked.
+const LARGEST_PAPER: usize = 64 << 20;
 
 /// So many names of a cycle are spelled out.
 const LONGEST_CYCLE_SHOWN: usize = 8;
@@ -35,6 +36,8 @@ pub struct Loaded {
     pub paper: Paper,
     /// For each document, where it came from.
     pub origins: Vec<Origin>,
+    /// The documents by their real paths.
+    known: HashMap<PathBuf, usize>,
 }
 
 /// Where a document came from.
@@ -49,7 +52,7 @@ pub struct Origin {
 impl Loaded {
     /// Which document stands at a real path.
     pub fn document(&self, path: &Path) -> Option<usize> {
-        self.origins.iter().position(|origin| origin.path == path)
+        self.known.get(path).copied()
     }
 }
 
@@ -71,7 +74,6 @@ struct Reader<'a> {
     root_folder: &'a Path,
     project: &'a Path,
     loaded: Loaded,
-    known: std::collections::HashMap<PathBuf, usize>,
     known_styles: HashSet<PathBuf>,
     open: Vec<Open>,
     told: HashSet<(usize, String)>,
@@ -98,7 +100,6 @@ impl<'a> Reader<'a> {
             root_folder: folder_of(&key.root),
             project: project_of(texts, &key.root),
             loaded: Loaded::default(),
-            known: Default::default(),
             known_styles: HashSet::new(),
             open: Vec::new(),
             told: HashSet::new(),
@@ -112,7 +113,7 @@ impl<'a> Reader<'a> {
         let shown = self.shown(&path);
         self.bytes += text.text.len();
         self.loaded.paper.documents.push(Source { path: shown, text: text.text.clone(), host });
-        self.known.insert(path.clone(), document);
+        self.loaded.known.insert(path.clone(), document);
         self.loaded.origins.push(Origin { path, text });
         self.open.push(Open { document, references });
     }
@@ -122,9 +123,13 @@ impl<'a> Reader<'a> {
         let Some(origin) = self.loaded.origins.first() else { return };
         let Some(open) = self.open.first() else { return };
         let (reference, why) = match named_root(self.texts, &origin.path, open.references.as_slice()) {
-            Named::Missing(reference) => (reference.clone(), "was not found"),
-            Named::Outside(reference) => (reference.clone(), "lies outside the project"),
-            Named::Root(_) | Named::Nothing => return,
+            Named::Missing(reference) => (reference.clone(), "was not found".to_owned()),
+            Named::Outside(reference) => (reference.clone(), "lies outside the project".to_owned()),
+            Named::Root(reference, root) => match self.texts.read(&root) {
+                Err(cause) => (reference.clone(), format!("cannot be read: {cause}")),
+                Ok(_) => return,
+            },
+            Named::Nothing => return,
         };
         let name = plain_name(&reference).unwrap_or_default();
         let message = format!("the main file {name} named here {why}; its macros are unknown");
@@ -156,7 +161,7 @@ impl<'a> Reader<'a> {
     }
 
     fn found_part(&mut self, document: usize, reference: &Reference, path: PathBuf) {
-        if let Some(&known) = self.known.get(&path) {
+        if let Some(&known) = self.loaded.known.get(&path) {
             return self.known_part(document, reference, known);
         }
         let name = self.shown(&path);
@@ -210,7 +215,7 @@ impl<'a> Reader<'a> {
         let Some(name) = plain_name(reference) else { return };
         let folders = [self.root_folder, folder];
         let Place::File(path) = locate(self.texts, name, suffix, &folders, Some(self.project)) else { return };
-        if self.is_full() || self.known.contains_key(&path) || !self.known_styles.insert(path.clone()) {
+        if self.is_full() || self.loaded.known.contains_key(&path) || !self.known_styles.insert(path.clone()) {
             return;
         }
         let Ok(text) = self.texts.read(&path) else { return };
@@ -230,7 +235,7 @@ impl<'a> Reader<'a> {
     }
 
     fn is_full(&self) -> bool {
-        self.known.len() + self.known_styles.len() > MOST_PARTS || self.bytes > LARGEST_PAPER
+        self.loaded.known.len() + self.known_styles.len() > MOST_PARTS || self.bytes > LARGEST_PAPER
     }
 
     /// The same trouble is told once for each document.

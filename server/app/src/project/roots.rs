@@ -70,8 +70,8 @@ impl<'a> Roots<'a> {
     fn above(&self, file: &Path, on_disk: bool) -> Option<PathBuf> {
         let outline = self.outline(file)?;
         match named_root(self.texts, file, &outline.references) {
-            Named::Root(root) => return Some(root),
             // The main file is not to be had, and the file says that it has one: nobody else is asked.
+            Named::Root(_, root) => return self.outline(&root).map(|_| root),
             Named::Missing(_) | Named::Outside(_) => return None,
             Named::Nothing => {}
         }

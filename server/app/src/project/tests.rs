@@ -168,6 +168,14 @@ fn a_main_file_that_is_not_there_is_one_trouble() {
 }
 
 #[test]
+fn a_main_file_that_cannot_be_read_is_one_trouble() {
+    let folder = project(&[("a.tex", "% !TEX root = main.tex\nText.")]);
+    fs::write(folder.path().join("main.tex"), b"\\documentclass{article}\xff\\input{a}").unwrap();
+    let why = "cannot be read: is not UTF-8: first bad byte at offset 23; its macros are unknown";
+    assert_eq!(troubles_in(folder.path(), "a.tex"), [format!("a.tex: the main file main.tex named here {why}")]);
+}
+
+#[test]
 fn styles_beside_the_document_are_read_to_their_end() {
     let files = [
         ("main.tex", "\\documentclass{article}\\usepackage{amsmath,ours}\\input{sub/a}"),

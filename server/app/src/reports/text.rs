@@ -127,16 +127,42 @@ fn write_words(places: &Places, finding: &Finding, palette: Palette, out: &mut d
         Severity::Warning => Style::Warning,
         Severity::Hint => Style::Hint,
     };
-    let severity = palette.paint(style, finding.severity.word());
-    writeln!(out, "{INDENT}{severity}: {}", printable(&finding.message))?;
+    let word = finding.severity.word();
+    let lines = wrapped(&format!("{word}: {}", printable(&finding.message)));
+    for (at, line) in lines.iter().enumerate() {
+        match line.strip_prefix(word).filter(|_| at == 0) {
+            Some(rest) => writeln!(out, "{INDENT}{}{rest}", palette.paint(style, word))?,
+            None => writeln!(out, "{INDENT}{INDENT}{line}")?,
+        }
+    }
     for related in &finding.related {
         let place = places.start(related.span);
         writeln!(out, "{INDENT}{}:{}: {}", place.line, place.column, printable(&related.message))?;
     }
     for fix in &finding.fixes {
-        writeln!(out, "{INDENT}Offered: {}.", printable(&fix.title))?;
+        // Two places may be called the same.
+        let twins = finding.fixes.iter().filter(|other| other.title == fix.title).count();
+        let place = fix.edits.first().filter(|_| twins > 1).map(|edit| places.start(edit.span));
+        let place = place.map(|place| format!(", at {}:{}", place.line, place.column)).unwrap_or_default();
+        writeln!(out, "{INDENT}Offered: {}{place}.", printable(&fix.title))?;
     }
     writeln!(out)
+}
+
+/// A sentence broken at blanks, so that it fits the page; all lines but the first are indented twice.
+fn wrapped(sentence: &str) -> Vec<String> {
+    let mut lines: Vec<String> = Vec::new();
+    for word in sentence.split(' ') {
+        let indent = if lines.len() > 1 { 2 * INDENT.len() } else { INDENT.len() };
+        match lines.last_mut() {
+            Some(line) if indent + line.width() + 1 + word.width() <= PAGE => {
+                line.push(' ');
+                line.push_str(word);
+            }
+            _ => lines.push(word.to_owned()),
+        }
+    }
+    lines
 }
 
 /// The blanks and the words that stand at the right of a line, at least two blanks after it.
@@ -167,7 +193,7 @@ fn write_closing(files: &[FileReport], elapsed: Duration, out: &mut dyn Write) -
         counted(totals.hints, "hint"),
         elapsed.as_secs_f64(),
     )?;
-    writeln!(out, "A clean report is about notation only: it is not a review of the physics or of a design.")
+    writeln!(out, "A clean report is about notation only: it reviews neither physics nor design.")
 }
 
 fn counted(number: usize, thing: &str) -> String {
@@ -176,7 +202,7 @@ fn counted(number: usize, thing: &str) -> String {
 
 #[cfg(test)]
 mod tests {
-    #![allow(clippy::unwrap_used)]
+    #![allow(clippy::unwrap_used, clippy::indexing_slicing)]
     use super::super::samples::{SHELL, file};
     use super::*;
 
@@ -201,7 +227,7 @@ mod tests {
     Offered: Write k for m in \partial_m.
 
 1 file: 1 formula, 1 with indices, 0 unread; 1 error, 0 warnings, 0 hints; 0.1 s
-A clean report is about notation only: it is not a review of the physics or of a design.
+A clean report is about notation only: it reviews neither physics nor design.
 ";
         assert_eq!(report(&[file("shell.tex", SHELL, false)], false), want);
     }
@@ -212,6 +238,32 @@ A clean report is about notation only: it is not a review of the physics or of a
         file.findings.iter_mut().for_each(|finding| finding.ledger = None);
         let text = report(&[file], false);
         assert!(text.lines().any(|line| line.contains('^') && line.ends_with("  free-index-mismatch")), "{text}");
+    }
+
+    #[test]
+    fn a_long_sentence_is_broken_at_blanks() {
+        let mut file = file("shell.tex", SHELL, false);
+        file.findings.iter_mut().for_each(|finding| finding.message = "m stands free here, ".repeat(12));
+        let text = report(&[file], false);
+        let lines: Vec<&str> = text.lines().filter(|line| line.contains("stands free")).collect();
+        assert!(lines.len() > 3 && lines.iter().all(|line| line.width() <= PAGE), "{text}");
+        assert!(lines.iter().skip(1).all(|line| line.starts_with("        ")), "{text}");
+        let words = lines.iter().flat_map(|line| line.split_whitespace());
+        assert_eq!(words.filter(|word| *word == "stands").count(), 12, "{text}");
+    }
+
+    #[test]
+    fn offers_that_are_called_the_same_are_told_apart() {
+        let mut file = file("shell.tex", SHELL, false);
+        for finding in &mut file.findings {
+            let mut twin = finding.fixes[0].clone();
+            twin.edits[0].span = super::super::samples::span(SHELL, "j}");
+            finding.fixes.push(twin);
+        }
+        let text = report(&[file], false);
+        for place in ["3:43", "3:31"] {
+            assert!(text.contains(&format!("Offered: Write k for m in \\partial_m, at {place}.\n")), "{text}");
+        }
     }
 
     #[test]

@@ -10,16 +10,20 @@ use indexwise_grammar::span::Span;
 use unicode_width::UnicodeWidthChar;
 
 use super::super::places::Places;
+use super::{INDENT, PAGE};
 use crate::output::printable;
 
 /// So many source lines at most.
 const MOST_LINES: usize = 6;
 
-/// So many characters of a line at most.
-const LONGEST_LINE: usize = 110;
+/// So many columns of a line at most, without the signs for what was cut: what is left of a page.
+const LONGEST_LINE: usize = PAGE - INDENT.len() - 2;
 
-/// So many characters of a line that is cut are left before the place.
-const BEFORE_PLACE: usize = 45;
+/// So many columns of a line that is cut are left before the place.
+const BEFORE_PLACE: usize = 36;
+
+/// A tab takes as many columns at most.
+const TAB: usize = 8;
 
 /// The sign for what was cut.
 const CUT: &str = "…";
@@ -103,18 +107,27 @@ fn cut(line: &str, place: usize) -> String {
 /// document may be one line of many megabytes.
 fn window(line: &str, place: usize) -> Range<usize> {
     let line = line.trim_end();
-    let after = |from: usize, count: usize| {
-        let rest = line.get(from..).unwrap_or_default();
-        rest.char_indices().nth(count).map_or(line.len(), |(at, _)| from + at)
-    };
-    let first = after(0, LONGEST_LINE);
-    // Near the start, the line is shown from its start.
-    if place <= after(0, LONGEST_LINE - BEFORE_PLACE / 2) || first == line.len() {
-        return 0..first;
+    let first = 0..fitting(line.chars(), LONGEST_LINE);
+    // Near the start, the line is shown from its start; a place at the very end of what is shown is not seen in
+    // its surroundings.
+    if first.end == line.len() || place <= fitting(line.chars(), LONGEST_LINE - BEFORE_PLACE / 2) {
+        return first;
     }
     let before = line.get(..place).unwrap_or(line);
-    let start = before.char_indices().rev().nth(BEFORE_PLACE - 1).map_or(0, |(at, _)| at);
-    start..after(start, LONGEST_LINE)
+    let start = before.len() - fitting(before.chars().rev(), BEFORE_PLACE);
+    let end = start + fitting(line.get(start..).unwrap_or_default().chars(), LONGEST_LINE);
+    // Near the end, there is room for more of what stands before.
+    if end < line.len() { start..end } else { line.len() - fitting(line.chars().rev(), LONGEST_LINE)..end }
+}
+
+/// How many bytes of these characters stand on so many columns.
+fn fitting(chars: impl Iterator<Item = char>, most: usize) -> usize {
+    let mut taken = 0;
+    let fits = |c: &char| {
+        taken += if *c == '\t' { TAB } else { columns(*c) };
+        taken <= most
+    };
+    chars.take_while(fits).map(char::len_utf8).sum()
 }
 
 #[cfg(test)]
@@ -122,6 +135,7 @@ mod tests {
     use super::super::super::samples::span;
     use super::*;
     use crate::files::Text;
+    use unicode_width::UnicodeWidthStr;
 
     #[track_caller]
     fn shown(text: &str, statement: &str, place: &str) -> String {
@@ -165,11 +179,31 @@ mod tests {
         let text = format!("{}HERE{}", "x".repeat(5000), "y".repeat(5000));
         let shown = shown(&text, &text, "HERE");
         let lines: Vec<&str> = shown.lines().collect();
-        let at = lines.first().and_then(|line| line.find("HERE").map(|at| line.chars().count().min(at)));
+        let at = lines.first().and_then(|line| line.find("HERE"));
         assert_eq!(lines.len(), 2);
         assert!(lines.iter().all(|line| line.chars().count() <= LONGEST_LINE + 2), "{shown}");
         // The sign for what was cut has three bytes and one column.
         assert_eq!(at.map(|at| at - 2), lines.get(1).and_then(|mark| mark.find("^^^^")));
+    }
+
+    #[test]
+    fn a_line_that_is_cut_is_shown_as_far_as_it_fits() {
+        for (before, after) in [(75, 0), (500, 3), (60, 60), (40, 500), (0, 500)] {
+            let text = format!("{}HERE{}", "x".repeat(before), "y".repeat(after));
+            let shown = shown(&text, &text, "HERE");
+            let source = shown.lines().next().unwrap_or_default();
+            let letters = source.chars().filter(|c| c.is_ascii()).count();
+            assert_eq!(letters, LONGEST_LINE, "{before} {after}: {shown}");
+            assert!(source.contains("HERE"), "{shown}");
+        }
+    }
+
+    #[test]
+    fn a_long_line_of_wide_characters_is_cut_to_its_columns() {
+        let shown = shown(&format!("{}HERE{}", "漢".repeat(500), "字".repeat(500)), "漢", "HERE");
+        let (source, mark) = shown.split_once('\n').unwrap_or_default();
+        assert!(source.width() <= PAGE - INDENT.len() && source.contains("漢HERE字"), "{shown}");
+        assert_eq!(source.split("HERE").next().map(UnicodeWidthStr::width), mark.find("^^^^"), "{shown}");
     }
 
     #[test]

@@ -9,7 +9,9 @@ use crate::output::printable;
 const GAP: usize = 4;
 /// The column of the free indices is at least so wide.
 const FREE: usize = 20;
-/// A longer table is cut down to its first row and the odd ones, at most so many.
+/// Of a longer table only one row is shown of each kind.
+const ROWS_SHOWN_WHOLE: usize = 3;
+/// So many rows are shown at most.
 const MOST_ROWS: usize = 12;
 
 /// A line of the table.
@@ -49,23 +51,52 @@ pub(super) fn lines(ledger: &Ledger) -> Vec<Line> {
         line.trim_end().to_owned()
     });
     let mut lines = with_marks(texts.collect(), &marks);
-    if shown.len() < ledger.rows.len() {
-        lines.push(Line { text: format!("({} more rows)", ledger.rows.len() - shown.len()), is_mark: false });
-    }
+    lines.extend(left_out(&ledger.rows, &shown).map(|text| Line { text, is_mark: false }));
     lines
 }
 
+/// What is said of the rows that are not shown.
+fn left_out(rows: &[LedgerRow], shown: &[&LedgerRow]) -> Option<String> {
+    let count = rows.len() - shown.len();
+    let first = shown.first().filter(|_| count > 0)?;
+    let (thing, are) = if count == 1 { ("row", "is") } else { ("rows", "are") };
+    let like_first = rows.iter().filter(|row| alike(row, first)).count() - 1;
+    Some(if like_first == count {
+        format!("({count} more {thing} {are} like the first)")
+    } else if shown.len() < MOST_ROWS {
+        format!("({count} more {thing} {are} like one of these)")
+    } else {
+        format!("({count} more {thing})")
+    })
+}
+
+/// The first row of each kind. Rows are of one kind if they agree in what is free and in what is odd about the rest.
 fn shown(rows: &[LedgerRow]) -> Vec<&LedgerRow> {
-    if rows.len() <= MOST_ROWS {
+    if rows.len() <= ROWS_SHOWN_WHOLE {
         return rows.iter().collect();
     }
-    let odd = |row: &LedgerRow| row.free.iter().chain(&row.summed).any(|entry| entry.odd);
-    let kept = rows.iter().enumerate().filter(|(at, row)| *at == 0 || odd(row));
-    kept.map(|(_, row)| row).take(MOST_ROWS).collect()
+    let mut shown: Vec<&LedgerRow> = Vec::new();
+    for row in rows {
+        if shown.len() < MOST_ROWS && !shown.iter().any(|other| alike(row, other)) {
+            shown.push(row);
+        }
+    }
+    shown
+}
+
+fn alike(row: &LedgerRow, other: &LedgerRow) -> bool {
+    let odd = |row: &'_ LedgerRow| sorted(row.summed.iter().filter(|entry| entry.odd));
+    sorted(row.free.iter()) == sorted(other.free.iter()) && odd(row) == odd(other)
+}
+
+fn sorted<'a>(entries: impl Iterator<Item = &'a LedgerIndex>) -> Vec<(String, &'static str, bool)> {
+    let mut entries: Vec<_> = entries.map(|entry| (entry.letter.clone(), entry.level, entry.odd)).collect();
+    entries.sort();
+    entries
 }
 
 /// Where the same columns are odd in every row that has odd ones, one line of carets under the last row does;
-/// else each row gets its own.
+/// else each row gets its own, and the last of them the words.
 fn with_marks(texts: Vec<String>, marks: &[Vec<usize>]) -> Vec<Line> {
     let odd: usize = marks.iter().map(Vec::len).sum();
     let mut kinds: Vec<&Vec<usize>> = marks.iter().filter(|columns| !columns.is_empty()).collect();
@@ -77,11 +108,12 @@ fn with_marks(texts: Vec<String>, marks: &[Vec<usize>]) -> Vec<Line> {
     };
     let mut lines = Vec::new();
     let last = texts.len().saturating_sub(1);
+    let last_odd = marks.iter().rposition(|columns| !columns.is_empty());
     for (at, (text, columns)) in texts.into_iter().zip(marks).enumerate() {
         lines.push(Line { text, is_mark: false });
         match shared {
             Some(columns) if at == last => lines.push(mark(columns, words)),
-            None if !columns.is_empty() => lines.push(mark(columns, words)),
+            None if !columns.is_empty() => lines.push(mark(columns, if last_odd == Some(at) { words } else { "" })),
             _ => {}
         }
     }
@@ -94,7 +126,7 @@ fn mark(columns: &[usize], words: &str) -> Line {
         text.push_str(&" ".repeat(column.saturating_sub(text.len())));
         text.push('^');
     }
-    Line { text: format!("{text} {words}"), is_mark: true }
+    Line { text: format!("{text} {words}").trim_end().to_owned(), is_mark: true }
 }
 
 /// "free  k down, m up" or "summed  i j"; what has no entries says so for free indices and is empty for others.
@@ -168,7 +200,7 @@ mod tests {
     #[test]
     fn odd_entries_elsewhere_are_marked_row_by_row() {
         let want = "left side     free  k down, m up\n\
-                    \x20                           ^ these differ\n\
+                    \x20                           ^\n\
                     right side    free  m down\n\
                     \x20                   ^ these differ\n";
         assert_eq!(table(vec![row("left side", "k down, m up*", ""), row("right side", "m down*", "")]), want);
@@ -183,13 +215,33 @@ mod tests {
     }
 
     #[test]
-    fn a_long_table_is_cut_down_to_what_is_odd() {
-        let mut rows: Vec<LedgerRow> = (1..=40).map(|at| row(&format!("side {at}"), "k up", "")).collect();
-        rows.push(row("side 41", "m up*", ""));
-        let want = "side 1     free  k up\n\
-                    side 41    free  m up\n\
-                    \x20                ^ here\n\
-                    (39 more rows)\n";
+    fn of_a_long_table_one_row_of_each_kind_is_shown() {
+        let mut rows: Vec<LedgerRow> = (1..=40).map(|at| row(&format!("side {at}"), "k up*", "i")).collect();
+        rows.push(row("side 41", "m up*", "i"));
+        rows.push(row("side 42", "k up*", "j"));
+        let want = "side 1     free  k up              summed  i\n\
+                    side 41    free  m up              summed  i\n\
+                    \x20                ^ these differ\n\
+                    (40 more rows are like the first)\n";
         assert_eq!(table(rows), want);
+    }
+
+    #[test]
+    fn the_order_of_free_indices_makes_no_kind() {
+        let mut rows = vec![row("left side", "k up, m up", "")];
+        rows.extend((1..=3).map(|at| row(&format!("right side, term {at}"), "m up, k up", "i j*")));
+        let want = "left side             free  k up, m up\n\
+                    right side, term 1    free  m up, k up        summed  i j\n\
+                    \x20                                                       ^ here\n\
+                    (2 more rows are like one of these)\n";
+        assert_eq!(table(rows), want);
+    }
+
+    #[test]
+    fn a_table_of_many_kinds_ends() {
+        let rows: Vec<LedgerRow> = (1..=40).map(|at| row(&format!("side {at}"), &format!("k{at} up"), "")).collect();
+        let table = table(rows);
+        assert_eq!(table.lines().count(), MOST_ROWS + 1);
+        assert!(table.ends_with("\n(28 more rows)\n"), "{table}");
     }
 }
