@@ -13,12 +13,12 @@ pub(crate) const DEPTH_BUDGET: usize = 48;
 /// Matches brackets in place. False if the nesting passes its budget.
 pub(crate) fn match_brackets(lexemes: &mut [Lexeme]) -> bool {
     let mut levels = vec![Level::default()];
-    let mut prefixes = 0;
+    let mut awaited = Awaited::default();
     let mut deepest = 0;
     let mut open_now = 0_usize;
     for at in 0..lexemes.len() {
         let Some(kind) = lexemes.get(at).map(|lexeme| lexeme.kind) else { break };
-        prefixes = if is_prefix(kind) { prefixes + 1 } else { 0 };
+        awaited.see(lexemes, at);
         match kind {
             Kind::BraceOpen => {
                 levels.push(Level::default());
@@ -58,7 +58,7 @@ pub(crate) fn match_brackets(lexemes: &mut [Lexeme]) -> bool {
             }
             _ => {}
         }
-        deepest = deepest.max(open_now + prefixes);
+        deepest = deepest.max(open_now + awaited.depth());
     }
     let unclosed: Vec<usize> = unclosed_braces(lexemes);
     while let Some(level) = levels.pop() {
@@ -125,30 +125,68 @@ fn pair_bars(bars: &[usize], lexemes: &mut [Lexeme]) {
     }
 }
 
-/// Commands that take the next lexeme as their argument, so that a row of them nests.
-fn is_prefix(kind: Kind) -> bool {
+/// Commands that still await an argument: without braces they nest (`\sqrt\sqrt x`, `\frac1\frac1 x`).
+#[derive(Default)]
+struct Awaited {
+    /// For every open bracket, what the commands before it await, the innermost last.
+    outside: Vec<Vec<usize>>,
+    /// What the commands of the present bracket await.
+    here: Vec<usize>,
+    /// How many commands await something outside.
+    count: usize,
+}
+
+impl Awaited {
+    fn depth(&self) -> usize {
+        self.count + self.here.len()
+    }
+
+    fn see(&mut self, lexemes: &[Lexeme], at: usize) {
+        let Some(kind) = lexemes.get(at).map(|lexeme| lexeme.kind) else { return };
+        match kind {
+            Kind::BraceOpen | Kind::Open => {
+                self.count += self.here.len();
+                self.outside.push(std::mem::take(&mut self.here));
+            }
+            Kind::BraceClose | Kind::Close => {
+                self.here = self.outside.pop().unwrap_or_default();
+                self.count = self.count.saturating_sub(self.here.len());
+                self.complete();
+            }
+            Kind::Plus | Kind::Equal | Kind::Loose | Kind::Arrow | Kind::Comma | Kind::Semicolon => self.here.clear(),
+            Kind::Times | Kind::Slash | Kind::Prime | Kind::Stagger => {}
+            _ => match arguments(kind) {
+                0 => self.complete(),
+                number => {
+                    // An option in square brackets counts as one more.
+                    let option = lexemes.get(at + 1).is_some_and(|next| next.kind == Kind::Open && next.text == "[");
+                    self.here.push(number + usize::from(option));
+                }
+            },
+        }
+    }
+
+    /// An atom is the argument of the innermost command, which may be its last.
+    fn complete(&mut self) {
+        while let Some(number) = self.here.last_mut() {
+            *number -= 1;
+            if *number > 0 {
+                return;
+            }
+            self.here.pop();
+        }
+    }
+}
+
+/// How many lexemes a command takes as its arguments.
+fn arguments(kind: Kind) -> usize {
     use Kind::*;
-    matches!(
-        kind,
-        Accent
-            | Bold
-            | Roman
-            | Root
-            | Fraction
-            | Wrap
-            | Brace
-            | Norm
-            | Average
-            | Pair
-            | Derivative
-            | Differential
-            | Slashed
-            | Order
-            | Tensor
-            | Up
-            | Down
-            | Unknown
-    )
+    match kind {
+        Fraction => 2,
+        Accent | Bold | Roman | Root | Wrap | Brace | Norm | Average | Pair | Derivative | Differential | Slashed
+        | Order | Tensor | Up | Down | Unknown => 1,
+        _ => 0,
+    }
 }
 
 #[cfg(test)]
@@ -195,6 +233,29 @@ mod tests {
         assert_eq!(shape("a)b("), ".!.!");
         assert_eq!(shape("{a"), "!.");
         assert_eq!(shape("a}"), ".!");
+    }
+
+    #[test]
+    fn arguments_without_braces_nest() {
+        let deep = |signs: &str| {
+            let lexeme = |(at, sign): (usize, char)| Lexeme {
+                kind: match sign {
+                    'F' => Kind::Fraction,
+                    'R' => Kind::Root,
+                    '[' => Kind::Open,
+                    ']' => Kind::Close,
+                    '+' => Kind::Plus,
+                    _ => Kind::Letter,
+                },
+                text: sign.to_string().into(),
+                span: Span::new(at, at + 1),
+            };
+            let mut lexemes: Vec<Lexeme> = signs.char_indices().map(lexeme).collect();
+            !match_brackets(&mut lexemes)
+        };
+        assert!(deep(&"F1".repeat(100)) && deep(&"R".repeat(100)) && deep(&"R[1]".repeat(100)));
+        assert!(!deep(&"F12".repeat(100)) && !deep(&"R1".repeat(100)) && !deep(&"F1+".repeat(100)));
+        assert!(!deep(&"R[1]2".repeat(100)) && !deep(&"F1F23".repeat(100)));
     }
 
     #[test]

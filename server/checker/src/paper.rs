@@ -9,7 +9,7 @@ use indexwise_grammar::macros::Macros;
 use indexwise_grammar::span::Span;
 use indexwise_grammar::tree::Formula;
 use indexwise_grammar::{Document, macros_of, read_each};
-use rustc_hash::FxHashMap;
+use rustc_hash::{FxHashMap, FxHashSet};
 
 use crate::conventions::declared::{Declared, Sentence};
 use crate::conventions::inferred::{Evidence, Prices};
@@ -123,8 +123,9 @@ pub fn check(paper: &Paper, settings: &Settings, cancel: &Cancel) -> Analysis {
         }
         let prices =
             Prices { file: own, paper: &all, declared: &document.read.declared, macros: &document.read.macros };
+        let begin = document.read.text.find("\\begin{document}");
         let troubles = paper.troubles.iter().filter(|trouble| trouble.document == number);
-        let missing = troubles.map(|trouble| missing_part(trouble, document.read.text)).collect();
+        let missing = troubles.map(|trouble| missing_part(trouble, begin)).collect();
         let mut analysis = judge_document(document, prices, settings, missing);
         analysis.findings.retain(|finding| wanted(finding.rule, settings));
         analysis.findings.sort_by(|a, b| (a.span, a.rule, &a.message).cmp(&(b.span, b.rule, &b.message)));
@@ -328,8 +329,7 @@ fn judge_document(
 }
 
 /// The finding for a part that could not be had; in a preamble only macros are missing by it.
-fn missing_part(trouble: &Trouble, text: &str) -> Finding {
-    let begin = text.find("\\begin{document}");
+fn missing_part(trouble: &Trouble, begin: Option<usize>) -> Finding {
     let preamble = trouble.preamble || begin.is_some_and(|begin| (trouble.span.start as usize) < begin);
     rules::missing_part(trouble.span, &trouble.message, preamble)
 }
@@ -343,14 +343,15 @@ fn says_no_sum(text: &str, end: u32) -> bool {
 }
 
 /// The formulas that the author says to skip: they neither vote nor are judged.
-fn skipped(declared: &Declared, formulas: &[Formula]) -> Vec<usize> {
+fn skipped(declared: &Declared, formulas: &[Formula]) -> FxHashSet<usize> {
     let skips = declared.sentences.iter().filter(|(sentence, _)| *sentence == Sentence::Skip);
     skips.filter_map(|(_, span)| target(*span, formulas)).collect()
 }
 
 /// The formula that a directive speaks of: the one around it, or the next.
 fn target(directive: Span, formulas: &[Formula]) -> Option<usize> {
-    formulas.iter().position(|formula| formula.span.end > directive.start)
+    let at = formulas.partition_point(|formula| formula.span.end <= directive.start);
+    (at < formulas.len()).then_some(at)
 }
 
 /// Findings after the author's `skip` and `allow`, with those about the document (`about`) and about the directives.
@@ -361,10 +362,12 @@ fn directed(
     mut about: Vec<Finding>,
 ) -> Vec<Finding> {
     let mut allowed: Vec<&String> = Vec::new();
+    let skipped = skipped(declared, formulas);
+    findings.retain(|(number, _)| !skipped.contains(number));
     for (sentence, span) in &declared.sentences {
         let target = target(*span, formulas);
         match sentence {
-            Sentence::Skip => findings.retain(|(number, _)| Some(*number) != target),
+            Sentence::Skip => {}
             // What is not about one formula can be allowed for the file.
             Sentence::Allow { rule, .. } if DOCUMENT_RULES.contains(&rule.as_str()) => allowed.push(rule),
             Sentence::Allow { rule, here } => {

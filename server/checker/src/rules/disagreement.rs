@@ -2,6 +2,7 @@
 
 use compact_str::CompactString;
 use indexwise_grammar::span::Span;
+use rustc_hash::FxHashSet;
 
 use crate::balance::{Compared, Event};
 use crate::finding::Related;
@@ -33,8 +34,9 @@ impl Disagreement {
         let free =
             |letter: &CompactString| self.terms.iter().filter(|(term, l)| l == letter && term.free.is_some()).count();
         let all = |letter: &CompactString| self.terms.iter().filter(|(_, l)| l == letter).count();
-        let rarest =
-            self.terms.iter().map(|(_, letter)| letter).min_by_key(|letter| free(letter) * 100 / all(letter).max(1))?;
+        // The terms stand letter by letter.
+        let letters = self.terms.chunk_by(|one, two| one.1 == two.1).filter_map(|chunk| chunk.first());
+        let rarest = letters.map(|(_, letter)| letter).min_by_key(|letter| free(letter) * 100 / all(letter).max(1))?;
         let holder = self.terms.iter().filter(|(_, letter)| letter == rarest).find_map(|(term, _)| term.free)?;
         Some(judged.span(holder))
     }
@@ -69,7 +71,8 @@ impl Disagreement {
         };
         let (first, second) = (free(one), free(two));
         let all = self.terms.iter().filter(|(_, letter)| letter == one).count();
-        let apart = first.iter().all(|term| second.iter().all(|other| other.span != term.span));
+        let spans: FxHashSet<Span> = first.iter().map(|term| term.span).collect();
+        let apart = second.iter().all(|term| !spans.contains(&term.span));
         if !apart || first.len() + second.len() != all || first.is_empty() || second.is_empty() {
             return None;
         }
@@ -81,7 +84,11 @@ impl Disagreement {
             let level = judged.level(place);
             let level = if level.is_empty() { String::new() } else { format!(" ({level})") };
             let names = gather(terms.iter().map(|term| self.name(judged, term, judged.sketch.sides.len())));
-            let names = if names.len() > 2 { "the others".to_owned() } else { listed(&names) };
+            let names = match names.len() {
+                0..=2 => listed(&names),
+                _ if letter == blamed => format!("{} terms", terms.len()),
+                _ => "the others".to_owned(),
+            };
             (format!("{}{level}", shown(letter)), names)
         };
         let ((blamed, here), (other, there)) = (words(blamed, &theirs), words(other, &others));
@@ -147,13 +154,8 @@ fn free_here(letter: &str, level: &str) -> String {
 }
 
 fn gather(names: impl Iterator<Item = String>) -> Vec<String> {
-    let mut out: Vec<String> = Vec::new();
-    for name in names {
-        if !out.contains(&name) {
-            out.push(name);
-        }
-    }
-    out
+    let mut seen = FxHashSet::default();
+    names.filter(|name| seen.insert(name.clone())).collect()
 }
 
 fn listed(names: &[String]) -> String {

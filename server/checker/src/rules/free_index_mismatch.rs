@@ -112,17 +112,16 @@ fn blamed(judged: &Judged<'_>, mends: &[Mend], disagreement: &Disagreement) -> O
 /// index is put in or taken out.
 fn candidates(judged: &Judged<'_>, odd: &[CompactString]) -> Vec<(Change, i32)> {
     let rows = judged.rows();
-    let holders = |letter: &CompactString| {
+    let held = |letter: &CompactString| {
         let held = rows.iter().filter(|row| !row.any && row.free.iter().any(|(free, _)| free == letter)).count();
         i32::try_from(held).unwrap_or(0)
     };
+    let held: Vec<(&CompactString, i32)> = odd.iter().map(|letter| (letter, held(letter))).collect();
+    let holders = |letter: &CompactString| held.iter().find(|(odd, _)| *odd == letter).map_or(0, |(_, count)| *count);
     let mut out = Vec::new();
     for from in odd {
         for place in index_places(judged, from) {
-            let script = judged.sketch.place(place).map(|place| place.script);
-            let beside = |letter: &CompactString| {
-                judged.sketch.places.iter().any(|other| Some(other.script) == script && other.letter == *letter)
-            };
+            let beside = |letter: &CompactString| stands_beside(judged, place, letter);
             for to in odd.iter().filter(|to| *to != from && !beside(to)) {
                 let alike = if class_of(to) == class_of(from) { 0 } else { -3 };
                 out.push((Change::Rename(vec![place], to.clone()), holders(to) - holders(from) + alike));
@@ -139,6 +138,16 @@ fn candidates(judged: &Judged<'_>, odd: &[CompactString]) -> Vec<(Change, i32)> 
         }
     }
     out
+}
+
+/// Whether a letter stands in the script of a place.
+fn stands_beside(judged: &Judged<'_>, place: u32, letter: &CompactString) -> bool {
+    let places = &judged.sketch.places;
+    let at = place as usize;
+    let Some(script) = places.get(at).map(|place| place.script) else { return false };
+    let (before, after) = places.split_at(at);
+    let same = |other: &&Place| other.script == script;
+    before.iter().rev().take_while(same).chain(after.iter().take_while(same)).any(|other| other.letter == *letter)
 }
 
 /// A letter that most terms hold is put into a script of a term that lacks it.

@@ -45,6 +45,8 @@ struct Candidate<'t> {
     letter: CompactString,
     span: Span,
     script: &'t Script,
+    /// How many letters stand in its script.
+    company: usize,
     fixed: Option<i32>,
     parenthesised: bool,
     mixed: bool,
@@ -60,6 +62,9 @@ const WORD_AS_INDICES: i32 = 10;
 /// Price of reading an unlisted word as a label.
 const INDICES_AS_WORD: i32 = 30;
 
+/// Signs beyond which a script is no list of indices.
+const LONGEST_SCRIPT: usize = 256;
+
 /// Reads the scripts of a factor.
 pub(super) fn read_scripts(builder: &mut Builder, carrier: Carrier<'_>, scripts: &[Script], flip: bool) -> Scripts {
     let mut out = Scripts::default();
@@ -69,6 +74,10 @@ pub(super) fn read_scripts(builder: &mut Builder, carrier: Carrier<'_>, scripts:
     for script in scripts.iter().filter(|script| !script.before) {
         if script.items.iter().any(|item| item.kind == ItemKind::Dots) {
             builder.sketch.unjudged = Some("an ellipsis stands in a script");
+        }
+        if script.items.len() > LONGEST_SCRIPT {
+            builder.sketch.unjudged = Some("a script is too long");
+            continue;
         }
         if let Some(power) = power_of(script, carrier, scripts) {
             out.power = Some(power);
@@ -212,6 +221,7 @@ fn collect<'t>(builder: &mut Builder, carrier: Carrier<'_>, script: &'t Script, 
             letter,
             span: item.span,
             script,
+            company: letters,
             fixed,
             parenthesised: inside && letters == 1 || enclosed(items, n),
             mixed,
@@ -382,7 +392,6 @@ fn place(
         vector: carrier.bold,
         bias,
     });
-    let company = candidate.script.items.iter().filter(|item| matches!(item.kind, ItemKind::Letter(_))).count();
     builder.sketch.places.push(Place {
         letter: candidate.letter.clone(),
         number: 0,
@@ -390,7 +399,7 @@ fn place(
         written,
         span: candidate.span,
         script: candidate.script.span,
-        company: u16::try_from(company).unwrap_or(u16::MAX),
+        company: u16::try_from(candidate.company).unwrap_or(u16::MAX),
         form: u16::try_from(builder.sketch.forms.len().saturating_sub(1)).unwrap_or(u16::MAX),
         unit,
     });
