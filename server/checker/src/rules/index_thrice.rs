@@ -81,17 +81,19 @@ fn candidates(judged: &Judged<'_>, letter: &CompactString, places: &[u32]) -> Ve
     let mut out = Vec::new();
     let missing: Vec<CompactString> = odd_by(judged, Odd::Mismatch);
     let known = &judged.sketch.letters;
+    let script = |place: &u32| judged.sketch.place(*place).map(|place| place.script);
     for place in places {
+        // Two in one script are rarely meant beside a third.
+        let trace = places.iter().any(|other| other != place && script(other) == script(place));
         for to in &missing {
-            out.push((Change::Rename(vec![*place], to.clone()), 3));
+            out.push((Change::Rename(vec![*place], to.clone()), 3 + i32::from(trace)));
         }
         for to in known.iter().filter(|to| *to != letter && class_of(to) == class_of(letter)) {
-            out.push((Change::Rename(vec![*place], to.clone()), 1));
+            out.push((Change::Rename(vec![*place], to.clone()), 1 + i32::from(trace)));
         }
     }
     if let (3, Some(fresh)) = (places.len(), fresh_letters(judged, letter).into_iter().next()) {
         // Two in one script are a trace that wants a letter of its own.
-        let script = |place: &u32| judged.sketch.place(*place).map(|place| place.script);
         for pair in [[0, 1], [1, 2], [0, 2]] {
             let pair: Vec<u32> = pair.iter().filter_map(|at| places.get(*at).copied()).collect();
             if pair.first().map(script) == pair.last().map(script) {
