@@ -261,11 +261,15 @@ fn lent(
         .filter_map(|item| if let ItemKind::Letter(letter) = &item.kind { Some(letter) } else { None })
         .collect();
     let derivative = is_derivative(&kernel_key(carrier));
+    // `e^{i\omega_{nm}t}` swallows nothing.
+    let exponential = carrier.name == "e" && script.level == Level::Up;
     if derivative && (script.items.len() == 1 || !holds_indices(script)) {
         return letters.first().filter(|_| letters.len() == 1).map(|letter| (*letter).clone());
     }
     if derivative || letters.len() > 1 || factor.scripts.iter().any(|script| script.level == Level::Up) {
-        note_swallowed(builder, script, item);
+        if !exponential {
+            note_swallowed(builder, script, item);
+        }
         return None;
     }
     letters.first().map(|letter| format_compact!("{}_{}", kernel.name, letter))
