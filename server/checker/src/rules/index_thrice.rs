@@ -33,7 +33,8 @@ fn check(judged: &Judged<'_>) -> Option<Report> {
     });
     let blamed = blamed.or_else(|| places.get(2).copied())?;
     // Free once elsewhere: it numbers quantities, one formula for each.
-    let numbered = free_elsewhere(judged, &letter) && !has_trace(judged, &places);
+    let written_out = judged.sketch.reach.is_some();
+    let numbered = free_elsewhere(judged, &letter) && (written_out || !has_trace(judged, &places));
     let severity = if numbered { Severity::Hint } else { RULE.severity };
     let bulk = if numbered { Err("it is only a hint") } else { clear_winner(&mends) };
     let related = places.iter().filter(|place| **place != blamed);
