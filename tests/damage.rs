@@ -10,7 +10,7 @@ use std::panic::{AssertUnwindSafe, catch_unwind};
 use std::thread;
 
 use indexwise_grammar::hosts::Host;
-use indexwise_tests::laws::{places, reading};
+use indexwise_tests::laws::{astray, places, reading};
 use indexwise_tests::variants::damaged;
 use indexwise_tests::{analyse, documents_below, generate};
 
@@ -22,7 +22,7 @@ const PIECE: usize = 6_000;
 
 /// How many variants are tried in all.
 fn variants() -> u64 {
-    sized(3_000, 30_000)
+    sized(3_000, 300_000)
 }
 
 fn sized<T>(short: T, full: T) -> T {
@@ -32,7 +32,9 @@ fn sized<T>(short: T, full: T) -> T {
 /// Reads and checks a text; what is misplaced in the answers.
 fn misplaced(host: Host, text: &str) -> Vec<String> {
     let mut misplaced = reading(host, text);
-    misplaced.extend(places(text, &analyse(host, text).findings));
+    let findings = analyse(host, text).findings;
+    misplaced.extend(places(text, &findings));
+    misplaced.extend(astray(host, text, &findings));
     misplaced
 }
 

@@ -4,6 +4,7 @@
 //! - the host's regions stand in order, apart from one another, each around its body; there is one formula for
 //!   each, and whatever the tree of a formula places lies in its region;
 //! - all spans of findings lie in the text, on character boundaries; findings stand in the order of their places;
+//!   one with a ledger keeps to one formula, with all that it relates;
 //! - the edits of a fix are in order and apart; a fix that is applied removes its finding and adds no other
 //!   error or warning;
 //! - a second check says the same; line ends of two characters change nothing but offsets;
@@ -27,6 +28,7 @@ pub fn broken(host: Host, text: &str, analysis: &DocumentAnalysis) -> Vec<String
     let misplaced = places(text, &analysis.findings);
     let sound = misplaced.is_empty();
     broken.extend(misplaced);
+    broken.extend(astray(host, text, &analysis.findings));
     broken.extend(order(&analysis.findings));
     if sound {
         broken.extend(fixes(host, text, &analysis.findings));
@@ -94,6 +96,24 @@ pub fn places(text: &str, findings: &[Finding]) -> Vec<String> {
         Some(format!("{} has a span {odd:?} that does not fit the text", finding.rule))
     };
     findings.iter().filter_map(misplaced).collect()
+}
+
+/// Findings with a ledger that leave the formula that they are about.
+pub fn astray(host: Host, text: &str, findings: &[Finding]) -> Vec<String> {
+    if findings.iter().all(|finding| finding.ledger.is_none()) {
+        return Vec::new();
+    }
+    let regions = read(text, host, &Macros::default()).scan.regions;
+    let mut broken = Vec::new();
+    for finding in findings {
+        let Some(ledger) = &finding.ledger else { continue };
+        let region = regions.iter().find(|region| region.span.holds(ledger.statement));
+        let keeps = |region: Span| all_spans(finding).iter().all(|span| region.holds(*span));
+        if !region.is_some_and(|region| keeps(region.span)) {
+            broken.push(format!("{} at {:?} leaves the formula that it is about", finding.rule, finding.span));
+        }
+    }
+    broken
 }
 
 fn fits(text: &str, span: Span) -> bool {
@@ -218,7 +238,7 @@ fn map_spans(finding: &Finding, map: &mut dyn FnMut(Span) -> Span) -> Finding {
 #[cfg(test)]
 mod tests {
     use super::*;
-    use indexwise_checker::finding::Related;
+    use indexwise_checker::finding::{Ledger, Related};
 
     fn finding(rule: &'static str, start: usize, end: usize) -> Finding {
         Finding {
@@ -243,6 +263,18 @@ mod tests {
         assert_eq!(places("aμb", &[finding("x", 1, 5)]).len(), 1);
         let related = vec![Related { span: Span::new(0, 2), message: String::new() }];
         assert_eq!(places("aμb", &[Finding { related, ..finding("x", 1, 3) }]).len(), 1);
+    }
+
+    #[test]
+    fn findings_that_leave_their_formula_are_seen() {
+        let text = "The flux is $J^a = q^b$ and $v_a = 0$.";
+        let statement = Span::new(13, 22);
+        let ledger = Some(Ledger { statement, rows: Vec::new() });
+        let about = |start, end| [Finding { ledger: ledger.clone(), ..finding("x", start, end) }];
+        assert!(astray(Host::Latex, text, &about(15, 16)).is_empty());
+        assert_eq!(astray(Host::Latex, text, &about(2, 3)).len(), 1);
+        assert_eq!(astray(Host::Latex, text, &about(31, 32)).len(), 1);
+        assert!(astray(Host::Latex, text, &[finding("x", 2, 3)]).is_empty());
     }
 
     #[test]

@@ -8,6 +8,7 @@
 
 pub mod annotations;
 pub mod generate;
+pub mod json_schema;
 pub mod laws;
 pub mod rust_source;
 pub mod variants;

@@ -7,9 +7,14 @@
 
 #![allow(clippy::unwrap_used, clippy::panic)]
 
+#[path = "../../../tests/json_schema.rs"]
+mod json_schema;
+
 use std::fs;
 use std::path::{Path, PathBuf};
 use std::process::{Command, Stdio};
+
+use serde_json::Value;
 
 /// Documents of the demonstration, from the root of the repository.
 const DOCUMENTS: &str = "tests/documents";
@@ -101,6 +106,23 @@ fn every_rule_has_a_planted_slip() {
         let shown = report.lines().any(|line| line.ends_with(&format!("[{}]", rule.name)));
         assert!(shown, "{} is shown by no document", rule.name);
     }
+}
+
+/// The schema is what other programs are promised; version 1 is the one that the program writes.
+#[test]
+fn the_report_in_json_fits_its_schema() {
+    let schema = fs::read_to_string(root().join("tests/report-1.schema.json")).unwrap();
+    let schema = serde_json::from_str(&schema).unwrap();
+    let whole: Value = serde_json::from_str(&check(&["--report", "json"])).unwrap();
+    assert_eq!(json_schema::complaints(&schema, "#", &whole), [""; 0]);
+    let lines = check(&["--report", "json-lines"]);
+    for line in lines.lines() {
+        let file = serde_json::from_str(line).unwrap();
+        assert_eq!(json_schema::complaints(&schema, "#/$defs/file", &file), [""; 0]);
+    }
+    let findings = |file: &Value| file["findings"].as_array().map_or(0, Vec::len);
+    let count: usize = whole["files"].as_array().unwrap().iter().map(findings).sum();
+    assert_eq!(count, report().lines().count(), "the same findings in every form of the report");
 }
 
 /// What the README shows of the program's output is what the program prints.
