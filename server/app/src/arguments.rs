@@ -89,7 +89,7 @@ pub struct CompletionsArguments {
 pub enum ReportKind {
     /// For people: the formula, its ledger, what is wrong
     Text,
-    /// One line for each finding: file:line:column: severity: message [rule]
+    /// One line for each finding: `file:line:column: severity: message [rule]`
     Lines,
     /// One JSON document
     Json,

@@ -249,6 +249,18 @@ impl Sketch {
         build::sketch(statement)
     }
 
+    /// Takes every place to where it stands in another text.
+    pub fn move_spans(&mut self, to: impl Fn(Span) -> Span) {
+        let spans = std::iter::once(&mut self.span)
+            .chain(self.sides.iter_mut().map(|side| &mut side.span))
+            .chain(self.terms.iter_mut().map(|term| &mut term.span))
+            .chain(self.places.iter_mut().flat_map(|place| [&mut place.span, &mut place.script]))
+            .chain(self.quantities.iter_mut().map(|(_, span)| span))
+            .chain(self.swallowed.iter_mut().flat_map(|it| [&mut it.script, &mut it.from, &mut it.kept]))
+            .chain(self.stacked.iter_mut().flat_map(|it| [&mut it.span, &mut it.second]));
+        spans.for_each(|span| *span = to(*span));
+    }
+
     /// The bit of a letter in `TermNode::letters`; letters from the 64th on share one.
     pub const fn bit(letter: u16) -> u64 {
         1 << if letter < 63 { letter } else { 63 }

@@ -158,7 +158,7 @@ pub fn is_label_word(word: &str) -> bool {
         "noise", "inst", "iso", "adi", "ad", "ent", "inf", "reh", "kick", "sound", "light", "Newt", "red", "blue",
         "dS", "AdS", "ADM", "BH", "TT", "GW", "EM", "NS", "CMB", "FRW", "GR", "SR", "CM", "LT", "PN", "YM", "EH", "MC",
         "QCD", "RN", "FP", "WKB", "KG", "dom", "exp", "aff", "ave", "hor", "ergo", "std", "lin", "quad", "sph", "cyl",
-        "pol", "tor", "per", "par",
+        "pol", "tor", "per", "par", "mean", "load", "ep", "el", "plast", "pre", "post", "norm", "tan",
     ];
     WORDS.contains(&word)
 }

@@ -57,8 +57,32 @@ fn reread(judged: &Judged<'_>, edits: &[Edit]) -> Option<(Sketch, crate::balance
     }
     let formula = indexwise_grammar::read_formula(&text, &judged.prices.macros.inherited());
     let [statement] = formula.statements.as_slice() else { return None };
-    let sketch = Sketch::of(statement);
+    let mut sketch = Sketch::of(statement);
     let reading = read(&sketch, sketch.units.iter().map(|unit| judged.prices.score(unit)).collect());
     let gains = sketch.places.len() > judged.sketch.places.len();
-    (reading.odd.is_empty() && gains && sketch.swallowed.is_empty()).then_some((sketch, reading.choice))
+    let mends = reading.odd.is_empty() && gains && sketch.swallowed.is_empty();
+    sketch.move_spans(|span| Span {
+        start: before(edits, judged.sketch.span.start, span.start),
+        end: before(edits, judged.sketch.span.start, span.end),
+    });
+    mends.then_some((sketch, reading.choice))
+}
+
+/// Where a place of the edited statement stands in the author's text. `start` is the start of the statement, `at`
+/// counts from there.
+fn before(edits: &[Edit], start: u32, at: u32) -> u32 {
+    let (mut old, mut new) = (start, start);
+    let goal = start + at;
+    for edit in edits {
+        let kept = edit.span.start.saturating_sub(old);
+        if new + kept >= goal {
+            break;
+        }
+        let inserted = u32::try_from(edit.text.len()).unwrap_or(0);
+        (old, new) = (edit.span.end, new + kept + inserted);
+        if new >= goal {
+            return old;
+        }
+    }
+    old + goal.saturating_sub(new)
 }

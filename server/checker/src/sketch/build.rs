@@ -124,7 +124,10 @@ impl Builder {
         walk.vector |= kernel.bold || kernel.letter == "\\nabla" || frame || bare;
         let carrier = Carrier { name: &kernel.name, letter: &kernel.letter, bold: kernel.bold, group: false };
         let scripts = read_scripts(self, carrier, &factor.scripts, flip);
-        if scripts.nodes.is_empty() && !kernel.word {
+        // `I_3` is not I.
+        let numbered =
+            factor.scripts.iter().flat_map(|script| &script.items).any(|item| matches!(item.kind, ItemKind::Number(_)));
+        if scripts.nodes.is_empty() && !kernel.word && !(numbered && scripts.power.is_none()) {
             self.sketch.quantities.push((kernel.letter.clone(), factor.span));
         }
         let indexed = !scripts.nodes.is_empty();
@@ -202,9 +205,10 @@ impl Builder {
         let Some(sum) = group.parts.first().and_then(|part| part.sides.first()) else { return };
         let before = self.sketch.places.len();
         let mut node = self.sum_node(walk, sum, flip);
-        let lettered =
-            factor.scripts.iter().flat_map(|script| &script.items).any(|item| matches!(item.kind, ItemKind::Letter(_)));
-        if is_lone_kernel(sum) && lettered {
+        let items = factor.scripts.iter().flat_map(|script| &script.items);
+        let lettered = items.filter(|item| matches!(item.kind, ItemKind::Letter(_))).count();
+        // Two letters outside are the slots of a matrix, `(T^a)_{bc}`.
+        if is_lone_kernel(sum) && lettered == 1 {
             self.doubt_name(before);
         }
         let names = is_lone_kernel(sum) || group.bracket == Bracket::Square;
