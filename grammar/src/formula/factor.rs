@@ -346,7 +346,8 @@ fn braced_to_zero(script: &Script) -> bool {
 
 /// Adds what follows an atom: primes to a kernel's name, scripts to its scripts.
 fn with_scripts(mut factor: Factor, after: Vec<Postfix>) -> Factor {
-    let mut gap = false;
+    // What follows braces around a kernel with scripts stands beside them, `{T^a}_b`.
+    let mut gap = !factor.scripts.is_empty();
     for postfix in after {
         match postfix {
             Postfix::Gap => gap = true,

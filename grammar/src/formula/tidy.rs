@@ -112,9 +112,9 @@ impl<'t, 'a> Cursor<'t, 'a> {
             TokenKind::Times => Kind::Times,
             TokenKind::Slash => Kind::Slash,
             TokenKind::Root => Kind::Root,
+            TokenKind::Tie => Kind::Stagger,
             TokenKind::Space
             | TokenKind::Comment
-            | TokenKind::Tie
             | TokenKind::Dot
             | TokenKind::Parameter
             | TokenKind::Dollar
