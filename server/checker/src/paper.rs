@@ -168,7 +168,7 @@ pub fn readings(paper: &Paper) -> Vec<(Span, String)> {
 }
 
 /// Rounds of counting: each reads with the counts of the round before. Two settle nearly all readings of the
-/// corpus; a third changed none that mattered.
+/// documents; a third changed none that mattered.
 const ROUNDS: usize = 2;
 
 /// A document as read, with what is in force in it. Its formulas are without their statements: the sketches are

@@ -10,7 +10,7 @@ use crate::conventions::built_in::{LetterClass, class_of, is_derivative};
 use crate::sketch::{Shape, Sketch};
 
 /// Readings dearer than this do not excuse a statement, in tenths of a unit of price. Smaller than the price of
-/// calling an established index a label. Chosen by measurement on the corpus: at 30 noise rises by half, at 55
+/// calling an established index a label. Chosen by measurement on real documents: at 30 noise rises by half, at 55
 /// recall falls by two points.
 pub const MARGIN: i32 = 40;
 /// A letter that this little puts in balance is not blamed beside others.

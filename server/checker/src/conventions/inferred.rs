@@ -335,7 +335,7 @@ pub struct Prices<'e> {
 
 impl Prices<'_> {
     /// The score of a unit, in tenths: positive for an index; its size is the price of the other reading. The
-    /// weights were set by measurement on the corpus (see the changelog for the figures).
+    /// weights were set by measurement on real documents (see the changelog for the figures).
     pub fn score(&self, unit: &Unit) -> i32 {
         if self.declared.is_not_index(unit) {
             return -1000;

@@ -48,20 +48,7 @@ pub(super) fn sketch(statement: &Statement) -> Sketch {
 impl Builder {
     fn term(&mut self, term: &Term, flip: bool) -> TermNode {
         let places = self.sketch.places.len();
-        let mut walk = Walk {
-            factors: &term.factors,
-            at: 0,
-            flip,
-            below: 0,
-            nodes: Vec::new(),
-            any: false,
-            loose: None,
-            vector: false,
-            opaque: false,
-        };
-        if matches_anything(term) {
-            walk.any = true;
-        }
+        let mut walk = Walk { factors: &term.factors, any: matches_anything(term), ..Walk::of(flip) };
         while let Some(factor) = term.factors.get(walk.at) {
             walk.at += 1;
             self.factor(&mut walk, factor);

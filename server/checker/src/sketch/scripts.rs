@@ -410,7 +410,7 @@ fn place(
     Node::Place(u32::try_from(builder.sketch.places.len() - 1).unwrap_or(u32::MAX))
 }
 
-/// What notation alone says of a letter, in tenths of a unit of price. Set by measurement on the corpus: what
+/// What notation alone says of a letter, in tenths of a unit of price. Set by measurement on real documents: what
 /// matters is the order (several letters over a derivative's over a lone Greek over a lone Latin over a capital)
 /// and that two lone late Latin letters together pass the margin of `reading.rs`.
 fn bias(carrier: Carrier<'_>, candidate: &Candidate<'_>, shape: Shape, components: bool) -> i32 {
