@@ -4,8 +4,8 @@
 //! local styles. The one idea: a paper is a function of the file and of what stands on the disk, never of which
 //! other files are checked in the same run, so that the findings of a file are always the same.
 //!
-//! Texts come through the trait `Texts`, so that a text that is not on the disk (standard input, a mended text,
-//! an editor's unsaved buffer) can stand in for one that is.
+//! Texts come through the trait `Texts`, so that a text that is not on the disk (standard input, a mended text)
+//! can stand in for one that is.
 
 mod parts;
 mod roots;

@@ -3,6 +3,8 @@
 //! A change is made on the sketch, judged there like any statement, and only then written as edits of the text. So
 //! a fix that is offered removes its finding and adds none.
 
+use std::borrow::Cow;
+
 use compact_str::CompactString;
 use indexwise_grammar::span::Span;
 use indexwise_grammar::tree::Level;
@@ -191,8 +193,32 @@ fn carrier(judged: &Judged<'_>, number: u32, fallback: Span) -> String {
     let Some(place) = judged.sketch.place(number) else { return fallback.of(judged.text).to_owned() };
     let kernel = judged.unit(number).map(|unit| unit.kernel.to_string()).unwrap_or_default();
     let script = place.script.of(judged.text);
-    let joined = format!("{kernel}{script}");
-    if joined.chars().count() > 40 || kernel.is_empty() { script.to_owned() } else { joined }
+    // A script that a macro writes has no text of its own: the place is the whole call.
+    if kernel.is_empty() || !script.starts_with(['_', '^']) {
+        return script.to_owned();
+    }
+    let before = judged.text.get(..place.script.start as usize).unwrap_or_default();
+    let joined = format!("{}{script}", typed_kernel(&kernel, before));
+    if joined.chars().count() > 40 { script.to_owned() } else { joined }
+}
+
+/// A kernel as the author typed it, where it stands right before its script.
+fn typed_kernel<'t>(kernel: &'t str, before: &'t str) -> Cow<'t, str> {
+    let symbol = shown(kernel);
+    let name = kernel.trim_start_matches('\\');
+    if before.ends_with(kernel) {
+        return Cow::Borrowed(kernel);
+    }
+    if before.ends_with(&symbol) {
+        return Cow::Owned(symbol);
+    }
+    if before.ends_with(name) {
+        return Cow::Borrowed(name);
+    }
+    let command = before.trim_end_matches(|letter: char| letter.is_ascii_alphabetic());
+    let own = before.get(command.len().saturating_sub(1)..).filter(|own| own.len() > 1 && own.starts_with('\\'));
+    let script = command.strip_suffix('\\').is_some_and(|outside| outside.ends_with(['_', '^']));
+    Cow::Borrowed(own.filter(|_| !script).unwrap_or(kernel))
 }
 
 fn flip(place: &mut Place) {

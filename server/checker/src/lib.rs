@@ -1,6 +1,6 @@
 //! Meaning and judgement: what every index is, and what is wrong with it.
 //!
-//! One pipeline (`paper::check`) serves the command line, the language server and the tests. Its stages: a
+//! One pipeline (`paper::check`) serves the command line and the tests. Its stages: a
 //! statement becomes a `sketch`, the paper's habits are counted (`conventions`), the cheapest `reading` that
 //! balances is taken, the `ledger` holds the outcome and the `rules` report what is left. Nothing here reads a
 //! file, prints or knows a protocol.

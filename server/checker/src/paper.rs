@@ -175,6 +175,7 @@ const ROUNDS: usize = 2;
 /// all that is needed of them.
 struct Read<'p> {
     text: &'p str,
+    host: Host,
     document: Document,
     /// The number of the formula, and the sketch of a statement with scripts.
     sketches: Vec<(usize, Sketch)>,
@@ -255,7 +256,7 @@ fn read_paper(paper: &Paper) -> Vec<Read<'_>> {
         });
         let macros = macros_of(&document.scan, &shared);
         let declared = Declared::read(&document.scan.directives, out.first().map(|root| &root.declared));
-        out.push(Read { text: &source.text, document, sketches, macros, declared });
+        out.push(Read { text: &source.text, host: source.host, document, sketches, macros, declared });
     }
     out
 }
@@ -306,7 +307,9 @@ fn judge_document(
             *flag |= any_index;
         }
         reading.odd.retain(|(letter, _)| prices.is_index_notation(letter));
-        let no_sum = formula.no_sum || says_no_sum(document.read.text, formula.span.end);
+        let next = formulas.get(number + 1).map(|next| next.span.start).filter(|start| *start >= formula.span.end);
+        let after = Span { start: formula.span.end, end: next.unwrap_or(u32::MAX) };
+        let no_sum = formula.no_sum || says_no_sum(document.read.text, after, document.read.host);
         if sketch.unjudged.is_none() && !no_sum && prices.trusts(&sketch.unknown) {
             let search = if reading.odd.is_empty() { rules::faults::level_faults } else { rules::faults::faults };
             let mut faults = search(sketch, &reading.choice, &prices);
@@ -334,12 +337,25 @@ fn missing_part(trouble: &Trouble, begin: Option<usize>) -> Finding {
     rules::missing_part(trouble.span, &trouble.message, preamble)
 }
 
-/// Whether the words right after a formula say that no sum is meant.
-fn says_no_sum(text: &str, end: u32) -> bool {
+/// Whether the words right after a formula say that no sum is meant: those before the next formula, up to a blank
+/// line or the end of a sentence; in a note, on the formula's line.
+fn says_no_sum(text: &str, after: Span, host: Host) -> bool {
     const WORDS: usize = 40;
-    let after = text.get(end as usize..).unwrap_or_default();
+    let end = (after.end as usize).min(text.len());
+    let after = text.get(after.start as usize..end).unwrap_or_default();
     let words: String = after.chars().take(WORDS).collect::<String>().to_lowercase();
-    ["no sum", "not summed", "without sum"].iter().any(|phrase| words.contains(phrase))
+    let mut lines = words.split('\n');
+    let first = lines.next().unwrap_or_default();
+    let more = lines.take_while(|line| host != Host::Note && !line.trim().is_empty());
+    let words = std::iter::once(first).chain(more).collect::<Vec<_>>().join(" ");
+    let sentence = words.split_once(". ").map_or(words.as_str(), |(sentence, _)| sentence);
+    ["no sum", "not summed", "without sum"].iter().any(|phrase| {
+        sentence.match_indices(phrase).any(|(at, phrase)| {
+            let rest = sentence.get(at + phrase.len()..).unwrap_or_default();
+            let rest = rest.strip_prefix("mation").unwrap_or(rest);
+            !rest.starts_with(char::is_alphabetic) && !rest.starts_with(" of ")
+        })
+    })
 }
 
 /// The formulas that the author says to skip: they neither vote nor are judged.
