@@ -5,6 +5,7 @@
 //! comment, in a listing or in a skipped branch is not a region.
 
 mod body;
+mod closer;
 mod directives;
 mod latex;
 mod markdown;

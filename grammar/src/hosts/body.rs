@@ -10,32 +10,11 @@
 //! Time: after a blank line every opening of a display is a stop, so that what one search looks at in vain, the
 //! next does not look at again.
 
+use super::closer::{Closer, LONGEST_NAME, environment_name};
 use super::vocabulary::{Command, command, is_listing, is_structure, mathematics, takes_text};
 use super::wrappers::{Role, Wrappers};
 use crate::macros::cursor::{Cursor, after_line_end, blank_line_follows, line_end};
 use crate::macros::defines;
-
-/// What ends a formula.
-#[derive(Clone, Debug, PartialEq, Eq)]
-pub(super) enum Closer {
-    /// `$`.
-    Dollar,
-    /// `$$`.
-    Dollars,
-    /// `\)`.
-    Parenthesis,
-    /// `\]`.
-    Bracket,
-    /// `\end{name}`, or the author's macro for it.
-    Environment(String),
-}
-
-impl Closer {
-    /// Whether the formula stands in a line of text and so never holds a blank line.
-    fn is_inline(&self) -> bool {
-        matches!(self, Self::Dollar | Self::Parenthesis)
-    }
-}
 
 /// How the host lets its formulas run.
 #[derive(Clone, Copy, Debug)]
@@ -66,9 +45,6 @@ pub(super) enum Outcome {
     /// None; the text was looked at up to here.
     Lost(usize),
 }
-
-/// Longest name of an environment.
-const LONGEST_NAME: usize = 100;
 
 /// Inner environments that are remembered; deeper ones are passed over.
 const DEEPEST: usize = 100;
@@ -350,19 +326,6 @@ fn text_argument(bytes: &[u8], after: usize) -> usize {
         at += rest.get(at..).and_then(|left| left.iter().position(|b| *b == b']')).map_or(rest.len(), |end| end + 1);
     }
     after + at
-}
-
-/// `{name}` at a place: the name and one past the brace.
-pub(super) fn environment_name(text: &str, at: usize) -> Option<(&str, usize)> {
-    let rest = text.get(at..)?;
-    let spaces = rest.bytes().take_while(|byte| *byte == b' ').take(LONGEST_NAME).count();
-    let inside = rest.get(spaces..)?.strip_prefix('{')?;
-    let ends = |byte: u8| matches!(byte, b'}' | b'{' | b'\\' | b'$' | b'%' | b'\n' | b'\r');
-    let length = inside.bytes().take(LONGEST_NAME).position(ends)?;
-    if inside.as_bytes().get(length) != Some(&b'}') {
-        return None;
-    }
-    Some((inside.get(..length)?.trim(), at + spaces + length + 2))
 }
 
 /// Whether a text holds three plain words in a row outside of braces.

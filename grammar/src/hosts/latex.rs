@@ -8,7 +8,8 @@
 //! directives there count; bodies of definitions are skipped; a dollar after a parenthesis in a picture computes a
 //! coordinate; a definition holds from its end on.
 
-use super::body::{Closer, Ending, Manner, Outcome, environment_name, find_end};
+use super::body::{Ending, Manner, Outcome, find_end};
+use super::closer::{Closer, environment_name};
 use super::references::{read_references, root_in_comment};
 use super::vocabulary::{Command, command, is_listing, is_picture, mathematics};
 use super::wrappers::{Role, Wrappers};

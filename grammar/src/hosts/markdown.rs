@@ -12,7 +12,8 @@ mod outline;
 
 use std::ops::Range;
 
-use super::body::{Closer, Ending, Manner, Outcome, environment_name, find_end};
+use super::body::{Ending, Manner, Outcome, find_end};
+use super::closer::{Closer, environment_name};
 use super::directives::{MARK, push_sentences};
 use super::vocabulary::mathematics;
 use super::wrappers::Wrappers;

@@ -11,7 +11,7 @@
 use rustc_hash::FxHashMap;
 
 use super::Setting;
-use super::body::{Closer, environment_name};
+use super::closer::{Closer, environment_name};
 use super::vocabulary::{is_inner_rows, is_listing, mathematics};
 use crate::macros::cursor::Cursor;
 use crate::macros::{Definition, Macro, Macros, Parameter};

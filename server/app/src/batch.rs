@@ -8,12 +8,12 @@ use std::collections::{BTreeMap, HashMap};
 use std::path::PathBuf;
 use std::sync::{Mutex, MutexGuard, PoisonError};
 
-use indexwise_checker::paper::{Analysis, DocumentAnalysis, Paper};
+use indexwise_checker::paper::{Analysis, DocumentAnalysis};
 use rayon::prelude::*;
 use rayon::{ThreadPool, ThreadPoolBuilder};
 
 use crate::files::{Failure, Listed, Text};
-use crate::mend::{self, Mended};
+use crate::mend::{self, Checker, Mended};
 use crate::panics;
 use crate::progress::Progress;
 use crate::project::{Loaded, Overlay, PaperKey, Roots, Texts, load};
@@ -21,9 +21,6 @@ use crate::reports::FileReport;
 
 /// Stack of a worker, in bytes: nesting is capped in the grammar, and this holds what the cap allows.
 const STACK: usize = 16 << 20;
-
-/// What judges a paper.
-pub type Checker<'a> = dyn Fn(&Paper) -> Analysis + Sync + 'a;
 
 /// What came out besides the reports, in the order of the files.
 #[derive(Debug, Default)]
@@ -223,6 +220,8 @@ fn report_of(shown: &str, file: &Listed, found: DocumentAnalysis, text: Option<&
 #[cfg(test)]
 mod tests {
     #![allow(clippy::unwrap_used, clippy::expect_used, clippy::panic, clippy::indexing_slicing)]
+    use indexwise_checker::paper::Paper;
+
     use super::*;
     use crate::files;
     use crate::project::Disk;

@@ -8,10 +8,9 @@ use std::collections::BTreeMap;
 use std::path::{Path, PathBuf};
 
 use indexwise_checker::finding::{Edit, Finding, Fix, Severity};
-use indexwise_checker::paper::{Analysis, DocumentAnalysis};
+use indexwise_checker::paper::{Analysis, DocumentAnalysis, Paper};
 use indexwise_grammar::span::Span;
 
-use crate::batch::Checker;
 use crate::files::Text;
 use crate::project::{Loaded, Overlay, PaperKey, Texts, load};
 use crate::reports::FileReport;
@@ -25,6 +24,9 @@ const LONGEST_SHOWN: usize = 300;
 
 /// So many bytes of a long line are shown before and after what a fix touches.
 const AROUND: usize = 30;
+
+/// What judges a paper, as it stands and as it is mended.
+pub type Checker<'a> = dyn Fn(&Paper) -> Analysis + Sync + 'a;
 
 /// What became of a file.
 #[derive(Clone, Debug, PartialEq, Eq)]
