@@ -10,6 +10,7 @@ mod directives;
 mod latex;
 mod markdown;
 mod note;
+mod patience;
 mod references;
 mod vocabulary;
 mod wrappers;

@@ -10,6 +10,7 @@
 
 use super::body::{Ending, Manner, Outcome, find_end};
 use super::closer::{Closer, environment_name};
+use super::patience::Patience;
 use super::references::{read_references, root_in_comment};
 use super::vocabulary::{Command, command, is_listing, is_picture, mathematics};
 use super::wrappers::{Role, Wrappers};
@@ -17,9 +18,6 @@ use super::{Heading, Region, Scan, Setting, directives};
 use crate::macros::cursor::{Cursor, line_end};
 use crate::macros::{Definition, Macros, defines, defines_environment, read_definition, read_environment};
 use crate::span::Span;
-
-/// Arguments and definitions that could not be read before the scan stops trying; each costs a bounded look ahead.
-const FAILURES: u32 = 10_000;
 
 /// Finds regions, definitions, references, directives and headings.
 pub(super) fn scan(text: &str, macros: &Macros) -> Scan {
@@ -31,8 +29,7 @@ pub(super) fn scan(text: &str, macros: &Macros) -> Scan {
         wrappers: Wrappers::new(macros),
         preamble: false,
         pictures: 0,
-        lost_until: 0,
-        failures: 0,
+        patience: Patience::default(),
     };
     scanner.run();
     scanner.scan
@@ -48,9 +45,7 @@ struct Scanner<'t> {
     preamble: bool,
     /// Open pictures.
     pictures: u32,
-    /// Up to here a search that honours `\text{..}` has failed once.
-    lost_until: usize,
-    failures: u32,
+    patience: Patience,
 }
 
 impl Scanner<'_> {
@@ -103,14 +98,11 @@ impl Scanner<'_> {
 
     /// A formula from its opening delimiter at `start`, whose body starts at `from`.
     fn formula(&mut self, start: usize, from: usize, closer: Closer, setting: Setting) {
-        let nested = start >= self.lost_until;
-        let outcome = match self.search(from, &closer, nested) {
-            Outcome::Lost(place) if nested => {
-                self.lost_until = place;
-                self.search(from, &closer, false)
-            }
-            outcome => outcome,
-        };
+        let Self { text, bytes, wrappers, patience, .. } = self;
+        let outcome = patience.find_end(start, |nested| {
+            let manner = Manner { crosses: true, comments: true, nested };
+            find_end(text, from, bytes.len(), &closer, manner, wrappers)
+        });
         match outcome {
             Outcome::Found(ending) => {
                 self.at = ending.end.max(from);
@@ -118,11 +110,6 @@ impl Scanner<'_> {
             }
             Outcome::Lost(_) => self.at = from,
         }
-    }
-
-    fn search(&mut self, from: usize, closer: &Closer, nested: bool) -> Outcome {
-        let manner = Manner { crosses: true, comments: true, nested };
-        find_end(self.text, from, self.bytes.len(), closer, manner, &mut self.wrappers)
     }
 
     fn push_region(&mut self, start: usize, from: usize, ending: Ending, setting: Setting) {
@@ -214,12 +201,11 @@ impl Scanner<'_> {
 
     /// Reads something that looks ahead, unless too much of that has failed.
     fn attempt<T>(&mut self, read: impl FnOnce(&Self) -> Option<T>) -> Option<T> {
-        if self.failures >= FAILURES {
+        if self.patience.is_spent() {
             return None;
         }
         let found = read(self);
-        self.failures += u32::from(found.is_none());
-        found
+        self.patience.count(found)
     }
 
     /// Passes over an optional and a braced argument, if they stand there.

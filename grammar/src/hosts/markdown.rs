@@ -15,6 +15,7 @@ use std::ops::Range;
 use super::body::{Ending, Manner, Outcome, find_end};
 use super::closer::{Closer, environment_name};
 use super::directives::{MARK, push_sentences};
+use super::patience::Patience;
 use super::vocabulary::mathematics;
 use super::wrappers::Wrappers;
 use super::{Directive, Region, Scan, Setting};
@@ -22,9 +23,6 @@ use crate::macros::cursor::Cursor;
 use crate::macros::{Macros, defines, read_definition};
 use crate::span::Span;
 use outline::{CodeKind, Outline, outline};
-
-/// Definitions that could not be read before the scan stops trying; each costs a bounded look ahead.
-const FAILURES: u32 = 10_000;
 
 /// Raw HTML whose content is shown as typed.
 const RAW_ELEMENTS: &[&str] = &["script", "style", "pre", "code", "textarea"];
@@ -42,8 +40,7 @@ pub(super) fn scan(text: &str, macros: &Macros) -> Scan {
         next_heading: 0,
         scan: Scan::default(),
         wrappers: Wrappers::new(macros),
-        lost_until: 0,
-        failures: 0,
+        patience: Patience::default(),
         unclosed: 0,
     };
     scanner.run();
@@ -63,9 +60,7 @@ struct Scanner<'t> {
     scan: Scan,
     /// Carries the macros; an author's own delimiters are a habit of LaTeX documents only.
     wrappers: Wrappers,
-    /// Up to here a search that honours `\text{..}` has failed once.
-    lost_until: usize,
-    failures: u32,
+    patience: Patience,
     /// A bit for each closing mark of HTML that does not come any more.
     unclosed: u32,
 }
@@ -167,24 +162,19 @@ impl Scanner<'_> {
             return;
         }
         let limit = self.limit(from, setting);
-        let nested = start >= self.lost_until;
-        let mut outcome = self.search(from, limit, &closer, nested);
-        if let (true, Outcome::Lost(place)) = (nested, &outcome) {
-            self.lost_until = *place;
-            outcome = self.search(from, limit, &closer, false);
-        }
+        let crosses = matches!(closer, Closer::Environment(_));
+        let Self { text, wrappers, patience, .. } = self;
+        let outcome = patience.find_end(start, |nested| {
+            let manner = Manner { crosses, comments: false, nested };
+            find_end(text, from, limit, &closer, manner, wrappers)
+        });
         let Outcome::Found(ending) = outcome else { return };
         if self.is_formula(from, ending, &closer) {
             self.at = ending.end.max(from);
             self.push_region(start, from, ending, setting);
         } else {
-            self.lost_until = self.lost_until.max(ending.end);
+            self.patience.lose(ending.end);
         }
-    }
-
-    fn search(&mut self, from: usize, limit: usize, closer: &Closer, nested: bool) -> Outcome {
-        let crosses = matches!(closer, Closer::Environment(_));
-        find_end(self.text, from, limit, closer, Manner { crosses, comments: false, nested }, &mut self.wrappers)
     }
 
     /// Where a formula must have ended: the next fence, and for one in the line also the next block or code span.
@@ -298,12 +288,11 @@ impl Scanner<'_> {
 
     /// Reads a definition that is understood and ends before a limit, and puts it into force.
     fn define(&mut self, start: usize, limit: usize) -> Option<Span> {
-        if self.failures >= FAILURES {
+        if self.patience.is_spent() {
             return None;
         }
         let found = read_definition(self.text.get(..limit)?, start, self.wrappers.macros());
-        self.failures += u32::from(found.is_none());
-        let found = found?;
+        let found = self.patience.count(found)?;
         let span = found.span;
         self.wrappers.define(&found);
         self.scan.definitions.push(found);

@@ -43,6 +43,13 @@ pub struct Finding {
     pub ledger: Option<Ledger>,
 }
 
+impl Finding {
+    /// A finding that one sentence says in full: no further places, no fixes, no ledger.
+    pub(crate) fn plain(rule: &'static str, severity: Severity, span: Span, message: String) -> Self {
+        Self { rule, severity, span, message, related: Vec::new(), fixes: Vec::new(), ledger: None }
+    }
+}
+
 /// A further place that a finding speaks of.
 #[derive(Clone, Debug, PartialEq, Eq)]
 pub struct Related {

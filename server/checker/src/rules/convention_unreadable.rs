@@ -22,13 +22,5 @@ pub(crate) fn convention_unreadable(span: Span, text: &str) -> Finding {
         Some(form) => format!("this sentence has no known form; the nearest is \"{form}\""),
         None => format!("this sentence has no known form; the forms are \"{}\"", FORMS.join("\", \"")),
     };
-    Finding {
-        rule: RULE.name,
-        severity: RULE.severity,
-        span,
-        message,
-        related: Vec::new(),
-        fixes: Vec::new(),
-        ledger: None,
-    }
+    Finding::plain(RULE.name, RULE.severity, span, message)
 }

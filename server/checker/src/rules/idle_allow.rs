@@ -20,13 +20,5 @@ pub(crate) fn idle_allow(span: Span, rule: &str) -> Finding {
     let known = super::find(rule).is_some();
     let message =
         if known { format!("nothing here needs allow {rule}") } else { format!("there is no rule named {rule}") };
-    Finding {
-        rule: RULE.name,
-        severity: RULE.severity,
-        span,
-        message,
-        related: Vec::new(),
-        fixes: Vec::new(),
-        ledger: None,
-    }
+    Finding::plain(RULE.name, RULE.severity, span, message)
 }

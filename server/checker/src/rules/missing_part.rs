@@ -17,13 +17,6 @@ pub(super) const RULE: Rule = Rule {
 
 /// The finding for a part that could not be had. A preamble that is missing is a hint: nothing of the text is.
 pub(crate) fn missing_part(span: Span, message: &str, preamble: bool) -> Finding {
-    Finding {
-        rule: RULE.name,
-        severity: if preamble { Severity::Hint } else { RULE.severity },
-        span,
-        message: message.to_owned(),
-        related: Vec::new(),
-        fixes: Vec::new(),
-        ledger: None,
-    }
+    let severity = if preamble { Severity::Hint } else { RULE.severity };
+    Finding::plain(RULE.name, severity, span, message.to_owned())
 }

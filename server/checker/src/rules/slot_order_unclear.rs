@@ -28,17 +28,10 @@ fn check(judged: &Judged<'_>) -> Vec<Finding> {
             && staggered > 2 * flat
     });
     unclear
-        .map(|stacked| Finding {
-            rule: RULE.name,
-            severity: RULE.severity,
-            span: stacked.second,
-            message: format!(
-                "the order of the slots of {} is unclear here: elsewhere they are staggered",
-                shown(&stacked.kernel.0)
-            ),
-            related: Vec::new(),
-            fixes: Vec::new(),
-            ledger: None,
+        .map(|stacked| {
+            let kernel = shown(&stacked.kernel.0);
+            let message = format!("the order of the slots of {kernel} is unclear here: elsewhere they are staggered");
+            Finding::plain(RULE.name, RULE.severity, stacked.second, message)
         })
         .collect()
 }

@@ -17,13 +17,5 @@ pub(super) const RULE: Rule = Rule {
 
 /// The finding for an unread part.
 pub(crate) fn unread(part: &Unread) -> Finding {
-    Finding {
-        rule: RULE.name,
-        severity: RULE.severity,
-        span: part.span,
-        message: format!("not read: {}", part.reason),
-        related: Vec::new(),
-        fixes: Vec::new(),
-        ledger: None,
-    }
+    Finding::plain(RULE.name, RULE.severity, part.span, format!("not read: {}", part.reason))
 }
