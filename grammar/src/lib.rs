@@ -4,6 +4,7 @@
 //! is read on. The road inside: `hosts` cut the text into regions, `tokens` and `macros` turn a region into tokens
 //! that know their places, `formula` reads these into a `tree`.
 
+pub mod conventions;
 pub mod formula;
 pub mod hosts;
 pub mod lines;
