@@ -11,6 +11,7 @@ mod note;
 mod relation;
 mod script;
 mod segments;
+mod spelling;
 mod sum;
 mod tidy;
 
@@ -66,7 +67,19 @@ fn prepare_tokens(tokens: &[Token<'_>]) -> Draft {
     if !brackets::match_brackets(&mut tidied.lexemes) {
         return Draft::Unread("brackets are nested deeper than the budget");
     }
+    tidied.passed_over |= passes_over(&tidied.lexemes);
     Draft::Prepared(segments::cut(tidied))
+}
+
+/// Whether the parsers will pass over what may change the value: a bracket without a partner, or a switch to roman
+/// type outside scripts, after which letters may be words.
+fn passes_over(lexemes: &[Lexeme]) -> bool {
+    let kind = |at: Option<usize>| at.and_then(|at| lexemes.get(at)).map(|lexeme| lexeme.kind);
+    lexemes.iter().enumerate().any(|(at, lexeme)| match lexeme.kind {
+        Kind::Lone => true,
+        Kind::RomanSwitch => !matches!(kind(at.checked_sub(2)), Some(Kind::Up | Kind::Down)),
+        _ => false,
+    })
 }
 
 /// Parses drafts; the parsers are built once for all of them.
@@ -93,6 +106,7 @@ fn parse<'a>(
         labels: prepared.labels.clone(),
         unknown: prepared.unknown.clone(),
         no_sum: prepared.no_sum,
+        passed_over: prepared.passed_over,
         ..Formula::default()
     };
     for range in &prepared.statements {

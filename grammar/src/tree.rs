@@ -6,12 +6,14 @@
 //! macro call, so that several nodes may share a span.
 
 mod dump;
+mod signs;
 
 use compact_str::CompactString;
 
 use crate::span::Span;
 
 pub use dump::dump;
+pub use signs::{Claim, Joint, Operator, Product, Relation, RelationKind, Sign, SignKind};
 
 /// The level of a script: up (contravariant) or down (covariant).
 #[derive(Clone, Copy, Debug, PartialEq, Eq, Hash, PartialOrd, Ord)]
@@ -55,6 +57,9 @@ pub struct Formula {
     pub labels: Vec<(CompactString, Span)>,
     /// Whether words in it say that no sum is meant.
     pub no_sum: bool,
+    /// Whether something was passed over that may change the value: a bracket without a partner, words set over a
+    /// letter, a sign that nobody knows. Balance does not ask for it, evaluation must.
+    pub passed_over: bool,
     /// Whether the region is set on its own.
     pub display: bool,
 }
@@ -79,28 +84,6 @@ pub struct Statement {
     pub relations: Vec<Relation>,
 }
 
-/// A relation sign.
-#[derive(Clone, Debug, PartialEq, Eq)]
-pub struct Relation {
-    /// How it compares.
-    pub kind: RelationKind,
-    /// Where it stands.
-    pub span: Span,
-}
-
-/// What a relation asks of its sides.
-#[derive(Clone, Copy, Debug, PartialEq, Eq, Hash)]
-pub enum RelationKind {
-    /// `=`, `\equiv`, `:=` and kin: the sides have the same free indices.
-    Equal,
-    /// `\sim`, `\approx`, ...: as equal, if both sides carry free indices.
-    Loose,
-    /// `<`, `\neq`, ...: as equal, if both sides carry two free indices or more, since mostly they compare numbers.
-    Order,
-    /// Arrows, membership: nothing is compared.
-    Free,
-}
-
 /// A sum of terms.
 #[derive(Clone, Debug, Default, PartialEq)]
 pub struct Sum {
@@ -116,23 +99,11 @@ pub struct Term {
     /// Without the sign.
     pub span: Span,
     /// The sign before it, if one is written.
-    pub sign: Option<Span>,
+    pub sign: Option<Sign>,
     /// Factors in order; none after a lone sign.
     pub factors: Vec<Factor>,
-}
-
-/// How a factor is joined to the one before.
-#[derive(Clone, Copy, Debug, Default, PartialEq, Eq, Hash)]
-pub enum Joint {
-    /// Side by side.
-    #[default]
-    Beside,
-    /// A sign of multiplication: `\cdot`, `\times`, `\otimes`, ...
-    Times,
-    /// A slash: the factor is below the line.
-    Slash,
-    /// A sign between sets or maps: `\cap`, `\circ`.
-    Set,
+    /// A sign of multiplication after the last factor with nothing behind it (`a \cdot - b`), else `Beside`.
+    pub dangling: Joint,
 }
 
 /// An atom with its scripts.
@@ -146,6 +117,9 @@ pub struct Factor {
     pub scripts: Vec<Script>,
     /// How it hangs on the factor before.
     pub joint: Joint,
+    /// What else stands on it and changes its value, unless a kernel's name says so: accents over more than a
+    /// kernel, outermost first, each with a blank after it (`\overline `), then primes and factorial signs.
+    pub marks: CompactString,
 }
 
 /// What a factor is.
@@ -153,16 +127,16 @@ pub struct Factor {
 pub enum Atom {
     /// A letter or word that may carry indices.
     Kernel(Kernel),
-    /// A number or a quantity with a unit.
+    /// A number in decimal digits, or `\SI` for a quantity with a unit, which is not looked into.
     Number(CompactString),
     /// Something in brackets: one statement, or several separated by commas.
     Group(Group),
-    /// `\frac{over}{under}`, `\dv`, `\pdv`.
+    /// `\frac{over}{under}`, `\dv`, `\pdv`, `\binom`.
     Fraction(Box<Fraction>),
     /// A root.
-    Root(Box<Sum>),
-    /// `\sum`, `\int`, `\lim`: its scripts are bounds.
-    Big(Big),
+    Root(Box<Root>),
+    /// `\sum`, `\int`, `\lim`: its scripts are bounds. With the command, since `\prod` is no sum.
+    Big(Big, &'static str),
     /// A named function: `\sin`, `\det`, `\operatorname{tr}`.
     Function(CompactString),
     /// A matrix, a list of cases or the like, not looked into.
@@ -171,8 +145,8 @@ pub enum Atom {
     Text(CompactString),
     /// An ellipsis.
     Dots,
-    /// `O(..)`: terms of an order, not written out.
-    Order,
+    /// `\order{..}`: terms of an order, not written out.
+    Order(Option<Box<Sum>>),
     /// A wrapped part that carries no bracket: a box, a strike, a group in braces.
     Wrapped(Box<Sum>),
     /// An under- or overbrace: its scripts are words about it.
@@ -218,21 +192,49 @@ pub enum Bracket {
 /// Something in brackets.
 #[derive(Clone, Debug, PartialEq)]
 pub struct Group {
-    /// The opening bracket.
+    /// The shape of the opening bracket.
     pub bracket: Bracket,
+    /// The opening bracket in LaTeX (`(`, `\{`, `|`, `\|`, `\langle`, `\lfloor`), or the command that stands for the
+    /// brackets (`\comm`, `\ceil`).
+    pub left: &'static str,
     /// What stands between commas.
     pub parts: Vec<Statement>,
 }
 
-/// A fraction.
+/// A root.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Root {
+    /// What stands under it.
+    pub body: Sum,
+    /// `\sqrt[3]{..}`; none for a square root.
+    pub degree: Option<Sum>,
+}
+
+/// One sum above another.
 #[derive(Clone, Debug, PartialEq)]
 pub struct Fraction {
     /// Above the line.
     pub over: Sum,
     /// Below the line.
     pub under: Sum,
-    /// Whether it is a derivative by command (`\dv`, `\pdv`, `\fdv`).
-    pub derivative: bool,
+    /// What the two mean together.
+    pub kind: FractionKind,
+    /// `\dv[2]{f}{t}`: the order of a derivative by command, where it is said.
+    pub order: Option<Sum>,
+}
+
+/// What two sums above one another mean.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Hash)]
+pub enum FractionKind {
+    /// A quotient, or a derivative spelled out (`\frac{\partial f}{\partial x}`).
+    Quotient,
+    /// `\binom`, `\choose`.
+    Binomial,
+    /// `\atop`: no value.
+    Stacked,
+    /// A derivative by command, and which: `\dv`, `\pdv`, `\fdv`. Below stand the variables alone, without their
+    /// `\partial`; several arguments (`\pdv{f}{x}{y}`) are several factors. Nothing above: an operator.
+    Derivative(&'static str),
 }
 
 /// A big operator.
@@ -276,7 +278,7 @@ pub struct Item {
 pub enum ItemKind {
     /// A letter, with its primes, accents and number: `\mu`, `\mu'`, `\dot\alpha`, `i_1`.
     Letter(CompactString),
-    /// A number.
+    /// A number, with its primes: `0`, `12`, `0'`.
     Number(CompactString),
     /// A word in roman type or text: a label.
     Label(CompactString),
@@ -293,15 +295,15 @@ pub enum ItemKind {
     /// `)`, `]`
     Close(char),
     /// `+`, `-`
-    Sign,
-    /// `*`, `\dagger`, `\prime`, `\circ`, `\top` and kin.
+    Sign(SignKind),
+    /// `*`, `\dagger`, `\prime`, `\circ`, `\top`, `!` and kin; commands without their backslash.
     Mark(CompactString),
-    /// `=`, `<`, `\in`, `\to`, ...
-    Relation,
+    /// `=`, `<`, `\in`, `\to`, ... in LaTeX, as `Relation::sign`.
+    Relation(CompactString),
     /// An ellipsis.
     Dots,
     /// A product or division sign.
-    Operator,
+    Operator(Operator),
     /// Anything with a structure of its own: a kernel with scripts, a fraction, a group.
     Factor(Box<Factor>),
 }
@@ -336,7 +338,11 @@ fn walk_factor<'t>(factor: &'t Factor, visit: &mut impl FnMut(&'t Factor)) {
             walk(&fraction.over, visit);
             walk(&fraction.under, visit);
         }
-        Atom::Root(sum) | Atom::Wrapped(sum) | Atom::Labelled(sum) | Atom::Struck(sum) => walk(sum, visit),
+        Atom::Root(root) => {
+            root.degree.iter().for_each(|degree| walk(degree, visit));
+            walk(&root.body, visit);
+        }
+        Atom::Order(Some(sum)) | Atom::Wrapped(sum) | Atom::Labelled(sum) | Atom::Struck(sum) => walk(sum, visit),
         Atom::Unknown(_, sums) => sums.iter().for_each(|sum| walk(sum, visit)),
         _ => {}
     }

@@ -130,10 +130,21 @@ pub(crate) enum Class {
 
 /// The meaning of a command's name, without its backslash.
 pub(crate) fn class(name: &str) -> Option<Class> {
-    static TABLE: LazyLock<FxHashMap<&'static str, Class>> =
-        LazyLock::new(|| WORDS.iter().flat_map(|(class, names)| names.split(' ').map(|n| (n, *class))).collect());
-    TABLE.get(name).copied()
+    TABLE.get(name).map(|(class, _)| *class)
 }
+
+/// A known command as LaTeX spells it, with its backslash, from its name without.
+pub(crate) fn command(name: &str) -> Option<&'static str> {
+    TABLE.get(name).map(|(_, command)| command.as_str())
+}
+
+static TABLE: LazyLock<FxHashMap<&'static str, (Class, String)>> = LazyLock::new(|| {
+    let row = |(class, names): &(Class, &'static str)| {
+        let class = *class;
+        names.split(' ').map(move |name| (name, (class, format!("\\{name}"))))
+    };
+    WORDS.iter().flat_map(row).collect()
+});
 
 /// The LaTeX name of a letter or sign that may be typed as itself: `μ` is `\mu`.
 pub(crate) fn latex_name(sign: &str) -> Option<&'static str> {

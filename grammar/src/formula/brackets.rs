@@ -154,7 +154,7 @@ impl Awaited {
                 self.complete();
             }
             Kind::Plus | Kind::Equal | Kind::Loose | Kind::Arrow | Kind::Comma | Kind::Semicolon => self.here.clear(),
-            Kind::Times | Kind::Slash | Kind::Prime | Kind::Stagger => {}
+            Kind::Times | Kind::Slash | Kind::Prime | Kind::Factorial | Kind::Stagger => {}
             _ => match arguments(kind) {
                 0 => self.complete(),
                 number => {

@@ -8,12 +8,14 @@ use compact_str::{CompactString, format_compact};
 
 use crate::span::Span;
 use crate::tree::{
-    Atom, Big, Bracket, Factor, Fraction, Group, Item, ItemKind, Joint, Kernel, Script, Statement, Sum, Term,
+    Atom, Big, Bracket, Factor, Fraction, FractionKind, Group, Item, ItemKind, Joint, Kernel, Root, Script, Statement,
+    Sum, Term,
 };
 
 use super::lexeme::{Kind, Lexeme};
 use super::script::{Postfix, scripts};
-use super::{Extra, Input, join_all, kind, relation};
+use super::{Extra, Input, join_all, kind, relation, spelling};
+use crate::vocabulary::{Class, class, command};
 
 /// Atoms with scripts. `sum` is what stands in brackets.
 pub(super) fn factor<'a>(
@@ -99,10 +101,19 @@ fn simple<'a>() -> impl Parser<'a, Input<'a>, Factor, Extra> + Clone {
 
 fn big<'a>() -> impl Parser<'a, Input<'a>, Factor, Extra> + Clone {
     select_ref! {
-        Lexeme { kind: Kind::Sum, span, .. } => plain(Atom::Big(Big::Sum), *span),
-        Lexeme { kind: Kind::Integral, span, .. } => plain(Atom::Big(Big::Integral), *span),
-        Lexeme { kind: Kind::Limit, span, .. } => plain(Atom::Big(Big::Limit), *span),
+        Lexeme { kind: Kind::Sum, text, span } => big_command(Big::Sum, text, *span),
+        Lexeme { kind: Kind::Integral, text, span } => big_command(Big::Integral, text, *span),
+        Lexeme { kind: Kind::Limit, text, span } => big_command(Big::Limit, text, *span),
     }
+}
+
+fn big_command(big: Big, name: &str, span: Span) -> Factor {
+    let usual = match big {
+        Big::Sum => "\\sum",
+        Big::Integral => "\\int",
+        Big::Limit => "\\lim",
+    };
+    plain(Atom::Big(big, command(name).unwrap_or(usual)), span)
 }
 
 /// What begins no atom of its own but must not stop the reader.
@@ -123,44 +134,45 @@ fn leftover<'a>() -> impl Parser<'a, Input<'a>, Factor, Extra> + Clone {
 fn braced<'a>(
     parts: impl Parser<'a, Input<'a>, Vec<Statement>, Extra> + Clone + 'a,
 ) -> impl Parser<'a, Input<'a>, (Sum, Span), Extra> + Clone + 'a {
-    let over = kind(Kind::Over).ignore_then(parts.clone()).or_not();
+    let over = kind(Kind::Over).then(parts.clone()).or_not();
     kind(Kind::BraceOpen).then(parts).then(over).then(kind(Kind::BraceClose)).map(|(((open, parts), over), close)| {
         let span = open.span.join(close.span);
         let sum = one_sum(parts);
         match over {
             None => (sum, span),
-            Some(under) => {
-                let fraction = Fraction { over: sum, under: one_sum(under), derivative: false };
-                (lone_sum(plain(Atom::Fraction(Box::new(fraction)), span)).0, span)
-            }
+            Some((command, under)) => (lone_sum(stacked(command, sum, one_sum(under), span)).0, span),
         }
     })
 }
 
-/// `[..]` after a command; what it holds is passed over.
+/// `\frac`, `\binom`, `\over`, ...: one sum above another.
+fn stacked(command: &Lexeme, over: Sum, under: Sum, span: Span) -> Factor {
+    let kind = match command.text.as_str() {
+        "binom" | "dbinom" | "tbinom" | "choose" => FractionKind::Binomial,
+        "atop" => FractionKind::Stacked,
+        _ => FractionKind::Quotient,
+    };
+    plain(Atom::Fraction(Box::new(Fraction { over, under, kind, order: None })), span)
+}
+
+/// `[..]` after a command.
 fn option<'a>(
     parts: impl Parser<'a, Input<'a>, Vec<Statement>, Extra> + Clone + 'a,
-) -> impl Parser<'a, Input<'a>, (), Extra> + Clone + 'a {
+) -> impl Parser<'a, Input<'a>, Option<Sum>, Extra> + Clone + 'a {
     any_ref()
         .filter(|lexeme: &&Lexeme| lexeme.kind == Kind::Open && lexeme.text == "[")
         .ignore_then(parts)
         .then_ignore(kind(Kind::Close))
+        .map(one_sum)
         .or_not()
-        .ignored()
 }
 
 fn bracketed<'a>(
     parts: impl Parser<'a, Input<'a>, Vec<Statement>, Extra> + Clone + 'a,
 ) -> impl Parser<'a, Input<'a>, Factor, Extra> + Clone + 'a {
     kind(Kind::Open).then(parts).then(kind(Kind::Close)).map(|((open, parts), close): ((&Lexeme, _), &Lexeme)| {
-        let bracket = match open.text.as_str() {
-            "[" | "lbrack" => Bracket::Square,
-            "\\{" | "lbrace" | "\\lbrace" => Bracket::Curly,
-            "|" | "\\|" | "vert" | "Vert" | "lvert" | "lVert" | "\\lvert" | "\\lVert" | "\\vert" => Bracket::Bars,
-            "langle" | "lang" | "\\langle" => Bracket::Angle,
-            _ => Bracket::Round,
-        };
-        plain(Atom::Group(Group { bracket, parts }), open.span.join(close.span))
+        let (bracket, left) = spelling::bracket(&open.text);
+        plain(Atom::Group(Group { bracket, left, parts }), open.span.join(close.span))
     })
 }
 
@@ -168,21 +180,19 @@ fn bracketed<'a>(
 fn commands<'a>(
     argument: impl Parser<'a, Input<'a>, (Sum, Span), Extra> + Clone + 'a,
     braces: impl Parser<'a, Input<'a>, (Sum, Span), Extra> + Clone + 'a,
-    option: impl Parser<'a, Input<'a>, (), Extra> + Clone + 'a,
+    option: impl Parser<'a, Input<'a>, Option<Sum>, Extra> + Clone + 'a,
 ) -> impl Parser<'a, Input<'a>, Factor, Extra> + Clone + 'a {
     let accent = kind(Kind::Accent).or(kind(Kind::Bold)).or(kind(Kind::Roman));
     let accent = accent.then(argument.clone()).map(|(accent, (sum, end))| decorated(accent, sum, end));
     let slashed = kind(Kind::Slashed).then(argument.clone()).map(|(accent, (sum, end))| decorated(accent, sum, end));
     let fraction = kind(Kind::Fraction).then(argument.clone()).then(argument.clone()).map(
-        |((command, (over, _)), (under, end)): ((&Lexeme, _), _)| {
-            let fraction = Fraction { over, under, derivative: false };
-            plain(Atom::Fraction(Box::new(fraction)), command.span.join(end))
+        |((command, (over, _)), (under, end)): ((&Lexeme, _), _)| stacked(command, over, under, command.span.join(end)),
+    );
+    let root = kind(Kind::Root).then(option.clone()).then(argument.clone()).map(
+        |((command, degree), (body, end)): ((&Lexeme, _), _)| {
+            plain(Atom::Root(Box::new(Root { body, degree })), command.span.join(end))
         },
     );
-    let root = kind(Kind::Root)
-        .then_ignore(option.clone())
-        .then(argument.clone())
-        .map(|(command, (sum, end)): (&Lexeme, _)| plain(Atom::Root(Box::new(sum)), command.span.join(end)));
     let wrap = kind(Kind::Wrap).or(kind(Kind::Brace)).then_ignore(option.clone()).then(argument.clone()).map(
         |(command, (sum, end)): (&Lexeme, _)| {
             let body = Box::new(sum);
@@ -194,17 +204,19 @@ fn commands<'a>(
             plain(atom, command.span.join(end))
         },
     );
-    let norm = kind(Kind::Norm).or(kind(Kind::Average)).then(argument.clone()).map(|(command, (sum, end))| {
-        let bracket = if command.kind == Kind::Norm { Bracket::Bars } else { Bracket::Angle };
-        group(bracket, vec![sum], command.span.join(end))
-    });
+    let norm =
+        kind(Kind::Norm).or(kind(Kind::Average)).then(argument.clone()).map(|(command, (sum, end)): (&Lexeme, _)| {
+            group(spelling::bracket_command(command.kind, &command.text), vec![sum], command.span.join(end))
+        });
     let several = braces.clone().repeated().at_least(1).collect::<Vec<_>>();
     let pair = kind(Kind::Pair).then(several).map(|(command, sums): (&Lexeme, Vec<(Sum, Span)>)| {
         let span = join_all([command.span].into_iter().chain(sums.iter().map(|(_, span)| *span)));
-        group(Bracket::Pair, sums.into_iter().map(|(sum, _)| sum).collect(), span)
+        let bracket = spelling::bracket_command(command.kind, &command.text);
+        group(bracket, sums.into_iter().map(|(sum, _)| sum).collect(), span)
     });
-    let order =
-        kind(Kind::Order).then(argument.or_not()).map(|(command, _): (&Lexeme, _)| plain(Atom::Order, command.span));
+    let order = kind(Kind::Order).then(argument.or_not()).map(|(command, held): (&Lexeme, Option<(Sum, Span)>)| {
+        plain(Atom::Order(held.map(|(sum, _)| Box::new(sum))), command.span)
+    });
     let unknown = kind(Kind::Unknown).then(braces.clone().repeated().collect::<Vec<_>>()).map(
         |(command, sums): (&Lexeme, Vec<(Sum, Span)>)| {
             let span = join_all([command.span].into_iter().chain(sums.iter().map(|(_, span)| *span)));
@@ -213,7 +225,10 @@ fn commands<'a>(
     );
     let differential = kind(Kind::Differential).then_ignore(option).then(braces.or_not()).map(
         |(command, sum): (&Lexeme, Option<(Sum, Span)>)| match sum {
-            Some((sum, end)) => plain(Atom::Wrapped(Box::new(sum)), command.span.join(end)),
+            Some((sum, end)) => Factor {
+                marks: spelling::mark(&command.text),
+                ..plain(Atom::Wrapped(Box::new(sum)), command.span.join(end))
+            },
             None => letter("d", command.span),
         },
     );
@@ -224,18 +239,19 @@ fn commands<'a>(
 fn derivative<'a>(
     argument: impl Parser<'a, Input<'a>, (Sum, Span), Extra> + Clone + 'a,
     braces: impl Parser<'a, Input<'a>, (Sum, Span), Extra> + Clone + 'a,
-    option: impl Parser<'a, Input<'a>, (), Extra> + Clone + 'a,
+    option: impl Parser<'a, Input<'a>, Option<Sum>, Extra> + Clone + 'a,
 ) -> impl Parser<'a, Input<'a>, Factor, Extra> + Clone + 'a {
     let rest = braces.repeated().at_most(2).collect::<Vec<_>>();
-    kind(Kind::Derivative).then_ignore(option).then(argument).then(rest).map(
-        |((command, (first, end)), mut rest): ((&Lexeme, _), Vec<(Sum, Span)>)| {
+    kind(Kind::Derivative).then(option).then(argument).then(rest).map(
+        |(((command, order), (first, end)), mut rest): (((&Lexeme, _), _), Vec<(Sum, Span)>)| {
             let span = join_all([command.span, end].into_iter().chain(rest.iter().map(|(_, span)| *span)));
             let (over, under) = match rest.len() {
                 0 => (Sum::default(), first),
                 1 => (first, rest.pop().map(|(sum, _)| sum).unwrap_or_default()),
-                _ => (first, product(rest.into_iter().map(|(sum, _)| sum).collect())),
+                _ => (first, product(rest.into_iter().map(|(sum, _)| sum).collect(), Joint::Beside)),
             };
-            plain(Atom::Fraction(Box::new(Fraction { over, under, derivative: true })), span)
+            let kind = FractionKind::Derivative(spelling::derivative(&command.text));
+            plain(Atom::Fraction(Box::new(Fraction { over, under, kind, order })), span)
         },
     )
 }
@@ -243,7 +259,7 @@ fn derivative<'a>(
 /// `\tensor{R}{^\rho_\sigma}`: the second argument holds scripts in plain order.
 fn tensor<'a>(
     argument: impl Parser<'a, Input<'a>, (Sum, Span), Extra> + Clone + 'a,
-    option: impl Parser<'a, Input<'a>, (), Extra> + Clone + 'a,
+    option: impl Parser<'a, Input<'a>, Option<Sum>, Extra> + Clone + 'a,
     postfix: impl Parser<'a, Input<'a>, Postfix, Extra> + Clone + 'a,
 ) -> impl Parser<'a, Input<'a>, Factor, Extra> + Clone + 'a {
     let scripts =
@@ -259,7 +275,7 @@ fn tensor<'a>(
 }
 
 fn plain(atom: Atom, span: Span) -> Factor {
-    Factor { span, atom, scripts: Vec::new(), joint: Joint::Beside }
+    Factor { span, atom, scripts: Vec::new(), joint: Joint::Beside, marks: CompactString::default() }
 }
 
 fn letter(text: &str, span: Span) -> Factor {
@@ -268,38 +284,46 @@ fn letter(text: &str, span: Span) -> Factor {
 }
 
 fn empty_bars() -> Atom {
-    Atom::Group(Group { bracket: Bracket::Bars, parts: Vec::new() })
+    Atom::Group(Group { bracket: Bracket::Bars, left: "|", parts: Vec::new() })
 }
 
-fn group(bracket: Bracket, sums: Vec<Sum>, span: Span) -> Factor {
+fn group((bracket, left): (Bracket, &'static str), sums: Vec<Sum>, span: Span) -> Factor {
     let part = |sum: Sum| Statement { span: sum.span, sides: vec![sum], relations: Vec::new() };
-    plain(Atom::Group(Group { bracket, parts: sums.into_iter().map(part).collect() }), span)
+    plain(Atom::Group(Group { bracket, left, parts: sums.into_iter().map(part).collect() }), span)
 }
 
 /// A factor as a sum of one term.
 fn lone_sum(factor: Factor) -> (Sum, Span) {
     let span = factor.span;
-    (Sum { span, terms: vec![Term { span, sign: None, factors: vec![factor] }] }, span)
+    (Sum { span, terms: vec![Term { span, factors: vec![factor], ..Term::default() }] }, span)
 }
 
-/// A product of sums.
-fn product(sums: Vec<Sum>) -> Sum {
+/// A product of sums, or several sums where one is asked for.
+fn product(sums: Vec<Sum>, joint: Joint) -> Sum {
     let span = join_all(sums.iter().map(|sum| sum.span));
-    let factors = sums.into_iter().map(|sum| plain(Atom::Wrapped(Box::new(sum.clone())), sum.span)).collect();
-    Sum { span, terms: vec![Term { span, sign: None, factors }] }
+    let factor = |(n, sum): (usize, Sum)| Factor {
+        joint: if n == 0 { Joint::Beside } else { joint },
+        ..plain(Atom::Wrapped(Box::new(sum.clone())), sum.span)
+    };
+    let factors = sums.into_iter().enumerate().map(factor).collect();
+    Sum { span, terms: vec![Term { span, factors, ..Term::default() }] }
 }
 
-/// What stands in braces, as one sum; several parts become factors of a product.
+/// What stands in braces, as one sum; several parts become factors that stand apart.
 fn one_sum(mut parts: Vec<Statement>) -> Sum {
     if parts.len() == 1 && parts.iter().all(|part| part.sides.len() == 1) {
         return parts.pop().and_then(|mut part| part.sides.pop()).unwrap_or_default();
     }
-    product(parts.into_iter().flat_map(|part| part.sides).filter(|side| !side.terms.is_empty()).collect())
+    let sides = parts.into_iter().flat_map(|part| part.sides).filter(|side| !side.terms.is_empty());
+    product(sides.collect(), Joint::Apart)
 }
 
 /// `{x}` is `x`; several factors or terms in braces stay together.
 fn unwrap_braces((mut sum, span): (Sum, Span)) -> Factor {
-    let lone = matches!(sum.terms.as_slice(), [term] if term.sign.is_none() && term.factors.len() == 1);
+    let plain_joints =
+        |term: &Term| term.dangling == Joint::Beside && term.factors.iter().all(|factor| factor.joint == Joint::Beside);
+    let lone = matches!(sum.terms.as_slice(),
+        [term] if term.sign.is_none() && term.factors.len() == 1 && plain_joints(term));
     let factor = if lone { sum.terms.pop().and_then(|mut term| term.factors.pop()) } else { None };
     match factor {
         Some(factor) => Factor { span, joint: Joint::Beside, ..factor },
@@ -314,11 +338,16 @@ fn decorated(command: &Lexeme, sum: Sum, end: Span) -> Factor {
     if let Atom::Kernel(kernel) = &mut factor.atom {
         kernel.name = format_compact!("\\{} {}", command.text, kernel.name);
         kernel.bold |= command.kind == Kind::Bold || matches!(command.text.as_str(), "vec" | "overrightarrow");
-    } else if command.kind == Kind::Roman || command.kind == Kind::Accent {
-        // A word such as `\mathit{Re}` arrives as a product of letters.
-        if let Some(word) = spelled(&factor) {
-            factor.atom = Atom::Kernel(Kernel { name: word.clone(), letter: word, bold: false, word: true });
-        }
+        return factor;
+    }
+    // A word such as `\mathit{Re}` arrives as a product of letters.
+    let word = spelled(&factor).filter(|_| matches!(command.kind, Kind::Roman | Kind::Accent));
+    let font = class(&command.text) != Some(Class::Accent);
+    if word.is_none() || !font {
+        factor.marks = format_compact!("{}{}", spelling::mark(&command.text), factor.marks);
+    }
+    if let Some(word) = word {
+        factor.atom = Atom::Kernel(Kernel { name: word.clone(), letter: word, bold: false, word: true });
     }
     factor
 }
@@ -339,7 +368,7 @@ fn braced_to_zero(script: &Script) -> bool {
     let zero = |item: &Item| matches!(&item.kind, ItemKind::Number(number) if number == "0");
     match script.items.as_slice() {
         [item] => zero(item),
-        [first, second, ..] => first.kind == ItemKind::Relation && zero(second),
+        [first, second, ..] => matches!(first.kind, ItemKind::Relation(_)) && zero(second),
         [] => false,
     }
 }
@@ -353,9 +382,14 @@ fn with_scripts(mut factor: Factor, after: Vec<Postfix>) -> Factor {
             Postfix::Gap => gap = true,
             Postfix::Prime(text, span) => {
                 factor.span = factor.span.join(span);
-                if let Atom::Kernel(kernel) = &mut factor.atom {
-                    kernel.name.push_str(&text);
+                match &mut factor.atom {
+                    Atom::Kernel(kernel) if factor.marks.is_empty() => kernel.name.push_str(&text),
+                    _ => factor.marks.push_str(&text),
                 }
+            }
+            Postfix::Factorial(span) => {
+                factor.span = factor.span.join(span);
+                factor.marks.push('!');
             }
             Postfix::Script(script) => {
                 factor.span = factor.span.join(script.span);

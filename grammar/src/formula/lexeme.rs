@@ -72,6 +72,8 @@ pub(crate) enum Kind {
     Up,
     /// Primes after a letter or its scripts.
     Prime,
+    /// `!` after an atom.
+    Factorial,
     /// `\dagger`, `*` and kin.
     Mark,
     /// `,`
@@ -138,4 +140,6 @@ pub(crate) struct Prepared {
     pub unknown: Vec<(CompactString, Span)>,
     /// Whether words in the formula say that no sum is meant.
     pub no_sum: bool,
+    /// Whether something was passed over that may change the value.
+    pub passed_over: bool,
 }

@@ -38,6 +38,10 @@ const COMMANDS: &[(&str, &str)] = &[
     ("int", "\\int"),
 ];
 
+/// Relations of two signs.
+const PAIRS: &[(&str, &str, &str)] =
+    &[("!", "=", "\\neq"), ("<", "=", "\\leq"), (">", "=", "\\geq"), ("~", "=", "\\simeq"), ("=", ">", "\\implies")];
+
 /// Reads the text of a formula that starts at byte `base` of the note.
 pub(crate) fn note_tokens(text: &str, base: usize) -> NoteFormula<'_> {
     let (label, text, base) = take_label(text, base);
@@ -109,12 +113,23 @@ impl<'a> Writer<'_, 'a> {
                 TokenKind::Space | TokenKind::Comment => self.at += 1,
                 TokenKind::Letter => self.word(),
                 TokenKind::Down | TokenKind::Up => self.script(),
-                _ => {
-                    self.out.push(token);
-                    self.at += 1;
-                }
+                _ => self.sign(token),
             }
         }
+    }
+
+    /// A sign by itself, or a relation typed with two.
+    fn sign(&mut self, token: Token<'a>) {
+        let next = self.tokens.get(self.at + 1).copied().filter(|next| next.span.start == token.span.end);
+        let pair = next.and_then(|next| {
+            let known = PAIRS.iter().find(|(first, second, _)| *first == token.text && *second == next.text);
+            known.map(|(.., command)| made(TokenKind::Command, command, token.span.join(next.span)))
+        });
+        self.at += if pair.is_some() { 2 } else { 1 };
+        self.out.push(match token.kind {
+            TokenKind::Tie => made(TokenKind::Command, "\\sim", token.span),
+            _ => pair.unwrap_or(token),
+        });
     }
 
     /// The letters that stand together from here on, as one text where the lexer's pieces allow it.

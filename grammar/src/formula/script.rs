@@ -7,9 +7,10 @@ use chumsky::prelude::*;
 use compact_str::{CompactString, format_compact};
 
 use crate::span::Span;
-use crate::tree::{Atom, Factor, Item, ItemKind, Level, Script};
+use crate::tree::{Atom, Factor, Item, ItemKind, Joint, Level, Operator, Script};
 
 use super::lexeme::{Kind, Lexeme};
+use super::spelling;
 use super::{Extra, Input, kind};
 
 /// What may follow an atom.
@@ -17,6 +18,8 @@ use super::{Extra, Input, kind};
 pub(super) enum Postfix {
     /// Primes.
     Prime(CompactString, Span),
+    /// `!`
+    Factorial(Span),
     /// A script.
     Script(Script),
     /// Scripts in plain order, by `\indices`.
@@ -36,6 +39,7 @@ pub(super) fn scripts<'a>(
     let empty_group = kind(Kind::BraceOpen).then(stagger.repeated()).then(kind(Kind::BraceClose)).ignored();
     let gap = empty_group.or(stagger).then(next_is_script).to(Postfix::Gap);
     let prime = kind(Kind::Prime).map(|lexeme: &Lexeme| Postfix::Prime(lexeme.text.clone(), lexeme.span));
+    let factorial = kind(Kind::Factorial).map(|lexeme: &Lexeme| Postfix::Factorial(lexeme.span));
     let indices = kind(Kind::Indices)
         .ignore_then(kind(Kind::BraceOpen))
         .ignore_then(script.clone().repeated().collect::<Vec<_>>())
@@ -44,7 +48,7 @@ pub(super) fn scripts<'a>(
             scripts.iter_mut().for_each(|script: &mut Script| script.staggered = true);
             Postfix::Scripts(scripts)
         });
-    choice((script.map(Postfix::Script), prime, gap, indices))
+    choice((script.map(Postfix::Script), prime, factorial, gap, indices))
 }
 
 /// `_` or `^` with what it holds.
@@ -119,7 +123,7 @@ fn items<'a>(
 fn sign<'a>() -> impl Parser<'a, Input<'a>, Item, Extra> + Clone {
     any_ref()
         .filter(|lexeme: &&Lexeme| sign_kind(lexeme).is_some())
-        .map(|lexeme: &Lexeme| Item { span: lexeme.span, kind: sign_kind(lexeme).unwrap_or(ItemKind::Operator) })
+        .map(|lexeme: &Lexeme| Item { span: lexeme.span, kind: sign_kind(lexeme).unwrap_or(ItemKind::Dots) })
 }
 
 fn sign_kind(lexeme: &Lexeme) -> Option<ItemKind> {
@@ -131,16 +135,19 @@ fn sign_kind(lexeme: &Lexeme) -> Option<ItemKind> {
         Kind::Bar => ItemKind::Bar,
         Kind::Open | Kind::Close | Kind::Lone if text.contains('|') || text.ends_with("ert") => ItemKind::Bar,
         Kind::Open | Kind::Close | Kind::Lone => bracket(text),
-        Kind::Plus => ItemKind::Sign,
+        Kind::Plus => ItemKind::Sign(spelling::plus(text)),
         Kind::Times if text == "*" || text == "ast" || text == "star" || text == "circ" => {
             ItemKind::Mark(lexeme.text.clone())
         }
-        Kind::Times | Kind::Slash | Kind::Over => ItemKind::Operator,
+        Kind::Times => ItemKind::Operator(Operator::Joint(spelling::times(text))),
+        Kind::Slash => ItemKind::Operator(Operator::Joint(Joint::Slash)),
+        Kind::Over => ItemKind::Operator(Operator::Over),
+        Kind::Factorial => ItemKind::Mark(lexeme.text.clone()),
         Kind::Mark | Kind::Prime => ItemKind::Mark(lexeme.text.clone()),
         Kind::Loose if text == "perp" || text == "parallel" => ItemKind::Mark(lexeme.text.clone()),
-        Kind::Equal | Kind::Loose | Kind::Arrow => ItemKind::Relation,
+        Kind::Equal | Kind::Loose | Kind::Arrow => ItemKind::Relation(spelling::relation(lexeme)),
         Kind::Dots => ItemKind::Dots,
-        Kind::Row | Kind::Cell | Kind::Separator | Kind::Indices => ItemKind::Operator,
+        Kind::Row | Kind::Cell | Kind::Separator | Kind::Indices => ItemKind::Operator(Operator::Break),
         _ => return None,
     })
 }
@@ -160,8 +167,11 @@ fn bracket(text: &str) -> ItemKind {
 fn item_of(factor: Factor) -> Item {
     let span = factor.span;
     let kind = match &factor.atom {
-        Atom::Number(number) if factor.scripts.is_empty() => ItemKind::Number(number.clone()),
+        Atom::Number(number) if factor.scripts.is_empty() && factor.marks.chars().all(|mark| mark == '\'') => {
+            ItemKind::Number(format_compact!("{number}{}", factor.marks))
+        }
         Atom::Dots => ItemKind::Dots,
+        _ if !factor.marks.is_empty() => ItemKind::Factor(Box::new(factor)),
         Atom::Kernel(kernel) if kernel.word => ItemKind::Label(kernel.name.clone()),
         Atom::Kernel(kernel) => match numbered(&kernel.name, &factor.scripts) {
             Some(name) if kernel.bold || is_styled(&kernel.name) => ItemKind::Styled(name),

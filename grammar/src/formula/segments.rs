@@ -21,6 +21,7 @@ pub(crate) fn cut(tidied: Tidied) -> Prepared {
         labels: tidied.labels,
         unknown: tidied.unknown,
         no_sum: tidied.no_sum,
+        passed_over: tidied.passed_over,
     }
 }
 

@@ -38,6 +38,20 @@ const TRANSPARENT: &[&str] = &[
     "IEEEeqnarraybox",
 ];
 
+/// What stands for a quantity with a unit, whose number and unit are not read.
+const QUANTITY: &str = "\\SI";
+
+/// Fractions of one sign.
+const FRACTIONS: &[(&str, &str, &str)] = &[
+    ("½", "1", "2"),
+    ("⅓", "1", "3"),
+    ("⅔", "2", "3"),
+    ("¼", "1", "4"),
+    ("¾", "3", "4"),
+    ("⅙", "1", "6"),
+    ("⅛", "1", "8"),
+];
+
 /// What tidying yields.
 #[derive(Default)]
 pub(crate) struct Tidied {
@@ -46,6 +60,8 @@ pub(crate) struct Tidied {
     pub unknown: Vec<(CompactString, Span)>,
     /// Whether words in the formula say that no sum is meant.
     pub no_sum: bool,
+    /// Whether something was passed over that may change the value.
+    pub passed_over: bool,
 }
 
 /// Gives every token its meaning.
@@ -85,6 +101,11 @@ impl<'t, 'a> Cursor<'t, 'a> {
 
     fn token(&mut self, token: Token<'a>) {
         let wanted = std::mem::take(&mut self.digits_wanted);
+        if token.kind == TokenKind::BraceOpen && self.braced_operator() {
+            let Some(operator) = self.next() else { return };
+            self.at += 1;
+            return self.token(operator);
+        }
         let kind = match token.kind {
             TokenKind::Number => return self.number(token, wanted),
             TokenKind::Command => return self.command(token),
@@ -113,14 +134,19 @@ impl<'t, 'a> Cursor<'t, 'a> {
             TokenKind::Slash => Kind::Slash,
             TokenKind::Root => Kind::Root,
             TokenKind::Tie => Kind::Stagger,
-            TokenKind::Space
-            | TokenKind::Comment
-            | TokenKind::Dot
-            | TokenKind::Parameter
-            | TokenKind::Dollar
-            | TokenKind::Other => return,
+            TokenKind::Other => return self.other(token),
+            TokenKind::Space | TokenKind::Comment | TokenKind::Dot | TokenKind::Parameter | TokenKind::Dollar => return,
         };
         self.push(kind, token.text, token.span);
+    }
+
+    /// Whether the brace that was just taken holds one sign of multiplication or division and no more: `a{/}b`.
+    fn braced_operator(&self) -> bool {
+        let Some([operator, close]) = self.tokens.get(self.at..self.at + 2) else { return false };
+        let times = || operator.text.strip_prefix('\\').and_then(class) == Some(Class::Times);
+        let script = matches!(self.out.lexemes.last().map(|lexeme| lexeme.kind), Some(Kind::Up | Kind::Down));
+        let sign = matches!(operator.kind, TokenKind::Slash | TokenKind::Times) || times();
+        close.kind == TokenKind::BraceClose && sign && !script
     }
 
     /// A number; where single digits are wanted they are cut off its front.
@@ -134,6 +160,31 @@ impl<'t, 'a> Cursor<'t, 'a> {
         }
         let span = if in_place { Span::new(at + cut, at + token.text.len()) } else { token.span };
         self.push(Kind::Number, token.text.get(cut..).unwrap_or_default(), span);
+    }
+
+    /// Signs that are neither letters nor of the lexer's own.
+    fn other(&mut self, token: Token<'a>) {
+        if let Some((_, over, under)) = FRACTIONS.iter().find(|(sign, ..)| *sign == token.text) {
+            self.push(Kind::Fraction, "frac", token.span);
+            self.push(Kind::Number, *over, token.span);
+            return self.push(Kind::Number, *under, token.span);
+        }
+        let (kind, text) = match token.text {
+            "!" => (Kind::Factorial, "!"),
+            "∑" => (Kind::Sum, "sum"),
+            "∏" => (Kind::Sum, "prod"),
+            "∫" => (Kind::Integral, "int"),
+            "∞" => (Kind::Letter, "\\infty"),
+            "†" => (Kind::Mark, "dagger"),
+            "⟨" => (Kind::Open, "langle"),
+            "⟩" => (Kind::Close, "rangle"),
+            "‖" => (Kind::Bar, "\\|"),
+            _ => {
+                self.out.passed_over = true;
+                return;
+            }
+        };
+        self.push(kind, text, token.span);
     }
 
     fn plus(&mut self, token: Token<'a>) {
@@ -282,10 +333,11 @@ impl<'t, 'a> Cursor<'t, 'a> {
                 self.skip_group();
                 self.skip_group();
             }
-            Class::Wrap2 | Class::Overset => {
+            Class::Wrap2 => {
                 self.skip_optional();
                 self.skip_group();
             }
+            Class::Overset => self.set_over(),
             Class::Phantom => {
                 self.skip_group();
                 self.push(Kind::Stagger, "", token.span);
@@ -300,7 +352,7 @@ impl<'t, 'a> Cursor<'t, 'a> {
                 if class == Class::Number2 {
                     self.skip_group();
                 }
-                self.push(Kind::Number, "1", token.span);
+                self.push(Kind::Number, QUANTITY, token.span);
             }
             Class::Delimiter => self.delimiter(token),
             Class::Not => self.negated(),
@@ -313,6 +365,25 @@ impl<'t, 'a> Cursor<'t, 'a> {
                 self.push(Kind::Matrix, "", token.span);
             }
             _ => {}
+        }
+    }
+
+    /// `\overset{words}{body}`: the words go. Over a relation they say what it claims, over anything else they may
+    /// make another thing of it.
+    fn set_over(&mut self) {
+        self.skip_optional();
+        let words = self.group_words();
+        let braced = self.peek().is_some_and(|next| next.kind == TokenKind::BraceOpen);
+        let body = self.tokens.get(self.at + usize::from(braced)).copied();
+        match body.filter(|token| token.text == "=") {
+            Some(token) => {
+                if braced {
+                    self.push(Kind::BraceOpen, "{", token.span);
+                }
+                self.at += 1 + usize::from(braced);
+                self.push(Kind::Equal, claimed(&words), token.span);
+            }
+            None => self.out.passed_over |= !body.is_some_and(|token| is_relation(token.text)),
         }
     }
 
@@ -349,7 +420,11 @@ impl<'t, 'a> Cursor<'t, 'a> {
             }
             "\\middle" => {}
             _ if bar => self.push(Kind::Bar, next.text, span),
-            _ if matches!(next.kind, TokenKind::Open | TokenKind::Close | TokenKind::Sign | TokenKind::Command) => {
+            _ if matches!(
+                next.kind,
+                TokenKind::Open | TokenKind::Close | TokenKind::Sign | TokenKind::Command | TokenKind::Slash
+            ) =>
+            {
                 self.token(Token { span, ..next });
             }
             _ => {}
@@ -384,6 +459,21 @@ impl<'t, 'a> Cursor<'t, 'a> {
 
 fn takes_star(kind: Kind) -> bool {
     matches!(kind, Kind::Derivative | Kind::Norm | Kind::Average | Kind::Pair | Kind::Tensor | Kind::Wrap | Kind::Bold)
+}
+
+/// The sign that words over an equality make of it.
+fn claimed(words: &str) -> &'static str {
+    let words = words.trim_start_matches("\\text").trim_start_matches("\\mathrm").trim_start_matches("\\rm");
+    match words.trim_matches(['.', ' ']) {
+        "def" | "Def" | "\\triangle" | "\\Delta" | "." => ":=",
+        "!" | "?" | "\\bullet" | "*" => "\\stackrel",
+        _ => "=",
+    }
+}
+
+fn is_relation(text: &str) -> bool {
+    let class = text.strip_prefix('\\').and_then(class);
+    matches!(text, "<" | ">" | "→") || matches!(class, Some(Class::Equal | Class::Loose | Class::Arrow | Class::Times))
 }
 
 fn relation_sign(text: &str) -> Kind {

@@ -64,7 +64,7 @@ impl Builder {
             walk.below = 1 + usize::from(is_differential(factor));
         }
         // Sets and maps are named, not summed.
-        walk.any |= factor.joint == Joint::Set;
+        walk.any |= matches!(factor.joint, Joint::Set(_));
         let flip = walk.flip != (walk.below > 0);
         walk.below = walk.below.saturating_sub(1);
         match &factor.atom {
@@ -77,7 +77,8 @@ impl Builder {
                 self.inline(walk, &fraction.under, !flip);
                 self.note_ratio(over, under);
             }
-            Atom::Root(sum) | Atom::Labelled(sum) => self.inline(walk, sum, flip),
+            Atom::Root(root) => self.inline(walk, &root.body, flip),
+            Atom::Labelled(sum) => self.inline(walk, sum, flip),
             // `\{{}^\alpha_{\mu\nu}\}`: scripts on nothing are a symbol in its bracket.
             Atom::Wrapped(sum) if sum.terms.is_empty() => {
                 if walk.factors.len() == 1 {
@@ -90,13 +91,13 @@ impl Builder {
                 let node = self.sum_node(walk, sum, flip);
                 self.scripted_group(walk, factor, node, flip);
             }
-            Atom::Big(Big::Sum | Big::Limit) => self.bind(walk, factor),
-            Atom::Big(Big::Integral) | Atom::Number(_) | Atom::Unread(_) => {}
+            Atom::Big(Big::Sum | Big::Limit, _) => self.bind(walk, factor),
+            Atom::Big(Big::Integral, _) | Atom::Number(_) | Atom::Unread(_) => {}
             Atom::Function(name) => self.function(walk, name, flip),
             Atom::Unknown(name, arguments) => self.unknown(walk, factor, name, arguments, flip),
             // Zero takes any indices.
             Atom::Struck(_) => walk.any = true,
-            Atom::Matrix | Atom::Text(_) | Atom::Dots | Atom::Order => walk.any = true,
+            Atom::Matrix | Atom::Text(_) | Atom::Dots | Atom::Order(_) => walk.any = true,
         }
     }
 
@@ -210,7 +211,7 @@ impl Builder {
             node = Node::Switch(switch, Box::new(node));
         }
         // `\langle \theta_j \rangle_{|r_i - r_j| < r}`: a mean under a condition.
-        let relation = |item: &Item| item.kind == ItemKind::Relation;
+        let relation = |item: &Item| matches!(item.kind, ItemKind::Relation(_));
         walk.any |= group.bracket == Bracket::Angle
             && factor.scripts.iter().any(|script| script.items.len() > 1 && script.items.iter().any(relation));
         if matches!(group.bracket, Bracket::Bars | Bracket::Angle) {
@@ -386,11 +387,11 @@ impl Builder {
         let mut bound: Vec<(CompactString, Option<u32>)> = Vec::new();
         for script in factor.scripts.iter().filter(|script| script.level == Level::Down) {
             // A limit may bind the letter of its variable or leave it free.
-            let limit = factor.atom == Atom::Big(Big::Limit);
+            let limit = matches!(factor.atom, Atom::Big(Big::Limit, _));
             let mut doubtful = limit.then(|| self.switch(Switch::new(true, 0)));
             for item in &script.items {
                 match &item.kind {
-                    ItemKind::Relation => doubtful = Some(self.switch(Switch::new(true, 0))),
+                    ItemKind::Relation(_) => doubtful = Some(self.switch(Switch::new(true, 0))),
                     ItemKind::Letter(letter) | ItemKind::Styled(letter) => bound.push((letter.clone(), doubtful)),
                     ItemKind::Factor(inner) => {
                         bound.extend(letters_of(inner).into_iter().map(|letter| (letter, doubtful)));

@@ -59,7 +59,9 @@ pub(super) fn is_scalar_product(term: &Term) -> bool {
     };
     let small = |letter: &str| letter.len() == 1 && letter.chars().all(|c| c.is_ascii_lowercase());
     match (vector(first), vector(second)) {
-        (Some((one, a)), Some((two, b))) => second.joint == Joint::Times && one == two && small(&a) && small(&b),
+        (Some((one, a)), Some((two, b))) => {
+            matches!(second.joint, Joint::Times(_)) && one == two && small(&a) && small(&b)
+        }
         _ => false,
     }
 }
@@ -70,7 +72,7 @@ pub(super) fn is_numeric(factor: &Factor) -> bool {
     match &factor.atom {
         Atom::Number(_) => true,
         Atom::Fraction(fraction) => sum(&fraction.over) && sum(&fraction.under),
-        Atom::Root(body) => sum(body),
+        Atom::Root(root) => sum(&root.body),
         _ => false,
     }
 }

@@ -177,7 +177,7 @@ fn is_exponential(script: &Script, carrier: Carrier<'_>, all: &[Script]) -> bool
 
 fn is_arithmetic(kind: &ItemKind) -> bool {
     match kind {
-        ItemKind::Sign | ItemKind::Operator => true,
+        ItemKind::Sign(_) | ItemKind::Operator(_) => true,
         ItemKind::Factor(factor) => !matches!(factor.atom, Atom::Kernel(_) | Atom::Unknown(..) | Atom::Wrapped(_)),
         _ => false,
     }
@@ -192,15 +192,15 @@ fn holds_indices(script: &Script) -> bool {
     // A sign with an operand on both sides is arithmetic; at the end or after a comma it names a polarisation.
     !script.items.iter().enumerate().any(|(at, item)| match item.kind {
         // `T^{<ij>}`: angle brackets typed as relations.
-        ItemKind::Relation => at > 0 && at + 1 < script.items.len() || script.items.len() == 1,
-        ItemKind::Sign | ItemKind::Operator => operand(at.checked_sub(1)) && operand(Some(at + 1)),
+        ItemKind::Relation(_) => at > 0 && at + 1 < script.items.len() || script.items.len() == 1,
+        ItemKind::Sign(_) | ItemKind::Operator(_) => operand(at.checked_sub(1)) && operand(Some(at + 1)),
         _ => false,
     })
 }
 
 /// `\nabla_{\partial/\partial x^\mu}`: arithmetic, but it lends its index.
 fn lends(carrier: Carrier<'_>, script: &Script) -> bool {
-    let relation = script.items.iter().any(|item| item.kind == ItemKind::Relation);
+    let relation = script.items.iter().any(|item| matches!(item.kind, ItemKind::Relation(_)));
     let factor = script.items.iter().any(|item| matches!(item.kind, ItemKind::Factor(_)));
     is_derivative(&kernel_key(carrier)) && script.level == Level::Down && factor && !relation
 }
