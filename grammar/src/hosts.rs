@@ -121,6 +121,13 @@ pub fn scan(text: &str, host: Host, macros: &Macros) -> Scan {
     }
 }
 
+/// The sentences of the conventions language in a part of a text, with their places; one ends at `;` or with its line.
+pub fn sentences(text: &str, span: Span) -> Vec<(String, Span)> {
+    let mut found = Vec::new();
+    directives::push_sentences(text, span, &mut found);
+    found
+}
+
 #[cfg(test)]
 mod tests {
     #![allow(clippy::unwrap_used, clippy::expect_used, clippy::panic, clippy::indexing_slicing)]

@@ -25,6 +25,9 @@ pub struct Arguments {
 #[derive(Debug, Subcommand)]
 pub enum Command {
     /// Check files or folders and report what is wrong with their indices
+    ///
+    /// The nearest file indexwise.toml upwards from a document, within its repository, sets the levels of rules, further
+    /// files with macros, and which files of a folder are checked. A file that is named as a PATH is always checked.
     Check(CheckArguments),
     /// Explain a rule, or list the rules
     Explain(ExplainArguments),
@@ -53,12 +56,16 @@ pub struct CheckArguments {
     /// Count hints, too, for the exit status
     #[arg(long)]
     pub strict: bool,
-    /// Only these rules, separated by commas
+    /// Only these rules, separated by commas, also those that an indexwise.toml switches off
     #[arg(long, value_name = "RULE", value_delimiter = ',')]
     pub only: Vec<String>,
-    /// Not these rules, separated by commas
+    /// Not these rules, separated by commas, whatever an indexwise.toml says of them
     #[arg(long, value_name = "RULE", value_delimiter = ',')]
     pub without: Vec<String>,
+    /// Take the conventions of this file (.toml: its table [conventions]; else a plain list of sentences) instead of
+    /// those that the files indexwise.toml declare
+    #[arg(long, value_name = "FILE")]
+    pub conventions: Option<PathBuf>,
     /// How many papers are checked at a time (default: one for each processor)
     #[arg(long, value_name = "N", value_parser = clap::value_parser!(u16).range(1..=256))]
     pub jobs: Option<u16>,

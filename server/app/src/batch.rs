@@ -8,10 +8,12 @@ use std::collections::{BTreeMap, HashMap};
 use std::path::PathBuf;
 use std::sync::{Mutex, MutexGuard, PoisonError};
 
-use indexwise_checker::paper::{Analysis, DocumentAnalysis};
+use indexwise_checker::conventions::declared;
+use indexwise_checker::paper::{Analysis, DocumentAnalysis, Settings, Statistics};
 use rayon::prelude::*;
 use rayon::{ThreadPool, ThreadPoolBuilder};
 
+use crate::configuration::Scopes;
 use crate::files::{Failure, Listed, Text};
 use crate::mend::{self, Checker, Mended};
 use crate::panics;
@@ -41,6 +43,8 @@ pub struct Run<'a> {
     pub checker: &'a Checker<'a>,
     /// Whether fixes are applied (to the texts in memory).
     pub mend: bool,
+    /// What is said of the files from outside; their folders were entered.
+    pub scopes: &'a Scopes,
     /// The bar to move.
     pub progress: &'a Progress,
 }
@@ -185,13 +189,15 @@ fn check_members(
     texts: &dyn Texts,
     run: &Run,
 ) -> Result<Vec<Share>, String> {
-    let loaded = load(texts, key)?;
-    let analysis = (run.checker)(&loaded.paper);
+    // All members have the scope of the root.
+    let scope = members.first().map(|(_, file)| run.scopes.of(&file.path)).unwrap_or_default();
+    let loaded = load(texts, key, &scope)?;
+    let analysis = (run.checker)(&loaded.paper, &scope);
     let mut results: Vec<_> = members.iter().map(|(place, file)| (*place, checked(&loaded, &analysis, file))).collect();
     if run.mend {
         let wanted: Vec<(PathBuf, &str)> =
             members.iter().map(|(_, file)| (file.path.clone(), file.shown.as_str())).collect();
-        let mended = mend::mend(texts, key, &wanted, run.checker, (loaded, analysis))?;
+        let mended = mend::mend(texts, (key, &scope), &wanted, run.checker, (loaded, analysis))?;
         for ((_, checked), mended) in results.iter_mut().zip(mended) {
             if let Ok(checked) = checked {
                 checked.mended = Some(mended);
@@ -211,10 +217,28 @@ fn checked(loaded: &Loaded, analysis: &Analysis, file: &Listed) -> Result<Checke
     Ok(Checked { report: report_of(&file.shown, file, found, text), mended: None })
 }
 
+/// What is wrong with the conventions of configuration files: a report for each that has something, once for all the
+/// papers that share them.
+pub fn configurations(scopes: &Scopes, settings: &Settings) -> Vec<FileReport> {
+    let reports = scopes.with_conventions().iter().map(|configuration| {
+        let mut findings = declared::problems(&configuration.conventions);
+        Settings { levels: configuration.levels.clone(), ..settings.clone() }.settle(&mut findings);
+        let (path, text) = (configuration.conventions.path.clone(), configuration.text.clone());
+        FileReport { path, host: None, statistics: Statistics::default(), findings, text }
+    });
+    reports.filter(|report| !report.findings.is_empty()).collect()
+}
+
 fn report_of(shown: &str, file: &Listed, found: DocumentAnalysis, text: Option<&Text>) -> FileReport {
     // Without findings nobody asks for the text again, and a large archive need not be held in memory.
     let text = text.filter(|_| !found.findings.is_empty()).cloned().unwrap_or_default();
-    FileReport { path: shown.to_owned(), host: file.host, statistics: found.statistics, findings: found.findings, text }
+    FileReport {
+        path: shown.to_owned(),
+        host: Some(file.host),
+        statistics: found.statistics,
+        findings: found.findings,
+        text,
+    }
 }
 
 #[cfg(test)]
@@ -223,6 +247,7 @@ mod tests {
     use indexwise_checker::paper::Paper;
 
     use super::*;
+    use crate::configuration::Scope;
     use crate::files;
     use crate::project::Disk;
     use indexwise_grammar::hosts::Host;
@@ -238,9 +263,9 @@ mod tests {
 
     /// The names of the files that were reported on, and what went wrong; no report is wanted after `last`.
     fn run_until(last: &str, jobs: u16, folder: &tempfile::TempDir, checker: &Checker) -> (Vec<String>, Vec<Failure>) {
-        let (listed, _) = files::find(&[folder.path().to_owned()], Host::Latex);
+        let (listed, _) = files::find(&[folder.path().to_owned()], Host::Latex, &mut |_| true);
         let progress = Progress::new(listed.len(), false);
-        let run = Run { checker, mend: false, progress: &progress };
+        let run = Run { checker, mend: false, scopes: &Scopes::default(), progress: &progress };
         let mut names = Vec::new();
         let mut taker = |file: FileReport| {
             names.push(file.path.rsplit('/').next().unwrap().to_owned());
@@ -261,7 +286,7 @@ mod tests {
     #[test]
     fn a_panic_in_one_paper_is_one_failure_and_the_others_go_on() {
         let folder = folder(&[("a.md", b"a"), ("b.md", b"bad"), ("c.md", b"c")]);
-        let checker = |paper: &Paper| {
+        let checker = |paper: &Paper, _: &Scope| {
             assert!(paper.documents.iter().all(|source| &*source.text != "bad"), "no way");
             nothing(paper)
         };
@@ -274,7 +299,7 @@ mod tests {
     #[test]
     fn an_unreadable_file_does_not_stop_the_others() {
         let folder = folder(&[("a.md", b"\xff"), ("b.md", b"b")]);
-        let (names, failures) = run_on(&folder, &nothing);
+        let (names, failures) = run_on(&folder, &|paper: &Paper, _: &Scope| nothing(paper));
         assert_eq!(names, ["b.md"]);
         let [Failure(line)] = failures.as_slice() else { panic!("{failures:?}") };
         assert!(line.ends_with("a.md: is not UTF-8: first bad byte at offset 0"), "{line}");
@@ -285,7 +310,7 @@ mod tests {
         let root: &[u8] = b"\\documentclass{article}\\begin{document}\\input{part}\\end{document}";
         let folder = folder(&[("main.tex", root), ("part.tex", b"x")]);
         let count = std::sync::atomic::AtomicUsize::new(0);
-        let checker = |paper: &Paper| {
+        let checker = |paper: &Paper, _: &Scope| {
             count.fetch_add(1, std::sync::atomic::Ordering::Relaxed);
             assert_eq!(paper.documents.len(), 2);
             nothing(paper)
@@ -299,7 +324,7 @@ mod tests {
     fn a_panic_in_a_paper_does_not_hold_up_what_comes_after_its_parts() {
         let root: &[u8] = b"\\documentclass{article}\\input{c}\\input{e}";
         let folder = folder(&[("a.tex", root), ("b.md", b"b"), ("c.tex", b"c"), ("d.md", b"d"), ("e.tex", b"e")]);
-        let checker = |paper: &Paper| {
+        let checker = |paper: &Paper, _: &Scope| {
             assert!(paper.documents.len() == 1, "no way");
             nothing(paper)
         };
@@ -312,14 +337,14 @@ mod tests {
     #[test]
     fn a_report_is_handed_on_before_the_next_paper_is_checked() {
         let folder = folder(&[("a.md", b"a"), ("b.md", b"b"), ("c.md", b"c")]);
-        let (listed, _) = files::find(&[folder.path().to_owned()], Host::Latex);
+        let (listed, _) = files::find(&[folder.path().to_owned()], Host::Latex, &mut |_| true);
         let (progress, taken) = (Progress::new(3, false), std::sync::atomic::AtomicUsize::new(0));
-        let checker = |paper: &Paper| {
+        let checker = |paper: &Paper, _: &Scope| {
             let before = ["a", "b", "c"].iter().position(|text| *text == &*paper.documents[0].text).unwrap();
             assert_eq!(taken.load(std::sync::atomic::Ordering::SeqCst), before);
             nothing(paper)
         };
-        let run = Run { checker: &checker, mend: false, progress: &progress };
+        let run = Run { checker: &checker, mend: false, scopes: &Scopes::default(), progress: &progress };
         let mut taker = |_| {
             taken.fetch_add(1, std::sync::atomic::Ordering::SeqCst);
             true
@@ -333,7 +358,7 @@ mod tests {
         let names: Vec<String> = (100..200).map(|at| format!("{at}.md")).collect();
         let files: Vec<(&str, &[u8])> = names.iter().map(|name| (name.as_str(), &b"x"[..])).collect();
         let count = std::sync::atomic::AtomicUsize::new(0);
-        let checker = |paper: &Paper| {
+        let checker = |paper: &Paper, _: &Scope| {
             count.fetch_add(1, std::sync::atomic::Ordering::Relaxed);
             nothing(paper)
         };

@@ -5,6 +5,7 @@
 
 pub mod writing;
 
+use std::collections::HashSet;
 use std::fs::File;
 use std::io::Read;
 use std::path::{Path, PathBuf};
@@ -69,15 +70,20 @@ impl Failure {
 
 /// Reads a file whole. The error is the cause, without the path.
 pub fn read(path: &Path) -> Result<Text, String> {
-    let file = File::open(path).map_err(|error| cause(&error))?;
-    read_from(file)
+    read_at_most(path, LARGEST_FILE)
 }
 
-fn read_from(input: impl Read) -> Result<Text, String> {
+/// Reads a file of at most so many bytes, which are whole MiB.
+pub fn read_at_most(path: &Path, most: u64) -> Result<Text, String> {
+    let file = File::open(path).map_err(|error| cause(&error))?;
+    read_from(file, most)
+}
+
+fn read_from(input: impl Read, most: u64) -> Result<Text, String> {
     let mut bytes = Vec::new();
-    input.take(LARGEST_FILE + 1).read_to_end(&mut bytes).map_err(|error| cause(&error))?;
-    if bytes.len() as u64 > LARGEST_FILE {
-        return Err(format!("is larger than {} MiB", LARGEST_FILE >> 20));
+    input.take(most + 1).read_to_end(&mut bytes).map_err(|error| cause(&error))?;
+    if bytes.len() as u64 > most {
+        return Err(format!("is larger than {} MiB", most >> 20));
     }
     decode(bytes)
 }
@@ -89,9 +95,13 @@ fn decode(bytes: Vec<u8>) -> Result<Text, String> {
     Ok(Text { marked: unmarked.is_some(), text: unmarked.unwrap_or(&text).into() })
 }
 
-/// The files under the paths, in the order of the paths, each once; a folder's in the order of their names.
-pub fn find(paths: &[PathBuf], input: Host) -> (Vec<Listed>, Vec<Failure>) {
-    let mut found = Found::default();
+/// Whether a file that a folder holds is to be checked, by its real path.
+pub type Admits<'a> = dyn FnMut(&Path) -> bool + 'a;
+
+/// The files under the paths, in the order of the paths, each once; a folder's in the order of their names. Files
+/// that are named are taken without asking.
+pub fn find(paths: &[PathBuf], input: Host, admits: &mut Admits) -> (Vec<Listed>, Vec<Failure>) {
+    let mut found = Found { admits, files: Vec::new(), failures: Vec::new(), known: HashSet::new() };
     if paths.is_empty() {
         found.walk(Path::new("."), Path::new("."));
     }
@@ -107,14 +117,14 @@ pub fn find(paths: &[PathBuf], input: Host) -> (Vec<Listed>, Vec<Failure>) {
     (found.files, found.failures)
 }
 
-#[derive(Default)]
-struct Found {
+struct Found<'f, 'a> {
+    admits: &'f mut Admits<'a>,
     files: Vec<Listed>,
     failures: Vec<Failure>,
-    known: std::collections::HashSet<PathBuf>,
+    known: HashSet<PathBuf>,
 }
 
-impl Found {
+impl Found<'_, '_> {
     fn add(&mut self, shown: String, path: PathBuf, host: Host, given: Option<Text>) {
         if self.known.insert(path.clone()) {
             self.files.push(Listed { shown, path, host, given });
@@ -144,7 +154,7 @@ impl Found {
 
     /// Standard input stands in the current folder, where its parts and styles are looked for.
     fn take_input(&mut self, host: Host) {
-        match read_from(std::io::stdin().lock()) {
+        match read_from(std::io::stdin().lock(), LARGEST_FILE) {
             Ok(text) => self.add("-".into(), current_folder().join("-"), host, Some(text)),
             Err(cause) => self.failures.push(Failure::new("standard input", cause)),
         }
@@ -167,7 +177,8 @@ impl Found {
             }
             let shown = entry.path().strip_prefix(hidden).unwrap_or(entry.path()).display().to_string();
             match entry.path().canonicalize() {
-                Ok(real) => self.add(shown, real, host, None),
+                Ok(real) if (self.admits)(&real) => self.add(shown, real, host, None),
+                Ok(_) => {}
                 Err(error) => self.failures.push(Failure::new(shown, cause(&error))),
             }
         }
@@ -216,7 +227,7 @@ mod tests {
     use std::fs;
 
     fn shown(paths: &[PathBuf]) -> Vec<String> {
-        find(paths, Host::Latex).0.into_iter().map(|file| file.shown).collect()
+        find(paths, Host::Latex, &mut |_| true).0.into_iter().map(|file| file.shown).collect()
     }
 
     #[test]
@@ -234,7 +245,7 @@ mod tests {
 
     #[test]
     fn a_huge_file_is_refused() {
-        let told = read_from(std::io::repeat(b'a')).unwrap_err();
+        let told = read_from(std::io::repeat(b'a'), LARGEST_FILE).unwrap_err();
         assert_eq!(told, "is larger than 64 MiB");
     }
 
@@ -266,7 +277,7 @@ mod tests {
         let folder = tempfile::tempdir().unwrap();
         let (here, gone) = (folder.path().join("a.tex"), folder.path().join("b.tex"));
         fs::write(&here, "x").unwrap();
-        let (files, failures) = find(&[gone.clone(), here], Host::Latex);
+        let (files, failures) = find(&[gone.clone(), here], Host::Latex, &mut |_| true);
         assert_eq!(files.len(), 1);
         assert_eq!(failures, [Failure::new(gone.display(), "not found")]);
     }

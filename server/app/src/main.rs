@@ -6,6 +6,7 @@
 mod arguments;
 mod batch;
 mod commands;
+mod configuration;
 mod files;
 mod mend;
 mod nearest;

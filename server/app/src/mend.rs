@@ -11,6 +11,7 @@ use indexwise_checker::finding::{Edit, Finding, Fix, Severity};
 use indexwise_checker::paper::{Analysis, DocumentAnalysis, Paper};
 use indexwise_grammar::span::Span;
 
+use crate::configuration::Scope;
 use crate::files::Text;
 use crate::project::{Loaded, Overlay, PaperKey, Texts, load};
 use crate::reports::FileReport;
@@ -25,8 +26,8 @@ const LONGEST_SHOWN: usize = 300;
 /// So many bytes of a long line are shown before and after what a fix touches.
 const AROUND: usize = 30;
 
-/// What judges a paper, as it stands and as it is mended.
-pub type Checker<'a> = dyn Fn(&Paper) -> Analysis + Sync + 'a;
+/// What judges a paper in its scope, as it stands and as it is mended.
+pub type Checker<'a> = dyn Fn(&Paper, &Scope) -> Analysis + Sync + 'a;
 
 /// What became of a file.
 #[derive(Clone, Debug, PartialEq, Eq)]
@@ -90,7 +91,7 @@ struct Plan {
 /// Mends the wanted files (real path and shown path) of a paper that was loaded and checked already.
 pub fn mend(
     texts: &dyn Texts,
-    key: &PaperKey,
+    (key, scope): (&PaperKey, &Scope),
     wanted: &[(PathBuf, &str)],
     checker: &Checker,
     (mut loaded, mut analysis): (Loaded, Analysis),
@@ -102,12 +103,12 @@ pub fn mend(
         if plans.is_empty() {
             break;
         }
-        let mut next = load(&overlay, key)?;
-        let mut found = checker(&next.paper);
+        let mut next = load(&overlay, key, scope)?;
+        let mut found = checker(&next.paper, scope);
         while let Some(worse) = worse(&plans, &works, (&loaded, &analysis), (&next, &found)) {
             give_up(&mut plans, &worse, &mut works, &mut overlay);
-            next = load(&overlay, key)?;
-            found = checker(&next.paper);
+            next = load(&overlay, key, scope)?;
+            found = checker(&next.paper, scope);
         }
         for plan in plans {
             if let Some(work) = works.get_mut(plan.work) {
@@ -138,7 +139,7 @@ impl<'a> Work<'a> {
         let left = found.findings.iter().map(left).collect();
         let report = FileReport {
             path: self.shown.to_owned(),
-            host: host.unwrap_or(indexwise_grammar::hosts::Host::Latex),
+            host: Some(host.unwrap_or(indexwise_grammar::hosts::Host::Latex)),
             statistics: found.statistics,
             findings: found.findings,
             text: after.clone(),
@@ -339,7 +340,7 @@ mod tests {
         ("rows", "a\nb", Ok(())),
     ];
 
-    fn words(paper: &Paper) -> Analysis {
+    fn words(paper: &Paper, _: &Scope) -> Analysis {
         let documents = paper.documents.iter().map(|source| {
             let mut findings: Vec<Finding> = WORDS.iter().flat_map(|word| found(&source.text, word)).collect();
             findings.sort_by_key(|finding| finding.span);
@@ -374,9 +375,9 @@ mod tests {
         let mut overlay = Overlay::new(&Disk);
         overlay.lay(path.clone(), Text { text: text.into(), marked: false });
         let key = PaperKey { root: path.clone(), appended: None, host: Host::Markdown };
-        let loaded = load(&overlay, &key).unwrap();
-        let analysis = words(&loaded.paper);
-        mend(&overlay, &key, &[(path, "a.md")], &words, (loaded, analysis)).unwrap().remove(0)
+        let (loaded, scope) = (load(&overlay, &key, &Scope::default()).unwrap(), Scope::default());
+        let analysis = words(&loaded.paper, &scope);
+        mend(&overlay, (&key, &scope), &[(path, "a.md")], &words, (loaded, analysis)).unwrap().remove(0)
     }
 
     #[track_caller]

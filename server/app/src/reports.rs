@@ -21,8 +21,8 @@ use text::Palette;
 pub struct FileReport {
     /// As the user gave it.
     pub path: String,
-    /// What kind of file it is.
-    pub host: Host,
+    /// What kind of file it is; nothing: a configuration file, which holds no formulas.
+    pub host: Option<Host>,
     /// Counts.
     pub statistics: Statistics,
     /// In the order of their places.
@@ -53,6 +53,8 @@ pub fn write(files: &[FileReport], look: Look, elapsed: Duration, out: &mut dyn 
 /// Counts of a whole report.
 #[derive(Clone, Copy, Debug, Default, PartialEq, Eq)]
 pub struct Totals {
+    /// Documents; configuration files are not counted.
+    pub files: usize,
     /// Regions of mathematics.
     pub formulas: usize,
     /// Those with indices.
@@ -72,6 +74,7 @@ impl Totals {
     pub fn of(files: &[FileReport]) -> Self {
         let mut totals = Self::default();
         for file in files {
+            totals.files += usize::from(file.host.is_some());
             totals.formulas += file.statistics.formulas;
             totals.indexed += file.statistics.indexed;
             totals.unread += file.statistics.unread;
@@ -136,7 +139,7 @@ pub mod samples {
         };
         FileReport {
             path: path.into(),
-            host: Host::Latex,
+            host: Some(Host::Latex),
             statistics: Statistics { formulas: 1, indexed: 1, unread: 0, unknown_macros: 0 },
             findings: vec![finding],
             text: Text { text: text.into(), marked },

@@ -1,5 +1,8 @@
 //! A paper is a root document with its parts and styles; `check` is the one pipeline.
 
+#[cfg(test)]
+mod tests;
+
 use std::borrow::Cow;
 use std::sync::Arc;
 use std::sync::atomic::{AtomicBool, Ordering};
@@ -13,7 +16,7 @@ use rustc_hash::{FxHashMap, FxHashSet};
 
 use crate::conventions::declared::{Declared, Sentence};
 use crate::conventions::inferred::{Evidence, Prices};
-use crate::finding::Finding;
+use crate::finding::{Finding, Severity};
 use crate::ledger::Judged;
 use crate::reading::{self, Reading};
 use crate::rules;
@@ -52,6 +55,20 @@ pub struct Paper {
     pub styles: Vec<Source>,
     /// Parts that could not be had.
     pub troubles: Vec<Trouble>,
+    /// Conventions that stand outside the paper, the outer scope first, so that a later one is nearer.
+    pub shared: Vec<SharedConventions>,
+}
+
+/// Conventions that several papers share: those of a configuration file.
+#[derive(Clone, Debug, Default, PartialEq, Eq)]
+pub struct SharedConventions {
+    /// The path of the file as it is shown to people.
+    pub path: String,
+    /// The text of the file without a byte-order mark.
+    pub text: Arc<str>,
+    /// The sentences in order. A span lies on `text`; it covers the sentence to the letter unless the file writes it
+    /// with escapes: then it covers what holds them all, and `span.of(text)` differs from the sentence.
+    pub sentences: Vec<(String, Span)>,
 }
 
 /// What the caller wants.
@@ -63,6 +80,38 @@ pub struct Settings {
     pub without: Vec<String>,
     /// Whether `unread`, which is off by default, is reported.
     pub unread: bool,
+    /// Rules with a severity of their own instead of their usual one; nothing: off. The last entry of a rule counts.
+    /// A rule that `only` names is on whatever stands here, and one that `without` names is off.
+    pub levels: Vec<(String, Option<Severity>)>,
+}
+
+impl Settings {
+    /// What is said of a rule's level, if anything is.
+    fn level(&self, rule: &str) -> Option<Option<Severity>> {
+        self.levels.iter().rev().find(|(name, _)| name == rule).map(|(_, level)| *level)
+    }
+
+    /// Whether parts that could not be read are reported.
+    fn reports_unread(&self) -> bool {
+        self.unread || matches!(self.level("unread"), Some(Some(_)))
+    }
+
+    /// Leaves of the findings those that are asked for, each with the severity that is.
+    pub fn settle(&self, findings: &mut Vec<Finding>) {
+        let named = |names: &[String], rule: &str| names.iter().any(|name| name == rule);
+        findings.retain_mut(|finding| {
+            let only = named(&self.only, finding.rule);
+            if named(&self.without, finding.rule) || !(only || self.only.is_empty()) {
+                return false;
+            }
+            match self.level(finding.rule) {
+                Some(Some(severity)) => finding.severity = severity,
+                Some(None) => return only,
+                None => {}
+            }
+            true
+        });
+    }
 }
 
 /// Asked from time to time: a set flag ends a check early, with what is known by then.
@@ -127,7 +176,7 @@ pub fn check(paper: &Paper, settings: &Settings, cancel: &Cancel) -> Analysis {
         let troubles = paper.troubles.iter().filter(|trouble| trouble.document == number);
         let missing = troubles.map(|trouble| missing_part(trouble, begin)).collect();
         let mut analysis = judge_document(document, prices, settings, missing);
-        analysis.findings.retain(|finding| wanted(finding.rule, settings));
+        settings.settle(&mut analysis.findings);
         analysis.findings.sort_by(|a, b| (a.span, a.rule, &a.message).cmp(&(b.span, b.rule, &b.message)));
         analysis
     });
@@ -319,7 +368,7 @@ fn judge_document(
             findings.extend(rules::check_statement(&judged).into_iter().map(|finding| (number, finding)));
         }
     }
-    for (number, formula) in formulas.iter().enumerate().filter(|_| settings.unread) {
+    for (number, formula) in formulas.iter().enumerate().filter(|_| settings.reports_unread()) {
         findings.extend(formula.unread.iter().map(|part| (number, rules::unread(part))));
     }
     let statistics = Statistics {
@@ -400,9 +449,4 @@ fn directed(
     about.extend(findings.into_iter().map(|(_, finding)| finding));
     about.retain(|finding| !allowed.iter().any(|rule| *rule == finding.rule));
     about
-}
-
-fn wanted(rule: &str, settings: &Settings) -> bool {
-    let named = |names: &[String]| names.iter().any(|name| name == rule);
-    (settings.only.is_empty() || named(&settings.only)) && !named(&settings.without)
 }

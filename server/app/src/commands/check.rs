@@ -12,6 +12,7 @@ use indexwise_grammar::hosts::Host;
 
 use crate::arguments::{CheckArguments, ReportKind};
 use crate::batch::{self, Outcome, Run};
+use crate::configuration::{Scope, Scopes};
 use crate::files::{self, Failure, Listed};
 use crate::mend::Mended;
 use crate::nearest::nearest;
@@ -35,10 +36,16 @@ pub fn run(arguments: &CheckArguments) -> Status {
 fn checked(arguments: &CheckArguments) -> Result<Status, Failure> {
     let settings = settings(arguments)?;
     let input = arguments.host.map_or(Host::Latex, Host::from);
-    let (listed, failures) = files::find(&arguments.paths, input);
-    refuse_own_output(arguments.output.as_deref(), &listed)?;
+    let mut scopes = Scopes::new(arguments.conventions.as_deref());
+    let (listed, failures) = files::find(&arguments.paths, input, &mut |file| scopes.admits(file));
+    listed.iter().for_each(|file| drop(scopes.enter(&file.path)));
+    if !scopes.failures().is_empty() {
+        scopes.failures().iter().chain(&failures).for_each(Failure::tell);
+        return Ok(Status::Trouble);
+    }
+    refuse_own_output(arguments.output.as_deref(), &listed, &scopes)?;
     let mut report = Report::begin(arguments)?;
-    let mut outcome = check(arguments, &settings, &listed, &mut report)?;
+    let mut outcome = check(arguments, &settings, &listed, &scopes, &mut report)?;
     outcome.failures.splice(0..0, failures);
     if arguments.fix && !arguments.dry_run {
         write_mended(&mut outcome, &mut report.files);
@@ -53,15 +60,22 @@ fn check(
     arguments: &CheckArguments,
     settings: &Settings,
     listed: &[Listed],
+    scopes: &Scopes,
     report: &mut Report,
 ) -> Result<Outcome, Failure> {
     // A report that grows on the terminal shows by itself how far the work has come.
     let speaks = report.streams && report.on_terminal;
     let progress = Progress::new(listed.len(), !(arguments.no_progress || speaks));
     let cancel = Cancel::default();
-    let checker = |paper: &Paper| indexwise_checker::paper::check(paper, settings, &cancel);
-    let run = Run { checker: &checker, mend: arguments.fix, progress: &progress };
+    let checker = |paper: &Paper, scope: &Scope| {
+        let settings = Settings { levels: scope.levels(), ..settings.clone() };
+        indexwise_checker::paper::check(paper, &settings, &cancel)
+    };
+    let run = Run { checker: &checker, mend: arguments.fix, scopes, progress: &progress };
     let mut taker = |file: FileReport| report.take(file);
+    if !batch::configurations(scopes, settings).into_iter().all(&mut taker) {
+        return Ok(Outcome::default());
+    }
     let outcome = batch::pool(arguments.jobs)?.install(|| batch::check(listed, &Disk, &run, &mut taker));
     progress.finish();
     Ok(outcome)
@@ -82,6 +96,7 @@ fn settings(arguments: &CheckArguments) -> Result<Settings, Failure> {
         without: arguments.without.clone(),
         // Off by default, it is on for those who ask for it by name.
         unread: arguments.only.iter().any(|name| name == "unread"),
+        levels: Vec::new(),
     })
 }
 
@@ -93,16 +108,24 @@ pub fn unknown_rule(name: &str) -> String {
     }
 }
 
-/// A report must not be written over a document.
-fn refuse_own_output(output: Option<&Path>, listed: &[Listed]) -> Result<(), Failure> {
+/// A report must not be written over a document, nor over what says how it is checked.
+fn refuse_own_output(output: Option<&Path>, listed: &[Listed], scopes: &Scopes) -> Result<(), Failure> {
     let Some(path) = output else { return Ok(()) };
-    let is_document = path.canonicalize().is_ok_and(|real| listed.iter().any(|file| file.path == real));
-    if is_document { Err(Failure::new(path.display(), "is checked, so the report cannot go there")) } else { Ok(()) }
+    let Ok(real) = path.canonicalize() else { return Ok(()) };
+    if listed.iter().any(|file| file.path == real) {
+        return Err(Failure::new(path.display(), "is checked, so the report cannot go there"));
+    }
+    if scopes.files().any(|file| file.canonicalize().is_ok_and(|file| file == real)) {
+        return Err(Failure::new(path.display(), "is part of the configuration, so the report cannot go there"));
+    }
+    Ok(())
 }
 
 /// Writes what was mended. A file that cannot be written, or that was changed meanwhile, is left.
 fn write_mended(outcome: &mut Outcome, files: &mut [FileReport]) {
-    for (mended, file) in outcome.mended.iter_mut().zip(files) {
+    // Nothing is mended in configuration files.
+    let documents = files.iter_mut().filter(|file| file.host.is_some());
+    for (mended, file) in outcome.mended.iter_mut().zip(documents) {
         if mended.after == mended.before {
             // It may still read otherwise, because another file of its paper was mended.
             *file = mended.report.clone();

@@ -14,6 +14,7 @@ use indexwise_grammar::hosts::{Host, Reference, ReferenceKind};
 
 use super::roots::MOST_PARTS;
 use super::{Named, PaperKey, Place, Texts, folder_of, locate, named_root, outline, plain_name, project_of};
+use crate::configuration::Scope;
 use crate::files::Text;
 
 /// When the texts of a paper are larger than this together, in bytes, no more are read: dense mathematics takes a
@@ -56,9 +57,11 @@ impl Loaded {
     }
 }
 
-/// Loads a paper. The error is the cause for which the root cannot be read.
-pub fn load(texts: &dyn Texts, key: &PaperKey) -> Result<Loaded, String> {
+/// Loads a paper under what is said of it from outside. The error is the cause for which the root cannot be read.
+pub fn load(texts: &dyn Texts, key: &PaperKey, scope: &Scope) -> Result<Loaded, String> {
     let mut reader = Reader::new(texts, key);
+    reader.loaded.paper.shared.clone_from(&scope.shared);
+    scope.macros().iter().for_each(|path| reader.macro_file(path));
     reader.open(key.root.clone(), texts.read(&key.root)?, key.host);
     reader.tell_of_root();
     reader.follow();
@@ -194,6 +197,10 @@ impl<'a> Reader<'a> {
         let folder = self.folder_of_document(document);
         let mut open = Vec::new();
         self.open_style(&folder, reference, &mut open);
+        self.follow_styles(open);
+    }
+
+    fn follow_styles(&mut self, mut open: Vec<OpenStyle>) {
         while let Some(style) = open.last_mut() {
             let folder = folder_of(&style.path).to_owned();
             if let Some(reference) = style.references.next() {
@@ -203,6 +210,13 @@ impl<'a> Reader<'a> {
                 self.loaded.paper.styles.push(Source { path, text: style.text, host: Host::Latex });
             }
         }
+    }
+
+    /// A file with macros that the configuration names; the paper's own styles come later and may say otherwise.
+    fn macro_file(&mut self, path: &Path) {
+        let mut open = Vec::new();
+        self.read_style(path.to_owned(), &mut open);
+        self.follow_styles(open);
     }
 
     /// Opens what a document or a style asks for, if it stands in the project.
@@ -215,6 +229,10 @@ impl<'a> Reader<'a> {
         let Some(name) = plain_name(reference) else { return };
         let folders = [self.root_folder, folder];
         let Place::File(path) = locate(self.texts, name, suffix, &folders, Some(self.project)) else { return };
+        self.read_style(path, open);
+    }
+
+    fn read_style(&mut self, path: PathBuf, open: &mut Vec<OpenStyle>) {
         if self.is_full() || self.loaded.known.contains_key(&path) || !self.known_styles.insert(path.clone()) {
             return;
         }

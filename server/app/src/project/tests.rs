@@ -8,6 +8,7 @@ use std::path::{Path, PathBuf};
 use indexwise_grammar::hosts::Host;
 
 use super::{Disk, Loaded, Overlay, Roots, load};
+use crate::configuration::Scope;
 use crate::files::Text;
 
 const HEAD: &str = "\\documentclass{article}\n";
@@ -26,7 +27,7 @@ fn project(files: &[(&str, &str)]) -> tempfile::TempDir {
 
 fn loaded(folder: &Path, name: &str) -> Loaded {
     let path = folder.canonicalize().unwrap().join(name);
-    load(&Disk, &Roots::new(&Disk).paper_of(&path, Host::Latex, true)).unwrap()
+    load(&Disk, &Roots::new(&Disk).paper_of(&path, Host::Latex, true), &Scope::default()).unwrap()
 }
 
 /// The documents of a file's paper, in order, then its styles.
@@ -260,5 +261,5 @@ fn a_text_laid_over_the_disk_is_read_instead() {
     let mut overlay = Overlay::new(&Disk);
     overlay.lay(root.clone(), Text { text: "\\documentclass{article}\\input{a}".into(), marked: false });
     let key = Roots::new(&overlay).paper_of(&root, Host::Latex, true);
-    assert_eq!(load(&overlay, &key).unwrap().paper.documents.len(), 2);
+    assert_eq!(load(&overlay, &key, &Scope::default()).unwrap().paper.documents.len(), 2);
 }

@@ -184,7 +184,7 @@ fn write_closing(files: &[FileReport], elapsed: Duration, out: &mut dyn Write) -
     writeln!(
         out,
         "{}: {}, {} with indices, {} unread; {}, {}, {}; {:.1} s",
-        counted(files.len(), "file"),
+        counted(totals.files, "file"),
         counted(totals.formulas, "formula"),
         totals.indexed,
         totals.unread,

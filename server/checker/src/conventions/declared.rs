@@ -9,6 +9,9 @@ use compact_str::CompactString;
 use indexwise_grammar::hosts::Directive;
 use indexwise_grammar::span::Span;
 
+use crate::finding::Finding;
+use crate::paper::SharedConventions;
+use crate::rules;
 use crate::sketch::Unit;
 
 use super::built_in::bare_letter;
@@ -75,6 +78,13 @@ pub fn read_sentence(text: &str) -> Option<Sentence> {
     parser().parse(text.trim().trim_end_matches('.')).into_output()
 }
 
+/// What is wrong with conventions that several papers share, in the order of the sentences. It is said here once,
+/// so that it need not be said in every paper.
+pub fn problems(shared: &SharedConventions) -> Vec<Finding> {
+    let unreadable = shared.sentences.iter().filter(|(text, _)| read_sentence(text).is_none());
+    unreadable.map(|(text, span)| rules::convention_unreadable(*span, text)).collect()
+}
+
 /// The form that a sentence that cannot be read is nearest to: the one that shares most words, the first in a tie;
 /// nothing if none shares a word.
 pub fn nearest_form(text: &str) -> Option<&'static str> {
@@ -136,6 +146,17 @@ mod tests {
             read_sentence("\\theta, r are coordinates"),
             Some(Sentence::NotIndex(vec!["\\theta".into(), "r".into()]))
         );
+    }
+
+    #[test]
+    fn shared_sentences_that_fit_no_form_are_reported_where_they_stand() {
+        let text = "B is a label; B is a lable";
+        let sentence = |from: usize, to: usize| (text[from..to].to_owned(), Span::new(from, to));
+        let sentences = vec![sentence(0, 12), sentence(14, 26)];
+        let shared = SharedConventions { path: "indexwise.toml".to_owned(), text: text.into(), sentences };
+        let found = problems(&shared);
+        let told: Vec<_> = found.iter().map(|finding| (finding.rule, finding.span.of(text))).collect();
+        assert_eq!(told, [("convention-unreadable", "B is a lable")]);
     }
 
     #[test]

@@ -13,13 +13,13 @@ const LONGEST_SEARCHED: usize = 4000;
 
 /// The one label on the lines of the statement, or at its opening before or its closing after.
 pub(super) fn of<'a>(file: &'a FileReport, places: &Places<'a>, statement: Span) -> Option<&'a str> {
-    let text = &*file.text.text;
+    let (host, text) = (file.host?, &*file.text.text);
     let (first, last) = (places.lines_of(statement).next()?, places.lines_of(statement).next_back()?);
     let lines = first.join(last).of(text);
     if lines.len() > LONGEST_SEARCHED {
         return None;
     }
-    if file.host == Host::Note {
+    if host == Host::Note {
         return in_note(lines);
     }
     if let Some((_, after)) = lines.split_once(LABEL) {
@@ -54,7 +54,7 @@ mod tests {
     #[track_caller]
     fn label(text: &str, host: Host) -> Option<String> {
         let mut file = samples::file("a", text, false);
-        file.host = host;
+        file.host = Some(host);
         let places = Places::new(&file.text);
         of(&file, &places, samples::span(text, "A_i = B_i")).map(str::to_owned)
     }
