@@ -5,10 +5,23 @@
 //! them is an `Unreadable` that knows the place where reading stopped and the nearest form. Tensors in sentences
 //! (`\tilde g_{ij}`, `Gamma^i_jk`) are read by the reader of formulas, so that they look as they do in the text.
 
+mod definition;
+mod forms;
+mod grammar;
+mod reading;
+mod sentence;
+mod words;
+
+#[cfg(test)]
+mod tests;
+
 use compact_str::CompactString;
 
 use crate::span::Span;
-use crate::tree::{Factor, Level, Statement};
+use crate::tree::{Atom, Factor, ItemKind, Level, Statement};
+
+pub use forms::{FORMS, Form};
+pub use reading::{Unreadable, read_sentence, read_sentences};
 
 /// A sentence, read.
 #[derive(Clone, Debug, PartialEq)]
@@ -142,6 +155,31 @@ pub struct Tensor {
     pub factor: Factor,
     /// Where it stands.
     pub span: Span,
+}
+
+impl Tensor {
+    /// Its kernel as the reader of formulas spells it: `\tilde g`, `\Gamma`.
+    pub fn name(&self) -> &str {
+        match &self.factor.atom {
+            Atom::Kernel(kernel) => &kernel.name,
+            _ => "",
+        }
+    }
+
+    /// The letters of its scripts in the order written; numbers, labels and marks are no slots.
+    pub fn slots(&self) -> Vec<Slot> {
+        let items = self.factor.scripts.iter().flat_map(|script| script.items.iter().map(|item| (script.level, item)));
+        let slot = |(level, item): (Level, &crate::tree::Item)| match &item.kind {
+            ItemKind::Letter(letter) => Some(Slot { letter: letter.clone(), level, span: item.span }),
+            _ => None,
+        };
+        items.filter_map(slot).collect()
+    }
+
+    /// Whether it carries no slots; a label (`h_{\rm TT}`) is none.
+    pub fn is_bare(&self) -> bool {
+        self.slots().is_empty()
+    }
 }
 
 /// A slot of a tensor in a sentence.

@@ -24,6 +24,7 @@ use crate::tokens::Token;
 use crate::tree::{Formula, Statement, Unread};
 
 use lexeme::{Kind, Lexeme, Prepared};
+pub(crate) use script::numbered;
 
 type Input<'a> = &'a [Lexeme];
 type Extra = extra::Default;

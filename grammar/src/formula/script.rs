@@ -189,7 +189,7 @@ fn is_styled(name: &str) -> bool {
 }
 
 /// The name of a letter whose scripts only number or prime it.
-fn numbered(name: &CompactString, scripts: &[Script]) -> Option<CompactString> {
+pub(crate) fn numbered(name: &CompactString, scripts: &[Script]) -> Option<CompactString> {
     let mut out = name.clone();
     for script in scripts {
         let [item] = script.items.as_slice() else { return None };

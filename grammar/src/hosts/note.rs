@@ -3,8 +3,10 @@
 //! One pass over the lines. A formula is a run of indented lines in which every line after the first begins with a
 //! relation or a sign; any other indented line starts the next formula. Labels and reasons stay in the body.
 //!
-//! Under the word `conventions` at the margin the indented lines are sentences, blank lines or not, up to the next
-//! line at the margin. A margin line that starts with `indexwise:` says its sentences itself.
+//! Under the word `conventions` at the margin the indented lines are sentences, up to the next line at the margin;
+//! a line that begins with a relation or a sign goes on with the sentence above. Blank lines may stand between them,
+//! but after one a line that cannot be a sentence (it has a label, or an `=`) is a formula and ends the block. A line
+//! that starts with `indexwise:`, at the margin or not, says its sentences itself.
 
 use super::directives::{MARK, push_sentences};
 use super::{Directive, Region, Scan, Setting};
@@ -63,8 +65,8 @@ enum Block {
     None,
     /// A formula, which ends at the last line added.
     Formula(Span),
-    /// Sentences under `conventions`.
-    Conventions(Directive),
+    /// Sentences under `conventions`, and whether a blank line came last.
+    Conventions(Directive, bool),
 }
 
 /// Finds formulas and conventions.
@@ -93,21 +95,27 @@ pub(super) fn scan(text: &str) -> Scan {
 
 /// A blank line ends a formula, but not the conventions.
 fn blank(scan: &mut Scan, block: Block) -> Block {
-    if matches!(block, Block::Conventions(_)) {
-        return block;
+    if let Block::Conventions(directive, _) = block {
+        return Block::Conventions(directive, true);
     }
     close(scan, block);
     Block::None
 }
 
 fn indented(scan: &mut Scan, text: &str, block: Block, span: Span) -> Block {
+    let said = span.of(text);
     match block {
-        Block::Conventions(mut directive) => {
-            push_sentences(text, span, &mut directive.sentences);
+        Block::Conventions(mut directive, after_blank) if !after_blank || is_sentence(said) => {
+            sentences(text, span, after_blank, &mut directive.sentences);
             directive.span = directive.span.join(span);
-            Block::Conventions(directive)
+            Block::Conventions(directive, false)
         }
-        Block::Formula(above) if continues(span.of(text)) => Block::Formula(above.join(span)),
+        block if said.starts_with(MARK) => {
+            close(scan, block);
+            scan.directives.push(marked(text, span));
+            Block::None
+        }
+        Block::Formula(above) if continues(said) => Block::Formula(above.join(span)),
         block => {
             close(scan, block);
             Block::Formula(span)
@@ -119,14 +127,42 @@ fn margin(scan: &mut Scan, text: &str, block: Block, span: Span) -> Block {
     close(scan, block);
     let said = span.of(text);
     if said.trim_end_matches(':').eq_ignore_ascii_case("conventions") {
-        return Block::Conventions(Directive { span, sentences: Vec::new() });
+        return Block::Conventions(Directive { span, sentences: Vec::new() }, false);
     }
     if said.starts_with(MARK) {
-        let mut sentences = Vec::new();
-        push_sentences(text, Span::new(span.start as usize + MARK.len(), span.end as usize), &mut sentences);
-        scan.directives.push(Directive { span, sentences });
+        scan.directives.push(marked(text, span));
     }
     Block::None
+}
+
+/// Whether a line under `conventions` may be a sentence: those have no label before them, no mark, and no `=` but in
+/// `:=`.
+fn is_sentence(line: &str) -> bool {
+    let equal = line.match_indices('=').any(|(at, _)| !line.get(..at).is_some_and(|before| before.ends_with(':')));
+    !(equal || line.starts_with('(') || line.starts_with(MARK))
+}
+
+/// Adds the sentences of a line; one that begins with a relation or a sign goes on with the sentence above it.
+fn sentences(text: &str, span: Span, after_blank: bool, out: &mut Vec<(String, Span)>) {
+    let above = out.pop_if(|_| !after_blank && continues(span.of(text)));
+    let first = out.len();
+    push_sentences(text, span, out);
+    match (above, out.get_mut(first)) {
+        (Some((mut said, above)), Some(below)) => {
+            // What lies between is put behind: to copy the whole for each line would take quadratic time.
+            said.push_str(text.get(above.end as usize..below.1.end as usize).unwrap_or_default());
+            *below = (said, above.join(below.1));
+        }
+        (Some(above), None) => out.push(above),
+        (None, _) => {}
+    }
+}
+
+/// A line that starts with the mark.
+fn marked(text: &str, span: Span) -> Directive {
+    let mut sentences = Vec::new();
+    push_sentences(text, Span::new(span.start as usize + MARK.len(), span.end as usize), &mut sentences);
+    Directive { span, sentences }
 }
 
 fn close(scan: &mut Scan, block: Block) {
@@ -136,7 +172,7 @@ fn close(scan: &mut Scan, block: Block) {
             let region = Region { span, body: span, setting: Setting::Display, heading: None, holes: Vec::new() };
             scan.regions.push(region);
         }
-        Block::Conventions(directive) => scan.directives.push(directive),
+        Block::Conventions(directive, _) => scan.directives.push(directive),
     }
 }
 
@@ -175,6 +211,41 @@ mod tests {
         assert_eq!(sentences(text), [["i j run from 1 to 3", "g_ij is the metric", "h is small"]]);
         assert_eq!(formulas(text), ["a_i = b_i"]);
         assert_eq!(scan(text).directives[0].span.start, 0);
+    }
+
+    #[test]
+    fn a_sentence_goes_on_in_a_line_that_begins_with_a_sign() {
+        let text = "conventions\n  R_ij := ∂_k G^k_ij\n     - G^k_il G^l_jk; h is small\n  k is small\n\n  - 1\n";
+        let definition = "R_ij := ∂_k G^k_ij\n     - G^k_il G^l_jk";
+        assert_eq!(sentences(text), [[definition, "h is small", "k is small", "- 1"]]);
+        let said = &scan(text).directives[0].sentences[0];
+        assert_eq!(said.0, said.1.of(text));
+    }
+
+    #[test]
+    fn a_formula_after_a_blank_line_ends_the_conventions() {
+        let text = "conventions\n  i j run from 1 to 3\n\n  a_i = b_i\n  c_i = d_i\n";
+        assert_eq!(
+            (sentences(text), formulas(text)),
+            (vec![vec!["i j run from 1 to 3"]], vec!["a_i = b_i", "c_i = d_i"])
+        );
+        let labelled = "conventions\n  h is small\n\n  (trace) R_ij := S_ij\n";
+        assert_eq!((sentences(labelled), formulas(labelled)), (vec![vec!["h is small"]], vec!["(trace) R_ij := S_ij"]));
+        // Without a blank line it is a sentence that cannot be read, and is reported as one.
+        assert!(formulas("conventions\n  a_i = b_i\n").is_empty());
+        assert_eq!(sentences("conventions\n  h is small\n\n  R_ij := S_ij"), [["h is small", "R_ij := S_ij"]]);
+    }
+
+    #[test]
+    fn a_directive_may_stand_indented_before_its_formula() {
+        let text = "Shell\n  indexwise: skip this\n  a_i = b_j\n  c = d\n  indexwise: h is small\n  + e";
+        assert_eq!(sentences(text), [["skip this"], ["h is small"]]);
+        assert_eq!(formulas(text), ["a_i = b_j", "c = d", "+ e"]);
+        let under = "conventions\n  h is small\n\n  indexwise: skip this\n  a_i = b_j\n";
+        assert_eq!(
+            (sentences(under), formulas(under)),
+            (vec![vec!["h is small"], vec!["skip this"]], vec!["a_i = b_j"])
+        );
     }
 
     #[test]
