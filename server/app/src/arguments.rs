@@ -62,7 +62,7 @@ pub struct CheckArguments {
     /// Not these rules, separated by commas, whatever an indexwise.toml says of them
     #[arg(long, value_name = "RULE", value_delimiter = ',')]
     pub without: Vec<String>,
-    /// Take the conventions of this file (.toml: its table [conventions]; else a plain list of sentences) instead of
+    /// Take the conventions of this file (a .toml: its table "conventions"; else a plain list) instead of
     /// those that the files indexwise.toml declare
     #[arg(long, value_name = "FILE")]
     pub conventions: Option<PathBuf>,

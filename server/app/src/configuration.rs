@@ -27,6 +27,9 @@ pub use selection::Selection;
 /// The name of the file.
 pub const FILE_NAME: &str = "indexwise.toml";
 
+/// What a folder holds that is a repository.
+pub const REPOSITORY: &str = ".git";
+
 /// No configuration larger than this is read, in bytes.
 const LARGEST: u64 = 1 << 20;
 

@@ -406,3 +406,20 @@ fn the_report_does_not_go_over_the_configuration() {
     }
     assert_eq!(folder.read("indexwise.toml"), toml.as_bytes());
 }
+
+#[test]
+fn a_part_is_checked_under_the_file_that_is_nearest_to_it() {
+    let root = r"\documentclass{article}\begin{document}\input{sub/part}";
+    let root = format!("{root}{SLIP}\\end{{document}}");
+    let folder = folder(&[
+        ("indexwise.toml", ""),
+        ("main.tex", &root),
+        ("sub/part.tex", SLIP),
+        ("sub/indexwise.toml", "[rules]\nfree-index-mismatch = 'hint'"),
+    ]);
+    let part = "sub/part.tex:1:31 hint free-index-mismatch";
+    let root = "main.tex:1:86 error free-index-mismatch";
+    reports(&folder, "check sub", 0, &[part]);
+    reports(&folder, "check", 1, &[root, part]);
+    reports(&folder, "check sub main.tex", 1, &[part, root]);
+}

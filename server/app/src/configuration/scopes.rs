@@ -13,7 +13,7 @@ use std::sync::Arc;
 
 use indexwise_checker::paper::SharedConventions;
 
-use super::{Configuration, FILE_NAME, Levels, read, read_sentences};
+use super::{Configuration, FILE_NAME, Levels, REPOSITORY, read, read_sentences};
 use crate::files::Failure;
 
 /// What holds for a document.
@@ -122,7 +122,7 @@ impl Scopes {
         for folder in from.ancestors() {
             let marks = *self.marks.entry(folder.to_owned()).or_insert_with(|| Marks {
                 configuration: folder.join(FILE_NAME).exists(),
-                repository: folder.join(".git").exists(),
+                repository: folder.join(REPOSITORY).exists(),
             });
             if marks.configuration {
                 found.push(folder.to_owned());
@@ -162,4 +162,88 @@ fn shown(path: &Path) -> String {
     let above = path.parent().and_then(|folder| current.strip_prefix(folder).ok());
     let steps = above.map(|above| above.components().map(|_| "..").collect::<PathBuf>().join(FILE_NAME));
     steps.unwrap_or_else(|| path.to_owned()).display().to_string()
+}
+
+#[cfg(test)]
+mod tests {
+    #![allow(clippy::unwrap_used)]
+    use super::*;
+    use indexwise_checker::finding::Severity;
+    use std::fs;
+
+    const OUTER: &str =
+        "[conventions]\nlines = ['B is a label']\n[rules]\nunread = 'hint'\n[files]\nexclude = ['a.md']";
+    const INNER: &str = "[conventions]\nlines = ['C is a label']\n[rules]\nindex-thrice = 'off'";
+
+    /// A repository with a file in it, one in the folder `sub`, one without conventions in `sub/deep`.
+    fn repository() -> (tempfile::TempDir, PathBuf) {
+        let folder = tempfile::tempdir().unwrap();
+        let root = folder.path().canonicalize().unwrap();
+        fs::create_dir_all(root.join("sub/deep")).unwrap();
+        fs::create_dir(root.join(REPOSITORY)).unwrap();
+        for (name, text) in [("", OUTER), ("sub", INNER), ("sub/deep", "")] {
+            fs::write(root.join(name).join(FILE_NAME), text).unwrap();
+        }
+        (folder, root)
+    }
+
+    fn sentences(scope: &Scope) -> Vec<&str> {
+        scope.shared.iter().flat_map(|shared| &shared.sentences).map(|(sentence, _)| sentence.as_str()).collect()
+    }
+
+    #[test]
+    fn conventions_are_nested_and_all_else_is_the_nearest_file_s() {
+        let (_folder, root) = repository();
+        let mut scopes = Scopes::default();
+        let (outer, inner) = (scopes.enter(&root.join("a.md")), scopes.enter(&root.join("sub/a.md")));
+        assert_eq!(sentences(&outer), ["B is a label"]);
+        assert_eq!(sentences(&inner), ["B is a label", "C is a label"]);
+        assert_eq!(outer.levels(), [("unread".to_owned(), Some(Severity::Hint))]);
+        assert_eq!(inner.levels(), [("index-thrice".to_owned(), None)]);
+        assert!(!scopes.admits(&root.join("a.md")) && scopes.admits(&root.join("sub/a.md")));
+        let deep = scopes.enter(&root.join("sub/deep/a.md"));
+        assert_eq!((sentences(&deep), deep.levels()), (sentences(&inner), Levels::new()));
+        let shared = inner.shared.iter().map(|shared| &shared.path);
+        assert_eq!(
+            shared.collect::<Vec<_>>(),
+            scopes.with_conventions()[..2].iter().map(|file| &file.conventions.path).collect::<Vec<_>>()
+        );
+        assert_eq!(sentences(&scopes.of(&root.join("sub/b.md"))), sentences(&inner));
+        assert_eq!(scopes.failures(), []);
+    }
+
+    #[test]
+    fn a_named_file_stands_in_the_place_of_all_conventions_and_of_nothing_else() {
+        let (_folder, root) = repository();
+        let list = root.join("bench.txt");
+        fs::write(&list, "D is a label\n").unwrap();
+        let mut scopes = Scopes::new(Some(&list));
+        let inner = scopes.enter(&root.join("sub/a.md"));
+        assert_eq!(sentences(&inner), ["D is a label"]);
+        assert_eq!(inner.levels(), [("index-thrice".to_owned(), None)]);
+        assert_eq!(scopes.with_conventions().len(), 1);
+        assert_eq!(scopes.files().count(), 3);
+    }
+
+    #[test]
+    fn a_bad_file_is_told_once() {
+        let (_folder, root) = repository();
+        fs::write(root.join(FILE_NAME), "x").unwrap();
+        let mut scopes = Scopes::default();
+        for name in ["a.md", "sub/a.md", "sub/b.md"] {
+            scopes.enter(&root.join(name));
+        }
+        assert_eq!(scopes.failures().len(), 1);
+    }
+
+    #[test]
+    fn paths_are_shown_from_the_current_folder() {
+        let current = Path::new(".").canonicalize().unwrap();
+        assert_eq!(shown(&current.join(FILE_NAME)), FILE_NAME);
+        assert_eq!(shown(&current.join("sub").join(FILE_NAME)), Path::new("sub").join(FILE_NAME).display().to_string());
+        let above = current.parent().unwrap().join(FILE_NAME);
+        assert_eq!(shown(&above), Path::new("..").join(FILE_NAME).display().to_string());
+        let aside = current.parent().unwrap().join("aside").join(FILE_NAME);
+        assert_eq!(shown(&aside), aside.display().to_string());
+    }
 }

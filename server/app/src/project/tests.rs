@@ -8,7 +8,7 @@ use std::path::{Path, PathBuf};
 use indexwise_grammar::hosts::Host;
 
 use super::{Disk, Loaded, Overlay, Roots, load};
-use crate::configuration::Scope;
+use crate::configuration::{Scope, Scopes};
 use crate::files::Text;
 
 const HEAD: &str = "\\documentclass{article}\n";
@@ -262,4 +262,28 @@ fn a_text_laid_over_the_disk_is_read_instead() {
     overlay.lay(root.clone(), Text { text: "\\documentclass{article}\\input{a}".into(), marked: false });
     let key = Roots::new(&overlay).paper_of(&root, Host::Latex, true);
     assert_eq!(load(&overlay, &key, &Scope::default()).unwrap().paper.documents.len(), 2);
+}
+
+#[test]
+fn a_scope_brings_conventions_and_macros_before_the_paper_s_own_styles() {
+    let folder = project(&[
+        ("indexwise.toml", "[conventions]\nlines = ['B is a label']\n[files]\nmacros = ['style/extra.sty', 'own.sty']"),
+        ("style/extra.sty", "\\RequirePackage{more}"),
+        ("style/more.sty", ""),
+        ("own.sty", ""),
+        ("other.sty", ""),
+        ("main.tex", "\\documentclass{article}\\usepackage{other}\\usepackage{own}"),
+        ("notes.md", ""),
+    ]);
+    let root = folder.path().canonicalize().unwrap();
+    let mut scopes = Scopes::default();
+    for (name, host, own) in [("main.tex", Host::Latex, &["other.sty"][..]), ("notes.md", Host::Markdown, &[])] {
+        let path = root.join(name);
+        let scope = scopes.enter(&path);
+        let paper = load(&Disk, &Roots::new(&Disk).paper_of(&path, host, true), &scope).unwrap().paper;
+        let styles: Vec<&str> = paper.styles.iter().map(|style| style.path.as_str()).collect();
+        assert_eq!(styles, [&["style/more.sty", "style/extra.sty", "own.sty"], own].concat());
+        assert_eq!(paper.shared, scope.shared);
+        assert_eq!(paper.shared[0].sentences[0].0, "B is a label");
+    }
 }

@@ -6,13 +6,14 @@ use std::path::{Path, PathBuf};
 
 use indexwise_grammar::hosts::Host;
 
+use crate::configuration::{FILE_NAME, REPOSITORY};
 use crate::files::{self, Text, host_of};
 
 /// No more files of a folder are looked into when the file that includes another is searched for.
 const LARGEST_FOLDER: usize = 400;
 
 /// What marks a folder as a project.
-const MARKS: [&str; 2] = [".git", "indexwise.toml"];
+const MARKS: [&str; 2] = [REPOSITORY, FILE_NAME];
 
 /// A source of texts. Paths that come out are real ones: absolute, without links.
 pub trait Texts: Sync {
