@@ -46,7 +46,16 @@ const MODULES: &[(&str, Road)] = &[
             ("write", &["span", "tree", "vocabulary"]),
         ],
     ),
-    ("server/algebra", &[("draws", &[]), ("field", &["draws"]), ("rational", &["draws", "field"])]),
+    (
+        "server/algebra",
+        &[
+            ("draws", &[]),
+            ("field", &["draws"]),
+            ("rational", &["draws", "field"]),
+            ("symmetry", &["draws"]),
+            ("normal_form", &["draws", "rational", "symmetry"]),
+        ],
+    ),
 ];
 
 /// What only the application does. A path breaks the law if these segments stand in it side by side.
