@@ -187,7 +187,8 @@ fn letters<'a>() -> impl Parser<'a, Input<'a>, Vec<Name>, Extra<'a>> + Clone {
 }
 
 fn kernel<'a>() -> impl Parser<'a, Input<'a>, Name, Extra<'a>> + Clone {
-    read(|word: Said<'a>| word.kernel_name().filter(|_| !word.says("and")), "KERNEL")
+    // In a note any word could be a kernel: `of the metric g`.
+    read(|word: Said<'a>| word.kernel_name().filter(|_| !word.is_of_the_language() && !word.says("and")), "KERNEL")
 }
 
 /// `of g`, which may be left out.

@@ -205,6 +205,7 @@ fn labels_and_coordinates_are_letters_or_words() {
     reads("μ, nu are labels", r"labels \mu \nu");
     reads("in out TT are labels", "labels in out TT");
     reads("+ is a label", "labels +");
+    reads_in(Host::Latex, r"\text{eff} is a label", &Macros::default(), "labels eff");
     reads_in(Host::Latex, r"\mathrm{TT} is a label", &Macros::default(), "labels TT");
     reads("x_1 x_2 are the coordinates", "coordinate names x_1 x_2");
 }
@@ -391,6 +392,14 @@ fn names_must_fit_what_is_said_of_them() {
         "`T_{ij is symmetric` has a brace without its partner",
         Some("TENSOR is symmetric"),
     );
+}
+
+#[test]
+fn in_a_note_a_word_of_the_language_is_no_kernel() {
+    let text = "Gamma^i_jk is the Christoffel symbol of the metric g";
+    let error = read_sentence(text, 0, Host::Note, &Macros::default()).unwrap_err();
+    assert_eq!((error.at.of(text), error.reason.as_str()), ("the", "expected a kernel after `of`"));
+    reads_in_notes("gt raises At and Bt", "gt raises At Bt");
 }
 
 #[test]

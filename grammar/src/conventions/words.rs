@@ -68,7 +68,7 @@ impl Word<'_> {
 
     /// A letter or any other word without scripts, as it may stand in a script by its own.
     pub(super) fn label(&self) -> Option<Name> {
-        let plain = !self.text.contains(['_', '^', '{', '(', '[', '"']);
+        let plain = !self.text.contains(['_', '^', '(', '[']) && self.kernel != Err(UNCLOSED);
         let word = || plain.then(|| self.name(crate::latex_letter(self.text).into()));
         let kernel = || match &self.kernel.as_ref().ok()?.atom {
             Atom::Kernel(kernel) if kernel.word => numbered(&kernel.name, &self.kernel.as_ref().ok()?.scripts),
