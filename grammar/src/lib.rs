@@ -66,6 +66,11 @@ fn draft(region: &Region, text: &str, host: Host, macros: &Macros) -> (Span, boo
     (region.span, region.setting != Setting::Inline, draft)
 }
 
+/// Reads one region of a scanned document; `macros` are all those of the document. Places are those of the text.
+pub fn read_region(region: &Region, text: &str, host: Host, macros: &Macros) -> Formula {
+    formula::parse_all(&[draft(region, text, host, macros)]).pop().unwrap_or_default()
+}
+
 /// Reads the body of one formula by itself; places count from its start.
 pub fn read_formula(body: &str, macros: &Macros) -> Formula {
     let draft = formula::prepare(body, 0, macros);

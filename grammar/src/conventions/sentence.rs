@@ -208,6 +208,7 @@ fn parameter_derivative(word: &Word<'_>) -> Result<Tensor, Trouble> {
         }
     };
     let kernel = Kernel { name: name.clone(), letter: name, bold: false, word: true };
-    let factor = Factor { span: word.span, atom: Atom::Kernel(kernel), scripts: Vec::new(), joint: Joint::Beside };
+    let (scripts, marks) = (Vec::new(), CompactString::default());
+    let factor = Factor { span: word.span, atom: Atom::Kernel(kernel), scripts, joint: Joint::Beside, marks };
     Ok(Tensor { factor, span: word.span })
 }

@@ -1,7 +1,8 @@
-//! What every symbol means, and on what evidence.
-//!
-//! `declared` reads what the author says, `built_in` holds the trade's habits, `inferred` what the document shows.
+//! What every symbol means, and on what evidence: declared by the author, built in by the trade, inferred from use.
 
 pub mod built_in;
+pub mod clashes;
 pub mod declared;
+pub mod implied;
 pub mod inferred;
+pub mod meanings;

@@ -14,3 +14,5 @@ pub mod paper;
 pub mod reading;
 pub mod rules;
 pub mod sketch;
+pub mod symbols;
+pub mod terms;

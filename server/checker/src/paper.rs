@@ -7,20 +7,25 @@ use std::borrow::Cow;
 use std::sync::Arc;
 use std::sync::atomic::{AtomicBool, Ordering};
 
+use compact_str::CompactString;
+use indexwise_grammar::conventions::Sentence;
 use indexwise_grammar::hosts::{self, Host};
 use indexwise_grammar::macros::Macros;
 use indexwise_grammar::span::Span;
 use indexwise_grammar::tree::Formula;
-use indexwise_grammar::{Document, macros_of, read_each};
+use indexwise_grammar::{Document, macros_of, read_each, read_region};
 use rustc_hash::{FxHashMap, FxHashSet};
 
-use crate::conventions::declared::{Declared, Sentence};
+use crate::conventions::declared::Declared;
 use crate::conventions::inferred::{Evidence, Prices};
+use crate::conventions::meanings::Meanings;
 use crate::finding::{Finding, Severity};
 use crate::ledger::Judged;
 use crate::reading::{self, Reading};
 use crate::rules;
 use crate::sketch::{Sketch, Unit};
+use crate::terms::symmetries::Customs;
+use crate::terms::{self, Eyes, Flattened};
 
 /// One text of a paper.
 #[derive(Clone, Debug)]
@@ -184,7 +189,7 @@ pub fn check(paper: &Paper, settings: &Settings, cancel: &Cancel) -> Analysis {
 }
 
 /// Rules that speak of a document rather than of a formula: `allow` silences them in the whole file.
-const DOCUMENT_RULES: &[&str] = &["missing-part", "unread", "convention-unreadable", "idle-allow"];
+const DOCUMENT_RULES: &[&str] = &["missing-part", "unread", "convention-unreadable", "convention-clash", "idle-allow"];
 
 /// How every statement of the first document is read, in words: its units with their scores and the letters out of
 /// balance. For people who tune the inference.
@@ -295,6 +300,7 @@ fn read_paper(paper: &Paper) -> Vec<Read<'_>> {
             }
         }
     }
+    let project = shared_meanings(&paper.shared);
     let mut out: Vec<Read<'_>> = Vec::new();
     for source in &paper.documents {
         let mut sketches = Vec::new();
@@ -304,10 +310,42 @@ fn read_paper(paper: &Paper) -> Vec<Read<'_>> {
             sketches.extend(all.filter(|sketch| !sketch.places.is_empty()).map(|sketch| (number, sketch)));
         });
         let macros = macros_of(&document.scan, &shared);
-        let declared = Declared::read(&document.scan.directives, out.first().map(|root| &root.declared));
+        let outer = out.first().map_or(&project, |root| &root.declared.meanings);
+        let declared = Declared::read(&document.scan.directives, source.host, &macros, outer);
         out.push(Read { text: &source.text, host: source.host, document, sketches, macros, declared });
     }
     out
+}
+
+/// What the conventions around a paper declare, the nearer ones over the outer ones.
+fn shared_meanings(shared: &[SharedConventions]) -> Meanings {
+    shared.iter().fold(Meanings::default(), |outer, conventions| Declared::shared(conventions, &outer).meanings)
+}
+
+/// The tree of the formula that was read again last: only few statements are looked at by their terms, so that trees
+/// are not kept.
+#[derive(Default)]
+struct Trees {
+    formula: Option<(usize, Formula)>,
+}
+
+impl Trees {
+    /// Hands the tree of a statement of a formula to a function; nothing comes of a statement that is not there.
+    fn statement<T: Default>(
+        &mut self,
+        read: &Read<'_>,
+        number: usize,
+        span: Span,
+        take: impl FnOnce(&indexwise_grammar::tree::Statement) -> T,
+    ) -> T {
+        if self.formula.as_ref().is_none_or(|(known, _)| *known != number) {
+            let region = read.document.scan.regions.get(number);
+            let tree = region.map(|region| read_region(region, read.text, read.host, &read.macros));
+            self.formula = tree.map(|tree| (number, tree));
+        }
+        let statements = self.formula.iter().flat_map(|(_, tree)| &tree.statements);
+        statements.into_iter().find(|statement| statement.span == span).map(take).unwrap_or_default()
+    }
 }
 
 /// Counts the habits of every document.
@@ -347,6 +385,8 @@ fn judge_document(
     let mut indexed = vec![false; formulas.len()];
     let mut findings: Vec<(usize, Finding)> = Vec::new();
     let scores = document.scores(&prices);
+    let customs = Customs::of(document.read.text, prices.is_curved());
+    let mut trees = Trees::default();
     for statement in &document.statements {
         let (number, sketch) = (statement.formula, statement.sketch);
         let Some(formula) = formulas.get(number) else { continue };
@@ -363,9 +403,18 @@ fn judge_document(
             let search = if reading.odd.is_empty() { rules::faults::level_faults } else { rules::faults::faults };
             let mut faults = search(sketch, &reading.choice, &prices);
             faults.retain(|fault| fault.letter().is_none_or(|letter| prices.is_index_notation(letter)));
-            let (text, sketch) = (document.read.text, Cow::Borrowed(sketch));
-            let judged = Judged { text, formula, sketch, reading, prices, faults };
-            findings.extend(rules::check_statement(&judged).into_iter().map(|finding| (number, finding)));
+            let (text, held) = (document.read.text, Cow::Borrowed(sketch));
+            let judged = Judged { text, formula, sketch: held, reading, prices, faults };
+            let found = rules::check_statement(&judged);
+            let balanced = judged.reading.odd.is_empty() && found.iter().all(|finding| finding.ledger.is_none());
+            findings.extend(found.into_iter().map(|finding| (number, finding)));
+            if balanced && terms::asks_for_terms(sketch, &judged) {
+                let found = trees.statement(document.read, number, sketch.span, |statement| {
+                    let eyes = Eyes::new(sketch, &judged.reading.choice, &prices, customs);
+                    rules::check_terms(&Flattened::new(statement, &judged, &eyes))
+                });
+                findings.extend(found.into_iter().map(|finding| (number, finding)));
+            }
         }
     }
     for (number, formula) in formulas.iter().enumerate().filter(|_| settings.reports_unread()) {
@@ -426,26 +475,25 @@ fn directed(
     mut findings: Vec<(usize, Finding)>,
     mut about: Vec<Finding>,
 ) -> Vec<Finding> {
-    let mut allowed: Vec<&String> = Vec::new();
+    let mut allowed: Vec<&CompactString> = Vec::new();
     let skipped = skipped(declared, formulas);
     findings.retain(|(number, _)| !skipped.contains(number));
     for (sentence, span) in &declared.sentences {
         let target = target(*span, formulas);
         match sentence {
-            Sentence::Skip => {}
             // What is not about one formula can be allowed for the file.
-            Sentence::Allow { rule, .. } if DOCUMENT_RULES.contains(&rule.as_str()) => allowed.push(rule),
+            Sentence::Allow { rule, .. } if DOCUMENT_RULES.contains(&rule.text.as_str()) => allowed.push(&rule.text),
             Sentence::Allow { rule, here } => {
                 let before = findings.len();
-                findings.retain(|(number, finding)| finding.rule != rule || (*here && Some(*number) != target));
+                findings.retain(|(number, finding)| finding.rule != rule.text || (*here && Some(*number) != target));
                 if findings.len() == before {
-                    about.push(rules::idle_allow(*span, rule));
+                    about.push(rules::idle_allow(*span, &rule.text));
                 }
             }
-            Sentence::NotIndex(_) => {}
+            _ => {}
         }
     }
-    about.extend(declared.unreadable.iter().map(|(span, text)| rules::convention_unreadable(*span, text)));
+    about.extend(declared.problems());
     about.extend(findings.into_iter().map(|(_, finding)| finding));
     about.retain(|finding| !allowed.iter().any(|rule| *rule == finding.rule));
     about

@@ -4,22 +4,33 @@
 //! the order of the slice, which is their precedence: a later one is asked only about what remains when the
 //! earlier finding is mended, so that one slip is one finding.
 
+mod component_out_of_range;
+mod convention_clash;
 mod convention_unreadable;
+mod derivative_of_non_tensor;
 mod disagreement;
 mod dummy_captured;
 mod dummy_levels;
+mod family_mismatch;
 pub(crate) mod faults;
 mod free_index_levels;
 mod free_index_mismatch;
 mod idle_allow;
 mod index_also_quantity;
 mod index_thrice;
+mod like_terms;
 mod mending;
+mod metric_moved_through_partial;
 mod missing_part;
 mod script_swallows_factor;
+mod silence;
+mod slot_count;
 mod slot_order_unclear;
+mod symmetry_not_shared;
 mod unread;
 mod unsummed_repeat;
+mod vanishing_bracket;
+mod vanishing_contraction;
 
 use std::borrow::Cow;
 
@@ -27,8 +38,10 @@ use crate::balance::Choice;
 use crate::finding::{Finding, Severity};
 use crate::ledger::Judged;
 use crate::sketch::Sketch;
+use crate::terms::Flattened;
 
-pub(crate) use convention_unreadable::convention_unreadable;
+pub(crate) use convention_clash::convention_clash;
+pub(crate) use convention_unreadable::{convention_unreadable, convention_unreadable_name};
 pub(crate) use idle_allow::idle_allow;
 pub(crate) use missing_part::missing_part;
 pub(crate) use unread::unread;
@@ -57,6 +70,8 @@ pub(crate) enum Check {
     Balance(fn(&Judged<'_>) -> Option<Report>),
     /// In a statement, whatever else is found there.
     Beside(fn(&Judged<'_>) -> Vec<Finding>),
+    /// In the terms of a statement that balances.
+    Terms(fn(&Flattened<'_>) -> Vec<Finding>),
     /// By the pipeline, in a whole document.
     Document,
 }
@@ -80,10 +95,20 @@ pub const RULES: &[Rule] = &[
     dummy_captured::RULE,
     dummy_levels::RULE,
     free_index_levels::RULE,
+    family_mismatch::RULE,
+    slot_count::RULE,
+    component_out_of_range::RULE,
     slot_order_unclear::RULE,
     index_also_quantity::RULE,
+    vanishing_contraction::RULE,
+    vanishing_bracket::RULE,
+    symmetry_not_shared::RULE,
+    derivative_of_non_tensor::RULE,
+    metric_moved_through_partial::RULE,
+    like_terms::RULE,
     missing_part::RULE,
     convention_unreadable::RULE,
+    convention_clash::RULE,
     idle_allow::RULE,
 ];
 
@@ -105,6 +130,17 @@ pub(crate) fn check_statement(judged: &Judged<'_>) -> Vec<Finding> {
     for rule in RULES {
         if let Check::Beside(check) = rule.check {
             out.extend(check(judged));
+        }
+    }
+    out
+}
+
+/// What is wrong with the terms of a statement that balances.
+pub(crate) fn check_terms(terms: &Flattened<'_>) -> Vec<Finding> {
+    let mut out = Vec::new();
+    for rule in RULES {
+        if let Check::Terms(check) = rule.check {
+            out.extend(check(terms));
         }
     }
     out

@@ -124,6 +124,17 @@ pub fn is_symbol_kernel(letter: &str) -> bool {
     matches!(letter, "\\delta" | "\\epsilon" | "\\varepsilon")
 }
 
+/// Kernels that are metrics without being declared; a decoration makes another metric of the same kind.
+pub fn is_metric_by_custom(kernel: &str) -> bool {
+    let letter = kernel.rsplit(' ').next().unwrap_or(kernel);
+    matches!(letter, "g" | "\\eta" | "\\delta")
+}
+
+/// Metrics by custom whose components are constant.
+pub fn is_constant_metric(kernel: &str) -> bool {
+    matches!(kernel, "\\eta" | "\\delta")
+}
+
 /// Basis vectors: bold, yet their script is an index.
 pub fn is_basis_kernel(letter: &str) -> bool {
     matches!(

@@ -12,7 +12,8 @@ use crate::balance::{self, Event};
 use crate::reading::Reading;
 use crate::sketch::{Shape, Sketch, Unit};
 
-use super::built_in::{CLASSES, LetterClass, class_of, is_symbol_kernel};
+use super::built_in::{CLASSES, LetterClass, class_of, is_labelled_operator, is_symbol_kernel};
+use super::meanings::Levels;
 
 /// Counts over balanced statements.
 #[derive(Clone, Debug, Default)]
@@ -74,6 +75,9 @@ const CARTESIAN_PERCENT: u32 = 80;
 const CARTESIAN_FILE_PERCENT: u32 = 95;
 const CARTESIAN_DOUBT: i32 = 90;
 const CHEAP_NAME: i32 = 10;
+/// Scores of a letter that is declared an index: beside others or on a declared kernel, and alone on any other kernel.
+const DECLARED_INDEX: i32 = 1000;
+const DECLARED_LONE: i32 = 30;
 const DEAR_NAME: i32 = 25;
 /// Balanced statements that `free-index-levels` asks for, and the share of them, in percent, that must agree.
 const FREE_STATEMENTS: u32 = 20;
@@ -340,6 +344,9 @@ impl Prices<'_> {
         if self.declared.is_not_index(unit) {
             return -1000;
         }
+        if let Some(score) = self.declared_score(unit) {
+            return score;
+        }
         let letter = &unit.letter;
         let listed = !unit.coordinate && unit.class != LetterClass::Greek && self.file.coordinates.contains_key(letter);
         if listed && self.file.index.get(letter).is_none_or(|votes| *votes < 3) {
@@ -389,6 +396,21 @@ impl Prices<'_> {
         unit.bias + by_document - 12 * steps(others(labels)).min(4)
     }
 
+    /// The score of a letter that the author declares an index: high enough that only a lone letter above, which may
+    /// be a power, is read otherwise within the margin.
+    fn declared_score(&self, unit: &Unit) -> Option<i32> {
+        let meanings = &self.declared.meanings;
+        meanings.family_number(&unit.letter)?;
+        let declared = match unit.shape {
+            Shape::Several => DECLARED_INDEX,
+            _ if meanings.declares(&unit.kernel) => DECLARED_INDEX,
+            _ if unit.level == Level::Up && !unit.mirrored => return Some(unit.bias.max(CHEAP_NAME)),
+            _ if is_labelled_operator(&unit.kernel) || unit.shape == Shape::Bracketed => return None,
+            _ => unit.bias.max(0) + DECLARED_LONE,
+        };
+        Some(declared)
+    }
+
     /// The count of the file, doubled, with that of the rest of the paper.
     fn count(&self, of: impl Fn(&Evidence) -> Option<u32>) -> u32 {
         of(self.file).unwrap_or(0) + of(self.paper).unwrap_or(0)
@@ -407,6 +429,11 @@ impl Prices<'_> {
 
     /// What is done about levels in a class of letters.
     pub fn level_habit(&self, letter: &str) -> LevelHabit {
+        match self.declared.meanings.levels(letter) {
+            Some(Levels::InForce) => return LevelHabit::InForce,
+            Some(Levels::Cartesian) => return LevelHabit::Cartesian,
+            None => {}
+        }
         let class = class_of(letter);
         let own = Evidence::class_counts(&self.file.pairs, class);
         let all = Evidence::class_counts(&self.paper.pairs, class);
@@ -434,6 +461,9 @@ impl Prices<'_> {
 
     /// Whether free levels are consistent enough in a class for a difference to be a slip.
     pub fn free_levels_in_force(&self, letter: &str) -> bool {
+        if let Some(levels) = self.declared.meanings.levels(letter) {
+            return levels == Levels::InForce;
+        }
         let class = class_of(letter);
         let own = Evidence::class_counts(&self.file.free_levels, class);
         let all = Evidence::class_counts(&self.paper.free_levels, class);
@@ -471,6 +501,12 @@ impl Prices<'_> {
             let opposite = self.file.kernel_pairs.get(&key).is_some_and(|[opposite, _]| *opposite > 0);
             unit.shape == Shape::Lone && !opposite
         })
+    }
+
+    /// Whether the paper is about curvature: it uses Christoffel symbols or a Riemann tensor.
+    pub fn is_curved(&self) -> bool {
+        let form = |kernel: &str, up, down| self.uses(&(kernel.into(), up, down)) > 0;
+        form("\\Gamma", 1, 2) || form("\\Gamma", 0, 3) || (0..=4).any(|up| form("R", up, 4 - up))
     }
 
     /// In how many balanced statements a kernel carries so many letters and numbers above and below.

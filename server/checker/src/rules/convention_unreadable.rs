@@ -1,9 +1,9 @@
-//! A sentence of a directive or of the conventions fits no form.
+//! A sentence of a directive or of the conventions fits no form, or names what is not there.
 
+use indexwise_grammar::conventions::{FORMS, Unreadable};
 use indexwise_grammar::span::Span;
 
-use crate::conventions::declared::{FORMS, nearest_form};
-use crate::finding::{Finding, Severity};
+use crate::finding::{Finding, Related, Severity};
 
 use super::{Check, Rule};
 
@@ -16,11 +16,18 @@ pub(super) const RULE: Rule = Rule {
     check: Check::Document,
 };
 
-/// The finding for a sentence.
-pub(crate) fn convention_unreadable(span: Span, text: &str) -> Finding {
-    let message = match nearest_form(text) {
-        Some(form) => format!("this sentence has no known form; the nearest is \"{form}\""),
-        None => format!("this sentence has no known form; the forms are \"{}\"", FORMS.join("\", \"")),
+/// The finding for a sentence: it stands at the word where reading stopped.
+pub(crate) fn convention_unreadable(sentence: &Unreadable) -> Finding {
+    let nearest = match sentence.nearest {
+        Some(form) => format!("the nearest form is \"{}\", as in \"{}\"", form.form, form.example),
+        None => format!("\"indexwise explain {}\" lists the {} forms", RULE.name, FORMS.len()),
     };
-    Finding::plain(RULE.name, RULE.severity, span, message)
+    let message = format!("this sentence has no known form: {}; {nearest}", sentence.reason);
+    let related = vec![Related { span: sentence.span, message: "the sentence".to_owned() }];
+    Finding { related, ..Finding::plain(RULE.name, RULE.severity, sentence.at, message) }
+}
+
+/// The finding for a name in a sentence that means nothing there.
+pub(crate) fn convention_unreadable_name(span: Span, message: &str) -> Finding {
+    Finding::plain(RULE.name, RULE.severity, span, message.to_owned())
 }

@@ -1,0 +1,60 @@
+//! A kernel carries another number of indices than declared.
+
+use indexwise_grammar::conventions::Kind;
+
+use crate::finding::{Finding, Severity};
+use crate::ledger::shown;
+use crate::terms::Flattened;
+use crate::terms::uses::Use;
+
+use super::{Check, Rule};
+
+pub(super) const RULE: Rule = Rule {
+    name: "slot-count",
+    severity: Severity::Error,
+    summary: "A kernel carries too many or too few indices for its declaration.",
+    page: include_str!("slot_count.md"),
+    on: true,
+    check: Check::Terms(check),
+};
+
+fn check(terms: &Flattened<'_>) -> Vec<Finding> {
+    terms.uses.iter().filter_map(|made| finding(terms, made)).collect()
+}
+
+fn finding(terms: &Flattened<'_>, made: &Use) -> Option<Finding> {
+    let own = made.own_slots().count();
+    let meanings = terms.eyes.meanings;
+    // Without indices a kernel is a name, a matrix or a trace.
+    if own == 0 || made.unread || !meanings.declares(&made.kernel) {
+        return None;
+    }
+    // A comma may separate slots as well as differentiate.
+    let counts = meanings.slot_counts(&made.kernel);
+    let fits = |count: &usize| *count == own || *count == made.slots.len();
+    let open = [Kind::Matrix, Kind::NonCommuting, Kind::Variation, Kind::EpsilonTensor, Kind::EpsilonSymbol];
+    let open = open.into_iter().any(|kind| meanings.is_kind(&made.kernel, kind));
+    if counts.iter().any(fits) || open || is_curvature(terms, made, own) {
+        return None;
+    }
+    // What is declared by its name alone has no number of slots, but a scalar has none.
+    let bare = counts.iter().all(|count| *count == 0);
+    if bare && !meanings.is_kind(&made.kernel, Kind::Scalar) {
+        return None;
+    }
+    let declared: Vec<String> = counts.iter().map(usize::to_string).collect();
+    let indices = if own == 1 { "index" } else { "indices" };
+    let message =
+        format!("{} carries {own} {indices} here, but is declared with {}", shown(&made.kernel), declared.join(" or "));
+    Some(Finding::plain(RULE.name, RULE.severity, made.span, message))
+}
+
+/// `R` is a name for the Riemann tensor, the Ricci tensor and the scalar alike.
+fn is_curvature(terms: &Flattened<'_>, made: &Use, own: usize) -> bool {
+    let counts = terms.eyes.meanings.slot_counts(&made.kernel);
+    let curvature = |count: &usize| {
+        let known = terms.eyes.meanings.known(&made.kernel, *count);
+        known.is_some_and(|known| matches!(known.role, Some(crate::conventions::meanings::Role::Curvature(_))))
+    };
+    counts.iter().any(curvature) && matches!(own, 2 | 4)
+}

@@ -1,0 +1,125 @@
+//! A statement as the rules about symmetry see it: its products, the uses of its kernels, and what can be asked.
+
+use compact_str::CompactString;
+use indexwise_algebra::rational::Rational;
+use indexwise_algebra::symmetry::Sign;
+use indexwise_grammar::tree::{Atom, Claim, Statement, walk};
+
+use crate::conventions::meanings::Family;
+use crate::ledger::{Judged, shown};
+
+use super::symmetries::is_known;
+use super::uses::{Use, use_of};
+use super::{Bracketed, Eyes, Monomials, Piece, Product, Side, Zero, sides};
+
+/// A statement, flattened.
+pub struct Flattened<'a> {
+    /// The statement with its reading.
+    pub judged: &'a Judged<'a>,
+    /// What letters and kernels mean.
+    pub eyes: &'a Eyes<'a>,
+    /// Its sides.
+    pub sides: Vec<Side>,
+    /// Every kernel in it, inside of fractions, roots and arguments too.
+    pub uses: Vec<Use>,
+    statement: &'a Statement,
+    monomials: Monomials<'a, 'a>,
+}
+
+impl<'a> Flattened<'a> {
+    /// Flattens a statement.
+    pub fn new(statement: &'a Statement, judged: &'a Judged<'a>, eyes: &'a Eyes<'a>) -> Self {
+        let mut uses = Vec::new();
+        for side in &statement.sides {
+            walk(side, &mut |factor| {
+                if let Atom::Kernel(kernel) = &factor.atom {
+                    uses.push(use_of(factor, kernel, eyes, false));
+                }
+            });
+        }
+        // What was passed over may be a bracket, so that no product is sure.
+        let sides = if judged.formula.passed_over { Vec::new() } else { sides(statement, eyes) };
+        Self { judged, eyes, sides, uses, statement, monomials: Monomials::new(eyes) }
+    }
+
+    /// Why a product is zero by a contraction, if it is.
+    pub fn contraction_zero(&self, product: &Product) -> Option<Zero> {
+        self.monomials.contraction_zero(product)
+    }
+
+    /// Whether a bracket of a product holds slots of the opposite symmetry.
+    pub fn bracket_zero(&self, product: &Product, bracket: &Bracketed) -> bool {
+        self.monomials.bracket_zero(product, bracket)
+    }
+
+    /// The second product divided by the first, if they are the same up to a number.
+    pub fn quotient(&self, one: &Product, two: &Product) -> Option<Rational> {
+        self.monomials.quotient(one, two)
+    }
+
+    /// How a side changes when two of its free letters are exchanged: a sign, or neither. Nothing if that could not be
+    /// found out.
+    pub fn exchange(&self, side: &Side, one: &str, two: &str) -> Option<Option<Sign>> {
+        let sum = self.monomials.sum(&side.products)?;
+        if sum.is_zero() {
+            return None;
+        }
+        self.monomials.exchange(&sum, one, two)
+    }
+
+    /// Whether the relation after a side claims that both sides are equal.
+    pub fn is_equality(&self, side: usize) -> bool {
+        self.statement.relations.get(side).is_some_and(|relation| relation.claim() == Claim::Equality)
+    }
+
+    /// Whether a side is there in full and all of its kernels are known.
+    pub fn is_known(&self, side: &Side) -> bool {
+        let known = |piece: &Piece| is_known(piece, self.eyes.meanings, self.eyes.customs);
+        side.complete && !side.products.is_empty() && side.products.iter().flat_map(|one| &one.pieces).all(known)
+    }
+
+    /// Whether the paper has a connection: it speaks of curvature, or declares a metric or a covariant derivative.
+    pub fn has_connection(&self) -> bool {
+        let meanings = self.eyes.meanings;
+        self.eyes.customs.curved || !meanings.metrics().is_empty() || !meanings.derivatives.is_empty()
+    }
+
+    /// The declared family of a slot, with a letter of it: that of the letter the kernel is declared with, else of
+    /// the letters beside it.
+    pub fn family_of_slot(&self, made: &'a Use, at: usize) -> Option<(CompactString, &'a Family)> {
+        let meanings = self.eyes.meanings;
+        let own = made.own_slots().count();
+        let letter = match meanings.known(&made.kernel, own) {
+            Some(known) => known.slots.get(at)?.letter.clone(),
+            None => {
+                let mut letters = made.own_slots().filter_map(|slot| slot.letter());
+                let first = letters.next()?.clone();
+                let same = letters.all(|other| meanings.family_number(other) == meanings.family_number(&first));
+                same.then_some(first)?
+            }
+        };
+        let family = meanings.family(&letter)?;
+        Some((letter, family))
+    }
+
+    /// Whether the family that a letter's family is the spatial part of has a number among its values.
+    pub fn whole_holds(&self, letter: &str, number: u32) -> bool {
+        let family = self.eyes.meanings.family(letter);
+        let whole =
+            family.and_then(|family| family.part_of.as_ref()).and_then(|letter| self.eyes.meanings.family(letter));
+        whole.is_some_and(|whole| whole.holds_number(number) == Some(true))
+    }
+
+    /// A piece as people read it: its derivatives and its kernel.
+    pub fn piece_name(&self, piece: &Piece) -> String {
+        let operators: String = piece.operators.iter().map(|kernel| shown(kernel)).collect();
+        format!("{operators}{}", shown(&piece.made.kernel))
+    }
+
+    /// Several pieces of a product as people read them.
+    pub fn piece_names(&self, product: &Product, pieces: &[usize]) -> String {
+        let names: Vec<String> =
+            pieces.iter().filter_map(|at| product.pieces.get(*at)).map(|piece| self.piece_name(piece)).collect();
+        names.join(" ")
+    }
+}
