@@ -22,9 +22,11 @@
 
 mod budget;
 mod colours;
+mod content;
 mod group;
 mod monomial;
 mod search;
+mod state;
 mod sum;
 mod vanishing;
 

@@ -1,7 +1,8 @@
 //! What the search for normal forms may cost: a count of elementary steps, never a clock, so that the outcome is
 //! the same on every machine.
 
-/// Steps for one statement's normal forms: ample for products of a page, and a fraction of a second at worst.
+/// Steps for one statement's normal forms. A product of five Riemann tensors takes some 150 thousand; a bracket
+/// over seven labels of a kernel without symmetry, 5040 terms, some 18 million.
 pub const NORMAL_FORM_BUDGET: u64 = 20_000_000;
 
 /// The steps that are left. One step is about one look at a pair of slots.

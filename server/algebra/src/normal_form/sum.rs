@@ -74,10 +74,15 @@ impl Sum {
     /// This sum plus `times` the other.
     pub fn plus(&self, other: &Self, times: Rational) -> Result<Self, Unfinished> {
         let mut sum = self.clone();
-        for (form, &coefficient) in &other.terms {
-            sum.add(form.clone(), coefficient.checked_mul(times).ok_or(Unfinished::CoefficientTooLarge)?)?;
-        }
+        sum.absorb(other.clone(), times)?;
         Ok(sum)
+    }
+
+    fn absorb(&mut self, other: Self, times: Rational) -> Result<(), Unfinished> {
+        for (form, coefficient) in other.terms {
+            self.add(form, coefficient.checked_mul(times).ok_or(Unfinished::CoefficientTooLarge)?)?;
+        }
+        Ok(())
     }
 
     fn add(&mut self, form: Canonical, coefficient: Rational) -> Result<(), Unfinished> {
@@ -132,7 +137,7 @@ pub fn normal_sum(terms: &[Term], budget: &mut Budget) -> Result<Sum, Unfinished
         if term.brackets.is_empty() {
             sum.add_monomial(&term.monomial, term.coefficient, budget)?;
         } else {
-            sum = sum.plus(&expanded(term, budget)?, term.coefficient)?;
+            sum.absorb(expanded(term, budget)?, term.coefficient)?;
         }
     }
     Ok(sum)
@@ -249,10 +254,11 @@ fn averaged(mut sum: Sum, tokens: &[Token], antisymmetric: bool, budget: &mut Bu
                 Label::Free(number) if number == other.number => last.slot(),
                 _ => *slot,
             };
-            total = total.plus(&sum.refilled(exchange, budget)?, sign)?;
+            total.absorb(sum.refilled(exchange, budget)?, sign)?;
         }
         let share = Rational::new(1, place as i128 + 1).ok_or(Unfinished::CoefficientTooLarge)?;
-        sum = Sum::default().plus(&total, share)?;
+        sum = Sum::default();
+        sum.absorb(total, share)?;
     }
     Ok(sum)
 }

@@ -5,6 +5,8 @@
 
 mod counts;
 mod laws;
+mod sums;
+mod zeros;
 
 use std::sync::Arc;
 

@@ -50,7 +50,7 @@ fn draw_slots(slots: usize, draws: &mut Draws) -> Vec<Slot> {
     shuffled(held, draws)
 }
 
-fn draw_monomial(draws: &mut Draws, most_factors: u64) -> Monomial {
+pub(super) fn draw_monomial(draws: &mut Draws, most_factors: u64) -> Monomial {
     let kernels = kernels();
     let pool = 1 + draws.below(2);
     let first = draws.below(kernels.len() as u64);
