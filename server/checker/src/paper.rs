@@ -1,31 +1,31 @@
 //! A paper is a root document with its parts and styles; `check` is the one pipeline.
 
+mod directed;
+mod implying;
+mod judging;
 #[cfg(test)]
 mod tests;
 
-use std::borrow::Cow;
 use std::sync::Arc;
 use std::sync::atomic::{AtomicBool, Ordering};
 
-use compact_str::CompactString;
-use indexwise_grammar::conventions::Sentence;
 use indexwise_grammar::hosts::{self, Host};
 use indexwise_grammar::macros::Macros;
 use indexwise_grammar::span::Span;
-use indexwise_grammar::tree::Formula;
-use indexwise_grammar::{Document, macros_of, read_each, read_region};
-use rustc_hash::{FxHashMap, FxHashSet};
+use indexwise_grammar::{Document, macros_of, read_each};
+use rustc_hash::FxHashMap;
 
 use crate::conventions::declared::Declared;
 use crate::conventions::inferred::{Evidence, Prices};
 use crate::conventions::meanings::Meanings;
 use crate::finding::{Finding, Severity};
-use crate::ledger::Judged;
 use crate::reading::{self, Reading};
-use crate::rules;
 use crate::sketch::{Sketch, Unit};
-use crate::terms::symmetries::Customs;
-use crate::terms::{self, Eyes, Flattened};
+use crate::symbols::SymbolTable;
+
+use directed::skipped;
+pub use implying::implied;
+use judging::{judge_document, missing_part};
 
 /// One text of a paper.
 #[derive(Clone, Debug)]
@@ -85,6 +85,8 @@ pub struct Settings {
     pub without: Vec<String>,
     /// Whether `unread`, which is off by default, is reported.
     pub unread: bool,
+    /// Whether the symbol table is gathered.
+    pub symbols: bool,
     /// Rules with a severity of their own instead of their usual one; nothing: off. The last entry of a rule counts.
     /// A rule that `only` names is on whatever stands here, and one that `without` names is off.
     pub levels: Vec<(String, Option<Severity>)>,
@@ -149,6 +151,8 @@ pub struct DocumentAnalysis {
     pub statistics: Statistics,
     /// Findings in the order of their places.
     pub findings: Vec<Finding>,
+    /// The symbols, if they are asked for.
+    pub symbols: Option<SymbolTable>,
 }
 
 /// Counts of one document.
@@ -187,9 +191,6 @@ pub fn check(paper: &Paper, settings: &Settings, cancel: &Cancel) -> Analysis {
     });
     Analysis { documents: documents.collect() }
 }
-
-/// Rules that speak of a document rather than of a formula: `allow` silences them in the whole file.
-const DOCUMENT_RULES: &[&str] = &["missing-part", "unread", "convention-unreadable", "convention-clash", "idle-allow"];
 
 /// How every statement of the first document is read, in words: its units with their scores and the letters out of
 /// balance. For people who tune the inference.
@@ -322,32 +323,6 @@ fn shared_meanings(shared: &[SharedConventions]) -> Meanings {
     shared.iter().fold(Meanings::default(), |outer, conventions| Declared::shared(conventions, &outer).meanings)
 }
 
-/// The tree of the formula that was read again last: only few statements are looked at by their terms, so that trees
-/// are not kept.
-#[derive(Default)]
-struct Trees {
-    formula: Option<(usize, Formula)>,
-}
-
-impl Trees {
-    /// Hands the tree of a statement of a formula to a function; nothing comes of a statement that is not there.
-    fn statement<T: Default>(
-        &mut self,
-        read: &Read<'_>,
-        number: usize,
-        span: Span,
-        take: impl FnOnce(&indexwise_grammar::tree::Statement) -> T,
-    ) -> T {
-        if self.formula.as_ref().is_none_or(|(known, _)| *known != number) {
-            let region = read.document.scan.regions.get(number);
-            let tree = region.map(|region| read_region(region, read.text, read.host, &read.macros));
-            self.formula = tree.map(|tree| (number, tree));
-        }
-        let statements = self.formula.iter().flat_map(|(_, tree)| &tree.statements);
-        statements.into_iter().find(|statement| statement.span == span).map(take).unwrap_or_default()
-    }
-}
-
 /// Counts the habits of every document.
 fn gather(documents: &[Sketched<'_>], cancel: &Cancel) -> Vec<Evidence> {
     let mut evidence = vec![Evidence::default(); documents.len()];
@@ -373,128 +348,4 @@ fn total(evidence: &[Evidence]) -> Evidence {
     let mut all = Evidence::default();
     evidence.iter().for_each(|own| all.add(own));
     all
-}
-
-fn judge_document(
-    document: &Sketched<'_>,
-    prices: Prices<'_>,
-    settings: &Settings,
-    missing: Vec<Finding>,
-) -> DocumentAnalysis {
-    let formulas = &document.read.document.formulas;
-    let mut indexed = vec![false; formulas.len()];
-    let mut findings: Vec<(usize, Finding)> = Vec::new();
-    let scores = document.scores(&prices);
-    let customs = Customs::of(document.read.text, prices.is_curved());
-    let mut trees = Trees::default();
-    for statement in &document.statements {
-        let (number, sketch) = (statement.formula, statement.sketch);
-        let Some(formula) = formulas.get(number) else { continue };
-        let mut reading = statement.read(&scores);
-        let any_index = sketch.places.iter().any(|place| reading.choice.index.get(place.unit as usize) == Some(&true));
-        if let Some(flag) = indexed.get_mut(number) {
-            *flag |= any_index;
-        }
-        reading.odd.retain(|(letter, _)| prices.is_index_notation(letter));
-        let next = formulas.get(number + 1).map(|next| next.span.start).filter(|start| *start >= formula.span.end);
-        let after = Span { start: formula.span.end, end: next.unwrap_or(u32::MAX) };
-        let no_sum = formula.no_sum || says_no_sum(document.read.text, after, document.read.host);
-        if sketch.unjudged.is_none() && !no_sum && prices.trusts(&sketch.unknown) {
-            let search = if reading.odd.is_empty() { rules::faults::level_faults } else { rules::faults::faults };
-            let mut faults = search(sketch, &reading.choice, &prices);
-            faults.retain(|fault| fault.letter().is_none_or(|letter| prices.is_index_notation(letter)));
-            let (text, held) = (document.read.text, Cow::Borrowed(sketch));
-            let judged = Judged { text, formula, sketch: held, reading, prices, faults };
-            let found = rules::check_statement(&judged);
-            let balanced = judged.reading.odd.is_empty() && found.iter().all(|finding| finding.ledger.is_none());
-            findings.extend(found.into_iter().map(|finding| (number, finding)));
-            if balanced && terms::asks_for_terms(sketch, &judged) {
-                let found = trees.statement(document.read, number, sketch.span, |statement| {
-                    let eyes = Eyes::new(sketch, &judged.reading.choice, &prices, customs);
-                    rules::check_terms(&Flattened::new(statement, &judged, &eyes))
-                });
-                findings.extend(found.into_iter().map(|finding| (number, finding)));
-            }
-        }
-    }
-    for (number, formula) in formulas.iter().enumerate().filter(|_| settings.reports_unread()) {
-        findings.extend(formula.unread.iter().map(|part| (number, rules::unread(part))));
-    }
-    let statistics = Statistics {
-        formulas: formulas.len(),
-        indexed: indexed.iter().filter(|flag| **flag).count(),
-        unread: formulas.iter().zip(&indexed).filter(|(formula, flag)| **flag && !formula.unread.is_empty()).count(),
-        unknown_macros: formulas.iter().zip(&indexed).filter(|(f, flag)| **flag && !f.unknown.is_empty()).count(),
-    };
-    DocumentAnalysis { statistics, findings: directed(&document.read.declared, formulas, findings, missing) }
-}
-
-/// The finding for a part that could not be had; in a preamble only macros are missing by it.
-fn missing_part(trouble: &Trouble, begin: Option<usize>) -> Finding {
-    let preamble = trouble.preamble || begin.is_some_and(|begin| (trouble.span.start as usize) < begin);
-    rules::missing_part(trouble.span, &trouble.message, preamble)
-}
-
-/// Whether the words right after a formula say that no sum is meant: those before the next formula, up to a blank
-/// line or the end of a sentence; in a note, on the formula's line.
-fn says_no_sum(text: &str, after: Span, host: Host) -> bool {
-    const WORDS: usize = 40;
-    let end = (after.end as usize).min(text.len());
-    let after = text.get(after.start as usize..end).unwrap_or_default();
-    let words: String = after.chars().take(WORDS).collect::<String>().to_lowercase();
-    let mut lines = words.split('\n');
-    let first = lines.next().unwrap_or_default();
-    let more = lines.take_while(|line| host != Host::Note && !line.trim().is_empty());
-    let words = std::iter::once(first).chain(more).collect::<Vec<_>>().join(" ");
-    let sentence = words.split_once(". ").map_or(words.as_str(), |(sentence, _)| sentence);
-    ["no sum", "not summed", "without sum"].iter().any(|phrase| {
-        sentence.match_indices(phrase).any(|(at, phrase)| {
-            let rest = sentence.get(at + phrase.len()..).unwrap_or_default();
-            let rest = rest.strip_prefix("mation").unwrap_or(rest);
-            !rest.starts_with(char::is_alphabetic) && !rest.starts_with(" of ")
-        })
-    })
-}
-
-/// The formulas that the author says to skip: they neither vote nor are judged.
-fn skipped(declared: &Declared, formulas: &[Formula]) -> FxHashSet<usize> {
-    let skips = declared.sentences.iter().filter(|(sentence, _)| *sentence == Sentence::Skip);
-    skips.filter_map(|(_, span)| target(*span, formulas)).collect()
-}
-
-/// The formula that a directive speaks of: the one around it, or the next.
-fn target(directive: Span, formulas: &[Formula]) -> Option<usize> {
-    let at = formulas.partition_point(|formula| formula.span.end <= directive.start);
-    (at < formulas.len()).then_some(at)
-}
-
-/// Findings after the author's `skip` and `allow`, with those about the document (`about`) and about the directives.
-fn directed(
-    declared: &Declared,
-    formulas: &[Formula],
-    mut findings: Vec<(usize, Finding)>,
-    mut about: Vec<Finding>,
-) -> Vec<Finding> {
-    let mut allowed: Vec<&CompactString> = Vec::new();
-    let skipped = skipped(declared, formulas);
-    findings.retain(|(number, _)| !skipped.contains(number));
-    for (sentence, span) in &declared.sentences {
-        let target = target(*span, formulas);
-        match sentence {
-            // What is not about one formula can be allowed for the file.
-            Sentence::Allow { rule, .. } if DOCUMENT_RULES.contains(&rule.text.as_str()) => allowed.push(&rule.text),
-            Sentence::Allow { rule, here } => {
-                let before = findings.len();
-                findings.retain(|(number, finding)| finding.rule != rule.text || (*here && Some(*number) != target));
-                if findings.len() == before {
-                    about.push(rules::idle_allow(*span, &rule.text));
-                }
-            }
-            _ => {}
-        }
-    }
-    about.extend(declared.problems());
-    about.extend(findings.into_iter().map(|(_, finding)| finding));
-    about.retain(|finding| !allowed.iter().any(|rule| *rule == finding.rule));
-    about
 }

@@ -189,6 +189,11 @@ impl Meanings {
         named(&self.labels) || (self.family_number(letter).is_none() && named(&self.components))
     }
 
+    /// Whether a family has numbers for values, so that components can be out of range.
+    pub fn has_numbered_ranges(&self) -> bool {
+        self.families.iter().any(|family| family.holds_number(0).is_some())
+    }
+
     /// Whether nothing is declared.
     pub fn is_empty(&self) -> bool {
         *self == Self::default()

@@ -1,0 +1,198 @@
+//! One document judged: every statement read at its cheapest, the rules asked, the symbols gathered.
+
+use std::borrow::Cow;
+
+use indexwise_grammar::hosts::Host;
+use indexwise_grammar::read_region;
+use indexwise_grammar::span::Span;
+use indexwise_grammar::tree::{self, Formula};
+
+use crate::conventions::inferred::Prices;
+use crate::finding::Finding;
+use crate::ledger::Judged;
+use crate::reading::Reading;
+use crate::rules;
+use crate::sketch::Sketch;
+use crate::symbols::Gatherer;
+use crate::terms::symmetries::Customs;
+use crate::terms::{self, Eyes, Flattened};
+
+use super::directed::{directed, skipped};
+use super::{DocumentAnalysis, Read, Settings, Sketched, Statement, Statistics, Trouble};
+
+/// A document on its way through the rules.
+struct Judge<'d> {
+    document: &'d Sketched<'d>,
+    prices: Prices<'d>,
+    customs: Customs,
+    trees: Trees,
+    indexed: Vec<bool>,
+    findings: Vec<(usize, Finding)>,
+    symbols: Option<Gatherer>,
+}
+
+/// Judges a document; `missing` are findings about parts that could not be had.
+pub(super) fn judge_document(
+    document: &Sketched<'_>,
+    prices: Prices<'_>,
+    settings: &Settings,
+    missing: Vec<Finding>,
+) -> DocumentAnalysis {
+    let formulas = &document.read.document.formulas;
+    let mut judge = Judge {
+        document,
+        prices,
+        customs: Customs::of(document.read.text, prices.is_curved()),
+        trees: Trees::default(),
+        indexed: vec![false; formulas.len()],
+        findings: Vec::new(),
+        symbols: settings.symbols.then(Gatherer::default),
+    };
+    let scores = document.scores(&prices);
+    for statement in &document.statements {
+        judge.statement(statement, statement.read(&scores));
+    }
+    if prices.declared.meanings.has_numbered_ranges() || settings.symbols {
+        judge.statements_without_letters();
+    }
+    for (number, formula) in formulas.iter().enumerate().filter(|_| settings.reports_unread()) {
+        judge.findings.extend(formula.unread.iter().map(|part| (number, rules::unread(part))));
+    }
+    let Judge { indexed, findings, symbols, .. } = judge;
+    let statistics = Statistics {
+        formulas: formulas.len(),
+        indexed: indexed.iter().filter(|flag| **flag).count(),
+        unread: formulas.iter().zip(&indexed).filter(|(formula, flag)| **flag && !formula.unread.is_empty()).count(),
+        unknown_macros: formulas.iter().zip(&indexed).filter(|(f, flag)| **flag && !f.unknown.is_empty()).count(),
+    };
+    let findings = directed(&document.read.declared, formulas, findings, missing);
+    DocumentAnalysis { statistics, findings, symbols: symbols.map(Gatherer::finish) }
+}
+
+impl Judge<'_> {
+    fn statement(&mut self, statement: &Statement<'_>, mut reading: Reading) {
+        let (number, sketch) = (statement.formula, statement.sketch);
+        let formulas = &self.document.read.document.formulas;
+        let Some(formula) = formulas.get(number) else { return };
+        let any_index = sketch.places.iter().any(|place| reading.choice.index.get(place.unit as usize) == Some(&true));
+        if let Some(flag) = self.indexed.get_mut(number) {
+            *flag |= any_index;
+        }
+        if let Some(symbols) = &mut self.symbols {
+            let eyes = Eyes::new(sketch, &reading.choice, &self.prices, self.customs);
+            self.trees.statement(self.document.read, number, sketch.span, |tree| symbols.take(tree, &eyes));
+        }
+        reading.odd.retain(|(letter, _)| self.prices.is_index_notation(letter));
+        let next = formulas.get(number + 1).map(|next| next.span.start).filter(|start| *start >= formula.span.end);
+        let after = Span { start: formula.span.end, end: next.unwrap_or(u32::MAX) };
+        let no_sum = formula.no_sum || says_no_sum(self.document.read.text, after, self.document.read.host);
+        if sketch.unjudged.is_some() || no_sum || !self.prices.trusts(&sketch.unknown) {
+            return;
+        }
+        let search = if reading.odd.is_empty() { rules::faults::level_faults } else { rules::faults::faults };
+        let mut faults = search(sketch, &reading.choice, &self.prices);
+        faults.retain(|fault| fault.letter().is_none_or(|letter| self.prices.is_index_notation(letter)));
+        let (text, held) = (self.document.read.text, Cow::Borrowed(sketch));
+        let judged = Judged { text, formula, sketch: held, reading, prices: self.prices, faults };
+        let found = rules::check_statement(&judged);
+        let balanced = judged.reading.odd.is_empty() && found.iter().all(|finding| finding.ledger.is_none());
+        self.findings.extend(found.into_iter().map(|finding| (number, finding)));
+        if balanced && terms::asks_for_terms(sketch, &judged) {
+            self.terms(number, &judged);
+        }
+    }
+
+    /// The rules about terms, on a statement that balances.
+    fn terms(&mut self, number: usize, judged: &Judged<'_>) {
+        let eyes = Eyes::new(&judged.sketch, &judged.reading.choice, &self.prices, self.customs);
+        let found = self.trees.statement(self.document.read, number, judged.sketch.span, |statement| {
+            rules::check_terms(&Flattened::new(statement, judged, &eyes))
+        });
+        self.findings.extend(found.into_iter().map(|finding| (number, finding)));
+    }
+
+    /// Statements without a letter in their scripts have no sketch, but components and symbols.
+    fn statements_without_letters(&mut self) {
+        let read = self.document.read;
+        let skipped = skipped(&read.declared, &read.document.formulas);
+        let mut known =
+            self.document.statements.iter().map(|statement| (statement.formula, statement.sketch.span)).peekable();
+        for (number, formula) in read.document.formulas.iter().enumerate() {
+            let mut sketched = Vec::new();
+            while let Some((_, span)) = known.next_if(|(formula, _)| *formula <= number) {
+                sketched.push(span);
+            }
+            if skipped.contains(&number) {
+                continue;
+            }
+            let statements = self.trees.statements(read, number).to_vec();
+            for statement in statements.iter().filter(|statement| !sketched.contains(&statement.span)) {
+                let sketch = Cow::Owned(Sketch::of(statement));
+                let (reading, faults) = (Reading::default(), Vec::new());
+                let judged = Judged { text: read.text, formula, sketch, reading, prices: self.prices, faults };
+                let eyes = Eyes::new(&judged.sketch, &judged.reading.choice, &self.prices, self.customs);
+                let found = rules::check_terms(&Flattened::new(statement, &judged, &eyes));
+                self.findings.extend(found.into_iter().map(|finding| (number, finding)));
+                if let Some(symbols) = &mut self.symbols {
+                    symbols.take(statement, &eyes);
+                }
+            }
+        }
+    }
+}
+
+/// The tree of the formula that was read again last: only few statements are looked at by their terms, so that trees
+/// are not kept.
+#[derive(Default)]
+pub(super) struct Trees {
+    formula: Option<(usize, Formula)>,
+}
+
+impl Trees {
+    /// Hands the tree of a statement of a formula to a function; nothing comes of a statement that is not there.
+    pub(super) fn statement<T: Default>(
+        &mut self,
+        read: &Read<'_>,
+        number: usize,
+        span: Span,
+        take: impl FnOnce(&tree::Statement) -> T,
+    ) -> T {
+        self.statements(read, number).iter().find(|statement| statement.span == span).map(take).unwrap_or_default()
+    }
+
+    fn statements(&mut self, read: &Read<'_>, number: usize) -> &[tree::Statement] {
+        if self.formula.as_ref().is_none_or(|(known, _)| *known != number) {
+            let region = read.document.scan.regions.get(number);
+            let tree = region.map(|region| read_region(region, read.text, read.host, &read.macros));
+            self.formula = tree.map(|tree| (number, tree));
+        }
+        self.formula.as_ref().map(|(_, tree)| tree.statements.as_slice()).unwrap_or_default()
+    }
+}
+
+/// The finding for a part that could not be had; in a preamble only macros are missing by it.
+pub(super) fn missing_part(trouble: &Trouble, begin: Option<usize>) -> Finding {
+    let preamble = trouble.preamble || begin.is_some_and(|begin| (trouble.span.start as usize) < begin);
+    rules::missing_part(trouble.span, &trouble.message, preamble)
+}
+
+/// Whether the words right after a formula say that no sum is meant: those before the next formula, up to a blank
+/// line or the end of a sentence; in a note, on the formula's line.
+fn says_no_sum(text: &str, after: Span, host: Host) -> bool {
+    const WORDS: usize = 40;
+    let end = (after.end as usize).min(text.len());
+    let after = text.get(after.start as usize..end).unwrap_or_default();
+    let words: String = after.chars().take(WORDS).collect::<String>().to_lowercase();
+    let mut lines = words.split('\n');
+    let first = lines.next().unwrap_or_default();
+    let more = lines.take_while(|line| host != Host::Note && !line.trim().is_empty());
+    let words = std::iter::once(first).chain(more).collect::<Vec<_>>().join(" ");
+    let sentence = words.split_once(". ").map_or(words.as_str(), |(sentence, _)| sentence);
+    ["no sum", "not summed", "without sum"].iter().any(|phrase| {
+        sentence.match_indices(phrase).any(|(at, phrase)| {
+            let rest = sentence.get(at + phrase.len()..).unwrap_or_default();
+            let rest = rest.strip_prefix("mation").unwrap_or(rest);
+            !rest.starts_with(char::is_alphabetic) && !rest.starts_with(" of ")
+        })
+    })
+}
