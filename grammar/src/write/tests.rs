@@ -3,7 +3,7 @@
 #![allow(clippy::unwrap_used, clippy::indexing_slicing)]
 
 use super::*;
-use crate::tree::{Formula, Level, Sign, dump};
+use crate::tree::{Formula, ItemKind, Level, Sign, dump, substitute_letter, written_out};
 use crate::{read_formula, read_note_formula};
 
 fn one(body: &str) -> Formula {
@@ -186,4 +186,69 @@ fn parts_are_written_by_themselves() {
     let factor = &formula.statements[0].sides[0].terms[0].factors[0];
     assert_eq!(write_factor(factor, Dialect::Latex).text, "A_i");
     assert_eq!(factor.scripts[0].level, Level::Down);
+}
+
+fn first_term(body: &str) -> Term {
+    one(body).statements[0].sides[0].terms[0].clone()
+}
+
+fn number(value: &str) -> ItemKind {
+    ItemKind::Number(value.into())
+}
+
+#[track_caller]
+fn becomes(body: &str, from: &str, to: &ItemKind, expected: &str) {
+    let mut term = first_term(body);
+    let places = substitute_letter(&mut term, from, to);
+    assert_eq!(write_term(&term, Dialect::Latex).text, expected, "{body}");
+    // Each place is a letter gone: none is left to be replaced.
+    assert_eq!((substitute_letter(&mut term, from, to), places > 0), (0, body != expected), "{body}");
+}
+
+#[test]
+fn a_letter_is_replaced_wherever_it_stands() {
+    let one = number("1");
+    for (body, expected) in [
+        (r"\Gamma^\mu_{\mu k}", r"\Gamma^1_{1k}"),
+        (r"\frac{\partial f}{\partial x^\mu}", r"\frac{\partial f}{\partial x^1}"),
+        (r"\pdv[2]{f_\mu}{x^\mu}{y}", r"\pdv[2]{f_1}{x^1}{y}"),
+        (r"\frac{\frac{a^\mu}{b}}{c_\mu}", r"\frac{\frac{a^1}{b}}{c_1}"),
+        (r"(a_\mu + [b^\mu, c])^2", r"(a_1 + [b^1, c])^2"),
+        (r"f (x^\mu, y) \sin (k_\mu)", r"f (x^1, y) \sin (k_1)"),
+        (r"e^{i k_\mu x^\mu}", r"e^{i k_1 x^1}"),
+        (r"\sqrt[n_\mu]{g^{\mu\nu}} \overline{a_\mu b}", r"\sqrt[n_1]{g^{1\nu}} \overline{a_1 b}"),
+        (r"\foo{x_\mu} \cancel{c_\mu} {a_\mu b}", r"\foo{x_1} \cancel{c_1} {a_1 b}"),
+        (r"\sum_\mu T^{\mu'}_{\mu}", r"\sum_1 T^{\mu'}_1"),
+        (r"T^{(\mu\nu)}{}_{,\mu}", r"T^{(1\nu)}{}_{,1}"),
+        (r"\mu \nabla_\nu A", r"\mu \nabla_\nu A"),
+    ] {
+        becomes(body, r"\mu", &one, expected);
+    }
+    becomes(r"g^{ij} u_i", "i", &ItemKind::Letter(r"\theta".into()), r"g^{\theta j} u_\theta");
+    becomes(r"g_{ij} v_{i'}", "i'", &ItemKind::Letter("k".into()), r"g_{ij} v_k");
+}
+
+#[test]
+fn a_contraction_is_written_out() {
+    let values: Vec<ItemKind> = ["1", "2", "3"].map(number).into();
+    let out = |body: &str| write_sum(&written_out(&first_term(body), "i", &values), Dialect::Unicode).text;
+    assert_eq!(out(r"\Gamma^i_{ik}"), "Γ^1_{1k} + Γ^2_{2k} + Γ^3_{3k}");
+    assert_eq!(out(r"-\frac12 g^{ij} g_{ij}"), "-½ g^{1j} g_{1j} - ½ g^{2j} g_{2j} - ½ g^{3j} g_{3j}");
+    assert_eq!(out(r"\frac{\partial v^i}{\partial x^i}"), "∂v^1/∂x^1 + ∂v^2/∂x^2 + ∂v^3/∂x^3");
+    assert!(written_out(&first_term("a"), "i", &[]).terms.is_empty());
+}
+
+#[test]
+fn pieces_make_formulas() {
+    let letter = |letter: &str| ItemKind::Letter(letter.into());
+    let slots =
+        |letters: &[(Level, &str)]| letters.iter().map(|(level, name)| (*level, letter(name))).collect::<Vec<_>>();
+    let riemann = slots(&[(Level::Up, "i"), (Level::Down, "j"), (Level::Down, "k"), (Level::Up, "l")]);
+    let half = Factor::quotient(Sum::of_factor(Factor::number(1)), Sum::of_factor(Factor::number(2)));
+    let product = Term::of(vec![half, Factor::kernel("R", &riemann), Factor::kernel(r"\phi", &[])]);
+    let sum = Sum::of(vec![product.clone().signed(SignKind::Minus), product.signed(SignKind::Plus)]);
+    let expected = r"-\frac{1}{2} R^i{}_{jk}{}^l \phi + \frac{1}{2} R^i{}_{jk}{}^l \phi";
+    assert_eq!(write_sum(&sum, Dialect::Latex), Written { text: expected.to_owned(), complete: true });
+    let again = sum.terms[0].clone().signed(SignKind::Minus);
+    assert_eq!(again.sign.unwrap().kind, SignKind::Plus);
 }
