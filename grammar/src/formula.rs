@@ -73,14 +73,23 @@ fn prepare_tokens(tokens: &[Token<'_>]) -> Draft {
 }
 
 /// Whether the parsers will pass over what may change the value: a bracket without a partner, or a switch to roman
-/// type outside scripts, after which letters may be words.
+/// type, after which letters may be words. In scripts both are kept.
 fn passes_over(lexemes: &[Lexeme]) -> bool {
-    let kind = |at: Option<usize>| at.and_then(|at| lexemes.get(at)).map(|lexeme| lexeme.kind);
-    lexemes.iter().enumerate().any(|(at, lexeme)| match lexeme.kind {
-        Kind::Lone => true,
-        Kind::RomanSwitch => !matches!(kind(at.checked_sub(2)), Some(Kind::Up | Kind::Down)),
-        _ => false,
-    })
+    let mut scripts: Vec<bool> = Vec::new();
+    let mut before = None;
+    for lexeme in lexemes {
+        let in_script = scripts.last().copied().unwrap_or_default();
+        match lexeme.kind {
+            Kind::BraceOpen => scripts.push(in_script || matches!(before, Some(Kind::Up | Kind::Down))),
+            Kind::BraceClose => {
+                scripts.pop();
+            }
+            Kind::Lone | Kind::RomanSwitch if !in_script => return true,
+            _ => {}
+        }
+        before = Some(lexeme.kind);
+    }
+    false
 }
 
 /// Parses drafts; the parsers are built once for all of them.

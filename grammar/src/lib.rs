@@ -13,6 +13,7 @@ pub mod span;
 pub mod tokens;
 pub mod tree;
 pub(crate) mod vocabulary;
+pub mod write;
 
 use std::borrow::Cow;
 
@@ -74,6 +75,12 @@ pub fn read_region(region: &Region, text: &str, host: Host, macros: &Macros) -> 
 /// Reads the body of one formula by itself; places count from its start.
 pub fn read_formula(body: &str, macros: &Macros) -> Formula {
     let draft = formula::prepare(body, 0, macros);
+    formula::parse_all(&[(Span::new(0, body.len()), true, draft)]).pop().unwrap_or_default()
+}
+
+/// As `read_formula`, for the body of a note's formula.
+pub fn read_note_formula(body: &str) -> Formula {
+    let draft = formula::prepare_note(body, 0);
     formula::parse_all(&[(Span::new(0, body.len()), true, draft)]).pop().unwrap_or_default()
 }
 

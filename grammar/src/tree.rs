@@ -6,6 +6,7 @@
 //! macro call, so that several nodes may share a span.
 
 mod dump;
+mod pieces;
 mod signs;
 
 use compact_str::CompactString;
@@ -13,6 +14,7 @@ use compact_str::CompactString;
 use crate::span::Span;
 
 pub use dump::dump;
+pub use pieces::{each_item_mut, substitute_letter, written_out};
 pub use signs::{Claim, Joint, Operator, Product, Relation, RelationKind, Sign, SignKind};
 
 /// The level of a script: up (contravariant) or down (covariant).

@@ -128,6 +128,10 @@ pub(crate) enum Class {
     Block,
 }
 
+/// Functions that are known where they are typed without a backslash, letters side by side.
+pub(crate) const TYPED_FUNCTIONS: &[&str] =
+    &["det", "diag", "sin", "cos", "tan", "exp", "log", "const", "sgn", "max", "min"];
+
 /// The meaning of a command's name, without its backslash.
 pub(crate) fn class(name: &str) -> Option<Class> {
     TABLE.get(name).map(|(class, _)| *class)

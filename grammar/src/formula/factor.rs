@@ -343,7 +343,8 @@ fn decorated(command: &Lexeme, sum: Sum, end: Span) -> Factor {
     // A word such as `\mathit{Re}` arrives as a product of letters.
     let word = spelled(&factor).filter(|_| matches!(command.kind, Kind::Roman | Kind::Accent));
     let font = class(&command.text) != Some(Class::Accent);
-    if word.is_none() || !font {
+    // A font says nothing of a function, and of a word only that it is one.
+    if !font || !(word.is_some() || matches!(factor.atom, Atom::Function(_))) {
         factor.marks = format_compact!("{}{}", spelling::mark(&command.text), factor.marks);
     }
     if let Some(word) = word {

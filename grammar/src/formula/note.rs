@@ -8,7 +8,7 @@ use compact_str::CompactString;
 
 use crate::span::Span;
 use crate::tokens::{Token, TokenKind, lex};
-use crate::vocabulary::greek_word;
+use crate::vocabulary::{Class, class, greek_word};
 
 /// A note's formula as LaTeX tokens.
 pub(crate) struct NoteFormula<'a> {
@@ -96,6 +96,17 @@ fn without_reason(line: &str) -> &str {
     if before.ends_with([' ', '\t']) { before } else { line }
 }
 
+/// Whether a LaTeX command's argument is words, not kernels.
+fn takes_words(command: &str) -> bool {
+    let class = command.strip_prefix('\\').and_then(class);
+    matches!(class, Some(Class::Roman | Class::Text | Class::Operator)) || command == "\\mathit"
+}
+
+/// Signs that are written like letters but are no part of a word.
+fn stands_alone(letter: &str) -> bool {
+    matches!(letter, "∂" | "∇" | "□")
+}
+
 fn made(kind: TokenKind, text: &'static str, span: Span) -> Token<'static> {
     Token { kind, text, span }
 }
@@ -113,7 +124,30 @@ impl<'a> Writer<'_, 'a> {
                 TokenKind::Space | TokenKind::Comment => self.at += 1,
                 TokenKind::Letter => self.word(),
                 TokenKind::Down | TokenKind::Up => self.script(),
+                TokenKind::Command if takes_words(token.text) => self.words(token),
                 _ => self.sign(token),
+            }
+        }
+    }
+
+    /// A LaTeX command with words in braces, which stay as they are.
+    fn words(&mut self, command: Token<'a>) {
+        self.out.push(command);
+        self.at += 1;
+        let mut depth = 0_usize;
+        while let Some(token) = self.tokens.get(self.at).copied() {
+            match token.kind {
+                TokenKind::BraceOpen => depth += 1,
+                TokenKind::BraceClose => depth = depth.saturating_sub(1),
+                _ if depth == 0 => return,
+                _ => {}
+            }
+            self.at += 1;
+            if !matches!(token.kind, TokenKind::Space | TokenKind::Comment) {
+                self.out.push(token);
+            }
+            if depth == 0 {
+                return;
             }
         }
     }
@@ -138,12 +172,17 @@ impl<'a> Writer<'_, 'a> {
         let mut span = Span::default();
         let mut length = 0;
         for token in self.tokens.get(self.at..).unwrap_or_default() {
-            if token.kind != TokenKind::Letter || (length > 0 && token.span.start != span.end) {
+            if token.kind != TokenKind::Letter
+                || (length > 0 && (token.span.start != span.end || stands_alone(token.text)))
+            {
                 break;
             }
             span = if length == 0 { token.span } else { span.join(token.span) };
             word.push_str(token.text);
             length += 1;
+            if stands_alone(token.text) {
+                break;
+            }
         }
         (length, word, span)
     }

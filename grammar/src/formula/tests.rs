@@ -125,6 +125,13 @@ fn signs_keep_what_they_are() {
 }
 
 #[test]
+fn signs_in_braces_are_signs() {
+    reads(r"A_{i} {=} B{/}c \overset{(3)}{\approx} D", r"A_{i} Equal B / c Loose(\approx) D");
+    reads(r"A_{ij} \overset{(3)}{=} B_{ij}", r"A_{i j} Equal B_{i j}");
+    reads(r"x^{/} y^{*}", r"x^{/} y^{*}");
+}
+
+#[test]
 fn a_definition_is_told_from_a_claim() {
     use crate::tree::Claim::{Definition, DefinitionOfRight, Equality, Other};
     let claim = |sign: &str| read(&format!("a {sign} b")).statements[0].relations[0].claim();
@@ -152,7 +159,7 @@ fn what_is_passed_over_shows() {
     for body in [r"a ) b", r"\left( a", r"\overset{(3)}{g}_{ij}", "a ☼ b", r"{\rm tr} K"] {
         assert!(read(body).passed_over, "{body}");
     }
-    for body in [r"(a) \rho_{\rm m}", r"a \overset{!}{=} b", r"\tag{3} a, b.", "½ a"] {
+    for body in [r"(a) \rho_{\rm m} \nabla_{[a} R_{bc]}", r"a \overset{!}{=} b", r"\tag{3} a, b.", "½ a"] {
         assert!(!read(body).passed_over, "{body}");
     }
 }
@@ -164,4 +171,7 @@ fn notes_read_as_typed() {
     assert_eq!(note("R^{mu}_{nu rho} + T_(ij) - F_mu"), r"R^{\mu}_{\nu \rho} + T_{( i j )} - F_{\mu}");
     assert_eq!(note("a\n  = b\n  + c"), "a Equal b + c");
     assert_eq!(note("log sqrt g"), "fn:log √(g)");
+    assert_eq!(note("a != b <= c ~ d"), r"a Order(\neq) b Order(\leq) c Loose(\sim) d");
+    assert_eq!(note("½ ∂f + ∇_kφ"), r"[1 / 2] \partial f + \nabla_{k \varphi}");
+    assert_eq!(note(r"\mathrm{const} + \operatorname{sinc} x"), r"“const” + fn:sinc x");
 }

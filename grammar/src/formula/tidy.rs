@@ -10,7 +10,7 @@ use compact_str::CompactString;
 
 use crate::span::Span;
 use crate::tokens::{Token, TokenKind};
-use crate::vocabulary::{Class, class, latex_name};
+use crate::vocabulary::{Class, TYPED_FUNCTIONS, class, latex_name};
 
 use super::lexeme::{Kind, Lexeme};
 
@@ -124,7 +124,8 @@ impl<'t, 'a> Cursor<'t, 'a> {
             TokenKind::Bar => Kind::Bar,
             TokenKind::RowBreak => Kind::Row,
             TokenKind::Cell => Kind::Cell,
-            TokenKind::Prime => Kind::Prime,
+            // Typographic primes are primes.
+            TokenKind::Prime => return self.push(Kind::Prime, "'".repeat(token.text.chars().count()), token.span),
             TokenKind::Comma => Kind::Comma,
             TokenKind::Semicolon => Kind::Semicolon,
             TokenKind::Dots => Kind::Dots,
@@ -140,13 +141,11 @@ impl<'t, 'a> Cursor<'t, 'a> {
         self.push(kind, token.text, token.span);
     }
 
-    /// Whether the brace that was just taken holds one sign of multiplication or division and no more: `a{/}b`.
+    /// Whether the brace that was just taken holds one sign of a product or a relation and no more: `a{/}b`, `a{=}b`.
     fn braced_operator(&self) -> bool {
         let Some([operator, close]) = self.tokens.get(self.at..self.at + 2) else { return false };
-        let times = || operator.text.strip_prefix('\\').and_then(class) == Some(Class::Times);
         let script = matches!(self.out.lexemes.last().map(|lexeme| lexeme.kind), Some(Kind::Up | Kind::Down));
-        let sign = matches!(operator.kind, TokenKind::Slash | TokenKind::Times) || times();
-        close.kind == TokenKind::BraceClose && sign && !script
+        close.kind == TokenKind::BraceClose && is_operator(operator) && !script
     }
 
     /// A number; where single digits are wanted they are cut off its front.
@@ -231,8 +230,7 @@ impl<'t, 'a> Cursor<'t, 'a> {
     }
 
     fn typed_function(&self, token: Token<'a>) -> Option<(usize, &'static str)> {
-        const TYPED: &[&str] = &["det", "diag", "sin", "cos", "tan", "exp", "log", "const", "sgn", "max", "min"];
-        let starts = TYPED.iter().any(|word| word.starts_with(token.text));
+        let starts = TYPED_FUNCTIONS.iter().any(|word| word.starts_with(token.text));
         let after_letter =
             self.out.lexemes.last().is_some_and(|l| l.kind == Kind::Letter && l.span.end == token.span.start);
         if !starts || after_letter {
@@ -247,7 +245,7 @@ impl<'t, 'a> Cursor<'t, 'a> {
             word.push_str(next.text);
             end = next.span.end;
         }
-        TYPED.iter().find(|known| **known == word).map(|known| (known.len(), *known))
+        TYPED_FUNCTIONS.iter().find(|known| **known == word).map(|known| (known.len(), *known))
     }
 
     fn command(&mut self, token: Token<'a>) {
@@ -377,13 +375,10 @@ impl<'t, 'a> Cursor<'t, 'a> {
         let body = self.tokens.get(self.at + usize::from(braced)).copied();
         match body.filter(|token| token.text == "=") {
             Some(token) => {
-                if braced {
-                    self.push(Kind::BraceOpen, "{", token.span);
-                }
-                self.at += 1 + usize::from(braced);
+                self.at += if braced { 3 } else { 1 };
                 self.push(Kind::Equal, claimed(&words), token.span);
             }
-            None => self.out.passed_over |= !body.is_some_and(|token| is_relation(token.text)),
+            None => self.out.passed_over |= !body.is_some_and(|token| is_operator(&token)),
         }
     }
 
@@ -405,7 +400,7 @@ impl<'t, 'a> Cursor<'t, 'a> {
                 self.lefts.push(empty);
                 match (empty, bar) {
                     (true, _) => {}
-                    (_, true) => self.push(Kind::Open, "|", span),
+                    (_, true) => self.push(Kind::Open, single_or_double(next.text), span),
                     _ => self.push(Kind::Open, next.text, span),
                 }
             }
@@ -414,7 +409,7 @@ impl<'t, 'a> Cursor<'t, 'a> {
                 match (empty, bar, from_nothing) {
                     (true, ..) => {}
                     (_, true, true) => self.push(Kind::Bar, "eval", span),
-                    (_, true, _) => self.push(Kind::Close, "|", span),
+                    (_, true, _) => self.push(Kind::Close, single_or_double(next.text), span),
                     _ => self.push(Kind::Close, next.text, span),
                 }
             }
@@ -461,6 +456,11 @@ fn takes_star(kind: Kind) -> bool {
     matches!(kind, Kind::Derivative | Kind::Norm | Kind::Average | Kind::Pair | Kind::Tensor | Kind::Wrap | Kind::Bold)
 }
 
+/// A bar, or the double bar of a norm.
+fn single_or_double(text: &str) -> &'static str {
+    if matches!(text, "\\|" | "\\Vert" | "\\lVert" | "\\rVert") { "\\|" } else { "|" }
+}
+
 /// The sign that words over an equality make of it.
 fn claimed(words: &str) -> &'static str {
     let words = words.trim_start_matches("\\text").trim_start_matches("\\mathrm").trim_start_matches("\\rm");
@@ -471,9 +471,11 @@ fn claimed(words: &str) -> &'static str {
     }
 }
 
-fn is_relation(text: &str) -> bool {
-    let class = text.strip_prefix('\\').and_then(class);
-    matches!(text, "<" | ">" | "→") || matches!(class, Some(Class::Equal | Class::Loose | Class::Arrow | Class::Times))
+/// Whether a token joins or compares what stands around it.
+fn is_operator(token: &Token<'_>) -> bool {
+    let class = || token.text.strip_prefix('\\').and_then(class);
+    matches!(token.kind, TokenKind::Slash | TokenKind::Times | TokenKind::Relation | TokenKind::Arrow)
+        || matches!(class(), Some(Class::Equal | Class::Loose | Class::Arrow | Class::Times))
 }
 
 fn relation_sign(text: &str) -> Kind {

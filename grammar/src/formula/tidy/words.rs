@@ -136,7 +136,7 @@ impl<'a> Cursor<'_, 'a> {
                 _ => return None,
             }
             let gap = token.span.start > end && !word.is_empty();
-            if gap || token.kind == TokenKind::Tie {
+            if (gap || token.kind == TokenKind::Tie) && !word.ends_with(' ') {
                 word.push(' ');
             }
             if token.kind != TokenKind::Tie {
