@@ -466,7 +466,8 @@ fn claimed(words: &str) -> &'static str {
     let words = words.trim_start_matches("\\text").trim_start_matches("\\mathrm").trim_start_matches("\\rm");
     match words.trim_matches(['.', ' ']) {
         "def" | "Def" | "\\triangle" | "\\Delta" | "." => ":=",
-        "!" | "?" | "\\bullet" | "*" => "\\stackrel",
+        "!" | "\\bullet" | "*" => "\\stackrel",
+        "?" => "\\stackrel?",
         _ => "=",
     }
 }

@@ -35,6 +35,7 @@ const SIGNS: &[(&str, &str)] = &[
     ("\\eqdef", "≝"),
     ("\\doteq", "≐"),
     ("\\stackrel", "=!"),
+    ("\\stackrel?", "=?"),
     ("\\not", "≠"),
     ("\\to", "→"),
     ("\\rightarrow", "→"),
@@ -101,6 +102,7 @@ pub(super) fn relation(sign: &str, dialect: Dialect) -> String {
     }
     match sign {
         "\\stackrel" => "\\stackrel{!}{=}".to_owned(),
+        "\\stackrel?" => "\\stackrel{?}{=}".to_owned(),
         "\\not" => "\\not=".to_owned(),
         _ if sign.starts_with("\\x") => format!("{sign}{{}}"),
         _ => sign.to_owned(),

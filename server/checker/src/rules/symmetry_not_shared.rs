@@ -22,14 +22,21 @@ fn check(terms: &Flattened<'_>) -> Vec<Finding> {
     let mut out = Vec::new();
     for (number, pair) in terms.sides.windows(2).enumerate() {
         let [one, two] = pair else { continue };
-        if !terms.is_equality(number) || !terms.is_known(one) || !terms.is_known(two) {
+        if !terms.is_equality(number) || !terms.is_complete(one) || !terms.is_complete(two) {
             continue;
         }
         for (a, b) in free_pairs(one) {
             let signs = (terms.exchange(one, &a, &b), terms.exchange(two, &a, &b));
             match signs {
-                (Some(Some(sign)), Some(None)) => out.push(finding(one, two, (&a, &b), sign)),
-                (Some(None), Some(Some(sign))) => out.push(finding(two, one, (&a, &b), sign)),
+                (Some(Some(first)), Some(Some(second))) if first != second => {
+                    out.push(finding(one, two, (&a, &b), first));
+                }
+                (Some(Some(sign)), Some(None)) if terms.is_arbitrary(two) => {
+                    out.push(finding(one, two, (&a, &b), sign));
+                }
+                (Some(None), Some(Some(sign))) if terms.is_arbitrary(one) => {
+                    out.push(finding(two, one, (&a, &b), sign));
+                }
                 _ => {}
             }
         }

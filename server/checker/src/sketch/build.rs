@@ -41,6 +41,9 @@ pub(super) fn sketch(statement: &Statement) -> Sketch {
     if sketch.relations.is_empty() && sketch.sides.iter().all(|side| side.any) {
         sketch.unjudged = sketch.unjudged.or(Some("nothing to compare"));
     }
+    if statement.relations.iter().any(|relation| relation.sign.contains('?')) {
+        sketch.unjudged = sketch.unjudged.or(Some("the author asks whether it holds"));
+    }
     sketch.settle();
     sketch
 }

@@ -5,7 +5,7 @@ use indexwise_algebra::rational::Rational;
 use indexwise_algebra::symmetry::Sign;
 use indexwise_grammar::tree::{Atom, Claim, Statement, walk};
 
-use crate::conventions::meanings::Family;
+use crate::conventions::meanings::{Family, Known, Role};
 use crate::ledger::{Judged, shown};
 
 use super::symmetries::is_known;
@@ -72,10 +72,23 @@ impl<'a> Flattened<'a> {
         self.statement.relations.get(side).is_some_and(|relation| relation.claim() == Claim::Equality)
     }
 
-    /// Whether a side is there in full and all of its kernels are known.
-    pub fn is_known(&self, side: &Side) -> bool {
-        let known = |piece: &Piece| is_known(piece, self.eyes.meanings, self.eyes.customs);
-        side.complete && !side.products.is_empty() && side.products.iter().flat_map(|one| &one.pieces).all(known)
+    /// Whether a side is there in full.
+    pub fn is_complete(&self, side: &Side) -> bool {
+        side.complete && !side.products.is_empty()
+    }
+
+    /// Whether all kernels of a side are arbitrary but for their symmetries, so that what the normal form does not show
+    /// does not hold. A connection, a curvature or an epsilon obeys further identities.
+    pub fn is_arbitrary(&self, side: &Side) -> bool {
+        side.products.iter().flat_map(|one| &one.pieces).all(|piece| self.is_arbitrary_piece(piece))
+    }
+
+    fn is_arbitrary_piece(&self, piece: &Piece) -> bool {
+        let bound = |known: &Known| matches!(known.role, Some(Role::Christoffel | Role::Curvature(_)));
+        let known = self.eyes.meanings.known(&piece.made.kernel, piece.made.own_slots().count());
+        is_known(piece, self.eyes.meanings, self.eyes.customs)
+            && !known.is_some_and(bound)
+            && !matches!(piece.made.letter.as_str(), "\\Gamma" | "\\epsilon" | "\\varepsilon" | "R")
     }
 
     /// Whether the paper has a connection: it speaks of curvature, or declares a metric or a covariant derivative.

@@ -231,7 +231,9 @@ pub(crate) fn contracted(product: &Product, at: usize, metric: &Piece) -> Vec<(P
     let [one, two] = metric.made.slots.as_slice() else { return out };
     for (joined, other) in [(one, two), (two, one)] {
         let Some(letter) = joined.letter().filter(|letter| product.count(letter) == 2) else { continue };
-        for (number, piece) in product.pieces.iter().enumerate().filter(|(number, _)| *number != at) {
+        // A connection with its first index lowered is another kernel.
+        let others = product.pieces.iter().enumerate().filter(|(number, _)| *number != at);
+        for (number, piece) in others.filter(|(_, piece)| piece.made.letter != "\\Gamma") {
             let slot = piece.made.slots.iter().position(|slot| slot.letter() == Some(letter));
             let Some((slot, filled)) = slot.and_then(|slot| Some((slot, piece.made.slots.get(slot)?))) else {
                 continue;
@@ -249,12 +251,15 @@ pub(crate) fn contracted(product: &Product, at: usize, metric: &Piece) -> Vec<(P
     out
 }
 
-/// Whether the ends of a sum may change their levels: not under a partial derivative, and not for capitals.
+/// Whether the ends of a sum may change their levels: not where something with slots stands under a partial
+/// derivative, and not for capitals. It is asked of the whole product, so that it is the same for terms that are
+/// compared.
 fn moves(product: &Product, letter: &CompactString) -> bool {
-    let partial = |piece: &Piece| piece.made.slots.iter().any(|slot| slot.origin == Origin::Partial);
-    let under = |slot: &UsedSlot| slot.origin == Origin::Own && slot.letter() == Some(letter);
-    let held = product.pieces.iter().any(|piece| partial(piece) && piece.made.slots.iter().any(under));
-    !held && class_of(letter) != LetterClass::Capital
+    let held = |piece: &Piece| {
+        let partial = piece.made.slots.iter().any(|slot| slot.origin == Origin::Partial);
+        partial && piece.made.own_slots().next().is_some()
+    };
+    !product.pieces.iter().any(held) && class_of(letter) != LetterClass::Capital
 }
 
 /// The number of a name in a table, which grows.

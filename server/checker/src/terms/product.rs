@@ -384,26 +384,38 @@ impl Draft {
     }
 }
 
+/// A bracket that is not closed yet.
+struct OpenBracket {
+    held: Bracketed,
+    level: Level,
+    /// Whether a bar has been opened in it.
+    barred: bool,
+}
+
 /// Brackets over the slots of all pieces, in the order written; nothing if they do not match.
 fn brackets(pieces: &[Piece]) -> Option<Vec<Bracketed>> {
-    let mut open: Vec<(Bracketed, bool)> = Vec::new();
+    let mut open: Vec<OpenBracket> = Vec::new();
     let mut out = Vec::new();
     for (number, piece) in pieces.iter().enumerate() {
         for mark in &piece.made.marks {
             match mark {
                 // `[a|[b|c]d]`: which letters the outer bracket leaves out is not plain.
-                Mark::Open(_) if open.last().is_some_and(|(_, barred)| *barred) => return None,
-                Mark::Open(sign) => open.push((Bracketed { antisymmetric: *sign == '[', slots: Vec::new() }, false)),
+                Mark::Open(..) if open.last().is_some_and(|bracket| bracket.barred) => return None,
+                Mark::Open(sign, level) => {
+                    let held = Bracketed { antisymmetric: *sign == '[', slots: Vec::new() };
+                    open.push(OpenBracket { held, level: *level, barred: false });
+                }
                 Mark::Bar => {
-                    let (_, barred) = open.last_mut()?;
-                    *barred = !*barred;
+                    let bracket = open.last_mut()?;
+                    bracket.barred = !bracket.barred;
                 }
                 Mark::Slot(slot) => {
-                    if let Some((bracket, false)) = open.last_mut() {
-                        bracket.slots.push((number, *slot));
+                    let level = piece.made.slots.get(*slot).map(|slot| slot.level);
+                    if let Some(bracket) = open.last_mut().filter(|one| !one.barred && Some(one.level) == level) {
+                        bracket.held.slots.push((number, *slot));
                     }
                 }
-                Mark::Close => out.push(open.pop()?.0),
+                Mark::Close => out.push(open.pop()?.held),
             }
         }
     }

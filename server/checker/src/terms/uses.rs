@@ -50,8 +50,8 @@ pub struct UsedSlot {
 pub enum Mark {
     /// A slot, by its position in the use.
     Slot(usize),
-    /// `(` or `[`.
-    Open(char),
+    /// `(` or `[`, on the level on which it is written: it holds slots of that level alone.
+    Open(char, Level),
     /// `)` or `]`.
     Close,
     /// `|`: what stands between two of them takes no part.
@@ -173,7 +173,7 @@ fn take_script(made: &mut Use, script: &Script, eyes: &Eyes<'_>, flip: bool) {
             ItemKind::Comma => origin = Origin::Partial,
             ItemKind::Semicolon => origin = Origin::Covariant,
             ItemKind::Bar => made.marks.push(Mark::Bar),
-            ItemKind::Open(sign @ ('(' | '[')) => made.marks.push(Mark::Open(*sign)),
+            ItemKind::Open(sign @ ('(' | '[')) => made.marks.push(Mark::Open(*sign, level)),
             ItemKind::Close(')' | ']') => made.marks.push(Mark::Close),
             _ => made.unread = true,
         }
