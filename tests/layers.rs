@@ -46,7 +46,26 @@ const MODULES: &[(&str, Road)] = &[
             ("write", &["span", "tree", "vocabulary"]),
         ],
     ),
-    ("server/algebra", &[("draws", &[]), ("field", &["draws"]), ("rational", &["draws", "field"])]),
+    (
+        "server/algebra",
+        &[
+            ("draws", &[]),
+            ("trouble", &[]),
+            ("field", &["draws"]),
+            ("rational", &["draws", "field"]),
+            ("number", &["draws", "trouble", "field", "rational"]),
+            ("jet", &["trouble", "field", "number", "draws", "sample"]),
+            ("tensor", &["trouble", "field", "number", "jet", "draws", "sample"]),
+            ("contraction", &["trouble", "field", "number", "jet", "tensor", "draws", "sample"]),
+            ("symbols", &["trouble", "number", "jet", "tensor"]),
+            ("matrix", &["trouble", "field", "number", "jet", "tensor", "contraction", "symbols", "draws", "sample"]),
+            ("sample", &["draws", "trouble", "field", "number", "jet", "tensor", "matrix"]),
+            (
+                "geometry",
+                &["trouble", "field", "number", "jet", "tensor", "contraction", "symbols", "matrix", "draws", "sample"],
+            ),
+        ],
+    ),
 ];
 
 /// What only the application does. A path breaks the law if these segments stand in it side by side.
