@@ -50,7 +50,7 @@ pub struct Geometry<N> {
 }
 
 impl<N: Number> Geometry<N> {
-    /// Of a metric `g_{ij}`: `Shape` unless it is symmetric with one row for each base variable, `ZeroDivisor` if
+    /// Of a metric `g_{ij}`, its rows and columns being the coordinates in order: `Shape` unless it is symmetric with one row for each base variable, `ZeroDivisor` if
     /// its determinant is 0 at the point.
     pub fn new(metric: Tensor<N>, signs: Signs) -> Outcome<Self> {
         let dimension = metric.ring().variables();

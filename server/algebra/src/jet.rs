@@ -24,7 +24,7 @@ use std::borrow::Cow;
 use std::sync::Arc;
 
 pub(crate) use levels::Pair;
-pub use ring::{MONOMIALS_BUDGET, Order, Ring, Variable};
+pub use ring::{MONOMIALS_BUDGET, Order, Ring, VARIABLES_BUDGET, Variable};
 
 use crate::number::{Number, at};
 use crate::trouble::{Outcome, Trouble};

@@ -8,12 +8,12 @@
 //! Source: Faddeev and Sominsky (1949) after LeVerrier (1840), as in Gantmacher, "The Theory of Matrices",
 //! volume 1, chapter IV (from memory).
 
-use crate::contraction::contract;
+use crate::contraction::{Factor, MULTIPLICATIONS_BUDGET, contract, planned};
 use crate::jet::Jet;
 use crate::number::Number;
 use crate::symbols::delta;
 use crate::tensor::Tensor;
-use crate::trouble::{Outcome, Trouble};
+use crate::trouble::{Budget, Outcome, Trouble};
 
 /// What the method of Faddeev and LeVerrier gives of a matrix `A`.
 #[derive(Clone, Debug)]
@@ -26,9 +26,15 @@ pub struct Characteristic<N> {
     pub determinant: Jet<N>,
 }
 
-/// The characteristic polynomial, the adjugate and the determinant; `Shape` for what is no square matrix.
+/// The characteristic polynomial, the adjugate and the determinant; `Shape` for what is no square matrix, a budget
+/// if the products together pass `contraction::MULTIPLICATIONS_BUDGET`.
 pub fn characteristic<N: Number>(matrix: &Tensor<N>) -> Outcome<Characteristic<N>> {
     let size = side(matrix)?;
+    let product: [Factor<N>; 2] = [(matrix, &[0, 1]), (matrix, &[1, 2])];
+    let cost = planned(&product, &[0, 2])?.cost().multiplications;
+    if cost.saturating_mul(size as u64) > MULTIPLICATIONS_BUDGET {
+        return Err(Trouble::Budget(Budget::Multiplications));
+    }
     let unit = delta(matrix.ring(), size)?.truncated(matrix.order())?;
     let mut coefficients = vec![Jet::constant(matrix.ring(), N::ONE).truncated(matrix.order())?];
     let mut adjugate = unit.clone();

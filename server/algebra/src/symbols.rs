@@ -4,8 +4,8 @@ use std::sync::Arc;
 
 use crate::jet::Ring;
 use crate::number::Number;
-use crate::tensor::Tensor;
-use crate::trouble::{Outcome, Trouble};
+use crate::tensor::{SLOTS_BUDGET, Tensor};
+use crate::trouble::{Budget, Outcome, Trouble};
 
 /// The Kronecker delta: 1 where both indices are equal.
 pub fn delta<N: Number>(ring: &Arc<Ring>, dimension: usize) -> Outcome<Tensor<N>> {
@@ -16,7 +16,7 @@ pub fn delta<N: Number>(ring: &Arc<Ring>, dimension: usize) -> Outcome<Tensor<N>
 /// them, `+1` or `-1` where the lower indices are an even or odd permutation of distinct upper ones (Schouten,
 /// "Ricci-Calculus", 1954, chapter I; from memory).
 pub fn generalised_delta<N: Number>(ring: &Arc<Ring>, dimension: usize, count: usize) -> Outcome<Tensor<N>> {
-    let slots = count.checked_mul(2).ok_or(Trouble::Shape)?;
+    let slots = within_budget(count.saturating_mul(2))?;
     Tensor::from_numbers(ring, &vec![dimension; slots], |component| {
         let (upper, lower) = component.split_at(count.min(component.len()));
         permutation_sign(upper, lower)
@@ -25,8 +25,13 @@ pub fn generalised_delta<N: Number>(ring: &Arc<Ring>, dimension: usize, count: u
 
 /// The permutation symbol with as many slots as dimensions: 1 at `(0, 1, .., n - 1)`, antisymmetric.
 pub fn epsilon<N: Number>(ring: &Arc<Ring>, dimension: usize) -> Outcome<Tensor<N>> {
-    let ordered: Vec<usize> = (0..dimension).collect();
+    let ordered: Vec<usize> = (0..within_budget(dimension)?).collect();
     Tensor::from_numbers(ring, &vec![dimension; dimension], |component| permutation_sign(&ordered, component))
+}
+
+/// So many slots, if an array may have them; asked before a list of their ranges is made.
+fn within_budget(slots: usize) -> Outcome<usize> {
+    if slots > SLOTS_BUDGET { Err(Trouble::Budget(Budget::Slots)) } else { Ok(slots) }
 }
 
 /// The sign of the permutation that leads from one list of distinct numbers to the other; 0 if there is none.

@@ -27,6 +27,9 @@ use crate::trouble::{Budget, Outcome, Trouble};
 /// The most numbers of one array, components times coefficients: 32 MB of residues.
 pub const NUMBERS_BUDGET: usize = 1 << 22;
 
+/// The most slots of one array.
+pub const SLOTS_BUDGET: usize = 32;
+
 /// A dense array of jets.
 ///
 /// Invariant: every length is positive, the order is covered by the highest of the ring, and there are as many
@@ -351,8 +354,11 @@ impl<N: Number> Tensor<N> {
     }
 }
 
-/// How many numbers an array has; `Shape` if a slot has no range, a budget if they are too many.
+/// How many numbers an array has; `Shape` if a slot has no range, a budget if they or the slots are too many.
 pub(crate) fn size(lengths: &[usize], width: usize) -> Outcome<usize> {
+    if lengths.len() > SLOTS_BUDGET {
+        return Err(Trouble::Budget(Budget::Slots));
+    }
     if lengths.contains(&0) {
         return Err(Trouble::Shape);
     }

@@ -30,9 +30,14 @@ pub enum Trouble {
 pub enum Budget {
     /// Monomials of a ring of Taylor polynomials (`jet::MONOMIALS_BUDGET`).
     Monomials,
+    /// Variables of a ring of Taylor polynomials (`jet::VARIABLES_BUDGET`).
+    Variables,
+    /// Slots of one array (`tensor::SLOTS_BUDGET`).
+    Slots,
     /// Numbers of one array, components times coefficients (`tensor::NUMBERS_BUDGET`).
     Numbers,
-    /// Multiplications of numbers in one contraction (`contraction::MULTIPLICATIONS_BUDGET`, or the caller's).
+    /// Multiplications of numbers in one contraction or one characteristic polynomial
+    /// (`contraction::MULTIPLICATIONS_BUDGET`, or the caller's).
     Multiplications,
     /// Factors of one contraction (`contraction::FACTORS_BUDGET`).
     Factors,

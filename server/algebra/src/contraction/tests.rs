@@ -149,9 +149,11 @@ fn what_would_cost_too_much_is_not_begun() {
     let labels: Vec<[Label; 2]> = (0..65).map(|place| [2 * place, 2 * place + 1]).collect();
     let many: Vec<Factor<_>> = labels.iter().map(|labels| (&unit, &labels[..])).collect();
     assert_eq!(planned(&many, &[]).unwrap_err(), Trouble::Budget(Budget::Factors));
-    let wide = Tensor::<Exact>::zero(&ring, ring.top(), &[1; 129]).unwrap();
-    let labels: Vec<Label> = (0..129).collect();
-    assert_eq!(planned(&[(&wide, &labels)], &[]).unwrap_err(), Trouble::Budget(Budget::Labels));
+    let wide = Tensor::<Exact>::zero(&ring, ring.top(), &[1; 32]).unwrap();
+    let labels: Vec<Label> = (0..160).collect();
+    let many: Vec<Factor<_>> = labels.chunks(32).map(|labels| (&wide, labels)).collect();
+    assert_eq!(planned(&many, &[]).unwrap_err(), Trouble::Budget(Budget::Labels));
+    assert!(planned(&many[..4], &[]).is_ok());
 }
 
 #[test]

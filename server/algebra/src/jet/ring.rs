@@ -16,6 +16,12 @@ use crate::trouble::{Budget, Outcome, Trouble};
 /// The most monomials of a ring. Four variables to order 8 have 495; products are then 12 870 pairs.
 pub const MONOMIALS_BUDGET: usize = 500;
 
+/// The highest degree, so that an exponent is a byte.
+const DEGREE_BUDGET: usize = u8::MAX as usize;
+
+/// The most variables of a ring, base and small ones together.
+pub const VARIABLES_BUDGET: usize = 64;
+
 /// Up to which degrees a jet is known, inclusive: in the base variables together, in the small ones together.
 #[derive(Clone, Copy, Debug, Default, PartialEq, Eq, Hash)]
 pub struct Order {
@@ -84,10 +90,14 @@ impl Ring {
 
     /// The ring in `variables` coordinates and `smalls` small variables up to an order.
     ///
-    /// `Budget::Monomials` if that would be more than `MONOMIALS_BUDGET`.
+    /// A budget for more variables than `VARIABLES_BUDGET`, more monomials than `MONOMIALS_BUDGET`, and for a degree
+    /// above 255.
     pub fn with_small(variables: usize, smalls: usize, top: Order) -> Outcome<Arc<Self>> {
+        if variables.saturating_add(smalls) > VARIABLES_BUDGET {
+            return Err(Trouble::Budget(Budget::Variables));
+        }
         let count = count(variables, top.base).zip(count(smalls, top.small)).and_then(|(a, b)| a.checked_mul(b));
-        if count.is_none_or(|count| count > MONOMIALS_BUDGET) {
+        if count.is_none_or(|count| count > MONOMIALS_BUDGET) || top.base.max(top.small) > DEGREE_BUDGET {
             return Err(Trouble::Budget(Budget::Monomials));
         }
         let mut monomials: Vec<Monomial> = Vec::new();

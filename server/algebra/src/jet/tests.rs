@@ -7,6 +7,7 @@ use crate::draws::Draws;
 use crate::field::{Complex, FIRST, Residue, SECOND};
 use crate::number::Exact;
 use crate::sample;
+use crate::trouble::Budget;
 
 /// States one law for residues and for fractions.
 macro_rules! law {
@@ -313,9 +314,16 @@ fn jets_of_different_rings_do_not_mix() {
 #[test]
 fn rings_are_within_their_budget() {
     assert_eq!(Ring::new(4, 8).unwrap().width(Order::of_base(8)), 495);
-    for (variables, degree) in [(4, 9), (1000, 2), (usize::MAX, 3), (3, usize::MAX)] {
-        assert_eq!(Ring::new(variables, degree).unwrap_err(), Trouble::Budget(crate::trouble::Budget::Monomials));
+    let refused = |variables, degree| Ring::new(variables, degree).unwrap_err();
+    for (variables, degree) in [(4, 9), (64, 2), (3, usize::MAX), (1, 256), (0, 256)] {
+        assert_eq!(refused(variables, degree), Trouble::Budget(Budget::Monomials));
     }
+    for (variables, degree) in [(65, 0), (usize::MAX, 0), (usize::MAX, 3)] {
+        assert_eq!(refused(variables, degree), Trouble::Budget(Budget::Variables));
+    }
+    let x = Jet::variable(&Ring::new(1, 255).unwrap(), Variable::Base(0), Residue::<FIRST>::ONE).unwrap();
+    let highest = (0..255).fold(x.power(255, 1).unwrap(), |jet, _| jet.derivative(Variable::Base(0)).unwrap());
+    assert_eq!(highest.value(), (1..=255).fold(Residue::ONE, |product, factor| product * Residue::new(factor)));
     assert_eq!(Ring::new(0, 3).unwrap().width(Order::of_base(3)), 1);
 }
 

@@ -220,6 +220,14 @@ fn traces<N: Number>() {
 }
 
 #[test]
+fn a_matrix_that_is_too_large_is_refused() {
+    let ring = Ring::new(1, 0).unwrap();
+    let zero = |size| Tensor::<Residue<FIRST>>::zero(&ring, ring.top(), &[size, size]).unwrap();
+    assert_eq!(determinant(&zero(120)).unwrap_err(), Trouble::Budget(Budget::Multiplications));
+    assert!(determinant(&zero(20)).unwrap().vanishes().unwrap());
+}
+
+#[test]
 fn what_is_no_square_matrix_is_refused() {
     let ring = ring();
     for lengths in [&[2, 3][..], &[2], &[2, 2, 2], &[]] {

@@ -185,6 +185,8 @@ fn arrays_are_within_their_budget() {
     assert_eq!(zero(&[4; 11]), Ok(NUMBERS_BUDGET));
     assert_eq!(zero(&[4; 12]), Err(Trouble::Budget(Budget::Numbers)));
     assert_eq!(zero(&[usize::MAX, usize::MAX]), Err(Trouble::Budget(Budget::Numbers)));
+    assert_eq!(zero(&[1; SLOTS_BUDGET]), Ok(1));
+    assert_eq!(zero(&[1; SLOTS_BUDGET + 1]), Err(Trouble::Budget(Budget::Slots)));
     assert_eq!(zero(&[3, 0]), Err(Trouble::Shape));
     let large = Tensor::<Exact>::zero(&ring, ring.top(), &[4; 6]).unwrap();
     assert_eq!(large.outer(&large).unwrap_err(), Trouble::Budget(Budget::Numbers));

@@ -1,6 +1,7 @@
 //! Delta, generalised delta and epsilon, as symbols and as tensors.
 
 use super::*;
+use crate::trouble::Budget;
 
 law!(epsilon_tensors_are_constant_and_inverse_to_each_other, epsilon_tensors);
 law!(products_of_epsilons_are_generalised_deltas, epsilon_products);
@@ -96,9 +97,11 @@ fn the_generalised_delta_loses_a_pair_by_a_trace() {
 #[test]
 fn symbols_are_within_the_budget_of_numbers() {
     let ring = Ring::new(1, 0).unwrap();
-    let budget = Trouble::Budget(crate::trouble::Budget::Numbers);
+    let budget = Trouble::Budget(Budget::Numbers);
+    let slots = Trouble::Budget(Budget::Slots);
     assert_eq!(epsilon::<Plain>(&ring, 8).unwrap_err(), budget);
-    assert_eq!(generalised_delta::<Plain>(&ring, 10, usize::MAX).unwrap_err(), Trouble::Shape);
-    assert_eq!(generalised_delta::<Plain>(&ring, 10, 30).unwrap_err(), budget);
+    assert_eq!(generalised_delta::<Plain>(&ring, 10, usize::MAX).unwrap_err(), slots);
+    assert_eq!(generalised_delta::<Plain>(&ring, 10, 4).unwrap_err(), budget);
+    assert_eq!(epsilon::<Plain>(&ring, usize::MAX).unwrap_err(), slots);
     assert_eq!(epsilon::<Plain>(&ring, 7).unwrap().size(), 823_543);
 }
