@@ -42,6 +42,7 @@ law!(derivatives_of_the_inverse_metric, inverse_metric);
 law!(covariant_derivatives_obey_the_product_rule, product_rule);
 law!(second_covariant_derivatives_of_a_scalar_commute, scalar_hessian);
 law!(commuted_covariant_derivatives_give_the_curvature, ricci_identity);
+law!(a_connection_with_torsion_adds_a_derivative_along_it, torsion);
 law!(the_cyclic_identity, cyclic_identity);
 law!(the_differential_bianchi_identity, bianchi_identity);
 law!(the_einstein_tensor_has_no_divergence, contracted_bianchi);
@@ -170,6 +171,28 @@ fn ricci_identity<N: Number>(dimension: usize, minus: usize) {
     assert!(!on_vector.vanishes().unwrap());
     let on_covector = contract(&[(riemann, &[4, 1, 2, 3]), (&field, &[4])], &[1, 2, 3]).unwrap();
     same(&commutator(&field, Level::Down), &on_covector.scaled(-N::ONE));
+}
+
+/// `[D_k, D_l] V^i = R^i_{jkl} V^j + (G^m_{kl} - G^m_{lk}) D_m V^i` for a connection without symmetry, and
+/// `D_k (V^i W_i) = d_k (V^i W_i)`.
+fn torsion<N: Number>(dimension: usize, minus: usize) {
+    let space = space::<N>(dimension, minus, 2);
+    let connection = field(&space, 3, &[], 15);
+    let (vector, covector) = (field(&space, 1, &[], 16), field(&space, 1, &[], 17));
+    let first = covariant(&vector, &[Level::Up], &connection).unwrap();
+    let second = covariant(&first, &[Level::Up, Level::Down], &connection).unwrap().swapped(1, 2).unwrap();
+    let commutator = second.minus(&second.swapped(1, 2).unwrap()).unwrap();
+    let riemann = curvature(&connection).unwrap();
+    let turning = contract(&[(&riemann, &[0, 4, 2, 3]), (&vector, &[4])], &[0, 2, 3]).unwrap();
+    let torsion = connection.minus(&connection.swapped(1, 2).unwrap()).unwrap();
+    let along = contract(&[(&torsion, &[4, 2, 3]), (&first, &[0, 4])], &[0, 2, 3]).unwrap();
+    same(&commutator, &turning.plus(&along).unwrap());
+    assert!(!along.vanishes().unwrap());
+    let change = covariant(&covector, &[Level::Down], &connection).unwrap();
+    let product = [(&first, &covector, [0, 1]), (&change, &vector, [0, 1])]
+        .map(|(change, other, labels)| contract(&[(change, &labels), (other, &[0])], &[1]).unwrap());
+    let scalar = contract(&[(&vector, &[0]), (&covector, &[0])], &[]).unwrap();
+    same(&sum(&product), &scalar.gradient().unwrap());
 }
 
 fn cyclic_identity<N: Number>(dimension: usize, minus: usize) {

@@ -46,12 +46,8 @@ fn draw<N: Number>(ring: &Arc<Ring>, size: usize, draws: &mut Draws) -> Tensor<N
 
 /// A matrix with a determinant that does not vanish at the point.
 fn regular<N: Number>(ring: &Arc<Ring>, size: usize, draws: &mut Draws) -> Tensor<N> {
-    loop {
-        let matrix = draw::<N>(ring, size, draws);
-        if !determinant(&matrix).unwrap().value().is_zero() {
-            return matrix;
-        }
-    }
+    let regular = |matrix: &Tensor<N>| !determinant(matrix).unwrap().value().is_zero();
+    (0..100).map(|_| draw::<N>(ring, size, draws)).find(regular).unwrap()
 }
 
 /// A matrix whose value at the point has the rank `rank`, while its derivatives are arbitrary.
