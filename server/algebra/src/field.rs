@@ -57,7 +57,7 @@ impl<const P: u64> Residue<P> {
     /// The order of the group of positive residues, a prime.
     pub const HALF: u64 = (P - 1) / 2;
 
-    /// How far `P` lies below 2^61; also refuses a modulus that the folding in `mul` does not fit.
+    /// How far `P` lies below 2^61; also refuses a modulus that the folding of products does not fit.
     const GAP: u64 = {
         assert!(P < 1 << WIDTH && (1 << WIDTH) - P < 1 << 12 && P % 4 == 3);
         (1 << WIDTH) - P
@@ -71,6 +71,14 @@ impl<const P: u64> Residue<P> {
     /// The residue of any integer.
     pub const fn from_integer(number: i128) -> Self {
         Self(number.rem_euclid(P as i128) as u64)
+    }
+
+    /// The residue of any natural number of 128 bits, a product or a sum of products among them, without a
+    /// division: folded at 2^61 = GAP mod P, twice, which leaves it below 2^80, then below 2 P.
+    pub const fn from_wide(number: u128) -> Self {
+        let once = (number & ((1 << WIDTH) - 1)) + (number >> WIDTH) * Self::GAP as u128;
+        let twice = ((once & ((1 << WIDTH) - 1)) + (once >> WIDTH) * Self::GAP as u128) as u64;
+        Self(if twice >= P { twice - P } else { twice })
     }
 
     /// The number `0 <= x < P`.
@@ -195,11 +203,8 @@ impl<const P: u64> Neg for Residue<P> {
 impl<const P: u64> Mul for Residue<P> {
     type Output = Self;
 
-    /// Folds the product at 2^61 = GAP mod P, twice: below 2^122, then below 2^74, then below 2 P.
     fn mul(self, other: Self) -> Self {
-        let fold = |x: u128| (x & ((1 << WIDTH) - 1)) + (x >> WIDTH) * u128::from(Self::GAP);
-        let folded = fold(fold(u128::from(self.0) * u128::from(other.0))) as u64;
-        Self(if folded >= P { folded - P } else { folded })
+        Self::from_wide(u128::from(self.0) * u128::from(other.0))
     }
 }
 

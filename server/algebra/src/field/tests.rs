@@ -66,6 +66,9 @@ fn field_axioms<const P: u64>() {
 fn folding<const P: u64>() {
     let mut draws = Draws::from_seed(2);
     let mut pairs: Vec<_> = (0..TRIES).map(|_| (draws.bits() % P, draws.bits() % P)).collect();
+    for wide in [0, 1, u128::MAX, u128::MAX - 1, 1 << 127, (u128::from(P) << 66) - 1, u128::from(P) << 66] {
+        assert_eq!(Residue::<P>::from_wide(wide).value(), (wide % u128::from(P)) as u64);
+    }
     let edges = [0, 1, 2, P / 2, P - 2, P - 1];
     pairs.extend(edges.iter().flat_map(|&a| edges.iter().map(move |&b| (a, b))));
     for (a, b) in pairs {
