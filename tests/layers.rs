@@ -64,6 +64,7 @@ const MODULES: &[(&str, Road)] = &[
                 "geometry",
                 &["trouble", "field", "number", "jet", "tensor", "contraction", "symbols", "matrix", "draws", "sample"],
             ),
+            ("expression", &["contraction", "geometry", "rational", "sample"]),
             ("symmetry", &["draws"]),
             ("normal_form", &["draws", "rational", "symmetry"]),
         ],

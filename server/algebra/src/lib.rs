@@ -10,7 +10,8 @@
 //! - `tensor`, `contraction`, `matrix`: arrays of jets with slots, and their products, planned before they are
 //!   evaluated;
 //! - `symbols`: delta, generalised delta and epsilon;
-//! - `geometry`, `sample`: what follows from a metric, and random fields with symmetries.
+//! - `geometry`, `sample`: what follows from a metric, and random fields with symmetries;
+//! - `expression`: claims as data, over fields, metrics and derivatives.
 //!
 //! Symbols are judged without numbers by `symmetry`, groups of signed permutations of the slots of a tensor, and
 //! `normal_form`, the one form that a monomial has among all those that symmetries and renaming make of it.
@@ -44,6 +45,7 @@
 
 pub mod contraction;
 pub mod draws;
+pub mod expression;
 pub mod field;
 pub mod geometry;
 pub mod jet;

@@ -9,7 +9,7 @@ use crate::sketch::{Op, Place, Sketch};
 /// Whether a rule about terms could speak in a statement.
 pub fn asks_for_terms(sketch: &Sketch, judged: &Judged<'_>) -> bool {
     !judged.prices.declared.meanings.is_empty()
-        || joins_twice(sketch)
+        || has_antisymmetric(sketch) && joins_twice(sketch)
         || has_brackets(sketch, judged.text)
         || has_like_terms(sketch)
         || derives_no_tensor(sketch)
@@ -19,6 +19,18 @@ pub fn asks_for_terms(sketch: &Sketch, judged: &Judged<'_>) -> bool {
 /// The kernel of a place.
 fn kernel<'s>(sketch: &'s Sketch, place: &Place) -> &'s str {
     sketch.units.get(place.unit as usize).map_or("", |unit| unit.kernel_letter.as_str())
+}
+
+/// Whether a kernel is antisymmetric by custom: without one, and without brackets and declarations, nothing vanishes.
+fn has_antisymmetric(sketch: &Sketch) -> bool {
+    sketch.places.iter().any(|place| {
+        let slots = sketch.forms.get(place.form as usize).map_or(0, |(_, up, down)| up.saturating_add(*down));
+        match kernel(sketch, place) {
+            "\\epsilon" | "\\varepsilon" => slots > 2,
+            "R" => slots == 4,
+            _ => false,
+        }
+    })
 }
 
 /// Whether two uses of kernels share two letters, or one holds a letter twice; derivatives count with one another.
@@ -86,5 +98,5 @@ fn derives_no_tensor(sketch: &Sketch) -> bool {
 /// A metric beside partial derivatives.
 fn moves_metric(sketch: &Sketch) -> bool {
     let partial = sketch.places.iter().filter(|place| kernel(sketch, place) == "\\partial").count();
-    partial > 1 && sketch.places.iter().any(|place| kernel(sketch, place) == "g")
+    partial > 1 && sketch.sides.len() > 1 && sketch.places.iter().any(|place| kernel(sketch, place) == "g")
 }

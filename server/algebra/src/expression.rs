@@ -1,0 +1,296 @@
+//! The typed expression that is evaluated, and the world that its names stand in.
+//!
+//! An expression is a tree over fields, metrics and derivatives with labelled slots. Labels are scoped by products: in
+//! a product, and in a single factor, a label that stands twice is summed; every node has the labels that are left as
+//! its free ones. So a dummy inside never meets the same label outside, and nobody renames anything. A definition is
+//! a body with free labels in order; it is evaluated once and then stands for a tensor.
+//!
+//! Nothing is evaluated here (`evaluation.rs`), and nothing is decided (`verdict.rs`).
+
+use crate::contraction::Label;
+use crate::geometry::{Level, Signs};
+use crate::rational::Rational;
+use crate::sample::SlotSymmetry;
+
+/// What fills a slot.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Hash)]
+pub enum Filling {
+    /// A label, free or summed.
+    Label(Label),
+    /// A member of the slot's family, from 0.
+    Member(usize),
+}
+
+/// A slot in use.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Hash)]
+pub struct Index {
+    /// What fills it.
+    pub filling: Filling,
+    /// Its level; `Inert` where levels do not matter.
+    pub level: Level,
+    /// Its family, as an index into `World::families`.
+    pub family: usize,
+}
+
+/// An expression.
+#[derive(Clone, Debug, PartialEq)]
+pub enum Expression {
+    /// An exact number.
+    Number(Rational),
+    /// The imaginary unit.
+    Imaginary,
+    /// The dimension of a family, as a number.
+    Dimension(usize),
+    /// A field with as many slots as it has.
+    Field {
+        /// An index into `World::fields`.
+        field: usize,
+        /// Its slots. On another level than the field's own they are moved by the metric of their family.
+        slots: Vec<Index>,
+    },
+    /// A definition, with its free labels in the order of `Definition::free`.
+    Defined {
+        /// An index into `World::definitions`.
+        definition: usize,
+        /// Its slots.
+        slots: Vec<Index>,
+    },
+    /// The coordinate `x^i` of a family that has coordinates.
+    Coordinate(Index),
+    /// Kronecker's delta.
+    Delta([Index; 2]),
+    /// A metric, its inverse or, on mixed levels, the delta.
+    Metric {
+        /// An index into `World::metrics`.
+        metric: usize,
+        /// Its slots.
+        slots: [Index; 2],
+    },
+    /// The determinant of a metric.
+    Determinant(usize),
+    /// The epsilon with as many slots as its family has members; of a metric it is a tensor, else a symbol.
+    Epsilon {
+        /// The metric of the tensor.
+        metric: Option<usize>,
+        /// Its slots.
+        slots: Vec<Index>,
+    },
+    /// The Christoffel symbol of a metric: the first slot is the one that may be up.
+    Christoffel {
+        /// An index into `World::metrics`.
+        metric: usize,
+        /// Its slots.
+        slots: [Index; 3],
+    },
+    /// A tensor of curvature.
+    Curvature {
+        /// An index into `World::metrics`.
+        metric: usize,
+        /// Which.
+        kind: Curvature,
+        /// Its slots: four, two or none. On another level than the natural one they are moved.
+        slots: Vec<Index>,
+    },
+    /// A sum; none of its terms is missing a free label of another.
+    Sum(Vec<Self>),
+    /// A product.
+    Product(Vec<Self>),
+    /// A scalar divided into something.
+    Quotient(Box<Self>, Box<Self>),
+    /// A rational power of a scalar.
+    Power(Box<Self>, Rational),
+    /// `|a|` of a scalar.
+    Magnitude(Box<Self>),
+    /// A function of a scalar.
+    Function(Function, Box<Self>),
+    /// A partial derivative.
+    Partial(Index, Box<Self>),
+    /// A covariant derivative: it sees the free slots of what it acts on, with their levels.
+    Covariant {
+        /// An index into `World::metrics`.
+        metric: usize,
+        /// The slot of the derivative.
+        index: Index,
+        /// What it acts on.
+        of: Box<Self>,
+    },
+    /// The change to first order in a parameter: a variation, or a derivative along a parameter. Fields that vary have
+    /// an independent random change.
+    Vary {
+        /// An index into `World::parameters`.
+        parameter: usize,
+        /// What is varied.
+        of: Box<Self>,
+    },
+    /// The determinant of an expression with two free labels, row and column.
+    Det(Box<Self>, [Label; 2]),
+    /// The inverse of an expression with two free labels, row and column, as a matrix with the given slots.
+    Inverse(Box<Self>, [Label; 2], [Index; 2]),
+    /// The adjugate of an expression with two free labels, as a matrix with the given slots.
+    Adjugate(Box<Self>, [Label; 2], [Index; 2]),
+}
+
+/// Tensors of curvature, with the signs of `World::signs`.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Hash)]
+pub enum Curvature {
+    /// `R^i_{jkl}`, natural level up, down, down, down.
+    Riemann,
+    /// `R_{ij}`.
+    Ricci,
+    /// `R`.
+    Scalar,
+    /// `G_{ij}`.
+    Einstein,
+    /// `C^i_{jkl}`.
+    Weyl,
+}
+
+/// Elementary functions.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Hash)]
+pub enum Function {
+    /// The exponential.
+    Exp,
+    /// The natural logarithm.
+    Log,
+    /// The sine.
+    Sin,
+    /// The cosine.
+    Cos,
+}
+
+/// What the names of an expression stand for.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct World {
+    /// Index families.
+    pub families: Vec<Family>,
+    /// Metrics.
+    pub metrics: Vec<Metric>,
+    /// Fields.
+    pub fields: Vec<Field>,
+    /// Definitions; a body refers to earlier ones only.
+    pub definitions: Vec<Definition>,
+    /// Names of parameters of variations and of derivatives along curves.
+    pub parameters: Vec<String>,
+    /// Signs of the curvature.
+    pub signs: Signs,
+    /// Which dimensions are tried; one, where it is fixed.
+    pub dimensions: Vec<usize>,
+    /// What is known besides, imposed on every draw.
+    pub givens: Vec<Given>,
+}
+
+/// An index family.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub struct Family {
+    /// How many members it has.
+    pub size: Size,
+    /// The base variable that is its first coordinate; nothing for a family that has no coordinates.
+    pub coordinates: Option<usize>,
+    /// The metric that moves its indices.
+    pub metric: Option<usize>,
+}
+
+/// A number of members.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Size {
+    /// As many.
+    Fixed(usize),
+    /// The dimension that is tried, less a number.
+    Dimension(usize),
+}
+
+/// A metric of a family.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Metric {
+    /// As it is called.
+    pub name: String,
+    /// Its family, as an index into `World::families`.
+    pub family: usize,
+    /// What it is.
+    pub values: MetricValues,
+    /// How many signs of its signature are negative.
+    pub minus: usize,
+    /// Whether it changes with a parameter of variation.
+    pub varies: bool,
+}
+
+/// The components of a metric.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub enum MetricValues {
+    /// Arbitrary functions.
+    Arbitrary,
+    /// Arbitrary constants.
+    Constant,
+    /// Diagonal, `1` and `-1`.
+    Flat,
+    /// Those of a definition with two slots, both down.
+    Defined(usize),
+}
+
+/// A field.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Field {
+    /// As it is called.
+    pub name: String,
+    /// Family and own level of each slot.
+    pub slots: Vec<(usize, Level)>,
+    /// Signed exchanges of its slots.
+    pub symmetries: Vec<SlotSymmetry>,
+    /// Whether its trace by the metric of its family vanishes in its first two slots.
+    pub traceless: bool,
+    /// Whether it does not depend on position.
+    pub constant: bool,
+    /// Whether it is of first order in a common small parameter.
+    pub small: bool,
+    /// Whether it changes with the parameters of variation.
+    pub varies: bool,
+    /// Whether the author says what it is; if not, that a claim fails proves nothing.
+    pub known: bool,
+}
+
+/// A definition.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Definition {
+    /// As it is called.
+    pub name: String,
+    /// The slots of the left side in order; members are components that this body alone defines.
+    pub free: Vec<Index>,
+    /// The right side.
+    pub body: Expression,
+}
+
+/// Something that is known besides the claim.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Given {
+    /// As it is called in the text.
+    pub label: String,
+    /// The left side.
+    pub left: Expression,
+    /// The right side; none for 0.
+    pub right: Option<Expression>,
+}
+
+impl Expression {
+    /// Zero.
+    pub fn zero() -> Self {
+        Self::Number(Rational::ZERO)
+    }
+
+    /// The negative.
+    #[must_use]
+    pub fn negated(self) -> Self {
+        Self::Product(vec![Self::Number(-Rational::ONE), self])
+    }
+
+    /// The parts of which it is made.
+    pub fn parts(&self) -> Vec<&Self> {
+        match self {
+            Self::Sum(parts) | Self::Product(parts) => parts.iter().collect(),
+            Self::Quotient(over, under) => vec![over, under],
+            Self::Power(of, _) | Self::Magnitude(of) | Self::Function(_, of) | Self::Partial(_, of) => vec![of],
+            Self::Covariant { of, .. } | Self::Vary { of, .. } => vec![of],
+            Self::Det(of, _) | Self::Inverse(of, ..) | Self::Adjugate(of, ..) => vec![of],
+            _ => Vec::new(),
+        }
+    }
+}
