@@ -10,7 +10,7 @@ use crate::tensor::Tensor;
 use crate::trouble::{Outcome, Trouble};
 
 /// How a slot takes part in a covariant derivative.
-#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Hash)]
 pub enum Level {
     /// Contravariant: `+ G^i_{jk} T^j`.
     Up,
