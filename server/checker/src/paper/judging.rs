@@ -6,6 +6,7 @@ use indexwise_grammar::hosts::Host;
 use indexwise_grammar::read_region;
 use indexwise_grammar::span::Span;
 use indexwise_grammar::tree::{self, Formula};
+use rustc_hash::FxHashSet;
 
 use crate::conventions::inferred::Prices;
 use crate::finding::Finding;
@@ -118,9 +119,9 @@ impl Judge<'_> {
         let mut known =
             self.document.statements.iter().map(|statement| (statement.formula, statement.sketch.span)).peekable();
         for (number, formula) in read.document.formulas.iter().enumerate() {
-            let mut sketched = Vec::new();
+            let mut sketched = FxHashSet::default();
             while let Some((_, span)) = known.next_if(|(formula, _)| *formula <= number) {
-                sketched.push(span);
+                sketched.insert(span);
             }
             if skipped.contains(&number) {
                 continue;

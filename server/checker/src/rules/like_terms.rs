@@ -19,6 +19,8 @@ pub(super) const RULE: Rule = Rule {
 
 /// Pairs of one side from which the author writes a sum out to show what cancels.
 const WRITTEN_OUT: usize = 3;
+/// Products of one side that are compared with one another.
+const COMPARED: usize = 64;
 
 fn check(terms: &Flattened<'_>) -> Vec<Finding> {
     let sides = terms.sides.iter().enumerate();
@@ -28,7 +30,9 @@ fn check(terms: &Flattened<'_>) -> Vec<Finding> {
 fn like(terms: &Flattened<'_>, number: usize, side: &Side) -> Vec<Finding> {
     let mut out = Vec::new();
     let mut told: Vec<usize> = Vec::new();
-    for (at, later) in side.products.iter().enumerate().filter(|(_, product)| product.letters().next().is_some()) {
+    for (at, later) in
+        side.products.iter().enumerate().take(COMPARED).filter(|(_, product)| product.letters().next().is_some())
+    {
         let earlier = side.products.iter().take(at).find(|earlier| {
             earlier.term != later.term
                 && !told.contains(&earlier.term)

@@ -19,6 +19,9 @@ pub(super) const RULE: Rule = Rule {
     check: Check::Terms(check),
 };
 
+/// Products of a side that are compared with those of the other.
+const COMPARED: usize = 64;
+
 fn check(terms: &Flattened<'_>) -> Vec<Finding> {
     // Where the derivative of a metric or a connection stands too, the author has kept count.
     if terms.sides.iter().flat_map(|side| &side.products).any(|product| keeps_count(terms, product)) {
@@ -47,12 +50,12 @@ fn keeps_count(terms: &Flattened<'_>, product: &Product) -> bool {
 /// Products of a side with a metric outside of a derivative that stand on the other side with the index moved inside.
 fn moved(terms: &Flattened<'_>, outside: &Side, inside: &Side) -> Vec<Finding> {
     let mut out = Vec::new();
-    for product in &outside.products {
+    for product in outside.products.iter().take(COMPARED) {
         for (at, metric) in product.pieces.iter().enumerate().filter(|(_, piece)| is_metric(terms, piece)) {
             let held = contracted(product, at, metric).into_iter().filter(|(_, held)| *held);
             for (shorter, _) in held {
                 let same = |other: &&Product| terms.quotient(&shorter, other) == Some(Rational::ONE);
-                if let Some(other) = inside.products.iter().find(same) {
+                if let Some(other) = inside.products.iter().take(COMPARED).find(same) {
                     out.push(finding(terms, metric, other));
                 }
             }
