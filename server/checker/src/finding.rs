@@ -41,13 +41,45 @@ pub struct Finding {
     pub fixes: Vec<Fix>,
     /// The ledger of the statement, for the ledger view; nothing for findings that are not about balance.
     pub ledger: Option<Ledger>,
+    /// What was found out about a step; nothing for findings that are not about steps.
+    pub verdict: Option<StepVerdict>,
 }
 
 impl Finding {
     /// A finding that one sentence says in full: no further places, no fixes, no ledger.
     pub(crate) fn plain(rule: &'static str, severity: Severity, span: Span, message: String) -> Self {
-        Self { rule, severity, span, message, related: Vec::new(), fixes: Vec::new(), ledger: None }
+        Self { rule, severity, span, message, related: Vec::new(), fixes: Vec::new(), ledger: None, verdict: None }
     }
+}
+
+/// What was found out about a step.
+#[derive(Clone, Debug, Default, PartialEq, Eq)]
+pub struct StepVerdict {
+    /// "fails", "differs", "needs dimension", "undecided".
+    pub verdict: &'static str,
+    /// Dimensions in which the step holds.
+    pub holds: Vec<usize>,
+    /// Dimensions in which it does not.
+    pub fails: Vec<usize>,
+    /// Kernels of unknown meaning, and defaults, that it rests on.
+    pub assumptions: Vec<String>,
+    /// Numbers for which the sides differ.
+    pub counterexample: Option<Counterexample>,
+}
+
+/// Numbers that a person can check.
+#[derive(Clone, Debug, Default, PartialEq, Eq)]
+pub struct Counterexample {
+    /// The dimension.
+    pub dimension: usize,
+    /// Components that are not zero: `g_{11}` and `1 + 2 x_1`.
+    pub values: Vec<(String, String)>,
+    /// The free indices of the component, each with its value; none for a scalar.
+    pub component: Vec<(String, String)>,
+    /// The left side there, a fraction in lowest terms.
+    pub left: String,
+    /// The right side there.
+    pub right: String,
 }
 
 /// A further place that a finding speaks of.

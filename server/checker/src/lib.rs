@@ -14,5 +14,6 @@ pub mod paper;
 pub mod reading;
 pub mod rules;
 pub mod sketch;
+pub mod steps;
 pub mod symbols;
 pub mod terms;

@@ -26,7 +26,12 @@ mod script_swallows_factor;
 mod silence;
 mod slot_count;
 mod slot_order_unclear;
+mod step_fails;
+mod step_needs_dimension;
+mod step_not_shown;
+mod step_undecided;
 mod symmetry_not_shared;
+mod unknown_label;
 mod unread;
 mod unsummed_repeat;
 mod vanishing_bracket;
@@ -44,6 +49,11 @@ pub(crate) use convention_clash::convention_clash;
 pub(crate) use convention_unreadable::{convention_unreadable, convention_unreadable_name};
 pub(crate) use idle_allow::idle_allow;
 pub(crate) use missing_part::missing_part;
+pub(crate) use step_fails::step_fails;
+pub(crate) use step_needs_dimension::step_needs_dimension;
+pub(crate) use step_not_shown::step_not_shown;
+pub(crate) use step_undecided::step_undecided;
+pub(crate) use unknown_label::unknown_label;
 pub(crate) use unread::unread;
 
 /// What there is to know of a rule.
@@ -106,6 +116,11 @@ pub const RULES: &[Rule] = &[
     derivative_of_non_tensor::RULE,
     metric_moved_through_partial::RULE,
     like_terms::RULE,
+    step_fails::RULE,
+    step_needs_dimension::RULE,
+    step_not_shown::RULE,
+    step_undecided::RULE,
+    unknown_label::RULE,
     missing_part::RULE,
     convention_unreadable::RULE,
     convention_clash::RULE,

@@ -30,7 +30,7 @@ pub use asking::asks_for_terms;
 pub use flattened::Flattened;
 pub(crate) use monomials::contracted;
 pub use monomials::{Monomials, Zero};
-pub use product::{Bracketed, Piece, Product};
+pub use product::{Bracketed, Piece, Product, exact};
 
 /// What the reading of a statement knows of its letters, and what the document knows of its kernels.
 pub struct Eyes<'a> {

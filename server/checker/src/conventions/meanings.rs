@@ -52,6 +52,8 @@ pub struct Known {
     pub role: Option<Role>,
     /// The kinds that were declared of it.
     pub kinds: Vec<Kind>,
+    /// Whether its trace is said to vanish.
+    pub traceless: bool,
 }
 
 /// Slots that may be exchanged among one another, with a sign or without.
@@ -308,9 +310,7 @@ impl Meanings {
                     self.know(tensor).exchange(&positions, *antisymmetric);
                 }
             }
-            Sentence::Traceless(tensors) => tensors.iter().for_each(|tensor| {
-                self.know(tensor);
-            }),
+            Sentence::Traceless(tensors) => tensors.iter().for_each(|tensor| self.know(tensor).traceless = true),
             Sentence::Kind { tensors, kind } => {
                 for tensor in tensors {
                     let known = self.know(tensor);

@@ -52,6 +52,7 @@ fn check(judged: &Judged<'_>) -> Option<Report> {
         related: related.collect(),
         fixes: fixes(judged, &mends, if numbered { Err("it is only a hint") } else { clear_winner(&mends) }),
         ledger: Some(judged.view(std::slice::from_ref(&letter))),
+        verdict: None,
     };
     let mended = mends.into_iter().next().map(|mend| (mend.sketch, mend.choice));
     Some(Report { finding, mended })

@@ -51,6 +51,7 @@ fn check(judged: &Judged<'_>) -> Option<Report> {
         related: vec![Related { span: judged.span(first), message: "the other end".to_owned() }],
         fixes: fixes(judged, &mends, bulk),
         ledger: Some(judged.view(&[letter])),
+        verdict: None,
     };
     let mended = mends.into_iter().next().map(|mend| (mend.sketch, mend.choice));
     Some(Report { finding, mended })

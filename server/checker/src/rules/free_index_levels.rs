@@ -63,6 +63,7 @@ fn check(judged: &Judged<'_>) -> Option<Report> {
         }],
         fixes: fixes(judged, &mends, clear_winner(&mends)),
         ledger: Some(judged.view(&[letter])),
+        verdict: None,
     };
     let mended = mends.into_iter().next().map(|mend| (mend.sketch, mend.choice));
     Some(Report { finding, mended })

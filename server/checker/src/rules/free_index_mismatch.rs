@@ -42,6 +42,7 @@ fn check(judged: &Judged<'_>) -> Option<Report> {
         related: disagreement.related(judged, span),
         fixes: fixes(judged, &mends, bulk),
         ledger: Some(judged.view(&odd)),
+        verdict: None,
     };
     let mended = mends.into_iter().next().map(|mend| (mend.sketch, mend.choice));
     Some(Report { finding, mended })

@@ -33,6 +33,7 @@ fn check(judged: &Judged<'_>) -> Vec<Finding> {
                 related: vec![Related { span: place.span, message: format!("{} is an index here", shown(letter)) }],
                 fixes: Vec::new(),
                 ledger: None,
+                verdict: None,
             });
         }
     }

@@ -46,6 +46,7 @@ fn check(judged: &Judged<'_>) -> Option<Report> {
         related: related.map(|place| Related { span: judged.span(*place), message: "also here".to_owned() }).collect(),
         fixes: fixes(judged, &mends, bulk),
         ledger: Some(judged.view(&[letter])),
+        verdict: None,
     };
     let mended = mends.into_iter().next().map(|mend| (mend.sketch, mend.choice));
     Some(Report { finding, mended })

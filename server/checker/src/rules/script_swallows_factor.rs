@@ -38,6 +38,7 @@ fn check(judged: &Judged<'_>) -> Option<Report> {
             related: Vec::new(),
             fixes: vec![Fix { title: format!("Close the brace before {}", rest.of(text)), edits, bulk: Ok(()) }],
             ledger: Some(judged.view(&[])),
+            verdict: None,
         };
         return Some(Report { finding, mended: Some((sketch, choice)) });
     }

@@ -58,6 +58,7 @@ fn finding(judged: &Judged<'_>, letter: &CompactString, first: u32, second: u32)
         related: vec![Related { span: judged.span(first), message: "the first of the two".to_owned() }],
         fixes: Vec::new(),
         ledger: Some(judged.view(std::slice::from_ref(letter))),
+        verdict: None,
     }
 }
 

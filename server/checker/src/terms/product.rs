@@ -454,7 +454,7 @@ fn plain_number(sum: &Sum) -> Option<Rational> {
 }
 
 /// A decimal number, exactly.
-fn exact(text: &str) -> Option<Rational> {
+pub fn exact(text: &str) -> Option<Rational> {
     let (whole, part) = text.split_once('.').unwrap_or((text, ""));
     if part.len() > 9 || whole.len() > 12 {
         return None;

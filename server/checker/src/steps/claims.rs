@@ -1,0 +1,144 @@
+//! Which relations of a statement claim something, which define, and what each claim is in the algebra's terms.
+//!
+//! A relation of a chain after the first is a claim; the first one too, unless its left side is a kernel standing
+//! alone that this relation may define: one that is neither defined before nor known by declaration or custom. `:=`
+//! always defines. A side that is 0 makes a condition, unless the formula itself is to be checked. Definitions are
+//! taken in the order of the text, so that a claim sees those before it.
+
+use compact_str::CompactString;
+use indexwise_algebra::expression::Expression;
+use indexwise_algebra::rational::Rational;
+use indexwise_grammar::span::Span;
+use indexwise_grammar::tree::{Atom, Claim, Factor, Statement, Sum};
+
+use crate::terms::Eyes;
+
+use super::lowering::{Lowering, Reach};
+use super::world::Surroundings;
+
+/// What is asked of a statement.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Asked {
+    /// Only its definitions are taken.
+    Nothing,
+    /// Every claim of a chain.
+    Chains,
+    /// Every relation: the author asks for this formula.
+    All,
+}
+
+/// A claim of a statement.
+#[derive(Clone, Debug)]
+pub struct Step {
+    /// The number of its relation.
+    pub relation: usize,
+    /// The relation sign.
+    pub sign: Span,
+    /// The sides that it joins.
+    pub sides: (Span, Span),
+    /// What it claims to be equal, in each way in which its derivatives may reach; or why that is not known.
+    pub claims: Result<Vec<(Expression, Expression)>, String>,
+    /// The letters of the labels.
+    pub letters: Vec<CompactString>,
+}
+
+/// The claims of a statement; its definitions go into the surroundings.
+pub fn steps_of(
+    statement: &Statement,
+    eyes: &Eyes<'_>,
+    surroundings: &mut Surroundings<'_>,
+    asked: Asked,
+) -> Vec<Step> {
+    let mut steps = Vec::new();
+    for (number, relation) in statement.relations.iter().enumerate() {
+        let (Some(left), Some(right)) = (statement.sides.get(number), statement.sides.get(number + 1)) else {
+            continue;
+        };
+        let defines = match relation.claim() {
+            Claim::Definition => define(left, right, eyes, surroundings, true),
+            Claim::DefinitionOfRight => define(right, left, eyes, surroundings, true),
+            Claim::Equality => number == 0 && define(left, right, eyes, surroundings, false),
+            Claim::Other => true,
+        };
+        let condition = (is_zero(left) || is_zero(right)) && asked != Asked::All;
+        if defines || condition || asked == Asked::Nothing {
+            continue;
+        }
+        let (claims, letters) = lowered(left, right, eyes, surroundings);
+        steps.push(Step { relation: number, sign: relation.span, sides: (left.span, right.span), claims, letters });
+    }
+    steps
+}
+
+type Claims = Result<Vec<(Expression, Expression)>, String>;
+
+/// Both sides, in each way in which derivatives may reach.
+fn lowered(
+    left: &Sum,
+    right: &Sum,
+    eyes: &Eyes<'_>,
+    surroundings: &mut Surroundings<'_>,
+) -> (Claims, Vec<CompactString>) {
+    let mut near = Lowering::new(surroundings, eyes, Reach::Near);
+    let sides = pair(&mut near, left, right);
+    let (mattered, letters) = (near.reach_mattered, near.letters().to_vec());
+    let claims = sides.and_then(|sides| {
+        let mut all = vec![sides];
+        if mattered {
+            all.push(pair(&mut Lowering::new(surroundings, eyes, Reach::Far), left, right)?);
+        }
+        Ok(all)
+    });
+    (claims, letters)
+}
+
+fn pair(lowering: &mut Lowering<'_, '_, '_>, left: &Sum, right: &Sum) -> Result<(Expression, Expression), String> {
+    match (is_zero(left), is_zero(right)) {
+        (true, _) => {
+            let right = lowering.side(right)?;
+            Ok((nothing_of(&right), right))
+        }
+        (_, true) => {
+            let left = lowering.side(left)?;
+            let zero = nothing_of(&left);
+            Ok((left, zero))
+        }
+        _ => Ok((lowering.side(left)?, lowering.side(right)?)),
+    }
+}
+
+/// Zero with the free labels of an expression.
+fn nothing_of(expression: &Expression) -> Expression {
+    Expression::Product(vec![Expression::Number(Rational::ZERO), expression.clone()])
+}
+
+fn is_zero(side: &Sum) -> bool {
+    lone_factor(side).is_some_and(|factor| matches!(&factor.atom, Atom::Number(number) if number == "0"))
+}
+
+fn lone_factor(side: &Sum) -> Option<&Factor> {
+    match side.terms.as_slice() {
+        [term] if term.sign.is_none() => match term.factors.as_slice() {
+            [factor] => Some(factor),
+            _ => None,
+        },
+        _ => None,
+    }
+}
+
+/// Takes a relation as a definition if it is one; `said` where its sign says so.
+fn define(left: &Sum, right: &Sum, eyes: &Eyes<'_>, surroundings: &mut Surroundings<'_>, said: bool) -> bool {
+    let Some(factor) = lone_factor(left) else { return said };
+    let mut lowering = Lowering::new(surroundings, eyes, Reach::Near);
+    let Some((kernel, slots)) = lowering.lone_kernel(factor) else { return said };
+    if !said && (lowering.is_meant(&kernel, &slots) || is_zero(right)) {
+        return false;
+    }
+    match lowering.side(right) {
+        Ok(body) if lowering.uses(&body, &kernel, slots.len()) => return said,
+        Ok(body) => surroundings.define(&kernel, slots, body),
+        // What cannot be lowered defines nothing that could be used: the kernel stays a field of unknown meaning.
+        Err(_) => {}
+    }
+    true
+}

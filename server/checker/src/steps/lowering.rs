@@ -1,0 +1,417 @@
+//! From the tree of a side to an expression of the algebra.
+//!
+//! The reading says which scripts are indices, `terms/uses.rs` sorts them into slots; here kernels get their meaning
+//! and products their structure. A part that has no meaning here is refused with a reason. Trap: how far a derivative
+//! reaches beyond the next factor is not written; `Reach` chooses, and the caller tries both where it matters.
+
+mod calls;
+mod kernels;
+mod scripts;
+
+use compact_str::CompactString;
+use indexwise_algebra::expression::{Expression, Filling, Index};
+use indexwise_algebra::geometry::Level;
+use indexwise_algebra::rational::Rational;
+use indexwise_grammar::tree::{
+    self, Atom, Big, Bracket, Factor, Fraction, FractionKind, Group, Joint, Product as ProductSign, SignKind, Sum, Term,
+};
+
+use crate::conventions::built_in::is_derivative;
+use crate::terms::Eyes;
+use crate::terms::uses::{self, Use, UsedSlot, use_of};
+
+use super::world::Surroundings;
+
+/// What a derivative acts on in `\partial_k A B`.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Reach {
+    /// The next factor.
+    Near,
+    /// All factors after it.
+    Far,
+}
+
+/// Why a part could not be lowered, as a phrase.
+pub type Refusal = String;
+type Lowered = Result<Expression, Refusal>;
+
+/// Lowers the sides of one statement: its letters are numbered together.
+pub struct Lowering<'s, 'a, 'e> {
+    surroundings: &'s mut Surroundings<'a>,
+    eyes: &'e Eyes<'e>,
+    reach: Reach,
+    /// Letters by their labels.
+    letters: Vec<CompactString>,
+    /// Whether the reach of a derivative mattered.
+    pub reach_mattered: bool,
+    /// Nesting that is left.
+    depth: usize,
+}
+
+/// Nesting beyond which a side is not lowered.
+const DEPTH: usize = 64;
+/// Terms of a bracket's permutations beyond which it is not written out.
+const PERMUTATIONS: usize = 120;
+
+impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
+    /// For one statement.
+    pub fn new(surroundings: &'s mut Surroundings<'a>, eyes: &'e Eyes<'e>, reach: Reach) -> Self {
+        Self { surroundings, eyes, reach, letters: Vec::new(), reach_mattered: false, depth: DEPTH }
+    }
+
+    /// The letters of the labels, in their order.
+    pub fn letters(&self) -> &[CompactString] {
+        &self.letters
+    }
+
+    /// Lowers a side.
+    pub fn side(&mut self, sum: &Sum) -> Lowered {
+        self.depth = self.depth.checked_sub(1).ok_or("it is nested too deep")?;
+        let terms: Vec<Expression> = sum.terms.iter().map(|term| self.term(term)).collect::<Result<_, _>>()?;
+        self.depth += 1;
+        match terms.len() {
+            0 => Err("a side is empty".to_owned()),
+            1 => Ok(terms.into_iter().next().unwrap_or_else(Expression::zero)),
+            _ => Ok(Expression::Sum(terms)),
+        }
+    }
+
+    fn term(&mut self, term: &Term) -> Lowered {
+        if term.dangling != Joint::Beside || term.factors.is_empty() {
+            return Err("a term is not complete".to_owned());
+        }
+        let brackets = scripts::brackets_across(&term.factors)?;
+        let value = match brackets {
+            false => self.product(&term.factors)?,
+            true => self.bracketed(&term.factors)?,
+        };
+        match term.sign.map_or(SignKind::Plus, |sign| sign.kind) {
+            SignKind::Plus => Ok(value),
+            SignKind::Minus => Ok(value.negated()),
+            SignKind::PlusMinus | SignKind::MinusPlus => Err("a sign is left open".to_owned()),
+        }
+    }
+
+    /// A product, from left to right; a derivative takes what it acts on with it.
+    fn product(&mut self, factors: &[Factor]) -> Lowered {
+        let mut parts: Vec<Expression> = Vec::new();
+        let mut at = 0;
+        while let Some(factor) = factors.get(at) {
+            let rest = factors.get(at..).unwrap_or_default();
+            match factor.joint {
+                Joint::Beside | Joint::Times(ProductSign::Dot | ProductSign::Star) => {
+                    let (value, taken) = self.one(rest)?;
+                    parts.push(value);
+                    at += taken;
+                }
+                Joint::Slash => {
+                    let over = parts.pop().ok_or("nothing stands before a slash")?;
+                    let (under, taken) = self.one(rest)?;
+                    parts.push(Expression::Quotient(Box::new(over), Box::new(under)));
+                    at += taken;
+                }
+                Joint::Times(sign) => return Err(format!("the product {} is not known", sign.latex())),
+                Joint::Set(sign) => return Err(format!("{sign} joins no numbers")),
+                Joint::Apart => return Err("a list stands in a product".to_owned()),
+            }
+        }
+        Ok(match parts.len() {
+            1 => parts.pop().unwrap_or_else(Expression::zero),
+            _ => Expression::Product(parts),
+        })
+    }
+
+    /// The first factor with what belongs to it, and how many factors that are.
+    fn one(&mut self, factors: &[Factor]) -> Result<(Expression, usize), Refusal> {
+        let Some(factor) = factors.first() else { return Err("a derivative acts on nothing".to_owned()) };
+        let rest = factors.get(1..).unwrap_or_default();
+        if let Atom::Kernel(kernel) = &factor.atom {
+            let made = use_of(factor, kernel, self.eyes, false);
+            if is_derivative(&made.letter) {
+                return self.derivative(factor, &made, rest);
+            }
+            if self.is_variation(&made, rest) {
+                let parameter = self.surroundings.parameter(&made.kernel);
+                let (of, taken) = self.one(rest)?;
+                return Ok((Expression::Vary { parameter, of: Box::new(of) }, taken + 1));
+            }
+            let (value, arguments) = self.kernel(factor, made, rest)?;
+            return Ok((value, arguments + 1));
+        }
+        if let Atom::Fraction(fraction) = &factor.atom
+            && let Some((operators, acted)) = self.derivative_fraction(fraction)?
+        {
+            let (of, taken) = match acted {
+                [] => self.acted_on(rest)?,
+                acted => (self.product(acted)?, 0),
+            };
+            return Ok((wrapped(operators, of), taken + 1));
+        }
+        if let Atom::Function(name) = &factor.atom {
+            let (value, taken) = self.call(name, factor, rest)?;
+            return Ok((value, taken + 1));
+        }
+        Ok((self.atom(factor)?, 1))
+    }
+
+    /// A derivative sign with what it acts on.
+    fn derivative(&mut self, factor: &Factor, made: &Use, rest: &[Factor]) -> Result<(Expression, usize), Refusal> {
+        if made.unread || !made.marks.iter().all(|mark| matches!(mark, uses::Mark::Slot(_))) {
+            return Err(format!("the derivative {} is not understood", made.kernel));
+        }
+        if made.power {
+            return self.laplacian(factor, made, rest);
+        }
+        if made.slots.is_empty() {
+            return Err(format!("{} has no index", made.kernel));
+        }
+        let operators: Vec<Operator> =
+            made.slots.iter().map(|slot| self.operator(made, slot)).collect::<Result<_, _>>()?;
+        let (of, taken) = self.acted_on(rest)?;
+        Ok((wrapped(operators, of), taken + 1))
+    }
+
+    /// What a derivative acts on: the next factor, or all that follow.
+    fn acted_on(&mut self, rest: &[Factor]) -> Result<(Expression, usize), Refusal> {
+        let reaches = rest.iter().position(|factor| factor.joint == Joint::Slash).unwrap_or(rest.len());
+        let (near, taken) = self.one(rest)?;
+        let more = rest.get(taken..reaches).unwrap_or_default();
+        if more.iter().all(|factor| matches!(factor.atom, Atom::Number(_))) {
+            return Ok((near, taken));
+        }
+        self.reach_mattered = true;
+        match self.reach {
+            Reach::Near => Ok((near, taken)),
+            Reach::Far => Ok((self.product(rest.get(..reaches).unwrap_or_default())?, reaches)),
+        }
+    }
+
+    fn operator(&mut self, made: &Use, slot: &UsedSlot) -> Result<Operator, Refusal> {
+        let index = self.index(slot)?;
+        if made.letter == "\\partial" {
+            return Ok(Operator::Partial(index));
+        }
+        let declared = self.surroundings.meanings.derivatives.iter().find(|(kernel, _)| *kernel == made.kernel);
+        match declared {
+            Some((_, metric)) => {
+                let metric = match metric.clone() {
+                    Some(name) => self.surroundings.metric(&name, index.family),
+                    None => self.surroundings.metric_of(index.family),
+                };
+                Ok(Operator::Covariant(metric, index))
+            }
+            // Without levels there is nothing that a covariant derivative could correct.
+            None if made.kernel == "\\nabla" && index.level == Level::Inert => Ok(Operator::Partial(index)),
+            None if made.kernel == "\\nabla" => {
+                Ok(Operator::Covariant(self.surroundings.metric_of(index.family), index))
+            }
+            None => Err(format!("the derivative {} is not declared", made.kernel)),
+        }
+    }
+
+    /// `\nabla^2`, `\partial^2`: the sum over both slots by the metric.
+    fn laplacian(&mut self, factor: &Factor, made: &Use, rest: &[Factor]) -> Result<(Expression, usize), Refusal> {
+        let square = scripts::power(factor)? == Some(Rational::from_integer(2));
+        let (of, taken) = self.acted_on(rest)?;
+        if !square || made.slots.len() > 1 {
+            return Err(format!("a power of {} is not understood", made.kernel));
+        }
+        let letter = made.slots.first().and_then(UsedSlot::letter).cloned();
+        let cartesian = letter.as_ref().is_none_or(|letter| self.eyes.is_cartesian(letter)) && !self.has_metric();
+        let family = self.surroundings.family(letter.as_deref().unwrap_or("i"), cartesian);
+        let (one, two) = (self.fresh(), self.fresh());
+        let level = if cartesian { Level::Inert } else { Level::Down };
+        let index = |label| Index { filling: Filling::Label(label), level, family };
+        let flat = made.letter == "\\partial" || cartesian;
+        let operator = |lowering: &mut Self, index: Index| match flat {
+            true => Operator::Partial(index),
+            false => Operator::Covariant(lowering.surroundings.metric_of(family), index),
+        };
+        let inner = operator(self, index(two));
+        let outer = operator(self, index(if cartesian { two } else { one }));
+        let twice = wrapped(vec![outer, inner], of);
+        if cartesian {
+            return Ok((twice, taken + 1));
+        }
+        let metric = self.surroundings.metric_of(family);
+        let up = |label| Index { filling: Filling::Label(label), level: Level::Up, family };
+        let inverse = Expression::Metric { metric, slots: [up(one), up(two)] };
+        Ok((Expression::Product(vec![inverse, twice]), taken + 1))
+    }
+
+    /// Whether the document has a metric that is declared and not constant.
+    fn has_metric(&self) -> bool {
+        !self.surroundings.meanings.metrics().is_empty()
+    }
+
+    /// The derivatives that a fraction stands for, outermost first, and what it holds above the line to act on.
+    fn derivative_fraction<'t>(
+        &mut self,
+        fraction: &'t Fraction,
+    ) -> Result<Option<(Vec<Operator>, &'t [Factor])>, Refusal> {
+        let spelled = match fraction.kind {
+            FractionKind::Quotient => true,
+            FractionKind::Derivative("\\pdv") => false,
+            FractionKind::Derivative(name) => return Err(format!("the derivative {name} is not evaluated")),
+            _ => return Err("a fraction has no value".to_owned()),
+        };
+        let sign = |factor: &Factor| matches!(&factor.atom, Atom::Kernel(kernel) if kernel.letter == "\\partial");
+        let above = match fraction.over.terms.as_slice() {
+            [term] if term.sign.is_none() => term.factors.as_slice(),
+            [] if !spelled => &[],
+            _ if spelled => return Ok(None),
+            _ => return Err("a sum stands above a derivative".to_owned()),
+        };
+        if spelled && !above.first().is_some_and(sign) {
+            return Ok(None);
+        }
+        let [under] = fraction.under.terms.as_slice() else { return Err("a sum stands below a derivative".to_owned()) };
+        let mut operators = Vec::new();
+        for variable in under.factors.iter().filter(|factor| !(spelled && sign(factor))) {
+            let Atom::Kernel(kernel) = &variable.atom else { return Err("a derivative by no coordinate".to_owned()) };
+            let made = use_of(variable, kernel, self.eyes, true);
+            let [slot] = made.slots.as_slice() else {
+                return Err(format!("the derivative by {} is not evaluated", made.kernel));
+            };
+            if !matches!(made.letter.as_str(), "x" | "X" | "y" | "q") || made.power {
+                return Err(format!("the derivative by {} is not evaluated", made.kernel));
+            }
+            operators.push(Operator::Partial(self.index(slot)?));
+        }
+        Ok(Some((operators, if spelled { above.get(1..).unwrap_or_default() } else { above })))
+    }
+
+    fn atom(&mut self, factor: &Factor) -> Lowered {
+        let value = match &factor.atom {
+            Atom::Number(number) => Expression::Number(exact(number)?),
+            Atom::Fraction(fraction) if fraction.kind == FractionKind::Quotient => {
+                let (over, under) = (self.side(&fraction.over)?, self.side(&fraction.under)?);
+                match (&over, &under) {
+                    (Expression::Number(over), Expression::Number(under)) => {
+                        Expression::Number(over.checked_div(*under).ok_or("a number is divided by 0")?)
+                    }
+                    _ => Expression::Quotient(Box::new(over), Box::new(under)),
+                }
+            }
+            Atom::Group(group) => self.group(group)?,
+            Atom::Root(root) => {
+                let degree = match &root.degree {
+                    None => Rational::from_integer(2),
+                    Some(degree) => scripts::number_of(degree).ok_or("the degree of a root is no number")?,
+                };
+                let power = degree.inverse().ok_or("a root of degree 0")?;
+                Expression::Power(Box::new(self.side(&root.body)?), power)
+            }
+            Atom::Wrapped(sum) | Atom::Labelled(sum) if !sum.terms.is_empty() => self.side(sum)?,
+            Atom::Big(Big::Integral, _) => return Err("an integral".to_owned()),
+            Atom::Big(Big::Limit, _) => return Err("a limit".to_owned()),
+            Atom::Big(Big::Sum, _) => return Err("a sum with a sign".to_owned()),
+            Atom::Unknown(name, _) => return Err(format!("the command \\{name} is not defined")),
+            Atom::Text(_) => return Err("words stand in it".to_owned()),
+            Atom::Dots => return Err("an ellipsis stands in it".to_owned()),
+            Atom::Matrix => return Err("a list of components stands in it".to_owned()),
+            _ => return Err("a part of it is not evaluated".to_owned()),
+        };
+        if !factor.marks.is_empty() {
+            return Err("something stands on a bracket".to_owned());
+        }
+        self.powered(value, factor)
+    }
+
+    /// A value under the power that stands on its factor.
+    fn powered(&mut self, value: Expression, factor: &Factor) -> Lowered {
+        match scripts::power(factor)? {
+            None if factor.scripts.is_empty() => Ok(value),
+            None => Err("indices stand on a bracket".to_owned()),
+            Some(power) => self.to_power(value, power),
+        }
+    }
+
+    fn to_power(&mut self, value: Expression, power: Rational) -> Lowered {
+        if power == Rational::from_integer(2) && scripts::has_free_labels(&value) {
+            return Err("the square of something with indices".to_owned());
+        }
+        Ok(Expression::Power(Box::new(value), power))
+    }
+
+    fn group(&mut self, group: &Group) -> Lowered {
+        if let (Bracket::Square | Bracket::Pair, [one, two]) = (group.bracket, group.parts.as_slice()) {
+            return self.commutator(one, two);
+        }
+        let [part] = group.parts.as_slice() else { return Err("a list stands in it".to_owned()) };
+        let [sum] = part.sides.as_slice() else { return Err("a relation stands in brackets".to_owned()) };
+        match group.bracket {
+            Bracket::Round | Bracket::Square | Bracket::Curly => self.side(sum),
+            Bracket::Bars if group.left == "|" => Ok(Expression::Magnitude(Box::new(self.side(sum)?))),
+            _ => Err("a norm or an average".to_owned()),
+        }
+    }
+
+    fn commutator(&mut self, _one: &tree::Statement, _two: &tree::Statement) -> Lowered {
+        Err("a commutator of operators".to_owned())
+    }
+
+    /// A product with brackets over the slots of several factors: the mean over all permutations.
+    fn bracketed(&mut self, factors: &[Factor]) -> Lowered {
+        let written = scripts::permuted(factors, PERMUTATIONS)?;
+        let share = Rational::new(1, written.share).ok_or("a bracket is too long")?;
+        let mut terms = Vec::new();
+        for (negative, factors) in written.products {
+            let value = self.product(&factors)?;
+            terms.push(if negative { value.negated() } else { value });
+        }
+        Ok(Expression::Product(vec![Expression::Number(share), Expression::Sum(terms)]))
+    }
+
+    /// The index that a slot holds.
+    fn index(&mut self, slot: &UsedSlot) -> Result<Index, Refusal> {
+        match &slot.filling {
+            uses::Filling::Index(letter) => {
+                let cartesian = self.eyes.is_cartesian(letter);
+                let family = self.surroundings.family(letter, cartesian);
+                let level = match slot.level {
+                    _ if cartesian => Level::Inert,
+                    tree::Level::Up => Level::Up,
+                    tree::Level::Down => Level::Down,
+                };
+                let filling = Filling::Label(self.label(letter));
+                Ok(Index { filling, level, family })
+            }
+            uses::Filling::Component(name) => Err(format!("the component {name}")),
+        }
+    }
+
+    fn label(&mut self, letter: &str) -> u16 {
+        let at = self.letters.iter().position(|known| known == letter).unwrap_or_else(|| {
+            self.letters.push(letter.into());
+            self.letters.len() - 1
+        });
+        u16::try_from(at).unwrap_or(u16::MAX)
+    }
+
+    /// A label that no letter has.
+    fn fresh(&mut self) -> u16 {
+        let name = compact_str::format_compact!("?{}", self.letters.len());
+        self.label(&name)
+    }
+}
+
+/// A derivative before something.
+#[derive(Clone, Copy, Debug)]
+enum Operator {
+    Partial(Index),
+    Covariant(usize, Index),
+}
+
+/// What stands under derivatives, outermost first.
+fn wrapped(operators: Vec<Operator>, of: Expression) -> Expression {
+    operators.into_iter().rev().fold(of, |of, operator| match operator {
+        Operator::Partial(index) => Expression::Partial(index, Box::new(of)),
+        Operator::Covariant(metric, index) => Expression::Covariant { metric, index, of: Box::new(of) },
+    })
+}
+
+/// A decimal number, exactly.
+fn exact(text: &str) -> Result<Rational, Refusal> {
+    crate::terms::exact(text).ok_or_else(|| format!("{text} is no plain number"))
+}

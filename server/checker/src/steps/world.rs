@@ -1,0 +1,207 @@
+//! The world of a document's claims: families, metrics, fields and definitions as the algebra wants them.
+//!
+//! It grows while statements are lowered, in the order of the text, and is shared by all claims of a document; the
+//! algebra draws only what a claim uses. Declarations come first, then built-in meanings, then assumptions: a family
+//! that nothing declares has as many members as the dimension that is tried, coordinates, and a metric `g` unless
+//! its letters are Cartesian; a kernel that nothing declares is an arbitrary field of unknown meaning.
+
+use compact_str::CompactString;
+use indexwise_algebra::expression::{Definition, Expression, Family, Field, Index, Metric, MetricValues, Size, World};
+use indexwise_algebra::geometry::Level;
+use indexwise_algebra::sample::SlotSymmetry;
+use indexwise_grammar::conventions::{Bound, Kind, Range};
+use rustc_hash::FxHashMap;
+
+use crate::conventions::built_in::is_constant_metric;
+use crate::conventions::meanings::{Known, Meanings, Role};
+
+/// The world of a document while it is being read.
+#[derive(Clone, Debug)]
+pub struct Surroundings<'a> {
+    /// Declarations in force.
+    pub meanings: &'a Meanings,
+    /// What the claims refer to.
+    pub world: World,
+    families: FxHashMap<FamilyKey, usize>,
+    metrics: FxHashMap<(CompactString, usize), usize>,
+    fields: FxHashMap<(CompactString, usize), usize>,
+    /// Definitions by kernel and number of slots, the latest last.
+    definitions: FxHashMap<(CompactString, usize), usize>,
+    parameters: FxHashMap<CompactString, usize>,
+    /// Defaults that a verdict has to name, by the family or kernel that asked for them.
+    pub assumptions: Vec<String>,
+}
+
+/// A family: a declared one by its number, else Cartesian or levelled letters.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Hash)]
+enum FamilyKey {
+    Declared(usize),
+    Cartesian,
+    Levelled,
+}
+
+/// Dimensions that are tried where none is declared.
+const DIMENSIONS: [usize; 3] = [2, 3, 4];
+
+impl<'a> Surroundings<'a> {
+    /// The world of a document's declarations.
+    pub fn new(meanings: &'a Meanings) -> Self {
+        let world = World { dimensions: DIMENSIONS.to_vec(), ..World::default() };
+        Self {
+            meanings,
+            world,
+            families: FxHashMap::default(),
+            metrics: FxHashMap::default(),
+            fields: FxHashMap::default(),
+            definitions: FxHashMap::default(),
+            parameters: FxHashMap::default(),
+            assumptions: Vec::new(),
+        }
+    }
+
+    /// The family of a letter; `cartesian` where its levels do not matter.
+    pub fn family(&mut self, letter: &str, cartesian: bool) -> usize {
+        let key = match self.meanings.family_number(letter) {
+            Some(number) => FamilyKey::Declared(number),
+            None if cartesian => FamilyKey::Cartesian,
+            None => FamilyKey::Levelled,
+        };
+        if let Some(known) = self.families.get(&key) {
+            return *known;
+        }
+        let family = match key {
+            FamilyKey::Declared(number) => self.declared_family(number),
+            _ => Family { size: Size::Dimension(0), coordinates: Some(0), metric: None },
+        };
+        self.world.families.push(family);
+        let number = self.world.families.len() - 1;
+        self.families.insert(key, number);
+        number
+    }
+
+    fn declared_family(&mut self, number: usize) -> Family {
+        let Some(family) = self.meanings.families.get(number) else {
+            return Family { size: Size::Dimension(0), coordinates: Some(0), metric: None };
+        };
+        let size = match (&family.range, family.size()) {
+            (_, Some(size)) => Size::Fixed(size as usize),
+            // `from 1 to n-1`, `over n dimensions`.
+            (Some(Range::Between(first, Bound::Letter(_, less))), _) => {
+                Size::Dimension((*less + *first).saturating_sub(1) as usize)
+            }
+            (Some(Range::Size(Bound::Letter(_, less))), _) => Size::Dimension(*less as usize),
+            _ => Size::Dimension(0),
+        };
+        let coordinates = match &family.part_of {
+            Some(_) => Some(1),
+            None if family.frame => None,
+            None => Some(0),
+        };
+        Family { size, coordinates, metric: None }
+    }
+
+    /// The metric of a family: the declared one with slots in it, else `g`.
+    pub fn metric_of(&mut self, family: usize) -> usize {
+        if let Some(metric) = self.world.families.get(family).and_then(|family| family.metric) {
+            return metric;
+        }
+        let letters: Vec<CompactString> = self
+            .families
+            .iter()
+            .find(|(_, number)| **number == family)
+            .and_then(|(key, _)| match key {
+                FamilyKey::Declared(number) => self.meanings.families.get(*number),
+                _ => None,
+            })
+            .map(|family| family.letters.clone())
+            .unwrap_or_default();
+        let holds = |known: &Known| {
+            known.slots.iter().all(|slot| {
+                letters.contains(&slot.letter) || letters.is_empty() && self.meanings.family(&slot.letter).is_none()
+            })
+        };
+        let declared =
+            self.meanings.metrics().into_iter().find(|(_, known)| holds(known)).map(|((name, _), _)| name.clone());
+        let name = declared.unwrap_or_else(|| CompactString::const_new("g"));
+        let metric = self.metric(&name, family);
+        if let Some(family) = self.world.families.get_mut(family) {
+            family.metric = Some(metric);
+        }
+        metric
+    }
+
+    /// The metric of a name on a family.
+    pub fn metric(&mut self, name: &CompactString, family: usize) -> usize {
+        let key = (name.clone(), family);
+        if let Some(known) = self.metrics.get(&key) {
+            return *known;
+        }
+        let role = self.meanings.known(name, 2).and_then(|known| known.role.clone());
+        let defined = self.definitions.get(&(name.clone(), 2)).copied();
+        let values = match (defined, role) {
+            (Some(definition), _) => MetricValues::Defined(definition),
+            (None, Some(Role::Metric { constant: true })) => MetricValues::Constant,
+            (None, Some(_)) => MetricValues::Arbitrary,
+            (None, None) if is_constant_metric(name) => MetricValues::Flat,
+            (None, None) => MetricValues::Arbitrary,
+        };
+        // Equations hold for any signature or none; time is counted where the flat metric is meant.
+        let minus = usize::from(name.contains("eta"));
+        self.world.metrics.push(Metric { name: name.to_string(), family, values, minus, varies: true });
+        let number = self.world.metrics.len() - 1;
+        self.metrics.insert(key, number);
+        number
+    }
+
+    /// The definition of a kernel with so many slots, if one stands before.
+    pub fn definition(&self, kernel: &CompactString, slots: usize) -> Option<usize> {
+        self.definitions.get(&(kernel.clone(), slots)).copied()
+    }
+
+    /// Whether a kernel with so many slots has been used or defined.
+    pub fn is_defined(&self, kernel: &CompactString, slots: usize) -> bool {
+        self.definitions.contains_key(&(kernel.clone(), slots))
+    }
+
+    /// Defines a kernel.
+    pub fn define(&mut self, kernel: &CompactString, free: Vec<Index>, body: Expression) {
+        let slots = free.len();
+        self.world.definitions.push(Definition { name: kernel.to_string(), free, body });
+        self.definitions.insert((kernel.clone(), slots), self.world.definitions.len() - 1);
+    }
+
+    /// The field of a kernel with these slots; what it is on is what it was first used with, or declared with.
+    pub fn field(&mut self, kernel: &CompactString, slots: &[(usize, Level)], exchanges: Vec<SlotSymmetry>) -> usize {
+        let key = (kernel.clone(), slots.len());
+        if let Some(known) = self.fields.get(&key) {
+            return *known;
+        }
+        let known = self.meanings.known(kernel, slots.len());
+        let is = |kind: Kind| self.meanings.is_kind(kernel, kind);
+        let field = Field {
+            name: kernel.to_string(),
+            slots: slots.to_vec(),
+            symmetries: exchanges,
+            traceless: known.is_some_and(|known| known.traceless),
+            constant: is(Kind::Constant),
+            small: is(Kind::Small),
+            varies: true,
+            known: known.is_some_and(Known::is_settled),
+        };
+        self.world.fields.push(field);
+        let number = self.world.fields.len() - 1;
+        self.fields.insert(key, number);
+        number
+    }
+
+    /// The parameter of a variation or of a derivative along a curve.
+    pub fn parameter(&mut self, name: &str) -> usize {
+        if let Some(known) = self.parameters.get(name) {
+            return *known;
+        }
+        self.world.parameters.push(name.to_owned());
+        let number = self.world.parameters.len() - 1;
+        self.parameters.insert(name.into(), number);
+        number
+    }
+}
