@@ -2,6 +2,7 @@
 //!
 //! clap's own messages run over several lines; a bad option gets one clear line here, like every other trouble.
 
+use indexwise_checker::paper::StepMode;
 use std::ffi::OsString;
 use std::path::PathBuf;
 
@@ -66,6 +67,9 @@ pub struct CheckArguments {
     /// those that the files indexwise.toml declare
     #[arg(long, value_name = "FILE")]
     pub conventions: Option<PathBuf>,
+    /// Which steps of derivations are verified: those that a document asks for (auto), all, or none (off)
+    #[arg(long, value_enum, default_value_t = StepsName::Auto)]
+    pub steps: StepsName,
     /// How many papers are checked at a time (default: one for each processor)
     #[arg(long, value_name = "N", value_parser = clap::value_parser!(u16).range(1..=256))]
     pub jobs: Option<u16>,
@@ -102,6 +106,27 @@ pub enum ReportKind {
     Json,
     /// One JSON object for each file, one a line
     JsonLines,
+}
+
+/// Which steps are verified.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, ValueEnum)]
+pub enum StepsName {
+    /// Those that a document asks for, and those of notes
+    Auto,
+    /// Every chain of every document
+    All,
+    /// None
+    Off,
+}
+
+impl From<StepsName> for StepMode {
+    fn from(name: StepsName) -> Self {
+        match name {
+            StepsName::Auto => Self::Asked,
+            StepsName::All => Self::All,
+            StepsName::Off => Self::Off,
+        }
+    }
 }
 
 /// What standard input may hold.

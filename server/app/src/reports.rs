@@ -61,6 +61,8 @@ pub struct Totals {
     pub indexed: usize,
     /// Those of them that could not be read whole.
     pub unread: usize,
+    /// Claimed steps that hold, that fail, and that are not decided.
+    pub steps: [usize; 3],
     /// Findings that are errors.
     pub errors: usize,
     /// Findings that are warnings.
@@ -78,6 +80,10 @@ impl Totals {
             totals.formulas += file.statistics.formulas;
             totals.indexed += file.statistics.indexed;
             totals.unread += file.statistics.unread;
+            let steps = file.statistics.steps;
+            for (total, own) in totals.steps.iter_mut().zip([steps.holds, steps.fails, steps.undecided]) {
+                *total += own;
+            }
             for finding in &file.findings {
                 match finding.severity {
                     Severity::Error => totals.errors += 1,
@@ -136,11 +142,12 @@ pub mod samples {
                 bulk: Ok(()),
             }],
             ledger: Some(ledger),
+            verdict: None,
         };
         FileReport {
             path: path.into(),
             host: Some(Host::Latex),
-            statistics: Statistics { formulas: 1, indexed: 1, unread: 0, unknown_macros: 0 },
+            statistics: Statistics { formulas: 1, indexed: 1, ..Statistics::default() },
             findings: vec![finding],
             text: Text { text: text.into(), marked },
         }

@@ -87,6 +87,8 @@ pub struct Settings {
     pub unread: bool,
     /// Whether the symbol table is gathered.
     pub symbols: bool,
+    /// Which steps are judged.
+    pub steps: StepMode,
     /// Rules with a severity of their own instead of their usual one; nothing: off. The last entry of a rule counts.
     /// A rule that `only` names is on whatever stands here, and one that `without` names is off.
     pub levels: Vec<(String, Option<Severity>)>,
@@ -166,6 +168,31 @@ pub struct Statistics {
     pub unread: usize,
     /// Indexed ones with a macro that is defined nowhere.
     pub unknown_macros: usize,
+    /// Claimed steps by their verdicts.
+    pub steps: Steps,
+}
+
+/// Claimed steps of one document, by their verdicts.
+#[derive(Clone, Copy, Debug, Default, PartialEq, Eq)]
+pub struct Steps {
+    /// Those that hold, in every dimension that was tried.
+    pub holds: usize,
+    /// Those that fail, or hold in certain dimensions only.
+    pub fails: usize,
+    /// Those that are not shown or not decided.
+    pub undecided: usize,
+}
+
+/// Which steps are judged.
+#[derive(Clone, Copy, Debug, Default, PartialEq, Eq)]
+pub enum StepMode {
+    /// Those that the author asks for: by `check this`, by `derivations are checked`, and in notes.
+    #[default]
+    Asked,
+    /// Every chain of every document.
+    All,
+    /// None.
+    Off,
 }
 
 /// Checks a paper: reads every document, counts the habits of each, takes the cheapest reading of every statement

@@ -97,6 +97,7 @@ fn settings(arguments: &CheckArguments) -> Result<Settings, Failure> {
         // Off by default, it is on for those who ask for it by name.
         unread: arguments.only.iter().any(|name| name == "unread"),
         symbols: false,
+        steps: arguments.steps.into(),
         levels: Vec::new(),
     })
 }

@@ -4,7 +4,8 @@
 
 use std::io::{self, Write};
 
-use indexwise_checker::finding::{Edit, Finding, Fix, Related};
+use indexwise_checker::finding::{Edit, Finding, Fix, Related, StepVerdict};
+use indexwise_checker::paper::Steps;
 use serde::Serialize;
 
 use super::FileReport;
@@ -39,6 +40,41 @@ struct StatisticsObject {
     indexed: usize,
     unread: usize,
     unknown_macros: usize,
+    #[serde(skip_serializing_if = "Option::is_none")]
+    steps: Option<StepsObject>,
+}
+
+/// Only where steps were judged.
+#[derive(Serialize)]
+struct StepsObject {
+    holds: usize,
+    fails: usize,
+    undecided: usize,
+}
+
+#[derive(Serialize)]
+struct VerdictObject<'a> {
+    verdict: &'a str,
+    holds: &'a [usize],
+    fails: &'a [usize],
+    assumptions: &'a [String],
+    #[serde(skip_serializing_if = "Option::is_none")]
+    counterexample: Option<CounterexampleObject<'a>>,
+}
+
+#[derive(Serialize)]
+struct CounterexampleObject<'a> {
+    dimension: usize,
+    values: Vec<NamedValue<'a>>,
+    component: Vec<NamedValue<'a>>,
+    left: &'a str,
+    right: &'a str,
+}
+
+#[derive(Serialize)]
+struct NamedValue<'a> {
+    name: &'a str,
+    value: &'a str,
 }
 
 #[derive(Serialize)]
@@ -50,6 +86,8 @@ struct FindingObject<'a> {
     end: Place,
     related: Vec<RelatedObject<'a>>,
     fixes: Vec<FixObject<'a>>,
+    #[serde(skip_serializing_if = "Option::is_none")]
+    verdict: Option<VerdictObject<'a>>,
 }
 
 #[derive(Serialize)]
@@ -100,6 +138,11 @@ fn object(file: &FileReport) -> FileObject<'_> {
             indexed: counts.indexed,
             unread: counts.unread,
             unknown_macros: counts.unknown_macros,
+            steps: (counts.steps != Steps::default()).then_some(StepsObject {
+                holds: counts.steps.holds,
+                fails: counts.steps.fails,
+                undecided: counts.steps.undecided,
+            }),
         },
         findings: file.findings.iter().map(|finding| finding_object(finding, &places)).collect(),
     }
@@ -119,7 +162,28 @@ fn finding_object<'a>(finding: &'a Finding, places: &Places) -> FindingObject<'a
         end: places.end(finding.span),
         related: finding.related.iter().map(related).collect(),
         fixes: finding.fixes.iter().map(|fix| fix_object(fix, places)).collect(),
+        verdict: finding.verdict.as_ref().map(verdict_object),
     }
+}
+
+fn verdict_object(verdict: &StepVerdict) -> VerdictObject<'_> {
+    VerdictObject {
+        verdict: verdict.verdict,
+        holds: &verdict.holds,
+        fails: &verdict.fails,
+        assumptions: &verdict.assumptions,
+        counterexample: verdict.counterexample.as_ref().map(|numbers| CounterexampleObject {
+            dimension: numbers.dimension,
+            values: named(&numbers.values),
+            component: named(&numbers.component),
+            left: &numbers.left,
+            right: &numbers.right,
+        }),
+    }
+}
+
+fn named(values: &[(String, String)]) -> Vec<NamedValue<'_>> {
+    values.iter().map(|(name, value)| NamedValue { name, value }).collect()
 }
 
 fn fix_object<'a>(fix: &'a Fix, places: &Places) -> FixObject<'a> {

@@ -8,7 +8,7 @@ mod ledger;
 use std::io::{self, Write};
 use std::time::Duration;
 
-use indexwise_checker::finding::{Finding, Severity};
+use indexwise_checker::finding::{Counterexample, Finding, Severity};
 use unicode_width::UnicodeWidthStr;
 
 use super::places::Places;
@@ -139,6 +139,9 @@ fn write_words(places: &Places, finding: &Finding, palette: Palette, out: &mut d
         let place = places.start(related.span);
         writeln!(out, "{INDENT}{}:{}: {}", place.line, place.column, printable(&related.message))?;
     }
+    if let Some(numbers) = finding.verdict.as_ref().and_then(|verdict| verdict.counterexample.as_ref()) {
+        write_counterexample(numbers, out)?;
+    }
     for fix in &finding.fixes {
         // Two places may be called the same.
         let twins = finding.fixes.iter().filter(|other| other.title == fix.title).count();
@@ -146,6 +149,21 @@ fn write_words(places: &Places, finding: &Finding, palette: Palette, out: &mut d
         let place = place.map(|place| format!(", at {}:{}", place.line, place.column)).unwrap_or_default();
         writeln!(out, "{INDENT}Offered: {}{place}.", printable(&fix.title))?;
     }
+    writeln!(out)
+}
+
+/// Numbers that a person can check: one field a line, and both sides.
+fn write_counterexample(numbers: &Counterexample, out: &mut dyn Write) -> io::Result<()> {
+    writeln!(out)?;
+    writeln!(out, "{INDENT}Counterexample in dimension {}, all else 0:", numbers.dimension)?;
+    let widest = numbers.values.iter().map(|(name, _)| name.width()).max().unwrap_or(0);
+    for (name, value) in &numbers.values {
+        let gap = " ".repeat(widest - name.width());
+        writeln!(out, "{INDENT}{INDENT}{}{gap} = {}", printable(name), printable(value))?;
+    }
+    let place: Vec<String> = numbers.component.iter().map(|(letter, value)| format!("{letter} = {value}")).collect();
+    let place = if place.is_empty() { String::new() } else { format!(" for {}", place.join(", ")) };
+    writeln!(out, "{INDENT}left side {}, right side {}{}", numbers.left, numbers.right, printable(&place))?;
     writeln!(out)
 }
 
@@ -181,13 +199,19 @@ fn width(text: &str) -> usize {
 
 fn write_closing(files: &[FileReport], elapsed: Duration, out: &mut dyn Write) -> io::Result<()> {
     let totals = Totals::of(files);
+    let [holds, fails, undecided] = totals.steps;
+    let steps = match holds + fails + undecided {
+        0 => String::new(),
+        _ => format!("steps: {holds} hold, {fails} fail, {undecided} undecided; "),
+    };
     writeln!(
         out,
-        "{}: {}, {} with indices, {} unread; {}, {}, {}; {:.1} s",
+        "{}: {}, {} with indices, {} unread; {}{}, {}, {}; {:.1} s",
         counted(totals.files, "file"),
         counted(totals.formulas, "formula"),
         totals.indexed,
         totals.unread,
+        steps,
         counted(totals.errors, "error"),
         counted(totals.warnings, "warning"),
         counted(totals.hints, "hint"),
