@@ -11,12 +11,17 @@
 
 mod compare;
 mod degree;
+mod functions;
+mod witness;
 
 use crate::evaluation::needs::{Needs, within_depth};
 use crate::expression::{Expression, World};
 use crate::rational::Rational;
 use crate::trouble::{Budget, Trouble};
 use compare::{Compared, Dimension};
+
+/// In how many of the dimensions in which a claim fails a counterexample is looked for, the smallest first.
+const DIMENSIONS_SEARCHED: usize = 2;
 
 /// Two expressions that are said to be equal, with the same free labels.
 #[derive(Clone, Debug, PartialEq)]
@@ -164,7 +169,7 @@ pub fn judge(claim: &Claim, limits: &Limits) -> Verdict {
 fn judged(claim: &Claim, limits: &Limits) -> Result<Verdict, Reason> {
     let Claim { left, right, world } = claim;
     [left, right].into_iter().try_for_each(within_depth)?;
-    let needs = Needs::of([left, right], world)?;
+    let needs = Needs::of([(left, 0), (right, 0)], world)?;
     let meter = crate::evaluation::Meter::new(limits.step, limits.total, limits.stop);
     let mut found = Found::default();
     for dimension in dimensions(world) {
@@ -178,7 +183,7 @@ fn judged(claim: &Claim, limits: &Limits) -> Result<Verdict, Reason> {
             Compared::Undefined => found.undefined.push(dimension),
         }
     }
-    found.verdict(claim, limits)
+    found.verdict(&needs, claim, limits)
 }
 
 /// The dimensions to be tried, ascending, each once.
@@ -205,18 +210,51 @@ impl Default for Found {
 }
 
 impl Found {
-    fn verdict(self, claim: &Claim, _limits: &Limits) -> Result<Verdict, Reason> {
+    fn verdict(self, needs: &Needs, claim: &Claim, limits: &Limits) -> Result<Verdict, Reason> {
         let Self { holds, fails, undefined, draws, error_bits } = self;
-        match (holds.is_empty(), fails.is_empty()) {
-            (true, true) if undefined.is_empty() => Err(Reason::NoDimension),
-            (true, true) => Err(Reason::Undefined),
-            (false, true) => Ok(Verdict::Holds { dimensions: holds, undefined, draws, error_bits }),
-            (false, false) => Ok(Verdict::NeedsDimension { holds, fails, undefined, counterexample: None }),
-            (true, false) => {
-                let _ = claim;
-                Ok(Verdict::Differs { dimensions: fails, reason: Unshown::NoWitness })
-            }
+        if fails.is_empty() {
+            return match (holds.is_empty(), undefined.is_empty()) {
+                (true, true) => Err(Reason::NoDimension),
+                (true, false) => Err(Reason::Undefined),
+                _ => Ok(Verdict::Holds { dimensions: holds, undefined, draws, error_bits }),
+            };
         }
+        let shown = shown(&fails, needs, claim, limits)?;
+        if !holds.is_empty() {
+            return Ok(Verdict::NeedsDimension { holds, fails, undefined, counterexample: shown.ok() });
+        }
+        Ok(match shown {
+            Ok(counterexample) => Verdict::Fails(counterexample),
+            Err(reason) => Verdict::Differs { dimensions: fails, reason },
+        })
+    }
+}
+
+/// A proof that a claim fails in one of these dimensions, or why there is none.
+fn shown(
+    fails: &[usize],
+    needs: &Needs,
+    claim: &Claim,
+    limits: &Limits,
+) -> Result<Result<Counterexample, Unshown>, Reason> {
+    let fields = claim.world.fields.iter().zip(&needs.fields);
+    let unknown = fields.filter(|(field, need)| need.is_some() && !field.known).map(|(field, _)| field.name.clone());
+    let mut unknown: Vec<String> = unknown.collect();
+    unknown.sort_unstable();
+    unknown.dedup();
+    if !unknown.is_empty() {
+        return Ok(Err(Unshown::Unknown(unknown)));
+    }
+    if !claim.world.givens.is_empty() {
+        let givens = claim.world.givens.iter().map(|given| given.label.clone()).collect();
+        return Ok(Err(Unshown::Givens(givens)));
+    }
+    let meter = crate::evaluation::Meter::new(limits.step, limits.total, limits.stop);
+    let search = |dimension: &usize| witness::witness(&Dimension::new(claim, needs, *dimension, &meter, limits));
+    match fails.iter().take(DIMENSIONS_SEARCHED).find_map(search) {
+        Some(counterexample) => Ok(Ok(counterexample)),
+        None if functions::used(claim, needs).related => Err(Reason::Functions),
+        None => Ok(Err(Unshown::NoWitness)),
     }
 }
 

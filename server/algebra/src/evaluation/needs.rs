@@ -31,8 +31,9 @@ pub(crate) struct Needs {
 }
 
 impl Needs {
-    /// What these expressions ask for. `Shape` for what the world does not have and for definitions in a circle.
-    pub fn of<'a>(expressions: impl IntoIterator<Item = &'a Expression>, world: &'a World) -> Outcome<Self> {
+    /// What these expressions ask for, each to be known to a base order. `Shape` for what the world does not have and
+    /// for definitions in a circle.
+    pub fn of<'a>(expressions: impl IntoIterator<Item = (&'a Expression, usize)>, world: &'a World) -> Outcome<Self> {
         let mut needs = Self {
             fields: vec![None; world.fields.len()],
             metrics: vec![None; world.metrics.len()],
@@ -42,8 +43,8 @@ impl Needs {
             top: Order::default(),
         };
         let mut walk = Walk { needs: &mut needs, world, parameters: BTreeSet::new() };
-        for expression in expressions {
-            walk.through(expression, Order::default())?;
+        for (expression, base) in expressions {
+            walk.through(expression, Order::of_base(base))?;
         }
         walk.until_nothing_grows()?;
         let parameters = walk.parameters.into_iter().collect();

@@ -112,7 +112,7 @@ impl<'a, N: Number> Point<'a, N> {
     }
 
     /// A metric with all that follows from it.
-    pub(super) fn space(&self, metric: usize) -> Outcome<Rc<Geometry<N>>> {
+    pub(crate) fn space(&self, metric: usize) -> Outcome<Rc<Geometry<N>>> {
         let own = self.world.metrics.get(metric).ok_or(Trouble::Shape)?;
         self.spaces.get(metric, || {
             let values = match own.values {
@@ -134,6 +134,11 @@ impl<'a, N: Number> Point<'a, N> {
     /// The metric that moves the indices of a family.
     pub(super) fn space_of(&self, family: usize) -> Outcome<Rc<Geometry<N>>> {
         self.space(self.families.metric(family).ok_or(Trouble::Shape)?)
+    }
+
+    /// A field on its own levels.
+    pub(crate) fn whole_field(&self, field: usize) -> Outcome<Rc<Tensor<N>>> {
+        self.tensor(Source::Field(field))
     }
 
     /// A tensor on its natural levels.

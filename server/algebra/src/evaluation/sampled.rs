@@ -13,7 +13,7 @@ use crate::expression::{MetricValues, World};
 use crate::jet::{Jet, Order, Ring};
 use crate::number::Number;
 use crate::sample::{Sign, SlotSymmetry, congruent, orbits};
-use crate::tensor::Tensor;
+use crate::tensor::{Tensor, strides};
 use crate::trouble::{Outcome, Trouble};
 
 /// How many matrices are drawn before there is no invertible one: small integers are singular rather often.
@@ -22,12 +22,12 @@ const METRICS_TRIED: usize = 50;
 /// The free coefficients of one field.
 #[derive(Clone, Debug)]
 pub(crate) struct Free<N> {
-    pub lengths: Vec<usize>,
+    lengths: Vec<usize>,
     order: Order,
     /// For each component its orbit, and how it follows from the first of it.
     orbits: Vec<(usize, Sign)>,
     /// For each orbit one coefficient for each monomial up to the order.
-    pub values: Vec<Vec<N>>,
+    values: Vec<Vec<N>>,
     /// Which monomials may have a coefficient.
     allowed: Vec<bool>,
 }
@@ -99,15 +99,57 @@ impl<N: Number> Free<N> {
         }
     }
 
-    /// Places of the coefficients that may be other than 0: orbit and monomial.
-    pub fn places(&self) -> impl Iterator<Item = (usize, usize)> + '_ {
+    /// The coefficients that may be other than 0: orbit and monomial.
+    fn places(&self) -> Vec<(usize, usize)> {
         let alive = |orbit: usize| self.orbits.iter().any(|(own, sign)| *own == orbit && *sign != Sign::Neither);
-        let monomials = self.allowed.iter().enumerate().filter(|(_, free)| **free).map(|(monomial, _)| monomial);
-        let monomials: Vec<usize> = monomials.collect();
-        (0..self.values.len())
-            .filter(move |orbit| alive(*orbit))
-            .flat_map(move |orbit| monomials.clone().into_iter().map(move |monomial| (orbit, monomial)))
+        let monomials = || self.allowed.iter().enumerate().filter(|(_, free)| **free).map(|(monomial, _)| monomial);
+        let orbits = (0..self.values.len()).filter(|orbit| alive(*orbit));
+        orbits.flat_map(|orbit| monomials().map(move |monomial| (orbit, monomial))).collect()
     }
+
+    /// The first component of each orbit.
+    fn first_components(&self) -> Vec<Vec<usize>> {
+        let mut next = 0;
+        let mut found = Vec::new();
+        let steps = strides(&self.lengths);
+        for (place, (orbit, sign)) in self.orbits.iter().enumerate() {
+            // Orbits are numbered in the order of their first components.
+            if *orbit == next {
+                next += 1;
+                if *sign != Sign::Neither {
+                    found.push(self.lengths.iter().zip(&steps).map(|(length, step)| place / step % length).collect());
+                }
+            }
+        }
+        found
+    }
+
+    fn zeroed(&self) -> Self {
+        let values = self.values.iter().map(|row| vec![N::ZERO; row.len()]).collect();
+        Self { values, ..self.clone() }
+    }
+}
+
+/// A field or a metric.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub(crate) enum Part {
+    Field(usize),
+    Metric(usize),
+}
+
+/// Where one coefficient stands.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub(crate) enum Place {
+    /// Of a field or metric: the orbit, the monomial.
+    Of(Part, usize, usize),
+    /// A coordinate of the point.
+    Coordinate(usize),
+}
+
+/// Fields and metrics with the components that say everything about them.
+pub(crate) struct Shown {
+    pub fields: Vec<(usize, Vec<usize>)>,
+    pub metrics: Vec<(usize, Vec<usize>)>,
 }
 
 /// The free coefficients of everything that a claim asks for.
@@ -160,6 +202,106 @@ impl<N: Number> Sampled<N> {
         });
         let metrics = metrics.collect::<Outcome<Vec<_>>>()?;
         Ok(Self { fields, metrics, coordinates, functions: draws.bits() })
+    }
+
+    /// The fields and metrics that are drawn.
+    pub fn parts(&self) -> Vec<Part> {
+        let drawn = |frees: &[Option<Free<N>>]| -> Vec<usize> {
+            frees.iter().enumerate().filter(|(_, free)| free.is_some()).map(|(number, _)| number).collect()
+        };
+        let fields = drawn(&self.fields).into_iter().map(Part::Field);
+        fields.chain(drawn(&self.metrics).into_iter().map(Part::Metric)).collect()
+    }
+
+    fn free(&self, part: Part) -> Option<&Free<N>> {
+        match part {
+            Part::Field(field) => self.fields.get(field)?.as_ref(),
+            Part::Metric(metric) => self.metrics.get(metric)?.as_ref(),
+        }
+    }
+
+    fn free_mut(&mut self, part: Part) -> Option<&mut Free<N>> {
+        match part {
+            Part::Field(field) => self.fields.get_mut(field)?.as_mut(),
+            Part::Metric(metric) => self.metrics.get_mut(metric)?.as_mut(),
+        }
+    }
+
+    /// All coefficients that are free.
+    pub fn places(&self) -> Vec<Place> {
+        let of = |part: Part| {
+            let places = self.free(part).map(Free::places).unwrap_or_default();
+            places.into_iter().map(move |(orbit, monomial)| Place::Of(part, orbit, monomial))
+        };
+        let parts = self.parts();
+        parts.into_iter().flat_map(of).chain((0..self.coordinates.len()).map(Place::Coordinate)).collect()
+    }
+
+    /// The free coefficients of a field or metric, each with the degrees of its monomial.
+    pub fn graded(&self, part: Part, ring: &Ring) -> Vec<(Place, Order)> {
+        let Some(free) = self.free(part) else { return Vec::new() };
+        let degrees: Vec<Order> = ring.monomials(free.order).map(|monomial| ring.degrees(monomial)).collect();
+        let graded = |(orbit, monomial): (usize, usize)| {
+            let degree = degrees.get(monomial).copied().unwrap_or_default();
+            (Place::Of(part, orbit, monomial), degree)
+        };
+        free.places().into_iter().map(graded).collect()
+    }
+
+    /// A coefficient; 0 where there is none.
+    pub fn get(&self, place: Place) -> N {
+        let number = match place {
+            Place::Of(part, orbit, monomial) => {
+                self.free(part).and_then(|free| free.values.get(orbit)?.get(monomial).copied())
+            }
+            Place::Coordinate(number) => self.coordinates.get(number).copied(),
+        };
+        number.unwrap_or(N::ZERO)
+    }
+
+    /// Changes a coefficient.
+    pub fn set(&mut self, place: Place, value: N) {
+        let entry = match place {
+            Place::Of(part, orbit, monomial) => {
+                self.free_mut(part).and_then(|free| free.values.get_mut(orbit)?.get_mut(monomial))
+            }
+            Place::Coordinate(number) => self.coordinates.get_mut(number),
+        };
+        if let Some(entry) = entry {
+            *entry = value;
+        }
+    }
+
+    /// The same with all fields 0, metrics `1` and `-1` on the diagonal, at the origin.
+    pub fn plain(&self, world: &World) -> Self {
+        let fields = self.fields.iter().map(|free| free.as_ref().map(Free::zeroed)).collect();
+        let metric = |(free, metric): (&Option<Free<N>>, &crate::expression::Metric)| {
+            let mut plain = free.as_ref()?.zeroed();
+            plain.set_values(&diagonal::<N>(plain.lengths.first().copied()?, metric.minus));
+            Some(plain)
+        };
+        let metrics = self.metrics.iter().zip(&world.metrics).map(metric).collect();
+        let coordinates = vec![N::ZERO; self.coordinates.len()];
+        Self { fields, metrics, coordinates, functions: self.functions }
+    }
+
+    /// Takes a field or metric from another point.
+    pub fn replace_part(&mut self, part: Part, from: &Self) {
+        if let (Some(own), Some(other)) = (self.free_mut(part), from.free(part)) {
+            *own = other.clone();
+        }
+    }
+
+    /// The components from which all others follow.
+    pub fn shown(&self) -> Shown {
+        let components = |frees: &[Option<Free<N>>]| {
+            let of = |(number, free): (usize, &Option<Free<N>>)| {
+                let components = free.as_ref().map(Free::first_components).unwrap_or_default();
+                components.into_iter().map(move |component| (number, component))
+            };
+            frees.iter().enumerate().flat_map(of).collect()
+        };
+        Shown { fields: components(&self.fields), metrics: components(&self.metrics) }
     }
 }
 

@@ -164,10 +164,7 @@ impl<'a> Dimension<'a> {
 
     /// Whether the imaginary unit stands in the claim or in a definition that it uses.
     fn is_complex(&self) -> bool {
-        let world = &self.claim.world;
-        let used = world.definitions.iter().zip(&self.needs.definitions).filter(|(_, need)| need.is_some());
-        let mut pending: Vec<&Expression> = used.map(|(definition, _)| &definition.body).collect();
-        pending.extend([&self.claim.left, &self.claim.right]);
+        let mut pending = super::functions::expressions(self.claim, self.needs);
         while let Some(expression) = pending.pop() {
             if *expression == Expression::Imaginary {
                 return true;

@@ -4,4 +4,6 @@
 #![allow(clippy::unwrap_used, clippy::panic, clippy::indexing_slicing)]
 
 mod build;
+mod failures;
+mod hostile;
 mod identities;

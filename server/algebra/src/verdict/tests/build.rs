@@ -80,10 +80,6 @@ pub fn epsilon(slots: &str) -> E {
     E::Epsilon { metric: None, slots: ix(slots) }
 }
 
-pub fn epsilon_tensor(slots: &str) -> E {
-    E::Epsilon { metric: Some(0), slots: ix(slots) }
-}
-
 pub fn christoffel(slots: &str) -> E {
     E::Christoffel { metric: 0, slots: ix(slots).try_into().unwrap() }
 }
