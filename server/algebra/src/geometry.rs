@@ -44,28 +44,43 @@ pub struct Geometry<N> {
     inverse: Tensor<N>,
     determinant: Jet<N>,
     signs: Signs,
+    /// The base variable that is the first coordinate.
+    first: Option<usize>,
     christoffel: OnceLock<Outcome<Tensor<N>>>,
     riemann: OnceLock<Outcome<Tensor<N>>>,
     ricci: OnceLock<Outcome<Tensor<N>>>,
 }
 
 impl<N: Number> Geometry<N> {
-    /// Of a metric `g_{ij}`, its rows and columns being the coordinates in order: `Shape` unless it is symmetric with one row for each base variable, `ZeroDivisor` if
-    /// its determinant is 0 at the point.
+    /// Of a metric `g_{ij}`, its rows and columns being the coordinates in order: `Shape` unless it is symmetric
+    /// with one row for each base variable, `ZeroDivisor` if its determinant is 0 at the point.
     pub fn new(metric: Tensor<N>, signs: Signs) -> Outcome<Self> {
-        let dimension = metric.ring().variables();
-        if metric.lengths() != [dimension, dimension] || !metric.agrees(&matrix::transpose(&metric)?)? {
+        if metric.lengths().first() != Some(&metric.ring().variables()) {
+            return Err(Trouble::Shape);
+        }
+        Self::along(metric, Some(0), signs)
+    }
+
+    /// Of a metric whose rows are the base variables from a first one on: the metric of a part of the coordinates,
+    /// the others being parameters; or of rows that are no coordinates, and then without a connection.
+    pub fn along(metric: Tensor<N>, first: Option<usize>, signs: Signs) -> Outcome<Self> {
+        if !metric.agrees(&matrix::transpose(&metric)?)? {
             return Err(Trouble::Shape);
         }
         let Characteristic { adjugate, determinant, .. } = matrix::characteristic(&metric)?;
         let inverse = adjugate.times(&determinant.inverse()?)?.sound()?;
         let (christoffel, riemann, ricci) = (OnceLock::new(), OnceLock::new(), OnceLock::new());
-        Ok(Self { metric, inverse, determinant, signs, christoffel, riemann, ricci })
+        Ok(Self { metric, inverse, determinant, signs, first, christoffel, riemann, ricci })
     }
 
-    /// How many coordinates there are.
+    /// How many rows the metric has.
     pub fn dimension(&self) -> usize {
-        self.metric.ring().variables()
+        self.metric.lengths().first().copied().unwrap_or_default()
+    }
+
+    /// The partial derivatives by the coordinates, in a new last slot; `Shape` if there are none.
+    pub fn gradient(&self, tensor: &Tensor<N>) -> Outcome<Tensor<N>> {
+        tensor.gradient_by(self.first.ok_or(Trouble::Shape)?, self.dimension())
     }
 
     /// `g_{ij}`.
@@ -119,7 +134,7 @@ impl<N: Number> Geometry<N> {
     pub fn christoffel(&self) -> Outcome<&Tensor<N>> {
         kept(&self.christoffel, || {
             // Slots (a, b, c) of d_c g_{ab}.
-            let gradient = self.metric.gradient()?;
+            let gradient = self.gradient(&self.metric)?;
             let half = reciprocal(N::from_integer(2))?;
             let lower = gradient.swapped(1, 2)?.plus(&gradient)?.minus(&gradient.permuted(&[2, 0, 1])?)?;
             contract(&[(&self.inverse, &[0, 3]), (&lower.scaled(half), &[3, 1, 2])], &[0, 1, 2])
@@ -128,13 +143,14 @@ impl<N: Number> Geometry<N> {
 
     /// The covariant derivative of a tensor, its index in a new last slot.
     pub fn covariant(&self, tensor: &Tensor<N>, levels: &[Level]) -> Outcome<Tensor<N>> {
-        covariant(tensor, levels, self.christoffel()?)
+        connection::corrected(tensor, levels, self.christoffel()?, self.gradient(tensor)?)
     }
 
     /// The curvature tensor `R^i_{jkl}` with slots `(i, j, k, l)`.
     pub fn riemann(&self) -> Outcome<&Tensor<N>> {
         kept(&self.riemann, || {
-            let curvature = curvature(self.christoffel()?)?;
+            let christoffel = self.christoffel()?;
+            let curvature = connection::curvature_from(christoffel, &self.gradient(christoffel)?)?;
             Ok(if self.signs.riemann_reversed { curvature.scaled(-N::ONE) } else { curvature })
         })
     }

@@ -11,7 +11,9 @@
 //!   evaluated;
 //! - `symbols`: delta, generalised delta and epsilon;
 //! - `geometry`, `sample`: what follows from a metric, and random fields with symmetries;
-//! - `expression`: claims as data, over fields, metrics and derivatives.
+//! - `expression`: claims as data, over fields, metrics and derivatives;
+//! - `evaluation`: their values at a random point;
+//! - `verdict`: whether two of them are equal: with how little chance of error, or a counterexample.
 //!
 //! Symbols are judged without numbers by `symmetry`, groups of signed permutations of the slots of a tensor, and
 //! `normal_form`, the one form that a monomial has among all those that symmetries and renaming make of it.
@@ -45,6 +47,7 @@
 
 pub mod contraction;
 pub mod draws;
+pub mod evaluation;
 pub mod expression;
 pub mod field;
 pub mod geometry;
@@ -58,3 +61,4 @@ pub mod symbols;
 pub mod symmetry;
 pub mod tensor;
 pub mod trouble;
+pub mod verdict;

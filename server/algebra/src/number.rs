@@ -51,6 +51,16 @@ pub trait Number:
     /// A number that depends on the draws alone: any residue, a small integer as a fraction.
     fn draw(draws: &mut Draws) -> Self;
 
+    /// The same without an imaginary part: what fields are drawn from.
+    fn draw_real(draws: &mut Draws) -> Self {
+        Self::draw(draws)
+    }
+
+    /// The number whose square is -1, where there is one.
+    fn imaginary_unit() -> Option<Self> {
+        None
+    }
+
     /// Whether this is 0; false for an unsound number.
     fn is_zero(self) -> bool {
         self == Self::ZERO

@@ -47,12 +47,12 @@ impl SlotSymmetry {
 
 /// A jet with random coefficients.
 pub fn jet<N: Number>(ring: &Arc<Ring>, order: Order, draws: &mut Draws) -> Outcome<Jet<N>> {
-    Jet::new(ring, order, (0..ring.width(order)).map(|_| N::draw(draws)).collect())
+    Jet::new(ring, order, (0..ring.width(order)).map(|_| N::draw_real(draws)).collect())
 }
 
 /// The coordinates about a random point.
 pub fn coordinates<N: Number>(ring: &Arc<Ring>, draws: &mut Draws) -> Outcome<Vec<Jet<N>>> {
-    (0..ring.variables()).map(|number| Jet::variable(ring, Variable::Base(number), N::draw(draws))).collect()
+    (0..ring.variables()).map(|number| Jet::variable(ring, Variable::Base(number), N::draw_real(draws))).collect()
 }
 
 /// A tensor with random coefficients and these symmetries, all that they generate among them.
@@ -102,7 +102,17 @@ pub fn small_tensor<N: Number>(
 ///
 /// `ZeroDivisor` if no invertible one is found.
 pub fn metric<N: Number>(ring: &Arc<Ring>, order: Order, minus: usize, draws: &mut Draws) -> Outcome<Tensor<N>> {
-    let dimension = ring.variables();
+    metric_of(ring, order, ring.variables(), minus, draws)
+}
+
+/// The same with any number of rows.
+pub fn metric_of<N: Number>(
+    ring: &Arc<Ring>,
+    order: Order,
+    dimension: usize,
+    minus: usize,
+    draws: &mut Draws,
+) -> Outcome<Tensor<N>> {
     let symmetric = [SlotSymmetry::exchange(2, 0, 1, false)];
     for _ in 0..METRICS_TRIED {
         let field = tensor::<N>(ring, order, &[dimension, dimension], &symmetric, draws)?;
@@ -122,8 +132,8 @@ pub fn metric<N: Number>(ring: &Arc<Ring>, order: Order, minus: usize, draws: &m
 }
 
 /// `M^T D M` for a random `M`, row by row.
-fn congruent<N: Number>(dimension: usize, minus: usize, draws: &mut Draws) -> Vec<N> {
-    let rows: Vec<Vec<N>> = (0..dimension).map(|_| (0..dimension).map(|_| N::draw(draws)).collect()).collect();
+pub(crate) fn congruent<N: Number>(dimension: usize, minus: usize, draws: &mut Draws) -> Vec<N> {
+    let rows: Vec<Vec<N>> = (0..dimension).map(|_| (0..dimension).map(|_| N::draw_real(draws)).collect()).collect();
     let sign = |row: usize| if row < minus { -N::ONE } else { N::ONE };
     let entry = |a: usize, b: usize| {
         let at = |row: &[N], column: usize| row.get(column).copied().unwrap_or(N::ZERO);
@@ -134,8 +144,10 @@ fn congruent<N: Number>(dimension: usize, minus: usize, draws: &mut Draws) -> Ve
 
 /// How a component follows from the first of its orbit.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
-enum Sign {
+pub(crate) enum Sign {
+    /// The same.
     Same,
+    /// Its opposite.
     Opposite,
     /// It is its own opposite: 0.
     Neither,
@@ -152,7 +164,7 @@ impl Sign {
 }
 
 /// For each component in row-major order the number of its orbit, and how it follows from the first component.
-fn orbits(lengths: &[usize], size: usize, symmetries: &[SlotSymmetry]) -> Outcome<Vec<(usize, Sign)>> {
+pub(crate) fn orbits(lengths: &[usize], size: usize, symmetries: &[SlotSymmetry]) -> Outcome<Vec<(usize, Sign)>> {
     let images = symmetries.iter().map(|symmetry| images(lengths, symmetry)).collect::<Outcome<Vec<_>>>()?;
     let mut found: Vec<Option<(usize, Sign)>> = vec![None; size];
     let mut vanishing: Vec<bool> = Vec::new();

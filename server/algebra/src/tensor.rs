@@ -114,14 +114,21 @@ impl<N: Number> Tensor<N> {
 
     /// A component; nothing out of bounds.
     pub fn get(&self, component: &[usize]) -> Option<Jet<N>> {
-        let place = strides::place(&self.lengths, component)?;
-        let numbers = self.data.iter().skip(place).step_by(self.size()).copied().collect();
-        Jet::new(&self.ring, self.order, numbers).ok()
+        self.at(strides::place(&self.lengths, component)?)
     }
 
     /// The value of a component at the point; nothing out of bounds.
     pub fn value(&self, component: &[usize]) -> Option<N> {
         self.data.get(strides::place(&self.lengths, component)?).copied()
+    }
+
+    /// A component by its place in row-major order; nothing beyond the last.
+    pub(crate) fn at(&self, place: usize) -> Option<Jet<N>> {
+        if place >= self.size() {
+            return None;
+        }
+        let numbers = self.data.iter().skip(place).step_by(self.size()).copied().collect();
+        Jet::new(&self.ring, self.order, numbers).ok()
     }
 
     /// The values of all components at the point, in row-major order.
@@ -227,6 +234,22 @@ impl<N: Number> Tensor<N> {
         Some(self.with(self.order, lengths, data))
     }
 
+    /// The part where the index of a slot runs over so many values from a first one on; nothing out of bounds.
+    pub fn ranged(&self, slot: usize, first: usize, count: usize) -> Option<Self> {
+        let mut lengths = self.lengths.clone();
+        let steps = strides(&self.lengths);
+        let length = lengths.get_mut(slot)?;
+        if count == 0 || first.checked_add(count)? > *length {
+            return None;
+        }
+        *length = count;
+        let from = first * steps.get(slot)?;
+        let places = places(&lengths, &steps);
+        let gather = |block: &[N]| places.iter().map(|place| at(block, from + place)).collect::<Vec<_>>();
+        let data = self.data.chunks_exact(self.size().max(1)).flat_map(gather).collect();
+        Some(self.with(self.order, lengths, data))
+    }
+
     /// The mean over all permutations of some slots: `(1/k!)` times their sum.
     pub fn symmetrised(&self, slots: &[usize]) -> Outcome<Self> {
         self.averaged(slots, N::ONE)
@@ -250,8 +273,12 @@ impl<N: Number> Tensor<N> {
 
     /// All partial derivatives by the base variables, in a new last slot.
     pub fn gradient(&self) -> Outcome<Self> {
-        let variables = self.ring.variables();
-        let parts = (0..variables).map(|number| self.derivative(Variable::Base(number)));
+        self.gradient_by(0, self.ring.variables())
+    }
+
+    /// The partial derivatives by so many base variables from a first one on, in a new last slot.
+    pub fn gradient_by(&self, first: usize, variables: usize) -> Outcome<Self> {
+        let parts = (first..first.saturating_add(variables)).map(|number| self.derivative(Variable::Base(number)));
         let parts = parts.collect::<Outcome<Vec<_>>>()?;
         let order = parts.first().ok_or(Trouble::Shape)?.order;
         let lengths = [&self.lengths[..], &[variables]].concat();

@@ -19,6 +19,10 @@ pub enum Trouble {
     Order,
     /// The arguments do not fit together: number of slots, their ranges, labels, or rings that differ.
     Shape,
+    /// A function of an argument at which it has no exact value.
+    Function,
+    /// Whoever asked wants no answer any more: time is up.
+    Stopped,
     /// A coefficient such as `1/(n - 2)` does not exist in this dimension.
     Dimension,
     /// The question is too large; which budget it would pass.
@@ -39,6 +43,12 @@ pub enum Budget {
     /// Multiplications of numbers in one contraction or one characteristic polynomial
     /// (`contraction::MULTIPLICATIONS_BUDGET`, or the caller's).
     Multiplications,
+    /// Multiplications of numbers for one claim (`verdict::Limits`).
+    Total,
+    /// How deep an expression is nested (`evaluation::DEPTH_BUDGET`).
+    Depth,
+    /// Terms of the argument of a function that is expanded (`evaluation::TERMS_BUDGET`).
+    Terms,
     /// Factors of one contraction (`contraction::FACTORS_BUDGET`).
     Factors,
     /// Distinct labels of one contraction (`contraction::LABELS_BUDGET`).

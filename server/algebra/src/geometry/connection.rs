@@ -10,7 +10,7 @@ use crate::tensor::Tensor;
 use crate::trouble::{Outcome, Trouble};
 
 /// How a slot takes part in a covariant derivative.
-#[derive(Clone, Copy, Debug, PartialEq, Eq, Hash)]
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Hash, PartialOrd, Ord)]
 pub enum Level {
     /// Contravariant: `+ G^i_{jk} T^j`.
     Up,
@@ -23,10 +23,20 @@ pub enum Level {
 /// The covariant derivative of a tensor, its index in a new last slot; one order less is known of it.
 /// `levels` says for each slot what it is; `Shape` if their number differs from that of the slots.
 pub fn covariant<N: Number>(tensor: &Tensor<N>, levels: &[Level], connection: &Tensor<N>) -> Outcome<Tensor<N>> {
+    corrected(tensor, levels, connection, tensor.gradient()?)
+}
+
+/// The same from the partial derivatives, which stand in a last slot.
+pub(super) fn corrected<N: Number>(
+    tensor: &Tensor<N>,
+    levels: &[Level],
+    connection: &Tensor<N>,
+    gradient: Tensor<N>,
+) -> Outcome<Tensor<N>> {
     if levels.len() != tensor.lengths().len() {
         return Err(Trouble::Shape);
     }
-    let mut derivative = tensor.gradient()?;
+    let mut derivative = gradient;
     for (slot, level) in levels.iter().enumerate() {
         derivative = match level {
             Level::Up => derivative.plus(&correction(tensor, slot, connection, false)?)?,
@@ -52,8 +62,13 @@ fn correction<N: Number>(tensor: &Tensor<N>, slot: usize, connection: &Tensor<N>
 /// `[D_k, D_l] V^i = R^i_{jkl} V^j` without torsion (Misner, Thorne and Wheeler, "Gravitation", 1973, equation
 /// 11.12; from memory). One order less is known of it than of the connection.
 pub fn curvature<N: Number>(connection: &Tensor<N>) -> Outcome<Tensor<N>> {
+    curvature_from(connection, &connection.gradient()?)
+}
+
+/// The same from the partial derivatives of the connection, which stand in a last slot.
+pub(super) fn curvature_from<N: Number>(connection: &Tensor<N>, gradient: &Tensor<N>) -> Outcome<Tensor<N>> {
     // Slots (i, j, l, k) of d_k G^i_{jl}.
-    let derivative = connection.gradient()?.swapped(2, 3)?;
+    let derivative = gradient.swapped(2, 3)?;
     let product = contract(&[(connection, &[0, 4, 2]), (connection, &[4, 1, 3])], &[0, 1, 2, 3])?;
     let half = derivative.plus(&product)?;
     half.minus(&half.swapped(2, 3)?)

@@ -102,7 +102,7 @@ fn look_up(places: &[Option<u32>], member: u32) -> Option<u32> {
 }
 
 /// The degrees of a monomial.
-fn order_of(monomial: &[u8], variables: usize) -> Order {
+pub(super) fn order_of(monomial: &[u8], variables: usize) -> Order {
     let sum = |exponents: &[u8]| exponents.iter().map(|exponent| usize::from(*exponent)).sum();
     monomial
         .split_at_checked(variables)

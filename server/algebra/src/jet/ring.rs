@@ -10,7 +10,7 @@
 
 use std::sync::Arc;
 
-use super::levels::{Level, Monomial, Pair, Tables};
+use super::levels::{Level, Monomial, Pair, Tables, order_of};
 use crate::trouble::{Budget, Outcome, Trouble};
 
 /// The most monomials of a ring. Four variables to order 8 have 495; products are then 12 870 pairs.
@@ -139,6 +139,11 @@ impl Ring {
     pub fn monomials(&self, order: Order) -> impl Iterator<Item = &[u8]> {
         let members = self.level(order).map_or(&[][..], |level| &level.members);
         members.iter().filter_map(|place| self.monomials.get(*place as usize)).map(Vec::as_slice)
+    }
+
+    /// The degrees of a monomial.
+    pub fn degrees(&self, monomial: &[u8]) -> Order {
+        order_of(monomial, self.variables)
     }
 
     /// Where a monomial stands among those up to an order.

@@ -21,6 +21,14 @@ impl<const P: u64> Number for Complex<P> {
         Self::new(Residue::draw(draws), Residue::draw(draws))
     }
 
+    fn draw_real(draws: &mut Draws) -> Self {
+        Residue::draw(draws).into()
+    }
+
+    fn imaginary_unit() -> Option<Self> {
+        Some(Self::I)
+    }
+
     fn inverse(self) -> Option<Self> {
         self.inverse()
     }
