@@ -42,7 +42,7 @@ pub(super) fn judge_document(
     let mut judge = Judge {
         document,
         prices,
-        customs: Customs::of(document.read.text, prices.is_curved()),
+        customs: Customs::of(document.read.text, &prices),
         trees: Trees::default(),
         indexed: vec![false; formulas.len()],
         findings: Vec::new(),
