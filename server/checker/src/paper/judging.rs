@@ -65,7 +65,8 @@ pub(super) fn judge_document(
         unread: formulas.iter().zip(&indexed).filter(|(formula, flag)| **flag && !formula.unread.is_empty()).count(),
         unknown_macros: formulas.iter().zip(&indexed).filter(|(f, flag)| **flag && !f.unknown.is_empty()).count(),
     };
-    let findings = directed(&document.read.declared, formulas, findings, missing);
+    let read = document.read;
+    let findings = directed(&read.declared, read.host, formulas, findings, missing);
     DocumentAnalysis { statistics, findings, symbols: symbols.map(Gatherer::finish) }
 }
 

@@ -50,13 +50,15 @@ fn finding(terms: &Flattened<'_>, made: &Use) -> Option<Finding> {
     Some(Finding::plain(RULE.name, RULE.severity, made.span, message))
 }
 
-/// Whether a kernel of the same name is meant: an epsilon of another size, the vector of an antisymmetric tensor in the
+/// Whether a kernel of the same name is meant: a vector beside a tensor, an epsilon of another size, the vector of an antisymmetric tensor in the
 /// formula that makes it, components in pairs (`d_{14}`), or a kernel that the paper uses again in this way.
 fn is_another(terms: &Flattened<'_>, made: &Use, own: usize, counts: &[usize]) -> bool {
     let same = |other: &&Use| other.kernel == made.kernel && !other.unread;
     let with = |slots: usize| terms.uses.iter().filter(same).filter(|other| other.own_slots().count() == slots).count();
     let uses = u8::try_from(own).map_or(0, |own| terms.judged.prices.uses_with(&made.kernel, own));
-    matches!(made.letter.as_str(), "\\epsilon" | "\\varepsilon")
+    let vector = own == 1 && counts.iter().all(|count| *count > 1);
+    vector
+        || matches!(made.letter.as_str(), "\\epsilon" | "\\varepsilon")
         || made.own_slots().all(|slot| matches!(slot.filling, Filling::Component(_)))
         || uses > 1
         || with(own) > 1

@@ -101,7 +101,7 @@ impl<'a> Flattened<'a> {
         let epsilon = own > 2 && matches!(piece.made.letter.as_str(), "\\epsilon" | "\\varepsilon");
         is_known(piece, self.eyes.meanings, self.eyes.customs)
             && !known.is_some_and(bound)
-            && !(self.eyes.customs.many_valued && piece.operators.len() > 1)
+            && !(self.eyes.customs.partials_differ && piece.operators.len() > 1)
             && !epsilon
             && !matches!(piece.made.letter.as_str(), "\\Gamma" | "R")
     }

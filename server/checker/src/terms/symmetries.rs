@@ -5,7 +5,7 @@
 //! delta are symmetric, an epsilon with three slots or more is antisymmetric, a Christoffel symbol is symmetric in its
 //! two lower slots, `R` with four slots has the symmetries of a Riemann tensor, and in a paper on curvature `R` and
 //! `G` with two are symmetric. Where the text speaks of torsion the connection loses its symmetry and curvature its own;
-//! where it speaks of dislocations or vortices, fields have many values and partial derivatives need not commute.
+//! where it speaks of dislocations, vortices or frames without coordinates, partial derivatives need not commute.
 
 use indexwise_grammar::conventions::{Curvature, Kind};
 use indexwise_grammar::tree::Level;
@@ -14,7 +14,7 @@ use crate::conventions::inferred::Prices;
 use crate::conventions::meanings::{Known, Meanings, Role};
 
 use super::product::Piece;
-use super::uses::{Origin, Use};
+use super::uses::{Origin, Use, UsedSlot};
 
 /// What the usual kernels are taken for in a document.
 #[derive(Clone, Copy, Debug, Default, PartialEq, Eq)]
@@ -23,8 +23,9 @@ pub struct Customs {
     pub curved: bool,
     /// The text speaks of torsion, other than to say that there is none.
     pub torsion: bool,
-    /// The text speaks of lines around which a field has many values.
-    pub many_valued: bool,
+    /// The text speaks of what keeps partial derivatives from commuting: lines around which a field has many values, or
+    /// frames without coordinates.
+    pub partials_differ: bool,
     /// The document writes all its indices below, so that no metric is meant by `g` or `\eta`.
     pub all_below: bool,
 }
@@ -41,8 +42,8 @@ impl Customs {
             })
         });
         let torsion = speaks || text.contains("Einstein-Cartan") || text.contains("Einstein--Cartan");
-        let many_valued = MANY_VALUED.iter().any(|word| text.contains(word));
-        Self { curved: prices.is_curved(), torsion, many_valued, all_below: prices.is_cartesian() }
+        let partials_differ = PARTIALS_DIFFER.iter().any(|word| text.contains(word));
+        Self { curved: prices.is_curved(), torsion, partials_differ, all_below: prices.is_cartesian() }
     }
 }
 
@@ -50,8 +51,8 @@ impl Customs {
 const NO_TORSION_AFTER: &[&str] = &["free", "less", "vanish", "is zero", "is assumed to be zero", "is set to zero"];
 const NO_TORSION_BEFORE: &[&str] = &["no", "without", "zero", "vanishing", "without any", "of no", "any"];
 
-/// Words of a text on singular lines.
-const MANY_VALUED: &[&str] = &[
+/// Words of a text on singular lines or on frames without coordinates.
+const PARTIALS_DIFFER: &[&str] = &[
     "dislocation",
     "Dislocation",
     "disclination",
@@ -63,6 +64,11 @@ const MANY_VALUED: &[&str] = &[
     "vortex line",
     "line defect",
     "defect line",
+    "anholonom",
+    "nonholonom",
+    "non-holonom",
+    "noncoordinate",
+    "non-coordinate",
 ];
 
 /// An exchange of slots that leaves a piece as it is, up to a sign.
@@ -91,8 +97,13 @@ fn origin(piece: &Piece, at: usize) -> Option<Origin> {
 fn derivative_exchanges(piece: &Piece, own: &[usize], meanings: &Meanings, customs: Customs) -> Vec<SignedExchange> {
     let count = piece.made.slots.len();
     let scalar = own.is_empty() && meanings.is_kind(&piece.made.kernel, Kind::Scalar);
+    // Derivatives along the vectors of a frame, `e_a`, do not commute.
+    let frame = |at: usize| {
+        let letter = piece.made.slots.get(at).and_then(UsedSlot::letter);
+        letter.and_then(|letter| meanings.family(letter)).is_some_and(|family| family.frame)
+    };
     let commute = |one: usize| match (origin(piece, one), origin(piece, one + 1)) {
-        (Some(Origin::Partial), Some(Origin::Partial)) => !customs.many_valued,
+        (Some(Origin::Partial), Some(Origin::Partial)) => !customs.partials_differ && !frame(one) && !frame(one + 1),
         (Some(Origin::Covariant), Some(Origin::Covariant)) => scalar && count == 2,
         _ => false,
     };
