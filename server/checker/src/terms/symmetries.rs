@@ -93,10 +93,10 @@ fn origin(piece: &Piece, at: usize) -> Option<Origin> {
     piece.made.slots.get(at).map(|slot| slot.origin)
 }
 
-/// Neighbouring partial derivatives commute; so do two covariant ones on a scalar.
+/// Neighbouring partial derivatives commute; so do two of a scalar of which the outer is covariant, without torsion.
 fn derivative_exchanges(piece: &Piece, own: &[usize], meanings: &Meanings, customs: Customs) -> Vec<SignedExchange> {
     let count = piece.made.slots.len();
-    let scalar = own.is_empty() && meanings.is_kind(&piece.made.kernel, Kind::Scalar);
+    let scalar = own.is_empty() && meanings.is_kind(&piece.made.kernel, Kind::Scalar) && !customs.torsion;
     // Derivatives along the vectors of a frame, `e_a`, do not commute.
     let frame = |at: usize| {
         let letter = piece.made.slots.get(at).and_then(UsedSlot::letter);
@@ -104,7 +104,7 @@ fn derivative_exchanges(piece: &Piece, own: &[usize], meanings: &Meanings, custo
     };
     let commute = |one: usize| match (origin(piece, one), origin(piece, one + 1)) {
         (Some(Origin::Partial), Some(Origin::Partial)) => !customs.partials_differ && !frame(one) && !frame(one + 1),
-        (Some(Origin::Covariant), Some(Origin::Covariant)) => scalar && count == 2,
+        (Some(Origin::Covariant), Some(Origin::Covariant | Origin::Partial)) => scalar && count == 2,
         _ => false,
     };
     (0..count.saturating_sub(1)).filter(|one| commute(*one)).map(|one| swap(count, one, one + 1, false)).collect()
