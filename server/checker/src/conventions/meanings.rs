@@ -407,12 +407,30 @@ impl Family {
         }
     }
 
+    /// The first and the last number of its range, if both are numbers.
+    pub fn numbers(&self) -> Option<(u32, u32)> {
+        match self.range.as_ref()? {
+            Range::Between(first, Bound::Number(last)) => Some((*first, *last)),
+            _ => None,
+        }
+    }
+
     /// Whether two families are known to run over different ranges.
     pub fn differs_from(&self, other: &Self) -> bool {
         match (self.size(), other.size()) {
             (Some(one), Some(two)) => one != two,
             _ => false,
         }
+    }
+
+    /// Whether the values are numbers of the other's range, all but one of them: `from 1 to 2` beside `from 1 to 3`, the
+    /// surface in its space, though nobody says so.
+    pub fn lies_in(&self, other: &Self) -> bool {
+        let (Some(Range::Between(first, Bound::Number(last))), Some(size)) = (&self.range, self.size()) else {
+            return false;
+        };
+        let held = |number: u32| other.holds_number(number) == Some(true);
+        held(*first) && held(*last) && other.size() == size.checked_add(1)
     }
 
     /// Whether one of the families is the spatial part of the other.
