@@ -88,7 +88,13 @@ const EFFECTS: &[(&str, &str, &str, &str, &str)] = &[
         "",
         "family-mismatch",
     ),
-    ("i j k are cartesian", "", r"q = a_{ij} b^{ij} + c_{ik} d^{ik} + e_{jk} f^{jk} + p_{ij} s^i{}_j", "dummy-levels", ""),
+    (
+        "i j k are cartesian",
+        "",
+        r"q = a_{ij} b^{ij} + c_{ik} d^{ik} + e_{jk} f^{jk} + p_{ij} s^i{}_j",
+        "dummy-levels",
+        "",
+    ),
     (
         r"i j k are the spatial part of \mu \nu",
         r"\mu \nu range over 4 dimensions; i j k range over 3 dimensions; T_{\mu\nu} is a tensor",
