@@ -54,7 +54,9 @@ fn finding(terms: &Flattened<'_>, made: &Use) -> Option<Finding> {
 /// formula that makes it, components in pairs (`d_{14}`), or a kernel that the paper uses again in this way.
 fn is_another(terms: &Flattened<'_>, made: &Use, own: usize, counts: &[usize]) -> bool {
     let same = |other: &&Use| other.kernel == made.kernel && !other.unread;
-    let with = |slots: usize| terms.uses.iter().filter(same).filter(|other| other.own_slots().count() == slots).count();
+    let with = |slots: usize| {
+        terms.uses.iter().filter(same).filter(|other| other.own_slots().count() == slots).take(2).count()
+    };
     let uses = u8::try_from(own).map_or(0, |own| terms.judged.prices.uses_with(&made.kernel, own));
     let vector = own == 1 && counts.iter().all(|count| *count > 1);
     vector
