@@ -282,7 +282,10 @@ pub(super) fn nearest_form(text: &str) -> Option<&'static Form> {
     };
     let shares = |form: &&Form| form_words(form).any(|word| carries_meaning(word) && meant.contains(&word));
     // Of equal scores the last is taken: from the end, that is the first form.
-    FORMS.iter().rev().filter(shares).max_by_key(|form| score(form))
+    let near = FORMS.iter().rev().filter(shares).max_by_key(|form| score(form));
+    // `from` and `to` speak of a range, whatever the verb.
+    let range = || ["from", "to"].iter().all(|word| words.iter().any(|one| one == word));
+    near.or_else(|| FORMS.first().filter(|_| range()))
 }
 
 /// The words of a form that stand for themselves, each as the first of those that mean the same.

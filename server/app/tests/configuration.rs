@@ -282,11 +282,11 @@ fn nesting_without_end_is_told() {
 fn marks_and_line_ends_of_other_systems_are_read() {
     let toml = "\u{feff}[rules]\r\nfree-index-mismatch = \"hint\"\r\n\r\n[conventions]\r\nlines = '''\r\nB is a lable\r\n'''\r\n";
     let folder = folder(&[("indexwise.toml", toml), ("a.tex", SLIP)]);
-    let want = ["indexwise.toml:6:1 error convention-unreadable", "a.tex:1:31 hint free-index-mismatch"];
+    let want = ["indexwise.toml:6:8 error convention-unreadable", "a.tex:1:31 hint free-index-mismatch"];
     reports(&folder, "check", 1, &want);
     let report: serde_json::Value = serde_json::from_str(&folder.run("check --report json").out).unwrap();
     // The place in the file, with its mark.
-    let offset = toml.find("B is").unwrap();
+    let offset = toml.find("lable").unwrap();
     assert_eq!(report["files"][0]["findings"][0]["start"]["offset"], offset);
 }
 
@@ -315,7 +315,7 @@ fn a_file_with_macros_that_is_no_text_is_told() {
 fn unreadable_sentences_are_reported_once_a_run_where_they_stand() {
     let toml = "[conventions]\nlines = ['B is a label', 'B is a label; C is a lable', \"\\\\mu is a lable\"]\n";
     let folder = folder(&[("indexwise.toml", toml), ("a.tex", SLIP), ("b.md", SLIP), ("sub/c.md", "words")]);
-    let own = ["indexwise.toml:2:41 error convention-unreadable", "indexwise.toml:2:56 error convention-unreadable"];
+    let own = ["indexwise.toml:2:48 error convention-unreadable", "indexwise.toml:2:56 error convention-unreadable"];
     reports(&folder, "check sub", 1, &own);
     reports(&folder, "check a.tex b.md", 1, &[own[0], own[1], MISMATCH, "b.md:1:31 error free-index-mismatch"]);
     reports(&folder, "check sub --without convention-unreadable", 0, &[]);
@@ -336,9 +336,11 @@ fn a_configuration_file_is_shown_and_not_counted_as_a_document() {
     let text = folder.run("check").out;
     let want = "indexwise.toml, line 4
     C is a lable
-    ^^^^^^^^^^^^                                         convention-unreadable
+           ^^^^^                                         convention-unreadable
 
-    error: this sentence has no known form; the nearest is \"X is a label\"
+    error: this sentence has no known form: `lable` is not a kind of thing;
+        the nearest form is \"LETTER is a label\", as in \"B is a label\"
+    4:1: the sentence
 
 1 file: 1 formula, ";
     assert!(text.starts_with(want), "{text}");
@@ -364,7 +366,7 @@ fn fixes_go_into_documents_beside_a_configuration_with_findings() {
 /// What was mended is told on standard error, and what is left is the configuration's.
 fn reports_after_fix(folder: &Folder) {
     let answer = folder.run("check --fix --report lines");
-    assert_eq!(lines(&answer), ["indexwise.toml:2:11 error convention-unreadable"]);
+    assert_eq!(lines(&answer), ["indexwise.toml:2:18 error convention-unreadable"]);
     assert!(answer.status == 1 && answer.err.contains("mended a.md:1"), "{answer:?}");
 }
 
@@ -376,9 +378,9 @@ fn conventions_can_be_named() {
         [("indexwise.toml", toml), ("bench.txt", list), ("bench.toml", "[conventions]\nlines = 'E is a lable'")];
     let folder = folder(&[&files[..], &[("a.tex", SLIP)]].concat());
     let hint = "a.tex:1:31 hint free-index-mismatch";
-    reports(&folder, "check", 1, &["indexwise.toml:2:11 error convention-unreadable", hint]);
-    reports(&folder, "check --conventions bench.txt", 1, &["bench.txt:4:3 error convention-unreadable", hint]);
-    reports(&folder, "check --conventions bench.toml", 1, &["bench.toml:2:10 error convention-unreadable", hint]);
+    reports(&folder, "check", 1, &["indexwise.toml:2:18 error convention-unreadable", hint]);
+    reports(&folder, "check --conventions bench.txt", 1, &["bench.txt:4:10 error convention-unreadable", hint]);
+    reports(&folder, "check --conventions bench.toml", 1, &["bench.toml:2:17 error convention-unreadable", hint]);
 }
 
 #[test]

@@ -180,6 +180,8 @@ pub struct Unit {
     pub shape: Shape,
     /// Whether it stands above and the same letter stands below in the statement too.
     pub mirrored: bool,
+    /// Whether the letter counts on this kernel elsewhere in the statement: `x^k` beside `x^{k+1}`.
+    pub counter: bool,
     /// Whether the kernel is a vector written without indices (bold, an arrow), so that its script is no component.
     pub vector: bool,
     /// What notation alone says, in tenths of a unit of price: positive for an index.

@@ -1,8 +1,10 @@
-//! `indexwise explain [RULE]`: the page of a rule, or the list of rules.
+//! `indexwise explain [RULE]`: the page of a rule, or the list of rules. The page about sentences that cannot be read
+//! goes on with the forms of those that can.
 
 use std::fmt::Write;
 
 use indexwise_checker::rules::{RULES, Rule, find};
+use indexwise_grammar::conventions::FORMS;
 
 use crate::commands::check::unknown_rule;
 use crate::output::{Status, complain, print};
@@ -20,7 +22,19 @@ pub fn run(name: Option<&str>) -> Status {
 }
 
 fn page(rule: &Rule) -> String {
-    format!("{}\n", rule.page.trim_end())
+    let forms = if rule.name == SENTENCES { forms() } else { String::new() };
+    format!("{}\n{forms}", rule.page.trim_end())
+}
+
+/// The rule about sentences that have no known form.
+const SENTENCES: &str = "convention-unreadable";
+
+/// The forms of sentences with an example each, as a section of a page.
+fn forms() -> String {
+    FORMS.iter().fold("\n## Forms\n\n".to_owned(), |mut text, form| {
+        let _ = writeln!(text, "- {}\n      {}", form.form, form.example);
+        text
+    })
 }
 
 /// One rule a line: name, severity, summary.
@@ -45,6 +59,14 @@ mod tests {
         for (line, rule) in list.lines().zip(RULES) {
             assert!(line.starts_with(rule.name) && line.contains(rule.severity.word()), "{line}");
             assert_eq!(line.ends_with("--only)"), !rule.on, "{line}");
+        }
+    }
+
+    #[test]
+    fn the_page_about_sentences_lists_their_forms() {
+        let listed = |rule: &Rule| FORMS.iter().filter(|form| page(rule).contains(form.example)).count();
+        for rule in RULES {
+            assert_eq!(listed(rule) == FORMS.len(), rule.name == SENTENCES, "{}", rule.name);
         }
     }
 

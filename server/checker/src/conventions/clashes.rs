@@ -9,6 +9,7 @@ use indexwise_grammar::conventions::{Kind, Name, Range, Sentence, Tensor};
 use indexwise_grammar::span::Span;
 
 use crate::finding::{Finding, Related};
+use crate::ledger::shown;
 use crate::rules::{convention_clash, convention_unreadable_name};
 
 use super::built_in::is_metric_by_custom;
@@ -70,8 +71,8 @@ fn unknown_in(sentence: &Sentence, meanings: &Meanings) -> Vec<Finding> {
         let declared = meanings.metrics().into_iter().any(|((kernel, _), _)| *kernel == name.text);
         let known = declared || is_metric_by_custom(&name.text);
         (!known).then(|| {
-            let wanted = format!("no metric is called {0}: say \"{0}_{{ij}} is the metric\"", name.text);
-            convention_unreadable_name(name.span, &wanted)
+            let wanted = "a sentence of the form \"TENSOR is the metric\" declares one";
+            convention_unreadable_name(name.span, &format!("no metric is called {}: {wanted}", shown(&name.text)))
         })
     };
     match sentence {
@@ -84,14 +85,16 @@ fn unknown_in(sentence: &Sentence, meanings: &Meanings) -> Vec<Finding> {
             let lacks = |tensor: &Tensor, name: &Name| tensor.slots().iter().all(|slot| slot.letter != name.text);
             let missing = |tensor: &Tensor| {
                 let names = slots.iter().filter(|name| lacks(tensor, name));
-                let words = |name: &Name| format!("{} has no slot {}", tensor.name(), name.text);
+                let words = |name: &Name| format!("{} has no slot {}", shown(tensor.name()), shown(&name.text));
                 names.map(|name| convention_unreadable_name(name.span, &words(name))).collect::<Vec<_>>()
             };
             tensors.iter().flat_map(missing).collect()
         }
         Sentence::Spatial { of, .. } => {
             let unknown = of.iter().filter(|name| meanings.family_number(&name.text).is_none());
-            let words = |name: &Name| format!("{} belongs to no family of indices", name.text);
+            let words = |name: &Name| {
+                format!("{} belongs to no family of indices: say first what it runs over", shown(&name.text))
+            };
             unknown.map(|name| convention_unreadable_name(name.span, &words(name))).collect()
         }
         _ => Vec::new(),
@@ -120,8 +123,9 @@ fn claims(sentence: &Sentence, span: Span) -> Vec<Claimed> {
         }
         Sentence::Spatial { letters: names, .. } => letters(names, &Claim::Index(None)),
         Sentence::Cartesian(names) => letters(names, &Claim::Levels(false)),
-        Sentence::Metric { tensor, .. } => {
-            let slots = tensor.slots();
+        Sentence::Metric { tensor, constant, .. } => {
+            // The constant metric of Cartesian axes moves no levels.
+            let slots = if *constant { Vec::new() } else { tensor.slots() };
             let levels = slots.iter().map(|slot| Claimed {
                 name: slot.letter.clone(),
                 slots: None,
@@ -182,11 +186,22 @@ fn excludes(earlier: &Claimed, later: &Claimed) -> Option<&'static str> {
         (Claim::Exchange(a, b, one), Claim::Exchange(c, d, two)) if same_slots && (a, b) == (c, d) && one != two => {
             Some("is symmetric and antisymmetric in the same slots")
         }
-        (Claim::Kind(one), Claim::Kind(two)) if kinds_exclude(*one, *two) => Some("is called something else already"),
+        (Claim::Kind(one), Claim::Kind(two)) if kinds_exclude(*one, *two) => Some(called_already(*one)),
         (Claim::Kind(Kind::Constant), Claim::Dimension(_)) | (Claim::Dimension(_), Claim::Kind(Kind::Constant)) => None,
         (Claim::Dimension(one), Claim::Dimension(two)) if one != two => Some("is another dimension already"),
         (Claim::Defined, Claim::Defined) if same_slots => Some("is defined already"),
         _ => None,
+    }
+}
+
+/// What a kernel of a kind that excludes others is called.
+const fn called_already(kind: Kind) -> &'static str {
+    match kind {
+        Kind::Scalar => "is called a scalar already",
+        Kind::Vector => "is called a vector already",
+        Kind::Matrix => "is called a matrix already",
+        Kind::EpsilonSymbol => "is called a symbol already",
+        _ => "is called a tensor already",
     }
 }
 

@@ -32,7 +32,7 @@ pub struct Declared {
 /// so that it need not be said in every paper. Where a file writes a sentence with escapes, places inside of it are not
 /// known and the finding stands at the whole.
 pub fn problems(shared: &SharedConventions) -> Vec<Finding> {
-    let mut found = Declared::shared(shared, &Meanings::default()).problems();
+    let mut found = Declared::shared(shared, &Meanings::default()).problems(Host::Latex);
     for (text, span) in shared.sentences.iter().filter(|(text, span)| span.of(&shared.text) != text) {
         let shifted = Span { end: span.start.saturating_add(u32::try_from(text.len()).unwrap_or(u32::MAX)), ..*span };
         for finding in &mut found {
@@ -78,9 +78,10 @@ impl Declared {
         Self::of(&shared.sentences, Host::Note, &Macros::default(), outer)
     }
 
-    /// What is wrong with its own sentences: unreadable ones, clashes, names that mean nothing.
-    pub fn problems(&self) -> Vec<Finding> {
-        let mut found: Vec<Finding> = self.unreadable.iter().map(convention_unreadable).collect();
+    /// What is wrong with its own sentences: unreadable ones, clashes, names that mean nothing. Examples are spelt as in
+    /// the host.
+    pub fn problems(&self, host: Host) -> Vec<Finding> {
+        let mut found: Vec<Finding> = self.unreadable.iter().map(|one| convention_unreadable(one, host)).collect();
         found.extend(clashes(&self.sentences));
         found.extend(unknown_names(&self.sentences, &self.meanings));
         found

@@ -401,6 +401,9 @@ impl Prices<'_> {
     fn declared_score(&self, unit: &Unit) -> Option<i32> {
         let meanings = &self.declared.meanings;
         meanings.family_number(&unit.letter)?;
+        if unit.counter {
+            return None;
+        }
         let declared = match unit.shape {
             Shape::Several => DECLARED_INDEX,
             _ if meanings.declares(&unit.kernel) => DECLARED_INDEX,
@@ -417,7 +420,7 @@ impl Prices<'_> {
     }
 
     /// Whether the file writes all its indices below.
-    fn is_cartesian(&self) -> bool {
+    pub fn is_cartesian(&self) -> bool {
         let [mixed, below] = self.file.written;
         below >= OPPOSITE_PAIRS && below * 100 >= CARTESIAN_FILE_PERCENT * (below + mixed)
     }
@@ -512,6 +515,16 @@ impl Prices<'_> {
     /// In how many balanced statements a kernel carries so many letters and numbers above and below.
     pub fn uses(&self, form: &(CompactString, u8, u8)) -> u32 {
         self.paper.forms.get(form).copied().unwrap_or(0)
+    }
+
+    /// In how many balanced statements a kernel carries so many letters and numbers, wherever they stand.
+    pub fn uses_with(&self, kernel: &str, slots: u8) -> u32 {
+        (0..=slots).map(|up| self.uses(&(kernel.into(), up, slots - up))).sum()
+    }
+
+    /// In how many statements of the paper a kernel carries an index of this class alone.
+    pub fn lone_uses(&self, kernel: &str, letter: &str) -> u32 {
+        self.paper.lone.get(&(kernel.into(), class_of(letter))).copied().unwrap_or(0)
     }
 
     /// Letters of a class that the file uses as indices, the most used first.

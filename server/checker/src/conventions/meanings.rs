@@ -216,6 +216,11 @@ impl Meanings {
                 metric: raised_by.as_ref().map(|name| name.text.clone()),
                 ..Family::of(letters)
             }),
+            // Here, so that of a label and an index in one scope the first word counts.
+            Sentence::Labels(names) => {
+                let free = names.iter().filter(|name| self.family_number(&name.text).is_none());
+                self.labels.extend(free.map(|name| name.text.clone()).collect::<Vec<_>>());
+            }
             Sentence::Spatial { letters, of } => {
                 self.add_family(Family { part_of: of.first().map(|name| name.text.clone()), ..Family::of(letters) })
             }
@@ -224,7 +229,11 @@ impl Meanings {
     }
 
     /// Adds a family, or what is new of it where its letters are known already.
-    fn add_family(&mut self, own: Family) {
+    fn add_family(&mut self, mut own: Family) {
+        own.letters.retain(|letter| !self.labels.contains(letter));
+        if own.letters.is_empty() {
+            return;
+        }
         let known = self.families.iter_mut().find(|family| own.letters.iter().all(|one| family.letters.contains(one)));
         let Some(known) = known else {
             let taken = |letter: &CompactString| self.families.iter().any(|family| family.letters.contains(letter));
@@ -270,7 +279,6 @@ impl Meanings {
                     }
                 }
             }
-            Sentence::Labels(names) => push_all(&mut self.labels, names),
             Sentence::CoordinateNames(names) => push_all(&mut self.components, names),
             Sentence::CovariantDerivative { kernel, of } => {
                 self.derivatives.push((kernel.text.clone(), of.as_ref().map(|name| name.text.clone())));
@@ -407,12 +415,30 @@ impl Family {
         }
     }
 
+    /// The first and the last number of its range, if both are numbers.
+    pub fn numbers(&self) -> Option<(u32, u32)> {
+        match self.range.as_ref()? {
+            Range::Between(first, Bound::Number(last)) => Some((*first, *last)),
+            _ => None,
+        }
+    }
+
     /// Whether two families are known to run over different ranges.
     pub fn differs_from(&self, other: &Self) -> bool {
         match (self.size(), other.size()) {
             (Some(one), Some(two)) => one != two,
             _ => false,
         }
+    }
+
+    /// Whether the values are numbers of the other's range, all but one of them: `from 1 to 2` beside `from 1 to 3`, the
+    /// surface in its space, though nobody says so.
+    pub fn lies_in(&self, other: &Self) -> bool {
+        let (Some(Range::Between(first, Bound::Number(last))), Some(size)) = (&self.range, self.size()) else {
+            return false;
+        };
+        let held = |number: u32| other.holds_number(number) == Some(true);
+        held(*first) && held(*last) && other.size() == size.checked_add(1)
     }
 
     /// Whether one of the families is the spatial part of the other.
@@ -425,7 +451,10 @@ impl Known {
     /// Notes that slots may be exchanged.
     fn exchange(&mut self, slots: &[usize], antisymmetric: bool) {
         let own = Exchange { slots: slots.to_vec(), antisymmetric };
-        if slots.len() > 1 && !self.exchanges.contains(&own) {
+        // Of two slots with both signs nothing would be left but zero: the first word counts.
+        let shared = |other: &Exchange| other.slots.iter().filter(|slot| slots.contains(slot)).count();
+        let clash = self.exchanges.iter().any(|other| other.antisymmetric != antisymmetric && shared(other) > 1);
+        if slots.len() > 1 && !clash && !self.exchanges.contains(&own) {
             self.exchanges.push(own);
         }
     }

@@ -2,6 +2,7 @@
 
 use compact_str::CompactString;
 use indexwise_grammar::conventions::Sentence;
+use indexwise_grammar::hosts::Host;
 use indexwise_grammar::span::Span;
 use indexwise_grammar::tree::Formula;
 use rustc_hash::FxHashSet;
@@ -28,6 +29,7 @@ fn target(directive: Span, formulas: &[Formula]) -> Option<usize> {
 /// Findings after the author's `skip` and `allow`, with those about the document (`about`) and about the directives.
 pub(super) fn directed(
     declared: &Declared,
+    host: Host,
     formulas: &[Formula],
     mut findings: Vec<(usize, Finding)>,
     mut about: Vec<Finding>,
@@ -50,7 +52,7 @@ pub(super) fn directed(
             _ => {}
         }
     }
-    about.extend(declared.problems());
+    about.extend(declared.problems(host));
     about.extend(findings.into_iter().map(|(_, finding)| finding));
     about.retain(|finding| !allowed.iter().any(|rule| *rule == finding.rule));
     about

@@ -34,7 +34,7 @@ pub fn implied(paper: &Paper, cancel: &Cancel) -> Vec<Implied> {
 /// Symmetries that formulas of a document state.
 fn stated(document: &Sketched<'_>, prices: &Prices<'_>, out: &mut Vec<Implied>) {
     let scores = document.scores(prices);
-    let customs = Customs::of(document.read.text, prices.is_curved());
+    let customs = Customs::of(document.read.text, prices);
     let mut trees = Trees::default();
     for statement in document.statements.iter().filter(|statement| statement.sketch.sides.len() > 1) {
         let reading = statement.read(&scores);

@@ -43,7 +43,7 @@ pub(super) fn judge_document(
     let mut judge = Judge {
         document,
         prices,
-        customs: Customs::of(document.read.text, prices.is_curved()),
+        customs: Customs::of(document.read.text, &prices),
         trees: Trees::default(),
         indexed: vec![false; formulas.len()],
         findings: Vec::new(),
@@ -66,7 +66,8 @@ pub(super) fn judge_document(
         unread: formulas.iter().zip(&indexed).filter(|(formula, flag)| **flag && !formula.unread.is_empty()).count(),
         unknown_macros: formulas.iter().zip(&indexed).filter(|(f, flag)| **flag && !f.unknown.is_empty()).count(),
     };
-    let findings = directed(&document.read.declared, formulas, findings, missing);
+    let read = document.read;
+    let findings = directed(&read.declared, read.host, formulas, findings, missing);
     DocumentAnalysis { statistics, findings, symbols: symbols.map(Gatherer::finish) }
 }
 

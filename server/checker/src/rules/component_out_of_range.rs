@@ -19,8 +19,11 @@ pub(super) const RULE: Rule = Rule {
 fn check(terms: &Flattened<'_>) -> Vec<Finding> {
     let mut out = Vec::new();
     for made in terms.uses.iter().filter(|made| !made.unread && !made.power) {
-        let slots = made.own_slots().enumerate();
-        out.extend(slots.filter_map(|(at, slot)| finding(terms, made, at, slot)));
+        let mut found: Vec<Finding> =
+            made.own_slots().enumerate().filter_map(|(at, slot)| finding(terms, made, at, slot)).collect();
+        // The digits of one number share its place.
+        found.dedup_by_key(|finding| finding.span);
+        out.extend(found);
     }
     out
 }
@@ -28,10 +31,19 @@ fn check(terms: &Flattened<'_>) -> Vec<Finding> {
 fn finding(terms: &Flattened<'_>, made: &Use, at: usize, slot: &UsedSlot) -> Option<Finding> {
     let Filling::Component(name) = &slot.filling else { return None };
     let number: u32 = name.parse().ok()?;
-    let (letter, family) = terms.family_of_slot(made, at)?;
+    let (letter, family, declared) = terms.family_of_slot(made, at)?;
+    let (first, last) = family.numbers()?;
     if family.holds_number(number)? || terms.whole_holds(&letter, number) {
         return None;
     }
-    let message = format!("{number} is no value of an index such as {}", shown(&letter));
+    // Below the range: the time beside space, or the number of an order. Right above it, on a kernel of which nothing
+    // is said: the direction out of a surface or into a further dimension.
+    if number < first || !declared && number == last + 1 {
+        return None;
+    }
+    let message = format!(
+        "{number} is out of range: the slot takes an index such as {0}, and {0} runs from {first} to {last}",
+        shown(&letter)
+    );
     Some(Finding::plain(RULE.name, RULE.severity, slot.span, message))
 }

@@ -1,6 +1,7 @@
 //! A sentence of a directive or of the conventions fits no form, or names what is not there.
 
-use indexwise_grammar::conventions::{FORMS, Unreadable};
+use indexwise_grammar::conventions::{FORMS, Form, Unreadable};
+use indexwise_grammar::hosts::Host;
 use indexwise_grammar::span::Span;
 
 use crate::finding::{Finding, Related, Severity};
@@ -16,10 +17,14 @@ pub(super) const RULE: Rule = Rule {
     check: Check::Document,
 };
 
-/// The finding for a sentence: it stands at the word where reading stopped.
-pub(crate) fn convention_unreadable(sentence: &Unreadable) -> Finding {
+/// The finding for a sentence: it stands at the word where reading stopped. The example is spelt as in the host.
+pub(crate) fn convention_unreadable(sentence: &Unreadable, host: Host) -> Finding {
+    let example = |form: &Form| match form.example_note {
+        Some(example) if host == Host::Note => example,
+        _ => form.example,
+    };
     let nearest = match sentence.nearest {
-        Some(form) => format!("the nearest form is \"{}\", as in \"{}\"", form.form, form.example),
+        Some(form) => format!("the nearest form is \"{}\", as in \"{}\"", form.form, example(form)),
         None => format!("\"indexwise explain {}\" lists the {} forms", RULE.name, FORMS.len()),
     };
     let message = format!("this sentence has no known form: {}; {nearest}", sentence.reason);

@@ -36,25 +36,36 @@ fn finding(terms: &Flattened<'_>, made: &Use) -> Option<Finding> {
     }
     // Stacked scripts have no common order, and frames are written either way: the families count, not their order.
     let mut left: Vec<&CompactString> = declared.iter().collect();
-    let mut odd = None;
+    let mut odd = Vec::new();
     for (slot, letter) in &used {
-        match left.iter().position(|other| fits(terms, other, letter)) {
+        match left.iter().position(|other| fits(terms, made, other, letter)) {
             Some(at) => {
                 left.remove(at);
             }
-            None => odd = odd.or(Some((*slot, *letter))),
+            None => odd.push((*slot, *letter)),
         }
     }
-    let (slot, letter) = odd?;
-    let other = left.first()?;
+    let ((slot, letter), other) = (odd.first()?, left.first()?);
+    if odd.len() == used.len() && is_another(terms, made, letter, used.len()) {
+        return None;
+    }
     let message = format!(
-        "{} belongs to another range than the slot of {}, which is declared with {}",
-        shown(letter),
+        "{} is declared with {} in this slot, but {} runs over another range",
         shown(&made.kernel),
-        shown(other)
+        shown(other),
+        shown(letter)
     );
     Some(Finding::plain(RULE.name, RULE.severity, slot.span, message))
 }
+
+/// Whether a kernel whose letters are all of other ranges is another one of the same name: a form `\omega_{\mu\nu}`
+/// beside a connection `\omega^a{}_b`.
+fn is_another(terms: &Flattened<'_>, made: &Use, letter: &str, slots: usize) -> bool {
+    slots > 1 || terms.judged.prices.lone_uses(&made.kernel, letter) >= OTHER_USES
+}
+
+/// Statements with a letter of another range from which it is another kernel.
+const OTHER_USES: u32 = 2;
 
 /// The letters that a kernel with so many slots is declared with, if all of them belong to families.
 fn declared_letters(terms: &Flattened<'_>, made: &Use) -> Vec<CompactString> {
@@ -68,7 +79,10 @@ fn declared_letters(terms: &Flattened<'_>, made: &Use) -> Vec<CompactString> {
 /// A metric joins indices of one range, declared or not; the spatial part counts as the whole.
 fn joins_by_custom(terms: &Flattened<'_>, made: &Use, used: &[(&UsedSlot, &CompactString)]) -> Option<Finding> {
     let [(_, one), (slot, two)] = used else { return None };
-    if !is_metric_by_custom(&made.kernel) || fits(terms, one, two) {
+    let surface = |one: &Family, two: &Family| one.lies_in(two) || two.lies_in(one);
+    let meanings = terms.eyes.meanings;
+    let nested = meanings.family(one).zip(meanings.family(two)).is_some_and(|(one, two)| surface(one, two));
+    if !is_metric_by_custom(&made.kernel) || nested || fits(terms, made, one, two) {
         return None;
     }
     let message =
@@ -76,11 +90,11 @@ fn joins_by_custom(terms: &Flattened<'_>, made: &Use, used: &[(&UsedSlot, &Compa
     Some(Finding::plain(RULE.name, RULE.severity, slot.span, message))
 }
 
-/// Whether a letter may stand where another is declared: its family is unknown, the same, of the same size, or one is
-/// the spatial part of the other.
-fn fits(terms: &Flattened<'_>, declared: &str, letter: &str) -> bool {
+/// Whether a letter may stand where another is declared: its family is unknown, the same, of the same size, one is the
+/// spatial part of the other, or its values lie in the declared range. A connection has components out of its surface.
+fn fits(terms: &Flattened<'_>, made: &Use, declared: &str, letter: &str) -> bool {
     let meanings = terms.eyes.meanings;
     let (Some(one), Some(two)) = (meanings.family(declared), meanings.family(letter)) else { return true };
-    let part = |one: &Family, two: &Family| one.is_part_of(two);
-    !one.differs_from(two) || part(one, two) || part(two, one)
+    let connection = made.letter == "\\Gamma" && one.lies_in(two);
+    !one.differs_from(two) || one.is_part_of(two) || two.is_part_of(one) || two.lies_in(one) || connection
 }

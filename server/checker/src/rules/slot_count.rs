@@ -5,7 +5,7 @@ use indexwise_grammar::conventions::Kind;
 use crate::finding::{Finding, Severity};
 use crate::ledger::shown;
 use crate::terms::Flattened;
-use crate::terms::uses::Use;
+use crate::terms::uses::{Filling, Use};
 
 use super::{Check, Rule};
 
@@ -34,7 +34,7 @@ fn finding(terms: &Flattened<'_>, made: &Use) -> Option<Finding> {
     let fits = |count: &usize| *count == own || *count == made.slots.len();
     let open = [Kind::Matrix, Kind::NonCommuting, Kind::Variation, Kind::EpsilonTensor, Kind::EpsilonSymbol];
     let open = open.into_iter().any(|kind| meanings.is_kind(&made.kernel, kind));
-    if counts.iter().any(fits) || open || is_curvature(terms, made, own) {
+    if counts.iter().any(fits) || open || is_curvature(terms, made, own) || is_another(terms, made, own, &counts) {
         return None;
     }
     // What is declared by its name alone has no number of slots, but a scalar has none.
@@ -42,11 +42,29 @@ fn finding(terms: &Flattened<'_>, made: &Use) -> Option<Finding> {
     if bare && !meanings.is_kind(&made.kernel, Kind::Scalar) {
         return None;
     }
-    let declared: Vec<String> = counts.iter().map(usize::to_string).collect();
+    let number = |count: &usize| if *count == 0 { "none".to_owned() } else { count.to_string() };
+    let declared: Vec<String> = counts.iter().map(number).collect();
     let indices = if own == 1 { "index" } else { "indices" };
     let message =
         format!("{} carries {own} {indices} here, but is declared with {}", shown(&made.kernel), declared.join(" or "));
     Some(Finding::plain(RULE.name, RULE.severity, made.span, message))
+}
+
+/// Whether a kernel of the same name is meant: a vector beside a tensor, an epsilon of another size, the vector of an antisymmetric tensor in the
+/// formula that makes it, components in pairs (`d_{14}`), or a kernel that the paper uses again in this way.
+fn is_another(terms: &Flattened<'_>, made: &Use, own: usize, counts: &[usize]) -> bool {
+    let same = |other: &&Use| other.kernel == made.kernel && !other.unread;
+    let with = |slots: usize| {
+        terms.uses.iter().filter(same).filter(|other| other.own_slots().count() == slots).take(2).count()
+    };
+    let uses = u8::try_from(own).map_or(0, |own| terms.judged.prices.uses_with(&made.kernel, own));
+    let vector = own == 1 && counts.iter().all(|count| *count > 1);
+    vector
+        || matches!(made.letter.as_str(), "\\epsilon" | "\\varepsilon")
+        || made.own_slots().all(|slot| matches!(slot.filling, Filling::Component(_)))
+        || uses > 1
+        || with(own) > 1
+        || counts.iter().any(|count| with(*count) > 0)
 }
 
 /// `R` is a name for the Riemann tensor, the Ricci tensor and the scalar alike.

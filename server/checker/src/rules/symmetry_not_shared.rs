@@ -22,7 +22,7 @@ fn check(terms: &Flattened<'_>) -> Vec<Finding> {
     let mut out = Vec::new();
     for (number, pair) in terms.sides.windows(2).enumerate() {
         let [one, two] = pair else { continue };
-        if !terms.is_equality(number) || !terms.is_complete(one) || !terms.is_complete(two) {
+        if !terms.is_equality(number) || !terms.is_complete(one) || !terms.is_complete(two) || states_one(one, two) {
             continue;
         }
         for (a, b) in free_pairs(one) {
@@ -42,6 +42,12 @@ fn check(terms: &Flattened<'_>) -> Vec<Finding> {
         }
     }
     out
+}
+
+/// Whether the statement itself claims a symmetry, of the same kernels with other letters: `\nabla_c b_{ab} = \nabla_b
+/// b_{ac}`.
+fn states_one(one: &Side, two: &Side) -> bool {
+    matches!((one.products.as_slice(), two.products.as_slice()), ([one], [two]) if one.has_kernels_of(two))
 }
 
 /// Pairs of letters that are free on a side.

@@ -36,7 +36,7 @@ pub(super) fn sketch(statement: &Statement) -> Sketch {
         add_side(&mut builder.sketch, side.span, &terms, is_zero(side));
     }
     let mut sketch = builder.sketch;
-    cast_doubts(&mut sketch, &builder.named);
+    cast_doubts(&mut sketch, &builder.named, &builder.counters);
     sketch.coordinates = listed_coordinates(statement);
     if sketch.relations.is_empty() && sketch.sides.iter().all(|side| side.any) {
         sketch.unjudged = sketch.unjudged.or(Some("nothing to compare"));

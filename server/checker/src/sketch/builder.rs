@@ -10,6 +10,8 @@ pub(super) struct Builder {
     pub sketch: Sketch,
     /// Letters that name one of several things.
     pub named: Vec<CompactString>,
+    /// Kernels with letters that count there: the k of `x^{k+1}`.
+    pub counters: Vec<(CompactString, CompactString)>,
 }
 
 impl Builder {

@@ -16,13 +16,15 @@ const VECTOR_DOUBT: i32 = 40;
 /// letter names one of several things.
 pub(super) const NAME_DOUBT: i32 = 80;
 
-/// Lowers the bias of letters that the statement uses otherwise too. `named` name one of several things.
-pub(super) fn cast_doubts(sketch: &mut Sketch, named: &[CompactString]) {
+/// Lowers the bias of letters that the statement uses otherwise too. `named` name one of several things, `counters`
+/// are kernels with letters that count there.
+pub(super) fn cast_doubts(sketch: &mut Sketch, named: &[CompactString], counters: &[(CompactString, CompactString)]) {
     let kernels: Vec<(CompactString, Shape)> =
         sketch.units.iter().map(|unit| (unit.kernel_letter.clone(), unit.shape)).collect();
     let below: Vec<CompactString> =
         sketch.units.iter().filter(|unit| unit.level == Level::Down).map(|unit| unit.letter.clone()).collect();
     for unit in &mut sketch.units {
+        unit.counter = counters.iter().any(|(kernel, letter)| *kernel == unit.kernel && *letter == unit.letter);
         unit.mirrored = unit.level == Level::Up && below.contains(&unit.letter);
         let vector = |shape| kernels.iter().any(|(letter, other)| *letter == unit.letter && *other == shape);
         // A derivative along a vector of the statement, `\nabla_m t = m^a ..`, or a component along two of them,

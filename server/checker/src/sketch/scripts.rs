@@ -79,6 +79,7 @@ pub(super) fn read_scripts(builder: &mut Builder, carrier: Carrier<'_>, scripts:
             builder.sketch.unjudged = Some("a script is too long");
             continue;
         }
+        note_counters(builder, carrier, script);
         if let Some(power) = power_of(script, carrier, scripts) {
             out.power = Some(power);
         } else if is_exponential(script, carrier, scripts) {
@@ -121,6 +122,18 @@ pub(super) fn read_scripts(builder: &mut Builder, carrier: Carrier<'_>, scripts:
         at += length;
     }
     out
+}
+
+/// Notes the letters of an arithmetic: `x^{k+1}` makes k a counter on this kernel, though it may run elsewhere.
+fn note_counters(builder: &mut Builder, carrier: Carrier<'_>, script: &Script) {
+    if holds_indices(script) {
+        return;
+    }
+    let letters = script.items.iter().filter_map(|item| match &item.kind {
+        ItemKind::Letter(letter) => Some((CompactString::from(carrier.name), letter.clone())),
+        _ => None,
+    });
+    builder.counters.extend(letters);
 }
 
 /// A number above that is a power rather than a component: squares close, others are not judged.
@@ -393,6 +406,7 @@ fn place(
         level: written,
         shape,
         mirrored: false,
+        counter: false,
         vector: carrier.bold,
         bias,
     });
@@ -521,8 +535,14 @@ fn note_form(builder: &mut Builder, carrier: Carrier<'_>, scripts: &[Script], ca
         return;
     }
     let slots = |level: Level| {
-        let mine =
-            scripts.iter().filter(|script| script.level == level && !script.before).flat_map(|script| &script.items);
+        // What follows a comma or a semicolon is a derivative's.
+        let own = |script: &'_ Script| {
+            script.items.iter().take_while(|item| !matches!(item.kind, ItemKind::Comma | ItemKind::Semicolon)).count()
+        };
+        let mine = scripts
+            .iter()
+            .filter(|script| script.level == level && !script.before)
+            .flat_map(|script| script.items.iter().take(own(script)));
         let count = mine.filter(|item| matches!(item.kind, ItemKind::Letter(_) | ItemKind::Number(_))).count();
         u8::try_from(count).unwrap_or(u8::MAX)
     };

@@ -5,6 +5,7 @@ use indexwise_algebra::rational::Rational;
 use indexwise_algebra::symmetry::Sign;
 use indexwise_grammar::tree::{Atom, Claim, Statement, walk};
 
+use crate::conventions::built_in::{LetterClass, class_of};
 use crate::conventions::meanings::{Family, Known, Role};
 use crate::ledger::{Judged, shown};
 
@@ -80,15 +81,29 @@ impl<'a> Flattened<'a> {
     /// Whether all kernels of a side are arbitrary but for their symmetries, so that what the normal form does not show
     /// does not hold. A connection, a curvature or an epsilon obeys further identities.
     pub fn is_arbitrary(&self, side: &Side) -> bool {
-        side.products.iter().flat_map(|one| &one.pieces).all(|piece| self.is_arbitrary_piece(piece))
+        // The ends of a sum over capitals are held on their levels, though mostly they could move.
+        let held = |product: &Product| {
+            let capital = |letter: &&CompactString| class_of(letter) == LetterClass::Capital;
+            product
+                .letters()
+                .filter(capital)
+                .any(|letter| !self.eyes.is_cartesian(letter) && product.count(letter) == 2)
+        };
+        let arbitrary = |product: &Product| product.pieces.iter().all(|piece| self.is_arbitrary_piece(piece));
+        side.products.iter().all(|product| arbitrary(product) && !held(product))
     }
 
     fn is_arbitrary_piece(&self, piece: &Piece) -> bool {
         let bound = |known: &Known| matches!(known.role, Some(Role::Christoffel | Role::Curvature(_)));
-        let known = self.eyes.meanings.known(&piece.made.kernel, piece.made.own_slots().count());
+        let own = piece.made.own_slots().count();
+        let known = self.eyes.meanings.known(&piece.made.kernel, own);
+        // With two slots it may be the strain.
+        let epsilon = own > 2 && matches!(piece.made.letter.as_str(), "\\epsilon" | "\\varepsilon");
         is_known(piece, self.eyes.meanings, self.eyes.customs)
             && !known.is_some_and(bound)
-            && !matches!(piece.made.letter.as_str(), "\\Gamma" | "\\epsilon" | "\\varepsilon" | "R")
+            && !(self.eyes.customs.partials_differ && piece.operators.len() > 1)
+            && !epsilon
+            && !matches!(piece.made.letter.as_str(), "\\Gamma" | "R")
     }
 
     /// Whether the paper has a connection: it speaks of curvature, or declares a metric or a covariant derivative.
@@ -98,11 +113,12 @@ impl<'a> Flattened<'a> {
     }
 
     /// The declared family of a slot, with a letter of it: that of the letter the kernel is declared with, else of
-    /// the letters beside it.
-    pub fn family_of_slot(&self, made: &'a Use, at: usize) -> Option<(CompactString, &'a Family)> {
+    /// the letters beside it; and whether it was declared.
+    pub fn family_of_slot(&self, made: &'a Use, at: usize) -> Option<(CompactString, &'a Family, bool)> {
         let meanings = self.eyes.meanings;
         let own = made.own_slots().count();
-        let letter = match meanings.known(&made.kernel, own) {
+        let known = meanings.known(&made.kernel, own);
+        let letter = match known {
             Some(known) => known.slots.get(at)?.letter.clone(),
             None => {
                 let mut letters = made.own_slots().filter_map(|slot| slot.letter());
@@ -112,15 +128,14 @@ impl<'a> Flattened<'a> {
             }
         };
         let family = meanings.family(&letter)?;
-        Some((letter, family))
+        Some((letter, family, known.is_some()))
     }
 
-    /// Whether the family that a letter's family is the spatial part of has a number among its values.
+    /// Whether a family that a letter's family is a part of, declared so or by its range, has a number among its values.
     pub fn whole_holds(&self, letter: &str, number: u32) -> bool {
-        let family = self.eyes.meanings.family(letter);
-        let whole =
-            family.and_then(|family| family.part_of.as_ref()).and_then(|letter| self.eyes.meanings.family(letter));
-        whole.is_some_and(|whole| whole.holds_number(number) == Some(true))
+        let Some(own) = self.eyes.meanings.family(letter) else { return false };
+        let mut wholes = self.eyes.meanings.families.iter().filter(|whole| own.is_part_of(whole) || own.lies_in(whole));
+        wholes.any(|whole| whole.holds_number(number) == Some(true))
     }
 
     /// A piece as people read it: its derivatives and its kernel.

@@ -136,8 +136,9 @@ impl<'e, 'a> Monomials<'e, 'a> {
     fn is_metric(&self, piece: &Piece) -> bool {
         let own = piece.made.slots.len() == 2 && piece.made.own_slots().count() == 2;
         let known = self.eyes.meanings.known(&piece.made.kernel, 2);
-        let role = known
-            .map_or(is_metric_by_custom(&piece.made.kernel), |known| matches!(known.role, Some(Role::Metric { .. })));
+        let custom =
+            is_metric_by_custom(&piece.made.kernel) && (piece.made.letter == "\\delta" || !self.eyes.customs.all_below);
+        let role = known.map_or(custom, |known| matches!(known.role, Some(Role::Metric { .. })));
         own && role && !piece.opaque
     }
 

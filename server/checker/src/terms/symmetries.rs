@@ -4,15 +4,17 @@
 //! so many slots replaces custom. Custom is common practice, no source: the metric, the flat metric and Kronecker's
 //! delta are symmetric, an epsilon with three slots or more is antisymmetric, a Christoffel symbol is symmetric in its
 //! two lower slots, `R` with four slots has the symmetries of a Riemann tensor, and in a paper on curvature `R` and
-//! `G` with two are symmetric. Where the text speaks of torsion the connection loses its symmetry and curvature its own.
+//! `G` with two are symmetric. Where the text speaks of torsion the connection loses its symmetry and curvature its own;
+//! where it speaks of dislocations, vortices or frames without coordinates, partial derivatives need not commute.
 
 use indexwise_grammar::conventions::{Curvature, Kind};
 use indexwise_grammar::tree::Level;
 
+use crate::conventions::inferred::Prices;
 use crate::conventions::meanings::{Known, Meanings, Role};
 
 use super::product::Piece;
-use super::uses::{Origin, Use};
+use super::uses::{Origin, Use, UsedSlot};
 
 /// What the usual kernels are taken for in a document.
 #[derive(Clone, Copy, Debug, Default, PartialEq, Eq)]
@@ -21,11 +23,16 @@ pub struct Customs {
     pub curved: bool,
     /// The text speaks of torsion, other than to say that there is none.
     pub torsion: bool,
+    /// The text speaks of what keeps partial derivatives from commuting: lines around which a field has many values, or
+    /// frames without coordinates.
+    pub partials_differ: bool,
+    /// The document writes all its indices below, so that no metric is meant by `g` or `\eta`.
+    pub all_below: bool,
 }
 
 impl Customs {
     /// The customs of a document by its text.
-    pub fn of(text: &str, curved: bool) -> Self {
+    pub fn of(text: &str, prices: &Prices<'_>) -> Self {
         let speaks = ["torsion", "Torsion"].iter().any(|word| {
             text.match_indices(word).any(|(at, word)| {
                 let after = text.get(at + word.len()..).unwrap_or_default().trim_start_matches(['-', ' ']);
@@ -34,13 +41,35 @@ impl Customs {
                     && !NO_TORSION_BEFORE.iter().any(|none| before.ends_with(none))
             })
         });
-        Self { curved, torsion: speaks || text.contains("Einstein-Cartan") || text.contains("Einstein--Cartan") }
+        let torsion = speaks || text.contains("Einstein-Cartan") || text.contains("Einstein--Cartan");
+        let partials_differ = PARTIALS_DIFFER.iter().any(|word| text.contains(word));
+        Self { curved: prices.is_curved(), torsion, partials_differ, all_below: prices.is_cartesian() }
     }
 }
 
 /// Words around "torsion" that say that there is none.
 const NO_TORSION_AFTER: &[&str] = &["free", "less", "vanish", "is zero", "is assumed to be zero", "is set to zero"];
 const NO_TORSION_BEFORE: &[&str] = &["no", "without", "zero", "vanishing", "without any", "of no", "any"];
+
+/// Words of a text on singular lines or on frames without coordinates.
+const PARTIALS_DIFFER: &[&str] = &[
+    "dislocation",
+    "Dislocation",
+    "disclination",
+    "Disclination",
+    "multivalued",
+    "multi-valued",
+    "many-valued",
+    "vortices",
+    "vortex line",
+    "line defect",
+    "defect line",
+    "anholonom",
+    "nonholonom",
+    "non-holonom",
+    "noncoordinate",
+    "non-coordinate",
+];
 
 /// An exchange of slots that leaves a piece as it is, up to a sign.
 #[derive(Clone, Debug, PartialEq, Eq)]
@@ -56,7 +85,7 @@ pub fn exchanges(piece: &Piece, meanings: &Meanings, customs: Customs) -> Vec<Si
     let slots = &piece.made.slots;
     let own: Vec<usize> = (0..slots.len()).filter(|at| origin(piece, *at) == Some(Origin::Own)).collect();
     let mut out = if piece.opaque { Vec::new() } else { own_exchanges(&piece.made, &own, meanings, customs) };
-    out.extend(derivative_exchanges(piece, &own, meanings));
+    out.extend(derivative_exchanges(piece, &own, meanings, customs));
     out
 }
 
@@ -64,13 +93,18 @@ fn origin(piece: &Piece, at: usize) -> Option<Origin> {
     piece.made.slots.get(at).map(|slot| slot.origin)
 }
 
-/// Neighbouring partial derivatives commute; so do two covariant ones on a scalar.
-fn derivative_exchanges(piece: &Piece, own: &[usize], meanings: &Meanings) -> Vec<SignedExchange> {
+/// Neighbouring partial derivatives commute; so do two of a scalar of which the outer is covariant, without torsion.
+fn derivative_exchanges(piece: &Piece, own: &[usize], meanings: &Meanings, customs: Customs) -> Vec<SignedExchange> {
     let count = piece.made.slots.len();
-    let scalar = own.is_empty() && meanings.is_kind(&piece.made.kernel, Kind::Scalar);
+    let scalar = own.is_empty() && meanings.is_kind(&piece.made.kernel, Kind::Scalar) && !customs.torsion;
+    // Derivatives along the vectors of a frame, `e_a`, do not commute.
+    let frame = |at: usize| {
+        let letter = piece.made.slots.get(at).and_then(UsedSlot::letter);
+        letter.and_then(|letter| meanings.family(letter)).is_some_and(|family| family.frame)
+    };
     let commute = |one: usize| match (origin(piece, one), origin(piece, one + 1)) {
-        (Some(Origin::Partial), Some(Origin::Partial)) => true,
-        (Some(Origin::Covariant), Some(Origin::Covariant)) => scalar && count == 2,
+        (Some(Origin::Partial), Some(Origin::Partial)) => !customs.partials_differ && !frame(one) && !frame(one + 1),
+        (Some(Origin::Covariant), Some(Origin::Covariant | Origin::Partial)) => scalar && count == 2,
         _ => false,
     };
     (0..count.saturating_sub(1)).filter(|one| commute(*one)).map(|one| swap(count, one, one + 1, false)).collect()
@@ -86,7 +120,8 @@ fn own_exchanges(made: &Use, own: &[usize], meanings: &Meanings, customs: Custom
     }
     let symmetric = |negative: bool| pairs(own).map(|(one, two)| swap(count, one, two, negative)).collect();
     match (made.letter.as_str(), own.len()) {
-        ("g" | "\\eta" | "\\delta", 2) => symmetric(false),
+        ("\\delta", 2) => symmetric(false),
+        ("g" | "\\eta", 2) if !customs.all_below => symmetric(false),
         ("\\epsilon" | "\\varepsilon", 3..) => symmetric(true),
         ("\\Gamma", 3) if !customs.torsion => christoffel(made, own),
         ("R", 4) if !customs.torsion => riemann(count, own),
@@ -145,16 +180,20 @@ fn pairs(slots: &[usize]) -> impl Iterator<Item = (usize, usize)> + '_ {
     slots.iter().copied().zip(slots.iter().copied().skip(1))
 }
 
-/// Whether everything is known of a kernel with so many slots: it is declared, or has a meaning by custom.
+/// Whether everything is known of a kernel with so many slots: it is declared, or has a meaning by custom. Of what
+/// keeps its order in products, too little is known.
 pub fn is_known(piece: &Piece, meanings: &Meanings, customs: Customs) -> bool {
     let own = piece.made.own_slots().count();
     let up = piece.made.own_slots().filter(|slot| slot.level == Level::Up).count();
     let custom = match (piece.made.letter.as_str(), own) {
-        ("g" | "\\eta" | "\\delta", 2) | ("\\epsilon" | "\\varepsilon", 3..) => true,
+        ("\\delta", 2) | ("\\epsilon" | "\\varepsilon", 3..) => true,
+        ("g" | "\\eta", 2) => !customs.all_below,
         ("\\Gamma", 3) => up == 1 && !customs.torsion,
         ("R", 4) => !customs.torsion,
         _ => false,
     };
     let declared = meanings.known(&piece.made.kernel, own);
-    !piece.opaque && declared.map_or(custom, Known::is_settled)
+    let keeps_order =
+        [Kind::NonCommuting, Kind::Matrix].into_iter().any(|kind| meanings.is_kind(&piece.made.kernel, kind));
+    !piece.opaque && !keeps_order && declared.map_or(custom, Known::is_settled)
 }

@@ -112,7 +112,7 @@ pub fn use_of(factor: &Factor, kernel: &Kernel, eyes: &Eyes<'_>, flip: bool) -> 
         Use { kernel: kernel.name.clone(), letter: kernel.letter.clone(), span: factor.span, ..Use::default() };
     let mut levels = Vec::new();
     for script in &factor.scripts {
-        if is_power(script, factor) {
+        if is_power(script, factor) && !are_components(script, kernel, eyes) {
             made.power = true;
             continue;
         }
@@ -141,6 +141,12 @@ fn is_power(script: &Script, factor: &Factor) -> bool {
         },
         items => items.iter().any(|item| is_arithmetic(&item.kind)),
     }
+}
+
+/// Digits above a kernel that is declared with so many slots, `T^{10}`, or that begin with a nought, `T^{05}`.
+fn are_components(script: &Script, kernel: &Kernel, eyes: &Eyes<'_>) -> bool {
+    let [Item { kind: ItemKind::Number(number), .. }] = script.items.as_slice() else { return false };
+    number.len() > 1 && (number.starts_with('0') || eyes.meanings.known(&kernel.name, number.len()).is_some())
 }
 
 fn is_arithmetic(kind: &ItemKind) -> bool {
