@@ -6,8 +6,10 @@
 
 mod claims;
 mod lowering;
+mod report;
 mod world;
 
 pub use claims::{Asked, Step, steps_of};
 pub use lowering::{Lowering, Reach};
+pub use report::StepJudge;
 pub use world::Surroundings;

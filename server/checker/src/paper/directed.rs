@@ -21,7 +21,7 @@ pub(super) fn skipped(declared: &Declared, formulas: &[Formula]) -> FxHashSet<us
 }
 
 /// The formula that a directive speaks of: the one around it, or the next.
-fn target(directive: Span, formulas: &[Formula]) -> Option<usize> {
+pub(super) fn target(directive: Span, formulas: &[Formula]) -> Option<usize> {
     let at = formulas.partition_point(|formula| formula.span.end <= directive.start);
     (at < formulas.len()).then_some(at)
 }

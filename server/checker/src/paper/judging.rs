@@ -2,6 +2,7 @@
 
 use std::borrow::Cow;
 
+use indexwise_grammar::conventions::Sentence;
 use indexwise_grammar::hosts::Host;
 use indexwise_grammar::read_region;
 use indexwise_grammar::span::Span;
@@ -14,12 +15,13 @@ use crate::ledger::Judged;
 use crate::reading::Reading;
 use crate::rules;
 use crate::sketch::Sketch;
+use crate::steps::{Asked, StepJudge};
 use crate::symbols::Gatherer;
 use crate::terms::symmetries::Customs;
 use crate::terms::{self, Eyes, Flattened};
 
-use super::directed::{directed, skipped};
-use super::{DocumentAnalysis, Read, Settings, Sketched, Statement, Statistics, Trouble};
+use super::directed::{directed, skipped, target};
+use super::{DocumentAnalysis, Read, Settings, Sketched, Statement, Statistics, StepMode, Trouble};
 
 /// A document on its way through the rules.
 struct Judge<'d> {
@@ -30,6 +32,11 @@ struct Judge<'d> {
     indexed: Vec<bool>,
     findings: Vec<(usize, Finding)>,
     symbols: Option<Gatherer>,
+    /// Judges steps, if any is asked for in the document.
+    steps: Option<StepJudge<'d>>,
+    /// Whether every chain is a claim, and formulas that the author asks for by themselves.
+    chains: bool,
+    asked: FxHashSet<usize>,
 }
 
 /// Judges a document; `missing` are findings about parts that could not be had.
@@ -48,7 +55,11 @@ pub(super) fn judge_document(
         indexed: vec![false; formulas.len()],
         findings: Vec::new(),
         symbols: settings.symbols.then(Gatherer::default),
+        steps: None,
+        chains: false,
+        asked: FxHashSet::default(),
     };
+    judge.prepare_steps(settings.steps);
     let scores = document.scores(&prices);
     for statement in &document.statements {
         judge.statement(statement, statement.read(&scores));
@@ -59,19 +70,52 @@ pub(super) fn judge_document(
     for (number, formula) in formulas.iter().enumerate().filter(|_| settings.reports_unread()) {
         judge.findings.extend(formula.unread.iter().map(|part| (number, rules::unread(part))));
     }
-    let Judge { indexed, findings, symbols, .. } = judge;
+    let Judge { indexed, findings, symbols, steps, .. } = judge;
     let statistics = Statistics {
         formulas: formulas.len(),
         indexed: indexed.iter().filter(|flag| **flag).count(),
         unread: formulas.iter().zip(&indexed).filter(|(formula, flag)| **flag && !formula.unread.is_empty()).count(),
         unknown_macros: formulas.iter().zip(&indexed).filter(|(f, flag)| **flag && !f.unknown.is_empty()).count(),
+        steps: steps.map(|steps| steps.counts).unwrap_or_default(),
     };
     let read = document.read;
     let findings = directed(&read.declared, read.host, formulas, findings, missing);
     DocumentAnalysis { statistics, findings, symbols: symbols.map(Gatherer::finish) }
 }
 
-impl Judge<'_> {
+impl<'d> Judge<'d> {
+    /// Steps are judged where the author asks for them, and in notes.
+    fn prepare_steps(&mut self, mode: StepMode) {
+        let read = self.document.read;
+        let declared = &read.declared;
+        let checks = declared.sentences.iter().filter(|(sentence, _)| matches!(sentence, Sentence::Check { .. }));
+        self.asked = checks.filter_map(|(_, span)| target(*span, &read.document.formulas)).collect();
+        self.chains = match mode {
+            StepMode::Off => return self.asked.clear(),
+            StepMode::All => true,
+            StepMode::Asked => read.host == Host::Note || declared.meanings.derivations_are_checked,
+        };
+        if self.chains || !self.asked.is_empty() {
+            self.steps = Some(StepJudge::new(&self.prices.declared.meanings));
+        }
+    }
+
+    /// The steps of a statement that balances.
+    fn steps(&mut self, number: usize, judged: &Judged<'_>) {
+        let Some(steps) = &mut self.steps else { return };
+        let asked = match (self.asked.contains(&number), self.chains) {
+            (true, _) => Asked::All,
+            (false, true) => Asked::Chains,
+            (false, false) => Asked::Nothing,
+        };
+        let eyes = Eyes::new(&judged.sketch, &judged.reading.choice, &self.prices, self.customs);
+        let passed_over = judged.formula.passed_over;
+        let found = self.trees.statement(self.document.read, number, judged.sketch.span, |statement| {
+            if passed_over { Vec::new() } else { steps.statement(statement, judged.text, &eyes, asked) }
+        });
+        self.findings.extend(found.into_iter().map(|finding| (number, finding)));
+    }
+
     fn statement(&mut self, statement: &Statement<'_>, mut reading: Reading) {
         let (number, sketch) = (statement.formula, statement.sketch);
         let formulas = &self.document.read.document.formulas;
@@ -101,6 +145,9 @@ impl Judge<'_> {
         self.findings.extend(found.into_iter().map(|finding| (number, finding)));
         if balanced && terms::asks_for_terms(sketch, &judged) {
             self.terms(number, &judged);
+        }
+        if balanced {
+            self.steps(number, &judged);
         }
     }
 

@@ -40,6 +40,8 @@ pub struct Step {
     pub claims: Result<Vec<(Expression, Expression)>, String>,
     /// The letters of the labels.
     pub letters: Vec<CompactString>,
+    /// How many indices are antisymmetrised at once, at most.
+    pub antisymmetrised: usize,
 }
 
 /// The claims of a statement; its definitions go into the surroundings.
@@ -64,32 +66,34 @@ pub fn steps_of(
         if defines || condition || asked == Asked::Nothing {
             continue;
         }
-        let (claims, letters) = lowered(left, right, eyes, surroundings);
-        steps.push(Step { relation: number, sign: relation.span, sides: (left.span, right.span), claims, letters });
+        let mut step = Step {
+            relation: number,
+            sign: relation.span,
+            sides: (left.span, right.span),
+            claims: Ok(Vec::new()),
+            letters: Vec::new(),
+            antisymmetrised: 0,
+        };
+        lower(&mut step, left, right, eyes, surroundings);
+        steps.push(step);
     }
     steps
 }
 
-type Claims = Result<Vec<(Expression, Expression)>, String>;
-
 /// Both sides, in each way in which derivatives may reach.
-fn lowered(
-    left: &Sum,
-    right: &Sum,
-    eyes: &Eyes<'_>,
-    surroundings: &mut Surroundings<'_>,
-) -> (Claims, Vec<CompactString>) {
+fn lower(step: &mut Step, left: &Sum, right: &Sum, eyes: &Eyes<'_>, surroundings: &mut Surroundings<'_>) {
     let mut near = Lowering::new(surroundings, eyes, Reach::Near);
     let sides = pair(&mut near, left, right);
-    let (mattered, letters) = (near.reach_mattered, near.letters().to_vec());
-    let claims = sides.and_then(|sides| {
+    step.letters = near.letters().to_vec();
+    step.antisymmetrised = near.antisymmetrised;
+    let mattered = near.reach_mattered;
+    step.claims = sides.and_then(|sides| {
         let mut all = vec![sides];
         if mattered {
             all.push(pair(&mut Lowering::new(surroundings, eyes, Reach::Far), left, right)?);
         }
         Ok(all)
     });
-    (claims, letters)
 }
 
 fn pair(lowering: &mut Lowering<'_, '_, '_>, left: &Sum, right: &Sum) -> Result<(Expression, Expression), String> {

@@ -44,6 +44,8 @@ pub struct Lowering<'s, 'a, 'e> {
     letters: Vec<CompactString>,
     /// Whether the reach of a derivative mattered.
     pub reach_mattered: bool,
+    /// How many indices are antisymmetrised at once, at most.
+    pub antisymmetrised: usize,
     /// Nesting that is left.
     depth: usize,
 }
@@ -56,7 +58,7 @@ const PERMUTATIONS: usize = 120;
 impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
     /// For one statement.
     pub fn new(surroundings: &'s mut Surroundings<'a>, eyes: &'e Eyes<'e>, reach: Reach) -> Self {
-        Self { surroundings, eyes, reach, letters: Vec::new(), reach_mattered: false, depth: DEPTH }
+        Self { surroundings, eyes, reach, letters: Vec::new(), reach_mattered: false, antisymmetrised: 0, depth: DEPTH }
     }
 
     /// The letters of the labels, in their order.
@@ -354,6 +356,7 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
     /// A product with brackets over the slots of several factors: the mean over all permutations.
     fn bracketed(&mut self, factors: &[Factor]) -> Lowered {
         let written = scripts::permuted(factors, PERMUTATIONS)?;
+        self.antisymmetrised = self.antisymmetrised.max(written.antisymmetrised);
         let share = Rational::new(1, written.share).ok_or("a bracket is too long")?;
         let mut terms = Vec::new();
         for (negative, factors) in written.products {

@@ -150,12 +150,18 @@ pub(super) struct Permuted {
     pub share: i128,
     /// Whether it counts negative, and its factors without brackets.
     pub products: Vec<(bool, Vec<Factor>)>,
+    /// The most letters that one bracket antisymmetrises.
+    pub antisymmetrised: usize,
 }
 
 /// Writes the brackets of a product out, up to so many products.
 pub(super) fn permuted(factors: &[Factor], most: usize) -> Result<Permuted, Refusal> {
     let mut products = vec![(false, factors.to_vec())];
+    let mut antisymmetrised = 0;
     for bracket in held(factors)? {
+        if bracket.antisymmetric {
+            antisymmetrised = antisymmetrised.max(bracket.places.len());
+        }
         let orders = permutations(bracket.places.len(), most).ok_or("a bracket holds too many letters")?;
         if products.len() * orders.len() > most {
             return Err("the brackets hold too many letters".to_owned());
@@ -177,7 +183,7 @@ pub(super) fn permuted(factors: &[Factor], most: usize) -> Result<Permuted, Refu
         }
     }
     let share = i128::try_from(products.len()).map_err(|_| "the brackets hold too many letters")?;
-    Ok(Permuted { share, products })
+    Ok(Permuted { share, products, antisymmetrised })
 }
 
 /// The factors with the letters at these places in another order; each letter keeps its span, by which its reading is

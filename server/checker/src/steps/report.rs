@@ -1,0 +1,304 @@
+//! The steps of a document, judged by the algebra and told as findings.
+//!
+//! A verdict is a function of a step's expressions and of what the document declares, so that it can be had again; its
+//! draws follow from the step's own text. Where a derivative's reach can be read in two ways, both are judged. An
+//! error says that a proof is attached; whatever rests on a kernel of unknown meaning is a hint that names it.
+
+use std::hash::{Hash, Hasher};
+
+use indexwise_algebra::expression::{Expression, Filling, Size, World};
+use indexwise_algebra::verdict::{self, Claim, Limits, Reason, Unshown, Verdict};
+use indexwise_grammar::span::Span;
+use indexwise_grammar::tree::Statement;
+use rustc_hash::{FxHashMap, FxHasher};
+
+use crate::conventions::meanings::Meanings;
+use crate::finding::{Counterexample, Finding, Related, StepVerdict};
+use crate::ledger::shown;
+use crate::paper::Steps;
+use crate::rules;
+use crate::terms::Eyes;
+
+use super::claims::{Asked, Step, steps_of};
+use super::world::Surroundings;
+
+/// Multiplications for the verdict of one step, and for all of one document.
+const STEP_WORK: u64 = 400_000_000;
+/// Steps of one document that are judged.
+const STEPS: usize = 2_000;
+/// The largest dimension that is tried because so many indices are antisymmetrised.
+const LARGEST_DIMENSION: usize = 6;
+
+/// Judges the steps of a document, statement by statement in the order of the text.
+pub struct StepJudge<'m> {
+    surroundings: Surroundings<'m>,
+    known: FxHashMap<u64, Verdict>,
+    /// The verdicts so far.
+    pub counts: Steps,
+    left: usize,
+}
+
+impl<'m> StepJudge<'m> {
+    /// For a document with these declarations.
+    pub fn new(meanings: &'m Meanings) -> Self {
+        let surroundings = Surroundings::new(meanings);
+        Self { surroundings, known: FxHashMap::default(), counts: Steps::default(), left: STEPS }
+    }
+
+    /// Takes a statement: its definitions, and the findings about its claims.
+    pub fn statement(&mut self, statement: &Statement, text: &str, eyes: &Eyes<'_>, asked: Asked) -> Vec<Finding> {
+        let steps = steps_of(statement, eyes, &mut self.surroundings, asked);
+        steps.iter().filter_map(|step| self.step(step, text)).collect()
+    }
+
+    fn step(&mut self, step: &Step, text: &str) -> Option<Finding> {
+        self.left = self.left.checked_sub(1)?;
+        let claims = match &step.claims {
+            Ok(claims) => claims,
+            Err(reason) => return Some(self.undecided(step, &format!("{reason} has no value here"))),
+        };
+        let verdicts: Vec<Verdict> = claims.iter().map(|(left, right)| self.judged(step, text, left, right)).collect();
+        let first = verdicts.first()?;
+        if verdicts.iter().any(|other| kind(other) != kind(first)) {
+            self.counts.undecided += 1;
+            let message = "this step holds or not, depending on how far a derivative reaches: put brackets".to_owned();
+            return Some(told(
+                rules::step_not_shown(step.sign, message),
+                step,
+                &StepVerdict { verdict: "differs", ..StepVerdict::default() },
+            ));
+        }
+        self.finding(step, first)
+    }
+
+    fn judged(&mut self, step: &Step, text: &str, left: &Expression, right: &Expression) -> Verdict {
+        let seed = seed(step, text);
+        let key = seed ^ (self.surroundings.world.definitions.len() as u64).rotate_left(32);
+        if let Some(known) = self.known.get(&key).filter(|_| step.claims.as_ref().is_ok_and(|claims| claims.len() == 1))
+        {
+            return known.clone();
+        }
+        let mut world = self.surroundings.world.clone();
+        world.dimensions = dimensions(&world, &[left, right], step.antisymmetrised);
+        let limits = Limits { total: STEP_WORK, ..Limits::seeded(seed) };
+        let verdict = verdict::judge(&Claim { left: left.clone(), right: right.clone(), world }, &limits);
+        self.known.insert(key, verdict.clone());
+        verdict
+    }
+
+    fn finding(&mut self, step: &Step, verdict: &Verdict) -> Option<Finding> {
+        let view = self.view(step, verdict);
+        match verdict {
+            Verdict::Holds { .. } => {
+                self.counts.holds += 1;
+                None
+            }
+            Verdict::Fails(_) => {
+                self.counts.fails += 1;
+                let numbers = view.counterexample.clone().unwrap_or_default();
+                let place = in_words(&numbers.component);
+                let message = format!(
+                    "this step does not hold: the left side can be {} where the right side is {}{place}",
+                    numbers.left, numbers.right
+                );
+                Some(told(rules::step_fails(step.sign, message), step, &view))
+            }
+            Verdict::Differs { reason, .. } => {
+                self.counts.undecided += 1;
+                let message = match reason {
+                    Unshown::Unknown(names) => format!(
+                        "this step does not hold for arbitrary {}: nothing says what {}",
+                        listed(names),
+                        if names.len() == 1 { "it is" } else { "they are" }
+                    ),
+                    Unshown::Givens(labels) => format!("this step does not follow from {} alone", listed(labels)),
+                    Unshown::NoWitness => {
+                        "the sides of this step differ, but no simple numbers were found that show it".to_owned()
+                    }
+                };
+                Some(told(rules::step_not_shown(step.sign, message), step, &view))
+            }
+            Verdict::NeedsDimension { holds, fails, undefined, .. } => {
+                self.counts.fails += 1;
+                let undefined = match undefined.as_slice() {
+                    [] => String::new(),
+                    some => format!(", and has no meaning in {}", numbers(some)),
+                };
+                let message = format!(
+                    "this step holds in dimension {}, but not in {}{undefined}",
+                    numbers(holds),
+                    numbers(fails)
+                );
+                Some(told(rules::step_needs_dimension(step.sign, message), step, &view))
+            }
+            Verdict::Undecided(reason) => Some(self.undecided(step, &because(reason))),
+        }
+    }
+
+    fn undecided(&mut self, step: &Step, reason: &str) -> Finding {
+        self.counts.undecided += 1;
+        let message = format!("this step could not be decided: {reason}");
+        let view = StepVerdict { verdict: "undecided", ..StepVerdict::default() };
+        told(rules::step_undecided(step.sign, message), step, &view)
+    }
+
+    /// The verdict as plain data.
+    fn view(&self, step: &Step, verdict: &Verdict) -> StepVerdict {
+        let numbers = |found: &verdict::Counterexample| self.counterexample(step, found);
+        match verdict {
+            Verdict::Fails(found) => StepVerdict {
+                verdict: "fails",
+                fails: vec![found.dimension],
+                counterexample: Some(numbers(found)),
+                ..StepVerdict::default()
+            },
+            Verdict::Differs { dimensions, reason } => StepVerdict {
+                verdict: "differs",
+                fails: dimensions.clone(),
+                assumptions: match reason {
+                    Unshown::Unknown(names) | Unshown::Givens(names) => names.clone(),
+                    Unshown::NoWitness => Vec::new(),
+                },
+                ..StepVerdict::default()
+            },
+            Verdict::NeedsDimension { holds, fails, counterexample, .. } => StepVerdict {
+                verdict: "needs dimension",
+                holds: holds.clone(),
+                fails: fails.clone(),
+                counterexample: counterexample.as_ref().map(numbers),
+                ..StepVerdict::default()
+            },
+            Verdict::Holds { dimensions, .. } => {
+                StepVerdict { verdict: "holds", holds: dimensions.clone(), ..StepVerdict::default() }
+            }
+            Verdict::Undecided(_) => StepVerdict { verdict: "undecided", ..StepVerdict::default() },
+        }
+    }
+
+    fn counterexample(&self, step: &Step, found: &verdict::Counterexample) -> Counterexample {
+        let values = found.assignments.iter().map(|one| {
+            let members: Vec<String> = one.component.iter().map(|member| (member + 1).to_string()).collect();
+            let slots = if members.is_empty() { String::new() } else { format!("_{{{}}}", members.join(" ")) };
+            (format!("{}{slots}", shown(&one.name)), one.value.clone())
+        });
+        let letter = |label: u16| step.letters.get(label as usize).map(|letter| shown(letter)).unwrap_or_default();
+        Counterexample {
+            dimension: found.dimension,
+            values: values.collect(),
+            component: found
+                .component
+                .iter()
+                .map(|(label, member)| (letter(*label), (member + 1).to_string()))
+                .collect(),
+            left: found.left.to_string(),
+            right: found.right.to_string(),
+        }
+    }
+}
+
+/// The verdicts that have to agree where a step can be read in two ways.
+fn kind(verdict: &Verdict) -> u8 {
+    match verdict {
+        Verdict::Holds { .. } => 0,
+        Verdict::NeedsDimension { .. } => 1,
+        Verdict::Fails(_) | Verdict::Differs { .. } => 2,
+        Verdict::Undecided(_) => 3,
+    }
+}
+
+fn told(finding: Finding, step: &Step, view: &StepVerdict) -> Finding {
+    let side = |span: Span, message: &str| Related { span, message: message.to_owned() };
+    let related = vec![side(step.sides.0, "the left side"), side(step.sides.1, "the right side")];
+    Finding { related, verdict: Some(view.clone()), ..finding }
+}
+
+/// The hash of a step's text.
+fn seed(step: &Step, text: &str) -> u64 {
+    let mut hasher = FxHasher::default();
+    step.sides.0.of(text).hash(&mut hasher);
+    step.sides.1.of(text).hash(&mut hasher);
+    hasher.finish()
+}
+
+/// The dimensions to be tried: the one that is declared, or that an epsilon fixes, else a few, and as many as indices
+/// are antisymmetrised.
+fn dimensions(world: &World, sides: &[&Expression], antisymmetrised: usize) -> Vec<usize> {
+    let mut pending: Vec<&Expression> = sides.to_vec();
+    let mut fixed = None;
+    let mut families: Vec<usize> = Vec::new();
+    while let Some(part) = pending.pop() {
+        let slots = slots_of(part);
+        if let Expression::Epsilon { slots, .. } = part {
+            fixed = Some(slots.len());
+        }
+        families.extend(slots.iter().map(|index| index.family));
+        if let Expression::Defined { definition, .. } = part
+            && let Some(definition) = world.definitions.get(*definition)
+        {
+            pending.push(&definition.body);
+        }
+        pending.extend(part.parts());
+    }
+    let sizes = || families.iter().filter_map(|family| world.families.get(*family)).map(|family| family.size);
+    let declared: Vec<usize> =
+        sizes().filter_map(|size| if let Size::Fixed(size) = size { Some(size) } else { None }).collect();
+    let free = sizes().any(|size| matches!(size, Size::Dimension(_)));
+    match (fixed, declared.first()) {
+        (Some(dimension), _) => vec![dimension],
+        (None, Some(size)) if !free => vec![*size],
+        _ => {
+            let mut all = world.dimensions.clone();
+            all.extend(5..=antisymmetrised.min(LARGEST_DIMENSION));
+            all
+        }
+    }
+}
+
+/// The slots of an expression itself.
+fn slots_of(expression: &Expression) -> Vec<indexwise_algebra::expression::Index> {
+    let slots = match expression {
+        Expression::Field { slots, .. } | Expression::Defined { slots, .. } | Expression::Curvature { slots, .. } => {
+            slots.clone()
+        }
+        Expression::Epsilon { slots, .. } => slots.clone(),
+        Expression::Delta(slots) | Expression::Metric { slots, .. } => slots.to_vec(),
+        Expression::Christoffel { slots, .. } => slots.to_vec(),
+        Expression::Coordinate(index) | Expression::Partial(index, _) | Expression::Covariant { index, .. } => {
+            vec![*index]
+        }
+        _ => Vec::new(),
+    };
+    slots.into_iter().filter(|index| matches!(index.filling, Filling::Label(_) | Filling::Member(_))).collect()
+}
+
+fn because(reason: &Reason) -> String {
+    match reason {
+        Reason::NoDimension => "no dimension could be tried".to_owned(),
+        Reason::Undefined => "a denominator is 0, or a radicand never has a root".to_owned(),
+        Reason::Budget(_) => "it would take more work than one step may".to_owned(),
+        Reason::Stopped => "the check was ended".to_owned(),
+        Reason::Function => "a function in it has no exact value here".to_owned(),
+        Reason::Functions => "relations between the functions in it are not known here".to_owned(),
+        Reason::Shape => "its terms do not fit together".to_owned(),
+        Reason::Given(label) => format!("({label}) is of a kind that cannot be used"),
+        Reason::GivenUnmet(label) => format!("nothing was found that obeys ({label})"),
+    }
+}
+
+fn in_words(component: &[(String, String)]) -> String {
+    let list: Vec<String> = component.iter().map(|(letter, value)| format!("{letter} = {value}")).collect();
+    if list.is_empty() { String::new() } else { format!(", for {}", list.join(", ")) }
+}
+
+fn listed(names: &[String]) -> String {
+    let names: Vec<String> = names.iter().map(|name| shown(name)).collect();
+    match names.as_slice() {
+        [] => String::new(),
+        [one] => one.clone(),
+        [rest @ .., last] => format!("{} and {last}", rest.join(", ")),
+    }
+}
+
+fn numbers(list: &[usize]) -> String {
+    listed(&list.iter().map(usize::to_string).collect::<Vec<_>>())
+}
