@@ -132,7 +132,6 @@ fn the_example_of_the_readme_is_real() {
     let mut command = std::process::Command::new(env!("CARGO_BIN_EXE_indexwise"));
     let output = command.current_dir(&root).args(["write-out", place]).output().unwrap();
     let readme = std::fs::read_to_string(root.join("README.md")).unwrap();
-    let shown =
-        format!("`indexwise write-out {place}` prints\n\n```\n{}```\n", String::from_utf8(output.stdout).unwrap());
+    let shown = format!("```\nindexwise write-out {place}\n\n{}```\n", String::from_utf8(output.stdout).unwrap());
     assert!(output.status.success() && readme.contains(&shown), "the README should say:\n{shown}");
 }
