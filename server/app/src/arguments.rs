@@ -29,6 +29,12 @@ pub enum Command {
     /// The nearest file indexwise.toml upwards from a document, within its repository, sets the levels of rules, further
     /// files with macros, and which files of a folder are checked. A file that is named as a PATH is always checked.
     Check(CheckArguments),
+    /// Write the contraction at a place out over its range
+    ///
+    /// With the place on a summed letter that letter's sum is written out, elsewhere in a term all sums of the term. The
+    /// range is the one that is declared, else a customary one. Terms that vanish by symmetry are left out and listed, and
+    /// those that coincide are collected.
+    WriteOut(WriteOutArguments),
     /// Explain a rule, or list the rules
     Explain(ExplainArguments),
     /// Print a completion script for a shell
@@ -75,6 +81,32 @@ pub struct CheckArguments {
     /// What standard input holds
     #[arg(long, value_enum)]
     pub host: Option<HostName>,
+}
+
+/// `write-out`.
+#[derive(Debug, Args)]
+pub struct WriteOutArguments {
+    /// The place; lines and columns count from 1, columns in characters (Unicode scalars)
+    #[arg(value_name = "FILE:LINE:COLUMN")]
+    pub place: OsString,
+    /// Print only the sum, in one way of writing
+    #[arg(long = "as", value_enum, value_name = "WAY")]
+    pub way: Option<Way>,
+    /// Take the conventions of this file (a .toml: its table "conventions"; else a plain list) instead of
+    /// those that the files indexwise.toml declare
+    #[arg(long, value_name = "FILE")]
+    pub conventions: Option<PathBuf>,
+}
+
+/// The ways of writing a formula.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, ValueEnum)]
+pub enum Way {
+    /// For a LaTeX or Markdown document
+    Latex,
+    /// For people who read a terminal
+    Unicode,
+    /// For a plain note
+    Note,
 }
 
 /// `explain`.
@@ -170,7 +202,7 @@ fn answer(error: &clap::Error) -> Answer {
     match error.kind() {
         ErrorKind::DisplayHelp | ErrorKind::DisplayVersion => Answer::Help(text),
         ErrorKind::DisplayHelpOnMissingArgumentOrSubcommand => {
-            Answer::Wrong("say what to do: check, explain or completions (see --help)".into())
+            Answer::Wrong("say what to do: check, write-out, explain or completions (see --help)".into())
         }
         _ => Answer::Wrong(one_line(&text)),
     }

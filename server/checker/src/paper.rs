@@ -1,5 +1,6 @@
 //! A paper is a root document with its parts and styles; `check` is the one pipeline.
 
+mod asking;
 mod directed;
 mod implying;
 mod judging;
@@ -23,6 +24,7 @@ use crate::reading::{self, Reading};
 use crate::sketch::{Sketch, Unit};
 use crate::symbols::SymbolTable;
 
+pub(crate) use asking::{Asked, Unasked, statement_at};
 use directed::skipped;
 pub use implying::implied;
 use judging::{judge_document, missing_part};

@@ -85,10 +85,10 @@ impl Judge<'_> {
             self.trees.statement(self.document.read, number, sketch.span, |tree| symbols.take(tree, &eyes));
         }
         reading.odd.retain(|(letter, _)| self.prices.is_index_notation(letter));
-        let next = formulas.get(number + 1).map(|next| next.span.start).filter(|start| *start >= formula.span.end);
-        let after = Span { start: formula.span.end, end: next.unwrap_or(u32::MAX) };
-        let no_sum = formula.no_sum || says_no_sum(self.document.read.text, after, self.document.read.host);
-        if sketch.unjudged.is_some() || no_sum || !self.prices.trusts(&sketch.unknown) {
+        if sketch.unjudged.is_some()
+            || is_without_sum(self.document.read, number)
+            || !self.prices.trusts(&sketch.unknown)
+        {
             return;
         }
         let search = if reading.odd.is_empty() { rules::faults::level_faults } else { rules::faults::faults };
@@ -176,6 +176,15 @@ impl Trees {
 pub(super) fn missing_part(trouble: &Trouble, begin: Option<usize>) -> Finding {
     let preamble = trouble.preamble || begin.is_some_and(|begin| (trouble.span.start as usize) < begin);
     rules::missing_part(trouble.span, &trouble.message, preamble)
+}
+
+/// Whether words in a formula or right after it say that no sum is meant.
+pub(super) fn is_without_sum(read: &Read<'_>, number: usize) -> bool {
+    let formulas = &read.document.formulas;
+    let Some(formula) = formulas.get(number) else { return false };
+    let next = formulas.get(number + 1).map(|next| next.span.start).filter(|start| *start >= formula.span.end);
+    let after = Span { start: formula.span.end, end: next.unwrap_or(u32::MAX) };
+    formula.no_sum || says_no_sum(read.text, after, read.host)
 }
 
 /// Whether the words right after a formula say that no sum is meant: those before the next formula, up to a blank
