@@ -53,6 +53,10 @@ pub struct CheckArguments {
     /// With --fix: show what would be done, and write nothing
     #[arg(long, requires = "fix")]
     pub dry_run: bool,
+    /// Add the symbol table of each document: kernels with their slots, symmetries and uses, and letters that mean more
+    /// than one thing (in the reports text, json and json-lines; lines has no place for it)
+    #[arg(long)]
+    pub symbols: bool,
     /// Count hints, too, for the exit status
     #[arg(long)]
     pub strict: bool,
