@@ -29,6 +29,11 @@ pub enum Command {
     /// The nearest file indexwise.toml upwards from a document, within its repository, sets the levels of rules, further
     /// files with macros, and which files of a folder are checked. A file that is named as a PATH is always checked.
     Check(CheckArguments),
+    /// Write a commented indexwise.toml from what the documents of a folder imply
+    ///
+    /// Each sentence is tried: one that leaves all findings as they are is put in force, any other is written as a
+    /// comment that says what it would change. A file that is there already is never written over.
+    Init(InitArguments),
     /// Explain a rule, or list the rules
     Explain(ExplainArguments),
     /// Print a completion script for a shell
@@ -79,6 +84,23 @@ pub struct CheckArguments {
     /// What standard input holds
     #[arg(long, value_enum)]
     pub host: Option<HostName>,
+}
+
+/// `init`.
+#[derive(Debug, Args)]
+pub struct InitArguments {
+    /// The folder (default: the current one)
+    #[arg(value_name = "FOLDER", default_value = ".", hide_default_value = true)]
+    pub folder: PathBuf,
+    /// Print the file instead of writing it
+    #[arg(long)]
+    pub dry_run: bool,
+    /// How many papers are checked at a time (default: one for each processor)
+    #[arg(long, value_name = "N", value_parser = clap::value_parser!(u16).range(1..=256))]
+    pub jobs: Option<u16>,
+    /// Do not show progress
+    #[arg(long)]
+    pub no_progress: bool,
 }
 
 /// `explain`.
@@ -174,7 +196,7 @@ fn answer(error: &clap::Error) -> Answer {
     match error.kind() {
         ErrorKind::DisplayHelp | ErrorKind::DisplayVersion => Answer::Help(text),
         ErrorKind::DisplayHelpOnMissingArgumentOrSubcommand => {
-            Answer::Wrong("say what to do: check, explain or completions (see --help)".into())
+            Answer::Wrong("say what to do: check, init, explain or completions (see --help)".into())
         }
         _ => Answer::Wrong(one_line(&text)),
     }

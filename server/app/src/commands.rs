@@ -3,3 +3,4 @@
 pub mod check;
 pub mod completions;
 pub mod explain;
+pub mod init;

@@ -24,7 +24,7 @@ use crate::sketch::{Sketch, Unit};
 use crate::symbols::SymbolTable;
 
 use directed::skipped;
-pub use implying::implied;
+pub use implying::Implications;
 use judging::{judge_document, missing_part};
 
 /// One text of a paper.
