@@ -26,7 +26,7 @@ use crate::symbols::SymbolTable;
 
 pub(crate) use asking::{Asked, Unasked, statement_at};
 use directed::skipped;
-pub use implying::implied;
+pub use implying::Implications;
 use judging::{judge_document, missing_part};
 
 /// One text of a paper.

@@ -71,7 +71,7 @@ pub(crate) fn statement_at<T>(
     let file = evidence.get(document).ok_or(Unasked::NoFormula)?;
     let prices = Prices { file, paper: &all, declared: &own.read.declared, macros: &own.read.macros };
     let reading = statement.read(&own.scores(&prices));
-    let customs = Customs::of(own.read.text, prices.is_curved());
+    let customs = Customs::of(own.read.text, &prices);
     let eyes = Eyes::new(statement.sketch, &reading.choice, &prices, customs);
     let answer = Trees::default().statement(own.read, number, statement.sketch.span, |tree| {
         let (sketch, reading, prices, eyes) = (statement.sketch, &reading, &prices, &eyes);

@@ -59,7 +59,7 @@ pub(super) fn judge_document(
     for (number, formula) in formulas.iter().enumerate().filter(|_| settings.reports_unread()) {
         judge.findings.extend(formula.unread.iter().map(|part| (number, rules::unread(part))));
     }
-    let Judge { indexed, findings, symbols, .. } = judge;
+    let Judge { indexed, findings, symbols, customs, .. } = judge;
     let statistics = Statistics {
         formulas: formulas.len(),
         indexed: indexed.iter().filter(|flag| **flag).count(),
@@ -68,7 +68,8 @@ pub(super) fn judge_document(
     };
     let read = document.read;
     let findings = directed(&read.declared, read.host, formulas, findings, missing);
-    DocumentAnalysis { statistics, findings, symbols: symbols.map(Gatherer::finish) }
+    let symbols = symbols.map(|symbols| symbols.finish(&prices.declared.meanings, customs));
+    DocumentAnalysis { statistics, findings, symbols }
 }
 
 impl Judge<'_> {
@@ -82,7 +83,9 @@ impl Judge<'_> {
         }
         if let Some(symbols) = &mut self.symbols {
             let eyes = Eyes::new(sketch, &reading.choice, &self.prices, self.customs);
-            self.trees.statement(self.document.read, number, sketch.span, |tree| symbols.take(tree, &eyes));
+            self.trees.statement(self.document.read, number, sketch.span, |tree| {
+                symbols.take(tree, self.document.read.text, &eyes);
+            });
         }
         reading.odd.retain(|(letter, _)| self.prices.is_index_notation(letter));
         if sketch.unjudged.is_some()
@@ -136,7 +139,7 @@ impl Judge<'_> {
                 let found = rules::check_terms(&Flattened::new(statement, &judged, &eyes));
                 self.findings.extend(found.into_iter().map(|finding| (number, finding)));
                 if let Some(symbols) = &mut self.symbols {
-                    symbols.take(statement, &eyes);
+                    symbols.take(statement, read.text, &eyes);
                 }
             }
         }
