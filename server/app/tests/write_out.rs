@@ -128,7 +128,7 @@ fn a_sum_that_is_too_long_is_refused_with_its_length() {
 #[test]
 fn the_example_of_the_readme_is_real() {
     let root = std::path::Path::new(env!("CARGO_MANIFEST_DIR")).join("../..");
-    let place = "tests/documents/field-notes.inote:17:9";
+    let place = "tests/documents/field-notes.inote:34:22";
     let mut command = std::process::Command::new(env!("CARGO_BIN_EXE_indexwise"));
     let output = command.current_dir(&root).args(["write-out", place]).output().unwrap();
     let readme = std::fs::read_to_string(root.join("README.md")).unwrap();
