@@ -73,7 +73,7 @@ fn rules(documents: Vec<Source>, shared: Vec<SharedConventions>) -> Vec<&'static
 /// Sentences that bear on findings: the sentence, as in the README; others that are said too; a formula; the finding
 /// without the sentence and with it.
 const EFFECTS: &[(&str, &str, &str, &str, &str)] = &[
-    ("i j k l m n run from 1 to 3", "", r"T_{i5} = q_i", "", "component-out-of-range"),
+    ("i j k l m n run from 1 to 3", "T_{ij} is a tensor", r"T_{i5} = q_i", "", "component-out-of-range"),
     (
         "a b c d range over 4 dimensions",
         r"\alpha \beta run from 1 to 2",
@@ -183,7 +183,7 @@ fn configuration(sentence: &str) -> SharedConventions {
 fn the_nearer_scope_wins() {
     const FORMULA: &str = "q_j = T_{5j}";
     let [three, five] = ["i j k run from 1 to 3", "i j k run from 1 to 5"];
-    let page = |sentences: &[&str]| document(Host::Latex, sentences, FORMULA);
+    let page = |sentences: &[&str]| document(Host::Latex, &[sentences, &["T_{ij} is a tensor"]].concat(), FORMULA);
     let found = |documents, shared: &[&str]| rules(documents, shared.iter().map(|text| configuration(text)).collect());
     let reported = ["component-out-of-range"];
     assert_eq!(found(vec![page(&[three])], &[]), reported);

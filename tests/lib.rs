@@ -111,4 +111,17 @@ mod tests {
         assert!(files.len() > 20 && files.is_sorted());
         assert!(files_below("no such folder").is_empty());
     }
+
+    #[test]
+    fn a_generated_document_is_silent() {
+        for seed in 0..4 {
+            let text = generate::document(seed, 40_000);
+            let analysis = analyse(Host::Latex, &text);
+            assert!(analysis.statistics.indexed > 50, "{:?}", analysis.statistics);
+            // Terms are drawn at random, and two of one side may come out alike.
+            let findings = analysis.findings.iter().filter(|at| at.rule != "like-terms");
+            let places: Vec<_> = findings.map(|at| (at.rule, at.span.of(&text), &at.message)).collect();
+            assert!(places.is_empty(), "{places:#?}");
+        }
+    }
 }

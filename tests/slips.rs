@@ -79,7 +79,9 @@ fn missed(spoil: Spoil) -> (usize, Vec<String>) {
             tried += 1;
             let grave = |finding: &Finding| finding.severity != Severity::Hint;
             let findings = analyse(Host::Latex, &with_slip).findings;
-            assert!(findings.iter().all(|finding| place.holds(finding.span)), "blamed beside: {findings:#?}");
+            // By chance a generated sum has a term twice, which is a finding of its own, without a slip.
+            let beside = |finding: &Finding| finding.rule != "like-terms" && !place.holds(finding.span);
+            assert!(!findings.iter().any(beside), "blamed beside: {findings:#?}");
             if !findings.iter().any(grave) {
                 missed.push(format!("{} for {} in {}", new, script.span.of(&text), place.of(&with_slip)));
             }

@@ -14,7 +14,7 @@ use compact_str::CompactString;
 use crate::span::Span;
 
 pub use dump::dump;
-pub use pieces::{each_item_mut, substitute_letter, written_out};
+pub use pieces::{each_item_mut, each_script_mut, substitute_letter, written_out};
 pub use signs::{Claim, Joint, Operator, Product, Relation, RelationKind, Sign, SignKind};
 
 /// The level of a script: up (contravariant) or down (covariant).

@@ -82,14 +82,19 @@ impl Script {
 /// Visits every item of every script of a term, however deep: in brackets, fractions, roots, arguments, derivatives and
 /// scripts of scripts. In the order written, but for scripts, which come after what their atom holds.
 pub fn each_item_mut(term: &mut Term, visit: &mut impl FnMut(&mut Item)) {
+    each_script_mut(term, &mut |script| script.items.iter_mut().for_each(&mut *visit));
+}
+
+/// Visits every script of a term, however deep, each before the scripts of what stands in it.
+pub fn each_script_mut(term: &mut Term, visit: &mut impl FnMut(&mut Script)) {
     term.factors.iter_mut().for_each(|factor| in_factor(factor, visit));
 }
 
-fn in_sum(sum: &mut Sum, visit: &mut impl FnMut(&mut Item)) {
-    sum.terms.iter_mut().for_each(|term| each_item_mut(term, visit));
+fn in_sum(sum: &mut Sum, visit: &mut impl FnMut(&mut Script)) {
+    sum.terms.iter_mut().for_each(|term| each_script_mut(term, visit));
 }
 
-fn in_factor(factor: &mut Factor, visit: &mut impl FnMut(&mut Item)) {
+fn in_factor(factor: &mut Factor, visit: &mut impl FnMut(&mut Script)) {
     match &mut factor.atom {
         Atom::Group(group) => {
             group.parts.iter_mut().flat_map(|part| &mut part.sides).for_each(|side| in_sum(side, visit));
@@ -115,10 +120,12 @@ fn in_factor(factor: &mut Factor, visit: &mut impl FnMut(&mut Item)) {
         | Atom::Order(None)
         | Atom::Unread(_) => {}
     }
-    for item in factor.scripts.iter_mut().flat_map(|script| &mut script.items) {
-        visit(item);
-        if let ItemKind::Factor(inner) = &mut item.kind {
-            in_factor(inner, visit);
+    for script in &mut factor.scripts {
+        visit(script);
+        for item in &mut script.items {
+            if let ItemKind::Factor(inner) = &mut item.kind {
+                in_factor(inner, visit);
+            }
         }
     }
 }

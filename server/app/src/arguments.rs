@@ -30,6 +30,17 @@ pub enum Command {
     /// The nearest file indexwise.toml upwards from a document, within its repository, sets the levels of rules, further
     /// files with macros, and which files of a folder are checked. A file that is named as a PATH is always checked.
     Check(CheckArguments),
+    /// Write the contraction at a place out over its range
+    ///
+    /// With the place on a summed letter that letter's sum is written out, elsewhere in a term all sums of the term. The
+    /// range is the one that is declared, else a customary one. Terms that vanish by symmetry are left out and listed, and
+    /// those that coincide are collected.
+    WriteOut(WriteOutArguments),
+    /// Write a commented indexwise.toml from what the documents of a folder imply
+    ///
+    /// Each sentence is tried: one that leaves all findings as they are is put in force, any other is written as a
+    /// comment that says what it would change. A file that is there already is never written over.
+    Init(InitArguments),
     /// Explain a rule, or list the rules
     Explain(ExplainArguments),
     /// Print a completion script for a shell
@@ -54,6 +65,10 @@ pub struct CheckArguments {
     /// With --fix: show what would be done, and write nothing
     #[arg(long, requires = "fix")]
     pub dry_run: bool,
+    /// Add the symbol table of each document: kernels with their slots, symmetries and uses, and letters that mean more
+    /// than one thing (in the reports text, json and json-lines; lines has no place for it)
+    #[arg(long)]
+    pub symbols: bool,
     /// Count hints, too, for the exit status
     #[arg(long)]
     pub strict: bool,
@@ -79,6 +94,49 @@ pub struct CheckArguments {
     /// What standard input holds
     #[arg(long, value_enum)]
     pub host: Option<HostName>,
+}
+
+/// `write-out`.
+#[derive(Debug, Args)]
+pub struct WriteOutArguments {
+    /// The place; lines and columns count from 1, columns in characters (Unicode scalars)
+    #[arg(value_name = "FILE:LINE:COLUMN")]
+    pub place: OsString,
+    /// Print only the sum, in one way of writing
+    #[arg(long = "as", value_enum, value_name = "WAY")]
+    pub way: Option<Way>,
+    /// Take the conventions of this file (a .toml: its table "conventions"; else a plain list) instead of
+    /// those that the files indexwise.toml declare
+    #[arg(long, value_name = "FILE")]
+    pub conventions: Option<PathBuf>,
+}
+
+/// The ways of writing a formula.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, ValueEnum)]
+pub enum Way {
+    /// For a LaTeX or Markdown document
+    Latex,
+    /// For people who read a terminal
+    Unicode,
+    /// For a plain note
+    Note,
+}
+
+/// `init`.
+#[derive(Debug, Args)]
+pub struct InitArguments {
+    /// The folder (default: the current one)
+    #[arg(value_name = "FOLDER", default_value = ".", hide_default_value = true)]
+    pub folder: PathBuf,
+    /// Print the file instead of writing it
+    #[arg(long)]
+    pub dry_run: bool,
+    /// How many papers are checked at a time (default: one for each processor)
+    #[arg(long, value_name = "N", value_parser = clap::value_parser!(u16).range(1..=256))]
+    pub jobs: Option<u16>,
+    /// Do not show progress
+    #[arg(long)]
+    pub no_progress: bool,
 }
 
 /// `explain`.
@@ -195,7 +253,7 @@ fn answer(error: &clap::Error) -> Answer {
     match error.kind() {
         ErrorKind::DisplayHelp | ErrorKind::DisplayVersion => Answer::Help(text),
         ErrorKind::DisplayHelpOnMissingArgumentOrSubcommand => {
-            Answer::Wrong("say what to do: check, explain or completions (see --help)".into())
+            Answer::Wrong("say what to do: check, write-out, init, explain or completions (see --help)".into())
         }
         _ => Answer::Wrong(one_line(&text)),
     }

@@ -224,19 +224,21 @@ pub fn configurations(scopes: &Scopes, settings: &Settings) -> Vec<FileReport> {
         let mut findings = declared::problems(&configuration.conventions);
         Settings { levels: configuration.levels.clone(), ..settings.clone() }.settle(&mut findings);
         let (path, text) = (configuration.conventions.path.clone(), configuration.text.clone());
-        FileReport { path, host: None, statistics: Statistics::default(), findings, text }
+        FileReport { path, host: None, statistics: Statistics::default(), findings, symbols: None, text }
     });
     reports.filter(|report| !report.findings.is_empty()).collect()
 }
 
 fn report_of(shown: &str, file: &Listed, found: DocumentAnalysis, text: Option<&Text>) -> FileReport {
-    // Without findings nobody asks for the text again, and a large archive need not be held in memory.
-    let text = text.filter(|_| !found.findings.is_empty()).cloned().unwrap_or_default();
+    // Without places nobody asks for the text again, and a large archive need not be held in memory.
+    let has_places = !found.findings.is_empty() || found.symbols.as_ref().is_some_and(|symbols| !symbols.is_empty());
+    let text = text.filter(|_| has_places).cloned().unwrap_or_default();
     FileReport {
         path: shown.to_owned(),
         host: Some(file.host),
         statistics: found.statistics,
         findings: found.findings,
+        symbols: found.symbols,
         text,
     }
 }

@@ -3,3 +3,5 @@
 pub mod check;
 pub mod completions;
 pub mod explain;
+pub mod init;
+pub mod write_out;

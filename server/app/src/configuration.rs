@@ -68,7 +68,11 @@ struct Wrong {
 
 /// Reads `indexwise.toml` or a file of its shape.
 pub fn read(path: &Path, shown: &str) -> Result<Configuration, Vec<Failure>> {
-    let text = text_of(path).map_err(|cause| vec![Failure::new(shown, cause)])?;
+    read_as(text_of(path).map_err(|cause| vec![Failure::new(shown, cause)])?, path, shown)
+}
+
+/// Reads a text as the file that is, or might be, at a path.
+pub fn read_as(text: Text, path: &Path, shown: &str) -> Result<Configuration, Vec<Failure>> {
     let folder = path.parent().unwrap_or(Path::new(""));
     let tables =
         on_large_stack(|| tables::read(&text.text, folder)).map_err(|cause| vec![Failure::new(shown, cause)])?;

@@ -38,6 +38,8 @@ fn run(words: impl Iterator<Item = OsString>) -> Status {
     };
     match arguments.command {
         Command::Check(check) => commands::check::run(&check),
+        Command::WriteOut(place) => commands::write_out::run(&place),
+        Command::Init(init) => commands::init::run(&init),
         Command::Explain(explain) => commands::explain::run(explain.rule.as_deref()),
         Command::Completions(completions) => commands::completions::run(completions.shell),
     }

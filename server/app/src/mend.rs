@@ -142,6 +142,7 @@ impl<'a> Work<'a> {
             host: Some(host.unwrap_or(indexwise_grammar::hosts::Host::Latex)),
             statistics: found.statistics,
             findings: found.findings,
+            symbols: found.symbols,
             text: after.clone(),
         };
         let Self { shown, path, before, done, .. } = self;

@@ -20,7 +20,7 @@ use indexwise_grammar::macros::Macros;
 
 pub use parts::{Loaded, load};
 pub use roots::Roots;
-pub use texts::{Disk, Overlay, Texts};
+pub use texts::{Disk, DiskWithProject, Overlay, Texts};
 
 /// What makes a paper: two files belong to one paper if and only if these are equal.
 #[derive(Clone, Debug, PartialEq, Eq, Hash)]

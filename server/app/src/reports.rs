@@ -10,6 +10,7 @@ use std::time::Duration;
 
 use indexwise_checker::finding::{Finding, Severity};
 use indexwise_checker::paper::Statistics;
+use indexwise_checker::symbols::SymbolTable;
 use indexwise_grammar::hosts::Host;
 
 use crate::arguments::ReportKind;
@@ -27,7 +28,9 @@ pub struct FileReport {
     pub statistics: Statistics,
     /// In the order of their places.
     pub findings: Vec<Finding>,
-    /// The text that the findings speak of; empty if there are none.
+    /// The symbols, if they are asked for.
+    pub symbols: Option<SymbolTable>,
+    /// The text that the findings and the symbols speak of; empty if there are none.
     pub text: Text,
 }
 
@@ -149,6 +152,7 @@ pub mod samples {
             host: Some(Host::Latex),
             statistics: Statistics { formulas: 1, indexed: 1, ..Statistics::default() },
             findings: vec![finding],
+            symbols: None,
             text: Text { text: text.into(), marked },
         }
     }

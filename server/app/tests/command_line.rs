@@ -60,7 +60,7 @@ fn trouble_with_one_file_does_not_stop_the_others() {
 
 #[test]
 fn bad_options_are_told_in_one_line() {
-    complains(&[], "", "say what to do: check, explain or completions (see --help)");
+    complains(&[], "", "say what to do: check, write-out, init, explain or completions (see --help)");
     complains(&[], "check -", "-: say with --host latex, markdown or note what standard input holds");
     complains(&[], "check --fix --host note -", "--fix: cannot write to standard input");
     complains(&[], "check --only ,", "--only and --without: a rule's name is missing");

@@ -1,5 +1,6 @@
 //! A paper is a root document with its parts and styles; `check` is the one pipeline.
 
+mod asking;
 mod directed;
 mod implying;
 mod judging;
@@ -23,8 +24,9 @@ use crate::reading::{self, Reading};
 use crate::sketch::{Sketch, Unit};
 use crate::symbols::SymbolTable;
 
+pub(crate) use asking::{Asked, Unasked, statement_at};
 use directed::skipped;
-pub use implying::implied;
+pub use implying::Implications;
 use judging::{judge_document, missing_part};
 
 /// One text of a paper.

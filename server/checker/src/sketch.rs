@@ -18,6 +18,8 @@ use indexwise_grammar::tree::{Level, RelationKind, Statement};
 
 use crate::conventions::built_in::LetterClass;
 
+pub(crate) use scripts::is_exponential;
+
 /// A statement reduced to what matters for its balance.
 #[derive(Clone, Debug, Default)]
 pub struct Sketch {

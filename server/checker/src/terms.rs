@@ -30,7 +30,8 @@ pub use asking::asks_for_terms;
 pub use flattened::Flattened;
 pub(crate) use monomials::contracted;
 pub use monomials::{Monomials, Zero};
-pub use product::{Bracketed, Piece, Product, exact};
+pub use product::{Bracketed, Piece, Product};
+pub(crate) use product::{all_products, exact, plain_number};
 
 /// What the reading of a statement knows of its letters, and what the document knows of its kernels.
 pub struct Eyes<'a> {

@@ -96,7 +96,7 @@ fn settings(arguments: &CheckArguments) -> Result<Settings, Failure> {
         without: arguments.without.clone(),
         // Off by default, it is on for those who ask for it by name.
         unread: arguments.only.iter().any(|name| name == "unread"),
-        symbols: false,
+        symbols: arguments.symbols && arguments.report != ReportKind::Lines,
         steps: arguments.steps.into(),
         levels: Vec::new(),
     })

@@ -71,6 +71,21 @@ impl Scopes {
         scopes
     }
 
+    /// Takes a configuration for one that stands at its path, although no file is there. Before any folder is entered.
+    pub fn suppose(&mut self, configuration: Configuration) {
+        let folder = configuration.path.parent().unwrap_or(Path::new("")).to_owned();
+        let repository = folder.join(REPOSITORY).exists();
+        self.marks.insert(folder.clone(), Marks { configuration: true, repository });
+        let configuration = Arc::new(configuration);
+        self.in_order.push(configuration.clone());
+        self.read.insert(folder, Some(configuration));
+    }
+
+    /// The path of the configuration that is nearest to a file whose folder was entered.
+    pub fn nearest(&self, file: &Path) -> Option<PathBuf> {
+        self.of(file).nearest.as_ref().map(|nearest| nearest.path.clone())
+    }
+
     /// Learns of the folder of a file, by its real path.
     pub fn enter(&mut self, file: &Path) -> Arc<Scope> {
         let folder = file.parent().unwrap_or(Path::new(""));

@@ -24,7 +24,7 @@ pub enum Step {
     Ready,
 }
 
-/// Replaces the text of an existing file.
+/// Replaces the text of an existing file; `create` below writes a new one.
 pub fn replace(path: &Path, bytes: &[u8]) -> io::Result<()> {
     replace_in_steps(path, bytes, &mut |_| Ok(()))
 }
@@ -50,6 +50,26 @@ fn replace_in_steps(path: &Path, bytes: &[u8], after: &mut dyn FnMut(Step) -> io
     fs::set_permissions(file.path(), permissions)?;
     after(Step::Ready)?;
     file.persist(&target).map_err(|failed| failed.error)?;
+    sync_folder(folder);
+    Ok(())
+}
+
+/// Writes a new file; one that is there already is left as it is, even if it came meanwhile.
+pub fn create(path: &Path, bytes: &[u8]) -> io::Result<()> {
+    let folder = match path.parent() {
+        Some(folder) if folder.as_os_str().is_empty() => Path::new("."),
+        Some(folder) => folder,
+        None => return Err(io::Error::other("has no folder")),
+    };
+    let mut builder = tempfile::Builder::new();
+    // The usual permissions of a new file, rather than the tight ones of a temporary file.
+    #[cfg(unix)]
+    builder.permissions(std::os::unix::fs::PermissionsExt::from_mode(0o666));
+    let mut file = builder.prefix(".indexwise-").tempfile_in(folder)?;
+    file.write_all(bytes)?;
+    file.flush()?;
+    file.as_file().sync_all()?;
+    file.persist_noclobber(path).map_err(|failed| failed.error)?;
     sync_folder(folder);
     Ok(())
 }
@@ -127,6 +147,29 @@ mod tests {
             replace(&path, b"new").unwrap();
             assert_eq!(fs::read(&path).unwrap(), b"new");
         }
+    }
+
+    #[test]
+    fn a_new_file_is_written_whole_and_never_over_another() {
+        let (folder, path) = folder_with_file();
+        let new = folder.path().join("new.toml");
+        create(&new, b"text").unwrap();
+        assert_eq!(fs::read(&new).unwrap(), b"text");
+        assert_eq!(create(&path, b"new").unwrap_err().kind(), io::ErrorKind::AlreadyExists);
+        assert_eq!(fs::read_to_string(&path).unwrap(), OLD);
+        assert_eq!(entries(folder.path()), 2);
+    }
+
+    #[cfg(unix)]
+    #[test]
+    fn a_new_file_has_the_permissions_of_any_new_file() {
+        use std::os::unix::fs::PermissionsExt;
+        let folder = tempfile::tempdir().unwrap();
+        let (ours, other) = (folder.path().join("ours"), folder.path().join("other"));
+        create(&ours, b"").unwrap();
+        fs::write(&other, b"").unwrap();
+        let mode = |path: &Path| fs::metadata(path).unwrap().permissions().mode();
+        assert_eq!(mode(&ours), mode(&other));
     }
 
     #[cfg(unix)]

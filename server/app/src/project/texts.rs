@@ -56,6 +56,31 @@ impl Texts for Disk {
     }
 }
 
+/// What is on the disk and a configuration file in a folder that has none, as it would be if one were written.
+#[derive(Clone, Debug)]
+pub struct DiskWithProject {
+    /// The real path of the folder.
+    pub folder: PathBuf,
+}
+
+impl Texts for DiskWithProject {
+    fn read(&self, path: &Path) -> Result<Text, String> {
+        Disk.read(path)
+    }
+
+    fn real_path(&self, path: &Path) -> Option<PathBuf> {
+        Disk.real_path(path)
+    }
+
+    fn latex_files_in(&self, folder: &Path) -> Vec<PathBuf> {
+        Disk.latex_files_in(folder)
+    }
+
+    fn is_project(&self, folder: &Path) -> bool {
+        folder == self.folder || Disk.is_project(folder)
+    }
+}
+
 /// Texts laid over a source: they are read instead of what it has, and are there even if it has none.
 pub struct Overlay<'a> {
     below: &'a dyn Texts,

@@ -6,6 +6,7 @@ use std::io::{self, Write};
 
 use indexwise_checker::finding::{Edit, Finding, Fix, Related, StepVerdict};
 use indexwise_checker::paper::Steps;
+use indexwise_checker::symbols::{DoubleUse, Part, Symbol, SymbolTable};
 use serde::Serialize;
 
 use super::FileReport;
@@ -32,6 +33,8 @@ struct FileObject<'a> {
     path: &'a str,
     statistics: StatisticsObject,
     findings: Vec<FindingObject<'a>>,
+    #[serde(skip_serializing_if = "Option::is_none")]
+    symbols: Option<SymbolsObject<'a>>,
 }
 
 #[derive(Serialize)]
@@ -111,6 +114,35 @@ struct EditObject<'a> {
     text: &'a str,
 }
 
+#[derive(Serialize)]
+struct SymbolsObject<'a> {
+    kernels: Vec<KernelObject<'a>>,
+    letters: Vec<LetterObject<'a>>,
+}
+
+#[derive(Serialize)]
+struct KernelObject<'a> {
+    kernel: &'a str,
+    slots: usize,
+    uses: usize,
+    declared: bool,
+    symmetries: &'a [String],
+    first: Place,
+}
+
+#[derive(Serialize)]
+struct LetterObject<'a> {
+    letter: &'a str,
+    parts: Vec<PartObject>,
+}
+
+#[derive(Serialize)]
+struct PartObject {
+    part: String,
+    uses: usize,
+    first: Place,
+}
+
 /// Writes one document.
 pub fn write(files: &[FileReport], out: &mut dyn Write) -> io::Result<()> {
     let tool = Tool { name: env!("CARGO_PKG_NAME"), version: env!("CARGO_PKG_VERSION") };
@@ -145,6 +177,25 @@ fn object(file: &FileReport) -> FileObject<'_> {
             }),
         },
         findings: file.findings.iter().map(|finding| finding_object(finding, &places)).collect(),
+        symbols: file.symbols.as_ref().map(|symbols| symbols_object(symbols, &places)),
+    }
+}
+
+fn symbols_object<'a>(symbols: &'a SymbolTable, places: &Places) -> SymbolsObject<'a> {
+    let kernel = |symbol: &'a Symbol| KernelObject {
+        kernel: &symbol.kernel,
+        slots: symbol.slots,
+        uses: symbol.uses,
+        declared: symbol.declared,
+        symmetries: &symbol.symmetries,
+        first: places.start(symbol.first),
+    };
+    let part = |part: &Part| PartObject { part: part.role.words(), uses: part.uses, first: places.start(part.first) };
+    let letter =
+        |letter: &'a DoubleUse| LetterObject { letter: &letter.letter, parts: letter.parts.iter().map(part).collect() };
+    SymbolsObject {
+        kernels: symbols.kernels.iter().map(kernel).collect(),
+        letters: symbols.letters.iter().map(letter).collect(),
     }
 }
 

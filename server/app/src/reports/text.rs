@@ -4,6 +4,7 @@
 mod excerpt;
 mod label;
 mod ledger;
+mod symbols;
 
 use std::io::{self, Write};
 use std::time::Duration;
@@ -58,13 +59,26 @@ impl Palette {
 
 /// Writes the report.
 pub fn write(files: &[FileReport], palette: Palette, elapsed: Duration, out: &mut dyn Write) -> io::Result<()> {
-    for file in files.iter().filter(|file| !file.findings.is_empty()) {
+    for file in files.iter().filter(|file| !file.findings.is_empty() || file.symbols.is_some()) {
         let places = Places::new(&file.text);
         for finding in &file.findings {
             write_finding(file, &places, finding, palette, out)?;
         }
+        write_symbols(file, &places, palette, out)?;
     }
     write_closing(files, elapsed, out)
+}
+
+/// The symbol table of a file, after its findings; nothing for a file without symbols.
+fn write_symbols(file: &FileReport, places: &Places, palette: Palette, out: &mut dyn Write) -> io::Result<()> {
+    let Some(symbols) = file.symbols.as_ref().filter(|symbols| !symbols.is_empty()) else { return Ok(()) };
+    let heading = format!("{}, symbols", printable(&file.path));
+    writeln!(out, "{}", palette.paint(Style::Place, &heading))?;
+    for line in symbols::lines(symbols, places) {
+        let indent = if line.is_empty() { "" } else { INDENT };
+        writeln!(out, "{indent}{line}")?;
+    }
+    writeln!(out)
 }
 
 fn write_finding(

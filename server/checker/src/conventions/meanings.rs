@@ -90,6 +90,8 @@ pub struct Meanings {
     pub labels: Vec<CompactString>,
     /// Names of components: coordinates, members of ranges.
     pub components: Vec<CompactString>,
+    /// The coordinates by name, in their order: `t r \theta \phi are the coordinates`.
+    pub coordinates: Vec<CompactString>,
     /// Kernels of covariant derivatives that are declared, with their metrics.
     pub derivatives: Vec<(CompactString, Option<CompactString>)>,
     /// Which metric raises the indices of which kernel.
@@ -279,7 +281,13 @@ impl Meanings {
                     }
                 }
             }
-            Sentence::CoordinateNames(names) => push_all(&mut self.components, names),
+            Sentence::CoordinateNames(names) => {
+                push_all(&mut self.components, names);
+                // One name says what a script means, not what a range is.
+                if self.coordinates.is_empty() && names.len() > 1 {
+                    push_all(&mut self.coordinates, names);
+                }
+            }
             Sentence::CovariantDerivative { kernel, of } => {
                 self.derivatives.push((kernel.text.clone(), of.as_ref().map(|name| name.text.clone())));
             }
@@ -370,6 +378,9 @@ impl Meanings {
         self.families.extend(nearer.families);
         self.labels.extend(nearer.labels);
         self.components.extend(nearer.components);
+        if !nearer.coordinates.is_empty() {
+            self.coordinates = nearer.coordinates;
+        }
         // Each key is put in once, so that the order does not matter.
         self.kernels.extend(nearer.kernels);
         self.derivatives.retain(|(kernel, _)| nearer.derivatives.iter().all(|(other, _)| other != kernel));

@@ -70,7 +70,7 @@ pub(super) fn judge_document(
     for (number, formula) in formulas.iter().enumerate().filter(|_| settings.reports_unread()) {
         judge.findings.extend(formula.unread.iter().map(|part| (number, rules::unread(part))));
     }
-    let Judge { indexed, findings, symbols, steps, .. } = judge;
+    let Judge { indexed, findings, symbols, steps, customs, .. } = judge;
     let statistics = Statistics {
         formulas: formulas.len(),
         indexed: indexed.iter().filter(|flag| **flag).count(),
@@ -80,7 +80,8 @@ pub(super) fn judge_document(
     };
     let read = document.read;
     let findings = directed(&read.declared, read.host, formulas, findings, missing);
-    DocumentAnalysis { statistics, findings, symbols: symbols.map(Gatherer::finish) }
+    let symbols = symbols.map(|symbols| symbols.finish(&prices.declared.meanings, customs));
+    DocumentAnalysis { statistics, findings, symbols }
 }
 
 impl<'d> Judge<'d> {
@@ -126,13 +127,15 @@ impl<'d> Judge<'d> {
         }
         if let Some(symbols) = &mut self.symbols {
             let eyes = Eyes::new(sketch, &reading.choice, &self.prices, self.customs);
-            self.trees.statement(self.document.read, number, sketch.span, |tree| symbols.take(tree, &eyes));
+            self.trees.statement(self.document.read, number, sketch.span, |tree| {
+                symbols.take(tree, self.document.read.text, &eyes);
+            });
         }
         reading.odd.retain(|(letter, _)| self.prices.is_index_notation(letter));
-        let next = formulas.get(number + 1).map(|next| next.span.start).filter(|start| *start >= formula.span.end);
-        let after = Span { start: formula.span.end, end: next.unwrap_or(u32::MAX) };
-        let no_sum = formula.no_sum || says_no_sum(self.document.read.text, after, self.document.read.host);
-        if sketch.unjudged.is_some() || no_sum || !self.prices.trusts(&sketch.unknown) {
+        if sketch.unjudged.is_some()
+            || is_without_sum(self.document.read, number)
+            || !self.prices.trusts(&sketch.unknown)
+        {
             return;
         }
         let search = if reading.odd.is_empty() { rules::faults::level_faults } else { rules::faults::faults };
@@ -183,7 +186,7 @@ impl<'d> Judge<'d> {
                 let found = rules::check_terms(&Flattened::new(statement, &judged, &eyes));
                 self.findings.extend(found.into_iter().map(|finding| (number, finding)));
                 if let Some(symbols) = &mut self.symbols {
-                    symbols.take(statement, &eyes);
+                    symbols.take(statement, read.text, &eyes);
                 }
             }
         }
@@ -223,6 +226,15 @@ impl Trees {
 pub(super) fn missing_part(trouble: &Trouble, begin: Option<usize>) -> Finding {
     let preamble = trouble.preamble || begin.is_some_and(|begin| (trouble.span.start as usize) < begin);
     rules::missing_part(trouble.span, &trouble.message, preamble)
+}
+
+/// Whether words in a formula or right after it say that no sum is meant.
+pub(super) fn is_without_sum(read: &Read<'_>, number: usize) -> bool {
+    let formulas = &read.document.formulas;
+    let Some(formula) = formulas.get(number) else { return false };
+    let next = formulas.get(number + 1).map(|next| next.span.start).filter(|start| *start >= formula.span.end);
+    let after = Span { start: formula.span.end, end: next.unwrap_or(u32::MAX) };
+    formula.no_sum || says_no_sum(read.text, after, read.host)
 }
 
 /// Whether the words right after a formula say that no sum is meant: those before the next formula, up to a blank

@@ -31,14 +31,11 @@ fn check(terms: &Flattened<'_>) -> Vec<Finding> {
 fn finding(terms: &Flattened<'_>, made: &Use, at: usize, slot: &UsedSlot) -> Option<Finding> {
     let Filling::Component(name) = &slot.filling else { return None };
     let number: u32 = name.parse().ok()?;
-    let (letter, family, declared) = terms.family_of_slot(made, at)?;
+    let (letter, family) = terms.family_of_slot(made, at)?;
     let (first, last) = family.numbers()?;
-    if family.holds_number(number)? || terms.whole_holds(&letter, number) {
-        return None;
-    }
-    // Below the range: the time beside space, or the number of an order. Right above it, on a kernel of which nothing
-    // is said: the direction out of a surface or into a further dimension.
-    if number < first || !declared && number == last + 1 {
+    let held = family.holds_number(number)? || terms.whole_holds(&letter, number);
+    // Below the range it is the time beside space, or the number of an order.
+    if held || number < first || made.stacked && terms.any_slot_holds(made, number) {
         return None;
     }
     let message = format!(

@@ -31,7 +31,9 @@ fn finding(terms: &Flattened<'_>, made: &Use) -> Option<Finding> {
     }
     // A comma may separate slots as well as differentiate.
     let counts = meanings.slot_counts(&made.kernel);
-    let fits = |count: &usize| *count == own || *count == made.slots.len();
+    // A number beside as many letters as are declared is the name of an order, `E^0_{ij}`.
+    let letters = made.own_slots().filter(|slot| slot.letter().is_some()).count();
+    let fits = |count: &usize| *count == own || *count == made.slots.len() || *count == letters;
     let open = [Kind::Matrix, Kind::NonCommuting, Kind::Variation, Kind::EpsilonTensor, Kind::EpsilonSymbol];
     let open = open.into_iter().any(|kind| meanings.is_kind(&made.kernel, kind));
     if counts.iter().any(fits) || open || is_curvature(terms, made, own) || is_another(terms, made, own, &counts) {

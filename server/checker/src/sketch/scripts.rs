@@ -82,7 +82,7 @@ pub(super) fn read_scripts(builder: &mut Builder, carrier: Carrier<'_>, scripts:
         note_counters(builder, carrier, script);
         if let Some(power) = power_of(script, carrier, scripts) {
             out.power = Some(power);
-        } else if is_exponential(script, carrier, scripts) {
+        } else if is_exponential(script, carrier.name, scripts) {
             collect(builder, carrier, script, &mut exponents);
         } else if holds_indices(script) || lends(carrier, script) {
             numbers += plain_numbers(script);
@@ -182,9 +182,9 @@ fn plain_numbers(script: &Script) -> usize {
 }
 
 /// `e^{i\omega r}`: several letters above an e that carries nothing below.
-fn is_exponential(script: &Script, carrier: Carrier<'_>, all: &[Script]) -> bool {
+pub(crate) fn is_exponential(script: &Script, kernel: &str, all: &[Script]) -> bool {
     let greek = |item: &Item| matches!(&item.kind, ItemKind::Letter(letter) if class_of(letter) == LetterClass::Greek);
-    let above = carrier.name == "e" && script.level == Level::Up;
+    let above = kernel == "e" && script.level == Level::Up;
     above && all.len() == 1 && script.items.len() > 1 && !script.items.iter().all(greek)
 }
 

@@ -99,11 +99,9 @@ impl<'a> Flattened<'a> {
         let known = self.eyes.meanings.known(&piece.made.kernel, own);
         // With two slots it may be the strain.
         let epsilon = own > 2 && matches!(piece.made.letter.as_str(), "\\epsilon" | "\\varepsilon");
-        is_known(piece, self.eyes.meanings, self.eyes.customs)
-            && !known.is_some_and(bound)
-            && !(self.eyes.customs.partials_differ && piece.operators.len() > 1)
-            && !epsilon
-            && !matches!(piece.made.letter.as_str(), "\\Gamma" | "R")
+        let partials = self.eyes.customs.partials_differ && piece.operators.len() > 1;
+        let obeys_more = epsilon || partials || matches!(piece.made.letter.as_str(), "\\Gamma" | "R");
+        is_known(piece, self.eyes.meanings, self.eyes.customs) && !known.is_some_and(bound) && !obeys_more
     }
 
     /// Whether the paper has a connection: it speaks of curvature, or declares a metric or a covariant derivative.
@@ -112,23 +110,19 @@ impl<'a> Flattened<'a> {
         self.eyes.customs.curved || !meanings.metrics().is_empty() || !meanings.derivatives.is_empty()
     }
 
-    /// The declared family of a slot, with a letter of it: that of the letter the kernel is declared with, else of
-    /// the letters beside it; and whether it was declared.
-    pub fn family_of_slot(&self, made: &'a Use, at: usize) -> Option<(CompactString, &'a Family, bool)> {
-        let meanings = self.eyes.meanings;
-        let own = made.own_slots().count();
-        let known = meanings.known(&made.kernel, own);
-        let letter = match known {
-            Some(known) => known.slots.get(at)?.letter.clone(),
-            None => {
-                let mut letters = made.own_slots().filter_map(|slot| slot.letter());
-                let first = letters.next()?.clone();
-                let same = letters.all(|other| meanings.family_number(other) == meanings.family_number(&first));
-                same.then_some(first)?
-            }
-        };
-        let family = meanings.family(&letter)?;
-        Some((letter, family, known.is_some()))
+    /// The declared family of a slot, with the letter that the kernel is declared with. Of a kernel that nobody declares
+    /// a number may as well name a node or a mode.
+    pub fn family_of_slot(&self, made: &Use, at: usize) -> Option<(CompactString, &'a Family)> {
+        let known = self.eyes.meanings.known(&made.kernel, made.own_slots().count())?;
+        let letter = &known.slots.get(at)?.letter;
+        Some((letter.clone(), self.eyes.meanings.family(letter)?))
+    }
+
+    /// Whether a number is a value of any slot of a kernel: of stacked scripts the order is not written.
+    pub fn any_slot_holds(&self, made: &Use, number: u32) -> bool {
+        let slots = 0..made.own_slots().count();
+        let mut families = slots.filter_map(|at| self.family_of_slot(made, at));
+        families.any(|(_, family)| family.holds_number(number) == Some(true))
     }
 
     /// Whether a family that a letter's family is a part of, declared so or by its range, has a number among its values.

@@ -14,6 +14,7 @@ use indexwise_algebra::normal_form::{
 };
 use indexwise_algebra::rational::Rational;
 use indexwise_algebra::symmetry::{Sign, SignedPermutation, SlotSymmetry};
+use indexwise_grammar::conventions::Kind;
 use indexwise_grammar::tree;
 
 use crate::conventions::built_in::{LetterClass, class_of, is_metric_by_custom};
@@ -33,6 +34,16 @@ pub struct Monomials<'e, 'a> {
     kernels: RefCell<Vec<CompactString>>,
     letters: RefCell<Vec<CompactString>>,
     budget: RefCell<Budget>,
+    order: Order,
+}
+
+/// Which kernels keep their order in a product.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+enum Order {
+    /// Those of unknown meaning: they may be matrices or operators.
+    OfUnknown,
+    /// Those that are declared not to commute, or by custom do not: fields are taken for numbers.
+    OfOperators,
 }
 
 /// Why a product is zero.
@@ -62,7 +73,12 @@ impl<'e, 'a> Monomials<'e, 'a> {
     /// An empty table.
     pub fn new(eyes: &'e Eyes<'a>) -> Self {
         let budget = RefCell::new(Budget::new(STEPS));
-        Self { eyes, kernels: RefCell::default(), letters: RefCell::default(), budget }
+        Self { eyes, kernels: RefCell::default(), letters: RefCell::default(), budget, order: Order::OfUnknown }
+    }
+
+    /// An empty table for products of components, which are numbers unless something speaks against it.
+    pub(crate) fn of_components(eyes: &'e Eyes<'a>) -> Self {
+        Self { order: Order::OfOperators, ..Self::new(eyes) }
     }
 
     /// Why a product is zero by a contraction, if it is.
@@ -177,19 +193,30 @@ impl<'e, 'a> Monomials<'e, 'a> {
     }
 
     fn monomial(&self, product: &Product) -> Option<Monomial> {
-        let unknown =
-            product.pieces.iter().filter(|piece| !is_known(piece, self.eyes.meanings, self.eyes.customs)).count();
+        let ordered = product.pieces.iter().filter(|piece| self.keeps_order(piece)).count();
         let mut rank = 0;
         let mut factors = Vec::with_capacity(product.pieces.len());
         for piece in &product.pieces {
-            let known = is_known(piece, self.eyes.meanings, self.eyes.customs);
-            rank += usize::from(!known);
+            let keeps = self.keeps_order(piece);
+            rank += usize::from(keeps);
             let slots = piece.made.slots.iter().map(|slot| self.slot(product, slot)).collect::<Option<_>>()?;
-            let key = piece.key(if known || unknown < 2 { 0 } else { rank });
+            let key = piece.key(if !keeps || ordered < 2 { 0 } else { rank });
             let kernel = number(&self.kernels, &key);
             factors.push(Factor { kernel, slots, parity: Parity::Commuting, symmetry: self.symmetry(piece)? });
         }
         Monomial::new(factors).ok()
+    }
+
+    fn keeps_order(&self, piece: &Piece) -> bool {
+        match self.order {
+            Order::OfUnknown => !is_known(piece, self.eyes.meanings, self.eyes.customs),
+            Order::OfOperators => {
+                let meanings = self.eyes.meanings;
+                let declared = meanings.is_kind(&piece.made.kernel, Kind::NonCommuting)
+                    || meanings.is_kind(&piece.made.letter, Kind::NonCommuting);
+                declared || !meanings.declares(&piece.made.kernel) && is_operator_by_custom(piece)
+            }
+        }
     }
 
     fn symmetry(&self, piece: &Piece) -> Option<Arc<SlotSymmetry>> {
@@ -250,6 +277,16 @@ pub(crate) fn contracted(product: &Product, at: usize, metric: &Piece) -> Vec<(P
         }
     }
     out
+}
+
+/// Kernels whose factors keep their order by custom: matrices and spinors with their usual letters, bold basis vectors,
+/// operators with hats.
+fn is_operator_by_custom(piece: &Piece) -> bool {
+    let matrix = matches!(piece.made.letter.as_str(), "\\gamma" | "\\sigma" | "\\tau" | "\\alpha" | "\\Gamma");
+    let spinor = matches!(piece.made.letter.as_str(), "\\psi" | "\\Psi" | "\\chi");
+    let dressed = ["\\hat ", "\\widehat ", "\\mathbf ", "\\bm ", "\\boldsymbol ", "\\vec "];
+    let dressed = dressed.iter().any(|mark| piece.made.kernel.contains(mark));
+    spinor || dressed || matrix && piece.made.own_slots().count() == 1
 }
 
 /// Whether the ends of a sum may change their levels: not where something with slots stands under a partial

@@ -74,15 +74,22 @@ pub fn side(sum: &Sum, eyes: &Eyes<'_>) -> Side {
     out
 }
 
-/// A term multiplied out; nothing if it holds what cannot be flattened.
+/// A term multiplied out; nothing if it holds what cannot be flattened. Products that are too long are left out.
 fn products(term: &Term, number: usize, eyes: &Eyes<'_>) -> Option<Vec<Product>> {
+    Some(drafted(term, number, eyes)?.into_iter().flatten().collect())
+}
+
+/// A term multiplied out, every product of it; else nothing.
+pub(crate) fn all_products(term: &Term, eyes: &Eyes<'_>) -> Option<Vec<Product>> {
+    drafted(term, 0, eyes)?.into_iter().collect()
+}
+
+fn drafted(term: &Term, number: usize, eyes: &Eyes<'_>) -> Option<Vec<Option<Product>>> {
     let mut walk = Walk { eyes, done: vec![Draft::default()], waiting: Vec::new(), flip: false, below: 0 };
     walk.factors(&term.factors)?;
     walk.settle_waiting();
     let sign = signed(term)?;
-    let finish = |draft: Draft| draft.finish(number, term.span, sign);
-    let products: Vec<Product> = walk.done.into_iter().filter_map(finish).collect();
-    Some(products)
+    Some(walk.done.into_iter().map(|draft| draft.finish(number, term.span, sign)).collect())
 }
 
 /// The sign of a term; nothing for `\pm`.
@@ -445,7 +452,7 @@ fn acted_on(fraction: &Fraction) -> &[Factor] {
 }
 
 /// A sum that is one plain number.
-fn plain_number(sum: &Sum) -> Option<Rational> {
+pub(crate) fn plain_number(sum: &Sum) -> Option<Rational> {
     let [term] = sum.terms.as_slice() else { return None };
     let [factor] = term.factors.as_slice() else { return None };
     let Atom::Number(text) = &factor.atom else { return None };
@@ -454,7 +461,7 @@ fn plain_number(sum: &Sum) -> Option<Rational> {
 }
 
 /// A decimal number, exactly.
-pub fn exact(text: &str) -> Option<Rational> {
+pub(crate) fn exact(text: &str) -> Option<Rational> {
     let (whole, part) = text.split_once('.').unwrap_or((text, ""));
     if part.len() > 9 || whole.len() > 12 {
         return None;

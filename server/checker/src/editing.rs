@@ -1,0 +1,6 @@
+//! What an editor asks, without a protocol: each question is one function from a paper and a place to plain data.
+//!
+//! The command line asks the same functions. Nothing here reports a finding; what cannot be answered is said with
+//! its reason.
+
+pub mod write_out;
