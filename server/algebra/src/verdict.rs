@@ -12,13 +12,19 @@
 mod compare;
 mod degree;
 mod functions;
+mod givens;
+mod signs;
 mod witness;
 
+use crate::evaluation::Meter;
 use crate::evaluation::needs::{Needs, within_depth};
 use crate::expression::{Expression, World};
 use crate::rational::Rational;
 use crate::trouble::{Budget, Trouble};
 use compare::{Compared, Dimension};
+use givens::Givens;
+
+pub use givens::UNKNOWNS_BUDGET;
 
 /// In how many of the dimensions in which a claim fails a counterexample is looked for, the smallest first.
 const DIMENSIONS_SEARCHED: usize = 2;
@@ -126,9 +132,8 @@ pub enum Reason {
     Functions,
     /// The sides, or terms of them, do not fit together.
     Shape,
-    /// A given of this label is of a kind that cannot be imposed.
-    Given(String),
-    /// No point was found that obeys the given of this label.
+    /// No point was found that obeys the given of this label: it is of a kind that cannot be imposed, contradicts
+    /// another, or leaves nothing but 0.
     GivenUnmet(String),
 }
 
@@ -169,19 +174,21 @@ pub fn judge(claim: &Claim, limits: &Limits) -> Verdict {
 fn judged(claim: &Claim, limits: &Limits) -> Result<Verdict, Reason> {
     let Claim { left, right, world } = claim;
     [left, right].into_iter().try_for_each(within_depth)?;
+    let meter = Meter::new(limits.step, limits.total, limits.stop);
     let needs = Needs::of([(left, 0), (right, 0)], world)?;
-    let meter = crate::evaluation::Meter::new(limits.step, limits.total, limits.stop);
-    let mut found = Found::default();
-    for dimension in dimensions(world) {
-        match Dimension::new(claim, &needs, dimension, &meter, limits).compared()? {
-            Compared::Equal { draws, error_bits } => {
-                found.holds.push(dimension);
-                found.draws += draws;
-                found.error_bits = found.error_bits.min(error_bits);
-            }
-            Compared::Unequal => found.fails.push(dimension),
-            Compared::Undefined => found.undefined.push(dimension),
-        }
+    let found = Found::over(claim, &needs, &Givens::default(), &meter, limits)?;
+    let settled = found.fails.is_empty() && found.undefined.is_empty();
+    if settled || world.givens.is_empty() {
+        return found.verdict(&needs, claim, limits);
+    }
+    // What holds without its givens holds with them; only else are they looked at.
+    let (givens, needs) = Givens::new(claim)?;
+    let found = Found::over(claim, &needs, &givens, &meter, limits)?;
+    if found.holds.is_empty()
+        && found.fails.is_empty()
+        && let Some(label) = givens.unmet.take()
+    {
+        return Err(Reason::GivenUnmet(label));
     }
     found.verdict(&needs, claim, limits)
 }
@@ -210,6 +217,23 @@ impl Default for Found {
 }
 
 impl Found {
+    /// What all dimensions give, under some givens.
+    fn over(claim: &Claim, needs: &Needs, givens: &Givens, meter: &Meter, limits: &Limits) -> Result<Self, Reason> {
+        let mut found = Self::default();
+        for dimension in dimensions(&claim.world) {
+            match Dimension::new(claim, needs, dimension, meter, limits, givens).compared()? {
+                Compared::Equal { draws, error_bits } => {
+                    found.holds.push(dimension);
+                    found.draws += draws;
+                    found.error_bits = found.error_bits.min(error_bits);
+                }
+                Compared::Unequal => found.fails.push(dimension),
+                Compared::Undefined => found.undefined.push(dimension),
+            }
+        }
+        Ok(found)
+    }
+
     fn verdict(self, needs: &Needs, claim: &Claim, limits: &Limits) -> Result<Verdict, Reason> {
         let Self { holds, fails, undefined, draws, error_bits } = self;
         if fails.is_empty() {
@@ -249,8 +273,9 @@ fn shown(
         let givens = claim.world.givens.iter().map(|given| given.label.clone()).collect();
         return Ok(Err(Unshown::Givens(givens)));
     }
-    let meter = crate::evaluation::Meter::new(limits.step, limits.total, limits.stop);
-    let search = |dimension: &usize| witness::witness(&Dimension::new(claim, needs, *dimension, &meter, limits));
+    let meter = Meter::new(limits.step, limits.total, limits.stop);
+    let none = Givens::default();
+    let search = |dimension: &usize| witness::witness(&Dimension::new(claim, needs, *dimension, &meter, limits, &none));
     match fails.iter().take(DIMENSIONS_SEARCHED).find_map(search) {
         Some(counterexample) => Ok(Ok(counterexample)),
         None if functions::used(claim, needs).related => Err(Reason::Functions),
