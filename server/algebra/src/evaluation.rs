@@ -11,6 +11,28 @@
 //! coordinates): it is moved as what it is and then restricted.
 //!
 //! Trap: the number 0 has every shape: as a term it is passed over, and a definition may be 0 in all components.
+//!
+//! # Example
+//!
+//! ```
+//! use indexwise_algebra::evaluation::{Meter, Setting, evaluate};
+//! use indexwise_algebra::expression::{Expression, Family, Filling, Index, Size, World};
+//! use indexwise_algebra::field::{FIRST, Residue};
+//! use indexwise_algebra::geometry::Level;
+//! use indexwise_algebra::trouble::Trouble;
+//!
+//! # fn main() -> Result<(), Trouble> {
+//! let plain = Family { size: Size::Dimension(0), coordinates: Some(0), metric: None };
+//! let world = World { families: vec![plain], dimensions: vec![3], ..World::default() };
+//! let index = Index { filling: Filling::Label(1), level: Level::Inert, family: 0 };
+//! let trace = Expression::Delta([index, index]);
+//! let setting = Setting::new(&[&trace], &world, 3)?;
+//! let meter = Meter::new(1_000_000, 1_000_000, None);
+//! let value = evaluate(&trace, &setting.point::<Residue<FIRST>>(7, &meter)?)?;
+//! assert_eq!(value.tensor.to_jet()?.value(), Residue::new(3));
+//! # Ok(())
+//! # }
+//! ```
 
 mod definitions;
 mod derivatives;
@@ -20,6 +42,7 @@ mod meter;
 pub(crate) mod needs;
 mod point;
 pub(crate) mod sampled;
+mod setting;
 mod slots;
 
 pub use functions::TERMS_BUDGET;
@@ -27,6 +50,7 @@ pub use meter::Meter;
 pub use needs::DEPTH_BUDGET;
 pub use point::Point;
 pub(crate) use point::ring_for;
+pub use setting::Setting;
 pub use slots::Slot;
 
 use crate::contraction::Label;

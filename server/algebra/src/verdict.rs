@@ -130,6 +130,8 @@ pub enum Reason {
     Function,
     /// The sides differ, and contain functions between whose values there may be relations that are not known here.
     Functions,
+    /// The sides differ where a sum under a root or an absolute value has a sign that it may never have.
+    Signs,
     /// The sides, or terms of them, do not fit together.
     Shape,
     /// No point was found that obeys the given of this label: it is of a kind that cannot be imposed, contradicts
@@ -279,6 +281,7 @@ fn shown(
     match fails.iter().take(DIMENSIONS_SEARCHED).find_map(search) {
         Some(counterexample) => Ok(Ok(counterexample)),
         None if functions::used(claim, needs).related => Err(Reason::Functions),
+        None if signs::Signs::of(claim, needs).bits.is_some() => Err(Reason::Signs),
         None => Ok(Err(Unshown::NoWitness)),
     }
 }

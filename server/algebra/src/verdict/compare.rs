@@ -65,10 +65,7 @@ impl<'a> Dimension<'a> {
 
     /// What the draws give.
     pub fn compared(&self) -> Result<Compared, Reason> {
-        let ring = match ring_for(&self.families, self.needs) {
-            Ok(ring) => ring,
-            Err(trouble) => return Err(trouble.into()),
-        };
+        let ring = ring_for(&self.families, self.needs)?;
         let outcome = if self.is_complex() {
             self.modulo_both::<Complex<FIRST>, Complex<SECOND>>(&ring)
         } else {

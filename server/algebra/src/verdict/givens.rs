@@ -15,8 +15,8 @@
 //! are consequences of the givens, to finite order, and so a claim that holds then follows from them; that a claim
 //! differs then proves nothing.
 //!
-//! Trap: equations without solutions but 0 (a Killing field of an arbitrary metric, to high order) say nothing; a
-//! field that is left 0 is refused.
+//! Trap: differential equations without solutions but 0 (a Killing field of an arbitrary metric, to high order) say
+//! nothing; a field that such an equation leaves 0 is refused. That a field is 0 may be said without derivatives.
 
 use std::cell::{Cell, RefCell};
 use std::sync::Arc;
@@ -70,6 +70,11 @@ impl Condition {
         let metrics = needs.metrics.iter().enumerate().filter_map(|(i, need)| Some((Part::Metric(i), order(need)?)));
         let depths = fields.chain(metrics).collect();
         Ok(Self { label: given.label.clone(), left, right, order: 0, depths })
+    }
+
+    /// Whether derivatives of a field stand in it.
+    fn differentiates(&self, part: Part) -> bool {
+        self.depths.iter().any(|(own, depth)| *own == part && *depth > 0)
     }
 
     /// The highest order to which what gives way is needed, less what the derivatives in the given take.
@@ -157,7 +162,8 @@ impl<'a, N: Number> Imposing<'a, N> {
             for way in ways {
                 let conditions = if way == Way::AtOnce { &together[..] } else { &[condition][..] };
                 let Some(solved) = self.solved(conditions, part, way)? else { continue };
-                if self.obeys(&solved, &together)? && !is_nothing(&solved, part) {
+                let vacuous = together.iter().any(|own| own.differentiates(part)) && is_nothing(&solved, part);
+                if !vacuous && self.obeys(&solved, &together)? {
                     self.point = solved;
                     self.gave_way.push((number, part));
                     return Ok(());

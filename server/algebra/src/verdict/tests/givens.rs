@@ -93,6 +93,14 @@ fn a_given_that_cannot_be_met_is_named() {
     world.givens = vec![given("absurd", int(1), Some(int(0)))];
     assert_eq!(verdict(field(0, ".i"), int(0), &world), unmet("absurd"));
     // Nothing but 0 is left, of which everything is true.
-    world.givens = vec![given("all", field(1, ""), None)];
-    assert_eq!(verdict(field(1, ""), times([int(2), field(1, "")]), &world), unmet("all"));
+    let f = || field(1, "");
+    world.givens = vec![given("still", d(".i", f()), None), given("scaled", d(".i", times([x(".i"), f()])), None)];
+    assert_eq!(verdict(f(), times([int(2), f()]), &world), unmet("scaled"));
+}
+
+#[test]
+fn a_source_that_is_left_out() {
+    let mut world = cartesian(&[2, 3], vec![named("A", "."), named("J", ".")]);
+    world.givens = vec![given("empty", field(1, ".i"), None)];
+    follows(d(".j", sum([field(0, ".i"), field(1, ".i")])), d(".j", field(0, ".i")), &world);
 }

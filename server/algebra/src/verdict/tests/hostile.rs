@@ -83,6 +83,32 @@ fn the_root_of_two_exists_modulo_one_prime() {
 }
 
 #[test]
+fn a_sum_of_squares_has_no_sign_here() {
+    let world = cartesian(&[2], vec![named("A", ".")]);
+    let square = || times([field(0, ".i"), field(0, ".i")]);
+    assert_eq!(verdict(size(square()), square(), &world), Verdict::Undecided(Reason::Signs));
+    holds(power(root(square()), 2, 1), square(), &world);
+    holds(root(times([square(), square()])), size(square()), &world);
+}
+
+#[test]
+fn signs_that_are_drawn_ask_for_many_draws() {
+    let world = cartesian(&[1], vec![named("f", ""), named("h", "")]);
+    let (f, h) = (|| field(0, ""), || field(1, ""));
+    // Right at every second point, at three of four, and everywhere.
+    for seed in 0..20 {
+        let claim = Claim { left: size(f()), right: f(), world: world.clone() };
+        assert!(matches!(judge(&claim, &Limits::seeded(seed)), Verdict::Fails(_)));
+        let product = times([minus(size(f()), f()), minus(size(h()), h())]);
+        let claim = Claim { left: product, right: int(0), world: world.clone() };
+        assert!(matches!(judge(&claim, &Limits::seeded(seed)), Verdict::Fails(_)));
+    }
+    let verdict = verdict(root(times([f(), f()])), size(f()), &world);
+    let Verdict::Holds { draws, error_bits, .. } = verdict else { panic!("{verdict:?}") };
+    assert_eq!((draws, error_bits), (50, 20));
+}
+
+#[test]
 fn what_does_not_fit_together_is_said() {
     let world = space(&[2], vec![named("A", "_"), named("B", "_")]);
     let shape = Verdict::Undecided(Reason::Shape);
