@@ -185,12 +185,25 @@ impl<N: Number> Gathered<N> {
                     let from = self.factors.len();
                     self.gather(inner, point)?;
                     self.close(from)?;
+                    self.settle(from, point)?;
                 }
                 _ => {
                     let value = evaluate(factor, point)?;
                     self.factors.push((value.tensor, value.slots));
                 }
             }
+        }
+        Ok(())
+    }
+
+    /// Multiplies a nested product out if it has no free labels: a number is no help to a plan.
+    fn settle(&mut self, from: usize, point: &Point<N>) -> Outcome<()> {
+        let inner = self.factors.get(from..).unwrap_or_default();
+        let mut labels: Vec<Label> = inner.iter().flat_map(|(_, slots)| slots).map(|slot| slot.label).collect();
+        labels.sort_unstable();
+        if inner.len() > 1 && labels.chunk_by(|a, b| a == b).all(|same| same.len() == 2) {
+            let value = point.multiplied(self.factors.split_off(from))?;
+            self.factors.push((value.tensor, value.slots));
         }
         Ok(())
     }

@@ -223,5 +223,7 @@ pub fn holds(left: E, right: E, world: &World) {
     let Verdict::Holds { dimensions, undefined, draws, error_bits } = verdict else { panic!("{verdict:?}") };
     assert_eq!(dimensions, world.dimensions);
     assert!(undefined.is_empty());
-    assert!(draws >= 4 * dimensions.len() && error_bits >= 20, "{draws} {error_bits}");
+    // More draws are made only where signs are drawn, of which each tells less.
+    let least = if draws > 4 * dimensions.len() { 20 } else { 60 };
+    assert!(draws >= 4 * dimensions.len() && error_bits >= least, "{draws} {error_bits}");
 }

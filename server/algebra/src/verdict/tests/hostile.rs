@@ -9,19 +9,28 @@ use crate::verdict::{Claim, Limits, Reason, Verdict, judge};
 
 #[test]
 fn forty_factors_in_a_chain_are_contracted() {
+    let world = space(&[2, 3], vec![named("M", "^_"), named("N", "^_")]);
+    let letter = |place: u32| char::from_u32(u32::from('\u{3b1}') + place).unwrap();
+    let factor = |place: u32| field(place as usize % 2, &format!("^{}_{}", letter(place), letter(place + 1)));
+    let forth = Expression::Product((0..40).map(factor).collect());
+    let back = Expression::Product((0..40).rev().map(factor).collect());
+    holds(forth, back, &world);
+}
+
+#[test]
+fn the_same_dummies_serve_in_each_nested_product() {
     let world = space(&[2, 3, 4], vec![named("M", "^_"), named("N", "^_")]);
-    // The trace of M N M N .. is that of N M N M ..
-    let letter = |place: u16| char::from_u32(u32::from(b'i') + u32::from(place)).unwrap();
-    let chain = |first: usize| {
-        let factor = |place: u16| {
-            let slots = format!("^{}_{}", letter(place), letter((place + 1) % 18));
-            field((usize::from(place) + first) % 2, &slots)
-        };
-        Expression::Product((0..18).map(factor).collect())
-    };
-    // Dummies of one factor are its own: the same letters serve again.
-    let square = |first| Expression::Product(vec![chain(first), chain(first), chain(first)]);
-    holds(square(0), square(1), &world);
+    // The trace of M N M N is that of N M N M, and so are their cubes.
+    let chain =
+        |slots: [(usize, &str); 4]| Expression::Product(slots.map(|(number, slots)| field(number, slots)).into());
+    let forth = || chain([(0, "^i_j"), (1, "^j_k"), (0, "^k_l"), (1, "^l_i")]);
+    let back = || chain([(1, "^i_j"), (0, "^j_k"), (1, "^k_l"), (0, "^l_i")]);
+    holds(times([forth(), forth(), forth()]), times([back(), back(), back()]), &world);
+    // An outer index of the same name is another one.
+    let vector = |slots: &str| times([field(0, slots), field(1, "^j_j")]);
+    let outer = times([times([field(0, "^i_k"), field(1, "^k_j")]), vector("^k_i")]);
+    let plain = times([field(0, "^i_l"), field(1, "^l_j"), field(0, "^k_i"), field(1, "^m_m")]);
+    holds(outer, plain, &world);
 }
 
 #[test]
@@ -57,6 +66,8 @@ fn deep_nesting_is_refused() {
     let world = cartesian(&[2], vec![named("f", "")]);
     let deep = (0..200).fold(field(0, ""), |of, _| size(of));
     assert_eq!(verdict(deep, int(1), &world), Verdict::Undecided(Reason::Budget(Budget::Depth)));
+    let within = (0..20).fold(field(0, ""), |of, _| over(times([sum([of, int(1)]), int(2)]), int(2)));
+    holds(within, sum([field(0, ""), int(20)]), &world);
 }
 
 #[test]
