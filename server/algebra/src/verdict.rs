@@ -132,6 +132,8 @@ pub enum Reason {
     Functions,
     /// The sides differ where a sum under a root or an absolute value has a sign that it may never have.
     Signs,
+    /// Equal at every point drawn, but degrees are so high that this says nothing.
+    Uncertain,
     /// The sides, or terms of them, do not fit together.
     Shape,
     /// No point was found that obeys the given of this label: it is of a kind that cannot be imposed, contradicts
@@ -224,6 +226,7 @@ impl Found {
         let mut found = Self::default();
         for dimension in dimensions(&claim.world) {
             match Dimension::new(claim, needs, dimension, meter, limits, givens).compared()? {
+                Compared::Equal { error_bits: 0, .. } => return Err(Reason::Uncertain),
                 Compared::Equal { draws, error_bits } => {
                     found.holds.push(dimension);
                     found.draws += draws;

@@ -20,6 +20,12 @@ use crate::trouble::{Budget, Outcome, Trouble};
 /// Both primes lie above `2^60`.
 const PRIME_BITS: u32 = 60;
 
+/// The bits that are asked for beyond signs, where so many draws give them.
+const LEAST_BITS: u32 = 60;
+
+/// The most draws for the sake of a weak bound.
+const MOST_DRAWS: usize = 60;
+
 /// What one dimension gives.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
 pub(super) enum Compared {
@@ -93,6 +99,15 @@ impl<'a> Dimension<'a> {
         }
         first.points += second.points;
         first.drawn += second.drawn;
+        // A bound that is weak, as under givens that are solved for, is mended by drawing more.
+        let each = self.error_bits(first) / u32::try_from(first.points).unwrap_or(u32::MAX);
+        if let Some(needed) = LEAST_BITS.checked_div(each).map(|needed| needed as usize + 1)
+            && (first.points..=MOST_DRAWS).contains(&needed)
+        {
+            let Some(more) = self.passed::<B>(ring, 3, needed - first.points)? else { return Ok(Compared::Unequal) };
+            first.points += more.points;
+            first.drawn += more.drawn;
+        }
         let error_bits = signs.bound(first.points, self.error_bits(first));
         Ok(Compared::Equal { draws: first.points, error_bits })
     }
