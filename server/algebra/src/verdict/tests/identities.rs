@@ -137,6 +137,21 @@ fn variations_of_the_metric() {
 }
 
 #[test]
+fn derivatives_along_a_curve() {
+    let mut fields = vec![named("f", ""), named("h", "")];
+    fields.iter_mut().for_each(|field| field.varies = true);
+    let mut world = cartesian(&[2], fields);
+    world.parameters = vec!["t".to_owned(), "s".to_owned()];
+    let along = |parameter, of| Expression::Vary { parameter, of: Box::new(of) };
+    let (f, h) = (|| field(0, ""), || field(1, ""));
+    let twice = |of: Expression| along(0, along(0, of));
+    let middle = times([int(2), along(0, f()), along(0, h())]);
+    holds(twice(times([f(), h()])), sum([times([twice(f()), h()]), middle, times([f(), twice(h())])]), &world);
+    holds(along(0, along(1, f())), along(1, along(0, f())), &world);
+    holds(along(0, d(".i", f())), d(".i", along(0, f())), &world);
+}
+
+#[test]
 fn epsilons_in_three_dimensions() {
     let world = cartesian(&[3], vec![named("A", ".."), named("v", ".")]);
     let product = |a, b| times([epsilon(a), epsilon(b)]);
