@@ -80,6 +80,13 @@ pub struct Value<N> {
 
 /// The value of an expression; see the head for `Shape`. Other troubles are those of the arithmetic.
 pub fn evaluate<N: Number>(expression: &Expression, point: &Point<N>) -> Outcome<Value<N>> {
+    let value = node(expression, point)?;
+    // What takes no multiplications takes time as well.
+    point.meter.spend(value.tensor.numbers().len() as u64)?;
+    Ok(value)
+}
+
+fn node<N: Number>(expression: &Expression, point: &Point<N>) -> Outcome<Value<N>> {
     match expression {
         Expression::Number(number) => Ok(point.number(number_of(*number)?)),
         Expression::Imaginary => Ok(point.number(N::imaginary_unit().ok_or(Trouble::NoRoot)?)),

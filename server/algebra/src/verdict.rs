@@ -15,6 +15,7 @@ mod functions;
 mod givens;
 mod signature;
 mod signs;
+mod text;
 mod witness;
 
 use crate::evaluation::Meter;
@@ -72,7 +73,7 @@ impl Limits<'_> {
 pub enum Verdict {
     /// Equal in all components at every point drawn.
     Holds {
-        /// The dimensions in which it was tried and is defined.
+        /// The dimensions in which it was tried and is defined; those that no budget lasts for are left out.
         dimensions: Vec<usize>,
         /// The dimensions in which a denominator is 0, or a root does not exist, everywhere.
         undefined: Vec<usize>,
@@ -226,7 +227,12 @@ impl Found {
     fn over(claim: &Claim, needs: &Needs, givens: &Givens, meter: &Meter, limits: &Limits) -> Result<Self, Reason> {
         let mut found = Self::default();
         for dimension in dimensions(&claim.world) {
-            match Dimension::new(claim, needs, dimension, meter, limits, givens).compared()? {
+            let compared = match Dimension::new(claim, needs, dimension, meter, limits, givens).compared() {
+                // Higher dimensions are larger still; the lower ones stand.
+                Err(Reason::Budget(_)) if !found.holds.is_empty() || !found.fails.is_empty() => break,
+                other => other?,
+            };
+            match compared {
                 Compared::Equal { error_bits: 0, .. } => return Err(Reason::Uncertain),
                 Compared::Equal { draws, error_bits } => {
                     found.holds.push(dimension);

@@ -264,7 +264,7 @@ impl<'a, N: Number> Imposing<'a, N> {
             return Ok(true);
         }
         if places.len() > UNKNOWNS_BUDGET {
-            return Err(Trouble::Budget(Budget::Terms));
+            return Err(Trouble::Budget(Budget::Unknowns));
         }
         let mut columns = Vec::with_capacity(places.len());
         for place in places {

@@ -54,6 +54,14 @@ fn too_many_factors_too_high_derivatives_and_too_many_dimensions() {
 }
 
 #[test]
+fn a_dimension_that_is_too_large_is_left_out() {
+    let world = cartesian(&[2, 3, 40], vec![exchangeable("F", ".....", false)]);
+    let verdict = verdict(field(0, ".ijklm"), field(0, ".jiklm"), &world);
+    let Verdict::Holds { dimensions, undefined, .. } = verdict else { panic!("{verdict:?}") };
+    assert_eq!((dimensions, undefined), (vec![2, 3], Vec::new()));
+}
+
+#[test]
 fn the_eighth_derivative_in_two_dimensions_is_one() {
     let world = cartesian(&[2], vec![named("f", "")]);
     let eighth = |slots: [&str; 8]| slots.into_iter().fold(field(0, ""), |of, slot| d(slot, of));
