@@ -11,6 +11,28 @@
 //! coordinates): it is moved as what it is and then restricted.
 //!
 //! Trap: the number 0 has every shape: as a term it is passed over, and a definition may be 0 in all components.
+//!
+//! # Example
+//!
+//! ```
+//! use indexwise_algebra::evaluation::{Meter, Setting, evaluate};
+//! use indexwise_algebra::expression::{Expression, Family, Filling, Index, Size, World};
+//! use indexwise_algebra::field::{FIRST, Residue};
+//! use indexwise_algebra::geometry::Level;
+//! use indexwise_algebra::trouble::Trouble;
+//!
+//! # fn main() -> Result<(), Trouble> {
+//! let plain = Family { size: Size::Dimension(0), coordinates: Some(0), metric: None };
+//! let world = World { families: vec![plain], dimensions: vec![3], ..World::default() };
+//! let index = Index { filling: Filling::Label(1), level: Level::Inert, family: 0 };
+//! let trace = Expression::Delta([index, index]);
+//! let setting = Setting::new(&[&trace], &world, 3)?;
+//! let meter = Meter::new(1_000_000, 1_000_000, None);
+//! let value = evaluate(&trace, &setting.point::<Residue<FIRST>>(7, &meter)?)?;
+//! assert_eq!(value.tensor.to_jet()?.value(), Residue::new(3));
+//! # Ok(())
+//! # }
+//! ```
 
 mod definitions;
 mod derivatives;
@@ -20,6 +42,7 @@ mod meter;
 pub(crate) mod needs;
 mod point;
 pub(crate) mod sampled;
+mod setting;
 mod slots;
 
 pub use functions::TERMS_BUDGET;
@@ -27,6 +50,7 @@ pub use meter::Meter;
 pub use needs::DEPTH_BUDGET;
 pub use point::Point;
 pub(crate) use point::ring_for;
+pub use setting::Setting;
 pub use slots::Slot;
 
 use crate::contraction::Label;
@@ -56,6 +80,13 @@ pub struct Value<N> {
 
 /// The value of an expression; see the head for `Shape`. Other troubles are those of the arithmetic.
 pub fn evaluate<N: Number>(expression: &Expression, point: &Point<N>) -> Outcome<Value<N>> {
+    let value = node(expression, point)?;
+    // What takes no multiplications takes time as well.
+    point.meter.spend(value.tensor.numbers().len() as u64)?;
+    Ok(value)
+}
+
+fn node<N: Number>(expression: &Expression, point: &Point<N>) -> Outcome<Value<N>> {
     match expression {
         Expression::Number(number) => Ok(point.number(number_of(*number)?)),
         Expression::Imaginary => Ok(point.number(N::imaginary_unit().ok_or(Trouble::NoRoot)?)),
@@ -161,12 +192,25 @@ impl<N: Number> Gathered<N> {
                     let from = self.factors.len();
                     self.gather(inner, point)?;
                     self.close(from)?;
+                    self.settle(from, point)?;
                 }
                 _ => {
                     let value = evaluate(factor, point)?;
                     self.factors.push((value.tensor, value.slots));
                 }
             }
+        }
+        Ok(())
+    }
+
+    /// Multiplies a nested product out if it has no free labels: a number is no help to a plan.
+    fn settle(&mut self, from: usize, point: &Point<N>) -> Outcome<()> {
+        let inner = self.factors.get(from..).unwrap_or_default();
+        let mut labels: Vec<Label> = inner.iter().flat_map(|(_, slots)| slots).map(|slot| slot.label).collect();
+        labels.sort_unstable();
+        if inner.len() > 1 && labels.chunk_by(|a, b| a == b).all(|same| same.len() == 2) {
+            let value = point.multiplied(self.factors.split_off(from))?;
+            self.factors.push((value.tensor, value.slots));
         }
         Ok(())
     }

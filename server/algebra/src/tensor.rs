@@ -131,6 +131,11 @@ impl<N: Number> Tensor<N> {
         Jet::new(&self.ring, self.order, numbers).ok()
     }
 
+    /// For each monomial up to the order the coefficients of all components, in row-major order.
+    pub(crate) fn numbers(&self) -> &[N] {
+        &self.data
+    }
+
     /// The values of all components at the point, in row-major order.
     pub fn values(&self) -> &[N] {
         self.data.get(..self.size()).unwrap_or_default()

@@ -49,6 +49,8 @@ pub enum Budget {
     Depth,
     /// Terms of the argument of a function that is expanded (`evaluation::TERMS_BUDGET`).
     Terms,
+    /// Coefficients that a given is solved for (`verdict::UNKNOWNS_BUDGET`).
+    Unknowns,
     /// Factors of one contraction (`contraction::FACTORS_BUDGET`).
     Factors,
     /// Distinct labels of one contraction (`contraction::LABELS_BUDGET`).

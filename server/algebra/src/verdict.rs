@@ -12,13 +12,21 @@
 mod compare;
 mod degree;
 mod functions;
+mod givens;
+mod signature;
+mod signs;
+mod text;
 mod witness;
 
+use crate::evaluation::Meter;
 use crate::evaluation::needs::{Needs, within_depth};
 use crate::expression::{Expression, World};
 use crate::rational::Rational;
 use crate::trouble::{Budget, Trouble};
 use compare::{Compared, Dimension};
+use givens::Givens;
+
+pub use givens::UNKNOWNS_BUDGET;
 
 /// In how many of the dimensions in which a claim fails a counterexample is looked for, the smallest first.
 const DIMENSIONS_SEARCHED: usize = 2;
@@ -65,7 +73,7 @@ impl Limits<'_> {
 pub enum Verdict {
     /// Equal in all components at every point drawn.
     Holds {
-        /// The dimensions in which it was tried and is defined.
+        /// The dimensions in which it was tried and is defined; those that no budget lasts for are left out.
         dimensions: Vec<usize>,
         /// The dimensions in which a denominator is 0, or a root does not exist, everywhere.
         undefined: Vec<usize>,
@@ -124,11 +132,14 @@ pub enum Reason {
     Function,
     /// The sides differ, and contain functions between whose values there may be relations that are not known here.
     Functions,
+    /// The sides differ where a sum under a root or an absolute value has a sign that it may never have.
+    Signs,
+    /// Equal at every point drawn, but degrees are so high that this says nothing.
+    Uncertain,
     /// The sides, or terms of them, do not fit together.
     Shape,
-    /// A given of this label is of a kind that cannot be imposed.
-    Given(String),
-    /// No point was found that obeys the given of this label.
+    /// No point was found that obeys the given of this label: it is of a kind that cannot be imposed, contradicts
+    /// another, or leaves nothing but 0.
     GivenUnmet(String),
 }
 
@@ -169,19 +180,21 @@ pub fn judge(claim: &Claim, limits: &Limits) -> Verdict {
 fn judged(claim: &Claim, limits: &Limits) -> Result<Verdict, Reason> {
     let Claim { left, right, world } = claim;
     [left, right].into_iter().try_for_each(within_depth)?;
+    let meter = Meter::new(limits.step, limits.total, limits.stop);
     let needs = Needs::of([(left, 0), (right, 0)], world)?;
-    let meter = crate::evaluation::Meter::new(limits.step, limits.total, limits.stop);
-    let mut found = Found::default();
-    for dimension in dimensions(world) {
-        match Dimension::new(claim, &needs, dimension, &meter, limits).compared()? {
-            Compared::Equal { draws, error_bits } => {
-                found.holds.push(dimension);
-                found.draws += draws;
-                found.error_bits = found.error_bits.min(error_bits);
-            }
-            Compared::Unequal => found.fails.push(dimension),
-            Compared::Undefined => found.undefined.push(dimension),
-        }
+    let found = Found::over(claim, &needs, &Givens::default(), &meter, limits)?;
+    let settled = found.fails.is_empty() && found.undefined.is_empty();
+    if settled || world.givens.is_empty() {
+        return found.verdict(&needs, claim, limits);
+    }
+    // What holds without its givens holds with them; only else are they looked at.
+    let (givens, needs) = Givens::new(claim)?;
+    let found = Found::over(claim, &needs, &givens, &meter, limits)?;
+    if found.holds.is_empty()
+        && found.fails.is_empty()
+        && let Some(label) = givens.unmet.take()
+    {
+        return Err(Reason::GivenUnmet(label));
     }
     found.verdict(&needs, claim, limits)
 }
@@ -210,6 +223,29 @@ impl Default for Found {
 }
 
 impl Found {
+    /// What all dimensions give, under some givens.
+    fn over(claim: &Claim, needs: &Needs, givens: &Givens, meter: &Meter, limits: &Limits) -> Result<Self, Reason> {
+        let mut found = Self::default();
+        for dimension in dimensions(&claim.world) {
+            let compared = match Dimension::new(claim, needs, dimension, meter, limits, givens).compared() {
+                // Higher dimensions are larger still; the lower ones stand.
+                Err(Reason::Budget(_)) if !found.holds.is_empty() || !found.fails.is_empty() => break,
+                other => other?,
+            };
+            match compared {
+                Compared::Equal { error_bits: 0, .. } => return Err(Reason::Uncertain),
+                Compared::Equal { draws, error_bits } => {
+                    found.holds.push(dimension);
+                    found.draws += draws;
+                    found.error_bits = found.error_bits.min(error_bits);
+                }
+                Compared::Unequal => found.fails.push(dimension),
+                Compared::Undefined => found.undefined.push(dimension),
+            }
+        }
+        Ok(found)
+    }
+
     fn verdict(self, needs: &Needs, claim: &Claim, limits: &Limits) -> Result<Verdict, Reason> {
         let Self { holds, fails, undefined, draws, error_bits } = self;
         if fails.is_empty() {
@@ -249,11 +285,13 @@ fn shown(
         let givens = claim.world.givens.iter().map(|given| given.label.clone()).collect();
         return Ok(Err(Unshown::Givens(givens)));
     }
-    let meter = crate::evaluation::Meter::new(limits.step, limits.total, limits.stop);
-    let search = |dimension: &usize| witness::witness(&Dimension::new(claim, needs, *dimension, &meter, limits));
+    let meter = Meter::new(limits.step, limits.total, limits.stop);
+    let none = Givens::default();
+    let search = |dimension: &usize| witness::witness(&Dimension::new(claim, needs, *dimension, &meter, limits, &none));
     match fails.iter().take(DIMENSIONS_SEARCHED).find_map(search) {
         Some(counterexample) => Ok(Ok(counterexample)),
         None if functions::used(claim, needs).related => Err(Reason::Functions),
+        None if signs::Signs::of(claim, needs).bits.is_some() => Err(Reason::Signs),
         None => Ok(Err(Unshown::NoWitness)),
     }
 }

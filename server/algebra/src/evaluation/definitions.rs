@@ -15,6 +15,9 @@ use crate::number::Number;
 use crate::tensor::Tensor;
 use crate::trouble::{Outcome, Trouble};
 
+/// The ranges of the slots, and the components in row-major order, as far as they are defined.
+type Components<N> = (Vec<usize>, Vec<Option<Jet<N>>>);
+
 impl<N: Number> Point<'_, N> {
     /// Evaluates what is asked for in the order of definitions, so that no body waits for a long chain of others.
     pub(crate) fn prepare(&self) {
@@ -120,8 +123,8 @@ impl<N: Number> Point<'_, N> {
         Tensor::from_jets(&lengths, &(0..size * size).map(jet).collect::<Outcome<Vec<_>>>()?)
     }
 
-    /// The components that the bodies of a group define, in row-major order.
-    fn components(&self, group: &[usize], families: &[usize]) -> Outcome<(Vec<usize>, Vec<Option<Jet<N>>>)> {
+    /// The components that the bodies of a group define.
+    fn components(&self, group: &[usize], families: &[usize]) -> Outcome<Components<N>> {
         let lengths = families.iter().map(|family| self.families.size(*family)).collect::<Outcome<Vec<_>>>()?;
         let size = crate::tensor::size(&lengths, self.ring.width(self.ring.top()))?;
         let mut components: Vec<Option<Jet<N>>> =

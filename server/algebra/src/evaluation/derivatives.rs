@@ -66,26 +66,21 @@ impl<N: Number> Point<'_, N> {
                 .saturating_mul(slots.len() as u64)
                 .saturating_mul(self.ring.pairs(tensor.order().least(connection.order()))),
         )?;
-        let derivative = space.covariant(&tensor, &levels)?;
-        if opened.put_in.is_empty() {
-            return self.derived(derivative, slots, index);
+        let mut derivative = space.covariant(&tensor, &levels)?;
+        if index.level == Level::Up {
+            derivative = self.moved_slot(&derivative, slots.len(), family, Level::Up)?;
         }
-        let mut all = slots;
-        let place = all.len();
-        let raised = index.level == Level::Up;
-        let derivative = if raised { self.moved_slot(&derivative, place, family, Level::Up)? } else { derivative };
-        let mut indices: Vec<Index> = all.drain(..).map(|slot| opened.closed(slot)).collect();
-        indices.push(*index);
-        let families: Vec<usize> = indices
-            .iter()
-            .enumerate()
-            .map(
-                |(place, index)| {
-                    if levels.get(place).is_none_or(|level| *level != Level::Inert) { family } else { index.family }
-                },
-            )
-            .collect();
-        self.labelled(&derivative, &families, &indices)
+        let (mut indices, mut families) = (Vec::new(), Vec::new());
+        for slot in slots {
+            let was = opened.was(slot.label);
+            families.push(slot.family);
+            indices.push(was.unwrap_or(Index {
+                filling: Filling::Label(slot.label),
+                level: slot.level,
+                family: slot.family,
+            }));
+        }
+        self.labelled(&derivative, &[&families[..], &[family]].concat(), &[&indices[..], &[*index]].concat())
     }
 
     /// The derivative by a parameter at 0.
@@ -139,9 +134,8 @@ impl Opened {
         Ok(true)
     }
 
-    /// What a slot was before it was opened.
-    fn closed(&self, slot: Slot) -> Index {
-        let was = self.put_in.iter().find(|(label, _)| *label == slot.label).map(|(_, index)| *index);
-        was.unwrap_or(Index { filling: Filling::Label(slot.label), level: slot.level, family: slot.family })
+    /// What the slot with a label was before it was opened.
+    fn was(&self, label: Label) -> Option<Index> {
+        self.put_in.iter().find(|(own, _)| *own == label).map(|(_, index)| *index)
     }
 }

@@ -38,6 +38,9 @@ pub(crate) enum Source {
     Coordinate(usize),
 }
 
+/// A tensor with its slots on these levels.
+type Moved = (Source, Vec<Level>);
+
 /// What is being computed has no value yet; asking for it again is a circle.
 enum Kept<T> {
     Busy,
@@ -76,7 +79,7 @@ pub struct Point<'a, N: Number> {
     sampled: Sampled<N>,
     spaces: Cache<usize, Geometry<N>>,
     tensors: Cache<Source, Tensor<N>>,
-    moved: RefCell<HashMap<(Source, Vec<Level>), Rc<Tensor<N>>>>,
+    moved: RefCell<HashMap<Moved, Rc<Tensor<N>>>>,
     pub(super) functions: RefCell<Functions<N>>,
 }
 

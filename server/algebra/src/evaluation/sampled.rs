@@ -204,6 +204,16 @@ impl<N: Number> Sampled<N> {
         Ok(Self { fields, metrics, coordinates, functions: draws.bits() })
     }
 
+    /// The values at the point of the metrics that are drawn, row by row, by their numbers.
+    pub fn metric_values(&self) -> Vec<(usize, Vec<N>)> {
+        let values = |(number, free): (usize, &Option<Free<N>>)| {
+            let free = free.as_ref()?;
+            let entry = |(orbit, _): &(usize, Sign)| Some(*free.values.get(*orbit)?.first()?);
+            Some((number, free.orbits.iter().map(entry).collect::<Option<Vec<_>>>()?))
+        };
+        self.metrics.iter().enumerate().filter_map(values).collect()
+    }
+
     /// The fields and metrics that are drawn.
     pub fn parts(&self) -> Vec<Part> {
         let drawn = |frees: &[Option<Free<N>>]| -> Vec<usize> {

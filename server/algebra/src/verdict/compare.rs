@@ -2,6 +2,8 @@
 
 use std::sync::Arc;
 
+use super::givens::Givens;
+use super::signs::Signs;
 use super::{Claim, Limits, Reason, degree};
 use crate::draws::Draws;
 use crate::evaluation::families::Families;
@@ -13,10 +15,16 @@ use crate::field::{Complex, FIRST, Residue, SECOND};
 use crate::jet::{Ring, Variable};
 use crate::number::Number;
 use crate::tensor::Tensor;
-use crate::trouble::{Outcome, Trouble};
+use crate::trouble::{Budget, Outcome, Trouble};
 
 /// Both primes lie above `2^60`.
 const PRIME_BITS: u32 = 60;
+
+/// The bits that are asked for beyond signs, where so many draws give them.
+const LEAST_BITS: u32 = 60;
+
+/// The most draws for the sake of a weak bound.
+const MOST_DRAWS: usize = 60;
 
 /// What one dimension gives.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -37,6 +45,8 @@ pub(super) struct Dimension<'a> {
     pub families: Families,
     pub meter: &'a Meter<'a>,
     pub limits: &'a Limits<'a>,
+    /// What is imposed on draws.
+    pub givens: &'a Givens,
 }
 
 /// How many points were equal, and how many were drawn for that.
@@ -53,17 +63,15 @@ impl<'a> Dimension<'a> {
         dimension: usize,
         meter: &'a Meter<'a>,
         limits: &'a Limits<'a>,
+        givens: &'a Givens,
     ) -> Self {
         let families = Families::new(&claim.world, dimension);
-        Self { claim, needs, dimension, families, meter, limits }
+        Self { claim, needs, dimension, families, meter, limits, givens }
     }
 
     /// What the draws give.
     pub fn compared(&self) -> Result<Compared, Reason> {
-        let ring = match ring_for(&self.families, self.needs) {
-            Ok(ring) => ring,
-            Err(trouble) => return Err(trouble.into()),
-        };
+        let ring = ring_for(&self.families, self.needs)?;
         let outcome = if self.is_complex() {
             self.modulo_both::<Complex<FIRST>, Complex<SECOND>>(&ring)
         } else {
@@ -77,7 +85,8 @@ impl<'a> Dimension<'a> {
 
     /// Both primes; if roots exist modulo one of them alone (that of 2 does), all draws are made there.
     fn modulo_both<A: Number, B: Number>(&self, ring: &Arc<Ring>) -> Outcome<Compared> {
-        let wanted = self.limits.draws;
+        let signs = Signs::of(self.claim, self.needs);
+        let wanted = self.limits.draws.max(signs.draws.div_ceil(2));
         let Some(mut first) = self.passed::<A>(ring, 0, wanted)? else { return Ok(Compared::Unequal) };
         let missing = if first.points == 0 { wanted } else { 0 };
         let Some(mut second) = self.passed::<B>(ring, 1, wanted + missing)? else { return Ok(Compared::Unequal) };
@@ -90,7 +99,17 @@ impl<'a> Dimension<'a> {
         }
         first.points += second.points;
         first.drawn += second.drawn;
-        Ok(Compared::Equal { draws: first.points, error_bits: self.error_bits(first) })
+        // A bound that is weak, as under givens that are solved for, is mended by drawing more.
+        let each = self.error_bits(first) / u32::try_from(first.points).unwrap_or(u32::MAX);
+        if let Some(needed) = LEAST_BITS.checked_div(each).map(|needed| needed as usize + 1)
+            && (first.points..=MOST_DRAWS).contains(&needed)
+        {
+            let Some(more) = self.passed::<B>(ring, 3, needed - first.points)? else { return Ok(Compared::Unequal) };
+            first.points += more.points;
+            first.drawn += more.drawn;
+        }
+        let error_bits = signs.bound(first.points, self.error_bits(first));
+        Ok(Compared::Equal { draws: first.points, error_bits })
     }
 
     /// Draws until so many points are defined; nothing if the sides differ at one.
@@ -109,6 +128,8 @@ impl<'a> Dimension<'a> {
                         break;
                     }
                 }
+                // What has been asked for is there; more would only be more certain.
+                Err(Trouble::Budget(Budget::Total)) if passed.points >= self.limits.draws => break,
                 Err(trouble) => return Err(trouble),
             }
         }
@@ -119,7 +140,8 @@ impl<'a> Dimension<'a> {
         self.meter.spend(0)?;
         let world = &self.claim.world;
         let sampled = Sampled::<N>::draw(world, &self.families, self.needs, ring, seed, MetricDraw::Congruent)?;
-        let difference = self.difference(ring, sampled)?;
+        let imposed = self.givens.imposed(self, ring, sampled)?;
+        let difference = self.difference(ring, imposed)?;
         Ok(difference.is_none_or(|difference| difference.place.is_none()))
     }
 
@@ -128,31 +150,19 @@ impl<'a> Dimension<'a> {
         let Claim { left, right, world } = self.claim;
         let point = Point::new(world, self.families.clone(), self.needs, ring, sampled, self.meter);
         point.prepare();
-        let side = |side: &Expression| if is_nothing(side) { Ok(None) } else { evaluate(side, &point).map(Some) };
-        let (left, right) = match (side(left)?, side(right)?) {
-            (None, None) => return Ok(None),
-            (Some(left), None) => {
-                let zero = left.tensor.scaled(N::ZERO);
-                let slots = left.slots.clone();
-                (left, Value { tensor: zero, slots })
-            }
-            (None, Some(right)) => {
-                let zero = right.tensor.scaled(N::ZERO);
-                (Value { tensor: zero, slots: right.slots.clone() }, right)
-            }
-            (Some(left), Some(right)) => (left, right),
-        };
-        if left.slots != right.slots {
-            return Err(Trouble::Shape);
-        }
+        let Some((left, right)) = sides(left, right, &point)? else { return Ok(None) };
         Difference::new(left, right, self.needs.sized).map(Some)
     }
 
     /// Each draw errs with a chance of at most `degree/p`, divided by the share of points that are defined.
     fn error_bits(&self, passed: Passed) -> u32 {
-        let degree = degree::bound(self.claim, self.needs, &self.families);
+        let degree = {
+            let Claim { left, right, world } = self.claim;
+            degree::bound((left, right), world, self.needs, &self.families)
+        };
         let redrawn = (passed.drawn / passed.points.max(1)).max(1) as u64;
-        let lost = u64::BITS - degree.leading_zeros() + (u64::BITS - redrawn.leading_zeros() - 1);
+        let lost =
+            u64::BITS - degree.leading_zeros() + self.givens.growth.get() + (u64::BITS - redrawn.leading_zeros() - 1);
         PRIME_BITS.saturating_sub(lost).saturating_mul(u32::try_from(passed.points).unwrap_or(1))
     }
 
@@ -173,6 +183,32 @@ impl<'a> Dimension<'a> {
         }
         false
     }
+}
+
+/// The values of two sides with the same slots; nothing if both are the number 0.
+pub(super) fn sides<N: Number>(
+    left: &Expression,
+    right: &Expression,
+    point: &Point<N>,
+) -> Outcome<Option<(Value<N>, Value<N>)>> {
+    let side = |side: &Expression| if is_nothing(side) { Ok(None) } else { evaluate(side, point).map(Some) };
+    let (left, right) = match (side(left)?, side(right)?) {
+        (None, None) => return Ok(None),
+        (Some(left), None) => {
+            let zero = left.tensor.scaled(N::ZERO);
+            let slots = left.slots.clone();
+            (left, Value { tensor: zero, slots })
+        }
+        (None, Some(right)) => {
+            let zero = right.tensor.scaled(N::ZERO);
+            (Value { tensor: zero, slots: right.slots.clone() }, right)
+        }
+        (Some(left), Some(right)) => (left, right),
+    };
+    if left.slots != right.slots {
+        return Err(Trouble::Shape);
+    }
+    Ok(Some((left, right)))
 }
 
 /// Both sides at a point, to the order that is compared.

@@ -5,7 +5,6 @@
 //! (Schwartz 1980, Zippel 1979; from memory). The bound is generous: sums are brought over the product of all
 //! denominators, and each root multiplies the degree by its order, as the norm does.
 
-use super::Claim;
 use crate::evaluation::families::Families;
 use crate::evaluation::needs::Needs;
 use crate::expression::{Curvature, Expression, MetricValues, World};
@@ -65,8 +64,12 @@ struct Bounds<'a> {
 }
 
 /// A bound on the degree of the polynomial that vanishes where the two sides agree.
-pub(super) fn bound(claim: &Claim, needs: &Needs, families: &Families) -> u64 {
-    let Claim { left, right, world } = claim;
+pub(super) fn bound(
+    (left, right): (&Expression, &Expression),
+    world: &World,
+    needs: &Needs,
+    families: &Families,
+) -> u64 {
     let mut bounds = Bounds { world, families, definitions: Vec::new(), roots: 1 };
     for (definition, need) in world.definitions.iter().zip(&needs.definitions) {
         // What is not used is not known to be shallow.

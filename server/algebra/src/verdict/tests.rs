@@ -5,5 +5,6 @@
 
 mod build;
 mod failures;
+mod givens;
 mod hostile;
 mod identities;

@@ -13,6 +13,7 @@ use std::cell::Cell;
 use std::sync::Arc;
 
 use super::compare::{Difference, Dimension};
+use super::signature::negative_squares;
 use super::{Assignment, Counterexample, functions};
 use crate::evaluation::sampled::{MetricDraw, Place, Sampled};
 use crate::evaluation::{Meter, Point, ring_for};
@@ -62,8 +63,20 @@ impl Search<'_> {
         Sampled::draw(&claim.world, families, needs, &self.ring, seed, style).ok()
     }
 
+    /// Whether the metrics have the signatures that were declared.
+    fn has_signatures(&self, point: &Sampled<Exact>) -> bool {
+        point.metric_values().into_iter().all(|(number, values)| {
+            let metric = self.dimension.claim.world.metrics.get(number);
+            let rows = values.len().isqrt();
+            metric.is_some_and(|metric| negative_squares(rows, &values) == Some(metric.minus.min(rows)))
+        })
+    }
+
     /// Whether the sides differ at a point; false as well once there are no trials left.
     fn differs(&self, point: &Sampled<Exact>) -> bool {
+        if !self.has_signatures(point) {
+            return false;
+        }
         let Some(left) = self.trials.get().checked_sub(1) else { return false };
         self.trials.set(left);
         self.difference(point).is_some_and(|difference| difference.place.is_some())

@@ -161,6 +161,33 @@ fn a_commutator_of_the_wrong_sign() {
 }
 
 #[test]
+fn corrupted_identities_fail() {
+    let plain = space(&[2, 3], Vec::new());
+    let half = || ratio(1, 2);
+    // The signs of the terms of Christoffel's symbol.
+    let gradient = |slot, slots| d(slot, g(slots));
+    let bracket = sum([gradient("_j", "_mk"), gradient("_k", "_mj"), gradient("_m", "_jk")]);
+    fails(christoffel("^i_jk"), times([half(), g("^im"), bracket]), &plain);
+    // Two slots exchanged, a slot cycled the wrong way, a factor lost.
+    fails(riemann("_ijkl"), riemann("_jikl"), &plain);
+    fails(sum([riemann("^i_jkl"), riemann("^i_klj"), riemann("^i_jlk")]), Expression::zero(), &plain);
+    let divergence = nabla("_i", ricci("^i_j"));
+    let scalar = curvature(crate::expression::Curvature::Scalar, "");
+    fails(divergence, nabla("_j", scalar), &plain);
+    // Variations: the sign of that of the inverse, the half of that of the volume.
+    let mut varied = plain;
+    varied.parameters = vec!["s".to_owned()];
+    varied.metrics[0].varies = true;
+    fails(vary(g("^ij")), times([g("^ik"), g("^jl"), vary(g("_kl"))]), &varied);
+    let volume = || root(size(det_g()));
+    fails(vary(volume()), times([volume(), g("^ij"), vary(g("_ij"))]), &varied);
+    // Epsilon and delta.
+    let deltas = minus(times([delta(".jn"), delta(".km")]), times([delta(".jm"), delta(".kn")]));
+    let found = fails(times([epsilon(".ijk"), epsilon(".imn")]), deltas, &cartesian(&[3], Vec::new()));
+    assert!(found.assignments.is_empty());
+}
+
+#[test]
 fn simple_claims_have_simple_counterexamples() {
     let world = cartesian(&[2, 3], vec![named("A", "."), named("B", ".")]);
     let pair = |a, b| times([field(0, a), field(1, b)]);
@@ -186,6 +213,17 @@ fn a_determinant_to_first_order_has_one_term_of_it() {
     let found = fails(minus(changed, det(field(0, ".ij"), "ij")), twice, &world);
     let doubled = found.left.checked_mul(Rational::from_integer(2));
     assert_eq!(Some(found.right), doubled);
+}
+
+#[test]
+fn a_counterexample_has_the_signature_that_was_declared() {
+    let mut world = space(&[2, 3], Vec::new());
+    world.metrics[0].minus = 1;
+    // The sign of the determinant decides.
+    let found = fails(root(size(det_g())), det_g(), &world);
+    assert!(found.right < Rational::ZERO && found.left > Rational::ZERO, "{found:?}");
+    let found = fails(det_g(), int(1), &world);
+    assert!(found.left < Rational::ZERO, "{found:?}");
 }
 
 #[test]

@@ -9,19 +9,28 @@ use crate::verdict::{Claim, Limits, Reason, Verdict, judge};
 
 #[test]
 fn forty_factors_in_a_chain_are_contracted() {
+    let world = space(&[2, 3], vec![named("M", "^_"), named("N", "^_")]);
+    let letter = |place: u32| char::from_u32(u32::from('\u{3b1}') + place).unwrap();
+    let factor = |place: u32| field(place as usize % 2, &format!("^{}_{}", letter(place), letter(place + 1)));
+    let forth = Expression::Product((0..40).map(factor).collect());
+    let back = Expression::Product((0..40).rev().map(factor).collect());
+    holds(forth, back, &world);
+}
+
+#[test]
+fn the_same_dummies_serve_in_each_nested_product() {
     let world = space(&[2, 3, 4], vec![named("M", "^_"), named("N", "^_")]);
-    // The trace of M N M N .. is that of N M N M ..
-    let letter = |place: u16| char::from_u32(u32::from(b'i') + u32::from(place)).unwrap();
-    let chain = |first: usize| {
-        let factor = |place: u16| {
-            let slots = format!("^{}_{}", letter(place), letter((place + 1) % 18));
-            field((usize::from(place) + first) % 2, &slots)
-        };
-        Expression::Product((0..18).map(factor).collect())
-    };
-    // Dummies of one factor are its own: the same letters serve again.
-    let square = |first| Expression::Product(vec![chain(first), chain(first), chain(first)]);
-    holds(square(0), square(1), &world);
+    // The trace of M N M N is that of N M N M, and so are their cubes.
+    let chain =
+        |slots: [(usize, &str); 4]| Expression::Product(slots.map(|(number, slots)| field(number, slots)).into());
+    let forth = || chain([(0, "^i_j"), (1, "^j_k"), (0, "^k_l"), (1, "^l_i")]);
+    let back = || chain([(1, "^i_j"), (0, "^j_k"), (1, "^k_l"), (0, "^l_i")]);
+    holds(times([forth(), forth(), forth()]), times([back(), back(), back()]), &world);
+    // An outer index of the same name is another one.
+    let vector = |slots: &str| times([field(0, slots), field(1, "^j_j")]);
+    let outer = times([times([field(0, "^i_k"), field(1, "^k_j")]), vector("^k_i")]);
+    let plain = times([field(0, "^i_l"), field(1, "^l_j"), field(0, "^k_i"), field(1, "^m_m")]);
+    holds(outer, plain, &world);
 }
 
 #[test]
@@ -45,6 +54,14 @@ fn too_many_factors_too_high_derivatives_and_too_many_dimensions() {
 }
 
 #[test]
+fn a_dimension_that_is_too_large_is_left_out() {
+    let world = cartesian(&[2, 3, 40], vec![exchangeable("F", ".....", false)]);
+    let verdict = verdict(field(0, ".ijklm"), field(0, ".jiklm"), &world);
+    let Verdict::Holds { dimensions, undefined, .. } = verdict else { panic!("{verdict:?}") };
+    assert_eq!((dimensions, undefined), (vec![2, 3], Vec::new()));
+}
+
+#[test]
 fn the_eighth_derivative_in_two_dimensions_is_one() {
     let world = cartesian(&[2], vec![named("f", "")]);
     let eighth = |slots: [&str; 8]| slots.into_iter().fold(field(0, ""), |of, slot| d(slot, of));
@@ -57,6 +74,8 @@ fn deep_nesting_is_refused() {
     let world = cartesian(&[2], vec![named("f", "")]);
     let deep = (0..200).fold(field(0, ""), |of, _| size(of));
     assert_eq!(verdict(deep, int(1), &world), Verdict::Undecided(Reason::Budget(Budget::Depth)));
+    let within = (0..20).fold(field(0, ""), |of, _| over(times([sum([of, int(1)]), int(2)]), int(2)));
+    holds(within, sum([field(0, ""), int(20)]), &world);
 }
 
 #[test]
@@ -80,6 +99,32 @@ fn the_root_of_two_exists_modulo_one_prime() {
     let two = || root(int(2));
     holds(times([two(), two()]), int(2), &world);
     holds(root(int(8)), times([int(2), two()]), &world);
+}
+
+#[test]
+fn a_sum_of_squares_has_no_sign_here() {
+    let world = cartesian(&[2], vec![named("A", ".")]);
+    let square = || times([field(0, ".i"), field(0, ".i")]);
+    assert_eq!(verdict(size(square()), square(), &world), Verdict::Undecided(Reason::Signs));
+    holds(power(root(square()), 2, 1), square(), &world);
+    holds(root(times([square(), square()])), size(square()), &world);
+}
+
+#[test]
+fn signs_that_are_drawn_ask_for_many_draws() {
+    let world = cartesian(&[1], vec![named("f", ""), named("h", "")]);
+    let (f, h) = (|| field(0, ""), || field(1, ""));
+    // Right at every second point, at three of four, and everywhere.
+    for seed in 0..20 {
+        let claim = Claim { left: size(f()), right: f(), world: world.clone() };
+        assert!(matches!(judge(&claim, &Limits::seeded(seed)), Verdict::Fails(_)));
+        let product = times([minus(size(f()), f()), minus(size(h()), h())]);
+        let claim = Claim { left: product, right: int(0), world: world.clone() };
+        assert!(matches!(judge(&claim, &Limits::seeded(seed)), Verdict::Fails(_)));
+    }
+    let verdict = verdict(root(times([f(), f()])), size(f()), &world);
+    let Verdict::Holds { draws, error_bits, .. } = verdict else { panic!("{verdict:?}") };
+    assert_eq!((draws, error_bits), (50, 20));
 }
 
 #[test]

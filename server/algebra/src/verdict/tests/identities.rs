@@ -137,6 +137,21 @@ fn variations_of_the_metric() {
 }
 
 #[test]
+fn derivatives_along_a_curve() {
+    let mut fields = vec![named("f", ""), named("h", "")];
+    fields.iter_mut().for_each(|field| field.varies = true);
+    let mut world = cartesian(&[2], fields);
+    world.parameters = vec!["t".to_owned(), "s".to_owned()];
+    let along = |parameter, of| Expression::Vary { parameter, of: Box::new(of) };
+    let (f, h) = (|| field(0, ""), || field(1, ""));
+    let twice = |of: Expression| along(0, along(0, of));
+    let middle = times([int(2), along(0, f()), along(0, h())]);
+    holds(twice(times([f(), h()])), sum([times([twice(f()), h()]), middle, times([f(), twice(h())])]), &world);
+    holds(along(0, along(1, f())), along(1, along(0, f())), &world);
+    holds(along(0, d(".i", f())), d(".i", along(0, f())), &world);
+}
+
+#[test]
 fn epsilons_in_three_dimensions() {
     let world = cartesian(&[3], vec![named("A", ".."), named("v", ".")]);
     let product = |a, b| times([epsilon(a), epsilon(b)]);
@@ -196,6 +211,38 @@ fn the_volume_element_by_lapse_and_shift() {
     holds(left, right, &world);
     let shift = over(field(1, "^A"), times([field(0, ""), field(0, "")]));
     holds(Expression::Metric { metric: 0, slots: ix("^0A").try_into().unwrap() }, shift, &world);
+}
+
+#[test]
+fn components_and_parts_of_covariant_derivatives() {
+    let mut world = lapse_and_shift(&[2, 3]);
+    world.fields.push(named("V", "^"));
+    world.fields.push(exchangeable("F", "__", true));
+    let (v, f) = (|slot| field(2, slot), |slots| field(3, slots));
+    let connected = |slots| times([christoffel(slots), v("^j")]);
+    holds(nabla("_0", v("^0")), sum([d("_0", v("^0")), connected("^0_0j")]), &world);
+    holds(nabla("_A", v("^0")), sum([d("_A", v("^0")), connected("^0_Aj")]), &world);
+    holds(nabla("_A", v("^B")), sum([d("_A", v("^B")), connected("^B_Aj")]), &world);
+    // A sum over all members is one over the first and one over the others.
+    let split = sum([times([v("^0"), v("_0")]), times([v("^A"), v("_A")])]);
+    holds(times([v("^i"), v("_i")]), split, &world);
+    holds(f("_0A"), f("_A0").negated(), &world);
+    // The metric of space has a connection of its own.
+    let of_space = |slot: &str, of| Expression::Covariant { metric: 1, index: one(slot), of: Box::new(of) };
+    let gamma = Expression::Metric { metric: 1, slots: ix("_AB").try_into().unwrap() };
+    holds(of_space("_C", gamma), Expression::zero(), &world);
+}
+
+#[test]
+fn definitions_by_components_are_one_tensor() {
+    let mut world = space(&[2, 3], vec![named("f", ""), named("w", "^")]);
+    world.families.push(Family { size: Size::Dimension(1), coordinates: Some(1), metric: None });
+    world.definitions =
+        vec![definition("u", "^0", field(0, "")), definition("u", "^A", times([field(0, ""), field(1, "^A")]))];
+    let u = |slot| defined(0, slot);
+    holds(u("^0"), field(0, ""), &world);
+    let divergence = sum([d("_0", field(0, "")), d("_A", times([field(0, ""), field(1, "^A")]))]);
+    holds(d("_i", u("^i")), divergence, &world);
 }
 
 #[track_caller]
