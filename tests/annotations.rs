@@ -210,6 +210,7 @@ mod tests {
             related: Vec::new(),
             fixes: Vec::new(),
             ledger: None,
+            verdict: None,
         }
     }
 

@@ -249,6 +249,7 @@ mod tests {
             related: Vec::new(),
             fixes: Vec::new(),
             ledger: None,
+            verdict: None,
         }
     }
 

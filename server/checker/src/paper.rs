@@ -204,6 +204,8 @@ pub fn check(paper: &Paper, settings: &Settings, cancel: &Cancel) -> Analysis {
     let sketched: Vec<Sketched<'_>> = read.iter().map(Sketched::of).collect();
     let evidence = gather(&sketched, cancel);
     let all = total(&evidence);
+    let formulas = read.iter().flat_map(|one| &one.document.formulas);
+    let labels = formulas.flat_map(|formula| formula.labels.iter().map(|(label, _)| label.clone())).collect();
     let documents = sketched.iter().zip(&evidence).enumerate().map(|(number, (document, own))| {
         if cancel.is_cancelled() {
             return DocumentAnalysis::default();
@@ -213,7 +215,7 @@ pub fn check(paper: &Paper, settings: &Settings, cancel: &Cancel) -> Analysis {
         let begin = document.read.text.find("\\begin{document}");
         let troubles = paper.troubles.iter().filter(|trouble| trouble.document == number);
         let missing = troubles.map(|trouble| missing_part(trouble, begin)).collect();
-        let mut analysis = judge_document(document, prices, settings, missing);
+        let mut analysis = judge_document(document, prices, settings, missing, &labels);
         settings.settle(&mut analysis.findings);
         analysis.findings.sort_by(|a, b| (a.span, a.rule, &a.message).cmp(&(b.span, b.rule, &b.message)));
         analysis

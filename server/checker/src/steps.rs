@@ -11,5 +11,5 @@ mod world;
 
 pub use claims::{Asked, Step, steps_of};
 pub use lowering::{Lowering, Reach};
-pub use report::StepJudge;
+pub use report::{LabelledGiven, StepJudge};
 pub use world::Surroundings;

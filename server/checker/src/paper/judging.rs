@@ -2,7 +2,8 @@
 
 use std::borrow::Cow;
 
-use indexwise_grammar::conventions::Sentence;
+use compact_str::CompactString;
+use indexwise_grammar::conventions::{Name, Sentence};
 use indexwise_grammar::hosts::Host;
 use indexwise_grammar::read_region;
 use indexwise_grammar::span::Span;
@@ -37,14 +38,20 @@ struct Judge<'d> {
     /// Whether every chain is a claim, and formulas that the author asks for by themselves.
     chains: bool,
     asked: FxHashSet<usize>,
+    /// Labels that are taken as given for a formula.
+    using: Vec<(usize, Name)>,
+    /// The labels of all formulas of the paper.
+    labels: &'d FxHashSet<CompactString>,
+    scores: Vec<i32>,
 }
 
 /// Judges a document; `missing` are findings about parts that could not be had.
-pub(super) fn judge_document(
-    document: &Sketched<'_>,
-    prices: Prices<'_>,
+pub(super) fn judge_document<'d>(
+    document: &'d Sketched<'d>,
+    prices: Prices<'d>,
     settings: &Settings,
     missing: Vec<Finding>,
+    labels: &'d FxHashSet<CompactString>,
 ) -> DocumentAnalysis {
     let formulas = &document.read.document.formulas;
     let mut judge = Judge {
@@ -58,11 +65,14 @@ pub(super) fn judge_document(
         steps: None,
         chains: false,
         asked: FxHashSet::default(),
+        using: Vec::new(),
+        labels,
+        scores: document.scores(&prices),
     };
     judge.prepare_steps(settings.steps);
-    let scores = document.scores(&prices);
     for statement in &document.statements {
-        judge.statement(statement, statement.read(&scores));
+        let reading = statement.read(&judge.scores);
+        judge.statement(statement, reading);
     }
     if prices.declared.meanings.has_numbered_ranges() || settings.symbols {
         judge.statements_without_letters();
@@ -70,6 +80,7 @@ pub(super) fn judge_document(
     for (number, formula) in formulas.iter().enumerate().filter(|_| settings.reports_unread()) {
         judge.findings.extend(formula.unread.iter().map(|part| (number, rules::unread(part))));
     }
+    let unknown = judge.unknown_labels();
     let Judge { indexed, findings, symbols, steps, customs, .. } = judge;
     let statistics = Statistics {
         formulas: formulas.len(),
@@ -79,6 +90,8 @@ pub(super) fn judge_document(
         steps: steps.map(|steps| steps.counts).unwrap_or_default(),
     };
     let read = document.read;
+    let mut missing = missing;
+    missing.extend(unknown);
     let findings = directed(&read.declared, read.host, formulas, findings, missing);
     let symbols = symbols.map(|symbols| symbols.finish(&prices.declared.meanings, customs));
     DocumentAnalysis { statistics, findings, symbols }
@@ -89,8 +102,14 @@ impl<'d> Judge<'d> {
     fn prepare_steps(&mut self, mode: StepMode) {
         let read = self.document.read;
         let declared = &read.declared;
-        let checks = declared.sentences.iter().filter(|(sentence, _)| matches!(sentence, Sentence::Check { .. }));
-        self.asked = checks.filter_map(|(_, span)| target(*span, &read.document.formulas)).collect();
+        for (sentence, span) in &declared.sentences {
+            if let Sentence::Check { using } = sentence
+                && let Some(formula) = target(*span, &read.document.formulas)
+            {
+                self.asked.insert(formula);
+                self.using.extend(using.iter().map(|name| (formula, name.clone())));
+            }
+        }
         self.chains = match mode {
             StepMode::Off => return self.asked.clear(),
             StepMode::All => true,
@@ -110,11 +129,44 @@ impl<'d> Judge<'d> {
             (false, false) => Asked::Nothing,
         };
         let eyes = Eyes::new(&judged.sketch, &judged.reading.choice, &self.prices, self.customs);
-        let passed_over = judged.formula.passed_over;
+        if judged.formula.passed_over {
+            return;
+        }
+        let mut givens = Vec::new();
+        let labels: Vec<&Name> =
+            self.using.iter().filter(|(formula, _)| *formula == number).map(|(_, name)| name).collect();
+        // A label that is not there is a finding of its own; without it nothing can be said of the step.
+        if labels.iter().any(|name| !self.labels.contains(&name.text)) {
+            return;
+        }
+        for name in labels {
+            let places = self.document.statements.iter().filter(|other| {
+                let formula = self.document.read.document.formulas.get(other.formula);
+                formula.is_some_and(|formula| formula.labels.iter().any(|(label, _)| *label == name.text))
+            });
+            for place in places {
+                let reading = place.read(&self.scores);
+                let own = Eyes::new(place.sketch, &reading.choice, &self.prices, self.customs);
+                givens.extend(self.trees.statement(
+                    self.document.read,
+                    place.formula,
+                    place.sketch.span,
+                    |statement| steps.given(&name.text, statement, &own),
+                ));
+            }
+        }
         let found = self.trees.statement(self.document.read, number, judged.sketch.span, |statement| {
-            if passed_over { Vec::new() } else { steps.statement(statement, judged.text, &eyes, asked) }
+            steps.statement(statement, judged.text, &eyes, asked, &givens)
         });
         self.findings.extend(found.into_iter().map(|finding| (number, finding)));
+    }
+
+    /// Labels that a directive names and no formula of the paper has.
+    fn unknown_labels(&self) -> Vec<Finding> {
+        let unknown = self.using.iter().filter(|(_, name)| !self.labels.contains(&name.text));
+        unknown
+            .map(|(_, name)| rules::unknown_label(name.span, format!("no formula has the label {}", name.text)))
+            .collect()
     }
 
     fn statement(&mut self, statement: &Statement<'_>, mut reading: Reading) {

@@ -80,6 +80,24 @@ pub fn steps_of(
     steps
 }
 
+/// Every equality of a statement, with derivatives that reach the next factor; those that cannot be lowered are left out.
+pub fn relations_of(
+    statement: &Statement,
+    eyes: &Eyes<'_>,
+    surroundings: &mut Surroundings<'_>,
+) -> Vec<(Expression, Expression)> {
+    let mut out = Vec::new();
+    for (number, relation) in statement.relations.iter().enumerate() {
+        let (Some(left), Some(right)) = (statement.sides.get(number), statement.sides.get(number + 1)) else {
+            continue;
+        };
+        if relation.claim() == Claim::Equality {
+            out.extend(pair(&mut Lowering::new(surroundings, eyes, Reach::Near), left, right));
+        }
+    }
+    out
+}
+
 /// Both sides, in each way in which derivatives may reach.
 fn lower(step: &mut Step, left: &Sum, right: &Sum, eyes: &Eyes<'_>, surroundings: &mut Surroundings<'_>) {
     let mut near = Lowering::new(surroundings, eyes, Reach::Near);

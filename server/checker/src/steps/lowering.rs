@@ -132,6 +132,11 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
             if is_derivative(&made.letter) {
                 return self.derivative(factor, &made, rest);
             }
+            if matches!(made.kernel.as_str(), "\\Box" | "\\square") && factor.scripts.is_empty() {
+                let (of, taken) = self.acted_on(rest)?;
+                let family = self.surroundings.family("\\mu", false);
+                return Ok((self.twice_covariant(family, of), taken + 1));
+            }
             if self.is_variation(&made, rest) {
                 let parameter = self.surroundings.parameter(&made.kernel);
                 let (of, taken) = self.one(rest)?;
@@ -148,6 +153,14 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
                 acted => (self.product(acted)?, 0),
             };
             return Ok((wrapped(operators, of), taken + 1));
+        }
+        if let Atom::Group(group) = &factor.atom
+            && matches!(group.bracket, Bracket::Square | Bracket::Pair)
+            && group.parts.len() == 2
+            && factor.scripts.is_empty()
+        {
+            let (value, taken) = self.commutator(group, rest)?;
+            return Ok((value, taken + 1));
         }
         if let Atom::Function(name) = &factor.atom {
             let (value, taken) = self.call(name, factor, rest)?;
@@ -221,24 +234,33 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
         let letter = made.slots.first().and_then(UsedSlot::letter).cloned();
         let cartesian = letter.as_ref().is_none_or(|letter| self.eyes.is_cartesian(letter)) && !self.has_metric();
         let family = self.surroundings.family(letter.as_deref().unwrap_or("i"), cartesian);
+        let flat = made.letter == "\\partial" || cartesian;
+        if !flat {
+            return Ok((self.twice_covariant(family, of), taken + 1));
+        }
         let (one, two) = (self.fresh(), self.fresh());
         let level = if cartesian { Level::Inert } else { Level::Down };
-        let index = |label| Index { filling: Filling::Label(label), level, family };
-        let flat = made.letter == "\\partial" || cartesian;
-        let operator = |lowering: &mut Self, index: Index| match flat {
-            true => Operator::Partial(index),
-            false => Operator::Covariant(lowering.surroundings.metric_of(family), index),
-        };
-        let inner = operator(self, index(two));
-        let outer = operator(self, index(if cartesian { two } else { one }));
-        let twice = wrapped(vec![outer, inner], of);
+        let index = |label| Operator::Partial(Index { filling: Filling::Label(label), level, family });
         if cartesian {
-            return Ok((twice, taken + 1));
+            return Ok((wrapped(vec![index(two), index(two)], of), taken + 1));
         }
+        let twice = wrapped(vec![index(one), index(two)], of);
+        Ok((Expression::Product(vec![self.inverse_metric(family, one, two), twice]), taken + 1))
+    }
+
+    /// `g^{ab} \nabla_a \nabla_b` of something.
+    fn twice_covariant(&mut self, family: usize, of: Expression) -> Expression {
+        let (one, two) = (self.fresh(), self.fresh());
+        let metric = self.surroundings.metric_of(family);
+        let index = |label| Index { filling: Filling::Label(label), level: Level::Down, family };
+        let operators = vec![Operator::Covariant(metric, index(one)), Operator::Covariant(metric, index(two))];
+        Expression::Product(vec![self.inverse_metric(family, one, two), wrapped(operators, of)])
+    }
+
+    fn inverse_metric(&mut self, family: usize, one: u16, two: u16) -> Expression {
         let metric = self.surroundings.metric_of(family);
         let up = |label| Index { filling: Filling::Label(label), level: Level::Up, family };
-        let inverse = Expression::Metric { metric, slots: [up(one), up(two)] };
-        Ok((Expression::Product(vec![inverse, twice]), taken + 1))
+        Expression::Metric { metric, slots: [up(one), up(two)] }
     }
 
     /// Whether the document has a metric that is declared and not constant.
@@ -247,10 +269,7 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
     }
 
     /// The derivatives that a fraction stands for, outermost first, and what it holds above the line to act on.
-    fn derivative_fraction<'t>(
-        &mut self,
-        fraction: &'t Fraction,
-    ) -> Result<Option<(Vec<Operator>, &'t [Factor])>, Refusal> {
+    fn derivative_fraction<'t>(&mut self, fraction: &'t Fraction) -> Result<Option<Operated<'t>>, Refusal> {
         let spelled = match fraction.kind {
             FractionKind::Quotient => true,
             FractionKind::Derivative("\\pdv") => false,
@@ -325,11 +344,11 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
         match scripts::power(factor)? {
             None if factor.scripts.is_empty() => Ok(value),
             None => Err("indices stand on a bracket".to_owned()),
-            Some(power) => self.to_power(value, power),
+            Some(power) => self.powered_by(value, power),
         }
     }
 
-    fn to_power(&mut self, value: Expression, power: Rational) -> Lowered {
+    fn powered_by(&mut self, value: Expression, power: Rational) -> Lowered {
         if power == Rational::from_integer(2) && scripts::has_free_labels(&value) {
             return Err("the square of something with indices".to_owned());
         }
@@ -337,9 +356,6 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
     }
 
     fn group(&mut self, group: &Group) -> Lowered {
-        if let (Bracket::Square | Bracket::Pair, [one, two]) = (group.bracket, group.parts.as_slice()) {
-            return self.commutator(one, two);
-        }
         let [part] = group.parts.as_slice() else { return Err("a list stands in it".to_owned()) };
         let [sum] = part.sides.as_slice() else { return Err("a relation stands in brackets".to_owned()) };
         match group.bracket {
@@ -349,8 +365,32 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
         }
     }
 
-    fn commutator(&mut self, _one: &tree::Statement, _two: &tree::Statement) -> Lowered {
-        Err("a commutator of operators".to_owned())
+    /// `[\nabla_a, \nabla_b] V^c`: both orders, on what stands after it.
+    fn commutator(&mut self, group: &Group, rest: &[Factor]) -> Result<(Expression, usize), Refusal> {
+        let operators = |part: &tree::Statement| match part.sides.as_slice() {
+            [side] if side.terms.len() == 1 => side.terms.first().map(|term| term.factors.clone()),
+            _ => None,
+        };
+        let derivative =
+            |factor: &Factor| matches!(&factor.atom, Atom::Kernel(kernel) if is_derivative(&kernel.letter));
+        let (one, two) = match group.parts.as_slice() {
+            [one, two] => (operators(one), operators(two)),
+            _ => (None, None),
+        };
+        let (Some(one), Some(two)) = (one, two) else { return Err("a commutator".to_owned()) };
+        if !one.iter().chain(&two).all(derivative) || rest.is_empty() {
+            return Err("a commutator of what are no derivatives".to_owned());
+        }
+        let mut both = Vec::new();
+        for (first, second) in [(&one, &two), (&two, &one)] {
+            let all: Vec<Factor> = first.iter().chain(second).chain(rest).cloned().collect();
+            both.push(self.one(&all)?);
+        }
+        let taken = both.first().map_or(0, |(_, taken)| taken.saturating_sub(one.len() + two.len()));
+        let mut values = both.into_iter().map(|(value, _)| value);
+        let (first, second) =
+            (values.next().unwrap_or_else(Expression::zero), values.next().unwrap_or_else(Expression::zero));
+        Ok((Expression::Sum(vec![first, second.negated()]), taken))
     }
 
     /// A product with brackets over the slots of several factors: the mean over all permutations.
@@ -398,6 +438,9 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
         self.label(&name)
     }
 }
+
+/// The derivatives that a fraction stands for, and the factors above its line that they act on.
+type Operated<'t> = (Vec<Operator>, &'t [Factor]);
 
 /// A derivative before something.
 #[derive(Clone, Copy, Debug)]

@@ -5,9 +5,10 @@
 //! error says that a proof is attached; whatever rests on a kernel of unknown meaning is a hint that names it.
 
 use std::hash::{Hash, Hasher};
+use std::time::{Duration, Instant};
 
-use indexwise_algebra::expression::{Expression, Filling, Size, World};
-use indexwise_algebra::verdict::{self, Claim, Limits, Reason, Unshown, Verdict};
+use indexwise_algebra::expression::{Expression, Filling, Given, Size, World};
+use indexwise_algebra::verdict::{self, Claim, Limits, Unshown, Verdict};
 use indexwise_grammar::span::Span;
 use indexwise_grammar::tree::Statement;
 use rustc_hash::{FxHashMap, FxHasher};
@@ -19,13 +20,16 @@ use crate::paper::Steps;
 use crate::rules;
 use crate::terms::Eyes;
 
-use super::claims::{Asked, Step, steps_of};
+use super::claims::{Asked, Step, relations_of, steps_of};
 use super::world::Surroundings;
 
-/// Multiplications for the verdict of one step, and for all of one document.
-const STEP_WORK: u64 = 400_000_000;
+/// Multiplications for the verdict of one step: about a second.
+const STEP_WORK: u64 = 100_000_000;
 /// Steps of one document that are judged.
 const STEPS: usize = 2_000;
+/// Time for the steps of one document. Beyond it the rest is undecided, and says so; it is the one thing in a report
+/// that a slow machine can change.
+const DOCUMENT_TIME: Duration = Duration::from_secs(60);
 /// The largest dimension that is tried because so many indices are antisymmetrised.
 const LARGEST_DIMENSION: usize = 6;
 
@@ -36,23 +40,51 @@ pub struct StepJudge<'m> {
     /// The verdicts so far.
     pub counts: Steps,
     left: usize,
+    begun: Option<Instant>,
 }
+
+/// Something given, in the world of its document.
+#[derive(Clone, Debug)]
+pub struct LabelledGiven(Given);
 
 impl<'m> StepJudge<'m> {
     /// For a document with these declarations.
     pub fn new(meanings: &'m Meanings) -> Self {
         let surroundings = Surroundings::new(meanings);
-        Self { surroundings, known: FxHashMap::default(), counts: Steps::default(), left: STEPS }
+        Self { surroundings, known: FxHashMap::default(), counts: Steps::default(), left: STEPS, begun: None }
     }
 
-    /// Takes a statement: its definitions, and the findings about its claims.
-    pub fn statement(&mut self, statement: &Statement, text: &str, eyes: &Eyes<'_>, asked: Asked) -> Vec<Finding> {
+    /// Takes a statement: its definitions, and the findings about its claims. `givens` are statements that are taken as
+    /// given, by their labels, each with the eyes of its reading.
+    pub fn statement(
+        &mut self,
+        statement: &Statement,
+        text: &str,
+        eyes: &Eyes<'_>,
+        asked: Asked,
+        givens: &[LabelledGiven],
+    ) -> Vec<Finding> {
+        self.surroundings.world.givens = givens.iter().map(|given| given.0.clone()).collect();
         let steps = steps_of(statement, eyes, &mut self.surroundings, asked);
-        steps.iter().filter_map(|step| self.step(step, text)).collect()
+        let found = steps.iter().filter_map(|step| self.step(step, text)).collect();
+        self.surroundings.world.givens.clear();
+        found
+    }
+
+    /// A statement as something given: each of its relations.
+    pub fn given(&mut self, label: &str, statement: &Statement, eyes: &Eyes<'_>) -> Vec<LabelledGiven> {
+        let claims = relations_of(statement, eyes, &mut self.surroundings);
+        let given = |(left, right)| LabelledGiven(Given { label: label.to_owned(), left, right: Some(right) });
+        claims.into_iter().map(given).collect()
     }
 
     fn step(&mut self, step: &Step, text: &str) -> Option<Finding> {
-        self.left = self.left.checked_sub(1)?;
+        let begun = *self.begun.get_or_insert_with(Instant::now);
+        let late = begun.elapsed() > DOCUMENT_TIME;
+        self.left = self.left.saturating_sub(1);
+        if late || self.left == 0 {
+            return Some(self.undecided(step, "the work for the steps of one document is used up"));
+        }
         let claims = match &step.claims {
             Ok(claims) => claims,
             Err(reason) => return Some(self.undecided(step, &format!("{reason} has no value here"))),
@@ -74,15 +106,20 @@ impl<'m> StepJudge<'m> {
     fn judged(&mut self, step: &Step, text: &str, left: &Expression, right: &Expression) -> Verdict {
         let seed = seed(step, text);
         let key = seed ^ (self.surroundings.world.definitions.len() as u64).rotate_left(32);
-        if let Some(known) = self.known.get(&key).filter(|_| step.claims.as_ref().is_ok_and(|claims| claims.len() == 1))
-        {
+        let alone =
+            step.claims.as_ref().is_ok_and(|claims| claims.len() == 1) && self.surroundings.world.givens.is_empty();
+        if let Some(known) = self.known.get(&key).filter(|_| alone) {
             return known.clone();
         }
         let mut world = self.surroundings.world.clone();
         world.dimensions = dimensions(&world, &[left, right], step.antisymmetrised);
-        let limits = Limits { total: STEP_WORK, ..Limits::seeded(seed) };
+        let begun = self.begun;
+        let stop = || begun.is_some_and(|begun| begun.elapsed() > DOCUMENT_TIME);
+        let limits = Limits { total: STEP_WORK, stop: Some(&stop), ..Limits::seeded(seed) };
         let verdict = verdict::judge(&Claim { left: left.clone(), right: right.clone(), world }, &limits);
-        self.known.insert(key, verdict.clone());
+        if alone {
+            self.known.insert(key, verdict.clone());
+        }
         verdict
     }
 
@@ -131,7 +168,7 @@ impl<'m> StepJudge<'m> {
                 );
                 Some(told(rules::step_needs_dimension(step.sign, message), step, &view))
             }
-            Verdict::Undecided(reason) => Some(self.undecided(step, &because(reason))),
+            Verdict::Undecided(reason) => Some(self.undecided(step, &reason.to_string())),
         }
     }
 
@@ -269,20 +306,6 @@ fn slots_of(expression: &Expression) -> Vec<indexwise_algebra::expression::Index
         _ => Vec::new(),
     };
     slots.into_iter().filter(|index| matches!(index.filling, Filling::Label(_) | Filling::Member(_))).collect()
-}
-
-fn because(reason: &Reason) -> String {
-    match reason {
-        Reason::NoDimension => "no dimension could be tried".to_owned(),
-        Reason::Undefined => "a denominator is 0, or a radicand never has a root".to_owned(),
-        Reason::Budget(_) => "it would take more work than one step may".to_owned(),
-        Reason::Stopped => "the check was ended".to_owned(),
-        Reason::Function => "a function in it has no exact value here".to_owned(),
-        Reason::Functions => "relations between the functions in it are not known here".to_owned(),
-        Reason::Shape => "its terms do not fit together".to_owned(),
-        Reason::Given(label) => format!("({label}) is of a kind that cannot be used"),
-        Reason::GivenUnmet(label) => format!("nothing was found that obeys ({label})"),
-    }
 }
 
 fn in_words(component: &[(String, String)]) -> String {

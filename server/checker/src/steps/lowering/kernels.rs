@@ -56,7 +56,7 @@ impl Lowering<'_, '_, '_> {
         if made.power {
             let power =
                 scripts::power(factor)?.ok_or_else(|| format!("a power of {} is not understood", made.kernel))?;
-            of = self.to_power(of, power)?;
+            of = self.powered_by(of, power)?;
         }
         Ok((of, arguments))
     }
