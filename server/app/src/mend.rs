@@ -365,6 +365,7 @@ mod tests {
                 related: Vec::new(),
                 fixes: vec![Fix { title: format!("Write {mend}"), edits, bulk: *bulk }],
                 ledger: Some(Ledger { statement: Span::new(from, to), rows: Vec::new() }),
+                verdict: None,
             }
         };
         text.match_indices(word).map(finding).collect()

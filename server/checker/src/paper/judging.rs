@@ -35,8 +35,10 @@ struct Judge<'d> {
     symbols: Option<Gatherer>,
     /// Judges steps, if any is asked for in the document.
     steps: Option<StepJudge<'d>>,
-    /// Whether every chain is a claim, and formulas that the author asks for by themselves.
+    /// Whether every chain is a claim, and whether nobody has asked for it.
     chains: bool,
+    quietly: bool,
+    /// Formulas that the author asks for by themselves.
     asked: FxHashSet<usize>,
     /// Labels that are taken as given for a formula.
     using: Vec<(usize, Name)>,
@@ -64,6 +66,7 @@ pub(super) fn judge_document<'d>(
         symbols: settings.symbols.then(Gatherer::default),
         steps: None,
         chains: false,
+        quietly: false,
         asked: FxHashSet::default(),
         using: Vec::new(),
         labels,
@@ -110,10 +113,12 @@ impl<'d> Judge<'d> {
                 self.using.extend(using.iter().map(|name| (formula, name.clone())));
             }
         }
+        let said = declared.meanings.derivations_are_checked;
+        self.quietly = mode == StepMode::Asked && !said;
         self.chains = match mode {
             StepMode::Off => return self.asked.clear(),
             StepMode::All => true,
-            StepMode::Asked => read.host == Host::Note || declared.meanings.derivations_are_checked,
+            StepMode::Asked => read.host == Host::Note || said,
         };
         if self.chains || !self.asked.is_empty() {
             self.steps = Some(StepJudge::new(&self.prices.declared.meanings));
@@ -125,6 +130,7 @@ impl<'d> Judge<'d> {
         let Some(steps) = &mut self.steps else { return };
         let asked = match (self.asked.contains(&number), self.chains) {
             (true, _) => Asked::All,
+            (false, true) if self.quietly => Asked::Quietly,
             (false, true) => Asked::Chains,
             (false, false) => Asked::Nothing,
         };

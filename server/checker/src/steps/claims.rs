@@ -21,6 +21,8 @@ use super::world::Surroundings;
 pub enum Asked {
     /// Only its definitions are taken.
     Nothing,
+    /// Every claim of a chain, as in every note; what is not shown is counted and not told.
+    Quietly,
     /// Every claim of a chain.
     Chains,
     /// Every relation: the author asks for this formula.

@@ -14,7 +14,7 @@ use indexwise_grammar::tree::Statement;
 use rustc_hash::{FxHashMap, FxHasher};
 
 use crate::conventions::meanings::Meanings;
-use crate::finding::{Counterexample, Finding, Related, StepVerdict};
+use crate::finding::{Counterexample, Finding, Related, Severity, StepVerdict};
 use crate::ledger::shown;
 use crate::paper::Steps;
 use crate::rules;
@@ -66,7 +66,9 @@ impl<'m> StepJudge<'m> {
     ) -> Vec<Finding> {
         self.surroundings.world.givens = givens.iter().map(|given| given.0.clone()).collect();
         let steps = steps_of(statement, eyes, &mut self.surroundings, asked);
-        let found = steps.iter().filter_map(|step| self.step(step, text)).collect();
+        let mut found: Vec<Finding> = steps.iter().filter_map(|step| self.step(step, text)).collect();
+        // In a note nobody has asked; an ordinary page is no derivation.
+        found.retain(|finding| asked != Asked::Quietly || finding.severity != Severity::Hint);
         self.surroundings.world.givens.clear();
         found
     }

@@ -207,6 +207,13 @@ impl Lowering<'_, '_, '_> {
             .map(|one| SlotSymmetry { slots: one.images, negative: one.negative })
             .collect();
         let field = self.surroundings.field(&made.kernel, &natural, symmetries);
+        // On another level than its own an index is moved by the metric of its family.
+        let own = self.surroundings.world.fields.get(field).map(|field| field.slots.clone()).unwrap_or_default();
+        for ((family, level), (_, own)) in natural.iter().zip(&own) {
+            if level != own {
+                self.surroundings.metric_of(*family);
+            }
+        }
         Ok(Expression::Field { field, slots })
     }
 
