@@ -17,6 +17,7 @@
 //! - `substitute` with inner jets that have constant terms is right for polynomials, not for truncated series.
 
 mod levels;
+mod order;
 mod ring;
 pub mod series;
 

@@ -8,8 +8,7 @@ use std::collections::{BTreeMap, HashMap};
 use std::path::PathBuf;
 use std::sync::{Mutex, MutexGuard, PoisonError};
 
-use indexwise_checker::conventions::declared;
-use indexwise_checker::paper::{Analysis, DocumentAnalysis, Settings, Statistics};
+use indexwise_checker::paper::{Analysis, DocumentAnalysis, Settings, Statistics, problems};
 use rayon::prelude::*;
 use rayon::{ThreadPool, ThreadPoolBuilder};
 
@@ -221,7 +220,7 @@ fn checked(loaded: &Loaded, analysis: &Analysis, file: &Listed) -> Result<Checke
 /// papers that share them.
 pub fn configurations(scopes: &Scopes, settings: &Settings) -> Vec<FileReport> {
     let reports = scopes.with_conventions().iter().map(|configuration| {
-        let mut findings = declared::problems(&configuration.conventions);
+        let mut findings = problems(&configuration.conventions);
         Settings { levels: configuration.levels.clone(), ..settings.clone() }.settle(&mut findings);
         let (path, text) = (configuration.conventions.path.clone(), configuration.text.clone());
         FileReport { path, host: None, statistics: Statistics::default(), findings, symbols: None, text }

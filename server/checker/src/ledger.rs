@@ -9,7 +9,7 @@ use indexwise_grammar::span::Span;
 use indexwise_grammar::tree::Formula;
 
 use crate::balance::{self, Choice, Event, term_state};
-use crate::conventions::built_in::bare_letter;
+pub use crate::conventions::built_in::shown;
 use crate::conventions::inferred::Prices;
 use crate::finding::{Ledger, LedgerIndex, LedgerRow};
 use crate::reading::Reading;
@@ -159,14 +159,5 @@ pub fn side_title(sides: usize, side: usize) -> String {
         (2, 0) => "left side".to_owned(),
         (2, _) => "right side".to_owned(),
         _ => format!("side {}", side + 1),
-    }
-}
-
-/// A letter as people read it: `μ` for `\mu`, `μ'` for `\mu'`.
-pub fn shown(letter: &str) -> String {
-    let bare = bare_letter(letter);
-    match indexwise_grammar::unicode_sign(bare) {
-        Some(sign) => letter.replace(bare, sign),
-        None => letter.to_owned(),
     }
 }

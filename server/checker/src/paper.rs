@@ -4,6 +4,7 @@ mod asking;
 mod directed;
 mod implying;
 mod judging;
+mod sentences;
 #[cfg(test)]
 mod tests;
 
@@ -17,6 +18,7 @@ use indexwise_grammar::{Document, macros_of, read_each};
 use rustc_hash::FxHashMap;
 
 use crate::conventions::declared::Declared;
+pub use crate::conventions::declared::SharedConventions;
 use crate::conventions::inferred::{Evidence, Prices};
 use crate::conventions::meanings::Meanings;
 use crate::finding::{Finding, Severity};
@@ -28,6 +30,7 @@ pub(crate) use asking::{Asked, Unasked, statement_at};
 use directed::skipped;
 pub use implying::Implications;
 use judging::{judge_document, missing_part};
+pub use sentences::problems;
 
 /// One text of a paper.
 #[derive(Clone, Debug)]
@@ -64,18 +67,6 @@ pub struct Paper {
     pub troubles: Vec<Trouble>,
     /// Conventions that stand outside the paper, the outer scope first, so that a later one is nearer.
     pub shared: Vec<SharedConventions>,
-}
-
-/// Conventions that several papers share: those of a configuration file.
-#[derive(Clone, Debug, Default, PartialEq, Eq)]
-pub struct SharedConventions {
-    /// The path of the file as it is shown to people.
-    pub path: String,
-    /// The text of the file without a byte-order mark.
-    pub text: Arc<str>,
-    /// The sentences in order. A span lies on `text`; it covers the sentence to the letter unless the file writes it
-    /// with escapes: then it covers what holds them all, and `span.of(text)` differs from the sentence.
-    pub sentences: Vec<(String, Span)>,
 }
 
 /// What the caller wants.

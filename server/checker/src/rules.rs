@@ -46,7 +46,7 @@ use crate::sketch::Sketch;
 use crate::terms::Flattened;
 
 pub(crate) use convention_clash::convention_clash;
-pub(crate) use convention_unreadable::{convention_unreadable, convention_unreadable_name};
+pub(crate) use convention_unreadable::{convention_unreadable, unknown_name};
 pub(crate) use idle_allow::idle_allow;
 pub(crate) use missing_part::missing_part;
 pub(crate) use step_fails::step_fails;

@@ -3,7 +3,7 @@
 
 use std::collections::BTreeMap;
 
-use super::ring::{Order, Variable};
+use super::order::{Order, Variable};
 
 /// Exponents of the base variables, then of the small ones.
 pub(super) type Monomial = Vec<u8>;

@@ -11,6 +11,7 @@
 use std::sync::Arc;
 
 use super::levels::{Level, Monomial, Pair, Tables, order_of};
+pub use super::order::{Order, Variable};
 use crate::trouble::{Budget, Outcome, Trouble};
 
 /// The most monomials of a ring. Four variables to order 8 have 495; products are then 12 870 pairs.
@@ -21,54 +22,6 @@ const DEGREE_BUDGET: usize = u8::MAX as usize;
 
 /// The most variables of a ring, base and small ones together.
 pub const VARIABLES_BUDGET: usize = 64;
-
-/// Up to which degrees a jet is known, inclusive: in the base variables together, in the small ones together.
-#[derive(Clone, Copy, Debug, Default, PartialEq, Eq, Hash)]
-pub struct Order {
-    /// In the base variables.
-    pub base: usize,
-    /// In the small variables.
-    pub small: usize,
-}
-
-impl Order {
-    /// Up to this degree in the base variables, and 0 in the small ones.
-    pub const fn of_base(base: usize) -> Self {
-        Self { base, small: 0 }
-    }
-
-    /// What two jets of these orders know in common.
-    pub fn least(self, other: Self) -> Self {
-        Self { base: self.base.min(other.base), small: self.small.min(other.small) }
-    }
-
-    /// The highest total degree, above which powers of what has no constant term vanish.
-    pub const fn total(self) -> usize {
-        self.base + self.small
-    }
-
-    /// The order of a derivative, if there is one.
-    pub(crate) fn lowered(self, variable: Variable) -> Option<Self> {
-        match variable {
-            Variable::Base(_) => Some(Self { base: self.base.checked_sub(1)?, ..self }),
-            Variable::Small(_) => Some(Self { small: self.small.checked_sub(1)?, ..self }),
-        }
-    }
-
-    /// Whether a jet of this order knows all that one of the other order does.
-    pub const fn covers(self, other: Self) -> bool {
-        self.base >= other.base && self.small >= other.small
-    }
-}
-
-/// A variable of a ring, zero-based.
-#[derive(Clone, Copy, Debug, PartialEq, Eq, Hash)]
-pub enum Variable {
-    /// A coordinate.
-    Base(usize),
-    /// A parameter of a variation, or a size.
-    Small(usize),
-}
 
 /// A ring of truncated polynomials: how many variables of each kind, and the highest order.
 #[derive(Debug)]

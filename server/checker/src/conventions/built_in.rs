@@ -28,6 +28,15 @@ pub fn bare_letter(letter: &str) -> &str {
     letter.get(..end).unwrap_or(letter)
 }
 
+/// A letter as people read it: `μ` for `\mu`, `μ'` for `\mu'`.
+pub fn shown(letter: &str) -> String {
+    let bare = bare_letter(letter);
+    match indexwise_grammar::unicode_sign(bare) {
+        Some(sign) => letter.replace(bare, sign),
+        None => letter.to_owned(),
+    }
+}
+
 /// The class of an index letter.
 pub fn class_of(letter: &str) -> LetterClass {
     let bare = bare_letter(letter);

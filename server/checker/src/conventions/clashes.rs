@@ -1,18 +1,14 @@
 //! What contradicts itself within one scope, and names that nothing declares.
 //!
 //! Between scopes nothing clashes: the nearer declaration wins. Within a scope two sentences may say the same thing
-//! twice, or add to one another; a finding is what they cannot both mean. It stands at the later sentence and points
-//! at the earlier one.
+//! twice, or add to one another; a clash is what they cannot both mean. It stands at the later sentence and points at
+//! the earlier one. How either is told is the rules' business.
 
 use compact_str::CompactString;
 use indexwise_grammar::conventions::{Kind, Name, Range, Sentence, Tensor};
 use indexwise_grammar::span::Span;
 
-use crate::finding::{Finding, Related};
-use crate::ledger::shown;
-use crate::rules::{convention_clash, convention_unreadable_name};
-
-use super::built_in::is_metric_by_custom;
+use super::built_in::{is_metric_by_custom, shown};
 use super::meanings::Meanings;
 
 /// Something said of a name that excludes other things said of it.
@@ -42,8 +38,30 @@ struct Claimed {
     span: Span,
 }
 
+/// Two sentences that cannot both hold.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Clash {
+    /// The later sentence.
+    pub span: Span,
+    /// The earlier one.
+    pub earlier: Span,
+    /// The letter or the kernel that they speak of.
+    pub name: CompactString,
+    /// Why they cannot both hold, in words that follow the name.
+    pub words: &'static str,
+}
+
+/// A name that means nothing in its sentence.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Unknown {
+    /// The name.
+    pub span: Span,
+    /// What is the matter with it.
+    pub message: String,
+}
+
 /// The clashes of one scope's sentences, in their order: one for a pair of sentences.
-pub fn clashes(sentences: &[(Sentence, Span)]) -> Vec<Finding> {
+pub fn clashes(sentences: &[(Sentence, Span)]) -> Vec<Clash> {
     let mut known: Vec<Claimed> = Vec::new();
     let mut found = Vec::new();
     for (sentence, span) in sentences {
@@ -52,8 +70,7 @@ pub fn clashes(sentences: &[(Sentence, Span)]) -> Vec<Finding> {
             known.iter().find_map(|other| excludes(other, one).map(|words| (one.name.clone(), other.span, words)))
         });
         if let Some((name, earlier, words)) = clash {
-            let related = vec![Related { span: earlier, message: "said here".to_owned() }];
-            found.push(Finding { related, ..convention_clash(*span, &name, words) });
+            found.push(Clash { span: *span, earlier, name, words });
         } else {
             known.extend(own);
         }
@@ -62,17 +79,17 @@ pub fn clashes(sentences: &[(Sentence, Span)]) -> Vec<Finding> {
 }
 
 /// Names in one scope's sentences that mean nothing: a metric that nothing declares, a slot that a tensor lacks.
-pub fn unknown_names(sentences: &[(Sentence, Span)], meanings: &Meanings) -> Vec<Finding> {
+pub fn unknown_names(sentences: &[(Sentence, Span)], meanings: &Meanings) -> Vec<Unknown> {
     sentences.iter().flat_map(|(sentence, _)| unknown_in(sentence, meanings)).collect()
 }
 
-fn unknown_in(sentence: &Sentence, meanings: &Meanings) -> Vec<Finding> {
+fn unknown_in(sentence: &Sentence, meanings: &Meanings) -> Vec<Unknown> {
     let metric = |name: &Name| {
         let declared = meanings.metrics().into_iter().any(|((kernel, _), _)| *kernel == name.text);
         let known = declared || is_metric_by_custom(&name.text);
         (!known).then(|| {
             let wanted = "a sentence of the form \"TENSOR is the metric\" declares one";
-            convention_unreadable_name(name.span, &format!("no metric is called {}: {wanted}", shown(&name.text)))
+            Unknown { span: name.span, message: format!("no metric is called {}: {wanted}", shown(&name.text)) }
         })
     };
     match sentence {
@@ -86,7 +103,7 @@ fn unknown_in(sentence: &Sentence, meanings: &Meanings) -> Vec<Finding> {
             let missing = |tensor: &Tensor| {
                 let names = slots.iter().filter(|name| lacks(tensor, name));
                 let words = |name: &Name| format!("{} has no slot {}", shown(tensor.name()), shown(&name.text));
-                names.map(|name| convention_unreadable_name(name.span, &words(name))).collect::<Vec<_>>()
+                names.map(|name| Unknown { span: name.span, message: words(name) }).collect::<Vec<_>>()
             };
             tensors.iter().flat_map(missing).collect()
         }
@@ -95,7 +112,7 @@ fn unknown_in(sentence: &Sentence, meanings: &Meanings) -> Vec<Finding> {
             let words = |name: &Name| {
                 format!("{} belongs to no family of indices: say first what it runs over", shown(&name.text))
             };
-            unknown.map(|name| convention_unreadable_name(name.span, &words(name))).collect()
+            unknown.map(|name| Unknown { span: name.span, message: words(name) }).collect()
         }
         _ => Vec::new(),
     }

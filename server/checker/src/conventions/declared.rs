@@ -4,17 +4,15 @@
 //! `clashes.rs` what contradicts itself. Directives (`skip this`, `allow ...`) stay sentences with their places, since
 //! they speak of the formula after them.
 
+use std::sync::Arc;
+
 use indexwise_grammar::conventions::{Sentence, Unreadable, read_sentences};
 use indexwise_grammar::hosts::{Directive, Host};
 use indexwise_grammar::macros::Macros;
 use indexwise_grammar::span::Span;
 
-use crate::finding::Finding;
-use crate::paper::SharedConventions;
-use crate::rules::convention_unreadable;
 use crate::sketch::Unit;
 
-use super::clashes::{clashes, unknown_names};
 use super::meanings::Meanings;
 
 /// What a document declares.
@@ -28,21 +26,16 @@ pub struct Declared {
     pub meanings: Meanings,
 }
 
-/// What is wrong with conventions that several papers share, in the order of the sentences. It is said here once,
-/// so that it need not be said in every paper. Where a file writes a sentence with escapes, places inside of it are not
-/// known and the finding stands at the whole.
-pub fn problems(shared: &SharedConventions) -> Vec<Finding> {
-    let mut found = Declared::shared(shared, &Meanings::default()).problems(Host::Latex);
-    for (text, span) in shared.sentences.iter().filter(|(text, span)| span.of(&shared.text) != text) {
-        let shifted = Span { end: span.start.saturating_add(u32::try_from(text.len()).unwrap_or(u32::MAX)), ..*span };
-        for finding in &mut found {
-            if (shifted.start..=shifted.end).contains(&finding.span.start) {
-                finding.span = *span;
-                finding.related.retain(|related| !(shifted.start..=shifted.end).contains(&related.span.start));
-            }
-        }
-    }
-    found
+/// Conventions that several papers share: those of a configuration file.
+#[derive(Clone, Debug, Default, PartialEq, Eq)]
+pub struct SharedConventions {
+    /// The path of the file as it is shown to people.
+    pub path: String,
+    /// The text of the file without a byte-order mark.
+    pub text: Arc<str>,
+    /// The sentences in order. A span lies on `text`; it covers the sentence to the letter unless the file writes it
+    /// with escapes: then it covers what holds them all, and `span.of(text)` differs from the sentence.
+    pub sentences: Vec<(String, Span)>,
 }
 
 impl Declared {
@@ -76,15 +69,6 @@ impl Declared {
     /// Reads conventions that stand outside of a paper, in the spelling of notes as well as in that of LaTeX.
     pub fn shared(shared: &SharedConventions, outer: &Meanings) -> Self {
         Self::of(&shared.sentences, Host::Note, &Macros::default(), outer)
-    }
-
-    /// What is wrong with its own sentences: unreadable ones, clashes, names that mean nothing. Examples are spelt as in
-    /// the host.
-    pub fn problems(&self, host: Host) -> Vec<Finding> {
-        let mut found: Vec<Finding> = self.unreadable.iter().map(|one| convention_unreadable(one, host)).collect();
-        found.extend(clashes(&self.sentences));
-        found.extend(unknown_names(&self.sentences, &self.meanings));
-        found
     }
 
     /// Whether the author says that this letter is no index.

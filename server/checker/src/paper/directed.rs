@@ -11,6 +11,8 @@ use crate::conventions::declared::Declared;
 use crate::finding::Finding;
 use crate::rules;
 
+use super::sentences::problems_of;
+
 /// Rules that speak of a document rather than of a formula: `allow` silences them in the whole file.
 const DOCUMENT_RULES: &[&str] = &["missing-part", "unread", "convention-unreadable", "convention-clash", "idle-allow"];
 
@@ -52,7 +54,7 @@ pub(super) fn directed(
             _ => {}
         }
     }
-    about.extend(declared.problems(host));
+    about.extend(problems_of(declared, host));
     about.extend(findings.into_iter().map(|(_, finding)| finding));
     about.retain(|finding| !allowed.iter().any(|rule| *rule == finding.rule));
     about

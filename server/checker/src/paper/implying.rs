@@ -124,8 +124,7 @@ mod tests {
     use indexwise_grammar::hosts::Host;
 
     use super::*;
-    use crate::conventions::declared::problems;
-    use crate::paper::{SharedConventions, Source};
+    use crate::paper::{SharedConventions, Source, problems};
     use indexwise_grammar::span::Span;
 
     fn paper(path: &str, text: &str) -> Paper {

@@ -1,8 +1,7 @@
 //! Two sentences of one scope contradict one another.
 
-use indexwise_grammar::span::Span;
-
-use crate::finding::{Finding, Severity};
+use crate::conventions::clashes::Clash;
+use crate::finding::{Finding, Related, Severity};
 use crate::ledger::shown;
 
 use super::{Check, Rule};
@@ -16,7 +15,9 @@ pub(super) const RULE: Rule = Rule {
     check: Check::Document,
 };
 
-/// The finding for the later sentence; `words` follow the name.
-pub(crate) fn convention_clash(span: Span, name: &str, words: &str) -> Finding {
-    Finding::plain(RULE.name, RULE.severity, span, format!("{} {words}", shown(name)))
+/// The finding: it stands at the later sentence and points at the earlier one.
+pub(crate) fn convention_clash(clash: &Clash) -> Finding {
+    let related = vec![Related { span: clash.earlier, message: "said here".to_owned() }];
+    let message = format!("{} {}", shown(&clash.name), clash.words);
+    Finding { related, ..Finding::plain(RULE.name, RULE.severity, clash.span, message) }
 }

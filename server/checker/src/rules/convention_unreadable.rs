@@ -2,8 +2,8 @@
 
 use indexwise_grammar::conventions::{FORMS, Form, Unreadable};
 use indexwise_grammar::hosts::Host;
-use indexwise_grammar::span::Span;
 
+use crate::conventions::clashes::Unknown;
 use crate::finding::{Finding, Related, Severity};
 
 use super::{Check, Rule};
@@ -33,6 +33,6 @@ pub(crate) fn convention_unreadable(sentence: &Unreadable, host: Host) -> Findin
 }
 
 /// The finding for a name in a sentence that means nothing there.
-pub(crate) fn convention_unreadable_name(span: Span, message: &str) -> Finding {
-    Finding::plain(RULE.name, RULE.severity, span, message.to_owned())
+pub(crate) fn unknown_name(name: &Unknown) -> Finding {
+    Finding::plain(RULE.name, RULE.severity, name.span, name.message.clone())
 }

@@ -108,8 +108,7 @@ mod tests {
     use super::*;
     use crate::configuration::{FILE_NAME, read_as};
     use crate::files::Text;
-    use indexwise_checker::conventions::declared::problems;
-    use indexwise_checker::paper::SharedConventions;
+    use indexwise_checker::paper::{SharedConventions, problems};
     use std::path::Path;
 
     fn conventions(text: &str) -> SharedConventions {
