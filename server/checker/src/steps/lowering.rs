@@ -17,6 +17,7 @@ use indexwise_grammar::tree::{
 };
 
 use crate::conventions::built_in::is_derivative;
+use crate::conventions::meanings::Known;
 use crate::terms::Eyes;
 use crate::terms::uses::{self, Use, UsedSlot, use_of};
 
@@ -129,7 +130,7 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
         let rest = factors.get(1..).unwrap_or_default();
         if let Atom::Kernel(kernel) = &factor.atom {
             let made = use_of(factor, kernel, self.eyes, false);
-            if is_derivative(&made.letter) {
+            if is_derivative(&made.letter) && !self.is_quantity(&made) {
                 return self.derivative(factor, &made, rest);
             }
             if matches!(made.kernel.as_str(), "\\Box" | "\\square") && factor.scripts.is_empty() {
@@ -201,9 +202,18 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
         }
     }
 
+    /// Whether a kernel is declared as a quantity with these slots: `D_i` may be a displacement.
+    fn is_quantity(&self, made: &Use) -> bool {
+        self.surroundings.meanings.known(&made.kernel, made.slots.len()).is_some_and(Known::is_settled)
+    }
+
     fn operator(&mut self, made: &Use, slot: &UsedSlot) -> Result<Operator, Refusal> {
         let index = self.index(slot)?;
         if made.letter == "\\partial" {
+            // A raised one is raised by the metric; where none is declared, levels are taken for mere notation.
+            if index.level == Level::Up && self.has_metric() {
+                self.surroundings.metric_of(index.family);
+            }
             return Ok(Operator::Partial(index));
         }
         let declared = self.surroundings.meanings.derivatives.iter().find(|(kernel, _)| *kernel == made.kernel);

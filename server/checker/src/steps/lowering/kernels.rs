@@ -77,6 +77,8 @@ impl Lowering<'_, '_, '_> {
 
     fn meaning(&mut self, made: &Use, own: &[UsedSlot], slots: Vec<Index>) -> Lowered {
         if let Some(definition) = self.surroundings.definition(&made.kernel, slots.len()) {
+            let own = self.surroundings.world.definitions.get(definition).map(|own| own.free.clone());
+            self.move_slots(&slots, own.unwrap_or_default().iter().map(|index| index.level));
             return Ok(Expression::Defined { definition, slots });
         }
         let role = self.surroundings.meanings.known(&made.kernel, slots.len()).and_then(|known| known.role.clone());
@@ -207,14 +209,18 @@ impl Lowering<'_, '_, '_> {
             .map(|one| SlotSymmetry { slots: one.images, negative: one.negative })
             .collect();
         let field = self.surroundings.field(&made.kernel, &natural, symmetries);
-        // On another level than its own an index is moved by the metric of its family.
         let own = self.surroundings.world.fields.get(field).map(|field| field.slots.clone()).unwrap_or_default();
-        for ((family, level), (_, own)) in natural.iter().zip(&own) {
-            if level != own {
-                self.surroundings.metric_of(*family);
+        self.move_slots(&slots, own.into_iter().map(|(_, level)| level));
+        Ok(Expression::Field { field, slots })
+    }
+
+    /// On another level than its own an index is moved by the metric of its family, which has to be known then.
+    fn move_slots(&mut self, slots: &[Index], own: impl Iterator<Item = Level>) {
+        for (index, own) in slots.iter().zip(own) {
+            if index.level != own {
+                self.surroundings.metric_of(index.family);
             }
         }
-        Ok(Expression::Field { field, slots })
     }
 
     /// The name of a kernel that a side consists of alone, with its slots: what a relation may define.
