@@ -37,7 +37,7 @@ pub(super) fn sentence(clause: Clause<'_>) -> Result<Sentence, Trouble> {
         Predicate::Range(range) => Sentence::Family { letters: letters(&names)?, range: in_order(range, &names)? },
         Predicate::Dimension(of) => Sentence::Dimension { letter: only(&names, letter)?, of },
         Predicate::Cartesian => Sentence::Cartesian(letters(&names)?),
-        Predicate::Spatial(of) => Sentence::Spatial { letters: letters(&names)?, of },
+        Predicate::Spatial(of) => spatial(&names, of)?,
         Predicate::Frame(raised_by) => Sentence::Frame { letters: letters(&names)?, raised_by },
         Predicate::Metric(constant, signature) => {
             Sentence::Metric { tensor: only(&names, |word| slotted(word, 2, "a metric"))?, constant, signature }
@@ -120,7 +120,16 @@ fn bare(word: &Word<'_>, thing: &str) -> Result<Tensor, Trouble> {
     slotted(word, 0, thing)
 }
 
-/// A range of numbers ends after it begins.
+/// A part is not the whole.
+fn spatial(names: &[Said<'_>], of: Vec<Name>) -> Result<Sentence, Trouble> {
+    let letters = letters(names)?;
+    match letters.iter().find(|letter| of.iter().any(|other| other.text == letter.text)) {
+        Some(both) => Err(Trouble::new(both.span, format!("{} cannot be a part of itself", shown(&both.text)))),
+        None => Ok(Sentence::Spatial { letters, of }),
+    }
+}
+
+/// A range of numbers ends after it begins, and one of names has each name once.
 fn in_order(range: Range, names: &[Said<'_>]) -> Result<Range, Trouble> {
     let at = names.iter().map(|word| word.span).reduce(Span::join).unwrap_or_default();
     match range {
@@ -128,8 +137,18 @@ fn in_order(range: Range, names: &[Said<'_>]) -> Result<Range, Trouble> {
             Err(Trouble::new(at, format!("a range from {from} to {to} has no members")))
         }
         Range::Size(Bound::Number(0)) => Err(Trouble::new(at, "a range over no dimensions has no members")),
+        Range::Members(names) => match repeated(&names) {
+            Some(name) => Err(Trouble::new(name.span, format!("{} is named twice", shown(&name.text)))),
+            None => Ok(Range::Members(names)),
+        },
         range => Ok(range),
     }
+}
+
+/// The first name that stands before.
+fn repeated(names: &[Name]) -> Option<&Name> {
+    let mut numbered = names.iter().enumerate();
+    numbered.find(|(at, name)| names.iter().take(*at).any(|other| other.text == name.text)).map(|(_, name)| name)
 }
 
 /// `x^i are the coordinates`, or letters.
@@ -141,7 +160,7 @@ fn coordinates(names: &[Said<'_>]) -> Result<Sentence, Trouble> {
 }
 
 fn symmetry(names: &[Said<'_>], antisymmetric: bool, slots: Vec<Name>) -> Result<Sentence, Trouble> {
-    let tensors = each(names, tensor)?;
+    let tensors = each(names, exchangeable)?;
     for slot in &slots {
         let lacks = |tensor: &&Tensor| tensor.slots().iter().all(|found| found.letter != slot.text);
         if let Some(tensor) = tensors.iter().find(lacks) {
@@ -153,6 +172,20 @@ fn symmetry(names: &[Said<'_>], antisymmetric: bool, slots: Vec<Name>) -> Result
         return Err(Trouble::new(slot.span, "a symmetry exchanges two indices or more"));
     }
     Ok(Sentence::Symmetry { tensors, antisymmetric, slots })
+}
+
+/// A tensor with two slots or more: with fewer there is nothing to exchange.
+fn exchangeable(word: &Word<'_>) -> Result<Tensor, Trouble> {
+    let found = tensor(word)?;
+    let has = match found.slots().len() {
+        0 => "no index letters",
+        1 => "one index",
+        _ => return Ok(found),
+    };
+    Err(Trouble::new(
+        word.span,
+        format!("a symmetry exchanges two indices or more, but {} has {has}", shown(word.text)),
+    ))
 }
 
 /// How many slots a tensor of curvature has, and what it is called.

@@ -365,6 +365,13 @@ fn names_must_fit_what_is_said_of_them() {
     stops("ij k run from 1 to 3", "ij", "`ij` is several letters in one word; blanks part them", run);
     stops("i T_{ij} run from 1 to 3", "T_{ij}", "`T_{ij}` is not a single letter", run);
     stops("i j run from 3 to 1", "i j", "a range from 3 to 1 has no members", run);
+    stops("i j run over s t s", "s", "`s` is named twice", Some("LETTERS run over LETTERS"));
+    stops(
+        "i j are the spatial part of a j",
+        "j",
+        "`j` cannot be a part of itself",
+        Some("LETTERS are the spatial part of LETTERS"),
+    );
     let metric = Some("TENSOR is the metric");
     stops("g is the metric", "g", "a metric has two indices, but `g` has no indices", metric);
     stops("g_{ij} h_{ij} are the metric", "h_{ij}", "this can be said of one thing only", metric);
@@ -373,6 +380,14 @@ fn names_must_fit_what_is_said_of_them() {
         "R_{ij}",
         "the Riemann tensor has four indices, but `R_{ij}` has two indices",
         Some("TENSOR is the Riemann tensor of KERNEL"),
+    );
+    let symmetric = Some("TENSOR is symmetric");
+    stops("T is symmetric", "T", "a symmetry exchanges two indices or more, but `T` has no index letters", symmetric);
+    stops(
+        "T_{ij} v^i are symmetric",
+        "v^i",
+        "a symmetry exchanges two indices or more, but `v^i` has one index",
+        symmetric,
     );
     stops("S_{ijk} is symmetric in i m", "m", "`m` is no index of `S`", Some("TENSOR is symmetric in LETTERS"));
     stops(

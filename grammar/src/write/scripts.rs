@@ -42,7 +42,11 @@ impl Writer {
         let mut out = String::new();
         for (n, (text, item)) in written.iter().zip(items).enumerate() {
             let before = n.checked_sub(1).and_then(|n| items.get(n));
-            if before.is_some_and(|before| blanks && lettered(before) && lettered(item)) || needs_blank(&out, text) {
+            let apart = needs_blank(&out, text);
+            if apart && self.dialect == Dialect::Latex && before.is_some_and(|before| both_numbers(before, item)) {
+                // A blank is lost in print: `9 10` would look like 910.
+                out.push_str("\\,");
+            } else if apart || before.is_some_and(|before| blanks && lettered(before) && lettered(item)) {
                 out.push(' ');
             }
             let structured = |item: &Item| matches!(item.kind, ItemKind::Factor(_));
@@ -115,8 +119,7 @@ impl Writer {
         for item in items {
             let text = self.item_shown(item);
             let long = |item: &Item| matches!(item.kind, ItemKind::Label(_) | ItemKind::Factor(_));
-            let numbers = matches!(item.kind, ItemKind::Number(_))
-                && before.is_some_and(|before| matches!(before.kind, ItemKind::Number(_)));
+            let numbers = before.is_some_and(|before| both_numbers(before, item));
             let apart = |one: &Item, other: &Item| long(one) && (lettered(other) || long(other));
             if numbers || before.is_some_and(|before| apart(before, item) || apart(item, before)) {
                 out.push(' ');
@@ -167,6 +170,10 @@ fn needs_blank(before: &str, next: &str) -> bool {
     let letter = next.starts_with(|sign: char| sign.is_ascii_alphabetic());
     let digit = |sign: char| sign.is_ascii_digit() || sign == '.';
     (command && letter) || (before.ends_with(digit) && next.starts_with(digit))
+}
+
+fn both_numbers(one: &Item, other: &Item) -> bool {
+    [one, other].iter().all(|item| matches!(item.kind, ItemKind::Number(_)))
 }
 
 /// `x^2`, `A_i`, `A_\mu`: one letter or digit needs no braces.

@@ -77,6 +77,7 @@ impl<'a> Cursor<'_, 'a> {
         self.skip_optional();
         let at = self.at;
         if let Some((word, end)) = self.plain_group().filter(|_| !self.padded(at)) {
+            self.out.no_sum |= says_no_sum(self.tokens.get(at..self.at).unwrap_or_default());
             return self.word(&word, token.span.join(end), true);
         }
         self.at = at;

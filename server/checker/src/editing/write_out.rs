@@ -91,7 +91,7 @@ impl Summed {
 /// Where a range is taken from.
 #[derive(Clone, Debug, PartialEq, Eq)]
 pub enum RangeSource {
-    /// The letter's family is declared with it.
+    /// The letter's family is declared with it, or that of a slot that it fills.
     Family,
     /// The names of the coordinates are declared.
     Coordinates,
@@ -194,7 +194,7 @@ fn written_out(asked: &Asked<'_>, offset: u32) -> Result<WrittenOut, Refusal> {
     }
     let located = locate(asked, offset)?;
     understood(located.term, asked)?;
-    let letters: Vec<Summed> = located.letters.iter().map(|letter| range_of(letter, asked)).collect();
+    let letters: Vec<Summed> = located.letters.iter().map(|letter| range_of(letter, located.term, asked)).collect();
     let choices = affordable(located.term, &letters)?;
     let collected = collect(asked, &located, &letters);
     Ok(dressed(&located, letters, choices, collected))

@@ -1,5 +1,7 @@
 //! Symmetric slots contracted with antisymmetric ones.
 
+use compact_str::CompactString;
+
 use crate::finding::{Finding, Related, Severity};
 use crate::ledger::shown;
 use crate::terms::{Flattened, Product, Zero};
@@ -43,10 +45,16 @@ fn finding(terms: &Flattened<'_>, product: &Product, zero: &Zero) -> Finding {
         Zero::Pair { letters, symmetric, antisymmetric } => {
             let (one, two) = (shown(&letters.0), shown(&letters.1));
             let names = (terms.piece_names(product, symmetric), terms.piece_names(product, antisymmetric));
-            let message =
-                format!("this term is zero: {} is symmetric in {one} and {two}, {} is antisymmetric", names.0, names.1);
-            let related = Related { span: place(symmetric), message: format!("symmetric in {one} and {two}") };
-            (place(antisymmetric), message, vec![related])
+            if symmetric == antisymmetric {
+                (place(antisymmetric), of_one_piece(product, symmetric, letters, &names.0), Vec::new())
+            } else {
+                let message = format!(
+                    "this term is zero: {} is symmetric in {one} and {two}, {} is antisymmetric",
+                    names.0, names.1
+                );
+                let related = Related { span: place(symmetric), message: format!("symmetric in {one} and {two}") };
+                (place(antisymmetric), message, vec![related])
+            }
         }
         Zero::Trace { letter, piece } => {
             let name = terms.piece_names(product, &[*piece]);
@@ -60,4 +68,22 @@ fn finding(terms: &Flattened<'_>, product: &Product, zero: &Zero) -> Finding {
         }
     };
     Finding { related, ..Finding::plain(RULE.name, RULE.severity, span, message) }
+}
+
+/// What is said where slots of one piece are contracted with others of it: mostly those of its derivatives.
+fn of_one_piece(product: &Product, piece: &[usize], letters: &(CompactString, CompactString), name: &str) -> String {
+    let (one, two) = (shown(&letters.0), shown(&letters.1));
+    let made = piece.first().and_then(|at| product.pieces.get(*at)).map(|piece| &piece.made);
+    let is_own = |letter: &CompactString| {
+        made.is_some_and(|made| made.own_slots().filter(|slot| slot.letter() == Some(letter)).count() == 1)
+    };
+    match made.filter(|_| is_own(&letters.0) && is_own(&letters.1)) {
+        Some(made) => {
+            let kernel = shown(&made.kernel);
+            format!("this term is zero: the derivatives are symmetric in {one} and {two}, {kernel} is antisymmetric")
+        }
+        None => {
+            format!("this is zero: {name} is symmetric in two slots and antisymmetric in two that {one} and {two} join")
+        }
+    }
 }

@@ -99,11 +99,11 @@ impl<'a> Roles<'a> {
         }
     }
 
-    /// Whether a kernel differentiates, or is a word.
+    /// Whether a kernel differentiates, or is a word or a sign that names nothing.
     fn is_operator(&self, made: &Use, kernel: &Kernel) -> bool {
         let declared = self.eyes.meanings.derivatives.iter().any(|(name, _)| *name == kernel.name);
         match kernel.letter.as_str() {
-            "\\partial" | "\\nabla" => true,
+            "\\partial" | "\\nabla" | "\\forall" | "\\exists" | "\\infty" => true,
             _ if is_labelled_operator(&kernel.name) && kernel.letter != "\\Delta" => true,
             _ => declared || kernel.word && made.slots.is_empty() || self.operators.contains(&made.span),
         }

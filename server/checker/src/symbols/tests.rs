@@ -50,6 +50,7 @@ fn a_thickness_is_a_kernel_and_so_are_symbols_with_slots() {
 fn words_and_exponents_are_no_kernels() {
     let text = "$u_i = A_i e^{i\\omega t} + \\mathrm{const} \\, n_i r^p$";
     assert_eq!(kernels(text), ["u/1 x1", "A/1 x1", "n/1 x1", "r/0 x1"]);
+    assert_eq!(kernels("$\\forall x : f(x) < \\infty$"), ["x/0 x2", "f/0 x1"]);
 }
 
 #[test]

@@ -169,6 +169,23 @@ fn a_range_of_names_is_written_with_them() {
 }
 
 #[test]
+fn components_in_another_frame_keep_their_prime() {
+    let want = "Q_{1'j} v^{1'} + Q_{2'j} v^{2'} + Q_{3'j} v^{3'}";
+    let answer = gives("$s_j = ‸Q_{i'j} v^{i'}$", want);
+    assert_eq!(answer.letters[0].values, ["1'", "2'", "3'"]);
+    assert_eq!(answer.sum.note, "Q_{1' j} v^{1'} + Q_{2' j} v^{2'} + Q_{3' j} v^{3'}");
+    let named = "<!-- indexwise: i' j' run over r \\theta -->\n\n$s = ‸v_{i'} v^{i'}$";
+    gives(named, "v_{r'} v^{r'} + v_{\\theta'} v^{\\theta'}");
+}
+
+#[test]
+fn values_of_two_digits_stand_apart() {
+    let text = "<!-- indexwise: p q run from 9 to 10; S_{pq} is symmetric -->\n\n$s = ‸S_{pq} S_{pq}$";
+    let answer = gives(text, "S_{99} S_{99} + 2 S_{9\\,10} S_{9\\,10} + S_{10\\,10} S_{10\\,10}");
+    assert_eq!(answer.sum.note, "S_99 S_99 + 2 S_{9 10} S_{9 10} + S_{10 10} S_{10 10}");
+}
+
+#[test]
 fn a_range_that_is_not_declared_is_custom_or_the_coordinates() {
     let values = |text: &str| {
         let letter = answer(text, Host::Markdown).letters.remove(0);
@@ -182,6 +199,8 @@ fn a_range_that_is_not_declared_is_custom_or_the_coordinates() {
     let named = "<!-- indexwise: t r z are the coordinates -->\n\n$s = ‸A_\\mu B^\\mu$";
     assert_eq!(values(named), ("t r z".to_owned(), RangeSource::Coordinates));
     assert_eq!(values(&named.replace("\\mu", "i")), ("r z".to_owned(), RangeSource::Coordinates));
+    let slot = "<!-- indexwise: i j run over r z; T_{ij} is symmetric -->\n\n$s = ‸T_{kl} B^k C^l$";
+    assert_eq!(values(slot), ("r z".to_owned(), RangeSource::Family));
     let single = named.replace("t r z are the coordinates", "r is a coordinate");
     assert_eq!(values(&single), ("0 1 2 3".to_owned(), RangeSource::Custom));
     let sized = "<!-- indexwise: i j range over 2 dimensions -->\n\n$s = ‸A_i B^i$";
@@ -259,6 +278,8 @@ fn what_is_not_written_out_says_why() {
     let wide = "<!-- indexwise: \\mu \\nu \\rho \\sigma \\alpha run from 0 to 3 -->\n\n";
     let five = "$s = ‸R_{\\mu\\nu\\rho\\sigma} R^{\\mu\\nu\\rho\\sigma} A_\\alpha B^\\alpha$";
     refuses(&format!("{wide}{five}"), "the sum has 1024 terms, more than the budget of 256");
+    let long = "<!-- indexwise: i j run from 1 to 300 -->\n\n$s = ‸A_i B_i$";
+    refuses(long, "the sum has 300 terms, more than the budget of 256");
     let huge = "<!-- indexwise: i j run from 1 to 4000000000 -->\n\n$s = ‸A_i B_i$";
     assert!(matches!(asked(huge, Host::Markdown), Err(Refusal::TooMany(_))));
     let four = five.replace(" A_\\alpha B^\\alpha", "");
