@@ -5,18 +5,19 @@ use std::borrow::Cow;
 use compact_str::CompactString;
 use indexwise_grammar::conventions::{Name, Sentence};
 use indexwise_grammar::hosts::Host;
-use indexwise_grammar::read_region;
+use indexwise_grammar::{read_formula, read_note_formula, read_region};
 use indexwise_grammar::span::Span;
 use indexwise_grammar::tree::{self, Formula};
+use indexwise_grammar::write::Dialect;
 use rustc_hash::FxHashSet;
 
 use crate::conventions::inferred::Prices;
-use crate::finding::Finding;
+use crate::finding::{Edit, Finding};
 use crate::ledger::Judged;
 use crate::reading::Reading;
 use crate::rules;
 use crate::sketch::Sketch;
-use crate::steps::{Asked, StepJudge};
+use crate::steps::{Asked, Source, StepJudge};
 use crate::symbols::Gatherer;
 use crate::terms::symmetries::Customs;
 use crate::terms::{self, Eyes, Flattened};
@@ -161,8 +162,14 @@ impl<'d> Judge<'d> {
                 ));
             }
         }
-        let found = self.trees.statement(self.document.read, number, judged.sketch.span, |statement| {
-            steps.statement(statement, judged.text, &eyes, asked, &givens)
+        let read = self.document.read;
+        let place =
+            self.trees.statements(read, number).iter().position(|statement| statement.span == judged.sketch.span);
+        let reread = |edits: &[Edit]| statement_after(read, number, place?, edits);
+        let dialect = if read.host == Host::Note { Dialect::Note } else { Dialect::Latex };
+        let source = Source { text: judged.text, dialect, reread: &reread };
+        let found = self.trees.statement(read, number, judged.sketch.span, |statement| {
+            steps.statement(statement, &source, &eyes, asked, &givens)
         });
         self.findings.extend(found.into_iter().map(|finding| (number, finding)));
     }
@@ -278,6 +285,26 @@ impl Trees {
         }
         self.formula.as_ref().map(|(_, tree)| tree.statements.as_slice()).unwrap_or_default()
     }
+}
+
+/// A statement of a formula as it is read after edits of the text within it, which are in order and apart. Where the
+/// formula holds what is no mathematics, this is not told.
+fn statement_after(read: &Read<'_>, number: usize, place: usize, edits: &[Edit]) -> Option<tree::Statement> {
+    let region = read.document.scan.regions.get(number).filter(|region| region.holes.is_empty())?;
+    let body = region.body;
+    let (mut text, mut at) = (String::new(), body.start);
+    for edit in edits {
+        text.push_str(read.text.get(at as usize..edit.span.start as usize)?);
+        text.push_str(&edit.text);
+        at = edit.span.end;
+    }
+    text.push_str(read.text.get(at as usize..body.end as usize)?);
+    let formula = match read.host {
+        Host::Note => read_note_formula(&text),
+        _ => read_formula(&text, &read.macros),
+    };
+    let whole = formula.unread.is_empty() && formula.unknown.is_empty() && !formula.passed_over;
+    formula.statements.into_iter().nth(place).filter(|_| whole)
 }
 
 /// The finding for a part that could not be had; in a preamble only macros are missing by it.

@@ -116,7 +116,12 @@ fn lower(step: &mut Step, left: &Sum, right: &Sum, eyes: &Eyes<'_>, surroundings
     });
 }
 
-fn pair(lowering: &mut Lowering<'_, '_, '_>, left: &Sum, right: &Sum) -> Result<(Expression, Expression), String> {
+/// Both sides; a side that is 0 takes the free labels of the other.
+pub(super) fn pair(
+    lowering: &mut Lowering<'_, '_, '_>,
+    left: &Sum,
+    right: &Sum,
+) -> Result<(Expression, Expression), String> {
     match (is_zero(left), is_zero(right)) {
         (true, _) => {
             let right = lowering.side(right)?;

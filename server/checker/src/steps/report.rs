@@ -14,13 +14,14 @@ use indexwise_grammar::tree::Statement;
 use rustc_hash::{FxHashMap, FxHasher};
 
 use crate::conventions::meanings::Meanings;
-use crate::finding::{Counterexample, Finding, Related, Severity, StepVerdict};
+use crate::finding::{Counterexample, Finding, Fix, Related, Severity, StepVerdict};
 use crate::ledger::shown;
 use crate::paper::Steps;
 use crate::rules;
 use crate::terms::Eyes;
 
 use super::claims::{Asked, Step, relations_of, steps_of};
+use super::repairs::{Broken, Look, Source, repairs};
 use super::world::Surroundings;
 
 /// Multiplications for the verdict of one step: about a second.
@@ -33,6 +34,11 @@ const DOCUMENT_TIME: Duration = Duration::from_secs(60);
 /// The largest dimension that is tried because so many indices are antisymmetrised.
 const LARGEST_DIMENSION: usize = 6;
 
+/// Multiplications for one look at an edit that may mend a step, and for the verdict about it.
+const REPAIR_WORK: [u64; 2] = [2_000_000, 30_000_000];
+/// Steps of one document that are tried to be mended.
+const MENDED: usize = 30;
+
 /// Judges the steps of a document, statement by statement in the order of the text.
 pub struct StepJudge<'m> {
     surroundings: Surroundings<'m>,
@@ -40,6 +46,7 @@ pub struct StepJudge<'m> {
     /// The verdicts so far.
     pub counts: Steps,
     left: usize,
+    mended: usize,
     begun: Option<Instant>,
 }
 
@@ -51,7 +58,8 @@ impl<'m> StepJudge<'m> {
     /// For a document with these declarations.
     pub fn new(meanings: &'m Meanings) -> Self {
         let surroundings = Surroundings::new(meanings);
-        Self { surroundings, known: FxHashMap::default(), counts: Steps::default(), left: STEPS, begun: None }
+        let (known, counts) = (FxHashMap::default(), Steps::default());
+        Self { surroundings, known, counts, left: STEPS, mended: MENDED, begun: None }
     }
 
     /// Takes a statement: its definitions, and the findings about its claims. `givens` are statements that are taken as
@@ -59,14 +67,23 @@ impl<'m> StepJudge<'m> {
     pub fn statement(
         &mut self,
         statement: &Statement,
-        text: &str,
+        source: &Source<'_>,
         eyes: &Eyes<'_>,
         asked: Asked,
         givens: &[LabelledGiven],
     ) -> Vec<Finding> {
         self.surroundings.world.givens = givens.iter().map(|given| given.0.clone()).collect();
         let steps = steps_of(statement, eyes, &mut self.surroundings, asked);
-        let mut found: Vec<Finding> = steps.iter().filter_map(|step| self.step(step, text)).collect();
+        let told: Vec<Option<Finding>> = steps.iter().map(|step| self.step(step, source.text)).collect();
+        let held: Vec<(usize, bool)> =
+            steps.iter().zip(&told).map(|(step, told)| (step.relation, told.is_none())).collect();
+        let mut found: Vec<Finding> = Vec::new();
+        for (step, finding) in steps.iter().zip(told) {
+            let Some(mut finding) = finding else { continue };
+            let broken = Broken { statement, relation: step.relation, others: &held };
+            finding.fixes = self.fixes(step, &finding, &broken, eyes, source);
+            found.push(finding);
+        }
         // In a note nobody has asked; an ordinary page is no derivation.
         found.retain(|finding| asked != Asked::Quietly || finding.severity != Severity::Hint);
         self.surroundings.world.givens.clear();
@@ -78,6 +95,38 @@ impl<'m> StepJudge<'m> {
         let claims = relations_of(statement, eyes, &mut self.surroundings);
         let given = |(left, right)| LabelledGiven(Given { label: label.to_owned(), left, right: Some(right) });
         claims.into_iter().map(given).collect()
+    }
+
+    /// What would make a step hold, if it fails.
+    fn fixes(
+        &mut self,
+        step: &Step,
+        finding: &Finding,
+        broken: &Broken<'_>,
+        eyes: &Eyes<'_>,
+        source: &Source<'_>,
+    ) -> Vec<Fix> {
+        let verdict = finding.verdict.as_ref().filter(|verdict| matches!(verdict.verdict, "fails" | "needs dimension"));
+        let dimension = verdict.and_then(|verdict| verdict.fails.first().copied());
+        let (Some(dimension), Some(left)) = (dimension, self.mended.checked_sub(1)) else { return Vec::new() };
+        self.mended = left;
+        let (begun, seed) = (self.begun, seed(step, source.text));
+        let holds = |surroundings: &Surroundings<'_>, left: &Expression, right: &Expression, look: Look| {
+            let mut world = surroundings.world.clone();
+            world.dimensions = match look {
+                Look::Once => vec![dimension],
+                Look::InFull => dimensions(&world, &[left, right], step.antisymmetrised),
+            };
+            let stop = || begun.is_some_and(|begun| begun.elapsed() > DOCUMENT_TIME);
+            let usual = Limits { trials: 0, stop: Some(&stop), ..Limits::seeded(seed) };
+            let limits = match look {
+                Look::Once => Limits { total: REPAIR_WORK[0], draws: 1, ..usual },
+                Look::InFull => Limits { total: REPAIR_WORK[1], ..usual },
+            };
+            let claim = Claim { left: left.clone(), right: right.clone(), world };
+            matches!(verdict::judge(&claim, &limits), Verdict::Holds { undefined, .. } if undefined.is_empty())
+        };
+        repairs(broken, eyes, source, &self.surroundings, &holds)
     }
 
     fn step(&mut self, step: &Step, text: &str) -> Option<Finding> {
