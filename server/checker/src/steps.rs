@@ -6,6 +6,7 @@
 //! cannot be lowered is undecided with its reason, never guessed.
 
 mod claims;
+mod conventions;
 mod lowering;
 mod repairs;
 mod report;

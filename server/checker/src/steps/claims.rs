@@ -145,7 +145,8 @@ fn is_zero(side: &Sum) -> bool {
     lone_factor(side).is_some_and(|factor| matches!(&factor.atom, Atom::Number(number) if number == "0"))
 }
 
-fn lone_factor(side: &Sum) -> Option<&Factor> {
+/// The factor that a side consists of.
+pub(super) fn lone_factor(side: &Sum) -> Option<&Factor> {
     match side.terms.as_slice() {
         [term] if term.sign.is_none() => match term.factors.as_slice() {
             [factor] => Some(factor),
