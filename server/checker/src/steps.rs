@@ -1,15 +1,22 @@
 //! Steps: whether one line of a derivation follows from the one before, decided by the algebra.
 //!
 //! A statement is lowered to expressions (`lowering.rs`) in the world of the document (`world.rs`); `claims.rs` says
-//! which of its relations claim something; the algebra judges, and `report.rs` turns verdicts into findings. What
+//! which of its relations claim something; the algebra judges, and `report.rs` turns verdicts into findings, and
+//! `repairs.rs` looks for what would make a step hold. What
 //! cannot be lowered is undecided with its reason, never guessed.
 
 mod claims;
+mod conventions;
 mod lowering;
+mod repairs;
 mod report;
 mod world;
 
 pub use claims::{Asked, Step, steps_of};
 pub use lowering::{Lowering, Reach};
+pub use repairs::Source;
 pub use report::{LabelledGiven, StepJudge};
 pub use world::Surroundings;
+
+#[cfg(test)]
+mod tests;

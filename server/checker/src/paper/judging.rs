@@ -5,18 +5,19 @@ use std::borrow::Cow;
 use compact_str::CompactString;
 use indexwise_grammar::conventions::{Name, Sentence};
 use indexwise_grammar::hosts::Host;
-use indexwise_grammar::read_region;
+use indexwise_grammar::{read_formula, read_note_formula, read_region};
 use indexwise_grammar::span::Span;
 use indexwise_grammar::tree::{self, Formula};
+use indexwise_grammar::write::Dialect;
 use rustc_hash::FxHashSet;
 
 use crate::conventions::inferred::Prices;
-use crate::finding::Finding;
+use crate::finding::{Edit, Finding};
 use crate::ledger::Judged;
-use crate::reading::Reading;
+use crate::reading::{self, Reading};
 use crate::rules;
 use crate::sketch::Sketch;
-use crate::steps::{Asked, StepJudge};
+use crate::steps::{Asked, LabelledGiven, Source, StepJudge};
 use crate::symbols::Gatherer;
 use crate::terms::symmetries::Customs;
 use crate::terms::{self, Eyes, Flattened};
@@ -45,6 +46,8 @@ struct Judge<'d> {
     /// The labels of all formulas of the paper.
     labels: &'d FxHashSet<CompactString>,
     scores: Vec<i32>,
+    /// Findings about the conventions.
+    about: Vec<Finding>,
 }
 
 /// Judges a document; `missing` are findings about parts that could not be had.
@@ -71,6 +74,7 @@ pub(super) fn judge_document<'d>(
         using: Vec::new(),
         labels,
         scores: document.scores(&prices),
+        about: Vec::new(),
     };
     judge.prepare_steps(settings.steps);
     for statement in &document.statements {
@@ -84,7 +88,7 @@ pub(super) fn judge_document<'d>(
         judge.findings.extend(formula.unread.iter().map(|part| (number, rules::unread(part))));
     }
     let unknown = judge.unknown_labels();
-    let Judge { indexed, findings, symbols, steps, customs, .. } = judge;
+    let Judge { indexed, findings, symbols, steps, customs, about, .. } = judge;
     let statistics = Statistics {
         formulas: formulas.len(),
         indexed: indexed.iter().filter(|flag| **flag).count(),
@@ -95,6 +99,7 @@ pub(super) fn judge_document<'d>(
     let read = document.read;
     let mut missing = missing;
     missing.extend(unknown);
+    missing.extend(about);
     let findings = directed(&read.declared, read.host, formulas, findings, missing);
     let symbols = symbols.map(|symbols| symbols.finish(&prices.declared.meanings, customs));
     DocumentAnalysis { statistics, findings, symbols }
@@ -122,6 +127,21 @@ impl<'d> Judge<'d> {
         };
         if self.chains || !self.asked.is_empty() {
             self.steps = Some(StepJudge::new(&self.prices.declared.meanings));
+            self.declared_definitions();
+        }
+    }
+
+    /// Definitions among the conventions are read as any statement and come before all of them.
+    fn declared_definitions(&mut self) {
+        let Some(steps) = &mut self.steps else { return };
+        for (sentence, span) in &self.document.read.declared.sentences {
+            let Sentence::Definition(statement) = sentence else { continue };
+            let sketch = Sketch::of(statement);
+            let reading = reading::read(&sketch, sketch.units.iter().map(|unit| self.prices.score(unit)).collect());
+            let eyes = Eyes::new(&sketch, &reading.choice, &self.prices, self.customs);
+            if let Err(name) = steps.declared(statement, &eyes) {
+                self.about.push(rules::convention_clash(*span, &name, "is defined by itself"));
+            }
         }
     }
 
@@ -146,24 +166,31 @@ impl<'d> Judge<'d> {
             return;
         }
         for name in labels {
-            let places = self.document.statements.iter().filter(|other| {
-                let formula = self.document.read.document.formulas.get(other.formula);
-                formula.is_some_and(|formula| formula.labels.iter().any(|(label, _)| *label == name.text))
-            });
-            for place in places {
-                let reading = place.read(&self.scores);
-                let own = Eyes::new(place.sketch, &reading.choice, &self.prices, self.customs);
-                givens.extend(self.trees.statement(
-                    self.document.read,
-                    place.formula,
-                    place.sketch.span,
-                    |statement| steps.given(&name.text, statement, &own),
-                ));
+            givens.extend(given(self.document, &self.scores, &self.prices, self.customs, &mut self.trees, steps, &name.text));
+        }
+        let read = self.document.read;
+        let place =
+            self.trees.statements(read, number).iter().position(|statement| statement.span == judged.sketch.span);
+        let reread = |edits: &[Edit]| statement_after(read, number, place?, edits);
+        let dialect = if read.host == Host::Note { Dialect::Note } else { Dialect::Latex };
+        let source = Source { text: judged.text, dialect, reread: &reread };
+        let mut found = self.trees.statement(read, number, judged.sketch.span, |statement| {
+            steps.statement(statement, &source, &eyes, asked, &givens)
+        });
+        for finding in found.iter_mut().filter(|finding| finding.rule == "step-not-shown") {
+            for label in labels_before(&read.document.formulas, number) {
+                let givens =
+                    given(self.document, &self.scores, &self.prices, self.customs, &mut self.trees, steps, label);
+                match steps.holds_with(finding.span, &givens, judged.text) {
+                    None => break,
+                    Some(false) => {}
+                    Some(true) => {
+                        finding.message.push_str(&format!("; it holds with ({label})"));
+                        break;
+                    }
+                }
             }
         }
-        let found = self.trees.statement(self.document.read, number, judged.sketch.span, |statement| {
-            steps.statement(statement, judged.text, &eyes, asked, &givens)
-        });
         self.findings.extend(found.into_iter().map(|finding| (number, finding)));
     }
 
@@ -251,6 +278,40 @@ impl<'d> Judge<'d> {
     }
 }
 
+/// Labelled formulas that are tried as given for a step that is not shown.
+const LABELS_TRIED: usize = 8;
+
+/// The labels of the formulas before one, the nearest first: what comes later may rest on it.
+fn labels_before(formulas: &[Formula], number: usize) -> impl Iterator<Item = &CompactString> {
+    let before = formulas.get(..number).unwrap_or_default().iter().rev();
+    before.flat_map(|formula| formula.labels.iter().map(|(label, _)| label)).take(LABELS_TRIED)
+}
+
+/// The statements of a label, as something given.
+fn given(
+    document: &Sketched<'_>,
+    scores: &[i32],
+    prices: &Prices<'_>,
+    customs: Customs,
+    trees: &mut Trees,
+    steps: &mut StepJudge<'_>,
+    label: &str,
+) -> Vec<LabelledGiven> {
+    let mut givens = Vec::new();
+    let places = document.statements.iter().filter(|other| {
+        let formula = document.read.document.formulas.get(other.formula);
+        formula.is_some_and(|formula| formula.labels.iter().any(|(known, _)| known == label))
+    });
+    for place in places {
+        let reading = place.read(scores);
+        let eyes = Eyes::new(place.sketch, &reading.choice, prices, customs);
+        givens.extend(trees.statement(document.read, place.formula, place.sketch.span, |statement| {
+            steps.given(label, statement, &eyes)
+        }));
+    }
+    givens
+}
+
 /// The tree of the formula that was read again last: only few statements are looked at by their terms, so that trees
 /// are not kept.
 #[derive(Default)]
@@ -278,6 +339,26 @@ impl Trees {
         }
         self.formula.as_ref().map(|(_, tree)| tree.statements.as_slice()).unwrap_or_default()
     }
+}
+
+/// A statement of a formula as it is read after edits of the text within it, which are in order and apart. Where the
+/// formula holds what is no mathematics, this is not told.
+fn statement_after(read: &Read<'_>, number: usize, place: usize, edits: &[Edit]) -> Option<tree::Statement> {
+    let region = read.document.scan.regions.get(number).filter(|region| region.holes.is_empty())?;
+    let body = region.body;
+    let (mut text, mut at) = (String::new(), body.start);
+    for edit in edits {
+        text.push_str(read.text.get(at as usize..edit.span.start as usize)?);
+        text.push_str(&edit.text);
+        at = edit.span.end;
+    }
+    text.push_str(read.text.get(at as usize..body.end as usize)?);
+    let formula = match read.host {
+        Host::Note => read_note_formula(&text),
+        _ => read_formula(&text, &read.macros),
+    };
+    let whole = formula.unread.is_empty() && formula.unknown.is_empty() && !formula.passed_over;
+    formula.statements.into_iter().nth(place).filter(|_| whole)
 }
 
 /// The finding for a part that could not be had; in a preamble only macros are missing by it.

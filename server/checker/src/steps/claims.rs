@@ -116,7 +116,12 @@ fn lower(step: &mut Step, left: &Sum, right: &Sum, eyes: &Eyes<'_>, surroundings
     });
 }
 
-fn pair(lowering: &mut Lowering<'_, '_, '_>, left: &Sum, right: &Sum) -> Result<(Expression, Expression), String> {
+/// Both sides; a side that is 0 takes the free labels of the other.
+pub(super) fn pair(
+    lowering: &mut Lowering<'_, '_, '_>,
+    left: &Sum,
+    right: &Sum,
+) -> Result<(Expression, Expression), String> {
     match (is_zero(left), is_zero(right)) {
         (true, _) => {
             let right = lowering.side(right)?;
@@ -140,7 +145,8 @@ fn is_zero(side: &Sum) -> bool {
     lone_factor(side).is_some_and(|factor| matches!(&factor.atom, Atom::Number(number) if number == "0"))
 }
 
-fn lone_factor(side: &Sum) -> Option<&Factor> {
+/// The factor that a side consists of.
+pub(super) fn lone_factor(side: &Sum) -> Option<&Factor> {
     match side.terms.as_slice() {
         [term] if term.sign.is_none() => match term.factors.as_slice() {
             [factor] => Some(factor),

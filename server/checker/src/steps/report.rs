@@ -7,6 +7,7 @@
 use std::hash::{Hash, Hasher};
 use std::time::{Duration, Instant};
 
+use compact_str::CompactString;
 use indexwise_algebra::expression::{Expression, Filling, Given, Size, World};
 use indexwise_algebra::verdict::{self, Claim, Limits, Unshown, Verdict};
 use indexwise_grammar::span::Span;
@@ -14,13 +15,15 @@ use indexwise_grammar::tree::Statement;
 use rustc_hash::{FxHashMap, FxHasher};
 
 use crate::conventions::meanings::Meanings;
-use crate::finding::{Counterexample, Finding, Related, Severity, StepVerdict};
+use crate::finding::{Counterexample, Finding, Fix, Related, Severity, StepVerdict};
 use crate::ledger::shown;
 use crate::paper::Steps;
 use crate::rules;
 use crate::terms::Eyes;
 
 use super::claims::{Asked, Step, relations_of, steps_of};
+use super::conventions::{self, has_curvature, other_signs};
+use super::repairs::{Broken, Look, Source, repairs};
 use super::world::Surroundings;
 
 /// Multiplications for the verdict of one step: about a second.
@@ -33,6 +36,11 @@ const DOCUMENT_TIME: Duration = Duration::from_secs(60);
 /// The largest dimension that is tried because so many indices are antisymmetrised.
 const LARGEST_DIMENSION: usize = 6;
 
+/// Multiplications for one look at an edit that may mend a step, and for the verdict about it.
+const REPAIR_WORK: [u64; 2] = [2_000_000, 30_000_000];
+/// Steps of one document that are tried to be mended.
+const MENDED: usize = 30;
+
 /// Judges the steps of a document, statement by statement in the order of the text.
 pub struct StepJudge<'m> {
     surroundings: Surroundings<'m>,
@@ -40,6 +48,9 @@ pub struct StepJudge<'m> {
     /// The verdicts so far.
     pub counts: Steps,
     left: usize,
+    mended: usize,
+    /// The steps of the last statement that are not shown, by their signs.
+    open: Vec<Step>,
     begun: Option<Instant>,
 }
 
@@ -51,7 +62,8 @@ impl<'m> StepJudge<'m> {
     /// For a document with these declarations.
     pub fn new(meanings: &'m Meanings) -> Self {
         let surroundings = Surroundings::new(meanings);
-        Self { surroundings, known: FxHashMap::default(), counts: Steps::default(), left: STEPS, begun: None }
+        let (known, counts) = (FxHashMap::default(), Steps::default());
+        Self { surroundings, known, counts, left: STEPS, mended: MENDED, open: Vec::new(), begun: None }
     }
 
     /// Takes a statement: its definitions, and the findings about its claims. `givens` are statements that are taken as
@@ -59,14 +71,31 @@ impl<'m> StepJudge<'m> {
     pub fn statement(
         &mut self,
         statement: &Statement,
-        text: &str,
+        source: &Source<'_>,
         eyes: &Eyes<'_>,
         asked: Asked,
         givens: &[LabelledGiven],
     ) -> Vec<Finding> {
         self.surroundings.world.givens = givens.iter().map(|given| given.0.clone()).collect();
         let steps = steps_of(statement, eyes, &mut self.surroundings, asked);
-        let mut found: Vec<Finding> = steps.iter().filter_map(|step| self.step(step, text)).collect();
+        let told: Vec<Option<Finding>> = steps.iter().map(|step| self.step(step, source.text)).collect();
+        let held: Vec<(usize, bool)> =
+            steps.iter().zip(&told).map(|(step, told)| (step.relation, told.is_none())).collect();
+        self.open.clear();
+        let mut found: Vec<Finding> = Vec::new();
+        for (step, finding) in steps.iter().zip(told) {
+            let Some(mut finding) = finding else { continue };
+            let broken = Broken { statement, relation: step.relation, others: &held };
+            finding.fixes = self.fixes(step, &finding, &broken, eyes, source);
+            let differs = finding.verdict.as_ref().is_some_and(|verdict| verdict.verdict == "differs");
+            if differs && givens.is_empty() && step.claims.as_ref().is_ok_and(|claims| claims.len() == 1) {
+                self.open.push(step.clone());
+            }
+            if let Some(signs) = self.other_signs(step, &finding, source.text) {
+                finding.message.push_str(&format!("; it holds with the other sign {signs}"));
+            }
+            found.push(finding);
+        }
         // In a note nobody has asked; an ordinary page is no derivation.
         found.retain(|finding| asked != Asked::Quietly || finding.severity != Severity::Hint);
         self.surroundings.world.givens.clear();
@@ -78,6 +107,82 @@ impl<'m> StepJudge<'m> {
         let claims = relations_of(statement, eyes, &mut self.surroundings);
         let given = |(left, right)| LabelledGiven(Given { label: label.to_owned(), left, right: Some(right) });
         claims.into_iter().map(given).collect()
+    }
+
+    /// Takes a definition of the conventions.
+    ///
+    /// # Errors
+    /// The name, if it is defined by itself.
+    pub fn declared(&mut self, statement: &Statement, eyes: &Eyes<'_>) -> Result<(), CompactString> {
+        conventions::take(statement, eyes, &mut self.surroundings)
+    }
+
+    /// Whether a step of the last statement that was not shown, the one with this sign, holds under something given.
+    /// Nothing if there is no such step.
+    pub fn holds_with(&self, sign: Span, givens: &[LabelledGiven], text: &str) -> Option<bool> {
+        let step = self.open.iter().find(|step| step.sign == sign)?;
+        let (left, right) = step.claims.as_ref().ok()?.first()?;
+        let mut world = self.surroundings.world.clone();
+        world.givens = givens.iter().map(|given| given.0.clone()).collect();
+        world.dimensions = dimensions(&world, &[left, right], step.antisymmetrised);
+        Some(self.holds(step, text, left, right, world))
+    }
+
+    /// Whether two expressions are equal in a world, with the work of a verdict about an edit.
+    fn holds(&self, step: &Step, text: &str, left: &Expression, right: &Expression, world: World) -> bool {
+        let begun = self.begun;
+        let stop = || begun.is_some_and(|begun| begun.elapsed() > DOCUMENT_TIME);
+        let limits =
+            Limits { total: REPAIR_WORK[1], trials: 0, stop: Some(&stop), ..Limits::seeded(seed(step, text)) };
+        let claim = Claim { left: left.clone(), right: right.clone(), world };
+        matches!(verdict::judge(&claim, &limits), Verdict::Holds { undefined, .. } if undefined.is_empty())
+    }
+
+    /// Other signs of the curvature with which a step holds that does not under those in force.
+    fn other_signs(&self, step: &Step, finding: &Finding, text: &str) -> Option<&'static str> {
+        finding.verdict.as_ref().filter(|verdict| verdict.verdict != "undecided")?;
+        let [(left, right)] = step.claims.as_ref().ok()?.as_slice() else { return None };
+        let world = &self.surroundings.world;
+        if !has_curvature(world, [left, right]) {
+            return None;
+        }
+        let holds = |signs| {
+            let dimensions = dimensions(world, &[left, right], step.antisymmetrised);
+            self.holds(step, text, left, right, World { signs, dimensions, ..world.clone() })
+        };
+        other_signs(world.signs).into_iter().find(|(signs, _)| holds(*signs)).map(|(_, said)| said)
+    }
+
+    /// What would make a step hold, if it fails.
+    fn fixes(
+        &mut self,
+        step: &Step,
+        finding: &Finding,
+        broken: &Broken<'_>,
+        eyes: &Eyes<'_>,
+        source: &Source<'_>,
+    ) -> Vec<Fix> {
+        let verdict = finding.verdict.as_ref().filter(|verdict| matches!(verdict.verdict, "fails" | "needs dimension"));
+        let dimension = verdict.and_then(|verdict| verdict.fails.first().copied());
+        let (Some(dimension), Some(left)) = (dimension, self.mended.checked_sub(1)) else { return Vec::new() };
+        self.mended = left;
+        let (begun, seed) = (self.begun, seed(step, source.text));
+        let holds = |surroundings: &Surroundings<'_>, left: &Expression, right: &Expression, look: Look| {
+            let mut world = surroundings.world.clone();
+            world.dimensions = match look {
+                Look::Once => vec![dimension],
+                Look::InFull => dimensions(&world, &[left, right], step.antisymmetrised),
+            };
+            let stop = || begun.is_some_and(|begun| begun.elapsed() > DOCUMENT_TIME);
+            let usual = Limits { trials: 0, stop: Some(&stop), ..Limits::seeded(seed) };
+            let limits = match look {
+                Look::Once => Limits { total: REPAIR_WORK[0], draws: 1, ..usual },
+                Look::InFull => Limits { total: REPAIR_WORK[1], ..usual },
+            };
+            let claim = Claim { left: left.clone(), right: right.clone(), world };
+            matches!(verdict::judge(&claim, &limits), Verdict::Holds { undefined, .. } if undefined.is_empty())
+        };
+        repairs(broken, eyes, source, &self.surroundings, &holds)
     }
 
     fn step(&mut self, step: &Step, text: &str) -> Option<Finding> {

@@ -170,6 +170,12 @@ impl<'a> Surroundings<'a> {
         self.definitions.insert((kernel.clone(), slots), self.world.definitions.len() - 1);
     }
 
+    /// Takes the last definition back, which is that of this kernel: the kernel is an arbitrary field again.
+    pub fn forget_last_definition(&mut self, kernel: &CompactString, slots: usize) {
+        self.world.definitions.pop();
+        self.definitions.remove(&(kernel.clone(), slots));
+    }
+
     /// The field of a kernel with these slots; what it is on is what it was first used with, or declared with.
     pub fn field(&mut self, kernel: &CompactString, slots: &[(usize, Level)], exchanges: Vec<SlotSymmetry>) -> usize {
         let key = (kernel.clone(), slots.len());

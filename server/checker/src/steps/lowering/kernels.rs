@@ -81,8 +81,10 @@ impl Lowering<'_, '_, '_> {
             self.move_slots(&slots, own.unwrap_or_default().iter().map(|index| index.level));
             return Ok(Expression::Defined { definition, slots });
         }
-        let role = self.surroundings.meanings.known(&made.kernel, slots.len()).and_then(|known| known.role.clone());
-        let declared = self.surroundings.meanings.known(&made.kernel, slots.len()).is_some();
+        let known = self.surroundings.meanings.known(&made.kernel, slots.len());
+        let role = known.and_then(|known| known.role.clone());
+        // A definition alone does not make a kernel another than it is by custom.
+        let declared = known.is_some_and(|known| known.is_settled() || known.traceless);
         match role {
             Some(Role::Metric { .. }) => return self.metric(made, &slots),
             Some(Role::Christoffel) => return self.christoffel(made, slots),
@@ -245,7 +247,8 @@ impl Lowering<'_, '_, '_> {
         let known = self.surroundings.meanings.known(kernel, slots.len());
         let part = known.is_some_and(|known| known.role.is_some());
         let made = Use { kernel: kernel.clone(), letter: kernel.clone(), ..Use::default() };
-        let custom = known.is_none() && self.by_custom(&made, slots).is_ok_and(|value| value.is_some());
+        let declared = known.is_some_and(|known| known.is_settled() || known.traceless);
+        let custom = !declared && self.by_custom(&made, slots).is_ok_and(|value| value.is_some());
         let epsilon = self.epsilon(&made, slots).is_some();
         self.surroundings.is_defined(kernel, slots.len()) || part || custom || epsilon
     }

@@ -1,0 +1,139 @@
+//! Definitions among the conventions, and which signs of the curvature they choose.
+//!
+//! `R^i{}_{jkl} := ..` is compared with the curvature tensor in either sign: if it is one of them, all that follows
+//! from the curvature tensor takes that sign too. Else it is a definition as any other, and what is built in knows
+//! nothing of it. The same is asked the other way round of a step that fails: whether it holds with other signs.
+
+use compact_str::CompactString;
+use indexwise_algebra::expression::{Curvature, Expression, World};
+use indexwise_algebra::geometry::Signs;
+use indexwise_algebra::verdict::{self, Claim, Limits, Verdict};
+use indexwise_grammar::tree::Statement;
+
+use crate::terms::Eyes;
+
+use super::claims::{Asked, lone_factor, pair, steps_of};
+use super::lowering::{Lowering, Reach};
+use super::world::Surroundings;
+
+/// Multiplications for the comparison of a definition with a curvature.
+const WORK: u64 = 30_000_000;
+/// The dimension of the comparison: the smallest in which no sign is lost.
+const DIMENSION: usize = 3;
+
+/// Takes a definition of the conventions.
+///
+/// # Errors
+/// The name, if it is defined by itself.
+pub(super) fn take(
+    statement: &Statement,
+    eyes: &Eyes<'_>,
+    surroundings: &mut Surroundings<'_>,
+) -> Result<(), CompactString> {
+    if let Some(signs) = signs_of(statement, eyes, surroundings) {
+        surroundings.world.signs = signs;
+        return Ok(());
+    }
+    let before = surroundings.world.definitions.len();
+    steps_of(statement, eyes, surroundings, Asked::Nothing);
+    let is_new = surroundings.world.definitions.len() > before;
+    let Some((name, slots)) = surroundings.world.definitions.last().filter(|_| is_new).map(|definition| {
+        (CompactString::new(&definition.name), definition.free.len())
+    }) else {
+        return Ok(());
+    };
+    if is_cyclic(&surroundings.world, &name, slots) {
+        surroundings.forget_last_definition(&name, slots);
+        return Err(name);
+    }
+    Ok(())
+}
+
+/// Whether the last definition comes back to its own name through those before it.
+fn is_cyclic(world: &World, name: &str, slots: usize) -> bool {
+    let mut pending: Vec<&Expression> = world.definitions.last().map(|last| &last.body).into_iter().collect();
+    let mut seen = vec![false; world.definitions.len()];
+    while let Some(part) = pending.pop() {
+        match part {
+            Expression::Field { field, slots: own } => {
+                if own.len() == slots && world.fields.get(*field).is_some_and(|field| field.name == name) {
+                    return true;
+                }
+            }
+            Expression::Defined { definition, .. } => {
+                if let (Some(definition), Some(seen)) = (world.definitions.get(*definition), seen.get_mut(*definition))
+                    && !std::mem::replace(seen, true)
+                {
+                    pending.push(&definition.body);
+                }
+            }
+            _ => {}
+        }
+        pending.extend(part.parts());
+    }
+    false
+}
+
+/// The signs that a definition of the curvature or of the Ricci tensor chooses, if it is one.
+fn signs_of(statement: &Statement, eyes: &Eyes<'_>, surroundings: &Surroundings<'_>) -> Option<Signs> {
+    let [left, right] = statement.sides.as_slice() else { return None };
+    lone_factor(left)?;
+    // What is registered on the way must not stay: the definition may be one of a metric.
+    let mut trial = surroundings.clone();
+    let (new, body) = pair(&mut Lowering::new(&mut trial, eyes, Reach::Near), left, right).ok()?;
+    let Expression::Curvature { kind: kind @ (Curvature::Riemann | Curvature::Ricci), .. } = new else { return None };
+    let now = trial.world.signs;
+    let other = match kind {
+        Curvature::Riemann => Signs { riemann_reversed: !now.riemann_reversed, ..now },
+        _ => Signs { ricci_reversed: !now.ricci_reversed, ..now },
+    };
+    let fits = |signs: &Signs| {
+        let world = World { signs: *signs, dimensions: vec![DIMENSION], givens: Vec::new(), ..trial.world.clone() };
+        let claim = Claim { left: new.clone(), right: body.clone(), world };
+        let limits = Limits { total: WORK, trials: 0, ..Limits::seeded(1) };
+        matches!(verdict::judge(&claim, &limits), Verdict::Holds { .. })
+    };
+    [now, other].into_iter().find(fits)
+}
+
+/// Whether an expression speaks of the curvature.
+pub(super) fn has_curvature(world: &World, sides: [&Expression; 2]) -> bool {
+    let mut pending = sides.to_vec();
+    let mut seen = vec![false; world.definitions.len()];
+    while let Some(part) = pending.pop() {
+        match part {
+            Expression::Curvature { .. } => return true,
+            Expression::Defined { definition, .. } => {
+                if let (Some(definition), Some(seen)) = (world.definitions.get(*definition), seen.get_mut(*definition))
+                    && !std::mem::replace(seen, true)
+                {
+                    pending.push(&definition.body);
+                }
+            }
+            _ => {}
+        }
+        pending.extend(part.parts());
+    }
+    false
+}
+
+/// The other usual signs of the curvature: which they are, and how each is declared.
+pub(super) fn other_signs(now: Signs) -> [(Signs, &'static str); 3] {
+    let riemann = Signs { riemann_reversed: !now.riemann_reversed, ..now };
+    let ricci = Signs { ricci_reversed: !now.ricci_reversed, ..now };
+    let both = Signs { ricci_reversed: !now.ricci_reversed, ..riemann };
+    let said = |reversed: bool, one: &'static str, other: &'static str| if reversed { one } else { other };
+    [
+        (riemann, said(riemann.riemann_reversed, RIEMANN_REVERSED, RIEMANN)),
+        (ricci, said(ricci.ricci_reversed, RICCI_REVERSED, RICCI)),
+        (both, "of the curvature tensor and of the Ricci tensor, each declared by its definition"),
+    ]
+}
+
+const RIEMANN: &str = "of the curvature tensor, declared by R^i{}_{jkl} := \\partial_k \\Gamma^i_{jl} - \\partial_l \
+                       \\Gamma^i_{jk} + \\Gamma^i_{km} \\Gamma^m_{jl} - \\Gamma^i_{lm} \\Gamma^m_{jk}";
+const RIEMANN_REVERSED: &str = "of the curvature tensor, declared by R^i{}_{jkl} := \\partial_l \\Gamma^i_{jk} - \
+                                \\partial_k \\Gamma^i_{jl} + \\Gamma^i_{lm} \\Gamma^m_{jk} - \\Gamma^i_{km} \
+                                \\Gamma^m_{jl}";
+const RICCI: &str = "of the Ricci tensor, declared by R_{jl} := R^i{}_{jil}";
+const RICCI_REVERSED: &str = "of the Ricci tensor, declared by R_{jl} := R^i{}_{jli}";
