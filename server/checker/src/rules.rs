@@ -45,7 +45,7 @@ use crate::ledger::Judged;
 use crate::sketch::Sketch;
 use crate::terms::Flattened;
 
-pub(crate) use convention_clash::convention_clash;
+pub(crate) use convention_clash::{convention_clash, defined_by_itself};
 pub(crate) use convention_unreadable::{convention_unreadable, unknown_name};
 pub(crate) use idle_allow::idle_allow;
 pub(crate) use missing_part::missing_part;

@@ -179,10 +179,12 @@ impl Search<'_, '_> {
         let other = Sum::of(vec![other.clone()]);
         let mut lowering = Lowering::new(&mut self.surroundings, self.eyes, Reach::Near);
         let Ok((one, two)) = pair(&mut lowering, new, &other) else { return false };
-        coefficients::ratios().flat_map(|ratio| [Some(ratio), Rational::ZERO.checked_sub(ratio)]).flatten().any(|ratio| {
-            let scaled = Expression::Product(vec![Expression::Number(ratio), two.clone()]);
-            (self.holds)(&self.surroundings, &one, &scaled, Look::Once)
-        })
+        coefficients::ratios().flat_map(|ratio| [Some(ratio), Rational::ZERO.checked_sub(ratio)]).flatten().any(
+            |ratio| {
+                let scaled = Expression::Product(vec![Expression::Number(ratio), two.clone()]);
+                (self.holds)(&self.surroundings, &one, &scaled, Look::Once)
+            },
+        )
     }
 
     /// Whether an edit says something, and its text says the same as its tree.
@@ -206,7 +208,9 @@ impl Search<'_, '_> {
         if changed.iter().any(|term| self.equal(term, &zero, Look::Once)) {
             return false;
         }
-        if change.kind == Kind::NewTerm && changed.iter().any(|term| before.iter().any(|other| self.is_alike(term, other))) {
+        if change.kind == Kind::NewTerm
+            && changed.iter().any(|term| before.iter().any(|other| self.is_alike(term, other)))
+        {
             return false;
         }
         let mut edited = self.broken.statement.clone();

@@ -20,13 +20,19 @@ const IDENTITIES: [(&str, &str); 20] = [
     (FLAT, r"\epsilon_{ijk} \epsilon_{imn} = \delta_{jm} \delta_{kn} - \delta_{jn} \delta_{km}"),
     (FLAT, r"\epsilon_{ijk} \epsilon_{ijn} = 2 \delta_{kn}"),
     (FLAT, r"A_{ij} v_j + A_{ji} v_j = 2 A_{ij} v_j"),
-    (FLAT, r"\epsilon_{ijk} \epsilon_{klm} \partial_j \partial_l v_m = \partial_i \partial_j v_j - \partial_j \partial_j v_i"),
+    (
+        FLAT,
+        r"\epsilon_{ijk} \epsilon_{klm} \partial_j \partial_l v_m = \partial_i \partial_j v_j - \partial_j \partial_j v_i",
+    ),
     (FLAT, r"\partial_i (f v_i) = f \partial_i v_i + v_i \partial_i f"),
     (FLAT, r"F_{ij} B_{ij} = \frac{1}{2} F_{ij} (B_{ij} - B_{ji})"),
     (FLAT, r"\partial_i (v_j v_j) = 2 v_j \partial_i v_j"),
     (FLAT, r"(v_i w_j - v_j w_i) v_j = v_i w_j v_j - w_i v_j v_j"),
     (FLAT, r"\partial_j (f A_{ij}) - f \partial_j A_{ij} = A_{ij} \partial_j f"),
-    (FLAT, r"\partial_i \partial_i (f h) = h \partial_i \partial_i f + 2 (\partial_i f) (\partial_i h) + f \partial_i \partial_i h"),
+    (
+        FLAT,
+        r"\partial_i \partial_i (f h) = h \partial_i \partial_i f + 2 (\partial_i f) (\partial_i h) + f \partial_i \partial_i h",
+    ),
     (CURVED, r"\nabla_i V^j = \partial_i V^j + \Gamma^j_{ik} V^k"),
     (CURVED, r"\nabla_i W_j = \partial_i W_j - \Gamma^k_{ij} W_k"),
     (CURVED, r"\nabla_k T_{ij} = \partial_k T_{ij} - \Gamma^l_{ki} T_{lj} - \Gamma^l_{kj} T_{il}"),
@@ -113,7 +119,10 @@ fn the_original_is_offered_for_most_single_edits() {
     let mut mended_identities = 0;
     for (declared, formula) in IDENTITIES {
         let sound = findings(&document(declared, formula));
-        if !sound.is_empty() { writeln!(report, "UNSOUND {formula}: {}", sound[0].message).unwrap(); continue; }
+        if !sound.is_empty() {
+            writeln!(report, "UNSOUND {formula}: {}", sound[0].message).unwrap();
+            continue;
+        }
         let mut any = false;
         for wrong in corruptions(formula) {
             let text = document(declared, &wrong);
@@ -126,7 +135,10 @@ fn the_original_is_offered_for_most_single_edits() {
             failing += 1;
             assert!(finding.fixes.len() <= 3);
             for fix in &finding.fixes {
-                let after = findings(&applied(&text, fix)); if !after.is_empty() { writeln!(report, "HARM {wrong}: {}: {}", fix.title, after[0].message).unwrap(); }
+                let after = findings(&applied(&text, fix));
+                if !after.is_empty() {
+                    writeln!(report, "HARM {wrong}: {}: {}", fix.title, after[0].message).unwrap();
+                }
             }
             let original = bare(&document(declared, formula));
             if finding.fixes.iter().any(|fix| bare(&applied(&text, fix)) == original) {

@@ -74,7 +74,9 @@ fn derivative(factor: &Factor, page: &Page<'_>) -> Option<(CompactString, bool)>
     let Atom::Kernel(kernel) = &factor.atom else { return None };
     let slots = letters(factor, page);
     match slots.as_slice() {
-        [(Level::Down, letter)] if is_derivative(&kernel.letter) => Some((letter.clone(), kernel.letter != "\\partial")),
+        [(Level::Down, letter)] if is_derivative(&kernel.letter) => {
+            Some((letter.clone(), kernel.letter != "\\partial"))
+        }
         _ => None,
     }
 }
