@@ -156,9 +156,11 @@ fn power_of(script: &Script, carrier: Carrier<'_>, all: &[Script]) -> Option<Pow
         {
             Some(Power::Other)
         }
-        // `x^{2n}`, `(..)^{2\alpha}`.
-        [Item { kind: ItemKind::Number(_), .. }, Item { kind: ItemKind::Letter(_), .. }]
-            if carrier.group || (all.len() == 1 && !matches!(carrier.letter, "T" | "R" | "G" | "g" | "h" | "F")) =>
+        // `x^{2n}`, `(..)^{2\alpha}`; nobody multiplies by 0 or 1, `S^{1j}`.
+        [Item { kind: ItemKind::Number(number), .. }, Item { kind: ItemKind::Letter(_), .. }]
+            if !matches!(number.as_str(), "0" | "1")
+                && (carrier.group
+                    || all.len() == 1 && !matches!(carrier.letter, "T" | "R" | "G" | "g" | "h" | "F")) =>
         {
             Some(Power::Other)
         }
