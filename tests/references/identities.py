@@ -586,6 +586,7 @@ def variations():
     fA, dfA = now(A), vary(A)
     both('vary-scalar', vary(e('a,b->ab', A, A)), e('a,b->ab', fA, dfA) + e('a,b->ab', dfA, fA),
          e('a,b->ab', fA, dfA) - e('a,b->ab', dfA, fA))
+    both('vary-square', vary(f * f), 2 * now(f)[()] * vary(f), now(f)[()] * vary(f))
     df, dv = now(d(f)), d(vary(f))
     both('vary-gradient', vary(e('a,b->ab', d(f), d(f))), e('a,b->ab', dv, df) + e('a,b->ab', df, dv),
          e('a,b->ab', dv, df) + e('b,a->ab', df, dv))

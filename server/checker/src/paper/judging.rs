@@ -1,6 +1,7 @@
 //! One document judged: every statement read at its cheapest, the rules asked, the symbols gathered.
 
 use std::borrow::Cow;
+use std::ops::Range;
 
 use compact_str::CompactString;
 use indexwise_grammar::conventions::{Name, Sentence};
@@ -77,10 +78,15 @@ pub(super) fn judge_document<'d>(
         about: Vec::new(),
     };
     judge.prepare_steps(settings.steps);
+    let skipped = skipped(&document.read.declared, formulas);
+    let mut plain = 0;
     for statement in &document.statements {
+        judge.steps_without_letters(plain..statement.formula, &skipped);
+        plain = plain.max(statement.formula);
         let reading = statement.read(&judge.scores);
         judge.statement(statement, reading);
     }
+    judge.steps_without_letters(plain..formulas.len(), &skipped);
     if prices.declared.meanings.has_numbered_ranges() || settings.symbols {
         judge.statements_without_letters();
     }
@@ -141,6 +147,31 @@ impl<'d> Judge<'d> {
             let eyes = Eyes::new(&sketch, &reading.choice, &self.prices, self.customs);
             if let Err(name) = steps.declared(statement, &eyes) {
                 self.about.push(rules::defined_by_itself(*span, &name));
+            }
+        }
+    }
+
+    /// The steps of statements without a letter in their scripts, which have no sketch; between the others in the order
+    /// of formulas, for they may define something.
+    fn steps_without_letters(&mut self, formulas: Range<usize>, skipped: &FxHashSet<usize>) {
+        let (read, sketched) = (self.document.read, &self.document.statements);
+        if self.steps.is_none() {
+            return;
+        }
+        for number in formulas.filter(|number| !skipped.contains(number)) {
+            let Some(formula) = read.document.formulas.get(number) else { return };
+            // Statements are in the order of their formulas.
+            let first = sketched.partition_point(|other| other.formula < number);
+            let beside = sketched.get(first..).unwrap_or_default().iter().take_while(|other| other.formula == number);
+            let spans: Vec<Span> = beside.map(|other| other.sketch.span).collect();
+            for statement in self.trees.statements(read, number).to_vec() {
+                let sketch = Sketch::of(&statement);
+                if spans.contains(&statement.span) || sketch.unjudged.is_some() {
+                    continue;
+                }
+                let (sketch, reading) = (Cow::Owned(sketch), Reading::default());
+                let (prices, faults) = (self.prices, Vec::new());
+                self.steps(number, &Judged { text: read.text, formula, sketch, reading, prices, faults });
             }
         }
     }
