@@ -7,6 +7,7 @@
 mod claims;
 mod lowering;
 mod report;
+mod standing;
 mod world;
 
 pub use claims::{Asked, Step, steps_of};

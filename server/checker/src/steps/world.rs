@@ -40,6 +40,11 @@ enum FamilyKey {
     Levelled,
 }
 
+/// Whether a kernel is a position by custom: its derivatives are no arbitrary fields, whatever is declared of it.
+fn is_position(kernel: &str, slots: usize) -> bool {
+    slots == 1 && matches!(kernel, "x" | "X" | "y" | "r")
+}
+
 /// Dimensions that are tried where none is declared.
 const DIMENSIONS: [usize; 3] = [2, 3, 4];
 
@@ -170,6 +175,11 @@ impl<'a> Surroundings<'a> {
         self.definitions.insert((kernel.clone(), slots), self.world.definitions.len() - 1);
     }
 
+    /// Forgets what a kernel with so many slots is defined as.
+    pub fn forget(&mut self, kernel: &CompactString, slots: usize) {
+        self.definitions.remove(&(kernel.clone(), slots));
+    }
+
     /// The field of a kernel with these slots; what it is on is what it was first used with, or declared with.
     pub fn field(&mut self, kernel: &CompactString, slots: &[(usize, Level)], exchanges: Vec<SlotSymmetry>) -> usize {
         let key = (kernel.clone(), slots.len());
@@ -186,7 +196,7 @@ impl<'a> Surroundings<'a> {
             constant: is(Kind::Constant),
             small: is(Kind::Small),
             varies: true,
-            known: known.is_some_and(Known::is_settled),
+            known: known.is_some_and(Known::is_settled) && !is_position(kernel, slots.len()),
         };
         self.world.fields.push(field);
         let number = self.world.fields.len() - 1;
