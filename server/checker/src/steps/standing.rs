@@ -12,7 +12,7 @@ use indexwise_grammar::tree::{Atom, Factor, Statement, Sum};
 use rustc_hash::FxHashSet;
 
 use crate::terms::Eyes;
-use crate::terms::uses::use_of;
+use crate::terms::uses::{Use, use_of};
 
 use super::claims::{Asked, is_zero};
 
@@ -124,13 +124,23 @@ pub(super) fn conditioned(statement: &Statement, eyes: &Eyes<'_>) -> Vec<Compact
 
 /// The kernels of a side.
 pub(super) fn kernels(side: &Sum, eyes: &Eyes<'_>) -> Vec<CompactString> {
+    uses(side, eyes).into_iter().map(|made| made.kernel).collect()
+}
+
+/// The letters in the slots of a side.
+pub(super) fn slot_letters(side: &Sum, eyes: &Eyes<'_>) -> Vec<CompactString> {
+    uses(side, eyes).iter().flat_map(|made| &made.slots).filter_map(|slot| slot.letter().cloned()).collect()
+}
+
+/// The kernels of a side with their slots.
+fn uses(side: &Sum, eyes: &Eyes<'_>) -> Vec<Use> {
     let mut out = Vec::new();
     let mut pending = vec![side];
     for _ in 0..PARTS {
         let Some(sum) = pending.pop() else { break };
         for factor in sum.terms.iter().flat_map(|term| &term.factors) {
             if let Atom::Kernel(kernel) = &factor.atom {
-                out.push(use_of(factor, kernel, eyes, false).kernel);
+                out.push(use_of(factor, kernel, eyes, false));
             }
             pending.extend(inside(factor));
         }

@@ -84,6 +84,13 @@ impl<'a> Surroundings<'a> {
         number
     }
 
+    /// The family of scalars where a statement has no levelled index: that of the declared metric, else of `\mu`.
+    pub fn levelled_family(&mut self) -> usize {
+        let declared = self.meanings.metrics().into_iter().find_map(|(_, known)| known.slots.first());
+        let letter = declared.map_or(CompactString::const_new("\\mu"), |slot| slot.letter.clone());
+        self.family(&letter, false)
+    }
+
     fn declared_family(&mut self, number: usize) -> Family {
         let Some(family) = self.meanings.families.get(number) else {
             return Family { size: Size::Dimension(0), coordinates: Some(0), metric: None };

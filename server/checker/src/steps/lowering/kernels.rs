@@ -108,7 +108,7 @@ impl Lowering<'_, '_, '_> {
                 self.metric(made, slots)?
             }
             ("g", []) if plain(made) => {
-                let family = self.surroundings.family("\\mu", false);
+                let family = self.levelled_family()?;
                 let metric = self.surroundings.metric_of(family);
                 if self.surroundings.world.metrics.get(metric).is_some_and(|metric| metric.name == "g") {
                     Expression::Determinant(metric)
@@ -167,7 +167,7 @@ impl Lowering<'_, '_, '_> {
         };
         let family = match slots.first() {
             Some(index) => index.family,
-            None => self.surroundings.family("\\mu", false),
+            None => self.levelled_family()?,
         };
         if slots.len() != count || slots.iter().any(|index| index.level == Level::Inert) {
             return Err(format!("{} with {} indices", made.kernel, slots.len()));
