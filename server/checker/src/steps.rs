@@ -10,6 +10,7 @@ mod conventions;
 mod lowering;
 mod repairs;
 mod report;
+mod standing;
 mod world;
 
 pub use claims::{Asked, Step, steps_of};

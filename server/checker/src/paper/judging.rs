@@ -134,6 +134,7 @@ impl<'d> Judge<'d> {
         if self.chains || !self.asked.is_empty() {
             self.steps = Some(StepJudge::new(&self.prices.declared.meanings));
             self.declared_definitions();
+            self.conditions();
         }
     }
 
@@ -173,6 +174,18 @@ impl<'d> Judge<'d> {
                 let (prices, faults) = (self.prices, Vec::new());
                 self.steps(number, &Judged { text: read.text, formula, sketch, reading, prices, faults });
             }
+        }
+    }
+
+    /// What the document states about fields without claiming it as a step.
+    fn conditions(&mut self) {
+        let Some(steps) = &mut self.steps else { return };
+        for place in self.document.statements.iter().filter(|place| !self.asked.contains(&place.formula)) {
+            let reading = place.read(&self.scores);
+            let eyes = Eyes::new(place.sketch, &reading.choice, &self.prices, self.customs);
+            self.trees.statement(self.document.read, place.formula, place.sketch.span, |statement| {
+                steps.condition(statement, &eyes);
+            });
         }
     }
 

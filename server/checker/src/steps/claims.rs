@@ -65,6 +65,9 @@ pub fn steps_of(
             Claim::Other => true,
         };
         let condition = (is_zero(left) || is_zero(right)) && asked != Asked::All;
+        if relation.claim() == Claim::Other {
+            loosen(statement, eyes, surroundings);
+        }
         if defines || condition || asked == Asked::Nothing {
             continue;
         }
@@ -78,8 +81,27 @@ pub fn steps_of(
         };
         lower(&mut step, left, right, eyes, surroundings);
         steps.push(step);
+        if number == 0 {
+            define_again(left, right, eyes, surroundings);
+        }
     }
     steps
+}
+
+/// What stands alone on the left of a statement that goes on with an approximation has no exact definition.
+fn loosen(statement: &Statement, eyes: &Eyes<'_>, surroundings: &mut Surroundings<'_>) {
+    let Some(factor) = statement.sides.first().and_then(lone_factor) else { return };
+    if let Some((kernel, slots)) = Lowering::new(surroundings, eyes, Reach::Near).lone_kernel(factor) {
+        surroundings.forget(&kernel, slots.len());
+    }
+}
+
+/// A letter that is set again means the later thing from there on.
+fn define_again(left: &Sum, right: &Sum, eyes: &Eyes<'_>, surroundings: &mut Surroundings<'_>) {
+    let lone = lone_factor(left).and_then(|factor| Lowering::new(surroundings, eyes, Reach::Near).lone_kernel(factor));
+    if lone.is_some_and(|(kernel, slots)| surroundings.is_defined(&kernel, slots.len())) {
+        define(left, right, eyes, surroundings, true);
+    }
 }
 
 /// Every equality of a statement, with derivatives that reach the next factor; those that cannot be lowered are left out.
@@ -122,6 +144,7 @@ pub(super) fn pair(
     left: &Sum,
     right: &Sum,
 ) -> Result<(Expression, Expression), String> {
+    lowering.survey([left, right]);
     match (is_zero(left), is_zero(right)) {
         (true, _) => {
             let right = lowering.side(right)?;
@@ -141,7 +164,7 @@ fn nothing_of(expression: &Expression) -> Expression {
     Expression::Product(vec![Expression::Number(Rational::ZERO), expression.clone()])
 }
 
-fn is_zero(side: &Sum) -> bool {
+pub(super) fn is_zero(side: &Sum) -> bool {
     lone_factor(side).is_some_and(|factor| matches!(&factor.atom, Atom::Number(number) if number == "0"))
 }
 
@@ -164,6 +187,7 @@ fn define(left: &Sum, right: &Sum, eyes: &Eyes<'_>, surroundings: &mut Surroundi
     if !said && (lowering.is_meant(&kernel, &slots) || is_zero(right)) {
         return false;
     }
+    lowering.survey([left, right]);
     match lowering.side(right) {
         Ok(body) if lowering.uses(&body, &kernel, slots.len()) => return said,
         Ok(body) => surroundings.define(&kernel, slots, body),

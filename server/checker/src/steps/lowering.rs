@@ -41,6 +41,8 @@ pub struct Lowering<'s, 'a, 'e> {
     surroundings: &'s mut Surroundings<'a>,
     eyes: &'e Eyes<'e>,
     reach: Reach,
+    /// Families of the levelled indices of the statement: what a scalar of geometry belongs to.
+    levelled: Vec<usize>,
     /// Letters by their labels.
     letters: Vec<CompactString>,
     /// Whether the reach of a derivative mattered.
@@ -59,12 +61,43 @@ const PERMUTATIONS: usize = 120;
 impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
     /// For one statement.
     pub fn new(surroundings: &'s mut Surroundings<'a>, eyes: &'e Eyes<'e>, reach: Reach) -> Self {
-        Self { surroundings, eyes, reach, letters: Vec::new(), reach_mattered: false, antisymmetrised: 0, depth: DEPTH }
+        Self {
+            surroundings,
+            eyes,
+            reach,
+            levelled: Vec::new(),
+            letters: Vec::new(),
+            reach_mattered: false,
+            antisymmetrised: 0,
+            depth: DEPTH,
+        }
     }
 
     /// The letters of the labels, in their order.
     pub fn letters(&self) -> &[CompactString] {
         &self.letters
+    }
+
+    /// Looks at the sides before they are lowered: which families of levelled indices they have.
+    pub fn survey(&mut self, sides: [&Sum; 2]) {
+        for letter in sides.into_iter().flat_map(|side| super::standing::slot_letters(side, self.eyes)) {
+            if self.eyes.is_cartesian(&letter) {
+                continue;
+            }
+            let family = self.surroundings.family(&letter, false);
+            if !self.levelled.contains(&family) {
+                self.levelled.push(family);
+            }
+        }
+    }
+
+    /// The family that a scalar of geometry belongs to, as the scalar curvature.
+    fn levelled_family(&mut self) -> Result<usize, Refusal> {
+        match self.levelled.as_slice() {
+            [] => Ok(self.surroundings.levelled_family()),
+            [one] => Ok(*one),
+            _ => Err("a scalar beside two kinds of indices".to_owned()),
+        }
     }
 
     /// Lowers a side.
@@ -135,7 +168,7 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
             }
             if matches!(made.kernel.as_str(), "\\Box" | "\\square") && factor.scripts.is_empty() {
                 let (of, taken) = self.acted_on(rest)?;
-                let family = self.surroundings.family("\\mu", false);
+                let family = self.levelled_family()?;
                 return Ok((self.twice_covariant(family, of), taken + 1));
             }
             if self.is_variation(&made, rest) {

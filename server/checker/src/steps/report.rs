@@ -12,7 +12,7 @@ use indexwise_algebra::expression::{Expression, Filling, Given, Size, World};
 use indexwise_algebra::verdict::{self, Claim, Limits, Unshown, Verdict};
 use indexwise_grammar::span::Span;
 use indexwise_grammar::tree::Statement;
-use rustc_hash::{FxHashMap, FxHasher};
+use rustc_hash::{FxHashMap, FxHashSet, FxHasher};
 
 use crate::conventions::meanings::Meanings;
 use crate::finding::{Counterexample, Finding, Fix, Related, Severity, StepVerdict};
@@ -24,6 +24,7 @@ use crate::terms::Eyes;
 use super::claims::{Asked, Step, relations_of, steps_of};
 use super::conventions::{self, has_curvature, other_signs};
 use super::repairs::{Broken, Look, Source, repairs};
+use super::standing::{conditioned, doubt, kernels};
 use super::world::Surroundings;
 
 /// Multiplications for the verdict of one step: about a second.
@@ -45,8 +46,12 @@ const MENDED: usize = 30;
 pub struct StepJudge<'m> {
     surroundings: Surroundings<'m>,
     known: FxHashMap<u64, Verdict>,
+    /// Kernels that the text states conditions on: they are no arbitrary fields.
+    conditioned: FxHashSet<CompactString>,
     /// The verdicts so far.
     pub counts: Steps,
+    /// Whether the step judged last may be a law.
+    law: bool,
     left: usize,
     mended: usize,
     /// The steps of the last statement that are not shown, by their signs.
@@ -62,8 +67,23 @@ impl<'m> StepJudge<'m> {
     /// For a document with these declarations.
     pub fn new(meanings: &'m Meanings) -> Self {
         let surroundings = Surroundings::new(meanings);
-        let (known, counts) = (FxHashMap::default(), Steps::default());
-        Self { surroundings, known, counts, left: STEPS, mended: MENDED, open: Vec::new(), begun: None }
+        Self {
+            surroundings,
+            known: FxHashMap::default(),
+            conditioned: FxHashSet::default(),
+            counts: Steps::default(),
+            law: false,
+            left: STEPS,
+            mended: MENDED,
+            open: Vec::new(),
+            begun: None,
+        }
+    }
+
+    /// Notes what a statement that is no claim puts under a condition; all statements come here before the first is
+    /// judged, for a condition may be stated after its use.
+    pub fn condition(&mut self, statement: &Statement, eyes: &Eyes<'_>) {
+        self.conditioned.extend(conditioned(statement, eyes));
     }
 
     /// Takes a statement: its definitions, and the findings about its claims. `givens` are statements that are taken as
@@ -78,7 +98,15 @@ impl<'m> StepJudge<'m> {
     ) -> Vec<Finding> {
         self.surroundings.world.givens = givens.iter().map(|given| given.0.clone()).collect();
         let steps = steps_of(statement, eyes, &mut self.surroundings, asked);
-        let told: Vec<Option<Finding>> = steps.iter().map(|step| self.step(step, source.text)).collect();
+        let mut told: Vec<Option<Finding>> = Vec::with_capacity(steps.len());
+        for step in &steps {
+            self.law = false;
+            told.push(self.step(step, source.text, asked));
+            // A law is a condition for what comes after it.
+            if self.law {
+                self.conditioned.extend(statement.sides.iter().take(2).flat_map(|side| kernels(side, eyes)));
+            }
+        }
         let held: Vec<(usize, bool)> =
             steps.iter().zip(&told).map(|(step, told)| (step.relation, told.is_none())).collect();
         self.open.clear();
@@ -184,7 +212,7 @@ impl<'m> StepJudge<'m> {
         repairs(broken, eyes, source, &self.surroundings, &holds)
     }
 
-    fn step(&mut self, step: &Step, text: &str) -> Option<Finding> {
+    fn step(&mut self, step: &Step, text: &str, asked: Asked) -> Option<Finding> {
         let begun = *self.begun.get_or_insert_with(Instant::now);
         let late = begun.elapsed() > DOCUMENT_TIME;
         self.left = self.left.saturating_sub(1);
@@ -206,7 +234,38 @@ impl<'m> StepJudge<'m> {
                 &StepVerdict { verdict: "differs", ..StepVerdict::default() },
             ));
         }
+        let sides = claims.first()?;
+        if let Verdict::Fails(found) = first
+            && let Some((why, names)) = self.doubt(step, sides, asked)
+        {
+            return Some(self.doubted(step, first, found.dimension, &why, names));
+        }
+        if let Verdict::NeedsDimension { .. } = first
+            && asked != Asked::All
+            && (is_number(&sides.0) || is_number(&sides.1))
+        {
+            // The value of a scalar tells the dimension that the author means.
+            self.counts.holds += 1;
+            return None;
+        }
         self.finding(step, first)
+    }
+
+    fn doubt(&self, step: &Step, sides: &(Expression, Expression), asked: Asked) -> Option<(String, Vec<String>)> {
+        let world = &self.surroundings.world;
+        doubt((&sides.0, &sides.1), world, &self.conditioned, step.relation == 0, asked)
+    }
+
+    /// A difference that need not be a mistake.
+    fn doubted(&mut self, step: &Step, verdict: &Verdict, dimension: usize, why: &str, names: Vec<String>) -> Finding {
+        self.counts.undecided += 1;
+        self.law = step.relation == 0;
+        let mut view = self.view(step, verdict);
+        view.verdict = "differs";
+        view.fails = vec![dimension];
+        let message = format!("this step does not hold for arbitrary fields: {why} {}", listed(&names));
+        view.assumptions = names;
+        told(rules::step_not_shown(step.sign, message), step, &view)
     }
 
     fn judged(&mut self, step: &Step, text: &str, left: &Expression, right: &Expression) -> Verdict {
@@ -336,6 +395,15 @@ impl<'m> StepJudge<'m> {
             left: found.left.to_string(),
             right: found.right.to_string(),
         }
+    }
+}
+
+/// Whether a side is a plain number, perhaps with a sign.
+fn is_number(side: &Expression) -> bool {
+    match side {
+        Expression::Number(_) => true,
+        Expression::Product(parts) => parts.iter().all(|part| matches!(part, Expression::Number(_))),
+        _ => false,
     }
 }
 

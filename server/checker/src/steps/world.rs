@@ -40,6 +40,11 @@ enum FamilyKey {
     Levelled,
 }
 
+/// Whether a kernel is a position by custom: its derivatives are no arbitrary fields, whatever is declared of it.
+fn is_position(kernel: &str, slots: usize) -> bool {
+    slots == 1 && matches!(kernel, "x" | "X" | "y" | "r")
+}
+
 /// Dimensions that are tried where none is declared.
 const DIMENSIONS: [usize; 3] = [2, 3, 4];
 
@@ -77,6 +82,13 @@ impl<'a> Surroundings<'a> {
         let number = self.world.families.len() - 1;
         self.families.insert(key, number);
         number
+    }
+
+    /// The family of scalars where a statement has no levelled index: that of the declared metric, else of `\mu`.
+    pub fn levelled_family(&mut self) -> usize {
+        let declared = self.meanings.metrics().into_iter().find_map(|(_, known)| known.slots.first());
+        let letter = declared.map_or(CompactString::const_new("\\mu"), |slot| slot.letter.clone());
+        self.family(&letter, false)
     }
 
     fn declared_family(&mut self, number: usize) -> Family {
@@ -176,6 +188,11 @@ impl<'a> Surroundings<'a> {
         self.definitions.remove(&(kernel.clone(), slots));
     }
 
+    /// Forgets what a kernel with so many slots is defined as.
+    pub fn forget(&mut self, kernel: &CompactString, slots: usize) {
+        self.definitions.remove(&(kernel.clone(), slots));
+    }
+
     /// The field of a kernel with these slots; what it is on is what it was first used with, or declared with.
     pub fn field(&mut self, kernel: &CompactString, slots: &[(usize, Level)], exchanges: Vec<SlotSymmetry>) -> usize {
         let key = (kernel.clone(), slots.len());
@@ -192,7 +209,7 @@ impl<'a> Surroundings<'a> {
             constant: is(Kind::Constant),
             small: is(Kind::Small),
             varies: true,
-            known: known.is_some_and(Known::is_settled),
+            known: known.is_some_and(Known::is_settled) && !is_position(kernel, slots.len()),
         };
         self.world.fields.push(field);
         let number = self.world.fields.len() - 1;

@@ -38,6 +38,9 @@ impl Lowering<'_, '_, '_> {
             return Err(format!("{} does not commute", made.kernel));
         }
         let arguments = usize::from(rest.first().is_some_and(|next| self.is_argument(&made, next)));
+        if arguments == 0 && rest.first().is_some_and(is_lone_letter_in_brackets) {
+            return Err(format!("what {} takes in brackets", made.kernel));
+        }
         let own: Vec<UsedSlot> = made.own_slots().cloned().collect();
         let slots: Vec<Index> = own.iter().map(|slot| self.index(slot)).collect::<Result<_, _>>()?;
         let value = self.meaning(&made, &own, slots)?;
@@ -109,7 +112,7 @@ impl Lowering<'_, '_, '_> {
                 self.metric(made, slots)?
             }
             ("g", []) if plain(made) => {
-                let family = self.surroundings.family("\\mu", false);
+                let family = self.levelled_family()?;
                 let metric = self.surroundings.metric_of(family);
                 if self.surroundings.world.metrics.get(metric).is_some_and(|metric| metric.name == "g") {
                     Expression::Determinant(metric)
@@ -131,6 +134,7 @@ impl Lowering<'_, '_, '_> {
                 self.curvature(made, conventions::Curvature::Einstein, slots.to_vec())?
             }
             ("i", []) if plain(made) => Expression::Imaginary,
+            ("x", [index]) if plain(made) && index.level != Level::Down => Expression::Coordinate(*index),
             (letter, []) if plain(made) && self.surroundings.meanings.dimensions.iter().any(|name| name == letter) => {
                 Expression::Dimension(self.surroundings.family("i", false))
             }
@@ -167,7 +171,7 @@ impl Lowering<'_, '_, '_> {
         };
         let family = match slots.first() {
             Some(index) => index.family,
-            None => self.surroundings.family("\\mu", false),
+            None => self.levelled_family()?,
         };
         if slots.len() != count || slots.iter().any(|index| index.level == Level::Inert) {
             return Err(format!("{} with {} indices", made.kernel, slots.len()));
@@ -267,6 +271,16 @@ impl Lowering<'_, '_, '_> {
         }
         false
     }
+}
+
+/// `(r)`: nobody puts a lone letter in brackets to multiply it.
+fn is_lone_letter_in_brackets(factor: &Factor) -> bool {
+    let Atom::Group(group) = &factor.atom else { return false };
+    let [part] = group.parts.as_slice() else { return false };
+    let [side] = part.sides.as_slice() else { return false };
+    let [term] = side.terms.as_slice() else { return false };
+    let lone = term.sign.is_none() && matches!(term.factors.as_slice(), [one] if matches!(one.atom, Atom::Kernel(_)));
+    lone && factor.joint == Joint::Beside && factor.scripts.is_empty()
 }
 
 /// One half.
