@@ -5,10 +5,10 @@ use std::borrow::Cow;
 use compact_str::CompactString;
 use indexwise_grammar::conventions::{Name, Sentence};
 use indexwise_grammar::hosts::Host;
-use indexwise_grammar::{read_formula, read_note_formula, read_region};
 use indexwise_grammar::span::Span;
 use indexwise_grammar::tree::{self, Formula};
 use indexwise_grammar::write::Dialect;
+use indexwise_grammar::{read_formula, read_note_formula, read_region};
 use rustc_hash::FxHashSet;
 
 use crate::conventions::inferred::Prices;
@@ -166,7 +166,15 @@ impl<'d> Judge<'d> {
             return;
         }
         for name in labels {
-            givens.extend(given(self.document, &self.scores, &self.prices, self.customs, &mut self.trees, steps, &name.text));
+            givens.extend(given(
+                self.document,
+                &self.scores,
+                &self.prices,
+                self.customs,
+                &mut self.trees,
+                steps,
+                &name.text,
+            ));
         }
         let read = self.document.read;
         let place =

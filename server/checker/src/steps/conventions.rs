@@ -37,9 +37,13 @@ pub(super) fn take(
     let before = surroundings.world.definitions.len();
     steps_of(statement, eyes, surroundings, Asked::Nothing);
     let is_new = surroundings.world.definitions.len() > before;
-    let Some((name, slots)) = surroundings.world.definitions.last().filter(|_| is_new).map(|definition| {
-        (CompactString::new(&definition.name), definition.free.len())
-    }) else {
+    let Some((name, slots)) = surroundings
+        .world
+        .definitions
+        .last()
+        .filter(|_| is_new)
+        .map(|definition| (CompactString::new(&definition.name), definition.free.len()))
+    else {
         return Ok(());
     };
     if is_cyclic(&surroundings.world, &name, slots) {

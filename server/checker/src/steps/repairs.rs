@@ -72,18 +72,24 @@ pub(super) fn repairs(
     surroundings: &Surroundings<'_>,
     holds: &Holds<'_>,
 ) -> Vec<Fix> {
+    let eyes = &eyes.knowing(&missing::SUMMED);
     let page = Page { text: source.text, dialect: source.dialect, eyes };
     let mut search = Search { broken, eyes, source, surroundings: surroundings.clone(), holds };
     let mut kept: Vec<Change<(usize, Sum)>> = Vec::new();
+    // How many other steps an edit mends: one that mends two is surely the slip.
+    let mut others: Vec<usize> = Vec::new();
     let mut judged = 0;
     for change in search.candidates(&page) {
-        if judged == SURVIVORS || kept.iter().filter(|other| other.kind <= change.kind).count() > OFFERED {
+        if judged == SURVIVORS || kept.len() > 2 * OFFERED {
             break;
         }
         if search.passes(&change, Look::Once) {
             judged += 1;
             if search.is_sound(&change) && search.passes(&change, Look::InFull) {
-                kept.push(change);
+                let mended = search.others_mended(&change);
+                let at = others.iter().position(|other| *other < mended).unwrap_or(kept.len());
+                others.insert(at, mended);
+                kept.insert(at, change);
             }
         }
     }
@@ -158,6 +164,19 @@ impl Search<'_, '_> {
         })
     }
 
+    /// How many other steps that failed and share the edited side hold after an edit.
+    fn others_mended(&mut self, change: &Change<(usize, Sum)>) -> usize {
+        let (side, sum) = &change.of;
+        let broken = self.broken;
+        let failed = broken.others.iter().filter(|(number, held)| !*held && *number != broken.relation);
+        let beside = failed.map(|(number, _)| *number).filter(|number| number == side || number + 1 == *side);
+        let mended = beside.filter(|number| {
+            let side_of = |at: usize| if at == *side { Some(sum) } else { broken.statement.sides.get(at) };
+            side_of(*number).zip(side_of(number + 1)).is_some_and(|(left, right)| self.equal(left, right, Look::InFull))
+        });
+        mended.count()
+    }
+
     /// Whether two sides are equal, however far derivatives reach.
     fn equal(&mut self, left: &Sum, right: &Sum, look: Look) -> bool {
         for reach in [Reach::Near, Reach::Far] {
@@ -179,10 +198,12 @@ impl Search<'_, '_> {
         let other = Sum::of(vec![other.clone()]);
         let mut lowering = Lowering::new(&mut self.surroundings, self.eyes, Reach::Near);
         let Ok((one, two)) = pair(&mut lowering, new, &other) else { return false };
-        coefficients::ratios().flat_map(|ratio| [Some(ratio), Rational::ZERO.checked_sub(ratio)]).flatten().any(|ratio| {
-            let scaled = Expression::Product(vec![Expression::Number(ratio), two.clone()]);
-            (self.holds)(&self.surroundings, &one, &scaled, Look::Once)
-        })
+        coefficients::ratios().flat_map(|ratio| [Some(ratio), Rational::ZERO.checked_sub(ratio)]).flatten().any(
+            |ratio| {
+                let scaled = Expression::Product(vec![Expression::Number(ratio), two.clone()]);
+                (self.holds)(&self.surroundings, &one, &scaled, Look::Once)
+            },
+        )
     }
 
     /// Whether an edit says something, and its text says the same as its tree.
@@ -206,7 +227,9 @@ impl Search<'_, '_> {
         if changed.iter().any(|term| self.equal(term, &zero, Look::Once)) {
             return false;
         }
-        if change.kind == Kind::NewTerm && changed.iter().any(|term| before.iter().any(|other| self.is_alike(term, other))) {
+        if change.kind == Kind::NewTerm
+            && changed.iter().any(|term| before.iter().any(|other| self.is_alike(term, other)))
+        {
             return false;
         }
         let mut edited = self.broken.statement.clone();

@@ -132,8 +132,7 @@ impl<'m> StepJudge<'m> {
     fn holds(&self, step: &Step, text: &str, left: &Expression, right: &Expression, world: World) -> bool {
         let begun = self.begun;
         let stop = || begun.is_some_and(|begun| begun.elapsed() > DOCUMENT_TIME);
-        let limits =
-            Limits { total: REPAIR_WORK[1], trials: 0, stop: Some(&stop), ..Limits::seeded(seed(step, text)) };
+        let limits = Limits { total: REPAIR_WORK[1], trials: 0, stop: Some(&stop), ..Limits::seeded(seed(step, text)) };
         let claim = Claim { left: left.clone(), right: right.clone(), world };
         matches!(verdict::judge(&claim, &limits), Verdict::Holds { undefined, .. } if undefined.is_empty())
     }

@@ -49,7 +49,8 @@ pub(super) fn coefficients(term: &Term, page: &Page<'_>) -> Vec<Change<Term>> {
 
 /// The first number of a term.
 fn standing(term: &Term) -> Option<Standing> {
-    let plain = |factor: &Factor| if factor.scripts.is_empty() && factor.marks.is_empty() { value(factor) } else { None };
+    let plain =
+        |factor: &Factor| if factor.scripts.is_empty() && factor.marks.is_empty() { value(factor) } else { None };
     let at = term.factors.iter().position(|factor| plain(factor).is_some())?;
     let number = plain(term.factors.get(at)?)?;
     if term.factors.get(at)?.joint == Joint::Slash {

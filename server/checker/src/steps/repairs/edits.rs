@@ -169,10 +169,7 @@ fn exchanges(term: &Term, page: &Page<'_>) -> Vec<Change<Term>> {
             let mut copy = term.clone();
             put(&mut copy, one, &two.kind);
             put(&mut copy, two, &one.kind);
-            let edits = vec![
-                page.edit(one.span, two.span.of(page.text)),
-                page.edit(two.span, one.span.of(page.text)),
-            ];
+            let edits = vec![page.edit(one.span, two.span.of(page.text)), page.edit(two.span, one.span.of(page.text))];
             let (a, b) = (one.span.of(page.text), two.span.of(page.text));
             let span = |place: &Place| term.factors.get(place.factor).map(|factor| factor.span).unwrap_or_default();
             let beside = one.script == two.script && one.item + 1 == two.item;
@@ -267,13 +264,17 @@ fn inside(factor: &Factor, page: &Page<'_>) -> Vec<Change<Factor>> {
     };
     match &factor.atom {
         Atom::Group(group) => match group.parts.as_slice() {
-            [part] if part.sides.len() == 1 => part.sides.iter().flat_map(|side| {
-                changes(side, &|sum| {
-                    let mut group = group.clone();
-                    group.parts.iter_mut().for_each(|part| part.sides = vec![sum.clone()]);
-                    Atom::Group(group)
+            [part] if part.sides.len() == 1 => part
+                .sides
+                .iter()
+                .flat_map(|side| {
+                    changes(side, &|sum| {
+                        let mut group = group.clone();
+                        group.parts.iter_mut().for_each(|part| part.sides = vec![sum.clone()]);
+                        Atom::Group(group)
+                    })
                 })
-            }).collect(),
+                .collect(),
             _ => Vec::new(),
         },
         // A fraction of numbers is one number.
