@@ -18,7 +18,7 @@ use indexwise_grammar::write::{Dialect, write_statement, write_sum};
 use crate::finding::{Edit, Fix};
 use crate::terms::Eyes;
 
-use super::claims::pair;
+use super::claims::{is_zero, pair};
 use super::lowering::{Lowering, Reach};
 use super::world::Surroundings;
 use edits::{Change, Kind, Page};
@@ -225,6 +225,10 @@ impl Search<'_, '_> {
             .collect();
         let zero = Sum::of_factor(Factor::number(0));
         if changed.iter().any(|term| self.equal(term, &zero, Look::Once)) {
+            return false;
+        }
+        // Nor both sides together, unless one of them is written as 0.
+        if !sides.get(other).is_some_and(is_zero) && self.equal(sum, &zero, Look::Once) {
             return false;
         }
         if change.kind == Kind::NewTerm
