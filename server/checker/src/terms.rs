@@ -72,6 +72,16 @@ impl<'a> Eyes<'a> {
         eyes
     }
 
+    /// Eyes that take these letters for indices too, where the statement does not have them.
+    pub fn knowing(&self, letters: &[&str]) -> Self {
+        let mut anywhere = self.anywhere.clone();
+        for letter in letters {
+            anywhere.entry(CompactString::new(letter)).or_insert(true);
+        }
+        let (index, cartesian, left) = (self.index.clone(), self.cartesian.clone(), Cell::new(FACTORS));
+        Self { meanings: self.meanings, customs: self.customs, index, anywhere, cartesian, left }
+    }
+
     /// Whether the letter at a place is an index. Places that a macro made share a span; there the letter decides.
     pub fn is_index(&self, letter: &CompactString, span: Span) -> bool {
         let here = self.index.get(&(span.start, letter.clone())).copied();

@@ -164,6 +164,7 @@ fn nothing_of(expression: &Expression) -> Expression {
     Expression::Product(vec![Expression::Number(Rational::ZERO), expression.clone()])
 }
 
+/// Whether a side is the number 0.
 pub(super) fn is_zero(side: &Sum) -> bool {
     lone_factor(side).is_some_and(|factor| matches!(&factor.atom, Atom::Number(number) if number == "0"))
 }

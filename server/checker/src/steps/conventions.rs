@@ -59,10 +59,10 @@ fn is_cyclic(world: &World, name: &str, slots: usize) -> bool {
     let mut seen = vec![false; world.definitions.len()];
     while let Some(part) = pending.pop() {
         match part {
-            Expression::Field { field, slots: own } => {
-                if own.len() == slots && world.fields.get(*field).is_some_and(|field| field.name == name) {
-                    return true;
-                }
+            Expression::Field { field, slots: own }
+                if own.len() == slots && world.fields.get(*field).is_some_and(|field| field.name == name) =>
+            {
+                return true;
             }
             Expression::Defined { definition, .. } => {
                 if let (Some(definition), Some(seen)) = (world.definitions.get(*definition), seen.get_mut(*definition))

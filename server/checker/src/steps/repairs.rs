@@ -18,7 +18,7 @@ use indexwise_grammar::write::{Dialect, write_statement, write_sum};
 use crate::finding::{Edit, Fix};
 use crate::terms::Eyes;
 
-use super::claims::pair;
+use super::claims::{is_zero, pair};
 use super::lowering::{Lowering, Reach};
 use super::world::Surroundings;
 use edits::{Change, Kind, Page};
@@ -72,18 +72,24 @@ pub(super) fn repairs(
     surroundings: &Surroundings<'_>,
     holds: &Holds<'_>,
 ) -> Vec<Fix> {
+    let eyes = &eyes.knowing(&missing::SUMMED);
     let page = Page { text: source.text, dialect: source.dialect, eyes };
     let mut search = Search { broken, eyes, source, surroundings: surroundings.clone(), holds };
     let mut kept: Vec<Change<(usize, Sum)>> = Vec::new();
+    // How many other steps an edit mends: one that mends two is surely the slip.
+    let mut others: Vec<usize> = Vec::new();
     let mut judged = 0;
     for change in search.candidates(&page) {
-        if judged == SURVIVORS || kept.iter().filter(|other| other.kind <= change.kind).count() > OFFERED {
+        if judged == SURVIVORS || kept.len() > 2 * OFFERED {
             break;
         }
         if search.passes(&change, Look::Once) {
             judged += 1;
             if search.is_sound(&change) && search.passes(&change, Look::InFull) {
-                kept.push(change);
+                let mended = search.others_mended(&change);
+                let at = others.iter().position(|other| *other < mended).unwrap_or(kept.len());
+                others.insert(at, mended);
+                kept.insert(at, change);
             }
         }
     }
@@ -158,6 +164,19 @@ impl Search<'_, '_> {
         })
     }
 
+    /// How many other steps that failed and share the edited side hold after an edit.
+    fn others_mended(&mut self, change: &Change<(usize, Sum)>) -> usize {
+        let (side, sum) = &change.of;
+        let broken = self.broken;
+        let failed = broken.others.iter().filter(|(number, held)| !*held && *number != broken.relation);
+        let beside = failed.map(|(number, _)| *number).filter(|number| number == side || number + 1 == *side);
+        let mended = beside.filter(|number| {
+            let side_of = |at: usize| if at == *side { Some(sum) } else { broken.statement.sides.get(at) };
+            side_of(*number).zip(side_of(number + 1)).is_some_and(|(left, right)| self.equal(left, right, Look::InFull))
+        });
+        mended.count()
+    }
+
     /// Whether two sides are equal, however far derivatives reach.
     fn equal(&mut self, left: &Sum, right: &Sum, look: Look) -> bool {
         for reach in [Reach::Near, Reach::Far] {
@@ -206,6 +225,10 @@ impl Search<'_, '_> {
             .collect();
         let zero = Sum::of_factor(Factor::number(0));
         if changed.iter().any(|term| self.equal(term, &zero, Look::Once)) {
+            return false;
+        }
+        // Nor both sides together, unless one of them is written as 0.
+        if !sides.get(other).is_some_and(is_zero) && self.equal(sum, &zero, Look::Once) {
             return false;
         }
         if change.kind == Kind::NewTerm

@@ -11,7 +11,8 @@ use crate::conventions::built_in::is_derivative;
 use super::edits::{Change, Kind, Page};
 
 /// Letters that a new sum may take: whichever of them is free.
-const SUMMED: [&str; 12] = ["m", "n", "l", "p", "q", "r", "\\lambda", "\\sigma", "\\rho", "\\kappa", "a", "b"];
+pub(super) const SUMMED: [&str; 12] =
+    ["m", "n", "l", "p", "q", "r", "\\lambda", "\\sigma", "\\rho", "\\kappa", "a", "b"];
 
 /// A side with one more term at its end.
 pub(super) fn of_side(side: &Sum, page: &Page<'_>) -> Vec<Change<Sum>> {
@@ -26,7 +27,9 @@ fn appended(side: &Sum, term: Term, page: &Page<'_>) -> Option<Change<Sum>> {
     if !written.complete {
         return None;
     }
-    let by = format!(" {}", written.text.trim());
+    let text = written.text.trim();
+    let sign = text.get(..1).filter(|sign| matches!(*sign, "+" | "-"))?;
+    let by = format!(" {sign} {}", text.get(1..)?.trim_start());
     let end = Span { start: last.span.end, end: last.span.end };
     let mut copy = side.clone();
     copy.terms.push(term);
@@ -43,13 +46,15 @@ fn corrections(term: &Term, page: &Page<'_>) -> Vec<Term> {
         let Some((by, covariant)) = derivative(factor, page) else { continue };
         let slots = letters(of, page);
         for (level, letter) in &slots {
-            let Some(fresh) = fresh(term, letter) else { continue };
+            let Some(fresh) = fresh(term, letter, page) else { continue };
             let item = |letter: &CompactString| ItemKind::Letter(letter.clone());
             let (first, last) = if *level == Level::Up { (letter, &fresh) } else { (&fresh, letter) };
-            let symbol = Factor::kernel(
+            let mut symbol = Factor::kernel(
                 "\\Gamma",
                 &[(Level::Up, item(first)), (Level::Down, item(&by)), (Level::Down, item(last))],
             );
+            // Its slots are known: custom sets them one above the other.
+            symbol.scripts.iter_mut().for_each(|script| script.staggered = false);
             let mut moved = Term::of(vec![of.clone()]);
             if substitute_letter(&mut moved, letter, &item(&fresh)) != 1 {
                 continue;
@@ -96,16 +101,16 @@ fn letters(factor: &Factor, page: &Page<'_>) -> Vec<(Level, CompactString)> {
     found
 }
 
-/// A letter that the term does not use, of the kind of another.
-fn fresh(term: &Term, like: &str) -> Option<CompactString> {
+/// A letter that the term does not use, of the family of another.
+fn fresh(term: &Term, like: &str, page: &Page<'_>) -> Option<CompactString> {
     let mut used: Vec<CompactString> = Vec::new();
     each_item_mut(&mut term.clone(), &mut |item| {
         if let ItemKind::Letter(letter) = &item.kind {
             used.push(letter.clone());
         }
     });
-    let greek = like.starts_with('\\');
-    let free = |letter: &&&str| letter.starts_with('\\') == greek && !used.iter().any(|one| one == **letter);
+    let family = page.eyes.family_of(like);
+    let free = |letter: &&&str| page.eyes.family_of(letter) == family && !used.iter().any(|one| one == **letter);
     SUMMED.iter().find(free).map(|letter| CompactString::new(letter))
 }
 
