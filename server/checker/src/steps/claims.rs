@@ -144,7 +144,7 @@ pub(super) fn pair(
     left: &Sum,
     right: &Sum,
 ) -> Result<(Expression, Expression), String> {
-    lowering.survey([left, right]);
+    lowering.survey([left, right])?;
     match (is_zero(left), is_zero(right)) {
         (true, _) => {
             let right = lowering.side(right)?;
@@ -188,8 +188,7 @@ fn define(left: &Sum, right: &Sum, eyes: &Eyes<'_>, surroundings: &mut Surroundi
     if !said && (lowering.is_meant(&kernel, &slots) || is_zero(right)) {
         return false;
     }
-    lowering.survey([left, right]);
-    match lowering.side(right) {
+    match lowering.survey([left, right]).and_then(|()| lowering.side(right)) {
         Ok(body) if lowering.uses(&body, &kernel, slots.len()) => return said,
         Ok(body) => surroundings.define(&kernel, slots, body),
         // What cannot be lowered defines nothing that could be used: the kernel stays a field of unknown meaning.

@@ -78,9 +78,16 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
         &self.letters
     }
 
-    /// Looks at the sides before they are lowered: which families of levelled indices they have.
-    pub fn survey(&mut self, sides: [&Sum; 2]) {
+    /// Looks at the sides before they are lowered: which families of levelled indices they have. A letter that no
+    /// declaration has, beside letters of declared ranges, may be one of them or not: that is refused.
+    pub fn survey(&mut self, sides: [&Sum; 2]) -> Result<(), Refusal> {
+        let mut declared = None;
         for letter in sides.into_iter().flat_map(|side| super::standing::slot_letters(side, self.eyes)) {
+            let known = self.surroundings.meanings.family_number(&letter).is_some();
+            if declared.is_some_and(|declared| declared != known) {
+                return Err("a letter of no declared range beside letters of one".to_owned());
+            }
+            declared = Some(known);
             if self.eyes.is_cartesian(&letter) {
                 continue;
             }
@@ -89,6 +96,7 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
                 self.levelled.push(family);
             }
         }
+        Ok(())
     }
 
     /// The family that a scalar of geometry belongs to, as the scalar curvature.
