@@ -170,7 +170,6 @@ fn exchanged_across(formula: &str) -> Vec<String> {
 fn the_original_is_offered_for_most_single_edits_of_flat_identities() {
     let (flat, _) = IDENTITIES.split_at(10);
     let (offered, failing, report) = share(flat);
-    println!("the original is offered for {offered} of {failing}");
     assert!(failing >= 20 && offered * 100 >= failing * 85, "{offered} of {failing}: {report:#?}");
 }
 
@@ -178,7 +177,6 @@ fn the_original_is_offered_for_most_single_edits_of_flat_identities() {
 fn the_original_is_offered_for_most_single_edits_of_curved_identities() {
     let (_, curved) = IDENTITIES.split_at(10);
     let (offered, failing, report) = share(curved);
-    println!("the original is offered for {offered} of {failing}");
     assert!(failing >= 20 && offered * 100 >= failing * 85, "{offered} of {failing}: {report:#?}");
 }
 

@@ -82,6 +82,9 @@ impl Page<'_> {
     }
 }
 
+/// Indices of one term beyond which none are exchanged: pairs grow with the square.
+pub(super) const PLACES: usize = 40;
+
 /// Every single edit of a sum.
 pub(super) fn of_sum(sum: &Sum, page: &Page<'_>) -> Vec<Change<Sum>> {
     let mut changes = Vec::new();
@@ -159,6 +162,9 @@ struct Place {
 /// Two indices on one level change places: those of the term's own factors, since a bracket is a scope of its own.
 fn exchanges(term: &Term, page: &Page<'_>) -> Vec<Change<Term>> {
     let places = places(term, page);
+    if places.len() > PLACES {
+        return Vec::new();
+    }
     let mut changes = Vec::new();
     for (number, one) in places.iter().enumerate() {
         for two in places.get(number + 1..).unwrap_or_default() {

@@ -8,7 +8,7 @@ use indexwise_grammar::write::write_term;
 
 use crate::conventions::built_in::is_derivative;
 
-use super::edits::{Change, Kind, Page};
+use super::edits::{Change, Kind, PLACES, Page};
 
 /// Letters that a new sum may take: whichever of them is free.
 pub(super) const SUMMED: [&str; 12] =
@@ -45,6 +45,9 @@ fn corrections(term: &Term, page: &Page<'_>) -> Vec<Term> {
     for (at, (factor, of)) in pairs.enumerate() {
         let Some((by, covariant)) = derivative(factor, page) else { continue };
         let slots = letters(of, page);
+        if slots.len() > PLACES {
+            continue;
+        }
         for (level, letter) in &slots {
             let Some(fresh) = fresh(term, letter, page) else { continue };
             let item = |letter: &CompactString| ItemKind::Letter(letter.clone());
@@ -117,6 +120,9 @@ fn fresh(term: &Term, like: &str, page: &Page<'_>) -> Option<CompactString> {
 /// A term again, with two of its letters exchanged that stand on one level, in either sign.
 fn exchanged(term: &Term, page: &Page<'_>) -> Vec<Term> {
     let all: Vec<(Level, CompactString)> = term.factors.iter().flat_map(|factor| letters(factor, page)).collect();
+    if all.len() > PLACES {
+        return Vec::new();
+    }
     let once = |letter: &CompactString| all.iter().filter(|(_, other)| other == letter).count() == 1;
     let free: Vec<&(Level, CompactString)> = all.iter().filter(|(_, letter)| once(letter)).collect();
     let mut found = Vec::new();
