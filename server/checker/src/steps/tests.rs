@@ -226,7 +226,7 @@ fn a_part_that_a_macro_made_is_not_edited_where_it_is_called() {
 #[test]
 fn notes_are_mended_in_their_own_spelling() {
     let text = "The collar\n\nconventions\n  i j k run from 1 to 3\n  i j k are cartesian\n  A_ij is symmetric\n  v_i is a tensor\n\n\
-                So that\n\n  A_ij v_j + A_ji v_j = 1/2 A_ij v_j\n";
+                So that\n\n  f_i = A_ij v_j + A_ji v_j\n      = 1/2 A_ij v_j\n";
     let found = findings_in(Host::Note, text);
     let fixes: Vec<String> = found.iter().flat_map(|finding| &finding.fixes).map(|fix| applied(text, fix)).collect();
     assert!(fixes.contains(&text.replace("1/2", "2")), "{found:?}");
