@@ -28,7 +28,7 @@ const NOTE: &str = "Bench notes, the collar
 /// All reports of a folder's documents, without the time that they took.
 fn reports(folder: &Folder) -> String {
     let report = |kind: &str| {
-        let answer = folder.run(&format!("check --report {kind}"));
+        let answer = folder.run(&format!("check --steps off --report {kind}"));
         assert_eq!(answer.err, "");
         let timeless = answer.out.lines().map(|line| line.split(" hints; ").next().unwrap().to_owned() + "\n");
         format!("{}\n{}", answer.status, timeless.collect::<String>())
