@@ -9,10 +9,11 @@
 use std::panic::{AssertUnwindSafe, catch_unwind};
 use std::thread;
 
+use indexwise_checker::paper::{Cancel, Settings, StepMode};
 use indexwise_grammar::hosts::Host;
 use indexwise_tests::laws::{astray, places, reading};
 use indexwise_tests::variants::damaged;
-use indexwise_tests::{analyse, documents_below, generate};
+use indexwise_tests::{analyse_with, documents_below, generate};
 
 /// What a check may use of the stack.
 const STACK: usize = 16 << 20;
@@ -25,14 +26,23 @@ fn variants() -> u64 {
     sized(3_000, 300_000)
 }
 
+/// Of so many variants one has its steps judged too.
+const STEPS_JUDGED: u64 = 101;
+
 fn sized<T>(short: T, full: T) -> T {
     if std::env::var("INDEXWISE_TESTS").is_ok_and(|mode| mode == "full") { full } else { short }
 }
 
 /// Reads and checks a text; what is misplaced in the answers.
 fn misplaced(host: Host, text: &str) -> Vec<String> {
+    misplaced_with(host, text, StepMode::default())
+}
+
+/// As `misplaced`, with these steps judged.
+fn misplaced_with(host: Host, text: &str, steps: StepMode) -> Vec<String> {
     let mut misplaced = reading(host, text);
-    let findings = analyse(host, text).findings;
+    let settings = Settings { steps, ..Settings::default() };
+    let findings = analyse_with(host, text, &settings, &Cancel::default()).findings;
     misplaced.extend(places(text, &findings));
     misplaced.extend(astray(host, text, &findings));
     misplaced
@@ -80,7 +90,9 @@ fn damaged_documents_are_survived() {
         for seed in 0..variants() {
             let (name, host, text) = &material[seed as usize % material.len()];
             let variant = damaged(text, seed);
-            let misplaced = catch_unwind(AssertUnwindSafe(|| misplaced(*host, &variant)))
+            // Judging steps costs a hundred times as much as all else.
+            let steps = if seed % STEPS_JUDGED == 0 { StepMode::default() } else { StepMode::Off };
+            let misplaced = catch_unwind(AssertUnwindSafe(|| misplaced_with(*host, &variant, steps)))
                 .unwrap_or_else(|_| panic!("{name}, seed {seed}: the check panicked on\n{variant}"));
             assert_eq!(misplaced.first(), None, "{name}, seed {seed}, in\n{variant}");
         }
