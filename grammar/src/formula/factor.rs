@@ -248,12 +248,17 @@ fn derivative<'a>(
             let (over, under) = match rest.len() {
                 0 => (Sum::default(), first),
                 1 => (first, rest.pop().map(|(sum, _)| sum).unwrap_or_default()),
-                _ => (first, product(rest.into_iter().map(|(sum, _)| sum).collect(), Joint::Beside)),
+                _ => (first, product(rest.into_iter().map(placed).collect(), Joint::Beside)),
             };
             let kind = FractionKind::Derivative(spelling::derivative(&command.text));
             plain(Atom::Fraction(Box::new(Fraction { over, under, kind, order })), span)
         },
     )
+}
+
+/// An argument in braces; an empty one stands where its braces do.
+fn placed((sum, braces): (Sum, Span)) -> Sum {
+    if sum.span.is_empty() { Sum { span: braces, ..sum } } else { sum }
 }
 
 /// `\tensor{R}{^\rho_\sigma}`: the second argument holds scripts in plain order.
