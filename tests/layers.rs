@@ -51,15 +51,20 @@ const MODULES: &[(&str, Road)] = &[
         &[
             ("draws", &[]),
             ("trouble", &[]),
+            // What tests of other modules share.
+            ("laws", &["field", "number"]),
             ("field", &["draws"]),
             ("rational", &["draws", "field"]),
             ("number", &["draws", "trouble", "field", "rational"]),
-            ("jet", &["trouble", "field", "number", "draws", "sample"]),
-            ("tensor", &["trouble", "field", "number", "jet", "draws", "sample"]),
+            ("jet", &["laws", "trouble", "field", "number", "draws", "sample"]),
+            ("tensor", &["laws", "trouble", "field", "number", "jet", "draws", "sample"]),
             ("contraction", &["trouble", "field", "number", "jet", "tensor", "draws", "sample"]),
             ("symbols", &["trouble", "number", "jet", "tensor"]),
-            ("matrix", &["trouble", "field", "number", "jet", "tensor", "contraction", "symbols", "draws", "sample"]),
-            ("sample", &["draws", "trouble", "field", "number", "jet", "tensor", "matrix"]),
+            (
+                "matrix",
+                &["laws", "trouble", "field", "number", "jet", "tensor", "contraction", "symbols", "draws", "sample"],
+            ),
+            ("sample", &["laws", "draws", "trouble", "field", "number", "jet", "tensor", "matrix"]),
             (
                 "geometry",
                 &["trouble", "field", "number", "jet", "tensor", "contraction", "symbols", "matrix", "draws", "sample"],

@@ -7,6 +7,8 @@
 //!
 //! Nothing is evaluated here (`evaluation.rs`), and nothing is decided (`verdict.rs`).
 
+use std::slice;
+
 use crate::contraction::Label;
 use crate::geometry::{Level, Signs};
 use crate::rational::Rational;
@@ -282,6 +284,39 @@ impl Expression {
         Self::Product(vec![Self::Number(-Rational::ONE), self])
     }
 
+    /// The slots of the node itself, without those of its parts.
+    pub fn slots(&self) -> &[Index] {
+        match self {
+            Self::Field { slots, .. }
+            | Self::Defined { slots, .. }
+            | Self::Epsilon { slots, .. }
+            | Self::Curvature { slots, .. } => slots,
+            Self::Delta(slots) | Self::Metric { slots, .. } => slots,
+            Self::Christoffel { slots, .. } => slots,
+            Self::Coordinate(index) | Self::Partial(index, _) | Self::Covariant { index, .. } => slice::from_ref(index),
+            _ => &[],
+        }
+    }
+
+    /// The slots whose labels stand once in it, where a sum counts by its first term and a scalar's argument not at
+    /// all: its free ones, if its terms fit together.
+    pub fn free_slots(&self) -> Vec<Index> {
+        let mut all: Vec<Index> = Vec::new();
+        let mut pending = vec![self];
+        while let Some(part) = pending.pop() {
+            all.extend(part.slots());
+            match part {
+                Self::Sum(terms) => pending.extend(terms.first()),
+                Self::Power(..) | Self::Magnitude(_) | Self::Function(..) | Self::Det(..) => {}
+                Self::Inverse(_, _, slots) | Self::Adjugate(_, _, slots) => all.extend(slots),
+                // The last part is taken first, so that slots come in the order written.
+                other => pending.extend(other.parts().into_iter().rev()),
+            }
+        }
+        let once = |index: &Index| all.iter().filter(|other| other.filling == index.filling).count() == 1;
+        all.iter().filter(|index| matches!(index.filling, Filling::Label(_)) && once(index)).copied().collect()
+    }
+
     /// The parts of which it is made.
     pub fn parts(&self) -> Vec<&Self> {
         match self {
@@ -292,5 +327,34 @@ impl Expression {
             Self::Det(of, _) | Self::Inverse(of, ..) | Self::Adjugate(of, ..) => vec![of],
             _ => Vec::new(),
         }
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    fn index(label: Label) -> Index {
+        Index { filling: Filling::Label(label), level: Level::Inert, family: 0 }
+    }
+
+    fn field(labels: &[Label]) -> Expression {
+        Expression::Field { field: 0, slots: labels.iter().map(|label| index(*label)).collect() }
+    }
+
+    fn free(expression: &Expression) -> Vec<Filling> {
+        expression.free_slots().into_iter().map(|index| index.filling).collect()
+    }
+
+    #[test]
+    fn free_slots_are_those_that_stand_once_in_their_order() {
+        let labels = |labels: &[Label]| labels.iter().map(|label| Filling::Label(*label)).collect::<Vec<_>>();
+        let product = Expression::Product(vec![field(&[3, 1]), Expression::Partial(index(2), Box::new(field(&[1])))]);
+        assert_eq!(free(&product), labels(&[3, 2]));
+        assert_eq!(free(&Expression::Sum(vec![product, field(&[3, 2])])), labels(&[3, 2]));
+        assert_eq!(free(&Expression::Power(Box::new(field(&[1])), Rational::ONE)), []);
+        assert_eq!(free(&field(&[1, 1])), []);
+        let inverse = Expression::Inverse(Box::new(field(&[1, 2])), [1, 2], [index(4), index(5)]);
+        assert_eq!(free(&inverse), labels(&[4, 5]));
     }
 }

@@ -52,6 +52,8 @@ pub mod expression;
 pub mod field;
 pub mod geometry;
 pub mod jet;
+#[cfg(test)]
+mod laws;
 pub mod matrix;
 pub mod normal_form;
 pub mod number;

@@ -4,22 +4,11 @@
 
 use super::*;
 use crate::draws::Draws;
-use crate::field::{Complex, FIRST, Residue, SECOND};
+use crate::field::{Complex, FIRST, Residue};
+use crate::laws::law;
 use crate::number::Exact;
 use crate::sample;
 use crate::trouble::Budget;
-
-/// States one law for residues and for fractions.
-macro_rules! law {
-    ($name:ident, $law:ident) => {
-        #[test]
-        fn $name() {
-            $law::<Residue<FIRST>>();
-            $law::<Residue<SECOND>>();
-            $law::<Exact>();
-        }
-    };
-}
 
 law!(jets_are_a_commutative_ring, ring_axioms);
 law!(products_agree_with_those_of_polynomials, products_of_polynomials);

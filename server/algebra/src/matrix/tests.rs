@@ -7,34 +7,22 @@ use std::sync::Arc;
 
 use super::*;
 use crate::draws::Draws;
-use crate::field::{Complex, FIRST, Residue, SECOND};
+use crate::field::{FIRST, Residue};
 use crate::jet::{Order, Ring, Variable};
+use crate::laws::law;
 use crate::number::Exact;
 use crate::sample;
 use crate::symbols::{delta, epsilon};
 
-/// States one law for residues, the extension and fractions.
-macro_rules! law {
-    ($name:ident, $law:ident) => {
-        #[test]
-        fn $name() {
-            $law::<Residue<FIRST>>();
-            $law::<Residue<SECOND>>();
-            $law::<Complex<FIRST>>();
-            $law::<Exact>();
-        }
-    };
-}
-
-law!(inverses_multiply_to_one_on_both_sides, inverses);
-law!(determinants_multiply, determinants);
-law!(the_determinant_is_the_sum_over_permutations, permutations);
-law!(the_adjugate_multiplies_to_the_determinant_at_singular_matrices_too, adjugates);
-law!(a_matrix_solves_its_characteristic_equation, cayley_hamilton);
-law!(jacobi_s_formula_holds_at_singular_matrices_too, jacobi);
-law!(the_derivative_of_the_inverse_is_minus_inverse_derivative_inverse, derivative_of_the_inverse);
-law!(a_small_change_changes_the_determinant_by_a_trace, small_changes);
-law!(traces_of_products_are_cyclic_and_transposition_reverses, traces);
+law!(inverses_multiply_to_one_on_both_sides, inverses, and the extension);
+law!(determinants_multiply, determinants, and the extension);
+law!(the_determinant_is_the_sum_over_permutations, permutations, and the extension);
+law!(the_adjugate_multiplies_to_the_determinant_at_singular_matrices_too, adjugates, and the extension);
+law!(a_matrix_solves_its_characteristic_equation, cayley_hamilton, and the extension);
+law!(jacobi_s_formula_holds_at_singular_matrices_too, jacobi, and the extension);
+law!(the_derivative_of_the_inverse_is_minus_inverse_derivative_inverse, derivative_of_the_inverse, and the extension);
+law!(a_small_change_changes_the_determinant_by_a_trace, small_changes, and the extension);
+law!(traces_of_products_are_cyclic_and_transposition_reverses, traces, and the extension);
 
 fn ring() -> Arc<Ring> {
     Ring::with_small(2, 1, Order { base: 1, small: 1 }).unwrap()

@@ -3,21 +3,10 @@
 #![allow(clippy::unwrap_used)]
 
 use super::*;
-use crate::field::{FIRST, Residue, SECOND};
+use crate::field::{FIRST, Residue};
+use crate::laws::law;
 use crate::matrix::determinant;
 use crate::number::Exact;
-
-/// States one law for residues and for fractions.
-macro_rules! law {
-    ($name:ident, $law:ident) => {
-        #[test]
-        fn $name() {
-            $law::<Residue<FIRST>>();
-            $law::<Residue<SECOND>>();
-            $law::<Exact>();
-        }
-    };
-}
 
 law!(symmetries_hold_with_their_signs, symmetries_hold);
 law!(contradictory_symmetries_leave_nothing, contradictions);

@@ -4,21 +4,9 @@
 
 use super::*;
 use crate::draws::Draws;
-use crate::field::{FIRST, Residue, SECOND};
+use crate::laws::law;
 use crate::number::Exact;
 use crate::sample;
-
-/// States one law for residues and for fractions.
-macro_rules! law {
-    ($name:ident, $law:ident) => {
-        #[test]
-        fn $name() {
-            $law::<Residue<FIRST>>();
-            $law::<Residue<SECOND>>();
-            $law::<Exact>();
-        }
-    };
-}
 
 law!(permutations_move_components_and_compose, permutations);
 law!(outer_products_multiply_components, outer_products);

@@ -155,6 +155,9 @@ fn write_words(places: &Places, finding: &Finding, palette: Palette, out: &mut d
     }
     if let Some(numbers) = finding.verdict.as_ref().and_then(|verdict| verdict.counterexample.as_ref()) {
         write_counterexample(numbers, out)?;
+        if !finding.fixes.is_empty() {
+            writeln!(out)?;
+        }
     }
     for fix in &finding.fixes {
         // Two places may be called the same.
@@ -177,8 +180,7 @@ fn write_counterexample(numbers: &Counterexample, out: &mut dyn Write) -> io::Re
     }
     let place: Vec<String> = numbers.component.iter().map(|(letter, value)| format!("{letter} = {value}")).collect();
     let place = if place.is_empty() { String::new() } else { format!(" for {}", place.join(", ")) };
-    writeln!(out, "{INDENT}left side {}, right side {}{}", numbers.left, numbers.right, printable(&place))?;
-    writeln!(out)
+    writeln!(out, "{INDENT}left side {}, right side {}{}", numbers.left, numbers.right, printable(&place))
 }
 
 /// A sentence broken at blanks, so that it fits the page; all lines but the first are indented twice.

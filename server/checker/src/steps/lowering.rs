@@ -18,6 +18,7 @@ use indexwise_grammar::tree::{
 
 use crate::conventions::built_in::is_derivative;
 use crate::conventions::meanings::Known;
+use crate::ledger::shown;
 use crate::terms::Eyes;
 use crate::terms::uses::{self, Use, UsedSlot, use_of};
 
@@ -32,7 +33,7 @@ pub enum Reach {
     Far,
 }
 
-/// Why a part could not be lowered, as a phrase.
+/// Why a part could not be lowered: a clause that can stand by itself.
 pub type Refusal = String;
 type Lowered = Result<Expression, Refusal>;
 
@@ -85,7 +86,7 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
         for letter in sides.into_iter().flat_map(|side| super::standing::slot_letters(side, self.eyes)) {
             let known = self.surroundings.meanings.family_number(&letter).is_some();
             if declared.is_some_and(|declared| declared != known) {
-                return Err("a letter of no declared range beside letters of one".to_owned());
+                return Err("a letter has no declared range, but letters beside it have".to_owned());
             }
             declared = Some(known);
             if self.eyes.is_cartesian(&letter) {
@@ -104,7 +105,7 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
         match self.levelled.as_slice() {
             [] => Ok(self.surroundings.levelled_family()),
             [one] => Ok(*one),
-            _ => Err("a scalar beside two kinds of indices".to_owned()),
+            _ => Err("a scalar of the geometry stands beside two kinds of indices".to_owned()),
         }
     }
 
@@ -214,13 +215,13 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
     /// A derivative sign with what it acts on.
     fn derivative(&mut self, factor: &Factor, made: &Use, rest: &[Factor]) -> Result<(Expression, usize), Refusal> {
         if made.unread || !made.marks.iter().all(|mark| matches!(mark, uses::Mark::Slot(_))) {
-            return Err(format!("the derivative {} is not understood", made.kernel));
+            return Err(format!("the derivative {} is not understood", shown(&made.kernel)));
         }
         if made.power {
             return self.laplacian(factor, made, rest);
         }
         if made.slots.is_empty() {
-            return Err(format!("{} has no index", made.kernel));
+            return Err(format!("{} has no index", shown(&made.kernel)));
         }
         let operators: Vec<Operator> =
             made.slots.iter().map(|slot| self.operator(made, slot)).collect::<Result<_, _>>()?;
@@ -271,7 +272,7 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
             None if made.kernel == "\\nabla" => {
                 Ok(Operator::Covariant(self.surroundings.metric_of(index.family), index))
             }
-            None => Err(format!("the derivative {} is not declared", made.kernel)),
+            None => Err(format!("the derivative {} is not declared", shown(&made.kernel))),
         }
     }
 
@@ -280,7 +281,7 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
         let square = scripts::power(factor)? == Some(Rational::from_integer(2));
         let (of, taken) = self.acted_on(rest)?;
         if !square || made.slots.len() > 1 {
-            return Err(format!("a power of {} is not understood", made.kernel));
+            return Err(format!("a power of {} is not understood", shown(&made.kernel)));
         }
         let letter = made.slots.first().and_then(UsedSlot::letter).cloned();
         let cartesian = letter.as_ref().is_none_or(|letter| self.eyes.is_cartesian(letter)) && !self.has_metric();
@@ -340,13 +341,15 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
         let [under] = fraction.under.terms.as_slice() else { return Err("a sum stands below a derivative".to_owned()) };
         let mut operators = Vec::new();
         for variable in under.factors.iter().filter(|factor| !(spelled && sign(factor))) {
-            let Atom::Kernel(kernel) = &variable.atom else { return Err("a derivative by no coordinate".to_owned()) };
+            let Atom::Kernel(kernel) = &variable.atom else {
+                return Err("a derivative is taken by what is no coordinate".to_owned());
+            };
             let made = use_of(variable, kernel, self.eyes, true);
             let [slot] = made.slots.as_slice() else {
-                return Err(format!("the derivative by {} is not evaluated", made.kernel));
+                return Err(format!("the derivative by {} is not evaluated", shown(&made.kernel)));
             };
             if !matches!(made.letter.as_str(), "x" | "X" | "y" | "q") || made.power {
-                return Err(format!("the derivative by {} is not evaluated", made.kernel));
+                return Err(format!("the derivative by {} is not evaluated", shown(&made.kernel)));
             }
             operators.push(Operator::Partial(self.index(slot)?));
         }
@@ -371,13 +374,13 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
                     None => Rational::from_integer(2),
                     Some(degree) => scripts::number_of(degree).ok_or("the degree of a root is no number")?,
                 };
-                let power = degree.inverse().ok_or("a root of degree 0")?;
+                let power = degree.inverse().ok_or("a root has the degree 0")?;
                 Expression::Power(Box::new(self.side(&root.body)?), power)
             }
             Atom::Wrapped(sum) | Atom::Labelled(sum) if !sum.terms.is_empty() => self.side(sum)?,
-            Atom::Big(Big::Integral, _) => return Err("an integral".to_owned()),
-            Atom::Big(Big::Limit, _) => return Err("a limit".to_owned()),
-            Atom::Big(Big::Sum, _) => return Err("a sum with a sign".to_owned()),
+            Atom::Big(Big::Integral, _) => return Err("an integral has no value here".to_owned()),
+            Atom::Big(Big::Limit, _) => return Err("a limit has no value here".to_owned()),
+            Atom::Big(Big::Sum, _) => return Err("a sum with a sign is not evaluated".to_owned()),
             Atom::Unknown(name, _) => return Err(format!("the command \\{name} is not defined")),
             Atom::Text(_) => return Err("words stand in it".to_owned()),
             Atom::Dots => return Err("an ellipsis stands in it".to_owned()),
@@ -400,8 +403,8 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
     }
 
     fn powered_by(&mut self, value: Expression, power: Rational) -> Lowered {
-        if power == Rational::from_integer(2) && scripts::has_free_labels(&value) {
-            return Err("the square of something with indices".to_owned());
+        if power == Rational::from_integer(2) && !value.free_slots().is_empty() {
+            return Err("the square of something with indices is not evaluated".to_owned());
         }
         Ok(Expression::Power(Box::new(value), power))
     }
@@ -412,7 +415,7 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
         match group.bracket {
             Bracket::Round | Bracket::Square | Bracket::Curly => self.side(sum),
             Bracket::Bars if group.left == "|" => Ok(Expression::Magnitude(Box::new(self.side(sum)?))),
-            _ => Err("a norm or an average".to_owned()),
+            _ => Err("a norm or an average is not evaluated".to_owned()),
         }
     }
 
@@ -428,9 +431,9 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
             [one, two] => (operators(one), operators(two)),
             _ => (None, None),
         };
-        let (Some(one), Some(two)) = (one, two) else { return Err("a commutator".to_owned()) };
+        let (Some(one), Some(two)) = (one, two) else { return Err("a commutator is not understood".to_owned()) };
         if !one.iter().chain(&two).all(derivative) || rest.is_empty() {
-            return Err("a commutator of what are no derivatives".to_owned());
+            return Err("a commutator of what are no derivatives is not evaluated".to_owned());
         }
         let mut both = Vec::new();
         for (first, second) in [(&one, &two), (&two, &one)] {
@@ -471,7 +474,7 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
                 let filling = Filling::Label(self.label(letter));
                 Ok(Index { filling, level, family })
             }
-            uses::Filling::Component(name) => Err(format!("the component {name}")),
+            uses::Filling::Component(name) => Err(format!("the component {name} is not evaluated")),
         }
     }
 

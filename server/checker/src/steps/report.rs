@@ -8,7 +8,7 @@ use std::hash::{Hash, Hasher};
 use std::time::{Duration, Instant};
 
 use compact_str::CompactString;
-use indexwise_algebra::expression::{Expression, Filling, Given, Size, World};
+use indexwise_algebra::expression::{Expression, Given, Size, World};
 use indexwise_algebra::verdict::{self, Claim, Limits, Unshown, Verdict};
 use indexwise_grammar::span::Span;
 use indexwise_grammar::tree::Statement;
@@ -221,7 +221,7 @@ impl<'m> StepJudge<'m> {
         }
         let claims = match &step.claims {
             Ok(claims) => claims,
-            Err(reason) => return Some(self.undecided(step, &format!("{reason} has no value here"))),
+            Err(reason) => return Some(self.undecided(step, reason)),
         };
         let verdicts: Vec<Verdict> = claims.iter().map(|(left, right)| self.judged(step, text, left, right)).collect();
         let first = verdicts.first()?;
@@ -438,7 +438,7 @@ fn dimensions(world: &World, sides: &[&Expression], antisymmetrised: usize) -> V
     let mut fixed = None;
     let mut families: Vec<usize> = Vec::new();
     while let Some(part) = pending.pop() {
-        let slots = slots_of(part);
+        let slots = part.slots();
         if let Expression::Epsilon { slots, .. } = part {
             fixed = Some(slots.len());
         }
@@ -463,23 +463,6 @@ fn dimensions(world: &World, sides: &[&Expression], antisymmetrised: usize) -> V
             all
         }
     }
-}
-
-/// The slots of an expression itself.
-fn slots_of(expression: &Expression) -> Vec<indexwise_algebra::expression::Index> {
-    let slots = match expression {
-        Expression::Field { slots, .. } | Expression::Defined { slots, .. } | Expression::Curvature { slots, .. } => {
-            slots.clone()
-        }
-        Expression::Epsilon { slots, .. } => slots.clone(),
-        Expression::Delta(slots) | Expression::Metric { slots, .. } => slots.to_vec(),
-        Expression::Christoffel { slots, .. } => slots.to_vec(),
-        Expression::Coordinate(index) | Expression::Partial(index, _) | Expression::Covariant { index, .. } => {
-            vec![*index]
-        }
-        _ => Vec::new(),
-    };
-    slots.into_iter().filter(|index| matches!(index.filling, Filling::Label(_) | Filling::Member(_))).collect()
 }
 
 fn in_words(component: &[(String, String)]) -> String {

@@ -1,7 +1,6 @@
 //! Functions: elementary ones of scalars, and determinants and traces of matrices.
 
 use indexwise_algebra::expression::{Expression, Filling, Function, Index};
-use indexwise_algebra::geometry::Level;
 use indexwise_grammar::tree::{Atom, Factor, Sum};
 
 use super::kernels::half;
@@ -56,10 +55,10 @@ impl Lowering<'_, '_, '_> {
         };
         let sum = sum.ok_or("the argument of a determinant is not understood")?;
         let of = self.side(&sum)?;
-        let labels = free_labels(&of);
+        let labels = of.free_slots();
         match labels.as_slice() {
             [row, column] => Ok(Expression::Det(Box::new(of), [label(row)?, label(column)?])),
-            _ => Err("a determinant of something without two indices".to_owned()),
+            _ => Err("the argument of a determinant has not two indices".to_owned()),
         }
     }
 }
@@ -67,34 +66,6 @@ impl Lowering<'_, '_, '_> {
 fn label(index: &Index) -> Result<u16, Refusal> {
     match index.filling {
         Filling::Label(label) => Ok(label),
-        Filling::Member(_) => Err("a component of a matrix".to_owned()),
-    }
-}
-
-/// The indices of an expression whose labels stand once in its first term.
-fn free_labels(expression: &Expression) -> Vec<Index> {
-    let mut all = Vec::new();
-    indices(expression, &mut all);
-    let once = |index: &Index| all.iter().filter(|other: &&Index| other.filling == index.filling).count() == 1;
-    all.iter().filter(|index| once(index) && index.level != Level::Up || once(index)).copied().collect()
-}
-
-fn indices(expression: &Expression, out: &mut Vec<Index>) {
-    match expression {
-        Expression::Field { slots, .. } | Expression::Defined { slots, .. } | Expression::Curvature { slots, .. } => {
-            out.extend(slots);
-        }
-        Expression::Epsilon { slots, .. } => out.extend(slots),
-        Expression::Delta(slots) | Expression::Metric { slots, .. } => out.extend(slots),
-        Expression::Christoffel { slots, .. } => out.extend(slots),
-        Expression::Coordinate(index) | Expression::Partial(index, _) | Expression::Covariant { index, .. } => {
-            out.push(*index);
-        }
-        _ => {}
-    }
-    match expression {
-        Expression::Sum(terms) => terms.first().into_iter().for_each(|term| indices(term, out)),
-        Expression::Power(..) | Expression::Magnitude(_) | Expression::Function(..) | Expression::Det(..) => {}
-        other => other.parts().into_iter().for_each(|part| indices(part, out)),
+        Filling::Member(_) => Err("a component of a matrix is not evaluated".to_owned()),
     }
 }

@@ -10,6 +10,7 @@ use indexwise_grammar::tree::{Atom, Factor, Joint};
 
 use crate::conventions::built_in::is_metric_by_custom;
 use crate::conventions::meanings::Role;
+use crate::ledger::shown;
 use crate::terms::Piece;
 use crate::terms::symmetries::exchanges;
 use crate::terms::uses::{Origin, Use, UsedSlot};
@@ -32,14 +33,14 @@ impl Lowering<'_, '_, '_> {
         rest: &[Factor],
     ) -> Result<(Expression, usize), Refusal> {
         if made.unread || !factor.marks.is_empty() {
-            return Err(format!("the scripts of {} are not understood", made.kernel));
+            return Err(format!("the scripts of {} are not understood", shown(&made.kernel)));
         }
         if self.surroundings.meanings.is_kind(&made.kernel, Kind::NonCommuting) {
-            return Err(format!("{} does not commute", made.kernel));
+            return Err(format!("{} does not commute", shown(&made.kernel)));
         }
         let arguments = usize::from(rest.first().is_some_and(|next| self.is_argument(&made, next)));
         if arguments == 0 && rest.first().is_some_and(is_lone_letter_in_brackets) {
-            return Err(format!("what {} takes in brackets", made.kernel));
+            return Err(format!("what {} takes in brackets is not understood", shown(&made.kernel)));
         }
         let own: Vec<UsedSlot> = made.own_slots().cloned().collect();
         let slots: Vec<Index> = own.iter().map(|slot| self.index(slot)).collect::<Result<_, _>>()?;
@@ -57,8 +58,8 @@ impl Lowering<'_, '_, '_> {
             of = wrapped(vec![operator], of);
         }
         if made.power {
-            let power =
-                scripts::power(factor)?.ok_or_else(|| format!("a power of {} is not understood", made.kernel))?;
+            let power = scripts::power(factor)?
+                .ok_or_else(|| format!("a power of {} is not understood", shown(&made.kernel)))?;
             of = self.powered_by(of, power)?;
         }
         Ok((of, arguments))
@@ -107,7 +108,7 @@ impl Lowering<'_, '_, '_> {
             ("\\delta", [one, two]) if plain(made) => Expression::Delta([*one, *two]),
             (_, [one, two]) if is_metric_by_custom(&made.kernel) => {
                 if one.level == Level::Inert || two.level == Level::Inert {
-                    return Err(format!("{} stands with indices that have no levels", made.kernel));
+                    return Err(format!("{} stands with indices that have no levels", shown(&made.kernel)));
                 }
                 self.metric(made, slots)?
             }
@@ -143,7 +144,9 @@ impl Lowering<'_, '_, '_> {
     }
 
     fn metric(&mut self, made: &Use, slots: &[Index]) -> Lowered {
-        let [one, two] = slots else { return Err(format!("{} with {} indices", made.kernel, slots.len())) };
+        let [one, two] = slots else {
+            return Err(format!("{} stands with {} indices", shown(&made.kernel), slots.len()));
+        };
         let metric = self.surroundings.metric(&made.kernel, one.family);
         if let Some(family) = self.surroundings.world.families.get_mut(one.family) {
             family.metric = family.metric.or(Some(metric));
@@ -152,13 +155,15 @@ impl Lowering<'_, '_, '_> {
     }
 
     fn christoffel(&mut self, made: &Use, slots: Vec<Index>) -> Lowered {
-        let [a, b, c] = slots.as_slice() else { return Err(format!("{} with {} indices", made.kernel, slots.len())) };
+        let [a, b, c] = slots.as_slice() else {
+            return Err(format!("{} stands with {} indices", shown(&made.kernel), slots.len()));
+        };
         // The upper index comes first, wherever it is written.
         let mut order = [*a, *b, *c];
         order.sort_by_key(|index| index.level != Level::Up);
         let up = order.iter().filter(|index| index.level == Level::Up).count();
         if up != 1 {
-            return Err(format!("which index of {} is the first is not plain", made.kernel));
+            return Err(format!("it is not plain which index of {} is the first", shown(&made.kernel)));
         }
         Ok(Expression::Christoffel { metric: self.surroundings.metric_of(a.family), slots: order })
     }
@@ -174,7 +179,7 @@ impl Lowering<'_, '_, '_> {
             None => self.levelled_family()?,
         };
         if slots.len() != count || slots.iter().any(|index| index.level == Level::Inert) {
-            return Err(format!("{} with {} indices", made.kernel, slots.len()));
+            return Err(format!("{} stands with {} indices", shown(&made.kernel), slots.len()));
         }
         let kind = match kind {
             conventions::Curvature::Riemann => Curvature::Riemann,
@@ -197,7 +202,7 @@ impl Lowering<'_, '_, '_> {
         let first = slots.first()?;
         let metric = (first.level != Level::Inert && !symbol).then(|| self.surroundings.metric_of(first.family));
         if first.level == Level::Inert && tensor && !self.surroundings.meanings.metrics().is_empty() {
-            return Some(Err("an epsilon tensor on indices without levels".to_owned()));
+            return Some(Err("an epsilon tensor stands on indices without levels".to_owned()));
         }
         Some(Ok(Expression::Epsilon { metric, slots: slots.to_vec() }))
     }
@@ -205,7 +210,7 @@ impl Lowering<'_, '_, '_> {
     fn field(&mut self, made: &Use, own: &[UsedSlot], slots: Vec<Index>) -> Lowered {
         let meanings = self.surroundings.meanings;
         if meanings.is_kind(&made.kernel, Kind::Matrix) {
-            return Err(format!("the matrix {} stands without its indices", made.kernel));
+            return Err(format!("the matrix {} stands without its indices", shown(&made.kernel)));
         }
         let natural: Vec<(usize, Level)> = slots.iter().map(|index| (index.family, index.level)).collect();
         let bare = Use { slots: own.to_vec(), ..made.clone() };

@@ -1,6 +1,5 @@
 //! Scripts that are no plain indices: powers, and brackets that symmetrise, perhaps across factors.
 
-use indexwise_algebra::expression::{Expression, Filling, Index};
 use indexwise_algebra::rational::Rational;
 use indexwise_grammar::tree::{Atom, Factor, Item, ItemKind, Joint, Level, Operator, SignKind, Sum};
 
@@ -52,39 +51,6 @@ pub(super) fn number_of(sum: &Sum) -> Option<Rational> {
         SignKind::Plus => Some(value),
         SignKind::Minus => Some(-value),
         _ => None,
-    }
-}
-
-/// Whether an expression has labels that stand once in it: an estimate that may say yes too often.
-pub(super) fn has_free_labels(expression: &Expression) -> bool {
-    let mut labels = Vec::new();
-    collect(expression, &mut labels);
-    labels.iter().any(|label| labels.iter().filter(|other| *other == label).count() == 1)
-}
-
-fn collect(expression: &Expression, labels: &mut Vec<u16>) {
-    let mut note = |index: &Index| {
-        if let Filling::Label(label) = index.filling {
-            labels.push(label);
-        }
-    };
-    match expression {
-        Expression::Field { slots, .. }
-        | Expression::Defined { slots, .. }
-        | Expression::Epsilon { slots, .. }
-        | Expression::Curvature { slots, .. } => slots.iter().for_each(note),
-        Expression::Coordinate(index) | Expression::Partial(index, _) | Expression::Covariant { index, .. } => {
-            note(index)
-        }
-        Expression::Delta(slots) | Expression::Metric { slots, .. } => slots.iter().for_each(note),
-        Expression::Christoffel { slots, .. } => slots.iter().for_each(note),
-        _ => {}
-    }
-    // Every term of a sum has the free labels of the first.
-    match expression {
-        Expression::Sum(terms) => terms.first().into_iter().for_each(|term| collect(term, labels)),
-        Expression::Power(..) | Expression::Magnitude(_) | Expression::Function(..) => {}
-        other => other.parts().into_iter().for_each(|part| collect(part, labels)),
     }
 }
 
