@@ -28,7 +28,7 @@ use crate::sketch::Sketch;
 
 pub use asking::asks_for_terms;
 pub use flattened::Flattened;
-pub(crate) use monomials::contracted;
+pub(crate) use monomials::{Contracted, contracted};
 pub use monomials::{Monomials, Zero};
 pub use product::{Bracketed, Piece, Product};
 pub(crate) use product::{all_products, exact, plain_number};

@@ -1,12 +1,14 @@
 //! An index is moved through a partial derivative with a metric that is not constant.
 
 use indexwise_algebra::rational::Rational;
+use indexwise_grammar::tree::Level;
 
 use crate::conventions::built_in::{is_constant_metric, is_metric_by_custom};
 use crate::conventions::meanings::Role;
 use crate::finding::{Finding, Related, Severity};
-use crate::terms::uses::Origin;
-use crate::terms::{Flattened, Piece, Product, Side, contracted};
+use crate::ledger::shown;
+use crate::terms::uses::{Filling, Origin};
+use crate::terms::{Contracted, Flattened, Piece, Product, Side, contracted};
 
 use super::{Check, Rule};
 
@@ -52,11 +54,10 @@ fn moved(terms: &Flattened<'_>, outside: &Side, inside: &Side) -> Vec<Finding> {
     let mut out = Vec::new();
     for product in outside.products.iter().take(COMPARED) {
         for (at, metric) in product.pieces.iter().enumerate().filter(|(_, piece)| is_metric(terms, piece)) {
-            let held = contracted(product, at, metric).into_iter().filter(|(_, held)| *held);
-            for (shorter, _) in held {
-                let same = |other: &&Product| terms.quotient(&shorter, other) == Some(Rational::ONE);
+            for moved in contracted(product, at, metric).into_iter().filter(|moved| moved.held) {
+                let same = |other: &&Product| terms.quotient(&moved.product, other) == Some(Rational::ONE);
                 if let Some(other) = inside.products.iter().take(COMPARED).find(same) {
-                    out.push(finding(terms, metric, other));
+                    out.push(finding(terms, metric, &moved, other));
                 }
             }
         }
@@ -64,10 +65,14 @@ fn moved(terms: &Flattened<'_>, outside: &Side, inside: &Side) -> Vec<Finding> {
     out
 }
 
-fn finding(terms: &Flattened<'_>, metric: &Piece, other: &Product) -> Finding {
+fn finding(terms: &Flattened<'_>, metric: &Piece, moved: &Contracted, other: &Product) -> Finding {
     let name = terms.piece_name(metric);
+    let (Filling::Index(now) | Filling::Component(now)) = &moved.slot.filling;
+    let verb = if moved.slot.level == Level::Up { "raised" } else { "lowered" };
     let message = format!(
-        "an index is moved through a partial derivative with {name}, which is not constant: its derivative is missing"
+        "{} is {verb} to {} through a partial derivative with {name}, which is not constant: its derivative is missing",
+        shown(&moved.letter),
+        shown(now)
     );
     let related = vec![Related { span: metric.made.span, message: "the metric stands outside here".to_owned() }];
     Finding { related, ..Finding::plain(RULE.name, RULE.severity, other.span, message) }

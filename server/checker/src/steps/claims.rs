@@ -11,7 +11,7 @@ use indexwise_algebra::rational::Rational;
 use indexwise_grammar::span::Span;
 use indexwise_grammar::tree::{Atom, Claim, Factor, Statement, Sum};
 
-use crate::terms::Eyes;
+use crate::terms::{Eyes, plain_number};
 
 use super::lowering::{Lowering, Reach};
 use super::world::Surroundings;
@@ -61,7 +61,11 @@ pub fn steps_of(
         let defines = match relation.claim() {
             Claim::Definition => define(left, right, eyes, surroundings, true),
             Claim::DefinitionOfRight => define(right, left, eyes, surroundings, true),
-            Claim::Equality => number == 0 && define(left, right, eyes, surroundings, false),
+            Claim::Equality if number == 0 => {
+                let sets = asked != Asked::All && sets_a_value(left, right);
+                define(left, right, eyes, surroundings, sets)
+            }
+            Claim::Equality => false,
             Claim::Other => true,
         };
         let condition = (is_zero(left) || is_zero(right)) && asked != Asked::All;
@@ -86,6 +90,12 @@ pub fn steps_of(
         }
     }
     steps
+}
+
+/// `k = -1`: a letter is set to a number, perhaps again; nobody claims that the numbers are equal.
+fn sets_a_value(left: &Sum, right: &Sum) -> bool {
+    let letter = |factor: &Factor| matches!(factor.atom, Atom::Kernel(_)) && factor.scripts.is_empty();
+    lone_factor(left).is_some_and(letter) && plain_number(right).is_some()
 }
 
 /// What stands alone on the left of a statement that goes on with an approximation has no exact definition.

@@ -143,10 +143,7 @@ impl<'e, 'a> Monomials<'e, 'a> {
             return None;
         }
         let metrics = product.pieces.iter().enumerate().filter(|(_, piece)| self.is_metric(piece));
-        metrics
-            .flat_map(|(at, metric)| contracted(product, at, metric))
-            .find(|(_, held)| !held)
-            .map(|(shorter, _)| shorter)
+        metrics.flat_map(|(at, metric)| contracted(product, at, metric)).find(|one| !one.held).map(|one| one.product)
     }
 
     fn is_metric(&self, piece: &Piece) -> bool {
@@ -252,9 +249,20 @@ impl<'e, 'a> Monomials<'e, 'a> {
     }
 }
 
-/// The product without the metric at a place, its other index put into the slot that it is contracted with, for each
-/// way; with whether that slot is held in place by a partial derivative.
-pub(crate) fn contracted(product: &Product, at: usize, metric: &Piece) -> Vec<(Product, bool)> {
+/// A product that is shorter by a metric.
+pub(crate) struct Contracted {
+    /// The product without the metric, whose other index stands in the slot that it was contracted with.
+    pub product: Product,
+    /// The summed letter that is gone.
+    pub letter: CompactString,
+    /// The slot as it is now.
+    pub slot: UsedSlot,
+    /// Whether the slot is held in place by a partial derivative, so that this is no identity.
+    pub held: bool,
+}
+
+/// The product without the metric at a place, for each way to contract it.
+pub(crate) fn contracted(product: &Product, at: usize, metric: &Piece) -> Vec<Contracted> {
     let mut out = Vec::new();
     let [one, two] = metric.made.slots.as_slice() else { return out };
     for (joined, other) in [(one, two), (two, one)] {
@@ -269,11 +277,12 @@ pub(crate) fn contracted(product: &Product, at: usize, metric: &Piece) -> Vec<(P
             let partial = piece.made.slots.iter().any(|slot| slot.origin == Origin::Partial);
             let held = partial && filled.origin == Origin::Own && metric.made.letter != "\\delta";
             let mut shorter = product.clone();
+            let now = UsedSlot { filling: other.filling.clone(), level: other.level, ..filled.clone() };
             if let Some(place) = shorter.pieces.get_mut(number).and_then(|piece| piece.made.slots.get_mut(slot)) {
-                *place = UsedSlot { filling: other.filling.clone(), level: other.level, ..place.clone() };
+                *place = now.clone();
             }
             shorter.pieces.remove(at);
-            out.push((shorter, held));
+            out.push(Contracted { product: shorter, letter: letter.clone(), slot: now, held });
         }
     }
     out

@@ -6,6 +6,7 @@
 
 use compact_str::CompactString;
 use indexwise_algebra::rational::Rational;
+use indexwise_grammar::conventions::Kind;
 use indexwise_grammar::span::Span;
 use indexwise_grammar::tree::{
     Atom, Bracket, Factor, Fraction, FractionKind, Group, Item, ItemKind, Joint, Level, Product as ProductSign, Script,
@@ -161,6 +162,11 @@ impl Walk<'_, '_> {
                 }
                 if is_derivative(&name) {
                     // `\partial_{ij}`, `\nabla^2`: not looked into.
+                    return None;
+                }
+                let varies = name == "\\delta" || self.eyes.meanings.is_kind(&made.kernel, Kind::Variation);
+                if varies && made.slots.is_empty() && next.is_some() {
+                    // `A_a \delta A_b` is not `A_b \delta A_a`: it belongs to what it varies.
                     return None;
                 }
                 let argument = next.filter(|next| is_argument(next));
