@@ -12,7 +12,7 @@ use std::sync::Arc;
 
 use indexwise_algebra::draws::Draws;
 use indexwise_checker::editing::write_out::write_out;
-use indexwise_checker::paper::{Cancel, Paper, Source};
+use indexwise_checker::paper::{Cancel, Paper, Source, View};
 use indexwise_grammar::hosts::Host;
 
 /// Kernels with their symmetry as a sentence has it, and the slots that it speaks of.
@@ -107,7 +107,7 @@ fn contraction(draws: &mut Draws) -> Option<String> {
     let text: Arc<str> = format!("{start}{term} $$\n").into();
     let source = Source { path: "random".to_owned(), text, host: Host::Markdown };
     let paper = Paper { documents: vec![source], ..Paper::default() };
-    let written = match write_out(&paper, 0, u32::try_from(at).ok()?, &Cancel::default()) {
+    let written = match write_out(&View::of(&paper, &Cancel::default()), 0, u32::try_from(at).ok()?) {
         Ok(written) => written,
         Err(refusal) => {
             return Some(format!("{{\"term\": {}, \"refused\": {}}}", quoted(&term), quoted(&refusal.to_string())));

@@ -4,33 +4,29 @@ mod asking;
 mod directed;
 mod implying;
 mod judging;
+mod reads;
 mod sentences;
 #[cfg(test)]
 mod tests;
+mod view;
 
 use std::sync::Arc;
 use std::sync::atomic::{AtomicBool, Ordering};
 
-use indexwise_grammar::hosts::{self, Host};
-use indexwise_grammar::macros::Macros;
+use indexwise_grammar::hosts::Host;
 use indexwise_grammar::span::Span;
-use indexwise_grammar::{Document, macros_of, read_each};
-use rustc_hash::FxHashMap;
 
-use crate::conventions::declared::Declared;
 pub use crate::conventions::declared::SharedConventions;
-use crate::conventions::inferred::{Evidence, Prices};
-use crate::conventions::meanings::Meanings;
 use crate::finding::{Finding, Severity};
-use crate::reading::{self, Reading};
-use crate::sketch::{Sketch, Unit};
+use crate::reading;
+use crate::sketch::Sketch;
 use crate::symbols::SymbolTable;
 
-pub(crate) use asking::{Asked, Unasked, statement_at};
-use directed::skipped;
+pub(crate) use asking::{Asked, Unasked};
 pub use implying::Implications;
-use judging::{judge_document, missing_part};
+use reads::{Read, Sketched, Statement};
 pub use sentences::problems;
+pub use view::View;
 
 /// One text of a paper.
 #[derive(Clone, Debug)]
@@ -148,6 +144,30 @@ pub struct DocumentAnalysis {
     pub findings: Vec<Finding>,
     /// The symbols, if they are asked for.
     pub symbols: Option<SymbolTable>,
+    /// The steps that were judged, in the order of the text.
+    pub marks: Vec<StepMark>,
+}
+
+/// A claimed step with its verdict.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct StepMark {
+    /// The relation sign.
+    pub sign: Span,
+    /// The verdict.
+    pub outcome: Outcome,
+    /// One sentence: the message of the finding, or that the step holds.
+    pub said: String,
+}
+
+/// The verdict about a step, as a mark beside it tells.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Outcome {
+    /// It holds, in every dimension that was tried.
+    Holds,
+    /// It fails, or holds in certain dimensions only.
+    Fails,
+    /// It is not shown or not decided.
+    Open,
 }
 
 /// Counts of one document.
@@ -191,38 +211,14 @@ pub enum StepMode {
 /// Checks a paper: reads every document, counts the habits of each, takes the cheapest reading of every statement
 /// and runs the rules. Deterministic; the order of documents is that of the paper.
 pub fn check(paper: &Paper, settings: &Settings, cancel: &Cancel) -> Analysis {
-    let read = read_paper(paper);
-    let sketched: Vec<Sketched<'_>> = read.iter().map(Sketched::of).collect();
-    let evidence = gather(&sketched, cancel);
-    let all = total(&evidence);
-    let formulas = read.iter().flat_map(|one| &one.document.formulas);
-    let labels = formulas.flat_map(|formula| formula.labels.iter().map(|(label, _)| label.clone())).collect();
-    let documents = sketched.iter().zip(&evidence).enumerate().map(|(number, (document, own))| {
-        if cancel.is_cancelled() {
-            return DocumentAnalysis::default();
-        }
-        let prices =
-            Prices { file: own, paper: &all, declared: &document.read.declared, macros: &document.read.macros };
-        let begin = document.read.text.find("\\begin{document}");
-        let troubles = paper.troubles.iter().filter(|trouble| trouble.document == number);
-        let missing = troubles.map(|trouble| missing_part(trouble, begin)).collect();
-        let mut analysis = judge_document(document, prices, settings, missing, &labels);
-        settings.settle(&mut analysis.findings);
-        analysis.findings.sort_by(|a, b| (a.span, a.rule, &a.message).cmp(&(b.span, b.rule, &b.message)));
-        analysis
-    });
-    Analysis { documents: documents.collect() }
+    View::of(paper, cancel).judge(settings, cancel)
 }
 
 /// How every statement of the first document is read, in words: its units with their scores and the letters out of
 /// balance. For people who tune the inference.
 pub fn readings(paper: &Paper) -> Vec<(Span, String)> {
-    let read = read_paper(paper);
-    let sketched: Vec<Sketched<'_>> = read.iter().map(Sketched::of).collect();
-    let evidence = gather(&sketched, &Cancel::default());
-    let all = total(&evidence);
-    let (Some(document), Some(own)) = (sketched.first(), evidence.first()) else { return Vec::new() };
-    let prices = Prices { file: own, paper: &all, declared: &document.read.declared, macros: &document.read.macros };
+    let view = View::of(paper, &Cancel::default());
+    let (Some(document), Some(prices)) = (view.documents.first(), view.prices(0)) else { return Vec::new() };
     let words = |sketch: &Sketch| {
         let reading = reading::read(sketch, sketch.units.iter().map(|unit| prices.score(unit)).collect());
         let units = sketch.units.iter().zip(&reading.choice.index).map(|(unit, index)| {
@@ -238,136 +234,8 @@ pub fn readings(paper: &Paper) -> Vec<(Span, String)> {
         let switches = format!("    switches {:?} now {:?}", sketch.switches, reading.choice.on);
         format!("{}{odd} trusted {trusted} {:?}\n{switches}\n", units.collect::<String>(), sketch.unjudged)
     };
-    let habits = (Span::default(), format!("    habits {}\n", own.summary()));
+    let habits = (Span::default(), format!("    habits {}\n", prices.file.summary()));
     std::iter::once(habits)
-        .chain(document.statements.iter().map(|statement| (statement.sketch.span, words(statement.sketch))))
+        .chain(document.statements.iter().map(|statement| (statement.sketch.span, words(&statement.sketch))))
         .collect()
-}
-
-/// Rounds of counting: each reads with the counts of the round before. Two settle nearly all readings of the
-/// documents; a third changed none that mattered.
-const ROUNDS: usize = 2;
-
-/// A document as read, with what is in force in it. Its formulas are without their statements: the sketches are
-/// all that is needed of them.
-struct Read<'p> {
-    text: &'p str,
-    host: Host,
-    document: Document,
-    /// The number of the formula, and the sketch of a statement with scripts.
-    sketches: Vec<(usize, Sketch)>,
-    macros: Macros,
-    declared: Declared,
-}
-
-/// A document with the sketches of its statements. The same units come again and again, so that each is numbered
-/// and its score is taken once a round.
-struct Sketched<'p> {
-    read: &'p Read<'p>,
-    statements: Vec<Statement<'p>>,
-    units: Vec<&'p Unit>,
-}
-
-/// A statement: the number of its formula, its sketch, and the numbers of its units in the document.
-struct Statement<'p> {
-    formula: usize,
-    sketch: &'p Sketch,
-    units: Vec<u32>,
-}
-
-impl Statement<'_> {
-    fn read(&self, scores: &[i32]) -> Reading {
-        let own = self.units.iter().map(|unit| scores.get(*unit as usize).copied().unwrap_or(0));
-        reading::read(self.sketch, own.collect())
-    }
-}
-
-impl<'p> Sketched<'p> {
-    fn of(read: &'p Read<'p>) -> Self {
-        let skipped = skipped(&read.declared, &read.document.formulas);
-        let mut numbers: FxHashMap<&Unit, u32> = FxHashMap::default();
-        let mut units: Vec<&Unit> = Vec::new();
-        let mut number = |unit: &'p Unit| {
-            *numbers.entry(unit).or_insert_with(|| {
-                units.push(unit);
-                u32::try_from(units.len() - 1).unwrap_or(u32::MAX)
-            })
-        };
-        let kept = read.sketches.iter().filter(|(formula, _)| !skipped.contains(formula));
-        let statement = |(formula, sketch): &'p (usize, Sketch)| Statement {
-            formula: *formula,
-            sketch,
-            units: sketch.units.iter().map(&mut number).collect(),
-        };
-        let statements = kept.map(statement).collect();
-        Self { read, statements, units }
-    }
-
-    fn scores(&self, prices: &Prices<'_>) -> Vec<i32> {
-        self.units.iter().map(|unit| prices.score(unit)).collect()
-    }
-}
-
-/// Reads all documents; macros of styles and of every part are known in all of them, as TeX would mostly have it.
-fn read_paper(paper: &Paper) -> Vec<Read<'_>> {
-    let mut shared = Macros::default();
-    for style in &paper.styles {
-        let scan = hosts::scan(&style.text, style.host, &shared);
-        shared = macros_of(&scan, &shared).inherited();
-    }
-    if paper.documents.len() > 1 {
-        for source in &paper.documents {
-            let scan = hosts::scan(&source.text, source.host, &shared);
-            if !scan.definitions.is_empty() {
-                shared = macros_of(&scan, &shared).inherited();
-            }
-        }
-    }
-    let project = shared_meanings(&paper.shared);
-    let mut out: Vec<Read<'_>> = Vec::new();
-    for source in &paper.documents {
-        let mut sketches = Vec::new();
-        let document = read_each(&source.text, source.host, &shared, |number, formula| {
-            let statements = std::mem::take(&mut formula.statements);
-            let all = statements.iter().map(Sketch::of);
-            sketches.extend(all.filter(|sketch| !sketch.places.is_empty()).map(|sketch| (number, sketch)));
-        });
-        let macros = macros_of(&document.scan, &shared);
-        let outer = out.first().map_or(&project, |root| &root.declared.meanings);
-        let declared = Declared::read(&document.scan.directives, source.host, &macros, outer);
-        out.push(Read { text: &source.text, host: source.host, document, sketches, macros, declared });
-    }
-    out
-}
-
-/// What the conventions around a paper declare, the nearer ones over the outer ones.
-fn shared_meanings(shared: &[SharedConventions]) -> Meanings {
-    shared.iter().fold(Meanings::default(), |outer, conventions| Declared::shared(conventions, &outer).meanings)
-}
-
-/// Counts the habits of every document.
-fn gather(documents: &[Sketched<'_>], cancel: &Cancel) -> Vec<Evidence> {
-    let mut evidence = vec![Evidence::default(); documents.len()];
-    for _ in 0..ROUNDS {
-        let all = total(&evidence);
-        let mut next = Vec::with_capacity(documents.len());
-        for (document, own) in documents.iter().zip(&evidence) {
-            let prices =
-                Prices { file: own, paper: &all, declared: &document.read.declared, macros: &document.read.macros };
-            let mut votes = Evidence::default();
-            let scores = document.scores(&prices);
-            for statement in document.statements.iter().filter(|_| !cancel.is_cancelled()) {
-                votes.vote(statement.sketch, &statement.read(&scores));
-            }
-            next.push(votes);
-        }
-        evidence = next;
-    }
-    evidence
-}
-
-fn total(evidence: &[Evidence]) -> Evidence {
-    let mut all = Evidence::default();
-    evidence.iter().for_each(|own| all.add(own));
-    all
 }

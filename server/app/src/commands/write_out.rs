@@ -6,7 +6,7 @@
 use std::path::{Path, PathBuf};
 
 use indexwise_checker::editing::write_out::{Because, Forms, RangeSource, Refusal, Summed, WrittenOut, write_out};
-use indexwise_checker::paper::Cancel;
+use indexwise_checker::paper::{Cancel, View};
 use indexwise_grammar::hosts::Host;
 use indexwise_grammar::lines::{Lines, ScalarColumn};
 use indexwise_grammar::unicode_sign;
@@ -90,7 +90,7 @@ fn looked(file: &Listed, place: &Place, scopes: &Scopes) -> Result<Result<Writte
     })?;
     let too_large = || Failure::new(&file.shown, "was not read: its paper is too large");
     let document = loaded.document(&file.path).ok_or_else(too_large)?;
-    Ok(write_out(&loaded.paper, document, offset, &Cancel::default()))
+    Ok(write_out(&View::of(&loaded.paper, &Cancel::default()), document, offset))
 }
 
 /// A file with a line and a column, both from 1.

@@ -25,7 +25,7 @@ use indexwise_grammar::tree::{Atom, Item, ItemKind, Script, Sum, Term, each_scri
 use indexwise_grammar::write::{Dialect, write_sum, write_term};
 
 use crate::ledger::shown;
-use crate::paper::{Asked, Cancel, Paper, Unasked, statement_at};
+use crate::paper::{Asked, Unasked, View};
 
 use collecting::{Collected, collect};
 use place::{Located, factors_of, items_of, locate};
@@ -181,8 +181,8 @@ impl From<Unasked> for Refusal {
 }
 
 /// Writes out the contraction at a byte offset of a document of the paper, by its number.
-pub fn write_out(paper: &Paper, document: usize, offset: u32, cancel: &Cancel) -> Result<WrittenOut, Refusal> {
-    statement_at(paper, (document, offset), cancel, |asked| written_out(asked, offset))?
+pub fn write_out(view: &View, document: usize, offset: u32) -> Result<WrittenOut, Refusal> {
+    view.statement_at(document, offset, |asked| written_out(asked, offset))?
 }
 
 /// Reasons for which a statement is not judged that do not matter to its sums.

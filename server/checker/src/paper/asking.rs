@@ -1,7 +1,8 @@
 //! The statement at a place of a document, with its tree and its reading: what a question of an editor begins with.
 //!
-//! The paper is read and its habits are counted as for a check, so that a question sees what the check saw.
+//! The view was read and counted as for a check, so that a question sees what the check saw.
 
+use indexwise_grammar::span::Span;
 use indexwise_grammar::tree::{self, Formula};
 
 use crate::conventions::inferred::Prices;
@@ -12,12 +13,14 @@ use crate::terms::symmetries::Customs;
 
 use super::directed::skipped;
 use super::judging::{Trees, is_without_sum};
-use super::{Cancel, Paper, Sketched, Statement, gather, read_paper, total};
+use super::{Sketched, Statement, View};
 
 /// A statement that somebody asks about.
 pub(crate) struct Asked<'a> {
     /// The formula that it stands in, without its statements.
     pub formula: &'a Formula,
+    /// The number of that formula in its document.
+    pub number: usize,
     /// Its tree.
     pub tree: &'a tree::Statement,
     /// Its sketch.
@@ -45,39 +48,68 @@ pub(crate) enum Unasked {
     Unread(&'static str),
 }
 
-/// Hands the statement at a byte offset of a document of the paper to a function.
-pub(crate) fn statement_at<T>(
-    paper: &Paper,
-    (document, offset): (usize, u32),
-    cancel: &Cancel,
-    take: impl FnOnce(&Asked<'_>) -> T,
-) -> Result<T, Unasked> {
-    let read = read_paper(paper);
-    let sketched: Vec<Sketched<'_>> = read.iter().map(Sketched::of).collect();
-    let own = sketched.get(document).ok_or(Unasked::NoFormula)?;
-    let (number, formula) = formula_at(&own.read.document.formulas, offset).ok_or(Unasked::NoFormula)?;
-    if let Some(part) = formula.unread.iter().find(|part| part.span.start <= offset && offset < part.span.end) {
-        return Err(Unasked::Unread(part.reason));
+impl View {
+    /// Hands the statement at a byte offset of a document to a function.
+    pub(crate) fn statement_at<T>(
+        &self,
+        document: usize,
+        offset: u32,
+        take: impl FnOnce(&Asked<'_>) -> T,
+    ) -> Result<T, Unasked> {
+        let own = self.documents.get(document).ok_or(Unasked::NoFormula)?;
+        let (number, formula) = formula_at(&own.read.document.formulas, offset).ok_or(Unasked::NoFormula)?;
+        if let Some(part) = formula.unread.iter().find(|part| part.span.start <= offset && offset < part.span.end) {
+            return Err(Unasked::Unread(part.reason));
+        }
+        if skipped(&own.read.declared, &own.read.document.formulas).contains(&number) {
+            return Err(Unasked::Skipped);
+        }
+        if is_without_sum(&own.read, number) {
+            return Err(Unasked::WithoutSum);
+        }
+        let statement = statement_of(own, number, offset).ok_or(Unasked::NoScripts)?;
+        let mut looker = self.looker(document).ok_or(Unasked::NoFormula)?;
+        looker.look(statement, |asked| Some(take(asked))).ok_or(Unasked::NoScripts)
     }
-    if skipped(&own.read.declared, &own.read.document.formulas).contains(&number) {
-        return Err(Unasked::Skipped);
+
+    /// Hands every statement with scripts of a document that touches a stretch of the text to a function, in order.
+    /// Those that the author says to skip are left out.
+    pub(crate) fn each_statement(&self, document: usize, within: Span, mut take: impl FnMut(&Asked<'_>)) {
+        let Some((own, mut looker)) = self.documents.get(document).zip(self.looker(document)) else { return };
+        let first = own.statements.partition_point(|statement| statement.sketch.span.end < within.start);
+        let touching = own.statements.iter().skip(first);
+        for statement in touching.take_while(|statement| statement.sketch.span.start <= within.end) {
+            looker.look(statement, &mut take);
+        }
     }
-    if is_without_sum(own.read, number) {
-        return Err(Unasked::WithoutSum);
+
+    fn looker(&self, document: usize) -> Option<Looker<'_>> {
+        let prices = self.prices(document)?;
+        let own = self.documents.get(document)?;
+        let (scores, customs) = (own.scores(&prices), Customs::of(&own.read.text, &prices));
+        Some(Looker { own, prices, scores, customs, trees: Trees::default() })
     }
-    let statement = statement_of(own, number, offset).ok_or(Unasked::NoScripts)?;
-    let evidence = gather(&sketched, cancel);
-    let all = total(&evidence);
-    let file = evidence.get(document).ok_or(Unasked::NoFormula)?;
-    let prices = Prices { file, paper: &all, declared: &own.read.declared, macros: &own.read.macros };
-    let reading = statement.read(&own.scores(&prices));
-    let customs = Customs::of(own.read.text, &prices);
-    let eyes = Eyes::new(statement.sketch, &reading.choice, &prices, customs);
-    let answer = Trees::default().statement(own.read, number, statement.sketch.span, |tree| {
-        let (sketch, reading, prices, eyes) = (statement.sketch, &reading, &prices, &eyes);
-        Some(take(&Asked { formula, tree, sketch, reading, prices, eyes }))
-    });
-    answer.ok_or(Unasked::NoScripts)
+}
+
+/// Looks at statements of a document one after another.
+struct Looker<'v> {
+    own: &'v Sketched,
+    prices: Prices<'v>,
+    scores: Vec<i32>,
+    customs: Customs,
+    trees: Trees,
+}
+
+impl Looker<'_> {
+    fn look<T: Default>(&mut self, statement: &Statement, take: impl FnOnce(&Asked<'_>) -> T) -> T {
+        let Some(formula) = self.own.read.document.formulas.get(statement.formula) else { return T::default() };
+        let (sketch, prices) = (&*statement.sketch, &self.prices);
+        let reading = &statement.read(&self.scores);
+        let eyes = &Eyes::new(sketch, &reading.choice, prices, self.customs);
+        self.trees.statement(&self.own.read, statement.formula, sketch.span, |tree| {
+            take(&Asked { formula, number: statement.formula, tree, sketch, reading, prices, eyes })
+        })
+    }
 }
 
 /// The formula that holds an offset, its end included where no other begins.
@@ -88,9 +120,8 @@ fn formula_at(formulas: &[Formula], offset: u32) -> Option<(usize, &Formula)> {
 }
 
 /// The statement that holds an offset; at its end too, where a cursor may stand.
-fn statement_of<'s, 'p>(document: &'s Sketched<'p>, formula: usize, offset: u32) -> Option<&'s Statement<'p>> {
+fn statement_of(document: &Sketched, formula: usize, offset: u32) -> Option<&Statement> {
     let own = || document.statements.iter().filter(|statement| statement.formula == formula);
-    let holds =
-        |statement: &&Statement<'_>| statement.sketch.span.start <= offset && offset < statement.sketch.span.end;
+    let holds = |statement: &&Statement| statement.sketch.span.start <= offset && offset < statement.sketch.span.end;
     own().find(holds).or_else(|| own().find(|statement| statement.sketch.span.end == offset))
 }

@@ -17,7 +17,8 @@ use crate::terms::symmetries::Customs;
 use crate::terms::{Eyes, sides};
 
 use super::judging::Trees;
-use super::{Cancel, Paper, Sketched, gather, read_paper, total};
+use super::reads::{gather, read_paper, total};
+use super::{Cancel, Paper, Sketched};
 
 /// What the papers of a project imply, gathered paper by paper.
 #[derive(Debug, Default)]
@@ -35,8 +36,7 @@ const MOST_SYMMETRIES: usize = 40;
 impl Implications {
     /// What a paper shows.
     pub fn of(paper: &Paper, cancel: &Cancel) -> Self {
-        let read = read_paper(paper);
-        let sketched: Vec<Sketched<'_>> = read.iter().map(Sketched::of).collect();
+        let sketched = read_paper(paper);
         let evidence = gather(&sketched, cancel);
         let all = total(&evidence);
         let mut own = Self::default();
@@ -82,10 +82,10 @@ impl Implications {
     }
 
     /// Symmetries that formulas of a document state.
-    fn note_symmetries(&mut self, document: &Sketched<'_>, prices: &Prices<'_>, path: &str, cancel: &Cancel) {
+    fn note_symmetries(&mut self, document: &Sketched, prices: &Prices<'_>, path: &str, cancel: &Cancel) {
         let scores = document.scores(prices);
-        let customs = Customs::of(document.read.text, prices);
-        let lines = Lines::new(document.read.text);
+        let customs = Customs::of(&document.read.text, prices);
+        let lines = Lines::new(&document.read.text);
         let mut trees = Trees::default();
         let relations = document.statements.iter().filter(|statement| statement.sketch.sides.len() > 1);
         for statement in relations.take_while(|_| !cancel.is_cancelled()) {
@@ -93,9 +93,9 @@ impl Implications {
             if !reading.odd.is_empty() {
                 continue;
             }
-            let eyes = Eyes::new(statement.sketch, &reading.choice, prices, customs);
+            let eyes = Eyes::new(&statement.sketch, &reading.choice, prices, customs);
             let found =
-                trees.statement(document.read, statement.formula, statement.sketch.span, |tree| stated(tree, &eyes));
+                trees.statement(&document.read, statement.formula, statement.sketch.span, |tree| stated(tree, &eyes));
             for Stated { key, sentence, span } in found {
                 let place = Some((path.to_owned(), lines.line(span.start) as usize + 1));
                 self.note_symmetry(key, Implied { sentence, reason: "a formula states it".to_owned(), place });

@@ -28,7 +28,7 @@ use super::{DocumentAnalysis, Read, Settings, Sketched, Statement, Statistics, S
 
 /// A document on its way through the rules.
 struct Judge<'d> {
-    document: &'d Sketched<'d>,
+    document: &'d Sketched,
     prices: Prices<'d>,
     customs: Customs,
     trees: Trees,
@@ -53,7 +53,7 @@ struct Judge<'d> {
 
 /// Judges a document; `missing` are findings about parts that could not be had.
 pub(super) fn judge_document<'d>(
-    document: &'d Sketched<'d>,
+    document: &'d Sketched,
     prices: Prices<'d>,
     settings: &Settings,
     missing: Vec<Finding>,
@@ -63,7 +63,7 @@ pub(super) fn judge_document<'d>(
     let mut judge = Judge {
         document,
         prices,
-        customs: Customs::of(document.read.text, &prices),
+        customs: Customs::of(&document.read.text, &prices),
         trees: Trees::default(),
         indexed: vec![false; formulas.len()],
         findings: Vec::new(),
@@ -100,21 +100,22 @@ pub(super) fn judge_document<'d>(
         indexed: indexed.iter().filter(|flag| **flag).count(),
         unread: formulas.iter().zip(&indexed).filter(|(formula, flag)| **flag && !formula.unread.is_empty()).count(),
         unknown_macros: formulas.iter().zip(&indexed).filter(|(f, flag)| **flag && !f.unknown.is_empty()).count(),
-        steps: steps.map(|steps| steps.counts).unwrap_or_default(),
+        steps: steps.as_ref().map(|steps| steps.counts).unwrap_or_default(),
     };
-    let read = document.read;
+    let marks = steps.map(|steps| steps.marks).unwrap_or_default();
+    let read = &document.read;
     let mut missing = missing;
     missing.extend(unknown);
     missing.extend(about);
     let findings = directed(&read.declared, read.host, formulas, findings, missing);
     let symbols = symbols.map(|symbols| symbols.finish(&prices.declared.meanings, customs));
-    DocumentAnalysis { statistics, findings, symbols }
+    DocumentAnalysis { statistics, findings, symbols, marks }
 }
 
 impl<'d> Judge<'d> {
     /// Steps are judged where the author asks for them, and in notes.
     fn prepare_steps(&mut self, mode: StepMode) {
-        let read = self.document.read;
+        let read = &self.document.read;
         let declared = &read.declared;
         for (sentence, span) in &declared.sentences {
             if let Sentence::Check { using } = sentence
@@ -155,7 +156,7 @@ impl<'d> Judge<'d> {
     /// The steps of statements without a letter in their scripts, which have no sketch; between the others in the order
     /// of formulas, for they may define something.
     fn steps_without_letters(&mut self, formulas: Range<usize>, skipped: &FxHashSet<usize>) {
-        let (read, sketched) = (self.document.read, &self.document.statements);
+        let (read, sketched) = (&self.document.read, &self.document.statements);
         if self.steps.is_none() {
             return;
         }
@@ -172,7 +173,7 @@ impl<'d> Judge<'d> {
                 }
                 let (sketch, reading) = (Cow::Owned(sketch), Reading::default());
                 let (prices, faults) = (self.prices, Vec::new());
-                self.steps(number, &Judged { text: read.text, formula, sketch, reading, prices, faults });
+                self.steps(number, &Judged { text: &read.text, formula, sketch, reading, prices, faults });
             }
         }
     }
@@ -182,8 +183,8 @@ impl<'d> Judge<'d> {
         let Some(steps) = &mut self.steps else { return };
         for place in self.document.statements.iter().filter(|place| !self.asked.contains(&place.formula)) {
             let reading = place.read(&self.scores);
-            let eyes = Eyes::new(place.sketch, &reading.choice, &self.prices, self.customs);
-            self.trees.statement(self.document.read, place.formula, place.sketch.span, |statement| {
+            let eyes = Eyes::new(&place.sketch, &reading.choice, &self.prices, self.customs);
+            self.trees.statement(&self.document.read, place.formula, place.sketch.span, |statement| {
                 steps.condition(statement, &eyes);
             });
         }
@@ -220,7 +221,7 @@ impl<'d> Judge<'d> {
                 &name.text,
             ));
         }
-        let read = self.document.read;
+        let read = &self.document.read;
         let place =
             self.trees.statements(read, number).iter().position(|statement| statement.span == judged.sketch.span);
         let reread = |edits: &[Edit]| statement_after(read, number, place?, edits);
@@ -254,8 +255,8 @@ impl<'d> Judge<'d> {
             .collect()
     }
 
-    fn statement(&mut self, statement: &Statement<'_>, mut reading: Reading) {
-        let (number, sketch) = (statement.formula, statement.sketch);
+    fn statement(&mut self, statement: &Statement, mut reading: Reading) {
+        let (number, sketch) = (statement.formula, &*statement.sketch);
         let formulas = &self.document.read.document.formulas;
         let Some(formula) = formulas.get(number) else { return };
         let any_index = sketch.places.iter().any(|place| reading.choice.index.get(place.unit as usize) == Some(&true));
@@ -264,13 +265,13 @@ impl<'d> Judge<'d> {
         }
         if let Some(symbols) = &mut self.symbols {
             let eyes = Eyes::new(sketch, &reading.choice, &self.prices, self.customs);
-            self.trees.statement(self.document.read, number, sketch.span, |tree| {
-                symbols.take(tree, self.document.read.text, &eyes);
+            self.trees.statement(&self.document.read, number, sketch.span, |tree| {
+                symbols.take(tree, &*self.document.read.text, &eyes);
             });
         }
         reading.odd.retain(|(letter, _)| self.prices.is_index_notation(letter));
         if sketch.unjudged.is_some()
-            || is_without_sum(self.document.read, number)
+            || is_without_sum(&self.document.read, number)
             || !self.prices.trusts(&sketch.unknown)
         {
             return;
@@ -278,7 +279,7 @@ impl<'d> Judge<'d> {
         let search = if reading.odd.is_empty() { rules::faults::level_faults } else { rules::faults::faults };
         let mut faults = search(sketch, &reading.choice, &self.prices);
         faults.retain(|fault| fault.letter().is_none_or(|letter| self.prices.is_index_notation(letter)));
-        let (text, held) = (self.document.read.text, Cow::Borrowed(sketch));
+        let (text, held) = (&*self.document.read.text, Cow::Borrowed(sketch));
         let judged = Judged { text, formula, sketch: held, reading, prices: self.prices, faults };
         let found = rules::check_statement(&judged);
         let balanced = judged.reading.odd.is_empty() && found.iter().all(|finding| finding.ledger.is_none());
@@ -294,7 +295,7 @@ impl<'d> Judge<'d> {
     /// The rules about terms, on a statement that balances.
     fn terms(&mut self, number: usize, judged: &Judged<'_>) {
         let eyes = Eyes::new(&judged.sketch, &judged.reading.choice, &self.prices, self.customs);
-        let found = self.trees.statement(self.document.read, number, judged.sketch.span, |statement| {
+        let found = self.trees.statement(&self.document.read, number, judged.sketch.span, |statement| {
             rules::check_terms(&Flattened::new(statement, judged, &eyes))
         });
         self.findings.extend(found.into_iter().map(|finding| (number, finding)));
@@ -302,7 +303,7 @@ impl<'d> Judge<'d> {
 
     /// Statements without a letter in their scripts have no sketch, but components and symbols.
     fn statements_without_letters(&mut self) {
-        let read = self.document.read;
+        let read = &self.document.read;
         let skipped = skipped(&read.declared, &read.document.formulas);
         let mut known =
             self.document.statements.iter().map(|statement| (statement.formula, statement.sketch.span)).peekable();
@@ -318,12 +319,12 @@ impl<'d> Judge<'d> {
             for statement in statements.iter().filter(|statement| !sketched.contains(&statement.span)) {
                 let sketch = Cow::Owned(Sketch::of(statement));
                 let (reading, faults) = (Reading::default(), Vec::new());
-                let judged = Judged { text: read.text, formula, sketch, reading, prices: self.prices, faults };
+                let judged = Judged { text: &read.text, formula, sketch, reading, prices: self.prices, faults };
                 let eyes = Eyes::new(&judged.sketch, &judged.reading.choice, &self.prices, self.customs);
                 let found = rules::check_terms(&Flattened::new(statement, &judged, &eyes));
                 self.findings.extend(found.into_iter().map(|finding| (number, finding)));
                 if let Some(symbols) = &mut self.symbols {
-                    symbols.take(statement, read.text, &eyes);
+                    symbols.take(statement, &read.text, &eyes);
                 }
             }
         }
@@ -341,7 +342,7 @@ fn labels_before(formulas: &[Formula], number: usize) -> impl Iterator<Item = &C
 
 /// The statements of a label, as something given.
 fn given(
-    document: &Sketched<'_>,
+    document: &Sketched,
     scores: &[i32],
     prices: &Prices<'_>,
     customs: Customs,
@@ -356,8 +357,8 @@ fn given(
     });
     for place in places {
         let reading = place.read(scores);
-        let eyes = Eyes::new(place.sketch, &reading.choice, prices, customs);
-        givens.extend(trees.statement(document.read, place.formula, place.sketch.span, |statement| {
+        let eyes = Eyes::new(&place.sketch, &reading.choice, prices, customs);
+        givens.extend(trees.statement(&document.read, place.formula, place.sketch.span, |statement| {
             steps.given(label, statement, &eyes)
         }));
     }
@@ -375,7 +376,7 @@ impl Trees {
     /// Hands the tree of a statement of a formula to a function; nothing comes of a statement that is not there.
     pub(super) fn statement<T: Default>(
         &mut self,
-        read: &Read<'_>,
+        read: &Read,
         number: usize,
         span: Span,
         take: impl FnOnce(&tree::Statement) -> T,
@@ -383,10 +384,10 @@ impl Trees {
         self.statements(read, number).iter().find(|statement| statement.span == span).map(take).unwrap_or_default()
     }
 
-    fn statements(&mut self, read: &Read<'_>, number: usize) -> &[tree::Statement] {
+    fn statements(&mut self, read: &Read, number: usize) -> &[tree::Statement] {
         if self.formula.as_ref().is_none_or(|(known, _)| *known != number) {
             let region = read.document.scan.regions.get(number);
-            let tree = region.map(|region| read_region(region, read.text, read.host, &read.macros));
+            let tree = region.map(|region| read_region(region, &read.text, read.host, &read.macros));
             self.formula = tree.map(|tree| (number, tree));
         }
         self.formula.as_ref().map(|(_, tree)| tree.statements.as_slice()).unwrap_or_default()
@@ -395,7 +396,7 @@ impl Trees {
 
 /// A statement of a formula as it is read after edits of the text within it, which are in order and apart. Where the
 /// formula holds what is no mathematics, this is not told.
-fn statement_after(read: &Read<'_>, number: usize, place: usize, edits: &[Edit]) -> Option<tree::Statement> {
+fn statement_after(read: &Read, number: usize, place: usize, edits: &[Edit]) -> Option<tree::Statement> {
     let region = read.document.scan.regions.get(number).filter(|region| region.holes.is_empty())?;
     let body = region.body;
     let (mut text, mut at) = (String::new(), body.start);
@@ -420,12 +421,12 @@ pub(super) fn missing_part(trouble: &Trouble, begin: Option<usize>) -> Finding {
 }
 
 /// Whether words in a formula or right after it say that no sum is meant.
-pub(super) fn is_without_sum(read: &Read<'_>, number: usize) -> bool {
+pub(super) fn is_without_sum(read: &Read, number: usize) -> bool {
     let formulas = &read.document.formulas;
     let Some(formula) = formulas.get(number) else { return false };
     let next = formulas.get(number + 1).map(|next| next.span.start).filter(|start| *start >= formula.span.end);
     let after = Span { start: formula.span.end, end: next.unwrap_or(u32::MAX) };
-    formula.no_sum || says_no_sum(read.text, after, read.host)
+    formula.no_sum || says_no_sum(&read.text, after, read.host)
 }
 
 /// Whether the words right after a formula say that no sum is meant: those before the next formula, up to a blank

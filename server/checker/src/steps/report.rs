@@ -17,7 +17,7 @@ use rustc_hash::{FxHashMap, FxHashSet, FxHasher};
 use crate::conventions::meanings::Meanings;
 use crate::finding::{Counterexample, Finding, Fix, Related, Severity, StepVerdict};
 use crate::ledger::shown;
-use crate::paper::Steps;
+use crate::paper::{Outcome, StepMark, Steps};
 use crate::rules;
 use crate::terms::Eyes;
 
@@ -50,6 +50,8 @@ pub struct StepJudge<'m> {
     conditioned: FxHashSet<CompactString>,
     /// The verdicts so far.
     pub counts: Steps,
+    /// The same one by one, in the order of the text.
+    pub marks: Vec<StepMark>,
     /// Whether the step judged last may be a law.
     law: bool,
     left: usize,
@@ -72,6 +74,7 @@ impl<'m> StepJudge<'m> {
             known: FxHashMap::default(),
             conditioned: FxHashSet::default(),
             counts: Steps::default(),
+            marks: Vec::new(),
             law: false,
             left: STEPS,
             mended: MENDED,
@@ -101,7 +104,10 @@ impl<'m> StepJudge<'m> {
         let mut told: Vec<Option<Finding>> = Vec::with_capacity(steps.len());
         for step in &steps {
             self.law = false;
-            told.push(self.step(step, source.text, asked));
+            let before = self.counts;
+            let finding = self.step(step, source.text, asked);
+            self.mark(step, before, finding.as_ref());
+            told.push(finding);
             // A law is a condition for what comes after it.
             if self.law {
                 self.conditioned.extend(statement.sides.iter().take(2).flat_map(|side| kernels(side, eyes)));
@@ -128,6 +134,17 @@ impl<'m> StepJudge<'m> {
         found.retain(|finding| asked != Asked::Quietly || finding.severity != Severity::Hint);
         self.surroundings.world.givens.clear();
         found
+    }
+
+    /// Notes a verdict at its sign.
+    fn mark(&mut self, step: &Step, before: Steps, finding: Option<&Finding>) {
+        let outcome = match self.counts {
+            now if now.holds > before.holds => Outcome::Holds,
+            now if now.fails > before.fails => Outcome::Fails,
+            _ => Outcome::Open,
+        };
+        let said = finding.map_or_else(|| "this step holds".to_owned(), |finding| finding.message.clone());
+        self.marks.push(StepMark { sign: step.sign, outcome, said });
     }
 
     /// A statement as something given: each of its relations.

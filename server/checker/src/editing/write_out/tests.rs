@@ -10,7 +10,7 @@ use std::sync::Arc;
 use indexwise_grammar::hosts::Host;
 
 use super::*;
-use crate::paper::Source;
+use crate::paper::{Cancel, Paper, Source};
 
 const CURSOR: char = '‸';
 
@@ -18,7 +18,7 @@ fn asked(text: &str, host: Host) -> Result<WrittenOut, Refusal> {
     let offset = text.find(CURSOR).expect("a cursor");
     let text: Arc<str> = text.replace(CURSOR, "").into();
     let paper = Paper { documents: vec![Source { path: "sheet".into(), text, host }], ..Paper::default() };
-    write_out(&paper, 0, offset as u32, &Cancel::default())
+    write_out(&View::of(&paper, &Cancel::default()), 0, offset as u32)
 }
 
 #[track_caller]
