@@ -47,14 +47,31 @@ pub fn read_each(text: &str, host: Host, inherited: &Macros, mut each: impl FnMu
     let scan = scan(text, host, inherited);
     let macros = macros_of(&scan, inherited);
     let mut formulas = Vec::with_capacity(scan.regions.len());
-    for regions in scan.regions.chunks(FORMULAS_AT_ONCE) {
-        let drafts: Vec<_> = regions.iter().map(|region| draft(region, text, host, &macros)).collect();
-        for mut formula in formula::parse_all(&drafts) {
-            each(formulas.len(), &mut formula);
-            formulas.push(formula);
+    read_regions(scan.regions.iter(), text, host, &macros, |mut formula| {
+        each(formulas.len(), &mut formula);
+        formulas.push(formula);
+    });
+    Document { scan, formulas }
+}
+
+/// Reads regions of a scanned document and hands over each formula in their order; `macros` are all those of the
+/// document. Places are those of the text.
+pub fn read_regions<'r>(
+    regions: impl Iterator<Item = &'r Region>,
+    text: &str,
+    host: Host,
+    macros: &Macros,
+    mut each: impl FnMut(Formula),
+) {
+    let mut drafts = Vec::with_capacity(FORMULAS_AT_ONCE);
+    for region in regions {
+        drafts.push(draft(region, text, host, macros));
+        if drafts.len() == FORMULAS_AT_ONCE {
+            formula::parse_all(&drafts).into_iter().for_each(&mut each);
+            drafts.clear();
         }
     }
-    Document { scan, formulas }
+    formula::parse_all(&drafts).into_iter().for_each(each);
 }
 
 fn draft(region: &Region, text: &str, host: Host, macros: &Macros) -> (Span, bool, Draft) {

@@ -53,7 +53,7 @@ pub struct Definition {
 }
 
 /// The macros in force: a name has one meaning from each place on.
-#[derive(Clone, Debug, Default)]
+#[derive(Clone, Debug, Default, PartialEq)]
 pub struct Macros {
     meanings: FxHashMap<String, Vec<(u32, Arc<Macro>)>>,
 }

@@ -38,6 +38,11 @@ impl Span {
         self.start <= other.start && other.end <= self.end
     }
 
+    /// The same stretch so many bytes further on.
+    pub fn moved(self, by: i32) -> Self {
+        Self { start: self.start.saturating_add_signed(by), end: self.end.saturating_add_signed(by) }
+    }
+
     /// As a range of `usize`, to index a text.
     pub const fn range(self) -> std::ops::Range<usize> {
         self.start as usize..self.end as usize

@@ -66,6 +66,18 @@ pub struct Formula {
     pub display: bool,
 }
 
+impl Formula {
+    /// Takes every place to where it stands in another text. The statements are left as they are: this is for a formula
+    /// that was read for something else than its statements.
+    pub fn move_spans(&mut self, to: impl Fn(Span) -> Span) {
+        let spans = std::iter::once(&mut self.span)
+            .chain(self.unread.iter_mut().map(|part| &mut part.span))
+            .chain(self.unknown.iter_mut().map(|(_, span)| span))
+            .chain(self.labels.iter_mut().map(|(_, span)| span));
+        spans.for_each(|span| *span = to(*span));
+    }
+}
+
 /// A part that could not be read, and why.
 #[derive(Clone, Debug, PartialEq, Eq)]
 pub struct Unread {

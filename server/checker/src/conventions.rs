@@ -5,4 +5,6 @@ pub mod clashes;
 pub mod declared;
 pub mod implied;
 pub mod inferred;
+pub mod inquiries;
 pub mod meanings;
+pub mod prices;

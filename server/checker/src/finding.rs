@@ -50,6 +50,19 @@ impl Finding {
     pub(crate) fn plain(rule: &'static str, severity: Severity, span: Span, message: String) -> Self {
         Self { rule, severity, span, message, related: Vec::new(), fixes: Vec::new(), ledger: None, verdict: None }
     }
+
+    /// Takes every place to where it stands in another text.
+    pub(crate) fn move_spans(&mut self, to: impl Fn(Span) -> Span) {
+        let edits = self.fixes.iter_mut().flat_map(|fix| fix.edits.iter_mut().map(|edit| &mut edit.span));
+        let ledger = self.ledger.iter_mut().flat_map(|ledger| {
+            std::iter::once(&mut ledger.statement).chain(ledger.rows.iter_mut().map(|row| &mut row.span))
+        });
+        let spans = std::iter::once(&mut self.span)
+            .chain(self.related.iter_mut().map(|related| &mut related.span))
+            .chain(edits)
+            .chain(ledger);
+        spans.for_each(|span| *span = to(*span));
+    }
 }
 
 /// What was found out about a step.

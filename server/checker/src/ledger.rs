@@ -10,7 +10,7 @@ use indexwise_grammar::tree::Formula;
 
 use crate::balance::{self, Choice, Event, term_state};
 pub use crate::conventions::built_in::shown;
-use crate::conventions::inferred::Prices;
+use crate::conventions::prices::Prices;
 use crate::finding::{Ledger, LedgerIndex, LedgerRow};
 use crate::reading::Reading;
 use crate::rules::faults::Fault;

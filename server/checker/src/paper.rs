@@ -4,6 +4,7 @@ mod asking;
 mod directed;
 mod implying;
 mod judging;
+mod memory;
 mod reads;
 mod sentences;
 #[cfg(test)]
@@ -24,6 +25,7 @@ use crate::symbols::SymbolTable;
 
 pub(crate) use asking::{Asked, Unasked};
 pub use implying::Implications;
+pub use memory::Memory;
 use reads::{Read, Sketched, Statement};
 pub use sentences::problems;
 pub use view::View;
@@ -236,6 +238,6 @@ pub fn readings(paper: &Paper) -> Vec<(Span, String)> {
     };
     let habits = (Span::default(), format!("    habits {}\n", prices.file.summary()));
     std::iter::once(habits)
-        .chain(document.statements.iter().map(|statement| (statement.sketch.span, words(&statement.sketch))))
+        .chain(document.statements.iter().map(|statement| (statement.span(), words(&statement.kept))))
         .collect()
 }

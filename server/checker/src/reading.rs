@@ -30,7 +30,7 @@ const SWITCHES_CLIMBED: usize = 4;
 const SWITCHES_SEEN: usize = 24;
 
 /// A reading of a statement.
-#[derive(Clone, Debug, Default)]
+#[derive(Clone, Debug, Default, PartialEq, Eq)]
 pub struct Reading {
     /// The choice.
     pub choice: Choice,

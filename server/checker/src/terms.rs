@@ -22,7 +22,7 @@ use rustc_hash::{FxHashMap, FxHashSet};
 
 use crate::balance::Choice;
 use crate::conventions::built_in::{CLASSES, class_of};
-use crate::conventions::inferred::{LevelHabit, Prices};
+use crate::conventions::prices::{LevelHabit, Prices};
 use crate::conventions::meanings::Meanings;
 use crate::sketch::Sketch;
 

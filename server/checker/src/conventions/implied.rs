@@ -15,7 +15,7 @@ use crate::terms::uses::{Use, UsedSlot};
 use crate::terms::{Eyes, Product, Side};
 
 use super::built_in::{CLASSES, LetterClass, bare_letter, class_of};
-use super::inferred::{LevelHabit, Prices};
+use super::prices::{LevelHabit, Prices};
 
 /// A sentence that documents imply, with the reason for it.
 #[derive(Clone, Debug, PartialEq, Eq)]

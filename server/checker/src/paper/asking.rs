@@ -5,7 +5,7 @@
 use indexwise_grammar::span::Span;
 use indexwise_grammar::tree::{self, Formula};
 
-use crate::conventions::inferred::Prices;
+use crate::conventions::prices::Prices;
 use crate::reading::Reading;
 use crate::sketch::Sketch;
 use crate::terms::Eyes;
@@ -76,18 +76,17 @@ impl View {
     /// Those that the author says to skip are left out.
     pub(crate) fn each_statement(&self, document: usize, within: Span, mut take: impl FnMut(&Asked<'_>)) {
         let Some((own, mut looker)) = self.documents.get(document).zip(self.looker(document)) else { return };
-        let first = own.statements.partition_point(|statement| statement.sketch.span.end < within.start);
+        let first = own.statements.partition_point(|statement| statement.span().end < within.start);
         let touching = own.statements.iter().skip(first);
-        for statement in touching.take_while(|statement| statement.sketch.span.start <= within.end) {
+        for statement in touching.take_while(|statement| statement.span().start <= within.end) {
             looker.look(statement, &mut take);
         }
     }
 
     fn looker(&self, document: usize) -> Option<Looker<'_>> {
         let prices = self.prices(document)?;
-        let own = self.documents.get(document)?;
-        let (scores, customs) = (own.scores(&prices), Customs::of(&own.read.text, &prices));
-        Some(Looker { own, prices, scores, customs, trees: Trees::default() })
+        let (own, customs) = (self.documents.get(document)?, self.customs(document)?);
+        Some(Looker { own, prices, customs, trees: Trees::default() })
     }
 }
 
@@ -95,7 +94,6 @@ impl View {
 struct Looker<'v> {
     own: &'v Sketched,
     prices: Prices<'v>,
-    scores: Vec<i32>,
     customs: Customs,
     trees: Trees,
 }
@@ -103,8 +101,7 @@ struct Looker<'v> {
 impl Looker<'_> {
     fn look<T: Default>(&mut self, statement: &Statement, take: impl FnOnce(&Asked<'_>) -> T) -> T {
         let Some(formula) = self.own.read.document.formulas.get(statement.formula) else { return T::default() };
-        let (sketch, prices) = (&*statement.sketch, &self.prices);
-        let reading = &statement.read(&self.scores);
+        let (sketch, prices, reading) = (&*statement.sketch(), &self.prices, &*statement.reading);
         let eyes = &Eyes::new(sketch, &reading.choice, prices, self.customs);
         self.trees.statement(&self.own.read, statement.formula, sketch.span, |tree| {
             take(&Asked { formula, number: statement.formula, tree, sketch, reading, prices, eyes })
@@ -122,6 +119,6 @@ fn formula_at(formulas: &[Formula], offset: u32) -> Option<(usize, &Formula)> {
 /// The statement that holds an offset; at its end too, where a cursor may stand.
 fn statement_of(document: &Sketched, formula: usize, offset: u32) -> Option<&Statement> {
     let own = || document.statements.iter().filter(|statement| statement.formula == formula);
-    let holds = |statement: &&Statement| statement.sketch.span.start <= offset && offset < statement.sketch.span.end;
-    own().find(holds).or_else(|| own().find(|statement| statement.sketch.span.end == offset))
+    let holds = |statement: &&Statement| statement.span().start <= offset && offset < statement.span().end;
+    own().find(holds).or_else(|| own().find(|statement| statement.span().end == offset))
 }

@@ -12,13 +12,13 @@ use rustc_hash::FxHashSet;
 use crate::conventions::built_in::CLASSES;
 use crate::conventions::declared::Declared;
 use crate::conventions::implied::{Implied, Stated, families, metric, symmetry};
-use crate::conventions::inferred::{Evidence, Prices};
+use crate::conventions::inferred::Evidence;
+use crate::conventions::prices::Prices;
 use crate::terms::symmetries::Customs;
 use crate::terms::{Eyes, sides};
 
 use super::judging::Trees;
-use super::reads::{gather, read_paper, total};
-use super::{Cancel, Paper, Sketched};
+use super::{Cancel, Memory, Paper, Sketched};
 
 /// What the papers of a project imply, gathered paper by paper.
 #[derive(Debug, Default)]
@@ -36,18 +36,17 @@ const MOST_SYMMETRIES: usize = 40;
 impl Implications {
     /// What a paper shows.
     pub fn of(paper: &Paper, cancel: &Cancel) -> Self {
-        let sketched = read_paper(paper);
-        let evidence = gather(&sketched, cancel);
-        let all = total(&evidence);
+        let (sketched, _, all) = Memory::default().read(paper, cancel);
         let mut own = Self::default();
         for (number, document) in sketched.iter().enumerate().filter(|_| !cancel.is_cancelled()) {
+            let (declared, macros) = (&document.read.declared, &document.read.macros);
             let prices =
-                Prices { file: &all, paper: &all, declared: &document.read.declared, macros: &document.read.macros };
+                Prices { file: &all, paper: &all, declared, macros, inquiries: None };
             own.note_known(&prices);
             let path = paper.documents.get(number).map(|source| source.path.as_str()).unwrap_or_default();
             own.note_symmetries(document, &prices, path, cancel);
         }
-        own.evidence = all;
+        own.evidence = Evidence::clone(&all);
         own
     }
 
@@ -63,7 +62,7 @@ impl Implications {
     /// The sentences, each once: families, the metric, symmetries.
     pub fn sentences(self) -> Vec<Implied> {
         let (declared, macros) = (Declared::default(), Macros::default());
-        let prices = Prices { file: &self.evidence, paper: &self.evidence, declared: &declared, macros: &macros };
+        let prices = Prices { file: &self.evidence, paper: &self.evidence, declared: &declared, macros: &macros, inquiries: None };
         let known = |name: &str| self.known.contains(name);
         let mut out = families(&prices, &known);
         out.extend(metric(&prices, &known));
@@ -83,19 +82,17 @@ impl Implications {
 
     /// Symmetries that formulas of a document state.
     fn note_symmetries(&mut self, document: &Sketched, prices: &Prices<'_>, path: &str, cancel: &Cancel) {
-        let scores = document.scores(prices);
         let customs = Customs::of(&document.read.text, prices);
         let lines = Lines::new(&document.read.text);
         let mut trees = Trees::default();
-        let relations = document.statements.iter().filter(|statement| statement.sketch.sides.len() > 1);
+        let relations = document.statements.iter().filter(|statement| statement.kept.sides.len() > 1);
         for statement in relations.take_while(|_| !cancel.is_cancelled()) {
-            let reading = statement.read(&scores);
+            let reading = statement.read(prices);
             if !reading.odd.is_empty() {
                 continue;
             }
-            let eyes = Eyes::new(&statement.sketch, &reading.choice, prices, customs);
-            let found =
-                trees.statement(&document.read, statement.formula, statement.sketch.span, |tree| stated(tree, &eyes));
+            let eyes = Eyes::new(&statement.kept, &reading.choice, prices, customs);
+            let found = trees.statement(&document.read, statement.formula, statement.span(), |tree| stated(tree, &eyes));
             for Stated { key, sentence, span } in found {
                 let place = Some((path.to_owned(), lines.line(span.start) as usize + 1));
                 self.note_symmetry(key, Implied { sentence, reason: "a formula states it".to_owned(), place });

@@ -12,7 +12,8 @@ use indexwise_grammar::write::Dialect;
 use indexwise_grammar::{read_formula, read_note_formula, read_region};
 use rustc_hash::FxHashSet;
 
-use crate::conventions::inferred::Prices;
+use crate::conventions::inquiries::Inquiries;
+use crate::conventions::prices::Prices;
 use crate::finding::{Edit, Finding};
 use crate::ledger::Judged;
 use crate::reading::{self, Reading};
@@ -24,6 +25,7 @@ use crate::terms::symmetries::Customs;
 use crate::terms::{self, Eyes, Flattened};
 
 use super::directed::{directed, skipped, target};
+use super::memory::{Basis, Remembered};
 use super::{DocumentAnalysis, Read, Settings, Sketched, Statement, Statistics, StepMode, Trouble};
 
 /// A document on its way through the rules.
@@ -46,24 +48,35 @@ struct Judge<'d> {
     using: Vec<(usize, Name)>,
     /// The labels of all formulas of the paper.
     labels: &'d FxHashSet<CompactString>,
-    scores: Vec<i32>,
     /// Findings about the conventions.
     about: Vec<Finding>,
+    /// What is kept of an earlier version.
+    remembered: Option<&'d mut Remembered>,
 }
 
-/// Judges a document; `missing` are findings about parts that could not be had.
-pub(super) fn judge_document<'d>(
-    document: &'d Sketched,
-    prices: Prices<'d>,
-    settings: &Settings,
+/// A document with all that its judgement rests on.
+pub(super) struct Judging<'d> {
+    pub document: &'d Sketched,
+    pub prices: Prices<'d>,
+    pub customs: Customs,
+    pub settings: &'d Settings,
+    /// The labels of all formulas of the paper.
+    pub labels: &'d FxHashSet<CompactString>,
+}
+
+/// Judges a document; `missing` are findings about parts that could not be had, `remembered` is what is kept of an
+/// earlier version.
+pub(super) fn judge_document(
+    judging: Judging<'_>,
     missing: Vec<Finding>,
-    labels: &'d FxHashSet<CompactString>,
+    remembered: Option<&mut Remembered>,
 ) -> DocumentAnalysis {
+    let Judging { document, prices, customs, settings, labels } = judging;
     let formulas = &document.read.document.formulas;
     let mut judge = Judge {
         document,
         prices,
-        customs: Customs::of(&document.read.text, &prices),
+        customs,
         trees: Trees::default(),
         indexed: vec![false; formulas.len()],
         findings: Vec::new(),
@@ -74,8 +87,8 @@ pub(super) fn judge_document<'d>(
         asked: FxHashSet::default(),
         using: Vec::new(),
         labels,
-        scores: document.scores(&prices),
         about: Vec::new(),
+        remembered,
     };
     judge.prepare_steps(settings.steps);
     let skipped = skipped(&document.read.declared, formulas);
@@ -83,8 +96,7 @@ pub(super) fn judge_document<'d>(
     for statement in &document.statements {
         judge.steps_without_letters(plain..statement.formula, &skipped);
         plain = plain.max(statement.formula);
-        let reading = statement.read(&judge.scores);
-        judge.statement(statement, reading);
+        judge.statement(statement);
     }
     judge.steps_without_letters(plain..formulas.len(), &skipped);
     if prices.declared.meanings.has_numbered_ranges() || settings.symbols {
@@ -165,7 +177,7 @@ impl<'d> Judge<'d> {
             // Statements are in the order of their formulas.
             let first = sketched.partition_point(|other| other.formula < number);
             let beside = sketched.get(first..).unwrap_or_default().iter().take_while(|other| other.formula == number);
-            let spans: Vec<Span> = beside.map(|other| other.sketch.span).collect();
+            let spans: Vec<Span> = beside.map(|other| other.span()).collect();
             for statement in self.trees.statements(read, number).to_vec() {
                 let sketch = Sketch::of(&statement);
                 if spans.contains(&statement.span) || sketch.unjudged.is_some() {
@@ -182,9 +194,8 @@ impl<'d> Judge<'d> {
     fn conditions(&mut self) {
         let Some(steps) = &mut self.steps else { return };
         for place in self.document.statements.iter().filter(|place| !self.asked.contains(&place.formula)) {
-            let reading = place.read(&self.scores);
-            let eyes = Eyes::new(&place.sketch, &reading.choice, &self.prices, self.customs);
-            self.trees.statement(&self.document.read, place.formula, place.sketch.span, |statement| {
+            let eyes = Eyes::new(&place.sketch(), &place.reading.choice, &self.prices, self.customs);
+            self.trees.statement(&self.document.read, place.formula, place.span(), |statement| {
                 steps.condition(statement, &eyes);
             });
         }
@@ -211,15 +222,7 @@ impl<'d> Judge<'d> {
             return;
         }
         for name in labels {
-            givens.extend(given(
-                self.document,
-                &self.scores,
-                &self.prices,
-                self.customs,
-                &mut self.trees,
-                steps,
-                &name.text,
-            ));
+            givens.extend(given(self.document, &self.prices, self.customs, &mut self.trees, steps, &name.text));
         }
         let read = &self.document.read;
         let place =
@@ -232,8 +235,7 @@ impl<'d> Judge<'d> {
         });
         for finding in found.iter_mut().filter(|finding| finding.rule == "step-not-shown") {
             for label in labels_before(&read.document.formulas, number) {
-                let givens =
-                    given(self.document, &self.scores, &self.prices, self.customs, &mut self.trees, steps, label);
+                let givens = given(self.document, &self.prices, self.customs, &mut self.trees, steps, label);
                 match steps.holds_with(finding.span, &givens, judged.text) {
                     None => break,
                     Some(false) => {}
@@ -255,50 +257,74 @@ impl<'d> Judge<'d> {
             .collect()
     }
 
-    fn statement(&mut self, statement: &Statement, mut reading: Reading) {
-        let (number, sketch) = (statement.formula, &*statement.sketch);
-        let formulas = &self.document.read.document.formulas;
-        let Some(formula) = formulas.get(number) else { return };
-        let any_index = sketch.places.iter().any(|place| reading.choice.index.get(place.unit as usize) == Some(&true));
+    fn statement(&mut self, statement: &Statement) {
+        let (number, reading) = (statement.formula, &statement.reading);
+        let read = &self.document.read;
+        let Some(formula) = read.document.formulas.get(number) else { return };
+        let any_index =
+            statement.kept.places.iter().any(|place| reading.choice.index.get(place.unit as usize) == Some(&true));
         if let Some(flag) = self.indexed.get_mut(number) {
             *flag |= any_index;
         }
         if let Some(symbols) = &mut self.symbols {
-            let eyes = Eyes::new(sketch, &reading.choice, &self.prices, self.customs);
-            self.trees.statement(&self.document.read, number, sketch.span, |tree| {
-                symbols.take(tree, &*self.document.read.text, &eyes);
-            });
+            let eyes = Eyes::new(&statement.sketch(), &reading.choice, &self.prices, self.customs);
+            self.trees.statement(read, number, statement.span(), |tree| symbols.take(tree, &read.text, &eyes));
         }
-        reading.odd.retain(|(letter, _)| self.prices.is_index_notation(letter));
-        if sketch.unjudged.is_some()
-            || is_without_sum(&self.document.read, number)
-            || !self.prices.trusts(&sketch.unknown)
-        {
-            return;
-        }
-        let search = if reading.odd.is_empty() { rules::faults::level_faults } else { rules::faults::faults };
-        let mut faults = search(sketch, &reading.choice, &self.prices);
-        faults.retain(|fault| fault.letter().is_none_or(|letter| self.prices.is_index_notation(letter)));
-        let (text, held) = (&*self.document.read.text, Cow::Borrowed(sketch));
-        let judged = Judged { text, formula, sketch: held, reading, prices: self.prices, faults };
-        let found = rules::check_statement(&judged);
-        let balanced = judged.reading.odd.is_empty() && found.iter().all(|finding| finding.ledger.is_none());
+        let next = read.document.formulas.get(number + 1).map(|next| next.span.start);
+        let basis = || Basis::of(statement, self.customs, &read.text, formula.span, next);
+        let basis = self.remembered.is_some().then(basis);
+        let known = basis.as_ref().and_then(|basis| self.remembered.as_ref()?.recall(statement, basis));
+        let (found, balanced) = match known {
+            Some(known) => (known.findings, known.balanced),
+            None => {
+                // What was asked before is no part of this judgement.
+                let _ = self.prices.inquiries.map(Inquiries::take);
+                let judged = self.judged(statement, formula);
+                let questions = self.prices.inquiries.map(Inquiries::take);
+                if let (Some(remembered), Some(basis), Some(questions)) = (&mut self.remembered, basis, questions) {
+                    remembered.remember(statement, basis, questions, (&judged.0, judged.1));
+                }
+                judged
+            }
+        };
         self.findings.extend(found.into_iter().map(|finding| (number, finding)));
-        if balanced && terms::asks_for_terms(sketch, &judged) {
-            self.terms(number, &judged);
-        }
-        if balanced {
-            self.steps(number, &judged);
+        if balanced && self.steps.is_some() {
+            let (text, sketch, reading) = (&*read.text, statement.sketch(), Reading::clone(reading));
+            let (prices, faults) = (self.prices, Vec::new());
+            self.steps(number, &Judged { text, formula, sketch, reading, prices, faults });
         }
     }
 
+    /// What the rules find in a statement, and whether it balances.
+    fn judged(&mut self, statement: &Statement, formula: &Formula) -> (Vec<Finding>, bool) {
+        let sketch = statement.sketch();
+        if sketch.unjudged.is_some()
+            || is_without_sum(&self.document.read, statement.formula)
+            || !self.prices.trusts(&sketch.unknown)
+        {
+            return (Vec::new(), false);
+        }
+        let mut reading = Reading::clone(&statement.reading);
+        reading.odd.retain(|(letter, _)| self.prices.is_index_notation(letter));
+        let search = if reading.odd.is_empty() { rules::faults::level_faults } else { rules::faults::faults };
+        let mut faults = search(&sketch, &reading.choice, &self.prices);
+        faults.retain(|fault| fault.letter().is_none_or(|letter| self.prices.is_index_notation(letter)));
+        let text = &*self.document.read.text;
+        let judged = Judged { text, formula, sketch, reading, prices: self.prices, faults };
+        let mut found = rules::check_statement(&judged);
+        let balanced = judged.reading.odd.is_empty() && found.iter().all(|finding| finding.ledger.is_none());
+        if balanced && terms::asks_for_terms(&judged.sketch, &judged) {
+            found.extend(self.terms(statement.formula, &judged));
+        }
+        (found, balanced)
+    }
+
     /// The rules about terms, on a statement that balances.
-    fn terms(&mut self, number: usize, judged: &Judged<'_>) {
+    fn terms(&mut self, number: usize, judged: &Judged<'_>) -> Vec<Finding> {
         let eyes = Eyes::new(&judged.sketch, &judged.reading.choice, &self.prices, self.customs);
-        let found = self.trees.statement(&self.document.read, number, judged.sketch.span, |statement| {
+        self.trees.statement(&self.document.read, number, judged.sketch.span, |statement| {
             rules::check_terms(&Flattened::new(statement, judged, &eyes))
-        });
-        self.findings.extend(found.into_iter().map(|finding| (number, finding)));
+        })
     }
 
     /// Statements without a letter in their scripts have no sketch, but components and symbols.
@@ -306,7 +332,7 @@ impl<'d> Judge<'d> {
         let read = &self.document.read;
         let skipped = skipped(&read.declared, &read.document.formulas);
         let mut known =
-            self.document.statements.iter().map(|statement| (statement.formula, statement.sketch.span)).peekable();
+            self.document.statements.iter().map(|statement| (statement.formula, statement.span())).peekable();
         for (number, formula) in read.document.formulas.iter().enumerate() {
             let mut sketched = FxHashSet::default();
             while let Some((_, span)) = known.next_if(|(formula, _)| *formula <= number) {
@@ -343,7 +369,6 @@ fn labels_before(formulas: &[Formula], number: usize) -> impl Iterator<Item = &C
 /// The statements of a label, as something given.
 fn given(
     document: &Sketched,
-    scores: &[i32],
     prices: &Prices<'_>,
     customs: Customs,
     trees: &mut Trees,
@@ -356,9 +381,8 @@ fn given(
         formula.is_some_and(|formula| formula.labels.iter().any(|(known, _)| known == label))
     });
     for place in places {
-        let reading = place.read(scores);
-        let eyes = Eyes::new(&place.sketch, &reading.choice, prices, customs);
-        givens.extend(trees.statement(&document.read, place.formula, place.sketch.span, |statement| {
+        let eyes = Eyes::new(&place.sketch(), &place.reading.choice, prices, customs);
+        givens.extend(trees.statement(&document.read, place.formula, place.span(), |statement| {
             steps.given(label, statement, &eyes)
         }));
     }

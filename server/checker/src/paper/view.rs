@@ -2,25 +2,31 @@
 //!
 //! A view is immutable; an editor makes one for each version of its texts and asks it as often as it likes.
 
+use std::sync::Arc;
+
 use compact_str::CompactString;
 use indexwise_grammar::hosts::{Host, Scan};
 use indexwise_grammar::tree::Formula;
 use rustc_hash::FxHashSet;
 
 use crate::conventions::declared::Declared;
-use crate::conventions::inferred::{Evidence, Prices};
+use crate::conventions::inferred::Evidence;
+use crate::conventions::prices::Prices;
+use crate::terms::symmetries::Customs;
 
-use super::judging::{judge_document, missing_part};
-use super::reads::{Sketched, gather, read_paper, total};
+use super::judging::{Judging, judge_document, missing_part};
+use super::memory::{Memory, Remembered};
+use super::reads::Sketched;
 use super::{Analysis, Cancel, DocumentAnalysis, Paper, Settings};
 
 /// A paper, read; its documents by their numbers, the root first.
 pub struct View {
     pub(super) documents: Vec<Sketched>,
     /// The habits of each document.
-    evidence: Vec<Evidence>,
+    evidence: Vec<Arc<Evidence>>,
     /// The habits of all together.
-    all: Evidence,
+    all: Arc<Evidence>,
+    customs: Vec<Customs>,
     /// The labels of all formulas.
     labels: FxHashSet<CompactString>,
     paper: Paper,
@@ -29,28 +35,63 @@ pub struct View {
 impl View {
     /// Reads a paper and counts its habits.
     pub fn of(paper: &Paper, cancel: &Cancel) -> Self {
-        let documents = read_paper(paper);
-        let evidence = gather(&documents, cancel);
-        let all = total(&evidence);
+        Self::again(paper, &mut Memory::default(), cancel)
+    }
+
+    /// The same, from what is kept of an earlier version. If it is cancelled, the view is not worth a look.
+    pub fn again(paper: &Paper, memory: &mut Memory, cancel: &Cancel) -> Self {
+        let (documents, evidence, all) = memory.read(paper, cancel);
         let formulas = documents.iter().flat_map(|one| &one.read.document.formulas);
         let labels = formulas.flat_map(|formula| formula.labels.iter().map(|(label, _)| label.clone())).collect();
-        Self { documents, evidence, all, labels, paper: paper.clone() }
+        let mut view = Self { documents, evidence, all, customs: Vec::new(), labels, paper: paper.clone() };
+        let customs = (0..view.len()).filter_map(|number| Some(Customs::of(view.text(number), &view.prices(number)?)));
+        view.customs = customs.collect();
+        view
     }
 
     /// Asks all rules. One analysis for each document, in their order.
     pub fn judge(&self, settings: &Settings, cancel: &Cancel) -> Analysis {
-        let judged = |number| {
-            if cancel.is_cancelled() { None } else { self.judge_document(number, settings) }
-        };
+        self.judge_each(cancel, |number| self.judge_document(number, settings, None))
+    }
+
+    /// The same, with what is kept of the judgements about an earlier version; the memory must be the one that this
+    /// view was made from last.
+    pub fn judge_again(&self, settings: &Settings, memory: &mut Memory, cancel: &Cancel) -> Analysis {
+        let analysis =
+            self.judge_each(cancel, |number| self.judge_document(number, settings, memory.of_document(number)));
+        if cancel.is_cancelled() {
+            memory.forget_judgements();
+        }
+        analysis
+    }
+
+    fn judge_each(&self, cancel: &Cancel, mut judge: impl FnMut(usize) -> Option<DocumentAnalysis>) -> Analysis {
+        let mut judged = |number| if cancel.is_cancelled() { None } else { judge(number) };
         Analysis { documents: (0..self.documents.len()).map(|number| judged(number).unwrap_or_default()).collect() }
     }
 
-    fn judge_document(&self, number: usize, settings: &Settings) -> Option<DocumentAnalysis> {
+    fn judge_document(
+        &self,
+        number: usize,
+        settings: &Settings,
+        mut remembered: Option<&mut Remembered>,
+    ) -> Option<DocumentAnalysis> {
         let document = self.documents.get(number)?;
         let begin = document.read.text.find("\\begin{document}");
         let troubles = self.paper.troubles.iter().filter(|trouble| trouble.document == number);
         let missing = troubles.map(|trouble| missing_part(trouble, begin)).collect();
-        let mut analysis = judge_document(document, self.prices(number)?, settings, missing, &self.labels);
+        let prices = self.prices(number)?;
+        let inquiries = remembered.as_mut().map(|remembered| {
+            remembered.known.ask_again(&prices);
+            remembered.known.lend()
+        });
+        let prices = Prices { inquiries: inquiries.as_ref(), ..prices };
+        let customs = *self.customs.get(number)?;
+        let judging = Judging { document, prices, customs, settings, labels: &self.labels };
+        let mut analysis = judge_document(judging, missing, remembered.as_deref_mut());
+        if let Some((remembered, inquiries)) = remembered.zip(inquiries) {
+            remembered.known.take_back(inquiries);
+        }
         settings.settle(&mut analysis.findings);
         analysis.findings.sort_by(|a, b| (a.span, a.rule, &a.message).cmp(&(b.span, b.rule, &b.message)));
         Some(analysis)
@@ -100,6 +141,12 @@ impl View {
     pub(crate) fn prices(&self, document: usize) -> Option<Prices<'_>> {
         let read = &self.documents.get(document)?.read;
         let file = self.evidence.get(document)?;
-        Some(Prices { file, paper: &self.all, declared: &read.declared, macros: &read.macros })
+        let (declared, macros) = (&read.declared, &read.macros);
+        Some(Prices { file, paper: &self.all, declared, macros, inquiries: None })
+    }
+
+    /// What the usual kernels are taken for in a document.
+    pub(super) fn customs(&self, document: usize) -> Option<Customs> {
+        self.customs.get(document).copied()
     }
 }

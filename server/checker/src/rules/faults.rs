@@ -6,7 +6,7 @@ use indexwise_grammar::tree::Level;
 
 use crate::balance::{self, Choice, Event, Odd, judge, same_level};
 use crate::conventions::built_in::is_symbol_kernel;
-use crate::conventions::inferred::{LevelHabit, Prices};
+use crate::conventions::prices::{LevelHabit, Prices};
 use crate::sketch::{Shape, Sketch, Unit};
 
 /// One thing out of order.

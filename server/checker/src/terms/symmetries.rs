@@ -10,7 +10,7 @@
 use indexwise_grammar::conventions::{Curvature, Kind};
 use indexwise_grammar::tree::Level;
 
-use crate::conventions::inferred::Prices;
+use crate::conventions::prices::Prices;
 use crate::conventions::meanings::{Known, Meanings, Role};
 
 use super::product::Piece;
