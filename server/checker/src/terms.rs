@@ -22,8 +22,8 @@ use rustc_hash::{FxHashMap, FxHashSet};
 
 use crate::balance::Choice;
 use crate::conventions::built_in::{CLASSES, class_of};
-use crate::conventions::prices::{LevelHabit, Prices};
 use crate::conventions::meanings::Meanings;
+use crate::conventions::prices::{LevelHabit, Prices};
 use crate::sketch::Sketch;
 
 pub use asking::asks_for_terms;

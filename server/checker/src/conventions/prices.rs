@@ -114,7 +114,9 @@ impl Prices<'_> {
             return score;
         }
         let letter = &unit.letter;
-        let listed = !unit.coordinate && unit.class != LetterClass::Greek && self.file.coordinates.get(letter).is_some_and(|lists| *lists > 0);
+        let listed = !unit.coordinate
+            && unit.class != LetterClass::Greek
+            && self.file.coordinates.get(letter).is_some_and(|lists| *lists > 0);
         if listed && self.file.index.get(letter).is_none_or(|votes| *votes < 3) {
             return -25;
         }
@@ -145,7 +147,11 @@ impl Prices<'_> {
             }
         };
         let by_document = match unit.shape {
-            Shape::Several | Shape::Particle if self.paper.kernel_pairs.get(&lone_key).is_some_and(|pairs| *pairs != [0; 2]) => 7 * index,
+            Shape::Several | Shape::Particle
+                if self.paper.kernel_pairs.get(&lone_key).is_some_and(|pairs| *pairs != [0; 2]) =>
+            {
+                7 * index
+            }
             Shape::Several | Shape::Particle => {
                 let kernel = self.count(|evidence| evidence.label_kernel.get(&unit.kernel).copied());
                 7 * index - 7 * steps(others(kernel)).min(4)
@@ -258,15 +264,17 @@ impl Prices<'_> {
         let all = Evidence::class_counts(&self.paper.free_levels, class);
         let [agree, differ] = if own[0] + own[1] >= FREE_STATEMENTS { own } else { all };
         let total = agree + differ;
-        total >= FREE_STATEMENTS
-            && agree * 100 >= FREE_PERCENT * total
-            && self.habit(letter) == LevelHabit::InForce
+        total >= FREE_STATEMENTS && agree * 100 >= FREE_PERCENT * total && self.habit(letter) == LevelHabit::InForce
     }
 
     /// Whether the file writes this class of letters in index notation at all: by the summation convention, and mostly
     /// in balance.
     pub fn is_index_notation(&self, letter: &str) -> bool {
-        self.noted(self.mostly_balances(letter), |balances| i64::from(*balances), || Inquiry::IndexNotation(letter.into()))
+        self.noted(
+            self.mostly_balances(letter),
+            |balances| i64::from(*balances),
+            || Inquiry::IndexNotation(letter.into()),
+        )
     }
 
     fn mostly_balances(&self, letter: &str) -> bool {
@@ -281,7 +289,8 @@ impl Prices<'_> {
 
     /// Whether statements with these unknown commands may be judged.
     pub fn trusts(&self, unknown: &[CompactString]) -> bool {
-        let trusted = |name| self.noted(self.trusted(name), |trusted| i64::from(*trusted), || Inquiry::Trusts(name.clone()));
+        let trusted =
+            |name| self.noted(self.trusted(name), |trusted| i64::from(*trusted), || Inquiry::Trusts(name.clone()));
         unknown.iter().all(trusted)
     }
 
@@ -292,7 +301,9 @@ impl Prices<'_> {
 
     /// Whether neither kernel of a pair is ever seen in a pair on opposite levels: then the two may be labels.
     pub fn both_strange(&self, one: &Unit, two: &Unit) -> bool {
-        let strange = |unit: &Unit| self.noted(self.strange(unit), |strange| i64::from(*strange), || Inquiry::Strange(unit.clone()));
+        let strange = |unit: &Unit| {
+            self.noted(self.strange(unit), |strange| i64::from(*strange), || Inquiry::Strange(unit.clone()))
+        };
         [one, two].into_iter().all(strange)
     }
 
@@ -328,7 +339,11 @@ impl Prices<'_> {
 
     /// In how many statements of the paper a kernel carries an index of this class alone.
     pub fn lone_uses(&self, kernel: &str, letter: &str) -> u32 {
-        self.noted(self.counted_alone(kernel, letter), |uses| i64::from(*uses), || Inquiry::Alone(kernel.into(), letter.into()))
+        self.noted(
+            self.counted_alone(kernel, letter),
+            |uses| i64::from(*uses),
+            || Inquiry::Alone(kernel.into(), letter.into()),
+        )
     }
 
     fn counted_alone(&self, kernel: &str, letter: &str) -> u32 {

@@ -40,8 +40,7 @@ impl Implications {
         let mut own = Self::default();
         for (number, document) in sketched.iter().enumerate().filter(|_| !cancel.is_cancelled()) {
             let (declared, macros) = (&document.read.declared, &document.read.macros);
-            let prices =
-                Prices { file: &all, paper: &all, declared, macros, inquiries: None };
+            let prices = Prices { file: &all, paper: &all, declared, macros, inquiries: None };
             own.note_known(&prices);
             let path = paper.documents.get(number).map(|source| source.path.as_str()).unwrap_or_default();
             own.note_symmetries(document, &prices, path, cancel);
@@ -62,7 +61,13 @@ impl Implications {
     /// The sentences, each once: families, the metric, symmetries.
     pub fn sentences(self) -> Vec<Implied> {
         let (declared, macros) = (Declared::default(), Macros::default());
-        let prices = Prices { file: &self.evidence, paper: &self.evidence, declared: &declared, macros: &macros, inquiries: None };
+        let prices = Prices {
+            file: &self.evidence,
+            paper: &self.evidence,
+            declared: &declared,
+            macros: &macros,
+            inquiries: None,
+        };
         let known = |name: &str| self.known.contains(name);
         let mut out = families(&prices, &known);
         out.extend(metric(&prices, &known));
@@ -92,7 +97,8 @@ impl Implications {
                 continue;
             }
             let eyes = Eyes::new(&statement.kept, &reading.choice, prices, customs);
-            let found = trees.statement(&document.read, statement.formula, statement.span(), |tree| stated(tree, &eyes));
+            let found =
+                trees.statement(&document.read, statement.formula, statement.span(), |tree| stated(tree, &eyes));
             for Stated { key, sentence, span } in found {
                 let place = Some((path.to_owned(), lines.line(span.start) as usize + 1));
                 self.note_symmetry(key, Implied { sentence, reason: "a formula states it".to_owned(), place });

@@ -382,9 +382,11 @@ fn given(
     });
     for place in places {
         let eyes = Eyes::new(&place.sketch(), &place.reading.choice, prices, customs);
-        givens.extend(trees.statement(&document.read, place.formula, place.span(), |statement| {
-            steps.given(label, statement, &eyes)
-        }));
+        givens.extend(
+            trees.statement(&document.read, place.formula, place.span(), |statement| {
+                steps.given(label, statement, &eyes)
+            }),
+        );
     }
     givens
 }

@@ -56,7 +56,13 @@ pub(super) struct Remembered {
 
 impl Memory {
     /// Reads the documents of a paper and counts their habits.
-    pub(super) fn read(&mut self, paper: &Paper, cancel: &Cancel) -> (Vec<Sketched>, Vec<Arc<Evidence>>, Arc<Evidence>) {
+    pub(super) fn read(
+        &mut self,
+        paper: &Paper,
+        cancel: &Cancel,
+    ) -> (Vec<Sketched>, Vec<Arc<Evidence>>, Arc<Evidence>) {
+        // Whether counts that other documents read with have gone in one piece.
+        let mut lost = self.documents.len() != paper.documents.len();
         self.documents.resize_with(paper.documents.len(), Remembered::default);
         let shared = shared_macros(paper);
         let project = shared_meanings(&paper.shared);
@@ -67,16 +73,18 @@ impl Memory {
             let outer = out.first().map_or(&project, |root| &root.read.declared.meanings);
             let declared = Declared::read(&scan.directives, source.host, &macros, outer);
             if remembered.path != source.path || remembered.host != Some(source.host) {
-                *remembered = Remembered { path: source.path.clone(), host: Some(source.host), ..Remembered::default() };
+                *remembered =
+                    Remembered { path: source.path.clone(), host: Some(source.host), ..Remembered::default() };
+                lost = true;
             }
-            remembered.keep_what_holds(&shared, &scan, &declared.meanings);
+            lost |= remembered.keep_what_holds(&shared, &scan, &declared.meanings);
             let text = source.text.clone();
             let mut read =
                 Read { text, host: source.host, document: Document { scan, formulas: Vec::new() }, macros, declared };
             let places = remembered.formulas.read(&mut read);
             out.push(remembered.statements(read, &places));
         }
-        let (evidence, all) = self.count(&mut out, cancel);
+        let (evidence, all) = self.count(&mut out, lost, cancel);
         if cancel.is_cancelled() {
             *self = Self::default();
         }
@@ -96,14 +104,15 @@ impl Memory {
 
 impl Remembered {
     /// Forgets what rests on macros and meanings that are others now; and everything, if too much of what is numbered is
-    /// of formulas that are gone.
-    fn keep_what_holds(&mut self, inherited: &Macros, scan: &Scan, meanings: &Meanings) {
+    /// of formulas that are gone. Whether the counts are forgotten too.
+    fn keep_what_holds(&mut self, inherited: &Macros, scan: &Scan, meanings: &Meanings) -> bool {
         let same = |(definition, known): (&Definition, &(Arc<Macro>, bool))| {
             definition.meaning == known.0 && definition.provide == known.1
         };
         let definitions = scan.definitions.len() == self.definitions.len()
             && scan.definitions.iter().zip(&self.definitions).all(same);
-        if !definitions || self.inherited != *inherited || self.formulas.is_littered() {
+        let lost = !definitions || self.inherited != *inherited || self.formulas.is_littered();
+        if lost {
             self.inherited = inherited.clone();
             self.definitions =
                 scan.definitions.iter().map(|definition| (definition.meaning.clone(), definition.provide)).collect();
@@ -114,6 +123,7 @@ impl Remembered {
             self.counts.forget_scores();
             self.known.forget();
         }
+        lost
     }
 
     /// The statements of a document whose formulas are kept at these numbers; skipped ones do not count.

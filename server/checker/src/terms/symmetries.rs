@@ -10,8 +10,8 @@
 use indexwise_grammar::conventions::{Curvature, Kind};
 use indexwise_grammar::tree::Level;
 
-use crate::conventions::prices::Prices;
 use crate::conventions::meanings::{Known, Meanings, Role};
+use crate::conventions::prices::Prices;
 
 use super::product::Piece;
 use super::uses::{Origin, Use, UsedSlot};

@@ -9,8 +9,8 @@ use indexwise_grammar::conventions::{Bound, Range};
 use indexwise_grammar::tree::Term;
 
 use crate::conventions::built_in::{LetterClass, class_of};
-use crate::conventions::prices::LevelHabit;
 use crate::conventions::meanings::{Family, Meanings};
+use crate::conventions::prices::LevelHabit;
 use crate::paper::Asked;
 use crate::terms::uses::Use;
 use crate::terms::{Eyes, all_products};

@@ -48,17 +48,19 @@ impl Counts {
 }
 
 impl Memory {
-    /// Counts, and puts into every statement its reading. The counts of each document, and of all together.
+    /// Counts, and puts into every statement its reading; `lost` if counts were forgotten without being taken back. The
+    /// counts of each document, and of all together.
     pub(super) fn count(
         &mut self,
         documents: &mut [Sketched],
+        lost: bool,
         cancel: &Cancel,
     ) -> (Vec<Arc<Evidence>>, Arc<Evidence>) {
         let nothing = Arc::new(Evidence::default());
         let mut before = vec![nothing.clone(); self.documents.len()];
         let mut all_before = nothing;
         // Whether the counts of the round before are others than those of that round in the last version.
-        let mut moved = false;
+        let mut moved = lost;
         for round in 0..=ROUNDS {
             let mut stirred = false;
             for ((remembered, document), file) in self.documents.iter_mut().zip(documents.iter()).zip(&before) {
@@ -67,7 +69,7 @@ impl Memory {
                 let prices = Prices { file, paper: &all_before, declared, macros, inquiries: None };
                 stirred |= remembered.round(round, &prices, moved, cancel);
             }
-            moved = stirred;
+            moved = stirred || lost;
             if round < ROUNDS {
                 before = self.documents.iter().filter_map(|one| one.counts.evidence.get(round).cloned()).collect();
                 all_before = total(&before);

@@ -16,8 +16,8 @@ use crate::reading::Reading;
 use crate::sketch::{Sketch, Unit};
 
 use super::super::reads::Read;
-use super::judgements::Judgement;
 use super::ROUNDS;
+use super::judgements::Judgement;
 
 /// Units of formulas that are gone are kept up to this number in any case.
 const UNITS_SPARED: usize = 10_000;
@@ -112,7 +112,8 @@ impl Formulas {
             places.push(known);
         }
         let mut at = missing.into_iter();
-        let unread: Vec<&Region> = places.iter().zip(regions).filter(|(place, _)| place.is_none()).map(|(_, region)| region).collect();
+        let unread: Vec<&Region> =
+            places.iter().zip(regions).filter(|(place, _)| place.is_none()).map(|(_, region)| region).collect();
         read_regions(unread.into_iter(), text, *host, macros, |formula| {
             let Some((number, hash, layout)) = at.next() else { return };
             let own = formula.span.of(text);
@@ -123,7 +124,8 @@ impl Formulas {
             }
         });
         let places: Vec<u32> = places.into_iter().map(Option::unwrap_or_default).collect();
-        document.formulas = places.iter().zip(&document.scan.regions).map(|(place, region)| self.formula(*place, region)).collect();
+        document.formulas =
+            places.iter().zip(&document.scan.regions).map(|(place, region)| self.formula(*place, region)).collect();
         places
     }
 
