@@ -7,6 +7,10 @@
 //! `G` with two are symmetric. Where the text speaks of torsion the connection loses its symmetry and curvature its own;
 //! where it speaks of dislocations, vortices or frames without coordinates, partial derivatives need not commute.
 
+use std::ops::Range;
+use std::sync::LazyLock;
+
+use aho_corasick::AhoCorasick;
 use indexwise_grammar::conventions::{Curvature, Kind};
 use indexwise_grammar::tree::Level;
 
@@ -33,18 +37,31 @@ pub struct Customs {
 impl Customs {
     /// The customs of a document by its text.
     pub fn of(text: &str, prices: &Prices<'_>) -> Self {
-        let speaks = ["torsion", "Torsion"].iter().any(|word| {
-            text.match_indices(word).any(|(at, word)| {
-                let after = text.get(at + word.len()..).unwrap_or_default().trim_start_matches(['-', ' ']);
-                let before = text.get(..at).unwrap_or_default().trim_end();
-                !NO_TORSION_AFTER.iter().any(|free| after.starts_with(free))
-                    && !NO_TORSION_BEFORE.iter().any(|none| before.ends_with(none))
-            })
-        });
-        let torsion = speaks || text.contains("Einstein-Cartan") || text.contains("Einstein--Cartan");
-        let partials_differ = PARTIALS_DIFFER.iter().any(|word| text.contains(word));
+        let (mut torsion, mut partials_differ) = (false, false);
+        for found in TELLING.iter().flat_map(|words| words.find_iter(text)) {
+            match found.pattern().as_usize().checked_sub(PARTIALS_DIFFER.len()) {
+                None => partials_differ = true,
+                Some(0 | 1) => torsion |= !is_denied(text, found.range()),
+                Some(_) => torsion = true,
+            }
+        }
         Self { curved: prices.is_curved(), torsion, partials_differ, all_below: prices.is_cartesian() }
     }
+}
+
+/// All words that tell, looked for in one pass: a text is looked through at every key that is pressed. First those for
+/// `partials_differ`, then torsion by its name and by that of a theory.
+static TELLING: LazyLock<Option<AhoCorasick>> = LazyLock::new(|| {
+    let torsion = ["torsion", "Torsion", "Einstein-Cartan", "Einstein--Cartan"];
+    AhoCorasick::new(PARTIALS_DIFFER.iter().chain(&torsion)).ok()
+});
+
+/// Whether the words around "torsion" say that there is none.
+fn is_denied(text: &str, word: Range<usize>) -> bool {
+    let after = text.get(word.end..).unwrap_or_default().trim_start_matches(['-', ' ']);
+    let before = text.get(..word.start).unwrap_or_default().trim_end();
+    NO_TORSION_AFTER.iter().any(|free| after.starts_with(free))
+        || NO_TORSION_BEFORE.iter().any(|none| before.ends_with(none))
 }
 
 /// Words around "torsion" that say that there is none.
