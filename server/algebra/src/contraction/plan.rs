@@ -74,9 +74,9 @@ impl Plan {
         self.order
     }
 
-    /// The labels that an operand keeps.
-    pub(super) fn kept(&self, operand: usize) -> Option<Vec<Label>> {
-        self.kept.get(operand).cloned()
+    /// The labels that an operand keeps; `Shape` if the plan knows no such operand.
+    pub(super) fn kept(&self, operand: usize) -> Outcome<&[Label]> {
+        self.kept.get(operand).map(Vec::as_slice).ok_or(Trouble::Shape)
     }
 }
 

@@ -7,9 +7,10 @@ use std::sync::Arc;
 use super::*;
 use crate::draws::Draws;
 use crate::field::{Complex, FIRST, Residue, SECOND};
-use crate::jet::{Jet, Ring};
+use crate::jet::{Jet, Order, Ring};
 use crate::number::Exact;
 use crate::sample;
+use crate::tensor::strides;
 
 /// A factor by its lengths and labels.
 type Slots = (&'static [usize], &'static [Label]);
