@@ -82,6 +82,11 @@ impl<const P: u64> Residue<P> {
         Self::lowered(Self::folded(number) + (number >> (2 * WIDTH)) as u64 * Self::GAP * Self::GAP)
     }
 
+    /// A smaller number of the same residue, below 2^122 + 2^30: the six highest bits folded at 2^122 = GAP^2 mod P.
+    pub const fn settled(number: u128) -> u128 {
+        (number & ((1 << (2 * WIDTH)) - 1)) + ((number >> (2 * WIDTH)) as u64 * Self::GAP * Self::GAP) as u128
+    }
+
     /// What the lowest 122 bits come to when they are folded at 2^61 = GAP mod P, twice: below 2^74, then below
     /// 2^61 + 2^25.
     const fn folded(number: u128) -> u64 {

@@ -1,22 +1,17 @@
 //! Residues as numbers. A sum of products stands unreduced in 128 bits: a product is below 2^122, so that only every
-//! so many of them (`RUN`) the sum has to be looked at, and is brought down if it has passed 2^127.
+//! so many of them (`RUN`) the sum has to be brought down.
 
 use super::Number;
 use crate::draws::Draws;
 use crate::field::Residue;
 
-/// From this bit on a sum of products is brought down.
-const FULL: u32 = 127;
-
-/// `P << SHIFT` lies just below `1 << FULL` for both moduli.
-const SHIFT: u32 = 66;
-
 impl<const P: u64> Number for Residue<P> {
-    /// Congruent to the sum; below 2^127 + 2^78 when settled, since `P << SHIFT` falls short of 2^127 by less.
+    /// Congruent to the sum; below 2^122 + 2^30 when settled.
     type Sum = u128;
 
-    /// 16 products are below 2^126, and carry no settled sum over 2^128.
-    const RUN: usize = 16;
+    /// A settled sum and 62 products are below 64 times 2^122.
+    const RUN: usize = 62;
+
     const ZERO: Self = Self::ZERO;
     const ONE: Self = Self::ONE;
     const EMPTY: u128 = 0;
@@ -52,7 +47,7 @@ impl<const P: u64> Number for Residue<P> {
     }
 
     fn settled(sum: u128) -> u128 {
-        if sum >> FULL == 0 { sum } else { sum - (u128::from(P) << SHIFT) }
+        Self::settled(sum)
     }
 
     fn total(sum: u128) -> Self {
