@@ -47,6 +47,9 @@ BLOCK = 1_000_000
 # Up to so many multiplications without a plan, results are compared with those of Python's integers.
 COMPARED = 3_000_000
 
+# What our arrays may have at most (`tensor::NUMBERS_BUDGET`); products of larger ones are left out.
+NUMBERS_BUDGET = 2**22
+
 # Products as steps have them, up to eight letters in all.
 PRODUCTS = {
     "pairs": [
@@ -128,7 +131,11 @@ def measured(program, dimensions, arguments):
     print(f"{'product':24} range" + " |      ours     NumPy   ratio" * 2)
     for kind, products in PRODUCTS.items():
         for subscripts in products:
+            arrays = subscripts.replace("->", ",").split(",")
             for dimension in dimensions:
+                if any(dimension ** len(labels) > NUMBERS_BUDGET for labels in arrays):
+                    print(f"{subscripts:24} {dimension:5} | left out: larger than our arrays may be")
+                    continue
                 row = compared(program, subscripts, dimension, arguments)
                 print(f"{subscripts:24} {dimension:5} | " + row.pop("text"), flush=True)
                 yield {"kind": kind, "subscripts": subscripts, "dimension": dimension, **row}
