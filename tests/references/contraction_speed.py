@@ -19,7 +19,8 @@ repetitions does not bend them. All runs on one core: the libraries below NumPy 
 --others also times NumPy with int64 (which wraps around) and with Python's integers (exact).
 
 Before a product is timed all its components are compared with those that NumPy finds with Python's integers, modulo
-the prime: exit status 1 if one differs. Whoever is faster, the exit status does not tell.
+the prime: exit status 1 if one differs. Only the largest products of --large are timed without that (`COMPARED`).
+Whoever is faster, the exit status does not tell.
 
 Reference: NumPy (PyPI package `numpy`).
 """
@@ -44,7 +45,7 @@ LARGE = [8, 12, 16]
 # A block of calls takes at least so long, in nanoseconds.
 BLOCK = 1_000_000
 
-# Up to so many multiplications without a plan, results are compared with those of Python's integers.
+# Up to so many multiplications without a plan results are compared with those of Python's integers.
 COMPARED = 3_000_000
 
 # What our arrays may have at most (`tensor::NUMBERS_BUDGET`); products of larger ones are left out.
