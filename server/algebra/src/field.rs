@@ -30,6 +30,9 @@ pub const SECOND: u64 = (1 << 61) - 3153;
 /// The width of both moduli in bits; products are folded at this place.
 const WIDTH: u32 = 61;
 
+/// The lowest bits, so many.
+const LOW: u64 = (1 << WIDTH) - 1;
+
 /// A residue `0 <= x < P`, where `P` is `FIRST` or `SECOND`.
 ///
 /// Invariant: the number inside is below `P`, so that equal residues are equal numbers.
@@ -73,12 +76,27 @@ impl<const P: u64> Residue<P> {
         Self(number.rem_euclid(P as i128) as u64)
     }
 
-    /// The residue of any natural number of 128 bits, a product or a sum of products among them, without a
-    /// division: folded at 2^61 = GAP mod P, twice, which leaves it below 2^80, then below 2 P.
+    /// The residue of any natural number of 128 bits, a sum of products among them, without a division: its six
+    /// highest bits stand for multiples of 2^122 = GAP^2 mod P, less than 2^30 together.
     pub const fn from_wide(number: u128) -> Self {
-        let once = (number & ((1 << WIDTH) - 1)) + (number >> WIDTH) * Self::GAP as u128;
-        let twice = ((once & ((1 << WIDTH) - 1)) + (once >> WIDTH) * Self::GAP as u128) as u64;
-        Self(if twice >= P { twice - P } else { twice })
+        Self::lowered(Self::folded(number) + (number >> (2 * WIDTH)) as u64 * Self::GAP * Self::GAP)
+    }
+
+    /// A smaller number of the same residue, below 2^122 + 2^30: the six highest bits folded at 2^122 = GAP^2 mod P.
+    pub const fn settled(number: u128) -> u128 {
+        (number & ((1 << (2 * WIDTH)) - 1)) + ((number >> (2 * WIDTH)) as u64 * Self::GAP * Self::GAP) as u128
+    }
+
+    /// What the lowest 122 bits come to when they are folded at 2^61 = GAP mod P, twice: below 2^74, then below
+    /// 2^61 + 2^25.
+    const fn folded(number: u128) -> u64 {
+        let once = (number as u64 & LOW) as u128 + ((number >> WIDTH) as u64 & LOW) as u128 * Self::GAP as u128;
+        (once as u64 & LOW) + (once >> WIDTH) as u64 * Self::GAP
+    }
+
+    /// The residue of a number below 2 P.
+    const fn lowered(number: u64) -> Self {
+        Self(if number >= P { number - P } else { number })
     }
 
     /// The number `0 <= x < P`.
@@ -179,8 +197,7 @@ impl<const P: u64> Add for Residue<P> {
     type Output = Self;
 
     fn add(self, other: Self) -> Self {
-        let sum = self.0 + other.0;
-        Self(if sum >= P { sum - P } else { sum })
+        Self::lowered(self.0 + other.0)
     }
 }
 
@@ -204,7 +221,7 @@ impl<const P: u64> Mul for Residue<P> {
     type Output = Self;
 
     fn mul(self, other: Self) -> Self {
-        Self::from_wide(u128::from(self.0) * u128::from(other.0))
+        Self::lowered(Self::folded(u128::from(self.0) * u128::from(other.0)))
     }
 }
 

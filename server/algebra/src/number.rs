@@ -36,6 +36,9 @@ pub trait Number:
     /// A sum of products that is brought into range only when it is complete.
     type Sum: Copy;
 
+    /// How many products a settled sum has room for; positive.
+    const RUN: usize;
+
     /// Neutral for addition.
     const ZERO: Self;
 
@@ -87,7 +90,15 @@ pub trait Number:
     }
 
     /// The sum with one product more.
-    fn add_product(sum: Self::Sum, a: Self, b: Self) -> Self::Sum;
+    fn add_product(sum: Self::Sum, a: Self, b: Self) -> Self::Sum {
+        Self::settled(Self::add_unsettled(sum, a, b))
+    }
+
+    /// The sum with one product more, at most `RUN` times before it is settled again: what inner loops are made of.
+    fn add_unsettled(sum: Self::Sum, a: Self, b: Self) -> Self::Sum;
+
+    /// The same sum, with room for `RUN` products more.
+    fn settled(sum: Self::Sum) -> Self::Sum;
 
     /// The number that a sum has come to.
     fn total(sum: Self::Sum) -> Self;

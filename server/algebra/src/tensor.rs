@@ -18,7 +18,7 @@ use std::borrow::Cow;
 use std::sync::Arc;
 
 pub(crate) use product::{Shape, product};
-pub(crate) use strides::{places, strides};
+pub(crate) use strides::{Walk, places, strides};
 
 use crate::jet::{Jet, Order, Ring, Variable, all_zero};
 use crate::number::{Number, at};
@@ -189,7 +189,7 @@ impl<N: Number> Tensor<N> {
         }
         let own = strides(&self.lengths);
         let pick = |from: &[usize]| order.iter().filter_map(|slot| from.get(*slot).copied()).collect::<Vec<_>>();
-        Ok(self.viewed(&pick(&self.lengths), &pick(&own)))
+        Ok(self.viewed(0, &pick(&self.lengths), &pick(&own)))
     }
 
     /// Two slots exchanged; `Shape` if one does not exist.
@@ -217,13 +217,12 @@ impl<N: Number> Tensor<N> {
         if a == b || length != other {
             return Err(Trouble::Shape);
         }
-        let rest = |from: &[usize], last: usize| -> Vec<usize> {
-            let kept = from.iter().enumerate().filter(|(slot, _)| *slot != a && *slot != b).map(|(_, item)| *item);
-            kept.chain([last]).collect()
+        let rest = |from: &[usize]| -> Vec<usize> {
+            from.iter().enumerate().filter(|(slot, _)| *slot != a && *slot != b).map(|(_, item)| *item).collect()
         };
-        let mut diagonal = self.viewed(&rest(&self.lengths, length), &rest(&own, step + other_step));
-        diagonal.sum_last(1);
-        Ok(diagonal)
+        let lengths = rest(&self.lengths);
+        let data = summed(&self.data, self.size(), (&lengths, &rest(&own)), (&[length], &[step + other_step]));
+        Ok(self.with(self.order, lengths, data))
     }
 
     /// The part where the index of a slot has a value, without that slot; nothing out of bounds.
@@ -233,10 +232,7 @@ impl<N: Number> Tensor<N> {
             return None;
         }
         let from = index * steps.remove(slot);
-        let places = places(&lengths, &steps);
-        let gather = |block: &[N]| places.iter().map(|place| at(block, from + place)).collect::<Vec<_>>();
-        let data = self.data.chunks_exact(self.size().max(1)).flat_map(gather).collect();
-        Some(self.with(self.order, lengths, data))
+        Some(self.viewed(from, &lengths, &steps))
     }
 
     /// The part where the index of a slot runs over so many values from a first one on; nothing out of bounds.
@@ -249,10 +245,7 @@ impl<N: Number> Tensor<N> {
         }
         *length = count;
         let from = first * steps.get(slot)?;
-        let places = places(&lengths, &steps);
-        let gather = |block: &[N]| places.iter().map(|place| at(block, from + place)).collect::<Vec<_>>();
-        let data = self.data.chunks_exact(self.size().max(1)).flat_map(gather).collect();
-        Some(self.with(self.order, lengths, data))
+        Some(self.viewed(from, &lengths, &steps))
     }
 
     /// The mean over all permutations of some slots: `(1/k!)` times their sum.
@@ -330,21 +323,11 @@ impl<N: Number> Tensor<N> {
         Cow::Owned(places.into_iter().flat_map(|place| self.block(place)).copied().collect())
     }
 
-    /// An array with slots of these lengths, whose neighbours stand so far apart in each block of this one.
-    /// The caller answers for places in bounds and a size that is not above the own one.
-    pub(crate) fn viewed(&self, lengths: &[usize], steps: &[usize]) -> Self {
-        let places = places(lengths, steps);
-        let gather = |block: &[N]| places.iter().map(|place| at(block, *place)).collect::<Vec<_>>();
-        let data = self.data.chunks_exact(self.size().max(1)).flat_map(gather).collect();
+    /// An array with slots of these lengths, which begins at a place of each block of this one and whose neighbours
+    /// stand so far apart there. The caller answers for places in bounds.
+    fn viewed(&self, from: usize, lengths: &[usize], steps: &[usize]) -> Self {
+        let data = gathered(&self.data, self.size(), from, (lengths, steps));
         self.with(self.order, lengths.to_vec(), data)
-    }
-
-    /// Sums over the last slots, so many of them.
-    pub(crate) fn sum_last(&mut self, count: usize) {
-        let kept = self.lengths.len().saturating_sub(count);
-        let inner: usize = self.lengths.split_off(kept).iter().product();
-        let sum = |run: &[N]| run.iter().fold(N::ZERO, |sum, number| sum + *number);
-        self.data = self.data.chunks_exact(inner.max(1)).map(sum).collect();
     }
 
     /// An array over the same ring; the caller answers for the invariant.
@@ -384,6 +367,30 @@ impl<N: Number> Tensor<N> {
         }
         Ok(mean)
     }
+}
+
+/// Slots by their lengths and by how far apart two neighbours stand in a block.
+pub(crate) type View<'a> = (&'a [usize], &'a [usize]);
+
+/// From blocks of a size those components that a view shows of each, beginning at a place.
+pub(crate) fn gathered<N: Number>(data: &[N], size: usize, from: usize, (lengths, steps): View) -> Vec<N> {
+    let blocks = data.chunks_exact(size.max(1));
+    let mut result = Vec::with_capacity(blocks.len() * lengths.iter().product::<usize>());
+    let walk = Walk::new(lengths, steps);
+    blocks.for_each(|block| walk.gather(block, from, &mut result));
+    result
+}
+
+/// The same, summed over all components of another view.
+pub(crate) fn summed<N: Number>(data: &[N], size: usize, (lengths, steps): View, gone: View) -> Vec<N> {
+    let blocks = data.chunks_exact(size.max(1));
+    let own = lengths.iter().product::<usize>().max(1);
+    let mut result = vec![N::ZERO; blocks.len() * own];
+    let (walk, others) = (Walk::new(lengths, steps), places(gone.0, gone.1));
+    for (block, sums) in blocks.zip(result.chunks_mut(own)) {
+        others.iter().for_each(|from| walk.add(block, *from, sums));
+    }
+    result
 }
 
 /// How many numbers an array has; `Shape` if a slot has no range, a budget if they or the slots are too many.

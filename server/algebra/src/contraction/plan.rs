@@ -74,9 +74,9 @@ impl Plan {
         self.order
     }
 
-    /// The labels that an operand keeps.
-    pub(super) fn kept(&self, operand: usize) -> Option<Vec<Label>> {
-        self.kept.get(operand).cloned()
+    /// The labels that an operand keeps; `Shape` if the plan knows no such operand.
+    pub(super) fn kept(&self, operand: usize) -> Outcome<&[Label]> {
+        self.kept.get(operand).map(Vec::as_slice).ok_or(Trouble::Shape)
     }
 }
 
@@ -122,13 +122,20 @@ impl Network {
 
     /// The product of the ranges of some labels, saturating.
     fn range(&self, set: Labels) -> u64 {
-        let chosen = self.labels.iter().enumerate().filter(|(place, _)| set >> place & 1 == 1);
-        chosen.fold(1, |range: u64, (_, (_, length))| range.saturating_mul(*length as u64))
+        self.chosen(set).fold(1, |range: u64, (_, length)| range.saturating_mul(*length as u64))
     }
 
     fn names(&self, set: Labels) -> Vec<Label> {
-        let chosen = self.labels.iter().enumerate().filter(|(place, _)| set >> place & 1 == 1);
-        chosen.map(|(_, (label, _))| *label).collect()
+        self.chosen(set).map(|(label, _)| *label).collect()
+    }
+
+    /// The members of a set, one for each bit.
+    fn chosen(&self, mut set: Labels) -> impl Iterator<Item = &(Label, usize)> {
+        std::iter::from_fn(move || {
+            let place = set.trailing_zeros() as usize;
+            set &= set.wrapping_sub(1);
+            self.labels.get(place)
+        })
     }
 
     /// What the product of a subset of the factors keeps.
@@ -152,15 +159,17 @@ impl Network {
             if subset.is_power_of_two() {
                 continue;
             }
-            let mut found = (u64::MAX, 0);
+            // Where all costs saturate, any split will do: what follows the plan refuses it.
+            let mut found = (u64::MAX, usize::MAX);
             let mut part = (subset - 1) & subset;
-            while part > 0 {
+            // Each split once, the part being the larger number.
+            while part > subset ^ part {
                 let rest = subset ^ part;
-                // Each split once.
-                if part > rest {
-                    let cost = |side: usize| best.get(side).map_or(u64::MAX, |(cost, _)| *cost);
-                    let own = self.range(of(part) | of(rest));
-                    found = found.min((own.saturating_add(cost(part)).saturating_add(cost(rest)), part));
+                let cost = |side: usize| best.get(side).map_or(u64::MAX, |(cost, _)| *cost);
+                let parts = cost(part).saturating_add(cost(rest));
+                // What the parts cost alone rules most splits out.
+                if parts <= found.0 {
+                    found = found.min((parts.saturating_add(self.range(of(part) | of(rest))), part));
                 }
                 part = (part - 1) & subset;
             }

@@ -7,14 +7,16 @@ use std::sync::Arc;
 use super::*;
 use crate::draws::Draws;
 use crate::field::{Complex, FIRST, Residue, SECOND};
-use crate::jet::{Jet, Ring};
+use crate::jet::{Jet, Order, Ring};
 use crate::number::Exact;
 use crate::sample;
+use crate::tensor::strides;
 
 /// A factor by its lengths and labels.
 type Slots = (&'static [usize], &'static [Label]);
 
-/// Contractions of every kind: matrix products, traces, repeated labels, labels on three factors, outer products.
+/// Contractions of every kind: matrix products, traces, repeated labels, labels on three factors, outer products,
+/// strips of columns of every width, with one row and with several.
 const CASES: &[(&[Slots], &[Label])] = &[
     (&[(&[2, 3], &[0, 1]), (&[3, 4], &[1, 2])], &[2, 0]),
     (&[(&[3, 3], &[0, 0])], &[]),
@@ -29,6 +31,13 @@ const CASES: &[(&[Slots], &[Label])] = &[
     (&[(&[], &[]), (&[2], &[7]), (&[], &[])], &[7]),
     (&[(&[2, 2], &[0, 1]), (&[2, 2], &[1, 2]), (&[2, 2], &[2, 3]), (&[2, 2], &[3, 0])], &[]),
     (&[(&[2, 2, 2], &[0, 1, 2]), (&[2, 2, 2], &[0, 3, 4]), (&[2, 2], &[3, 1]), (&[2, 2], &[4, 5])], &[2, 5]),
+    (&[(&[3, 2], &[0, 1]), (&[2, 5], &[1, 2])], &[0, 2]),
+    (&[(&[5, 2], &[0, 1]), (&[2, 3], &[1, 2])], &[2, 0]),
+    (&[(&[2], &[1]), (&[2, 7], &[1, 2])], &[2]),
+    (&[(&[6, 2], &[0, 1]), (&[2, 4], &[1, 2])], &[0, 2]),
+    (&[(&[2, 2, 3], &[3, 0, 1]), (&[3, 9, 2], &[1, 2, 3])], &[3, 0, 2]),
+    (&[(&[2, 70], &[0, 1]), (&[70, 3], &[1, 2])], &[0, 2]),
+    (&[(&[2, 3, 2, 2, 3], &[0, 1, 0, 2, 1])], &[2]),
 ];
 
 fn draw<N: Number>(ring: &Arc<Ring>, slots: &[Slots], draws: &mut Draws) -> Vec<Tensor<N>> {
@@ -145,6 +154,10 @@ fn what_would_cost_too_much_is_not_begun() {
     let many: Vec<Factor<_>> = labels.iter().map(|labels| (&zero, &labels[..])).collect();
     let free: Vec<Label> = (0..14).collect();
     assert_eq!(planned(&many, &free).unwrap_err(), Trouble::Budget(Budget::Numbers));
+    // Four of 2^20 numbers each: no plan has a cost below 2^64, and still one is made and refused.
+    let large = Tensor::<Residue<FIRST>>::zero(&ring, ring.top(), &[1 << 10, 1 << 10]).unwrap();
+    let many: Vec<Factor<_>> = labels.iter().take(4).map(|labels| (&large, &labels[..])).collect();
+    assert_eq!(planned(&many, &[0, 1, 2, 3, 4, 5, 6, 7]).unwrap_err(), Trouble::Budget(Budget::Numbers));
     let unit = Tensor::<Exact>::zero(&ring, ring.top(), &[1, 1]).unwrap();
     let labels: Vec<[Label; 2]> = (0..65).map(|place| [2 * place, 2 * place + 1]).collect();
     let many: Vec<Factor<_>> = labels.iter().map(|labels| (&unit, &labels[..])).collect();

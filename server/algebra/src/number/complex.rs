@@ -9,6 +9,8 @@ impl<const P: u64> Number for Complex<P> {
     /// Real and imaginary part.
     type Sum = (u128, u128);
 
+    /// Each part grows by two products at a time.
+    const RUN: usize = Residue::<P>::RUN / 2;
     const ZERO: Self = Self::ZERO;
     const ONE: Self = Self::ONE;
     const EMPTY: (u128, u128) = (0, 0);
@@ -46,10 +48,15 @@ impl<const P: u64> Number for Complex<P> {
         Number::power(real, numerator, denominator).map(Self::from)
     }
 
-    fn add_product((real, imaginary): (u128, u128), a: Self, b: Self) -> (u128, u128) {
-        let real = Residue::add_product(real, a.real, b.real);
-        let imaginary = Residue::add_product(imaginary, a.real, b.imaginary);
-        (Residue::add_product(real, -a.imaginary, b.imaginary), Residue::add_product(imaginary, a.imaginary, b.real))
+    fn add_unsettled((real, imaginary): (u128, u128), a: Self, b: Self) -> (u128, u128) {
+        let real = Residue::add_unsettled(real, a.real, b.real);
+        let imaginary = Residue::add_unsettled(imaginary, a.real, b.imaginary);
+        let real = Residue::add_unsettled(real, -a.imaginary, b.imaginary);
+        (real, Residue::add_unsettled(imaginary, a.imaginary, b.real))
+    }
+
+    fn settled((real, imaginary): (u128, u128)) -> (u128, u128) {
+        (Residue::<P>::settled(real), Residue::<P>::settled(imaginary))
     }
 
     fn total((real, imaginary): (u128, u128)) -> Self {

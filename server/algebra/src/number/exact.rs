@@ -83,6 +83,8 @@ impl fmt::Display for Exact {
 impl Number for Exact {
     type Sum = Self;
 
+    // Whatever does not fit is marked at once.
+    const RUN: usize = 64;
     const ZERO: Self = Self(Some(Rational::ZERO));
     const ONE: Self = Self(Some(Rational::ONE));
     const EMPTY: Self = Self::ZERO;
@@ -122,8 +124,12 @@ impl Number for Exact {
         Some(Self(power))
     }
 
-    fn add_product(sum: Self, a: Self, b: Self) -> Self {
+    fn add_unsettled(sum: Self, a: Self, b: Self) -> Self {
         sum + a * b
+    }
+
+    fn settled(sum: Self) -> Self {
+        sum
     }
 
     fn total(sum: Self) -> Self {

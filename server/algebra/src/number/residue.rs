@@ -1,18 +1,16 @@
-//! Residues as numbers. A sum of products stands unreduced in 128 bits until it would pass 2^127.
+//! Residues as numbers. A sum of products stands unreduced in 128 bits: a product is below 2^122, so that only every
+//! so many of them (`RUN`) the sum has to be brought down.
 
 use super::Number;
 use crate::draws::Draws;
 use crate::field::Residue;
 
-/// From this bit on a sum of products is brought down, well before the next product could carry it over 2^128.
-const FULL: u32 = 127;
-
-/// `P << SHIFT` lies just below `1 << FULL` for both moduli.
-const SHIFT: u32 = 66;
-
 impl<const P: u64> Number for Residue<P> {
-    /// Congruent to the sum, and below 2^127.
+    /// Congruent to the sum; below 2^122 + 2^30 when settled.
     type Sum = u128;
+
+    /// A settled sum and 62 products are below 64 times 2^122.
+    const RUN: usize = 62;
 
     const ZERO: Self = Self::ZERO;
     const ONE: Self = Self::ONE;
@@ -44,9 +42,12 @@ impl<const P: u64> Number for Residue<P> {
         }
     }
 
-    fn add_product(sum: u128, a: Self, b: Self) -> u128 {
-        let sum = sum + u128::from(a.value()) * u128::from(b.value());
-        if sum >> FULL == 0 { sum } else { sum - (u128::from(P) << SHIFT) }
+    fn add_unsettled(sum: u128, a: Self, b: Self) -> u128 {
+        sum + u128::from(a.value()) * u128::from(b.value())
+    }
+
+    fn settled(sum: u128) -> u128 {
+        Self::settled(sum)
     }
 
     fn total(sum: u128) -> Self {

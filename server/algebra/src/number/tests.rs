@@ -38,6 +38,10 @@ fn late_sums<N: Number>() {
     let late = pairs.iter().fold(N::EMPTY, |sum, (a, b)| N::add_product(sum, *a, *b));
     let soon = pairs.iter().fold(N::ZERO, |sum, (a, b)| sum + *a * *b);
     assert_eq!(N::total(late), soon);
+    // As long as it may be before it is brought down: debug builds would tell of an overflow.
+    let run = |sum, run: &[(N, N)]| N::settled(run.iter().fold(sum, |sum, (a, b)| N::add_unsettled(sum, *a, *b)));
+    let later = pairs.chunks(N::RUN).fold(N::EMPTY, run);
+    assert_eq!(N::total(later), soon);
     assert_eq!(N::total(N::EMPTY), N::ZERO);
 }
 
