@@ -11,6 +11,7 @@ mod lowering;
 mod repairs;
 mod report;
 mod standing;
+mod words;
 mod world;
 
 pub use claims::{Asked, Step, steps_of};

@@ -8,7 +8,7 @@ use std::hash::{Hash, Hasher};
 use std::time::{Duration, Instant};
 
 use compact_str::CompactString;
-use indexwise_algebra::expression::{Expression, Given, Size, World};
+use indexwise_algebra::expression::{Expression, Given, MetricValues, Size, World};
 use indexwise_algebra::verdict::{self, Claim, Limits, Unshown, Verdict};
 use indexwise_grammar::span::Span;
 use indexwise_grammar::tree::Statement;
@@ -24,7 +24,8 @@ use crate::terms::Eyes;
 use super::claims::{Asked, Step, relations_of, steps_of};
 use super::conventions::{self, has_curvature, other_signs};
 use super::repairs::{Broken, Look, Source, repairs};
-use super::standing::{conditioned, doubt, kernels};
+use super::standing::{Doubt, conditioned, doubt, kernels};
+use super::words::loosening;
 use super::world::Surroundings;
 
 /// Multiplications for the verdict of one step: about a second.
@@ -39,6 +40,8 @@ const LARGEST_DIMENSION: usize = 6;
 
 /// Multiplications for one look at an edit that may mend a step, and for the verdict about it.
 const REPAIR_WORK: [u64; 2] = [2_000_000, 30_000_000];
+/// Why a step is doubted, before the words that say so.
+const SAID: &str = "the text around it speaks of";
 /// Steps of one document that are tried to be mended.
 const MENDED: usize = 30;
 
@@ -236,9 +239,9 @@ impl<'m> StepJudge<'m> {
         }
         let sides = claims.first()?;
         if let Verdict::Fails(found) = first
-            && let Some((why, names)) = self.doubt(step, sides, asked)
+            && let Some(doubt) = self.doubt(step, text, sides, asked)
         {
-            return Some(self.doubted(step, first, found.dimension, &why, names));
+            return Some(self.doubted(step, first, found.dimension, doubt));
         }
         if let Verdict::NeedsDimension { .. } = first
             && asked != Asked::All
@@ -251,13 +254,31 @@ impl<'m> StepJudge<'m> {
         self.finding(step, first)
     }
 
-    fn doubt(&self, step: &Step, sides: &(Expression, Expression), asked: Asked) -> Option<(String, Vec<String>)> {
+    fn doubt(&self, step: &Step, text: &str, sides: &(Expression, Expression), asked: Asked) -> Option<Doubt> {
         let world = &self.surroundings.world;
-        doubt((&sides.0, &sides.1), world, &self.conditioned, step.relation == 0, asked)
+        let doubt = doubt((&sides.0, &sides.1), world, &self.conditioned, step.relation == 0, asked);
+        let doubt = doubt.filter(|doubt| !doubt.may_be_law || !self.is_identity_if_flat(step, text, sides));
+        // Whoever asks for a formula by itself means it as it stands.
+        let loosening = if asked == Asked::All { None } else { loosening(text, step.sign) };
+        let by_words = |phrase: &str| Doubt { why: SAID, names: vec![format!("\u{201c}{phrase}\u{201d}")], may_be_law: false };
+        doubt.or_else(|| loosening.map(by_words))
+    }
+
+    /// Whether the sides are equal and not 0 where all metrics are constant. That was derived, and nobody writes it as a
+    /// law: what is wrong with it is a derivative of the metric that was forgotten.
+    fn is_identity_if_flat(&self, step: &Step, text: &str, (left, right): &(Expression, Expression)) -> bool {
+        let mut world = self.surroundings.world.clone();
+        for metric in world.metrics.iter_mut().filter(|metric| metric.values == MetricValues::Arbitrary) {
+            metric.values = MetricValues::Flat;
+        }
+        world.dimensions = dimensions(&world, &[left, right], step.antisymmetrised);
+        let nothing = Expression::Product(vec![Expression::zero(), left.clone()]);
+        self.holds(step, text, left, right, world.clone()) && !self.holds(step, text, left, &nothing, world)
     }
 
     /// A difference that need not be a mistake.
-    fn doubted(&mut self, step: &Step, verdict: &Verdict, dimension: usize, why: &str, names: Vec<String>) -> Finding {
+    fn doubted(&mut self, step: &Step, verdict: &Verdict, dimension: usize, doubt: Doubt) -> Finding {
+        let Doubt { why, names, .. } = doubt;
         self.counts.undecided += 1;
         self.law = step.relation == 0;
         let mut view = self.view(step, verdict);
