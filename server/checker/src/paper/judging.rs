@@ -132,7 +132,7 @@ impl<'d> Judge<'d> {
             StepMode::Asked => read.host == Host::Note || said,
         };
         if self.chains || !self.asked.is_empty() {
-            self.steps = Some(StepJudge::new(&self.prices.declared.meanings));
+            self.steps = Some(StepJudge::new(&self.prices.declared.meanings, read.text));
             self.declared_definitions();
             self.conditions();
         }

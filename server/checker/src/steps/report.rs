@@ -9,7 +9,7 @@ use std::time::{Duration, Instant};
 
 use compact_str::CompactString;
 use indexwise_algebra::expression::{Expression, Given, MetricValues, Size, World};
-use indexwise_algebra::verdict::{self, Claim, Limits, Unshown, Verdict};
+use indexwise_algebra::verdict::{self, Claim, Limits, Reason, Unshown, Verdict};
 use indexwise_grammar::span::Span;
 use indexwise_grammar::tree::Statement;
 use rustc_hash::{FxHashMap, FxHashSet, FxHasher};
@@ -22,7 +22,7 @@ use crate::rules;
 use crate::terms::Eyes;
 
 use super::claims::{Asked, Step, relations_of, steps_of};
-use super::conventions::{self, has_curvature, other_signs};
+use super::conventions::{self, Geometric, other_signs};
 use super::repairs::{Broken, Look, Source, repairs};
 use super::standing::{Doubt, conditioned, doubt, kernels};
 use super::words::loosening;
@@ -68,8 +68,8 @@ pub struct LabelledGiven(Given);
 
 impl<'m> StepJudge<'m> {
     /// For a document with these declarations.
-    pub fn new(meanings: &'m Meanings) -> Self {
-        let surroundings = Surroundings::new(meanings);
+    pub fn new(meanings: &'m Meanings, text: &str) -> Self {
+        let surroundings = Surroundings::new(meanings, text);
         Self {
             surroundings,
             known: FxHashMap::default(),
@@ -122,8 +122,8 @@ impl<'m> StepJudge<'m> {
             if differs && givens.is_empty() && step.claims.as_ref().is_ok_and(|claims| claims.len() == 1) {
                 self.open.push(step.clone());
             }
-            if let Some(signs) = self.other_signs(step, &finding, source.text) {
-                finding.message.push_str(&format!("; it holds with the other sign {signs}"));
+            if let Some(choice) = self.other_choice(step, &finding, source.text) {
+                finding.message.push_str(&format!("; it holds with {choice}"));
             }
             found.push(finding);
         }
@@ -168,19 +168,22 @@ impl<'m> StepJudge<'m> {
         matches!(verdict::judge(&claim, &limits), Verdict::Holds { undefined, .. } if undefined.is_empty())
     }
 
-    /// Other signs of the curvature with which a step holds that does not under those in force.
-    fn other_signs(&self, step: &Step, finding: &Finding, text: &str) -> Option<&'static str> {
+    /// Another usual choice of signs, or of what an epsilon is, with which a step holds that does not under that in
+    /// force.
+    fn other_choice(&self, step: &Step, finding: &Finding, text: &str) -> Option<String> {
         finding.verdict.as_ref().filter(|verdict| verdict.verdict != "undecided")?;
         let [(left, right)] = step.claims.as_ref().ok()?.as_slice() else { return None };
         let world = &self.surroundings.world;
-        if !has_curvature(world, [left, right]) {
-            return None;
-        }
-        let holds = |signs| {
+        let holds = |left: &Expression, right: &Expression, signs| {
             let dimensions = dimensions(world, &[left, right], step.antisymmetrised);
             self.holds(step, text, left, right, World { signs, dimensions, ..world.clone() })
         };
-        other_signs(world.signs).into_iter().find(|(signs, _)| holds(*signs)).map(|(_, said)| said)
+        let mut choices = other_signs(world.signs, Geometric::of(world, [left, right])).into_iter();
+        if let Some((_, said)) = choices.find(|(signs, _)| holds(left, right, *signs)) {
+            return Some(format!("the other sign {said}"));
+        }
+        let (one, two, said) = exchanged(left, right)?;
+        holds(&one, &two, world.signs).then_some(said)
     }
 
     /// What would make a step hold, if it fails.
@@ -243,6 +246,11 @@ impl<'m> StepJudge<'m> {
         {
             return Some(self.doubted(step, first, found.dimension, doubt));
         }
+        if matches!(first, Verdict::Fails(_) | Verdict::NeedsDimension { .. })
+            && let Some(minus) = self.other_signature(step, text, sides)
+        {
+            return Some(self.signed(step, first, minus));
+        }
         if let Verdict::NeedsDimension { .. } = first
             && asked != Asked::All
             && (is_number(&sides.0) || is_number(&sides.1))
@@ -276,6 +284,33 @@ impl<'m> StepJudge<'m> {
         self.holds(step, text, left, right, world.clone()) && !self.holds(step, text, left, &nothing, world)
     }
 
+    /// How many negative signs a metric has with which a step holds, if nobody says how many there are.
+    fn other_signature(&self, step: &Step, text: &str, (left, right): &(Expression, Expression)) -> Option<usize> {
+        let world = &self.surroundings.world;
+        if !Geometric::of(world, [left, right]).sign {
+            return None;
+        }
+        let dimensions = dimensions(world, &[left, right], step.antisymmetrised);
+        let other = self.surroundings.other_signature(&World { dimensions, ..world.clone() })?;
+        let minus = *self.surroundings.open_signatures.first()?;
+        let minus = other.metrics.get(minus)?.minus;
+        self.holds(step, text, left, right, other).then_some(minus)
+    }
+
+    /// A step that holds in another signature than the one that was taken for want of a declaration.
+    fn signed(&mut self, step: &Step, verdict: &Verdict, minus: usize) -> Finding {
+        self.counts.undecided += 1;
+        let mut view = self.view(step, verdict);
+        view.verdict = "differs";
+        view.assumptions = vec!["the signature of the metric".to_owned()];
+        let (has, other, signs) = if minus == 0 { ("no", "one", "+ + + +") } else { ("one", "none", "- + + +") };
+        let message = format!(
+            "this step holds for a metric with {has} negative sign, but not with {other}: nothing says which, as \
+             g_{{ij}} is the metric, signature {signs} would"
+        );
+        told(rules::step_not_shown(step.sign, message), step, &view)
+    }
+
     /// A difference that need not be a mistake.
     fn doubted(&mut self, step: &Step, verdict: &Verdict, dimension: usize, doubt: Doubt) -> Finding {
         let Doubt { why, names, .. } = doubt;
@@ -302,7 +337,15 @@ impl<'m> StepJudge<'m> {
         let begun = self.begun;
         let stop = || begun.is_some_and(|begun| begun.elapsed() > DOCUMENT_TIME);
         let limits = Limits { total: STEP_WORK, stop: Some(&stop), ..Limits::seeded(seed) };
-        let verdict = verdict::judge(&Claim { left: left.clone(), right: right.clone(), world }, &limits);
+        let other = self.surroundings.other_signature(&world);
+        let judge = |world| verdict::judge(&Claim { left: left.clone(), right: right.clone(), world }, &limits);
+        let mut verdict = judge(world);
+        // The root of a determinant may exist with the other sign alone.
+        if verdict == Verdict::Undecided(Reason::Undefined)
+            && let Some(world) = other
+        {
+            verdict = judge(world);
+        }
         if alone {
             self.known.insert(key, verdict.clone());
         }
@@ -417,6 +460,22 @@ impl<'m> StepJudge<'m> {
             right: found.right.to_string(),
         }
     }
+}
+
+/// Two sides with the epsilon tensor for the symbol or the other way round, and how that is said; nothing if there is
+/// none at the top of a product or under a derivative.
+fn exchanged(left: &Expression, right: &Expression) -> Option<(Expression, Expression, String)> {
+    let mut said = None;
+    let (mut one, mut two) = (left.clone(), right.clone());
+    let mut pending = vec![&mut one, &mut two];
+    while let Some(part) = pending.pop() {
+        if let Expression::Epsilon { metric: metric @ Some(_), .. } = part {
+            *metric = None;
+            said = Some("epsilon as a symbol, declared by \\epsilon is a symbol".to_owned());
+        }
+        pending.extend(part.parts_mut());
+    }
+    said.map(|said| (one, two, said))
 }
 
 /// Whether a side is a plain number, perhaps with a sign.
