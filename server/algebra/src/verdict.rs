@@ -13,6 +13,7 @@ mod compare;
 mod degree;
 mod functions;
 mod givens;
+mod killing;
 mod signature;
 mod signs;
 mod text;
