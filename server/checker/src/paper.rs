@@ -21,7 +21,7 @@ use crate::conventions::declared::Declared;
 pub use crate::conventions::declared::SharedConventions;
 use crate::conventions::inferred::{Evidence, Prices};
 use crate::conventions::meanings::Meanings;
-use crate::finding::{Finding, Severity};
+use crate::finding::{Finding, JudgedStep, Severity};
 use crate::reading::{self, Reading};
 use crate::sketch::{Sketch, Unit};
 use crate::symbols::SymbolTable;
@@ -148,6 +148,8 @@ pub struct DocumentAnalysis {
     pub findings: Vec<Finding>,
     /// The symbols, if they are asked for.
     pub symbols: Option<SymbolTable>,
+    /// Every step that was judged, in the order of their places.
+    pub steps: Vec<JudgedStep>,
 }
 
 /// Counts of one document.

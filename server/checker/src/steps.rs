@@ -7,10 +7,12 @@
 
 mod claims;
 mod conventions;
+mod defaults;
 mod lowering;
 mod repairs;
 mod report;
 mod standing;
+mod telling;
 mod words;
 mod world;
 

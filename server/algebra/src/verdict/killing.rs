@@ -76,8 +76,7 @@ impl Killing {
         let work = (count * count).saturating_mul(size * size).saturating_mul(3 * size);
         dimension.meter.spend(work as u64)?;
         let mut draws = Draws::from_seed(drawn.functions);
-        let vector: Vec<Vec<N>> =
-            (0..size).map(|_| (0..count).map(|_| N::draw_real(&mut draws)).collect()).collect();
+        let vector: Vec<Vec<N>> = (0..size).map(|_| (0..count).map(|_| N::draw_real(&mut draws)).collect()).collect();
         let mut values: Vec<Vec<N>> = Vec::new();
         for component in 0..size * size {
             let Some(orbit) = drawn.orbit(metric, component) else { return Ok(None) };
@@ -113,9 +112,11 @@ impl Table<'_> {
 
     /// The monomial with the exponent of a variable one higher, less another monomial; nothing if it is none.
     fn shifted(&self, monomial: &[u8], variable: Option<usize>, less: &[u8]) -> Option<usize> {
-        let exponents = monomial.iter().zip(less).enumerate().map(|(at, (exponent, less))| {
-            exponent.checked_add(u8::from(variable == Some(at)))?.checked_sub(*less)
-        });
+        let exponents = monomial
+            .iter()
+            .zip(less)
+            .enumerate()
+            .map(|(at, (exponent, less))| exponent.checked_add(u8::from(variable == Some(at)))?.checked_sub(*less));
         self.place(&exponents.collect::<Option<Vec<u8>>>()?)
     }
 

@@ -100,15 +100,17 @@ pub(super) fn judge_document<'d>(
         indexed: indexed.iter().filter(|flag| **flag).count(),
         unread: formulas.iter().zip(&indexed).filter(|(formula, flag)| **flag && !formula.unread.is_empty()).count(),
         unknown_macros: formulas.iter().zip(&indexed).filter(|(f, flag)| **flag && !f.unknown.is_empty()).count(),
-        steps: steps.map(|steps| steps.counts).unwrap_or_default(),
+        steps: steps.as_ref().map(|steps| steps.counts).unwrap_or_default(),
     };
+    let mut steps = steps.map(|steps| steps.judged).unwrap_or_default();
+    steps.sort_by_key(|step| step.span.start);
     let read = document.read;
     let mut missing = missing;
     missing.extend(unknown);
     missing.extend(about);
     let findings = directed(&read.declared, read.host, formulas, findings, missing);
     let symbols = symbols.map(|symbols| symbols.finish(&prices.declared.meanings, customs));
-    DocumentAnalysis { statistics, findings, symbols }
+    DocumentAnalysis { statistics, findings, symbols, steps }
 }
 
 impl<'d> Judge<'d> {
@@ -242,6 +244,12 @@ impl<'d> Judge<'d> {
                     }
                 }
             }
+        }
+        if steps.all_hold {
+            // What holds for all fields, or by what is given, shares its symmetries by that.
+            let span = judged.sketch.span;
+            let inside = |at: Span| span.start <= at.start && at.end <= span.end;
+            self.findings.retain(|(_, finding)| finding.rule != "symmetry-not-shared" || !inside(finding.span));
         }
         self.findings.extend(found.into_iter().map(|finding| (number, finding)));
     }

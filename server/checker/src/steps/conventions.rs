@@ -32,6 +32,7 @@ pub(super) fn take(
 ) -> Result<(), CompactString> {
     if let Some(signs) = signs_of(statement, eyes, surroundings) {
         surroundings.world.signs = signs;
+        surroundings.signs_are_declared = true;
         return Ok(());
     }
     let before = surroundings.world.definitions.len();
@@ -170,6 +171,22 @@ pub(super) fn other_signs(now: Signs, of: Geometric) -> Vec<(Signs, String)> {
         found.push((Signs { epsilon_reversed: !now.epsilon_reversed, ..now }, declared));
     }
     found
+}
+
+/// Two sides with the epsilon tensor for the symbol or the other way round, and how that is said; nothing if there is
+/// none at the top of a product or under a derivative.
+pub(super) fn exchanged(left: &Expression, right: &Expression) -> Option<(Expression, Expression, String)> {
+    let mut said = None;
+    let (mut one, mut two) = (left.clone(), right.clone());
+    let mut pending = vec![&mut one, &mut two];
+    while let Some(part) = pending.pop() {
+        if let Expression::Epsilon { metric: metric @ Some(_), .. } = part {
+            *metric = None;
+            said = Some("epsilon as a symbol, declared by \\epsilon is a symbol".to_owned());
+        }
+        pending.extend(part.parts_mut());
+    }
+    said.map(|said| (one, two, said))
 }
 
 const BOTH: &str = "of the curvature tensor and of the Ricci tensor, each declared by its definition";

@@ -15,16 +15,16 @@ use indexwise_grammar::tree::Statement;
 use rustc_hash::{FxHashMap, FxHashSet, FxHasher};
 
 use crate::conventions::meanings::Meanings;
-use crate::finding::{Counterexample, Finding, Fix, Related, Severity, StepVerdict};
-use crate::ledger::shown;
+use crate::finding::{Finding, Fix, JudgedStep, Severity, StepVerdict};
 use crate::paper::Steps;
 use crate::rules;
 use crate::terms::Eyes;
 
 use super::claims::{Asked, Step, relations_of, steps_of};
-use super::conventions::{self, Geometric, other_signs};
+use super::conventions::{self, Geometric, exchanged, other_signs};
 use super::repairs::{Broken, Look, Source, repairs};
 use super::standing::{Doubt, conditioned, doubt, kernels};
+use super::telling::{in_words, is_number, kind, listed, numbers, plain_view, told};
 use super::words::loosening;
 use super::world::Surroundings;
 
@@ -51,8 +51,12 @@ pub struct StepJudge<'m> {
     known: FxHashMap<u64, Verdict>,
     /// Kernels that the text states conditions on: they are no arbitrary fields.
     conditioned: FxHashSet<CompactString>,
-    /// The verdicts so far.
+    /// The verdicts so far, counted and one by one.
     pub counts: Steps,
+    /// Each step with its verdict, whether it is told or not.
+    pub judged: Vec<JudgedStep>,
+    /// Whether the last statement had steps and all of them hold.
+    pub all_hold: bool,
     /// Whether the step judged last may be a law.
     law: bool,
     left: usize,
@@ -75,6 +79,8 @@ impl<'m> StepJudge<'m> {
             known: FxHashMap::default(),
             conditioned: FxHashSet::default(),
             counts: Steps::default(),
+            judged: Vec::new(),
+            all_hold: false,
             law: false,
             left: STEPS,
             mended: MENDED,
@@ -104,7 +110,11 @@ impl<'m> StepJudge<'m> {
         let mut told: Vec<Option<Finding>> = Vec::with_capacity(steps.len());
         for step in &steps {
             self.law = false;
-            told.push(self.step(step, source.text, asked));
+            let finding = self.step(step, source.text, asked);
+            if let Some(verdict) = finding.as_ref().and_then(|finding| finding.verdict.clone()) {
+                self.judged.push(JudgedStep { span: step.sign, verdict });
+            }
+            told.push(finding);
             // A law is a condition for what comes after it.
             if self.law {
                 self.conditioned.extend(statement.sides.iter().take(2).flat_map(|side| kernels(side, eyes)));
@@ -112,6 +122,7 @@ impl<'m> StepJudge<'m> {
         }
         let held: Vec<(usize, bool)> =
             steps.iter().zip(&told).map(|(step, told)| (step.relation, told.is_none())).collect();
+        self.all_hold = !told.is_empty() && told.iter().all(Option::is_none);
         self.open.clear();
         let mut found: Vec<Finding> = Vec::new();
         for (step, finding) in steps.iter().zip(told) {
@@ -257,6 +268,8 @@ impl<'m> StepJudge<'m> {
         {
             // The value of a scalar tells the dimension that the author means.
             self.counts.holds += 1;
+            let verdict = StepVerdict { verdict: "holds", counterexample: None, ..self.view(step, first) };
+            self.judged.push(JudgedStep { span: step.sign, verdict });
             return None;
         }
         self.finding(step, first)
@@ -268,7 +281,8 @@ impl<'m> StepJudge<'m> {
         let doubt = doubt.filter(|doubt| !doubt.may_be_law || !self.is_identity_if_flat(step, text, sides));
         // Whoever asks for a formula by itself means it as it stands.
         let loosening = if asked == Asked::All { None } else { loosening(text, step.sign) };
-        let by_words = |phrase: &str| Doubt { why: SAID, names: vec![format!("\u{201c}{phrase}\u{201d}")], may_be_law: false };
+        let by_words =
+            |phrase: &str| Doubt { why: SAID, names: vec![format!("\u{201c}{phrase}\u{201d}")], may_be_law: false };
         doubt.or_else(|| loosening.map(by_words))
     }
 
@@ -338,7 +352,10 @@ impl<'m> StepJudge<'m> {
         let stop = || begun.is_some_and(|begun| begun.elapsed() > DOCUMENT_TIME);
         let limits = Limits { total: STEP_WORK, stop: Some(&stop), ..Limits::seeded(seed) };
         let other = self.surroundings.other_signature(&world);
-        let judge = |world| verdict::judge(&Claim { left: left.clone(), right: right.clone(), world }, &limits);
+        let judge = |world| {
+            let claim = Claim { left: left.clone(), right: right.clone(), world };
+            verdict::holds_by_form(&claim).unwrap_or_else(|| verdict::judge(&claim, &limits))
+        };
         let mut verdict = judge(world);
         // The root of a determinant may exist with the other sign alone.
         if verdict == Verdict::Undecided(Reason::Undefined)
@@ -357,6 +374,7 @@ impl<'m> StepJudge<'m> {
         match verdict {
             Verdict::Holds { .. } => {
                 self.counts.holds += 1;
+                self.judged.push(JudgedStep { span: step.sign, verdict: view });
                 None
             }
             Verdict::Fails(_) => {
@@ -410,97 +428,15 @@ impl<'m> StepJudge<'m> {
 
     /// The verdict as plain data.
     fn view(&self, step: &Step, verdict: &Verdict) -> StepVerdict {
-        let numbers = |found: &verdict::Counterexample| self.counterexample(step, found);
-        match verdict {
-            Verdict::Fails(found) => StepVerdict {
-                verdict: "fails",
-                fails: vec![found.dimension],
-                counterexample: Some(numbers(found)),
-                ..StepVerdict::default()
-            },
-            Verdict::Differs { dimensions, reason } => StepVerdict {
-                verdict: "differs",
-                fails: dimensions.clone(),
-                assumptions: match reason {
-                    Unshown::Unknown(names) | Unshown::Givens(names) => names.clone(),
-                    Unshown::NoWitness => Vec::new(),
-                },
-                ..StepVerdict::default()
-            },
-            Verdict::NeedsDimension { holds, fails, counterexample, .. } => StepVerdict {
-                verdict: "needs dimension",
-                holds: holds.clone(),
-                fails: fails.clone(),
-                counterexample: counterexample.as_ref().map(numbers),
-                ..StepVerdict::default()
-            },
-            Verdict::Holds { dimensions, .. } => {
-                StepVerdict { verdict: "holds", holds: dimensions.clone(), ..StepVerdict::default() }
-            }
-            Verdict::Undecided(_) => StepVerdict { verdict: "undecided", ..StepVerdict::default() },
-        }
+        let sides = step.claims.as_ref().ok().and_then(|claims| claims.first());
+        let defaults = match verdict {
+            Verdict::Undecided(_) => Vec::new(),
+            _ => sides.map(|(left, right)| self.surroundings.defaults([left, right])).unwrap_or_default(),
+        };
+        let world = &self.surroundings.world;
+        let tried = sides.map(|(left, right)| dimensions(world, &[left, right], step.antisymmetrised));
+        StepVerdict { defaults, tried: tried.unwrap_or_default(), ..plain_view(step, verdict) }
     }
-
-    fn counterexample(&self, step: &Step, found: &verdict::Counterexample) -> Counterexample {
-        let values = found.assignments.iter().map(|one| {
-            let members: Vec<String> = one.component.iter().map(|member| (member + 1).to_string()).collect();
-            let slots = if members.is_empty() { String::new() } else { format!("_{{{}}}", members.join(" ")) };
-            (format!("{}{slots}", shown(&one.name)), one.value.clone())
-        });
-        let letter = |label: u16| step.letters.get(label as usize).map(|letter| shown(letter)).unwrap_or_default();
-        Counterexample {
-            dimension: found.dimension,
-            values: values.collect(),
-            component: found
-                .component
-                .iter()
-                .map(|(label, member)| (letter(*label), (member + 1).to_string()))
-                .collect(),
-            left: found.left.to_string(),
-            right: found.right.to_string(),
-        }
-    }
-}
-
-/// Two sides with the epsilon tensor for the symbol or the other way round, and how that is said; nothing if there is
-/// none at the top of a product or under a derivative.
-fn exchanged(left: &Expression, right: &Expression) -> Option<(Expression, Expression, String)> {
-    let mut said = None;
-    let (mut one, mut two) = (left.clone(), right.clone());
-    let mut pending = vec![&mut one, &mut two];
-    while let Some(part) = pending.pop() {
-        if let Expression::Epsilon { metric: metric @ Some(_), .. } = part {
-            *metric = None;
-            said = Some("epsilon as a symbol, declared by \\epsilon is a symbol".to_owned());
-        }
-        pending.extend(part.parts_mut());
-    }
-    said.map(|said| (one, two, said))
-}
-
-/// Whether a side is a plain number, perhaps with a sign.
-fn is_number(side: &Expression) -> bool {
-    match side {
-        Expression::Number(_) => true,
-        Expression::Product(parts) => parts.iter().all(|part| matches!(part, Expression::Number(_))),
-        _ => false,
-    }
-}
-
-/// The verdicts that have to agree where a step can be read in two ways.
-fn kind(verdict: &Verdict) -> u8 {
-    match verdict {
-        Verdict::Holds { .. } => 0,
-        Verdict::NeedsDimension { .. } => 1,
-        Verdict::Fails(_) | Verdict::Differs { .. } => 2,
-        Verdict::Undecided(_) => 3,
-    }
-}
-
-fn told(finding: Finding, step: &Step, view: &StepVerdict) -> Finding {
-    let side = |span: Span, message: &str| Related { span, message: message.to_owned() };
-    let related = vec![side(step.sides.0, "the left side"), side(step.sides.1, "the right side")];
-    Finding { related, verdict: Some(view.clone()), ..finding }
 }
 
 /// The hash of a step's text.
@@ -543,22 +479,4 @@ fn dimensions(world: &World, sides: &[&Expression], antisymmetrised: usize) -> V
             all
         }
     }
-}
-
-fn in_words(component: &[(String, String)]) -> String {
-    let list: Vec<String> = component.iter().map(|(letter, value)| format!("{letter} = {value}")).collect();
-    if list.is_empty() { String::new() } else { format!(", for {}", list.join(", ")) }
-}
-
-fn listed(names: &[String]) -> String {
-    let names: Vec<String> = names.iter().map(|name| shown(name)).collect();
-    match names.as_slice() {
-        [] => String::new(),
-        [one] => one.clone(),
-        [rest @ .., last] => format!("{} and {last}", rest.join(", ")),
-    }
-}
-
-fn numbers(list: &[usize]) -> String {
-    listed(&list.iter().map(usize::to_string).collect::<Vec<_>>())
 }

@@ -67,7 +67,8 @@ const PHRASES: &[&str] = &[
 ];
 
 /// What begins a new heading.
-const HEADINGS: &[&str] = &["\\chapter", "\\section", "\\subsection", "\\subsubsection", "\\paragraph", "\n# ", "\n## "];
+const HEADINGS: &[&str] =
+    &["\\chapter", "\\section", "\\subsection", "\\subsubsection", "\\paragraph", "\n# ", "\n## "];
 
 /// Bytes of text that are looked at on each side.
 const REACH: usize = 8_000;
@@ -101,7 +102,8 @@ fn plain(text: &str) -> String {
 
 /// Where a word of a text begins with a phrase.
 fn begins(text: &str, phrase: &str) -> Option<usize> {
-    let inside = |at: usize| text.get(..at).and_then(|before| before.chars().next_back()).is_some_and(char::is_alphabetic);
+    let inside =
+        |at: usize| text.get(..at).and_then(|before| before.chars().next_back()).is_some_and(char::is_alphabetic);
     text.match_indices(phrase).map(|(at, _)| at).find(|at| !inside(*at))
 }
 

@@ -32,6 +32,8 @@ pub struct Surroundings<'a> {
     under_roots: Vec<String>,
     /// Metrics whose signature nobody says.
     pub open_signatures: Vec<usize>,
+    /// Whether a definition among the conventions chooses signs of the curvature or of the epsilon tensor.
+    pub signs_are_declared: bool,
 }
 
 /// A family: a declared one by its number, else Cartesian or levelled letters.
@@ -86,6 +88,7 @@ impl<'a> Surroundings<'a> {
             parameters: FxHashMap::default(),
             under_roots: negated_radicands(text),
             open_signatures: Vec::new(),
+            signs_are_declared: false,
         }
     }
 
@@ -188,9 +191,8 @@ impl<'a> Surroundings<'a> {
         };
         // Time is counted where the flat metric is meant, and where the determinant is negative.
         let bare: String = name.split_whitespace().collect();
-        let named = |radicand: &String| {
-            radicand.strip_prefix(&bare).is_some_and(|rest| !rest.starts_with(char::is_alphabetic))
-        };
+        let named =
+            |radicand: &String| radicand.strip_prefix(&bare).is_some_and(|rest| !rest.starts_with(char::is_alphabetic));
         let is_negated = self.under_roots.iter().any(named);
         let minus = declared.unwrap_or(usize::from(name.contains("eta") || is_negated));
         if declared.is_none() && !name.contains("eta") {
