@@ -17,7 +17,7 @@ mod words;
 mod world;
 
 pub use claims::{Asked, Step, steps_of};
-pub use lowering::{Lowering, Reach};
+pub use lowering::{Lowering, Way};
 pub use repairs::Source;
 pub use report::{LabelledGiven, StepJudge};
 pub use world::Surroundings;

@@ -13,7 +13,7 @@ use indexwise_grammar::tree::Statement;
 use crate::terms::Eyes;
 
 use super::claims::{Asked, lone_factor, pair, steps_of};
-use super::lowering::{Lowering, Reach};
+use super::lowering::{Lowering, Way};
 use super::world::Surroundings;
 
 /// Multiplications for the comparison of a definition with a curvature.
@@ -85,7 +85,7 @@ fn signs_of(statement: &Statement, eyes: &Eyes<'_>, surroundings: &Surroundings<
     lone_factor(left)?;
     // What is registered on the way must not stay: the definition may be one of a metric.
     let mut trial = surroundings.clone();
-    let (new, body) = pair(&mut Lowering::new(&mut trial, eyes, Reach::Near), left, right).ok()?;
+    let (new, body) = pair(&mut Lowering::new(&mut trial, eyes, Way::Near), left, right).ok()?;
     let now = trial.world.signs;
     let (other, dimension) = match &new {
         Expression::Curvature { kind: Curvature::Riemann, .. } => {

@@ -23,6 +23,7 @@ use crate::terms::Eyes;
 use super::claims::{Asked, Step, relations_of, steps_of};
 use super::conventions::{self, Geometric, exchanged, other_signs};
 use super::repairs::{Broken, Look, Source, repairs};
+use super::lowering::Way;
 use super::standing::{Doubt, conditioned, doubt, kernels};
 use super::telling::{in_words, is_number, kind, listed, numbers, plain_view, told};
 use super::words::loosening;
@@ -242,9 +243,12 @@ impl<'m> StepJudge<'m> {
         };
         let verdicts: Vec<Verdict> = claims.iter().map(|(left, right)| self.judged(step, text, left, right)).collect();
         let first = verdicts.first()?;
-        if verdicts.iter().any(|other| kind(other) != kind(first)) {
+        // What holds for the change of the inverse metric, as most mean it, holds.
+        let matters = |way: Way| way != Way::Raised || !matches!(first, Verdict::Holds { .. });
+        let mut others = verdicts.iter().skip(1).zip(&step.others).filter(|(_, way)| matters(**way));
+        if let Some((_, way)) = others.find(|(other, _)| kind(other) != kind(first)) {
             self.counts.undecided += 1;
-            let message = "this step holds or not, depending on how far a derivative reaches: put brackets".to_owned();
+            let message = format!("this step holds or not, depending on {}", way.words());
             return Some(told(
                 rules::step_not_shown(step.sign, message),
                 step,
@@ -252,10 +256,16 @@ impl<'m> StepJudge<'m> {
             ));
         }
         let sides = claims.first()?;
-        if let Verdict::Fails(found) = first
+        let failed = match first {
+            Verdict::Fails(found) => Some(found.dimension),
+            Verdict::NeedsDimension { fails, .. } => fails.first().copied(),
+            _ => None,
+        };
+        if let Some(dimension) = failed
             && let Some(doubt) = self.doubt(step, text, sides, asked)
+            && (doubt.derived || matches!(first, Verdict::Fails(_)))
         {
-            return Some(self.doubted(step, first, found.dimension, doubt));
+            return Some(self.doubted(step, first, dimension, doubt));
         }
         if matches!(first, Verdict::Fails(_) | Verdict::NeedsDimension { .. })
             && let Some(minus) = self.other_signature(step, text, sides)
@@ -282,7 +292,7 @@ impl<'m> StepJudge<'m> {
         // Whoever asks for a formula by itself means it as it stands.
         let loosening = if asked == Asked::All { None } else { loosening(text, step.sign) };
         let by_words =
-            |phrase: &str| Doubt { why: SAID, names: vec![format!("\u{201c}{phrase}\u{201d}")], may_be_law: false };
+            |phrase: &str| Doubt { why: SAID, names: vec![format!("\u{201c}{phrase}\u{201d}")], may_be_law: false, derived: false };
         doubt.or_else(|| loosening.map(by_words))
     }
 

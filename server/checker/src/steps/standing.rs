@@ -86,6 +86,8 @@ pub(super) struct Doubt {
     pub names: Vec<String>,
     /// Whether the relation opens its statement and nothing else is against it: an identity is no law.
     pub may_be_law: bool,
+    /// Whether derivatives stand in the step: a law for a field, not an identity of algebra.
+    pub derived: bool,
 }
 
 /// Why a difference between two sides shows no mistake; nothing if it does.
@@ -96,8 +98,9 @@ pub(super) fn doubt(
     opens: bool,
     asked: Asked,
 ) -> Option<Doubt> {
-    let doubt = |why, names| Some(Doubt { why, names, may_be_law: false });
     let (left, right) = (Content::of(sides.0, world), Content::of(sides.1, world));
+    let derived = left.derived || right.derived;
+    let doubt = |why, names| Some(Doubt { why, names, may_be_law: false, derived });
     let held: Vec<String> =
         left.fields.iter().chain(&right.fields).filter(|name| conditioned.contains(name.as_str())).cloned().collect();
     let held = once_each(held);
@@ -115,10 +118,10 @@ pub(super) fn doubt(
         return doubt("no definition links the sides by", lone);
     }
     let fieldless = left.fields.is_empty() && right.fields.is_empty();
-    let derives = left.derived || right.derived || !left.metric && !right.metric;
+    let derives = derived || !left.metric && !right.metric;
     if opens && !(fieldless && derives) {
         let named = once_each([left.fields, right.fields].concat());
-        return Some(Doubt { why: "it may be a law for", names: named, may_be_law: true });
+        return Some(Doubt { why: "it may be a law for", names: named, may_be_law: true, derived });
     }
     None
 }

@@ -49,6 +49,11 @@ fn is_position(kernel: &str, slots: usize) -> bool {
     slots == 1 && matches!(kernel, "x" | "X" | "y" | "r")
 }
 
+/// A number that has a name: constant, but of no value here that a counterexample could give.
+fn is_number_by_custom(kernel: &str, slots: usize) -> bool {
+    slots == 0 && kernel == "\\pi"
+}
+
 /// How a root begins whose radicand is the opposite of something.
 const NEGATED_ROOTS: [&str; 6] = ["\\sqrt{-", "\\sqrt-", "sqrt(-", "sqrt-", "\u{221a}(-", "\u{221a}-"];
 
@@ -245,7 +250,7 @@ impl<'a> Surroundings<'a> {
             slots: slots.to_vec(),
             symmetries: exchanges,
             traceless: known.is_some_and(|known| known.traceless),
-            constant: is(Kind::Constant),
+            constant: is(Kind::Constant) || is_number_by_custom(kernel, slots.len()),
             small: is(Kind::Small),
             varies: true,
             known: known.is_some_and(Known::is_settled) && !is_position(kernel, slots.len()),
