@@ -102,6 +102,8 @@ const MODULES: &[(&str, Road)] = &[
                     "geometry",
                     "expression",
                     "evaluation",
+                    "symmetry",
+                    "normal_form",
                 ],
             ),
             ("symmetry", &["draws"]),

@@ -173,7 +173,7 @@ pub struct World {
     pub definitions: Vec<Definition>,
     /// Names of parameters of variations and of derivatives along curves.
     pub parameters: Vec<String>,
-    /// Signs of the curvature.
+    /// Signs of the curvature and of the epsilon tensors.
     pub signs: Signs,
     /// Which dimensions are tried; one, where it is fixed.
     pub dimensions: Vec<usize>,
@@ -315,6 +315,18 @@ impl Expression {
         }
         let once = |index: &Index| all.iter().filter(|other| other.filling == index.filling).count() == 1;
         all.iter().filter(|index| matches!(index.filling, Filling::Label(_)) && once(index)).copied().collect()
+    }
+
+    /// The parts of which it is made, to be changed.
+    pub fn parts_mut(&mut self) -> Vec<&mut Self> {
+        match self {
+            Self::Sum(parts) | Self::Product(parts) => parts.iter_mut().collect(),
+            Self::Quotient(over, under) => vec![over, under],
+            Self::Power(of, _) | Self::Magnitude(of) | Self::Function(_, of) | Self::Partial(_, of) => vec![of],
+            Self::Covariant { of, .. } | Self::Vary { of, .. } => vec![of],
+            Self::Det(of, _) | Self::Inverse(of, ..) | Self::Adjugate(of, ..) => vec![of],
+            _ => Vec::new(),
+        }
     }
 
     /// The parts of which it is made.

@@ -27,7 +27,7 @@ use crate::symbols::{delta, epsilon};
 use crate::tensor::Tensor;
 use crate::trouble::{Outcome, Trouble};
 
-/// Which signs the curvature has, against the defaults.
+/// Which signs the curvature and the epsilon tensor have, against the defaults.
 #[derive(Clone, Copy, Debug, Default, PartialEq, Eq)]
 pub struct Signs {
     /// The curvature tensor has the other sign: `R^i_{jkl} = d_l G^i_{jk} - ..`.
@@ -35,6 +35,8 @@ pub struct Signs {
     /// The Ricci tensor sums over the first and the last slot of the curvature tensor, whatever its sign:
     /// `R_{jk} = R^i_{jki}`.
     pub ricci_reversed: bool,
+    /// The epsilon tensor has the other sign: `epsilon_{1..n} = -root |g|`.
+    pub epsilon_reversed: bool,
 }
 
 /// A metric and what follows from it.
@@ -110,13 +112,18 @@ impl<N: Number> Geometry<N> {
 
     /// `epsilon_{i..}`, with `epsilon_{1..n} = root |g|`.
     pub fn epsilon_down(&self) -> Outcome<Tensor<N>> {
-        epsilon(self.metric.ring(), self.dimension())?.times(&self.volume()?)
+        epsilon(self.metric.ring(), self.dimension())?.times(&self.volume()?.scaled(self.orientation()))
     }
 
     /// `epsilon^{i..}`, all slots of `epsilon_{i..}` raised: `epsilon^{1..n} = sign(g) / root |g|`.
     pub fn epsilon_up(&self) -> Outcome<Tensor<N>> {
-        let factor = self.volume()?.inverse()?.scaled(self.sign()?);
+        let factor = self.volume()?.inverse()?.scaled(self.sign()? * self.orientation());
         epsilon(self.metric.ring(), self.dimension())?.times(&factor)
+    }
+
+    /// The sign of `epsilon_{1..n}`.
+    fn orientation(&self) -> N {
+        if self.signs.epsilon_reversed { -N::ONE } else { N::ONE }
     }
 
     /// A tensor with one slot raised by the inverse metric; the slots keep their order.

@@ -11,8 +11,10 @@
 
 mod compare;
 mod degree;
+mod form;
 mod functions;
 mod givens;
+mod killing;
 mod signature;
 mod signs;
 mod text;
@@ -26,6 +28,7 @@ use crate::trouble::{Budget, Trouble};
 use compare::{Compared, Dimension};
 use givens::Givens;
 
+pub use form::holds_by_form;
 pub use givens::UNKNOWNS_BUDGET;
 
 /// In how many of the dimensions in which a claim fails a counterexample is looked for, the smallest first.
@@ -77,7 +80,7 @@ pub enum Verdict {
         dimensions: Vec<usize>,
         /// The dimensions in which a denominator is 0, or a root does not exist, everywhere.
         undefined: Vec<usize>,
-        /// How many points there were in all.
+        /// How many points there were in all; 0 for what holds by form.
         draws: usize,
         /// The chance that a wrong claim passes in one of the dimensions is at most `2^-error_bits`.
         error_bits: u32,
@@ -150,6 +153,10 @@ pub struct Counterexample {
     pub dimension: usize,
     /// The fields that are not 0, component by component, and the coordinates of the point, if they matter.
     pub assignments: Vec<Assignment>,
+    /// The same in full: every component that is not 0, with its Taylor coefficients.
+    pub entries: Vec<Entry>,
+    /// The variables of the coefficients in their order: coordinates about the point, from `x_1` on, then parameters.
+    pub variables: Vec<String>,
     /// Which component differs: the members that the free labels take, zero-based.
     pub component: Vec<(crate::contraction::Label, usize)>,
     /// The left side there.
@@ -167,6 +174,19 @@ pub struct Assignment {
     pub component: Vec<usize>,
     /// A polynomial in the coordinates about the point, as `1 + 2 x_1 - x_2 x_3`; coordinates count from 1.
     pub value: String,
+}
+
+/// A component of a field as numbers.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Entry {
+    /// The field or metric, or `x` for the coordinates of the point.
+    pub name: String,
+    /// The levels of its slots as it is drawn.
+    pub levels: Vec<crate::geometry::Level>,
+    /// Its component on these levels, zero-based.
+    pub component: Vec<usize>,
+    /// Coefficients that are not 0, each with the exponents of the variables.
+    pub terms: Vec<(Rational, Vec<u8>)>,
 }
 
 /// The verdict about a claim. It depends on the claim and the limits alone, unless it is stopped.

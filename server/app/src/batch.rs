@@ -223,14 +223,24 @@ pub fn configurations(scopes: &Scopes, settings: &Settings) -> Vec<FileReport> {
         let mut findings = problems(&configuration.conventions);
         Settings { levels: configuration.levels.clone(), ..settings.clone() }.settle(&mut findings);
         let (path, text) = (configuration.conventions.path.clone(), configuration.text.clone());
-        FileReport { path, host: None, statistics: Statistics::default(), findings, symbols: None, text }
+        FileReport {
+            path,
+            host: None,
+            statistics: Statistics::default(),
+            findings,
+            symbols: None,
+            steps: Vec::new(),
+            text,
+        }
     });
     reports.filter(|report| !report.findings.is_empty()).collect()
 }
 
 fn report_of(shown: &str, file: &Listed, found: DocumentAnalysis, text: Option<&Text>) -> FileReport {
     // Without places nobody asks for the text again, and a large archive need not be held in memory.
-    let has_places = !found.findings.is_empty() || found.symbols.as_ref().is_some_and(|symbols| !symbols.is_empty());
+    let has_places = !found.findings.is_empty()
+        || !found.steps.is_empty()
+        || found.symbols.as_ref().is_some_and(|symbols| !symbols.is_empty());
     let text = text.filter(|_| has_places).cloned().unwrap_or_default();
     FileReport {
         path: shown.to_owned(),
@@ -238,6 +248,7 @@ fn report_of(shown: &str, file: &Listed, found: DocumentAnalysis, text: Option<&
         statistics: found.statistics,
         findings: found.findings,
         symbols: found.symbols,
+        steps: found.steps,
         text,
     }
 }

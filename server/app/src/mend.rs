@@ -143,6 +143,7 @@ impl<'a> Work<'a> {
             statistics: found.statistics,
             findings: found.findings,
             symbols: found.symbols,
+            steps: found.steps,
             text: after.clone(),
         };
         let Self { shown, path, before, done, .. } = self;

@@ -8,7 +8,7 @@ pub mod text;
 use std::io::{self, Write};
 use std::time::Duration;
 
-use indexwise_checker::finding::{Finding, Severity};
+use indexwise_checker::finding::{Finding, JudgedStep, Severity};
 use indexwise_checker::paper::Statistics;
 use indexwise_checker::symbols::SymbolTable;
 use indexwise_grammar::hosts::Host;
@@ -30,6 +30,8 @@ pub struct FileReport {
     pub findings: Vec<Finding>,
     /// The symbols, if they are asked for.
     pub symbols: Option<SymbolTable>,
+    /// Every step that was judged, in the order of their places.
+    pub steps: Vec<JudgedStep>,
     /// The text that the findings and the symbols speak of; empty if there are none.
     pub text: Text,
 }
@@ -153,6 +155,7 @@ pub mod samples {
             statistics: Statistics { formulas: 1, indexed: 1, ..Statistics::default() },
             findings: vec![finding],
             symbols: None,
+            steps: Vec::new(),
             text: Text { text: text.into(), marked },
         }
     }

@@ -68,14 +68,22 @@ impl Finding {
 /// What was found out about a step.
 #[derive(Clone, Debug, Default, PartialEq, Eq)]
 pub struct StepVerdict {
-    /// "fails", "differs", "needs dimension", "undecided".
+    /// "holds by form", "holds", "fails", "differs", "needs dimension", "undecided".
     pub verdict: &'static str,
+    /// Dimensions in which it was to be tried.
+    pub tried: Vec<usize>,
     /// Dimensions in which the step holds.
     pub holds: Vec<usize>,
     /// Dimensions in which it does not.
     pub fails: Vec<usize>,
-    /// Kernels of unknown meaning, and defaults, that it rests on.
+    /// Dimensions in which a side has no meaning.
+    pub undefined: Vec<usize>,
+    /// Of what holds at points that were drawn: the chance that it does not hold is at most `2^-error_bits`.
+    pub error_bits: Option<u32>,
+    /// Kernels of unknown meaning, and givens, that it rests on.
     pub assumptions: Vec<String>,
+    /// What was taken for want of a declaration and matters here, as sentences without a full stop.
+    pub defaults: Vec<String>,
     /// Numbers for which the sides differ.
     pub counterexample: Option<Counterexample>,
 }
@@ -87,12 +95,38 @@ pub struct Counterexample {
     pub dimension: usize,
     /// Components that are not zero: `g_{11}` and `1 + 2 x_1`.
     pub values: Vec<(String, String)>,
+    /// The same in full, for a program: every component that is not zero.
+    pub fields: Vec<FieldComponent>,
+    /// The variables of the terms in their order: coordinates about the point, from `x_1` on, then parameters.
+    pub variables: Vec<String>,
     /// The free indices of the component, each with its value; none for a scalar.
     pub component: Vec<(String, String)>,
     /// The left side there, a fraction in lowest terms.
     pub left: String,
     /// The right side there.
     pub right: String,
+}
+
+/// A component of a field that is not zero, as a polynomial.
+#[derive(Clone, Debug, Default, PartialEq, Eq)]
+pub struct FieldComponent {
+    /// The kernel in LaTeX; `x` for the coordinates of the point.
+    pub name: String,
+    /// "up", "down" or "" where the level does not matter, of each slot.
+    pub levels: Vec<&'static str>,
+    /// Which component, counted from 1.
+    pub component: Vec<usize>,
+    /// Coefficients, fractions in lowest terms, each with the exponents of the variables.
+    pub terms: Vec<(String, Vec<u8>)>,
+}
+
+/// A step and what was found out about it.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct JudgedStep {
+    /// The relation sign.
+    pub span: Span,
+    /// What was found out.
+    pub verdict: StepVerdict,
 }
 
 /// A further place that a finding speaks of.

@@ -18,7 +18,7 @@ use indexwise_grammar::hosts::Host;
 use indexwise_grammar::span::Span;
 
 pub use crate::conventions::declared::SharedConventions;
-use crate::finding::{Finding, Severity};
+use crate::finding::{Finding, JudgedStep, Severity};
 use crate::reading;
 use crate::sketch::Sketch;
 use crate::symbols::SymbolTable;
@@ -146,6 +146,8 @@ pub struct DocumentAnalysis {
     pub findings: Vec<Finding>,
     /// The symbols, if they are asked for.
     pub symbols: Option<SymbolTable>,
+    /// Every step that was judged, in the order of their places.
+    pub steps: Vec<JudgedStep>,
     /// The steps that were judged, in the order of the text.
     pub marks: Vec<StepMark>,
 }

@@ -7,14 +7,17 @@
 
 mod claims;
 mod conventions;
+mod defaults;
 mod lowering;
 mod repairs;
 mod report;
 mod standing;
+mod telling;
+mod words;
 mod world;
 
 pub use claims::{Asked, Step, steps_of};
-pub use lowering::{Lowering, Reach};
+pub use lowering::{Lowering, Way};
 pub use repairs::Source;
 pub use report::{LabelledGiven, StepJudge};
 pub use world::Surroundings;

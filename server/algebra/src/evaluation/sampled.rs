@@ -237,6 +237,17 @@ impl<N: Number> Sampled<N> {
         }
     }
 
+    /// To which order a field or metric is drawn.
+    pub fn order(&self, part: Part) -> Option<Order> {
+        self.free(part).map(|free| free.order)
+    }
+
+    /// The orbit of a component, counted row by row, whose coefficients are those of the component itself.
+    pub fn orbit(&self, part: Part, component: usize) -> Option<usize> {
+        let (orbit, sign) = self.free(part)?.orbits.get(component)?;
+        (*sign == Sign::Same).then_some(*orbit)
+    }
+
     /// All coefficients that are free.
     pub fn places(&self) -> Vec<Place> {
         let of = |part: Part| {

@@ -3,7 +3,8 @@
 //! A given is an equation between fields at every place, so that the Taylor coefficients of the difference of its
 //! sides vanish to as many orders as the claim can notice. For each given one field (or a metric that is arbitrary)
 //! gives way: those of its coefficients on which the equations depend are solved for, modulo the prime, the others
-//! stay as they were drawn. Three ways are tried, in this order:
+//! stay as they were drawn. Killing's equation has a way of its own (`killing.rs`); else three ways are tried, in this
+//! order:
 //!
 //! - degree by degree, the coefficients of the highest derivatives first met at that degree. They enter linearly even
 //!   where the equation is not linear: Ricci's tensor in second derivatives of the metric;
@@ -22,6 +23,7 @@ use std::cell::{Cell, RefCell};
 use std::sync::Arc;
 
 use super::compare::{Dimension, sides};
+use super::killing::Killing;
 use super::{Claim, degree};
 use crate::evaluation::Point;
 use crate::evaluation::families::Families;
@@ -42,8 +44,8 @@ const ROUNDS: usize = 3;
 #[derive(Clone, Debug)]
 pub(super) struct Condition {
     pub label: String,
-    left: Expression,
-    right: Expression,
+    pub left: Expression,
+    pub right: Expression,
     pub order: usize,
     /// Which fields and metrics stand in it, with the order of their highest derivative.
     depths: Vec<(Part, usize)>,
@@ -156,6 +158,9 @@ impl<'a, N: Number> Imposing<'a, N> {
         if self.obeys(&self.point, &[condition])? {
             return Ok(());
         }
+        if self.impose_killing(number, condition)? {
+            return Ok(());
+        }
         for (part, depth) in self.candidates(condition) {
             let together = self.together(number, part);
             let ways = [Way::ByDegree(depth), Way::AtThePoint, Way::AtOnce];
@@ -171,6 +176,22 @@ impl<'a, N: Number> Imposing<'a, N> {
             }
         }
         Err(self.givens.fail(condition))
+    }
+
+    /// Imposes Killing's equation by solving for the metric, if the condition is that and nothing of it is settled yet.
+    fn impose_killing(&mut self, number: usize, condition: &Condition) -> Outcome<bool> {
+        let Some(killing) = Killing::of(condition, &self.dimension.claim.world) else { return Ok(false) };
+        if self.gave_way.iter().any(|(_, part)| killing.parts().contains(part)) {
+            return Ok(false);
+        }
+        let Some((point, growth)) = killing.imposed(self.dimension, self.ring, &self.point)? else { return Ok(false) };
+        if !self.obeys(&point, &[condition])? {
+            return Ok(false);
+        }
+        self.point = point;
+        self.growth = self.growth.saturating_add(growth);
+        self.gave_way.extend(killing.parts().map(|part| (number, part)));
+        Ok(true)
     }
 
     /// What may give way, with the order of its derivatives: fields that have not yet before those that have, few

@@ -14,12 +14,14 @@ use std::sync::Arc;
 
 use super::compare::{Difference, Dimension};
 use super::signature::negative_squares;
-use super::{Assignment, Counterexample, functions};
-use crate::evaluation::sampled::{MetricDraw, Place, Sampled};
+use super::{Assignment, Counterexample, Entry, functions};
+use crate::evaluation::sampled::{MetricDraw, Part, Place, Sampled};
 use crate::evaluation::{Meter, Point, ring_for};
+use crate::geometry::Level;
 use crate::jet::{Jet, Ring};
 use crate::number::{Exact, Number};
 use crate::rational::Rational;
+use crate::tensor::strides;
 use crate::trouble::{Budget, Trouble};
 
 /// From how many random points the search starts, of each kind.
@@ -154,6 +156,8 @@ impl Search<'_> {
         let component = difference.slots.iter().map(|slot| slot.label).zip(place).collect();
         Some(Counterexample {
             dimension: self.dimension.dimension,
+            entries: self.entries(point.clone())?,
+            variables: self.variables(),
             assignments: self.assignments(point)?,
             component,
             left,
@@ -186,6 +190,67 @@ impl Search<'_> {
             add("x", vec![number], &Jet::constant(&self.ring, value));
         }
         Some(found)
+    }
+
+    /// All components that are not 0, in the order of the world: fields, metrics, coordinates.
+    fn entries(&self, point: Sampled<Exact>) -> Option<Vec<Entry>> {
+        let Dimension { claim, needs, families, meter, .. } = self.dimension;
+        let world = &claim.world;
+        let (parts, coordinates) = (point.parts(), point.coordinates.clone());
+        let evaluated = Point::new(world, families.clone(), needs, &self.ring, point, meter);
+        let mut found = Vec::new();
+        let mut add = |name: &str, levels: Vec<Level>, component: Vec<usize>, jet: &Jet<Exact>| {
+            let terms = self.terms(jet)?;
+            if !terms.is_empty() {
+                found.push(Entry { name: name.to_owned(), levels, component, terms });
+            }
+            Some(())
+        };
+        for part in parts {
+            let (name, levels, tensor) = match part {
+                Part::Field(field) => {
+                    let own = world.fields.get(field)?;
+                    let levels: Vec<Level> = own.slots.iter().map(|(_, level)| *level).collect();
+                    (&own.name, levels, (*evaluated.whole_field(field).ok()?).clone())
+                }
+                Part::Metric(metric) => {
+                    let tensor = evaluated.space(metric).ok()?.metric().clone();
+                    (&world.metrics.get(metric)?.name, vec![Level::Down; 2], tensor)
+                }
+            };
+            for place in 0..tensor.size() {
+                let steps = strides(tensor.lengths());
+                let component: Vec<usize> =
+                    tensor.lengths().iter().zip(&steps).map(|(length, step)| place / step % length).collect();
+                add(name, levels.clone(), component.clone(), &tensor.get(&component)?)?;
+            }
+        }
+        for (number, value) in coordinates.into_iter().enumerate() {
+            add("x", vec![Level::Up], vec![number], &Jet::constant(&self.ring, value))?;
+        }
+        Some(found)
+    }
+
+    /// The coefficients of a jet that are not 0; nothing where one is no fraction.
+    fn terms(&self, jet: &Jet<Exact>) -> Option<Vec<(Rational, Vec<u8>)>> {
+        let mut terms = Vec::new();
+        for (monomial, coefficient) in self.ring.monomials(jet.order()).zip(jet.coefficients()) {
+            let number = coefficient.value()?;
+            if number != Rational::ZERO {
+                terms.push((number, monomial.to_vec()));
+            }
+        }
+        Some(terms)
+    }
+
+    /// The names of the variables: coordinates, the common size of small fields, parameters.
+    fn variables(&self) -> Vec<String> {
+        let needs = self.dimension.needs;
+        let coordinates = (0..self.ring.variables()).map(|number| format!("x_{}", number + 1));
+        let size = needs.sized.then(|| "size".to_owned());
+        let parameters =
+            needs.parameters.iter().filter_map(|number| self.dimension.claim.world.parameters.get(*number));
+        coordinates.chain(size).chain(parameters.cloned()).collect()
     }
 
     /// A jet as a polynomial; nothing for 0. The common size of small fields is left out.

@@ -4,7 +4,7 @@
 
 use std::io::{self, Write};
 
-use indexwise_checker::finding::{Edit, Finding, Fix, Related, StepVerdict};
+use indexwise_checker::finding::{Edit, FieldComponent, Finding, Fix, JudgedStep, Related, StepVerdict};
 use indexwise_checker::paper::Steps;
 use indexwise_checker::symbols::{DoubleUse, Part, Symbol, SymbolTable};
 use serde::Serialize;
@@ -33,8 +33,17 @@ struct FileObject<'a> {
     path: &'a str,
     statistics: StatisticsObject,
     findings: Vec<FindingObject<'a>>,
+    #[serde(skip_serializing_if = "Vec::is_empty")]
+    steps: Vec<StepObject<'a>>,
     #[serde(skip_serializing_if = "Option::is_none")]
     symbols: Option<SymbolsObject<'a>>,
+}
+
+#[derive(Serialize)]
+struct StepObject<'a> {
+    start: Place,
+    end: Place,
+    verdict: VerdictObject<'a>,
 }
 
 #[derive(Serialize)]
@@ -58,9 +67,14 @@ struct StepsObject {
 #[derive(Serialize)]
 struct VerdictObject<'a> {
     verdict: &'a str,
+    tried: &'a [usize],
     holds: &'a [usize],
     fails: &'a [usize],
+    undefined: &'a [usize],
+    #[serde(skip_serializing_if = "Option::is_none")]
+    error_bits: Option<u32>,
     assumptions: &'a [String],
+    defaults: &'a [String],
     #[serde(skip_serializing_if = "Option::is_none")]
     counterexample: Option<CounterexampleObject<'a>>,
 }
@@ -69,9 +83,25 @@ struct VerdictObject<'a> {
 struct CounterexampleObject<'a> {
     dimension: usize,
     values: Vec<NamedValue<'a>>,
+    variables: &'a [String],
+    fields: Vec<FieldObject<'a>>,
     component: Vec<NamedValue<'a>>,
     left: &'a str,
     right: &'a str,
+}
+
+#[derive(Serialize)]
+struct FieldObject<'a> {
+    name: &'a str,
+    levels: &'a [&'static str],
+    component: &'a [usize],
+    terms: Vec<TermObject<'a>>,
+}
+
+#[derive(Serialize)]
+struct TermObject<'a> {
+    coefficient: &'a str,
+    exponents: &'a [u8],
 }
 
 #[derive(Serialize)]
@@ -177,8 +207,13 @@ fn object(file: &FileReport) -> FileObject<'_> {
             }),
         },
         findings: file.findings.iter().map(|finding| finding_object(finding, &places)).collect(),
+        steps: file.steps.iter().map(|step| step_object(step, &places)).collect(),
         symbols: file.symbols.as_ref().map(|symbols| symbols_object(symbols, &places)),
     }
+}
+
+fn step_object<'a>(step: &'a JudgedStep, places: &Places) -> StepObject<'a> {
+    StepObject { start: places.start(step.span), end: places.end(step.span), verdict: verdict_object(&step.verdict) }
 }
 
 fn symbols_object<'a>(symbols: &'a SymbolTable, places: &Places) -> SymbolsObject<'a> {
@@ -220,16 +255,31 @@ fn finding_object<'a>(finding: &'a Finding, places: &Places) -> FindingObject<'a
 fn verdict_object(verdict: &StepVerdict) -> VerdictObject<'_> {
     VerdictObject {
         verdict: verdict.verdict,
+        tried: &verdict.tried,
         holds: &verdict.holds,
         fails: &verdict.fails,
+        undefined: &verdict.undefined,
+        error_bits: verdict.error_bits,
         assumptions: &verdict.assumptions,
+        defaults: &verdict.defaults,
         counterexample: verdict.counterexample.as_ref().map(|numbers| CounterexampleObject {
             dimension: numbers.dimension,
             values: named(&numbers.values),
+            variables: &numbers.variables,
+            fields: numbers.fields.iter().map(field_object).collect(),
             component: named(&numbers.component),
             left: &numbers.left,
             right: &numbers.right,
         }),
+    }
+}
+
+fn field_object(field: &FieldComponent) -> FieldObject<'_> {
+    FieldObject {
+        name: &field.name,
+        levels: &field.levels,
+        component: &field.component,
+        terms: field.terms.iter().map(|(coefficient, exponents)| TermObject { coefficient, exponents }).collect(),
     }
 }
 

@@ -9,7 +9,7 @@ mod symbols;
 use std::io::{self, Write};
 use std::time::Duration;
 
-use indexwise_checker::finding::{Counterexample, Finding, Severity};
+use indexwise_checker::finding::{Counterexample, Finding, Severity, StepVerdict};
 use unicode_width::UnicodeWidthStr;
 
 use super::places::Places;
@@ -159,6 +159,9 @@ fn write_words(places: &Places, finding: &Finding, palette: Palette, out: &mut d
             writeln!(out)?;
         }
     }
+    if let Some(verdict) = &finding.verdict {
+        write_basis(verdict, out)?;
+    }
     for fix in &finding.fixes {
         // Two places may be called the same.
         let twins = finding.fixes.iter().filter(|other| other.title == fix.title).count();
@@ -167,6 +170,20 @@ fn write_words(places: &Places, finding: &Finding, palette: Palette, out: &mut d
         writeln!(out, "{INDENT}Offered: {}{place}.", printable(&fix.title))?;
     }
     writeln!(out)
+}
+
+/// In which dimensions a step was tried, and what was taken for want of a declaration.
+fn write_basis(verdict: &StepVerdict, out: &mut dyn Write) -> io::Result<()> {
+    let tried: Vec<String> = verdict.tried.iter().map(usize::to_string).collect();
+    if verdict.tried.len() > 1 {
+        writeln!(out, "{INDENT}Tried in dimensions {}.", tried.join(", "))?;
+    }
+    if !verdict.defaults.is_empty() {
+        for line in wrapped(&format!("By default {}.", printable(&verdict.defaults.join("; ")))) {
+            writeln!(out, "{INDENT}{line}")?;
+        }
+    }
+    Ok(())
 }
 
 /// Numbers that a person can check: one field a line, and both sides.
@@ -233,7 +250,21 @@ fn write_closing(files: &[FileReport], elapsed: Duration, out: &mut dyn Write) -
         counted(totals.hints, "hint"),
         elapsed.as_secs_f64(),
     )?;
+    if let Some(held) = held(files) {
+        writeln!(out, "{held}")?;
+    }
     writeln!(out, "A clean report is about notation only: it reviews neither physics nor design.")
+}
+
+/// How the steps hold that do: by form, or at random points with a chance of error; nothing if there are none.
+fn held(files: &[FileReport]) -> Option<String> {
+    let verdicts = || files.iter().flat_map(|file| &file.steps).map(|step| &step.verdict);
+    let by_form = verdicts().filter(|verdict| verdict.verdict == "holds by form").count();
+    let bits = verdicts().filter(|verdict| verdict.verdict == "holds").filter_map(|verdict| verdict.error_bits);
+    let chance = bits.min().map(|bits| format!("at random points, each wrong with a chance of at most 2^-{bits}"));
+    let form = (by_form > 0).then(|| format!("{by_form} by form"));
+    let ways: Vec<String> = form.into_iter().chain(chance).collect();
+    (!ways.is_empty()).then(|| format!("Steps hold {}.", ways.join(", the others ")))
 }
 
 fn counted(number: usize, thing: &str) -> String {

@@ -72,6 +72,8 @@ pub enum Role {
     Metric {
         /// Whether its components do not depend on position.
         constant: bool,
+        /// How many signs of its signature are negative, if it was said.
+        negative: Option<usize>,
     },
     /// The connection of a metric.
     Christoffel,
@@ -301,9 +303,11 @@ impl Meanings {
 
     fn take_kernel(&mut self, sentence: &Sentence) {
         match sentence {
-            Sentence::Metric { tensor, constant, .. } => {
+            Sentence::Metric { tensor, constant, signature } => {
                 let known = self.know(tensor);
-                known.role = Some(Role::Metric { constant: *constant });
+                let negative = signature.iter().filter(|plus| !**plus).count();
+                let negative = (!signature.is_empty()).then_some(negative);
+                known.role = Some(Role::Metric { constant: *constant, negative });
                 known.exchange(&[0, 1], false);
             }
             Sentence::Christoffel { tensor, .. } => {

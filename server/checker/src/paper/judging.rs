@@ -114,14 +114,15 @@ pub(super) fn judge_document(
         unknown_macros: formulas.iter().zip(&indexed).filter(|(f, flag)| **flag && !f.unknown.is_empty()).count(),
         steps: steps.as_ref().map(|steps| steps.counts).unwrap_or_default(),
     };
-    let marks = steps.map(|steps| steps.marks).unwrap_or_default();
+    let (mut steps, marks) = steps.map(|steps| (steps.judged, steps.marks)).unwrap_or_default();
+    steps.sort_by_key(|step| step.span.start);
     let read = &document.read;
     let mut missing = missing;
     missing.extend(unknown);
     missing.extend(about);
     let findings = directed(&read.declared, read.host, formulas, findings, missing);
     let symbols = symbols.map(|symbols| symbols.finish(&prices.declared.meanings, customs));
-    DocumentAnalysis { statistics, findings, symbols, marks }
+    DocumentAnalysis { statistics, findings, symbols, marks, steps }
 }
 
 impl<'d> Judge<'d> {
@@ -145,7 +146,7 @@ impl<'d> Judge<'d> {
             StepMode::Asked => read.host == Host::Note || said,
         };
         if self.chains || !self.asked.is_empty() {
-            self.steps = Some(StepJudge::new(&self.prices.declared.meanings));
+            self.steps = Some(StepJudge::new(&self.prices.declared.meanings, &read.text));
             self.declared_definitions();
             self.conditions();
         }
@@ -245,6 +246,12 @@ impl<'d> Judge<'d> {
                     }
                 }
             }
+        }
+        if steps.all_hold {
+            // What holds for all fields, or by what is given, shares its symmetries by that.
+            let span = judged.sketch.span;
+            let inside = |at: Span| span.start <= at.start && at.end <= span.end;
+            self.findings.retain(|(_, finding)| finding.rule != "symmetry-not-shared" || !inside(finding.span));
         }
         self.findings.extend(found.into_iter().map(|finding| (number, finding)));
     }

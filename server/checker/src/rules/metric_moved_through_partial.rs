@@ -85,7 +85,7 @@ fn is_metric(terms: &Flattened<'_>, piece: &Piece) -> bool {
         return false;
     }
     match terms.eyes.meanings.known(&piece.made.kernel, own) {
-        Some(known) => known.role == Some(Role::Metric { constant: false }),
+        Some(known) => matches!(known.role, Some(Role::Metric { constant: false, .. })),
         None => {
             is_metric_by_custom(&piece.made.kernel)
                 && !is_constant_metric(&piece.made.letter)

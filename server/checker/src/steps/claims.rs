@@ -13,7 +13,7 @@ use indexwise_grammar::tree::{Atom, Claim, Factor, Statement, Sum};
 
 use crate::terms::{Eyes, plain_number};
 
-use super::lowering::{Lowering, Reach};
+use super::lowering::{Lowering, Way};
 use super::world::Surroundings;
 
 /// What is asked of a statement.
@@ -38,8 +38,10 @@ pub struct Step {
     pub sign: Span,
     /// The sides that it joins.
     pub sides: (Span, Span),
-    /// What it claims to be equal, in each way in which its derivatives may reach; or why that is not known.
+    /// What it claims to be equal, in each way in which it may be read; or why that is not known.
     pub claims: Result<Vec<(Expression, Expression)>, String>,
+    /// The ways of reading after the first, in the same order.
+    pub others: Vec<Way>,
     /// The letters of the labels.
     pub letters: Vec<CompactString>,
     /// How many indices are antisymmetrised at once, at most.
@@ -80,6 +82,7 @@ pub fn steps_of(
             sign: relation.span,
             sides: (left.span, right.span),
             claims: Ok(Vec::new()),
+            others: Vec::new(),
             letters: Vec::new(),
             antisymmetrised: 0,
         };
@@ -101,14 +104,14 @@ fn sets_a_value(left: &Sum, right: &Sum) -> bool {
 /// What stands alone on the left of a statement that goes on with an approximation has no exact definition.
 fn loosen(statement: &Statement, eyes: &Eyes<'_>, surroundings: &mut Surroundings<'_>) {
     let Some(factor) = statement.sides.first().and_then(lone_factor) else { return };
-    if let Some((kernel, slots)) = Lowering::new(surroundings, eyes, Reach::Near).lone_kernel(factor) {
+    if let Some((kernel, slots)) = Lowering::new(surroundings, eyes, Way::Near).lone_kernel(factor) {
         surroundings.forget(&kernel, slots.len());
     }
 }
 
 /// A letter that is set again means the later thing from there on.
 fn define_again(left: &Sum, right: &Sum, eyes: &Eyes<'_>, surroundings: &mut Surroundings<'_>) {
-    let lone = lone_factor(left).and_then(|factor| Lowering::new(surroundings, eyes, Reach::Near).lone_kernel(factor));
+    let lone = lone_factor(left).and_then(|factor| Lowering::new(surroundings, eyes, Way::Near).lone_kernel(factor));
     if lone.is_some_and(|(kernel, slots)| surroundings.is_defined(&kernel, slots.len())) {
         define(left, right, eyes, surroundings, true);
     }
@@ -126,23 +129,23 @@ pub fn relations_of(
             continue;
         };
         if relation.claim() == Claim::Equality {
-            out.extend(pair(&mut Lowering::new(surroundings, eyes, Reach::Near), left, right));
+            out.extend(pair(&mut Lowering::new(surroundings, eyes, Way::Near), left, right));
         }
     }
     out
 }
 
-/// Both sides, in each way in which derivatives may reach.
+/// Both sides, in each way in which they may be read.
 fn lower(step: &mut Step, left: &Sum, right: &Sum, eyes: &Eyes<'_>, surroundings: &mut Surroundings<'_>) {
-    let mut near = Lowering::new(surroundings, eyes, Reach::Near);
+    let mut near = Lowering::new(surroundings, eyes, Way::Near);
     let sides = pair(&mut near, left, right);
     step.letters = near.letters().to_vec();
     step.antisymmetrised = near.antisymmetrised;
-    let mattered = near.reach_mattered;
+    step.others = near.others.clone();
     step.claims = sides.and_then(|sides| {
         let mut all = vec![sides];
-        if mattered {
-            all.push(pair(&mut Lowering::new(surroundings, eyes, Reach::Far), left, right)?);
+        for way in &step.others {
+            all.push(pair(&mut Lowering::new(surroundings, eyes, *way), left, right)?);
         }
         Ok(all)
     });
@@ -193,7 +196,7 @@ pub(super) fn lone_factor(side: &Sum) -> Option<&Factor> {
 /// Takes a relation as a definition if it is one; `said` where its sign says so.
 fn define(left: &Sum, right: &Sum, eyes: &Eyes<'_>, surroundings: &mut Surroundings<'_>, said: bool) -> bool {
     let Some(factor) = lone_factor(left) else { return said };
-    let mut lowering = Lowering::new(surroundings, eyes, Reach::Near);
+    let mut lowering = Lowering::new(surroundings, eyes, Way::Near);
     let Some((kernel, slots)) = lowering.lone_kernel(factor) else { return said };
     if !said && (lowering.is_meant(&kernel, &slots) || is_zero(right)) {
         return false;

@@ -1,8 +1,9 @@
 //! From the tree of a side to an expression of the algebra.
 //!
 //! The reading says which scripts are indices, `terms/uses.rs` sorts them into slots; here kernels get their meaning
-//! and products their structure. A part that has no meaning here is refused with a reason. Trap: how far a derivative
-//! reaches beyond the next factor is not written; `Reach` chooses, and the caller tries both where it matters.
+//! and products their structure. A part that has no meaning here is refused with a reason. Trap: some things are
+//! not written, as how far a derivative reaches beyond the next factor; `Way` chooses, and the caller tries the others
+//! where they matter.
 
 mod calls;
 mod kernels;
@@ -24,13 +25,31 @@ use crate::terms::uses::{self, Use, UsedSlot, use_of};
 
 use super::world::Surroundings;
 
-/// What a derivative acts on in `\partial_k A B`.
+/// How what is not written is read.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
-pub enum Reach {
-    /// The next factor.
+pub enum Way {
+    /// A derivative acts on the next factor, stacked indices come as they are written, and `\delta g^{ij}` is the change
+    /// of the inverse.
     Near,
-    /// All factors after it.
+    /// A derivative acts on all factors after it.
     Far,
+    /// Of stacked indices the lower ones come first where the upper ones are written first, and the other way round.
+    Turned,
+    /// `\delta g^{ij}` is the change of the metric, raised.
+    Raised,
+}
+
+impl Way {
+    /// What a step depends on that holds in one way only, and what helps.
+    pub const fn words(self) -> &'static str {
+        match self {
+            Self::Near | Self::Far => "how far a derivative reaches: put brackets",
+            Self::Turned => "which of stacked indices comes first: put one after the other, as in T^a{}_b",
+            Self::Raised => {
+                "whether \\delta g^{ab} is the change of the inverse metric or that of the metric, raised: name one of them"
+            }
+        }
+    }
 }
 
 /// Why a part could not be lowered: a clause that can stand by itself.
@@ -41,13 +60,13 @@ type Lowered = Result<Expression, Refusal>;
 pub struct Lowering<'s, 'a, 'e> {
     surroundings: &'s mut Surroundings<'a>,
     eyes: &'e Eyes<'e>,
-    reach: Reach,
+    way: Way,
     /// Families of the levelled indices of the statement: what a scalar of geometry belongs to.
     levelled: Vec<usize>,
     /// Letters by their labels.
     letters: Vec<CompactString>,
-    /// Whether the reach of a derivative mattered.
-    pub reach_mattered: bool,
+    /// The other ways in which it could be read.
+    pub others: Vec<Way>,
     /// How many indices are antisymmetrised at once, at most.
     pub antisymmetrised: usize,
     /// Nesting that is left.
@@ -61,14 +80,14 @@ const PERMUTATIONS: usize = 120;
 
 impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
     /// For one statement.
-    pub fn new(surroundings: &'s mut Surroundings<'a>, eyes: &'e Eyes<'e>, reach: Reach) -> Self {
+    pub fn new(surroundings: &'s mut Surroundings<'a>, eyes: &'e Eyes<'e>, way: Way) -> Self {
         Self {
             surroundings,
             eyes,
-            reach,
+            way,
             levelled: Vec::new(),
             letters: Vec::new(),
-            reach_mattered: false,
+            others: Vec::new(),
             antisymmetrised: 0,
             depth: DEPTH,
         }
@@ -183,7 +202,7 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
             if self.is_variation(&made, rest) {
                 let parameter = self.surroundings.parameter(&made.kernel);
                 let (of, taken) = self.one(rest)?;
-                return Ok((Expression::Vary { parameter, of: Box::new(of) }, taken + 1));
+                return Ok((self.varied(parameter, of), taken + 1));
             }
             let (value, arguments) = self.kernel(factor, made, rest)?;
             return Ok((value, arguments + 1));
@@ -237,11 +256,42 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
         if more.iter().all(|factor| matches!(factor.atom, Atom::Number(_))) {
             return Ok((near, taken));
         }
-        self.reach_mattered = true;
-        match self.reach {
-            Reach::Near => Ok((near, taken)),
-            Reach::Far => Ok((self.product(rest.get(..reaches).unwrap_or_default())?, reaches)),
+        self.may_be(Way::Far);
+        match self.way {
+            Way::Near | Way::Turned | Way::Raised => Ok((near, taken)),
+            Way::Far => Ok((self.product(rest.get(..reaches).unwrap_or_default())?, reaches)),
         }
+    }
+
+    /// Notes that something could be read in another way.
+    fn may_be(&mut self, way: Way) {
+        if !self.others.contains(&way) {
+            self.others.push(way);
+        }
+    }
+
+    /// A change to first order; that of an inverse metric may be meant as that of the metric, raised.
+    fn varied(&mut self, parameter: usize, of: Expression) -> Expression {
+        if let Expression::Metric { metric, slots } = &of
+            && slots.iter().all(|index| index.level == Level::Up)
+        {
+            self.may_be(Way::Raised);
+            if self.way == Way::Raised {
+                let lower = slots.map(|slot| {
+                    let filling = Filling::Label(self.fresh());
+                    Index { filling, level: Level::Down, ..slot }
+                });
+                let change = Expression::Metric { metric: *metric, slots: lower };
+                let raised = slots.iter().zip(lower).map(|(slot, lower)| Expression::Metric {
+                    metric: *metric,
+                    slots: [*slot, Index { level: Level::Up, ..lower }],
+                });
+                let mut parts: Vec<Expression> = raised.collect();
+                parts.push(Expression::Vary { parameter, of: Box::new(change) });
+                return Expression::Product(parts);
+            }
+        }
+        Expression::Vary { parameter, of: Box::new(of) }
     }
 
     /// Whether a kernel is declared as a quantity with these slots: `D_i` may be a displacement.

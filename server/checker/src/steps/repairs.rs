@@ -19,7 +19,7 @@ use crate::finding::{Edit, Fix};
 use crate::terms::Eyes;
 
 use super::claims::{is_zero, pair};
-use super::lowering::{Lowering, Reach};
+use super::lowering::{Lowering, Way};
 use super::world::Surroundings;
 use edits::{Change, Kind, Page};
 
@@ -177,26 +177,24 @@ impl Search<'_, '_> {
         mended.count()
     }
 
-    /// Whether two sides are equal, however far derivatives reach.
+    /// Whether two sides are equal, in whatever way they are read.
     fn equal(&mut self, left: &Sum, right: &Sum, look: Look) -> bool {
-        for reach in [Reach::Near, Reach::Far] {
-            let mut lowering = Lowering::new(&mut self.surroundings, self.eyes, reach);
-            let Ok((one, two)) = pair(&mut lowering, left, right) else { return false };
-            let mattered = lowering.reach_mattered;
-            if !(self.holds)(&self.surroundings, &one, &two, look) {
-                return false;
-            }
-            if !mattered {
-                break;
-            }
-        }
-        true
+        let mut lowering = Lowering::new(&mut self.surroundings, self.eyes, Way::Near);
+        let Ok((one, two)) = pair(&mut lowering, left, right) else { return false };
+        let others = lowering.others.clone();
+        // The usual change of an inverse metric is enough.
+        (self.holds)(&self.surroundings, &one, &two, look)
+            && others.into_iter().filter(|way| *way != Way::Raised).all(|way| {
+                let mut lowering = Lowering::new(&mut self.surroundings, self.eyes, way);
+                pair(&mut lowering, left, right)
+                    .is_ok_and(|(one, two)| (self.holds)(&self.surroundings, &one, &two, look))
+            })
     }
 
     /// Whether a new term is another but for a simple number: then that one would have another number instead.
     fn is_alike(&mut self, new: &Sum, other: &Term) -> bool {
         let other = Sum::of(vec![other.clone()]);
-        let mut lowering = Lowering::new(&mut self.surroundings, self.eyes, Reach::Near);
+        let mut lowering = Lowering::new(&mut self.surroundings, self.eyes, Way::Near);
         let Ok((one, two)) = pair(&mut lowering, new, &other) else { return false };
         coefficients::ratios().flat_map(|ratio| [Some(ratio), Rational::ZERO.checked_sub(ratio)]).flatten().any(
             |ratio| {

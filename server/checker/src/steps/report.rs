@@ -8,23 +8,25 @@ use std::hash::{Hash, Hasher};
 use std::time::{Duration, Instant};
 
 use compact_str::CompactString;
-use indexwise_algebra::expression::{Expression, Given, Size, World};
-use indexwise_algebra::verdict::{self, Claim, Limits, Unshown, Verdict};
+use indexwise_algebra::expression::{Expression, Given, MetricValues, Size, World};
+use indexwise_algebra::verdict::{self, Claim, Limits, Reason, Unshown, Verdict};
 use indexwise_grammar::span::Span;
 use indexwise_grammar::tree::Statement;
 use rustc_hash::{FxHashMap, FxHashSet, FxHasher};
 
 use crate::conventions::meanings::Meanings;
-use crate::finding::{Counterexample, Finding, Fix, Related, Severity, StepVerdict};
-use crate::ledger::shown;
+use crate::finding::{Finding, Fix, JudgedStep, Severity, StepVerdict};
 use crate::paper::{Outcome, StepMark, Steps};
 use crate::rules;
 use crate::terms::Eyes;
 
 use super::claims::{Asked, Step, relations_of, steps_of};
-use super::conventions::{self, has_curvature, other_signs};
+use super::conventions::{self, Geometric, exchanged, other_signs};
+use super::lowering::Way;
 use super::repairs::{Broken, Look, Source, repairs};
-use super::standing::{conditioned, doubt, kernels};
+use super::standing::{Doubt, conditioned, doubt, kernels};
+use super::telling::{in_words, is_number, kind, listed, numbers, plain_view, told};
+use super::words::loosening;
 use super::world::Surroundings;
 
 /// Multiplications for the verdict of one step: about a second.
@@ -39,6 +41,8 @@ const LARGEST_DIMENSION: usize = 6;
 
 /// Multiplications for one look at an edit that may mend a step, and for the verdict about it.
 const REPAIR_WORK: [u64; 2] = [2_000_000, 30_000_000];
+/// Why a step is doubted, before the words that say so.
+const SAID: &str = "the text around it speaks of";
 /// Steps of one document that are tried to be mended.
 const MENDED: usize = 30;
 
@@ -48,10 +52,14 @@ pub struct StepJudge<'m> {
     known: FxHashMap<u64, Verdict>,
     /// Kernels that the text states conditions on: they are no arbitrary fields.
     conditioned: FxHashSet<CompactString>,
-    /// The verdicts so far.
+    /// The verdicts so far, counted and one by one.
     pub counts: Steps,
     /// The same one by one, in the order of the text.
     pub marks: Vec<StepMark>,
+    /// Each step with its verdict, whether it is told or not.
+    pub judged: Vec<JudgedStep>,
+    /// Whether the last statement had steps and all of them hold.
+    pub all_hold: bool,
     /// Whether the step judged last may be a law.
     law: bool,
     left: usize,
@@ -67,14 +75,16 @@ pub struct LabelledGiven(Given);
 
 impl<'m> StepJudge<'m> {
     /// For a document with these declarations.
-    pub fn new(meanings: &'m Meanings) -> Self {
-        let surroundings = Surroundings::new(meanings);
+    pub fn new(meanings: &'m Meanings, text: &str) -> Self {
+        let surroundings = Surroundings::new(meanings, text);
         Self {
             surroundings,
             known: FxHashMap::default(),
             conditioned: FxHashSet::default(),
             counts: Steps::default(),
             marks: Vec::new(),
+            judged: Vec::new(),
+            all_hold: false,
             law: false,
             left: STEPS,
             mended: MENDED,
@@ -107,6 +117,9 @@ impl<'m> StepJudge<'m> {
             let before = self.counts;
             let finding = self.step(step, source.text, asked);
             self.mark(step, before, finding.as_ref());
+            if let Some(verdict) = finding.as_ref().and_then(|finding| finding.verdict.clone()) {
+                self.judged.push(JudgedStep { span: step.sign, verdict });
+            }
             told.push(finding);
             // A law is a condition for what comes after it.
             if self.law {
@@ -115,6 +128,7 @@ impl<'m> StepJudge<'m> {
         }
         let held: Vec<(usize, bool)> =
             steps.iter().zip(&told).map(|(step, told)| (step.relation, told.is_none())).collect();
+        self.all_hold = !told.is_empty() && told.iter().all(Option::is_none);
         self.open.clear();
         let mut found: Vec<Finding> = Vec::new();
         for (step, finding) in steps.iter().zip(told) {
@@ -125,8 +139,8 @@ impl<'m> StepJudge<'m> {
             if differs && givens.is_empty() && step.claims.as_ref().is_ok_and(|claims| claims.len() == 1) {
                 self.open.push(step.clone());
             }
-            if let Some(signs) = self.other_signs(step, &finding, source.text) {
-                finding.message.push_str(&format!("; it holds with the other sign {signs}"));
+            if let Some(choice) = self.other_choice(step, &finding, source.text) {
+                finding.message.push_str(&format!("; it holds with {choice}"));
             }
             found.push(finding);
         }
@@ -182,19 +196,22 @@ impl<'m> StepJudge<'m> {
         matches!(verdict::judge(&claim, &limits), Verdict::Holds { undefined, .. } if undefined.is_empty())
     }
 
-    /// Other signs of the curvature with which a step holds that does not under those in force.
-    fn other_signs(&self, step: &Step, finding: &Finding, text: &str) -> Option<&'static str> {
+    /// Another usual choice of signs, or of what an epsilon is, with which a step holds that does not under that in
+    /// force.
+    fn other_choice(&self, step: &Step, finding: &Finding, text: &str) -> Option<String> {
         finding.verdict.as_ref().filter(|verdict| verdict.verdict != "undecided")?;
         let [(left, right)] = step.claims.as_ref().ok()?.as_slice() else { return None };
         let world = &self.surroundings.world;
-        if !has_curvature(world, [left, right]) {
-            return None;
-        }
-        let holds = |signs| {
+        let holds = |left: &Expression, right: &Expression, signs| {
             let dimensions = dimensions(world, &[left, right], step.antisymmetrised);
             self.holds(step, text, left, right, World { signs, dimensions, ..world.clone() })
         };
-        other_signs(world.signs).into_iter().find(|(signs, _)| holds(*signs)).map(|(_, said)| said)
+        let mut choices = other_signs(world.signs, Geometric::of(world, [left, right])).into_iter();
+        if let Some((_, said)) = choices.find(|(signs, _)| holds(left, right, *signs)) {
+            return Some(format!("the other sign {said}"));
+        }
+        let (one, two, said) = exchanged(left, right)?;
+        holds(&one, &two, world.signs).then_some(said)
     }
 
     /// What would make a step hold, if it fails.
@@ -242,9 +259,12 @@ impl<'m> StepJudge<'m> {
         };
         let verdicts: Vec<Verdict> = claims.iter().map(|(left, right)| self.judged(step, text, left, right)).collect();
         let first = verdicts.first()?;
-        if verdicts.iter().any(|other| kind(other) != kind(first)) {
+        // What holds for the change of the inverse metric, as most mean it, holds.
+        let matters = |way: Way| way != Way::Raised || !matches!(first, Verdict::Holds { .. });
+        let mut others = verdicts.iter().skip(1).zip(&step.others).filter(|(_, way)| matters(**way));
+        if let Some((_, way)) = others.find(|(other, _)| kind(other) != kind(first)) {
             self.counts.undecided += 1;
-            let message = "this step holds or not, depending on how far a derivative reaches: put brackets".to_owned();
+            let message = format!("this step holds or not, depending on {}", way.words());
             return Some(told(
                 rules::step_not_shown(step.sign, message),
                 step,
@@ -252,10 +272,21 @@ impl<'m> StepJudge<'m> {
             ));
         }
         let sides = claims.first()?;
-        if let Verdict::Fails(found) = first
-            && let Some((why, names)) = self.doubt(step, sides, asked)
+        let failed = match first {
+            Verdict::Fails(found) => Some(found.dimension),
+            Verdict::NeedsDimension { fails, .. } => fails.first().copied(),
+            _ => None,
+        };
+        if let Some(dimension) = failed
+            && let Some(doubt) = self.doubt(step, text, sides, asked)
+            && (doubt.derived || matches!(first, Verdict::Fails(_)))
         {
-            return Some(self.doubted(step, first, found.dimension, &why, names));
+            return Some(self.doubted(step, first, dimension, doubt));
+        }
+        if matches!(first, Verdict::Fails(_) | Verdict::NeedsDimension { .. })
+            && let Some(minus) = self.other_signature(step, text, sides)
+        {
+            return Some(self.signed(step, first, minus));
         }
         if let Verdict::NeedsDimension { .. } = first
             && asked != Asked::All
@@ -263,18 +294,70 @@ impl<'m> StepJudge<'m> {
         {
             // The value of a scalar tells the dimension that the author means.
             self.counts.holds += 1;
+            let verdict = StepVerdict { verdict: "holds", counterexample: None, ..self.view(step, first) };
+            self.judged.push(JudgedStep { span: step.sign, verdict });
             return None;
         }
         self.finding(step, first)
     }
 
-    fn doubt(&self, step: &Step, sides: &(Expression, Expression), asked: Asked) -> Option<(String, Vec<String>)> {
+    fn doubt(&self, step: &Step, text: &str, sides: &(Expression, Expression), asked: Asked) -> Option<Doubt> {
         let world = &self.surroundings.world;
-        doubt((&sides.0, &sides.1), world, &self.conditioned, step.relation == 0, asked)
+        let doubt = doubt((&sides.0, &sides.1), world, &self.conditioned, step.relation == 0, asked);
+        let doubt = doubt.filter(|doubt| !doubt.may_be_law || !self.is_identity_if_flat(step, text, sides));
+        // Whoever asks for a formula by itself means it as it stands.
+        let loosening = if asked == Asked::All { None } else { loosening(text, step.sign) };
+        let by_words = |phrase: &str| Doubt {
+            why: SAID,
+            names: vec![format!("\u{201c}{phrase}\u{201d}")],
+            may_be_law: false,
+            derived: false,
+        };
+        doubt.or_else(|| loosening.map(by_words))
+    }
+
+    /// Whether the sides are equal and not 0 where all metrics are constant. That was derived, and nobody writes it as a
+    /// law: what is wrong with it is a derivative of the metric that was forgotten.
+    fn is_identity_if_flat(&self, step: &Step, text: &str, (left, right): &(Expression, Expression)) -> bool {
+        let mut world = self.surroundings.world.clone();
+        for metric in world.metrics.iter_mut().filter(|metric| metric.values == MetricValues::Arbitrary) {
+            metric.values = MetricValues::Flat;
+        }
+        world.dimensions = dimensions(&world, &[left, right], step.antisymmetrised);
+        let nothing = Expression::Product(vec![Expression::zero(), left.clone()]);
+        self.holds(step, text, left, right, world.clone()) && !self.holds(step, text, left, &nothing, world)
+    }
+
+    /// How many negative signs a metric has with which a step holds, if nobody says how many there are.
+    fn other_signature(&self, step: &Step, text: &str, (left, right): &(Expression, Expression)) -> Option<usize> {
+        let world = &self.surroundings.world;
+        if !Geometric::of(world, [left, right]).sign {
+            return None;
+        }
+        let dimensions = dimensions(world, &[left, right], step.antisymmetrised);
+        let other = self.surroundings.other_signature(&World { dimensions, ..world.clone() })?;
+        let minus = *self.surroundings.open_signatures.first()?;
+        let minus = other.metrics.get(minus)?.minus;
+        self.holds(step, text, left, right, other).then_some(minus)
+    }
+
+    /// A step that holds in another signature than the one that was taken for want of a declaration.
+    fn signed(&mut self, step: &Step, verdict: &Verdict, minus: usize) -> Finding {
+        self.counts.undecided += 1;
+        let mut view = self.view(step, verdict);
+        view.verdict = "differs";
+        view.assumptions = vec!["the signature of the metric".to_owned()];
+        let (has, other, signs) = if minus == 0 { ("no", "one", "+ + + +") } else { ("one", "none", "- + + +") };
+        let message = format!(
+            "this step holds for a metric with {has} negative sign, but not with {other}: nothing says which, as \
+             g_{{ij}} is the metric, signature {signs} would"
+        );
+        told(rules::step_not_shown(step.sign, message), step, &view)
     }
 
     /// A difference that need not be a mistake.
-    fn doubted(&mut self, step: &Step, verdict: &Verdict, dimension: usize, why: &str, names: Vec<String>) -> Finding {
+    fn doubted(&mut self, step: &Step, verdict: &Verdict, dimension: usize, doubt: Doubt) -> Finding {
+        let Doubt { why, names, .. } = doubt;
         self.counts.undecided += 1;
         self.law = step.relation == 0;
         let mut view = self.view(step, verdict);
@@ -298,7 +381,18 @@ impl<'m> StepJudge<'m> {
         let begun = self.begun;
         let stop = || begun.is_some_and(|begun| begun.elapsed() > DOCUMENT_TIME);
         let limits = Limits { total: STEP_WORK, stop: Some(&stop), ..Limits::seeded(seed) };
-        let verdict = verdict::judge(&Claim { left: left.clone(), right: right.clone(), world }, &limits);
+        let other = self.surroundings.other_signature(&world);
+        let judge = |world| {
+            let claim = Claim { left: left.clone(), right: right.clone(), world };
+            verdict::holds_by_form(&claim).unwrap_or_else(|| verdict::judge(&claim, &limits))
+        };
+        let mut verdict = judge(world);
+        // The root of a determinant may exist with the other sign alone.
+        if verdict == Verdict::Undecided(Reason::Undefined)
+            && let Some(world) = other
+        {
+            verdict = judge(world);
+        }
         if alone {
             self.known.insert(key, verdict.clone());
         }
@@ -310,6 +404,7 @@ impl<'m> StepJudge<'m> {
         match verdict {
             Verdict::Holds { .. } => {
                 self.counts.holds += 1;
+                self.judged.push(JudgedStep { span: step.sign, verdict: view });
                 None
             }
             Verdict::Fails(_) => {
@@ -363,81 +458,15 @@ impl<'m> StepJudge<'m> {
 
     /// The verdict as plain data.
     fn view(&self, step: &Step, verdict: &Verdict) -> StepVerdict {
-        let numbers = |found: &verdict::Counterexample| self.counterexample(step, found);
-        match verdict {
-            Verdict::Fails(found) => StepVerdict {
-                verdict: "fails",
-                fails: vec![found.dimension],
-                counterexample: Some(numbers(found)),
-                ..StepVerdict::default()
-            },
-            Verdict::Differs { dimensions, reason } => StepVerdict {
-                verdict: "differs",
-                fails: dimensions.clone(),
-                assumptions: match reason {
-                    Unshown::Unknown(names) | Unshown::Givens(names) => names.clone(),
-                    Unshown::NoWitness => Vec::new(),
-                },
-                ..StepVerdict::default()
-            },
-            Verdict::NeedsDimension { holds, fails, counterexample, .. } => StepVerdict {
-                verdict: "needs dimension",
-                holds: holds.clone(),
-                fails: fails.clone(),
-                counterexample: counterexample.as_ref().map(numbers),
-                ..StepVerdict::default()
-            },
-            Verdict::Holds { dimensions, .. } => {
-                StepVerdict { verdict: "holds", holds: dimensions.clone(), ..StepVerdict::default() }
-            }
-            Verdict::Undecided(_) => StepVerdict { verdict: "undecided", ..StepVerdict::default() },
-        }
+        let sides = step.claims.as_ref().ok().and_then(|claims| claims.first());
+        let defaults = match verdict {
+            Verdict::Undecided(_) => Vec::new(),
+            _ => sides.map(|(left, right)| self.surroundings.defaults([left, right])).unwrap_or_default(),
+        };
+        let world = &self.surroundings.world;
+        let tried = sides.map(|(left, right)| dimensions(world, &[left, right], step.antisymmetrised));
+        StepVerdict { defaults, tried: tried.unwrap_or_default(), ..plain_view(step, verdict) }
     }
-
-    fn counterexample(&self, step: &Step, found: &verdict::Counterexample) -> Counterexample {
-        let values = found.assignments.iter().map(|one| {
-            let members: Vec<String> = one.component.iter().map(|member| (member + 1).to_string()).collect();
-            let slots = if members.is_empty() { String::new() } else { format!("_{{{}}}", members.join(" ")) };
-            (format!("{}{slots}", shown(&one.name)), one.value.clone())
-        });
-        let letter = |label: u16| step.letters.get(label as usize).map(|letter| shown(letter)).unwrap_or_default();
-        Counterexample {
-            dimension: found.dimension,
-            values: values.collect(),
-            component: found
-                .component
-                .iter()
-                .map(|(label, member)| (letter(*label), (member + 1).to_string()))
-                .collect(),
-            left: found.left.to_string(),
-            right: found.right.to_string(),
-        }
-    }
-}
-
-/// Whether a side is a plain number, perhaps with a sign.
-fn is_number(side: &Expression) -> bool {
-    match side {
-        Expression::Number(_) => true,
-        Expression::Product(parts) => parts.iter().all(|part| matches!(part, Expression::Number(_))),
-        _ => false,
-    }
-}
-
-/// The verdicts that have to agree where a step can be read in two ways.
-fn kind(verdict: &Verdict) -> u8 {
-    match verdict {
-        Verdict::Holds { .. } => 0,
-        Verdict::NeedsDimension { .. } => 1,
-        Verdict::Fails(_) | Verdict::Differs { .. } => 2,
-        Verdict::Undecided(_) => 3,
-    }
-}
-
-fn told(finding: Finding, step: &Step, view: &StepVerdict) -> Finding {
-    let side = |span: Span, message: &str| Related { span, message: message.to_owned() };
-    let related = vec![side(step.sides.0, "the left side"), side(step.sides.1, "the right side")];
-    Finding { related, verdict: Some(view.clone()), ..finding }
 }
 
 /// The hash of a step's text.
@@ -480,22 +509,4 @@ fn dimensions(world: &World, sides: &[&Expression], antisymmetrised: usize) -> V
             all
         }
     }
-}
-
-fn in_words(component: &[(String, String)]) -> String {
-    let list: Vec<String> = component.iter().map(|(letter, value)| format!("{letter} = {value}")).collect();
-    if list.is_empty() { String::new() } else { format!(", for {}", list.join(", ")) }
-}
-
-fn listed(names: &[String]) -> String {
-    let names: Vec<String> = names.iter().map(|name| shown(name)).collect();
-    match names.as_slice() {
-        [] => String::new(),
-        [one] => one.clone(),
-        [rest @ .., last] => format!("{} and {last}", rest.join(", ")),
-    }
-}
-
-fn numbers(list: &[usize]) -> String {
-    listed(&list.iter().map(usize::to_string).collect::<Vec<_>>())
 }

@@ -1,10 +1,11 @@
 //! What a difference between two sides stands on: whether it shows a mistake, or that the text says more than it.
 //!
 //! Equal for arbitrary fields is what a step claims. A law, a gauge or a normalisation is written the same way and is
-//! false for arbitrary fields, as it has to be. Four signs tell them apart, and each of them turns an error into a
+//! false for arbitrary fields, as it has to be. Some signs tell them apart, and each of them turns an error into a
 //! hint: a field that stands on one side only; a condition that the text states about a field; a relation that opens
-//! its statement, which may be a law, unless it has no fields and derives geometry from geometry; givens, which the
-//! algebra knows of. Trap: a side that is multiplied by zero still counts its fields.
+//! its statement, which may be a law, unless it has no fields and derives geometry from geometry, or is an identity
+//! where the metric is constant (`report.rs` asks the algebra for that); words around it that say where it holds
+//! (`words.rs`). Givens the algebra knows of. Trap: a side that is multiplied by zero still counts its fields.
 
 use compact_str::CompactString;
 use indexwise_algebra::expression::{Expression, World};
@@ -76,6 +77,19 @@ impl Content {
     }
 }
 
+/// Why a difference between two sides shows no mistake.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub(super) struct Doubt {
+    /// In words that a list of names goes on with.
+    pub why: &'static str,
+    /// The names.
+    pub names: Vec<String>,
+    /// Whether the relation opens its statement and nothing else is against it: an identity is no law.
+    pub may_be_law: bool,
+    /// Whether derivatives stand in the step: a law for a field, not an identity of algebra.
+    pub derived: bool,
+}
+
 /// Why a difference between two sides shows no mistake; nothing if it does.
 pub(super) fn doubt(
     sides: (&Expression, &Expression),
@@ -83,13 +97,15 @@ pub(super) fn doubt(
     conditioned: &FxHashSet<CompactString>,
     opens: bool,
     asked: Asked,
-) -> Option<(String, Vec<String>)> {
+) -> Option<Doubt> {
     let (left, right) = (Content::of(sides.0, world), Content::of(sides.1, world));
+    let derived = left.derived || right.derived;
+    let doubt = |why, names| Some(Doubt { why, names, may_be_law: false, derived });
     let held: Vec<String> =
         left.fields.iter().chain(&right.fields).filter(|name| conditioned.contains(name.as_str())).cloned().collect();
     let held = once_each(held);
     if !held.is_empty() {
-        return Some(("the text states a condition on".to_owned(), held));
+        return doubt("the text states a condition on", held);
     }
     if asked == Asked::All {
         return None;
@@ -99,13 +115,13 @@ pub(super) fn doubt(
     };
     let lone = once_each([lonely(&left, &right), lonely(&right, &left)].concat());
     if !lone.is_empty() {
-        return Some(("no definition links the sides by".to_owned(), lone));
+        return doubt("no definition links the sides by", lone);
     }
     let fieldless = left.fields.is_empty() && right.fields.is_empty();
-    let derives = left.derived || right.derived || !left.metric && !right.metric;
+    let derives = derived || !left.metric && !right.metric;
     if opens && !(fieldless && derives) {
         let named = once_each([left.fields, right.fields].concat());
-        return Some(("it may be a law for".to_owned(), named));
+        return Some(Doubt { why: "it may be a law for", names: named, may_be_law: true, derived });
     }
     None
 }

@@ -28,8 +28,12 @@ pub struct Surroundings<'a> {
     /// Definitions by kernel and number of slots, the latest last.
     definitions: FxHashMap<(CompactString, usize), usize>,
     parameters: FxHashMap<CompactString, usize>,
-    /// Defaults that a verdict has to name, by the family or kernel that asked for them.
-    pub assumptions: Vec<String>,
+    /// What stands under roots behind a minus sign in the text, without blanks: `g}` of `\sqrt{-g}`.
+    under_roots: Vec<String>,
+    /// Metrics whose signature nobody says.
+    pub open_signatures: Vec<usize>,
+    /// Whether a definition among the conventions chooses signs of the curvature or of the epsilon tensor.
+    pub signs_are_declared: bool,
 }
 
 /// A family: a declared one by its number, else Cartesian or levelled letters.
@@ -45,12 +49,39 @@ fn is_position(kernel: &str, slots: usize) -> bool {
     slots == 1 && matches!(kernel, "x" | "X" | "y" | "r")
 }
 
+/// A number that has a name: constant, but of no value here that a counterexample could give.
+fn is_number_by_custom(kernel: &str, slots: usize) -> bool {
+    slots == 0 && kernel == "\\pi"
+}
+
+/// How a root begins whose radicand is the opposite of something.
+const NEGATED_ROOTS: [&str; 6] = ["\\sqrt{-", "\\sqrt-", "sqrt(-", "sqrt-", "\u{221a}(-", "\u{221a}-"];
+
+/// Signs of a radicand that are kept.
+const RADICAND: usize = 40;
+
+/// What stands in a text under roots behind a minus sign, without blanks and without words for a determinant.
+fn negated_radicands(text: &str) -> Vec<String> {
+    let bare: String = text.chars().filter(|sign| !sign.is_whitespace()).collect();
+    let mut found = Vec::new();
+    for root in NEGATED_ROOTS {
+        for (at, root) in bare.match_indices(root) {
+            let rest = bare.get(at + root.len()..).unwrap_or_default();
+            let rest = ["\\det", "det"].iter().find_map(|word| rest.strip_prefix(word)).unwrap_or(rest);
+            found.push(rest.trim_start_matches(['(', '{']).chars().take(RADICAND).collect());
+        }
+    }
+    found.sort_unstable();
+    found.dedup();
+    found
+}
+
 /// Dimensions that are tried where none is declared.
 const DIMENSIONS: [usize; 3] = [2, 3, 4];
 
 impl<'a> Surroundings<'a> {
-    /// The world of a document's declarations.
-    pub fn new(meanings: &'a Meanings) -> Self {
+    /// The world of a document's declarations; the text tells what its metrics are like where nothing is declared.
+    pub fn new(meanings: &'a Meanings, text: &str) -> Self {
         let world = World { dimensions: DIMENSIONS.to_vec(), ..World::default() };
         Self {
             meanings,
@@ -60,7 +91,9 @@ impl<'a> Surroundings<'a> {
             fields: FxHashMap::default(),
             definitions: FxHashMap::default(),
             parameters: FxHashMap::default(),
-            assumptions: Vec::new(),
+            under_roots: negated_radicands(text),
+            open_signatures: Vec::new(),
+            signs_are_declared: false,
         }
     }
 
@@ -152,13 +185,24 @@ impl<'a> Surroundings<'a> {
         let defined = self.definitions.get(&(name.clone(), 2)).copied();
         let values = match (defined, role) {
             (Some(definition), _) => MetricValues::Defined(definition),
-            (None, Some(Role::Metric { constant: true })) => MetricValues::Constant,
+            (None, Some(Role::Metric { constant: true, .. })) => MetricValues::Constant,
             (None, Some(_)) => MetricValues::Arbitrary,
             (None, None) if is_constant_metric(name) => MetricValues::Flat,
             (None, None) => MetricValues::Arbitrary,
         };
-        // Equations hold for any signature or none; time is counted where the flat metric is meant.
-        let minus = usize::from(name.contains("eta"));
+        let declared = match self.meanings.known(name, 2).and_then(|known| known.role.as_ref()) {
+            Some(Role::Metric { negative, .. }) => *negative,
+            _ => None,
+        };
+        // Time is counted where the flat metric is meant, and where the determinant is negative.
+        let bare: String = name.split_whitespace().collect();
+        let named =
+            |radicand: &String| radicand.strip_prefix(&bare).is_some_and(|rest| !rest.starts_with(char::is_alphabetic));
+        let is_negated = self.under_roots.iter().any(named);
+        let minus = declared.unwrap_or(usize::from(name.contains("eta") || is_negated));
+        if declared.is_none() && !name.contains("eta") {
+            self.open_signatures.push(self.world.metrics.len());
+        }
         self.world.metrics.push(Metric { name: name.to_string(), family, values, minus, varies: true });
         let number = self.world.metrics.len() - 1;
         self.metrics.insert(key, number);
@@ -206,7 +250,7 @@ impl<'a> Surroundings<'a> {
             slots: slots.to_vec(),
             symmetries: exchanges,
             traceless: known.is_some_and(|known| known.traceless),
-            constant: is(Kind::Constant),
+            constant: is(Kind::Constant) || is_number_by_custom(kernel, slots.len()),
             small: is(Kind::Small),
             varies: true,
             known: known.is_some_and(Known::is_settled) && !is_position(kernel, slots.len()),
@@ -215,6 +259,16 @@ impl<'a> Surroundings<'a> {
         let number = self.world.fields.len() - 1;
         self.fields.insert(key, number);
         number
+    }
+
+    /// A world in which metrics whose signature nobody says have the other usual one; nothing if there are none.
+    pub fn other_signature(&self, world: &World) -> Option<World> {
+        let mut other = world.clone();
+        for metric in &self.open_signatures {
+            let metric = other.metrics.get_mut(*metric)?;
+            metric.minus = usize::from(metric.minus == 0);
+        }
+        (!self.open_signatures.is_empty()).then_some(other)
     }
 
     /// The parameter of a variation or of a derivative along a curve.

@@ -7,7 +7,8 @@ law!(each_sign_convention_turns_what_it_should, sign_conventions);
 fn sign_conventions<N: Number>(dimension: usize, minus: usize) {
     let plain = space::<N>(dimension, minus, 2);
     for (riemann_reversed, ricci_reversed) in [(true, false), (false, true), (true, true)] {
-        let signs = Signs { riemann_reversed, ricci_reversed };
+        let epsilon_reversed = riemann_reversed != ricci_reversed;
+        let signs = Signs { riemann_reversed, ricci_reversed, epsilon_reversed };
         let other = Geometry::new(plain.metric().clone(), signs).unwrap();
         let sign = |reversed: bool| if reversed { -N::ONE } else { N::ONE };
         same(other.riemann().unwrap(), &plain.riemann().unwrap().scaled(sign(riemann_reversed)));
@@ -15,6 +16,8 @@ fn sign_conventions<N: Number>(dimension: usize, minus: usize) {
         same(other.ricci().unwrap(), &plain.ricci().unwrap().scaled(ricci_sign));
         same(&other.einstein().unwrap(), &plain.einstein().unwrap().scaled(ricci_sign));
         assert!(other.scalar().unwrap().agrees(&plain.scalar().unwrap().scaled(ricci_sign)).unwrap());
+        same(&other.epsilon_down().unwrap(), &plain.epsilon_down().unwrap().scaled(sign(epsilon_reversed)));
+        same(&other.epsilon_up().unwrap(), &plain.epsilon_up().unwrap().scaled(sign(epsilon_reversed)));
         if dimension > 2 {
             same(&other.weyl().unwrap(), &plain.weyl().unwrap().scaled(sign(riemann_reversed)));
         }

@@ -69,6 +69,25 @@ fn killing_s_second_derivative() {
 }
 
 #[test]
+fn what_is_made_of_the_metric_does_not_change_along_a_killing_field() {
+    for level in ["_", "^"] {
+        let mut world = space(&[2, 3], vec![named("xi", level)]);
+        let half = || ratio(1, 2);
+        let term = |a, b| times([half(), nabla(a, field(0, b))]);
+        world.givens = vec![given("killing", term("_i", "_j"), Some(term("_j", "_i").negated()))];
+        let scalar = || curvature(crate::expression::Curvature::Scalar, "");
+        follows(times([field(0, "^i"), nabla("_i", scalar())]), Expression::zero(), &world);
+        // Not so across the field, and not in these coordinates alone.
+        let mut other = world.clone();
+        other.fields.push(named("v", "^"));
+        let across = verdict(times([field(1, "^i"), nabla("_i", scalar())]), Expression::zero(), &other);
+        assert!(matches!(across, Verdict::Differs { .. }), "{across:?}");
+        let still = verdict(d("_i", field(0, "^j")), times([int(0), delta("_i^j")]), &world);
+        assert!(matches!(still, Verdict::Differs { .. }), "{still:?}");
+    }
+}
+
+#[test]
 fn empty_space() {
     // In three dimensions without Ricci's tensor nothing is curved; in four the divergence of the curvature vanishes.
     let mut world = space(&[3], Vec::new());

@@ -15,7 +15,7 @@ use crate::terms::Piece;
 use crate::terms::symmetries::exchanges;
 use crate::terms::uses::{Origin, Use, UsedSlot};
 
-use super::{Lowered, Lowering, Operator, Refusal, scripts, wrapped};
+use super::{Lowered, Lowering, Operator, Refusal, Way, scripts, wrapped};
 
 impl Lowering<'_, '_, '_> {
     /// Whether a kernel varies what stands after it: a bare `\delta`, or one that is declared a variation.
@@ -207,18 +207,26 @@ impl Lowering<'_, '_, '_> {
         Some(Ok(Expression::Epsilon { metric, slots: slots.to_vec() }))
     }
 
-    fn field(&mut self, made: &Use, own: &[UsedSlot], slots: Vec<Index>) -> Lowered {
+    fn field(&mut self, made: &Use, own: &[UsedSlot], mut slots: Vec<Index>) -> Lowered {
         let meanings = self.surroundings.meanings;
         if meanings.is_kind(&made.kernel, Kind::Matrix) {
             return Err(format!("the matrix {} stands without its indices", shown(&made.kernel)));
         }
-        let natural: Vec<(usize, Level)> = slots.iter().map(|index| (index.family, index.level)).collect();
         let bare = Use { slots: own.to_vec(), ..made.clone() };
         let piece = Piece { made: bare, ..Piece::default() };
-        let symmetries = exchanges(&piece, meanings, self.eyes.customs)
+        let symmetries: Vec<SlotSymmetry> = exchanges(&piece, meanings, self.eyes.customs)
             .into_iter()
             .map(|one| SlotSymmetry { slots: one.images, negative: one.negative })
             .collect();
+        if made.stacked && symmetries.is_empty() {
+            self.may_be(Way::Turned);
+            if self.way == Way::Turned {
+                let first = slots.first().map(|index| index.level);
+                // Those on the level of the first go behind; each level keeps its order.
+                slots.sort_by_key(|index| Some(index.level) == first);
+            }
+        }
+        let natural: Vec<(usize, Level)> = slots.iter().map(|index| (index.family, index.level)).collect();
         let field = self.surroundings.field(&made.kernel, &natural, symmetries);
         let own = self.surroundings.world.fields.get(field).map(|field| field.slots.clone()).unwrap_or_default();
         self.move_slots(&slots, own.into_iter().map(|(_, level)| level));
