@@ -3,4 +3,9 @@
 //! The command line asks the same functions. Nothing here reports a finding; what cannot be answered is said with
 //! its reason.
 
+mod indices;
+mod parts;
+pub mod tokens;
+#[cfg(test)]
+mod trying;
 pub mod write_out;
