@@ -3,9 +3,15 @@
 //! The command line asks the same functions. Nothing here reports a finding; what cannot be answered is said with
 //! its reason.
 
+mod commands;
+pub mod highlight;
 mod indices;
+mod kernels;
+mod labels;
 mod parts;
+pub mod references;
 pub mod tokens;
 #[cfg(test)]
 mod trying;
+mod under;
 pub mod write_out;

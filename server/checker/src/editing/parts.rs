@@ -170,13 +170,27 @@ pub(super) fn head_of(factor: &Factor, kernel: &Kernel, text: &str) -> Option<Sp
     let sign = indexwise_grammar::unicode_sign(letter);
     let spellings = [Some(letter), sign, Some(letter.trim_start_matches('\\'))];
     let own = whole.of(text).trim();
-    let found = spellings.into_iter().flatten().find_map(|name| own.find(name).map(|at| (at, name.len())))?;
+    let found = spellings.into_iter().flatten().find_map(|name| spelled_at(own, name).map(|at| (at, name.len())))?;
     let begin = start as usize + whole.of(text).find(own)?;
     if !own.starts_with('{') && is_balanced(own) {
         return Some(Span::new(begin, begin + own.len()));
     }
     // `{R^i}_{jk}`, `\tensor{R}{^i}`: the letter alone.
     Some(Span::new(begin + found.0, begin + found.0 + found.1))
+}
+
+/// Where a letter is spelled so, by itself: not within the name of a command, as `E` is in `\Err`.
+fn spelled_at(text: &str, name: &str) -> Option<usize> {
+    let is_letter = |sign: char| sign.is_ascii_alphabetic();
+    let whole = |(at, _): &(usize, &str)| {
+        let before = text.get(..*at).unwrap_or_default();
+        let after = text.get(at + name.len()..).unwrap_or_default();
+        if name.starts_with('\\') {
+            return !after.starts_with(is_letter);
+        }
+        !(name.starts_with(is_letter) && before.trim_end_matches(is_letter).ends_with('\\'))
+    };
+    text.match_indices(name).find(whole).map(|(at, _)| at)
 }
 
 fn is_balanced(text: &str) -> bool {
