@@ -10,6 +10,7 @@ mod kernels;
 mod labels;
 mod parts;
 pub mod references;
+pub mod rename;
 pub mod tokens;
 #[cfg(test)]
 mod trying;

@@ -55,15 +55,6 @@ impl Parts {
         let rank = |part: &&Part| (!part.typed, part.span.len());
         self.parts.iter().filter(held).min_by_key(rank).or_else(|| self.parts.iter().filter(ends).min_by_key(rank))
     }
-
-    /// The index at an offset.
-    pub fn index_at(&self, offset: u32) -> Option<(&Part, &Index)> {
-        let part = self.at(offset)?;
-        match part.what {
-            What::Index(number) => self.indices.get(number).map(|index| (part, index)),
-            _ => None,
-        }
-    }
 }
 
 /// Takes a statement of `text` apart.
