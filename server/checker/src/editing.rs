@@ -5,6 +5,7 @@
 
 mod commands;
 pub mod highlight;
+pub mod hover;
 mod indices;
 mod kernels;
 mod labels;

@@ -431,6 +431,11 @@ impl Prices<'_> {
         self.file.written[0] > 0 || self.level_habit(letter) == LevelHabit::InForce
     }
 
+    /// Statements of the file in which a letter is surely an index.
+    pub fn index_votes(&self, letter: &str) -> u32 {
+        self.file.index.get(letter).copied().unwrap_or(0)
+    }
+
     /// What is done about levels in a class of letters.
     pub fn level_habit(&self, letter: &str) -> LevelHabit {
         match self.declared.meanings.levels(letter) {

@@ -34,6 +34,8 @@ pub(super) struct Held {
     /// Where the cursor stands.
     pub part: Part,
     pub index: Index,
+    /// The number of its formula.
+    pub formula: usize,
     /// All its places, those at a sum sign too, in order, each once.
     pub spans: Vec<Span>,
 }
@@ -76,7 +78,7 @@ fn part_at(view: &View, document: usize, offset: u32) -> Option<Under> {
             What::Index(number) => {
                 let Some(index) = parts.indices.get(*number) else { return };
                 let spans = index.spans(asked.sketch);
-                Under::Index(Held { part: part.clone(), index: index.clone(), spans })
+                Under::Index(Held { part: part.clone(), index: index.clone(), formula: asked.number, spans })
             }
             What::Kernel(made) => Under::Kernel(part.clone(), KernelName::of(made)),
             _ => Under::Other(part.clone()),
