@@ -91,8 +91,9 @@ impl Evidence {
 
     /// Sum signs speak against the summation convention, whether the statement balances or not.
     fn vote_sums(&mut self, sketch: &Sketch, by: u32) {
-        for (n, (letter, _)) in sketch.bound.iter().enumerate() {
-            let again = sketch.bound.iter().take(n).any(|(other, _)| other == letter);
+        for (n, bound) in sketch.bound.iter().enumerate() {
+            let letter = &bound.letter;
+            let again = sketch.bound.iter().take(n).any(|other| other.letter == *letter);
             let counts = self.sums.get_mut(class_of(letter) as usize).filter(|_| !again);
             if let (Some(counts), Some(_)) = (counts, sketch.number_of(letter)) {
                 bump(counts, 1, by);

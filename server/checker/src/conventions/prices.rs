@@ -210,6 +210,11 @@ impl Prices<'_> {
         self.file.written[0] > 0 || self.habit(letter) == LevelHabit::InForce
     }
 
+    /// Statements of the file in which a letter is surely an index. No rule may ask for it: it is not noted.
+    pub fn index_votes(&self, letter: &str) -> u32 {
+        self.file.index.get(letter).copied().unwrap_or(0)
+    }
+
     /// What is done about levels in a class of letters.
     pub fn level_habit(&self, letter: &str) -> LevelHabit {
         self.noted(self.habit(letter), |habit| *habit as i64, || Inquiry::Levels(letter.into()))

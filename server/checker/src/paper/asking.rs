@@ -2,11 +2,14 @@
 //!
 //! The view was read and counted as for a check, so that a question sees what the check saw.
 
+use std::borrow::Cow;
+use std::sync::Arc;
+
 use indexwise_grammar::span::Span;
 use indexwise_grammar::tree::{self, Formula};
 
 use crate::conventions::prices::Prices;
-use crate::reading::Reading;
+use crate::reading::{self, Reading};
 use crate::sketch::Sketch;
 use crate::terms::Eyes;
 use crate::terms::symmetries::Customs;
@@ -83,6 +86,22 @@ impl View {
         }
     }
 
+    /// Hands every statement of a document that touches a stretch of the text to a function, in order: those without
+    /// scripts and those that the author says to skip among them, read by the same evidence.
+    pub(crate) fn each_tree(&self, document: usize, within: Span, mut take: impl FnMut(&Asked<'_>)) {
+        let Some((own, mut looker)) = self.documents.get(document).zip(self.looker(document)) else { return };
+        let formulas = &own.read.document.formulas;
+        let first = formulas.partition_point(|formula| formula.span.end < within.start);
+        let touching = formulas.iter().enumerate().skip(first);
+        for (number, _) in touching.take_while(|(_, formula)| formula.span.start <= within.end) {
+            for tree in looker.trees.statements(&own.read, number).to_vec() {
+                if tree.span.start <= within.end && within.start <= tree.span.end {
+                    looker.look_at_tree(number, &tree, &mut take);
+                }
+            }
+        }
+    }
+
     fn looker(&self, document: usize) -> Option<Looker<'_>> {
         let prices = self.prices(document)?;
         let (own, customs) = (self.documents.get(document)?, self.customs(document)?);
@@ -106,6 +125,24 @@ impl Looker<'_> {
         self.trees.statement(&self.own.read, statement.formula, sketch.span, |tree| {
             take(&Asked { formula, number: statement.formula, tree, sketch, reading, prices, eyes })
         })
+    }
+
+    fn look_at_tree(&mut self, number: usize, tree: &tree::Statement, take: &mut impl FnMut(&Asked<'_>)) {
+        let Some(formula) = self.own.read.document.formulas.get(number) else { return };
+        let known = self.own.statements.partition_point(|statement| statement.formula < number);
+        let mut known = self.own.statements.iter().skip(known).take_while(|statement| statement.formula == number);
+        let prices = &self.prices;
+        let (sketch, reading) = match known.find(|statement| statement.span() == tree.span) {
+            Some(statement) => (statement.sketch(), statement.reading.clone()),
+            None => {
+                let sketch = Sketch::of(tree);
+                let scores = sketch.units.iter().map(|unit| prices.score(unit)).collect();
+                let reading = reading::read(&sketch, scores);
+                (Cow::Owned(sketch), Arc::new(reading))
+            }
+        };
+        let eyes = &Eyes::new(&sketch, &reading.choice, prices, self.customs);
+        take(&Asked { formula, number, tree, sketch: &sketch, reading: &reading, prices, eyes });
     }
 }
 
