@@ -147,7 +147,7 @@ impl Search<'_> {
         let difference = self.difference(&point)?;
         let (left, right) = difference.numbers()?;
         let (left, right) = (left.value()?, right.value()?);
-        let (_, place) = difference.place?;
+        let (order, place) = difference.place?;
         if left == right {
             return None;
         }
@@ -156,6 +156,7 @@ impl Search<'_> {
             dimension: self.dimension.dimension,
             assignments: self.assignments(point)?,
             component,
+            order,
             left,
             right,
         })
