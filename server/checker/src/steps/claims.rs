@@ -44,6 +44,10 @@ pub struct Step {
     pub letters: Vec<CompactString>,
     /// How many indices are antisymmetrised at once, at most.
     pub antisymmetrised: usize,
+    /// From which order on terms in small fields are left out, where a side says so.
+    pub neglected: Option<usize>,
+    /// What reaches farther or not, where there is more than one claim.
+    pub reaching: &'static str,
 }
 
 /// The claims of a statement; its definitions go into the surroundings.
@@ -82,6 +86,8 @@ pub fn steps_of(
             claims: Ok(Vec::new()),
             letters: Vec::new(),
             antisymmetrised: 0,
+            neglected: None,
+            reaching: "",
         };
         lower(&mut step, left, right, eyes, surroundings);
         steps.push(step);
@@ -132,20 +138,73 @@ pub fn relations_of(
     out
 }
 
-/// Both sides, in each way in which derivatives may reach.
+/// Both sides, in each way in which they can be read.
 fn lower(step: &mut Step, left: &Sum, right: &Sum, eyes: &Eyes<'_>, surroundings: &mut Surroundings<'_>) {
+    let readings = readings(left, right, eyes, surroundings);
+    step.letters = readings.letters;
+    step.antisymmetrised = readings.antisymmetrised;
+    step.neglected = readings.neglected;
+    step.reaching = readings.reaching;
+    step.claims = readings.claims;
+}
+
+/// To first order it does not matter whether indices are moved by a metric or by what it differs little from.
+const FIRST_NEGLECTED: usize = 2;
+
+/// Two sides in each way in which they can be read.
+#[derive(Debug)]
+pub(super) struct Readings {
+    /// The ways, or why there is none.
+    pub claims: Result<Vec<(Expression, Expression)>, String>,
+    /// The letters of the labels.
+    pub letters: Vec<CompactString>,
+    /// How many indices are antisymmetrised at once, at most.
+    pub antisymmetrised: usize,
+    /// From which order on terms in small fields are left out.
+    pub neglected: Option<usize>,
+    /// What reaches farther or not, where there is more than one way.
+    pub reaching: &'static str,
+}
+
+/// Two sides with derivatives and functions of matrices that reach the next factor, and farther where that matters.
+/// How far a function reaches is often plain from what the sides are: what gives a matrix on one of them alone is no
+/// reading. How far a derivative reaches is not.
+pub(super) fn readings(left: &Sum, right: &Sum, eyes: &Eyes<'_>, surroundings: &mut Surroundings<'_>) -> Readings {
     let mut near = Lowering::new(surroundings, eyes, Reach::Near);
-    let sides = pair(&mut near, left, right);
-    step.letters = near.letters().to_vec();
-    step.antisymmetrised = near.antisymmetrised;
-    let mattered = near.reach_mattered;
-    step.claims = sides.and_then(|sides| {
-        let mut all = vec![sides];
-        if mattered {
-            all.push(pair(&mut Lowering::new(surroundings, eyes, Reach::Far), left, right)?);
+    let first = pair(&mut near, left, right);
+    let mut readings = Readings {
+        claims: Ok(Vec::new()),
+        letters: near.letters().to_vec(),
+        antisymmetrised: near.antisymmetrised,
+        neglected: near.neglected,
+        reaching: if near.function_mattered { "a function or a derivative" } else { "a derivative" },
+    };
+
+    let (derivatives, functions, moved) = (near.reach_mattered, near.function_mattered, near.moved_among_metrics);
+    // What a definition has left out is missing in what follows from it.
+    readings.neglected = least(readings.neglected, surroundings.neglected);
+    let reaches = |mattered: bool| if mattered { &[Reach::Near, Reach::Far][..] } else { &[Reach::Near] };
+    let mut all = vec![first];
+    for derivative in reaches(derivatives) {
+        for function in reaches(functions) {
+            if (*derivative, *function) != (Reach::Near, Reach::Near) {
+                let mut far = Lowering::new(surroundings, eyes, *derivative);
+                far.functions = *function;
+                all.push(pair(&mut far, left, right));
+            }
         }
-        Ok(all)
-    });
+    }
+    if moved && readings.neglected.is_some_and(|order| order > FIRST_NEGLECTED) {
+        readings.claims = Err("indices are moved, but to this order it matters by which metric".to_owned());
+        return readings;
+    }
+    let refused = all.iter().find_map(|one| one.as_ref().err().cloned());
+    let read: Vec<(Expression, Expression)> = all.into_iter().flatten().collect();
+    readings.claims = match refused {
+        Some(reason) if !functions || read.is_empty() => Err(reason),
+        _ => Ok(read),
+    };
+    readings
 }
 
 /// Both sides; a side that is 0 takes the free labels of the other.
@@ -165,8 +224,16 @@ pub(super) fn pair(
             let zero = nothing_of(&left);
             Ok((left, zero))
         }
-        _ => Ok((lowering.side(left)?, lowering.side(right)?)),
+        _ => {
+            let (left, right) = (lowering.side(left)?, lowering.side(right)?);
+            lowering.fitted_sides(left, right)
+        }
     }
+}
+
+/// The lower of two orders.
+fn least(one: Option<usize>, two: Option<usize>) -> Option<usize> {
+    one.into_iter().chain(two).min()
 }
 
 /// Zero with the free labels of an expression.
@@ -198,9 +265,14 @@ fn define(left: &Sum, right: &Sum, eyes: &Eyes<'_>, surroundings: &mut Surroundi
     if !said && (lowering.is_meant(&kernel, &slots) || is_zero(right)) {
         return false;
     }
-    match lowering.survey([left, right]).and_then(|()| lowering.side(right)) {
+    match lowering.survey([left, right]).and_then(|()| lowering.body(right, &slots)) {
         Ok(body) if lowering.uses(&body, &kernel, slots.len()) => return said,
-        Ok(body) => surroundings.define(&kernel, slots, body),
+        Ok(body) => {
+            let neglected = lowering.neglected;
+            surroundings.neglected = least(surroundings.neglected, neglected);
+            surroundings.define(&kernel, slots.clone(), body);
+            surroundings.let_move(&kernel, &slots);
+        }
         // What cannot be lowered defines nothing that could be used: the kernel stays a field of unknown meaning.
         Err(_) => {}
     }

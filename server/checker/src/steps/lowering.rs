@@ -6,6 +6,8 @@
 
 mod calls;
 mod kernels;
+mod matrices;
+mod orders;
 mod scripts;
 
 use compact_str::CompactString;
@@ -48,8 +50,16 @@ pub struct Lowering<'s, 'a, 'e> {
     letters: Vec<CompactString>,
     /// Whether the reach of a derivative mattered.
     pub reach_mattered: bool,
+    /// What a function of matrices takes without brackets: one, or all that follow.
+    pub functions: Reach,
+    /// Whether that mattered.
+    pub function_mattered: bool,
+    /// Whether an index is moved in a family that has more than one metric.
+    pub moved_among_metrics: bool,
     /// How many indices are antisymmetrised at once, at most.
     pub antisymmetrised: usize,
+    /// From which order on terms in small fields are left out, where a term says so.
+    pub neglected: Option<usize>,
     /// Nesting that is left.
     depth: usize,
 }
@@ -69,7 +79,11 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
             levelled: Vec::new(),
             letters: Vec::new(),
             reach_mattered: false,
+            functions: Reach::Near,
+            function_mattered: false,
+            moved_among_metrics: false,
             antisymmetrised: 0,
+            neglected: None,
             depth: DEPTH,
         }
     }
@@ -82,6 +96,7 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
     /// Looks at the sides before they are lowered: which families of levelled indices they have. A letter that no
     /// declaration has, beside letters of declared ranges, may be one of them or not: that is refused.
     pub fn survey(&mut self, sides: [&Sum; 2]) -> Result<(), Refusal> {
+        self.label_matrices();
         let mut declared = None;
         for letter in sides.into_iter().flat_map(|side| super::standing::slot_letters(side, self.eyes)) {
             let known = self.surroundings.meanings.family_number(&letter).is_some();
@@ -112,7 +127,8 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
     /// Lowers a side.
     pub fn side(&mut self, sum: &Sum) -> Lowered {
         self.depth = self.depth.checked_sub(1).ok_or("it is nested too deep")?;
-        let terms: Vec<Expression> = sum.terms.iter().map(|term| self.term(term)).collect::<Result<_, _>>()?;
+        let terms = self.terms(sum)?;
+        let terms = self.fitted(terms)?;
         self.depth += 1;
         match terms.len() {
             0 => Err("a side is empty".to_owned()),
@@ -146,12 +162,16 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
             match factor.joint {
                 Joint::Beside | Joint::Times(ProductSign::Dot | ProductSign::Star) => {
                     let (value, taken) = self.one(rest)?;
+                    if factor.joint != Joint::Beside && self.is_matrix(&value) {
+                        self.no_matrix(&parts, "the product of matrices with a sign between them is not plain")?;
+                    }
                     parts.push(value);
                     at += taken;
                 }
                 Joint::Slash => {
                     let over = parts.pop().ok_or("nothing stands before a slash")?;
                     let (under, taken) = self.one(rest)?;
+                    self.no_matrix(std::slice::from_ref(&under), "a matrix stands below a line")?;
                     parts.push(Expression::Quotient(Box::new(over), Box::new(under)));
                     at += taken;
                 }
@@ -160,6 +180,7 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
                 Joint::Apart => return Err("a list stands in a product".to_owned()),
             }
         }
+        let mut parts = self.joined(parts)?;
         Ok(match parts.len() {
             1 => parts.pop().unwrap_or_else(Expression::zero),
             _ => Expression::Product(parts),
@@ -171,6 +192,9 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
         let Some(factor) = factors.first() else { return Err("a derivative acts on nothing".to_owned()) };
         let rest = factors.get(1..).unwrap_or_default();
         if let Atom::Kernel(kernel) = &factor.atom {
+            if let Some(value) = self.matrix_kernel(factor, kernel)? {
+                return Ok((value, 1 + self.arguments_of_matrix(rest)?));
+            }
             let made = use_of(factor, kernel, self.eyes, false);
             if is_derivative(&made.letter) && !self.is_quantity(&made) {
                 return self.derivative(factor, &made, rest);
@@ -209,6 +233,9 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
             let (value, taken) = self.call(name, factor, rest)?;
             return Ok((value, taken + 1));
         }
+        if let Some(identity) = self.identity_by_face(factor) {
+            return Ok((identity?, 1));
+        }
         Ok((self.atom(factor)?, 1))
     }
 
@@ -226,6 +253,9 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
         let operators: Vec<Operator> =
             made.slots.iter().map(|slot| self.operator(made, slot)).collect::<Result<_, _>>()?;
         let (of, taken) = self.acted_on(rest)?;
+        if operators.iter().any(|operator| matches!(operator, Operator::Covariant(..))) {
+            self.no_matrix(std::slice::from_ref(&of), "the covariant derivative of a matrix is not plain")?;
+        }
         Ok((wrapped(operators, of), taken + 1))
     }
 
@@ -361,6 +391,7 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
             Atom::Number(number) => Expression::Number(exact(number)?),
             Atom::Fraction(fraction) if fraction.kind == FractionKind::Quotient => {
                 let (over, under) = (self.side(&fraction.over)?, self.side(&fraction.under)?);
+                self.no_matrix(std::slice::from_ref(&under), "a matrix stands below a line")?;
                 match (&over, &under) {
                     (Expression::Number(over), Expression::Number(under)) => {
                         Expression::Number(over.checked_div(*under).ok_or("a number is divided by 0")?)
@@ -375,7 +406,9 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
                     Some(degree) => scripts::number_of(degree).ok_or("the degree of a root is no number")?,
                 };
                 let power = degree.inverse().ok_or("a root has the degree 0")?;
-                Expression::Power(Box::new(self.side(&root.body)?), power)
+                let body = self.side(&root.body)?;
+                self.no_matrix(std::slice::from_ref(&body), "a root of a matrix is not evaluated")?;
+                Expression::Power(Box::new(body), power)
             }
             Atom::Wrapped(sum) | Atom::Labelled(sum) if !sum.terms.is_empty() => self.side(sum)?,
             Atom::Big(Big::Integral, _) => return Err("an integral has no value here".to_owned()),
@@ -395,6 +428,9 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
 
     /// A value under the power that stands on its factor.
     fn powered(&mut self, value: Expression, factor: &Factor) -> Lowered {
+        if self.is_matrix(&value) {
+            return self.matrix_in_brackets(value, factor);
+        }
         match scripts::power(factor)? {
             None if factor.scripts.is_empty() => Ok(value),
             None => Err("indices stand on a bracket".to_owned()),
@@ -414,13 +450,24 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
         let [sum] = part.sides.as_slice() else { return Err("a relation stands in brackets".to_owned()) };
         match group.bracket {
             Bracket::Round | Bracket::Square | Bracket::Curly => self.side(sum),
-            Bracket::Bars if group.left == "|" => Ok(Expression::Magnitude(Box::new(self.side(sum)?))),
+            Bracket::Bars if group.left == "|" => {
+                let of = self.side(sum)?;
+                self.no_matrix(std::slice::from_ref(&of), "bars around a matrix are a norm or a determinant")?;
+                Ok(Expression::Magnitude(Box::new(of)))
+            }
             _ => Err("a norm or an average is not evaluated".to_owned()),
         }
     }
 
     /// `[\nabla_a, \nabla_b] V^c`: both orders, on what stands after it.
     fn commutator(&mut self, group: &Group, rest: &[Factor]) -> Result<(Expression, usize), Refusal> {
+        if let [one, two] = group.parts.as_slice()
+            && let ([one], [two]) = (one.sides.as_slice(), two.sides.as_slice())
+            && self.has_matrix(one)
+            && self.has_matrix(two)
+        {
+            return Ok((self.commutator_of_matrices(one, two)?, 0));
+        }
         let operators = |part: &tree::Statement| match part.sides.as_slice() {
             [side] if side.terms.len() == 1 => side.terms.first().map(|term| term.factors.clone()),
             _ => None,

@@ -18,7 +18,7 @@ use indexwise_grammar::write::{Dialect, write_statement, write_sum};
 use crate::finding::{Edit, Fix};
 use crate::terms::Eyes;
 
-use super::claims::{is_zero, pair};
+use super::claims::{is_zero, pair, readings};
 use super::lowering::{Lowering, Reach};
 use super::world::Surroundings;
 use edits::{Change, Kind, Page};
@@ -179,18 +179,10 @@ impl Search<'_, '_> {
 
     /// Whether two sides are equal, however far derivatives reach.
     fn equal(&mut self, left: &Sum, right: &Sum, look: Look) -> bool {
-        for reach in [Reach::Near, Reach::Far] {
-            let mut lowering = Lowering::new(&mut self.surroundings, self.eyes, reach);
-            let Ok((one, two)) = pair(&mut lowering, left, right) else { return false };
-            let mattered = lowering.reach_mattered;
-            if !(self.holds)(&self.surroundings, &one, &two, look) {
-                return false;
-            }
-            if !mattered {
-                break;
-            }
-        }
-        true
+        let readings = readings(left, right, self.eyes, &mut self.surroundings);
+        self.surroundings.world.neglected = readings.neglected;
+        let Ok(claims) = readings.claims else { return false };
+        claims.iter().all(|(one, two)| (self.holds)(&self.surroundings, one, two, look))
     }
 
     /// Whether a new term is another but for a simple number: then that one would have another number instead.

@@ -101,6 +101,7 @@ impl<'m> StepJudge<'m> {
         let mut told: Vec<Option<Finding>> = Vec::with_capacity(steps.len());
         for step in &steps {
             self.law = false;
+            self.surroundings.world.neglected = step.neglected;
             told.push(self.step(step, source.text, asked));
             // A law is a condition for what comes after it.
             if self.law {
@@ -127,6 +128,7 @@ impl<'m> StepJudge<'m> {
         // In a note nobody has asked; an ordinary page is no derivation.
         found.retain(|finding| asked != Asked::Quietly || finding.severity != Severity::Hint);
         self.surroundings.world.givens.clear();
+        self.surroundings.world.neglected = None;
         found
     }
 
@@ -152,6 +154,7 @@ impl<'m> StepJudge<'m> {
         let (left, right) = step.claims.as_ref().ok()?.first()?;
         let mut world = self.surroundings.world.clone();
         world.givens = givens.iter().map(|given| given.0.clone()).collect();
+        world.neglected = step.neglected;
         world.dimensions = dimensions(&world, &[left, right], step.antisymmetrised);
         Some(self.holds(step, text, left, right, world))
     }
@@ -175,7 +178,8 @@ impl<'m> StepJudge<'m> {
         }
         let holds = |signs| {
             let dimensions = dimensions(world, &[left, right], step.antisymmetrised);
-            self.holds(step, text, left, right, World { signs, dimensions, ..world.clone() })
+            let neglected = step.neglected;
+            self.holds(step, text, left, right, World { signs, dimensions, neglected, ..world.clone() })
         };
         other_signs(world.signs).into_iter().find(|(signs, _)| holds(*signs)).map(|(_, said)| said)
     }
@@ -227,7 +231,8 @@ impl<'m> StepJudge<'m> {
         let first = verdicts.first()?;
         if verdicts.iter().any(|other| kind(other) != kind(first)) {
             self.counts.undecided += 1;
-            let message = "this step holds or not, depending on how far a derivative reaches: put brackets".to_owned();
+            let message =
+                format!("this step holds or not, depending on how far {} reaches: put brackets", step.reaching);
             return Some(told(
                 rules::step_not_shown(step.sign, message),
                 step,
@@ -295,10 +300,13 @@ impl<'m> StepJudge<'m> {
                 self.counts.holds += 1;
                 None
             }
-            Verdict::Fails(_) => {
+            Verdict::Fails(found) => {
                 self.counts.fails += 1;
                 let numbers = view.counterexample.clone().unwrap_or_default();
-                let place = in_words(&numbers.component);
+                let mut place = in_words(&numbers.component);
+                if found.order > 0 {
+                    place.push_str(&format!(", in the terms of order {} in what is small", found.order));
+                }
                 let message = format!(
                     "this step does not hold: the left side can be {} where the right side is {}{place}",
                     numbers.left, numbers.right
@@ -378,10 +386,13 @@ impl<'m> StepJudge<'m> {
     }
 
     fn counterexample(&self, step: &Step, found: &verdict::Counterexample) -> Counterexample {
+        let world = &self.surroundings.world;
         let values = found.assignments.iter().map(|one| {
             let members: Vec<String> = one.component.iter().map(|member| (member + 1).to_string()).collect();
             let slots = if members.is_empty() { String::new() } else { format!("_{{{}}}", members.join(" ")) };
-            (format!("{}{slots}", shown(&one.name)), one.value.clone())
+            let value =
+                world.parameters.iter().fold(one.value.clone(), |value, name| value.replace(name, &shown(name)));
+            (format!("{}{slots}", shown(&one.name)), value)
         });
         let letter = |label: u16| step.letters.get(label as usize).map(|letter| shown(letter)).unwrap_or_default();
         Counterexample {

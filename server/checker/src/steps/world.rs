@@ -12,7 +12,7 @@ use indexwise_algebra::sample::SlotSymmetry;
 use indexwise_grammar::conventions::{Bound, Kind, Range};
 use rustc_hash::FxHashMap;
 
-use crate::conventions::built_in::is_constant_metric;
+use crate::conventions::built_in::{is_constant_metric, is_metric_by_custom};
 use crate::conventions::meanings::{Known, Meanings, Role};
 
 /// The world of a document while it is being read.
@@ -28,6 +28,12 @@ pub struct Surroundings<'a> {
     /// Definitions by kernel and number of slots, the latest last.
     definitions: FxHashMap<(CompactString, usize), usize>,
     parameters: FxHashMap<CompactString, usize>,
+    /// From which order in small fields on definitions have left terms out.
+    pub neglected: Option<usize>,
+    /// Whether any kernel is declared a matrix.
+    has_matrices: bool,
+    /// The family of rows and columns, once a matrix has been met.
+    matrices: Option<usize>,
     /// Defaults that a verdict has to name, by the family or kernel that asked for them.
     pub assumptions: Vec<String>,
 }
@@ -60,6 +66,9 @@ impl<'a> Surroundings<'a> {
             fields: FxHashMap::default(),
             definitions: FxHashMap::default(),
             parameters: FxHashMap::default(),
+            neglected: None,
+            has_matrices: meanings.has_kind(Kind::Matrix),
+            matrices: None,
             assumptions: Vec::new(),
         }
     }
@@ -89,6 +98,31 @@ impl<'a> Surroundings<'a> {
         let declared = self.meanings.metrics().into_iter().find_map(|(_, known)| known.slots.first());
         let letter = declared.map_or(CompactString::const_new("\\mu"), |slot| slot.letter.clone());
         self.family(&letter, false)
+    }
+
+    /// Whether any kernel is declared a matrix.
+    pub fn has_matrices(&self) -> bool {
+        self.has_matrices
+    }
+
+    /// The family of rows and columns of matrices: the declared one, else that of levelled letters beside the first
+    /// matrix, else Cartesian.
+    ///
+    /// # Errors
+    /// Several families are declared.
+    pub fn matrix_family(&mut self, beside: &[usize]) -> Result<usize, String> {
+        if let Some(family) = self.matrices {
+            return Ok(family);
+        }
+        let declared = self.meanings.families.first().and_then(|family| family.letters.first().cloned());
+        let family = match (self.meanings.families.len(), declared, beside) {
+            (0, ..) if !beside.is_empty() => beside.first().copied().unwrap_or_default(),
+            (0, ..) => self.family("i", true),
+            (1, Some(letter), _) => self.family(&letter, true),
+            _ => return Err("it is not said which of the declared ranges is that of the matrices".to_owned()),
+        };
+        self.matrices = Some(family);
+        Ok(family)
     }
 
     fn declared_family(&mut self, number: usize) -> Family {
@@ -165,6 +199,39 @@ impl<'a> Surroundings<'a> {
         number
     }
 
+    /// The metric of this name on a family, if it is defined by its components.
+    pub fn defined_metric(&mut self, name: &CompactString, family: usize) -> Option<usize> {
+        let role = self.meanings.known(name, 2).and_then(|known| known.role.as_ref());
+        let plays = matches!(role, Some(Role::Metric { .. })) || role.is_none() && is_metric_by_custom(name);
+        if !plays || !self.is_defined(name, 2) {
+            return None;
+        }
+        let metric = self.metric(name, family);
+        let values = self.world.metrics.get(metric).map(|metric| &metric.values);
+        matches!(values, Some(MetricValues::Defined(_))).then_some(metric)
+    }
+
+    /// Whether a family has more than one metric.
+    pub fn has_metrics(&self, family: usize) -> bool {
+        self.world.metrics.iter().filter(|metric| metric.family == family).count() > 1
+    }
+
+    /// A metric that is defined moves the indices of its family where a flat one did before, that it is defined by.
+    pub fn let_move(&mut self, name: &CompactString, slots: &[Index]) {
+        let [one, two] = slots else { return };
+        if [one.level, two.level] != [Level::Down, Level::Down] || one.family != two.family {
+            return;
+        }
+        let Some(metric) = self.defined_metric(name, one.family) else { return };
+        let metrics = &self.world.metrics;
+        let flat = |metric: usize| metrics.get(metric).is_some_and(|metric| metric.values == MetricValues::Flat);
+        if let Some(family) = self.world.families.get_mut(one.family)
+            && family.metric.is_none_or(flat)
+        {
+            family.metric = Some(metric);
+        }
+    }
+
     /// The definition of a kernel with so many slots, if one stands before.
     pub fn definition(&self, kernel: &CompactString, slots: usize) -> Option<usize> {
         self.definitions.get(&(kernel.clone(), slots)).copied()
@@ -209,7 +276,8 @@ impl<'a> Surroundings<'a> {
             constant: is(Kind::Constant),
             small: is(Kind::Small),
             varies: true,
-            known: known.is_some_and(Known::is_settled) && !is_position(kernel, slots.len()),
+            known: (known.is_some_and(Known::is_settled) || is(Kind::Matrix) && slots.len() == 2)
+                && !is_position(kernel, slots.len()),
         };
         self.world.fields.push(field);
         let number = self.world.fields.len() - 1;
