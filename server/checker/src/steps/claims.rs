@@ -112,10 +112,14 @@ fn loosen(statement: &Statement, eyes: &Eyes<'_>, surroundings: &mut Surrounding
     }
 }
 
-/// A letter that is set again means the later thing from there on.
+/// A letter that is set again means the later thing from there on; with its indices on other levels it is not set but
+/// raised or lowered.
 fn define_again(left: &Sum, right: &Sum, eyes: &Eyes<'_>, surroundings: &mut Surroundings<'_>) {
     let lone = lone_factor(left).and_then(|factor| Lowering::new(surroundings, eyes, Reach::Near).lone_kernel(factor));
-    if lone.is_some_and(|(kernel, slots)| surroundings.is_defined(&kernel, slots.len())) {
+    let Some((kernel, slots)) = lone else { return };
+    let Some(known) = surroundings.definition(&kernel, slots.len()) else { return };
+    let free = surroundings.world.definitions.get(known).map(|known| known.free.as_slice()).unwrap_or_default();
+    if free.iter().zip(&slots).all(|(one, other)| one.level == other.level) {
         define(left, right, eyes, surroundings, true);
     }
 }
@@ -265,6 +269,7 @@ fn define(left: &Sum, right: &Sum, eyes: &Eyes<'_>, surroundings: &mut Surroundi
     if !said && (lowering.is_meant(&kernel, &slots) || is_zero(right)) {
         return false;
     }
+    lowering.defines = true;
     match lowering.survey([left, right]).and_then(|()| lowering.body(right, &slots)) {
         Ok(body) if lowering.uses(&body, &kernel, slots.len()) => return said,
         Ok(body) => {

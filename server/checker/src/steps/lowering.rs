@@ -60,6 +60,8 @@ pub struct Lowering<'s, 'a, 'e> {
     pub antisymmetrised: usize,
     /// From which order on terms in small fields are left out, where a term says so.
     pub neglected: Option<usize>,
+    /// Whether a side is lowered as a definition.
+    pub defines: bool,
     /// Nesting that is left.
     depth: usize,
 }
@@ -84,6 +86,7 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
             moved_among_metrics: false,
             antisymmetrised: 0,
             neglected: None,
+            defines: false,
             depth: DEPTH,
         }
     }

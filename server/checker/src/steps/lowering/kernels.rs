@@ -305,7 +305,7 @@ impl Lowering<'_, '_, '_> {
 }
 
 /// `(r)`: nobody puts a lone letter in brackets to multiply it.
-pub(super) fn is_lone_letter_in_brackets(factor: &Factor) -> bool {
+fn is_lone_letter_in_brackets(factor: &Factor) -> bool {
     let Atom::Group(group) = &factor.atom else { return false };
     let [part] = group.parts.as_slice() else { return false };
     let [side] = part.sides.as_slice() else { return false };

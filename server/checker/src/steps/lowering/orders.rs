@@ -44,7 +44,12 @@ impl Lowering<'_, '_, '_> {
         let Some([one]) = held.map(|sum| sum.terms.as_slice()) else {
             return Err("what terms are left out is not understood".to_owned());
         };
-        one.factors.iter().try_fold(0_usize, |order, factor| Ok(order.saturating_add(self.degree(factor)?))).map(Some)
+        let degree = |order: usize, factor| Ok(order.saturating_add(self.degree(factor)?));
+        match one.factors.iter().try_fold(0, degree) {
+            // A definition keeps what is not known of it.
+            Err(_) if self.defines => Ok(None),
+            other => other.map(Some),
+        }
     }
 
     /// `O` or `\mathcal O`, if nothing else is said of it.

@@ -4,12 +4,11 @@
 //! a matrix is seen from the declarations alone, so that nothing is lowered only to be thrown away.
 
 use indexwise_algebra::expression::Expression;
-use indexwise_grammar::tree::{Atom, Bracket, Factor, Joint, Kernel, Sum};
+use indexwise_grammar::tree::{Atom, Bracket, Factor, Joint, Kernel, Level, Sum};
 
 use crate::conventions::built_in::is_derivative;
 use crate::terms::uses::{Use, use_of};
 
-use super::super::kernels::is_lone_letter_in_brackets;
 use super::super::{Lowering, Reach, Refusal};
 use super::acts;
 
@@ -17,14 +16,22 @@ use super::acts;
 const NESTED: usize = 16;
 
 impl Lowering<'_, '_, '_> {
-    /// How many of the factors after a matrix are what it depends on: `A(t)`.
+    /// How many of the factors after a matrix are what it depends on: `A(t)`. A bracket after a matrix that holds
+    /// neither matrices nor their functions may be an argument as well, `A(0)`, and is refused.
     pub(in super::super) fn arguments_of_matrix(&self, rest: &[Factor]) -> Result<usize, Refusal> {
         let Some(next) = rest.first() else { return Ok(0) };
         if self.is_argument(&Use::default(), next) {
             return Ok(1);
         }
-        let foreign = is_lone_letter_in_brackets(next) && !self.looks_like_matrix(std::slice::from_ref(next), NESTED);
-        if foreign { Err("what a matrix takes in brackets is not understood".to_owned()) } else { Ok(0) }
+        let Atom::Group(group) = &next.atom else { return Ok(0) };
+        let is_function = |factor: &Factor| matches!(factor.atom, Atom::Function(_));
+        let sums = || group.parts.iter().flat_map(|part| &part.sides);
+        let functions = sums().flat_map(|sum| &sum.terms).flat_map(|term| &term.factors).any(is_function);
+        let factor = functions || group.bracket != Bracket::Round || next.joint != Joint::Beside;
+        if factor || sums().any(|sum| self.has_matrix(sum)) {
+            return Ok(0);
+        }
+        Err("what a matrix takes in brackets is not understood".to_owned())
     }
 
     /// Whether the argument of a function begins with a matrix, by its looks.
@@ -44,7 +51,7 @@ impl Lowering<'_, '_, '_> {
         };
         match &factor.atom {
             Atom::Kernel(kernel) => self.is_bare(factor, kernel),
-            Atom::Group(group) if group.bracket != Bracket::Bars => {
+            Atom::Group(group) if group.bracket != Bracket::Bars && !has_indices(factor) => {
                 group.parts.first().and_then(|part| part.sides.first()).is_some_and(|sum| self.holds_matrix(sum, depth))
             }
             _ => false,
@@ -126,4 +133,9 @@ impl Lowering<'_, '_, '_> {
         }
         Err("the argument of a function of matrices is no matrix".to_owned())
     }
+}
+
+/// Whether something stands below a bracket.
+fn has_indices(factor: &Factor) -> bool {
+    factor.scripts.iter().any(|script| script.level == Level::Down)
 }
