@@ -66,8 +66,8 @@ pub struct Lowering<'s, 'a, 'e> {
     depth: usize,
 }
 
-/// Nesting beyond which a side is not lowered.
-const DEPTH: usize = 64;
+/// Nesting beyond which a side is not lowered; a bracket counts twice.
+const DEPTH: usize = 128;
 /// Terms of a bracket's permutations beyond which it is not written out.
 const PERMUTATIONS: usize = 120;
 
@@ -192,6 +192,14 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
 
     /// The first factor with what belongs to it, and how many factors that are.
     fn one(&mut self, factors: &[Factor]) -> Result<(Expression, usize), Refusal> {
+        // What acts on what acts on something is nested as brackets are.
+        self.depth = self.depth.checked_sub(1).ok_or("it is nested too deep")?;
+        let value = self.first_factor(factors);
+        self.depth += 1;
+        value
+    }
+
+    fn first_factor(&mut self, factors: &[Factor]) -> Result<(Expression, usize), Refusal> {
         let Some(factor) = factors.first() else { return Err("a derivative acts on nothing".to_owned()) };
         let rest = factors.get(1..).unwrap_or_default();
         if let Atom::Kernel(kernel) = &factor.atom {

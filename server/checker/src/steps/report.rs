@@ -303,12 +303,13 @@ impl<'m> StepJudge<'m> {
             Verdict::Fails(found) => {
                 self.counts.fails += 1;
                 let numbers = view.counterexample.clone().unwrap_or_default();
-                let mut place = in_words(&numbers.component);
-                if found.order > 0 {
-                    place.push_str(&format!(", in the terms of order {} in what is small", found.order));
-                }
+                let place = in_words(&numbers.component);
+                let order = match found.order {
+                    0 => String::new(),
+                    order => format!(" for terms of order {order} in what is small"),
+                };
                 let message = format!(
-                    "this step does not hold: the left side can be {} where the right side is {}{place}",
+                    "this step does not hold{order}: the left side can be {} where the right side is {}{place}",
                     numbers.left, numbers.right
                 );
                 Some(told(rules::step_fails(step.sign, message), step, &view))

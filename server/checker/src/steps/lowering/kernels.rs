@@ -109,6 +109,8 @@ impl Lowering<'_, '_, '_> {
         let plain = |made: &Use| made.kernel == made.letter;
         Ok(Some(match (made.letter.as_str(), slots) {
             ("\\delta", [one, two]) if plain(made) => Expression::Delta([*one, *two]),
+            // With nothing after it that it could vary.
+            ("\\delta", []) if plain(made) && self.surroundings.has_matrices() => Expression::Delta(self.frame()?),
             (_, [one, two]) if is_metric_by_custom(&made.kernel) => {
                 if one.level == Level::Inert || two.level == Level::Inert {
                     return Err(format!("{} stands with indices that have no levels", shown(&made.kernel)));

@@ -51,6 +51,7 @@ impl Lowering<'_, '_, '_> {
         };
         match &factor.atom {
             Atom::Kernel(kernel) => self.is_bare(factor, kernel),
+            Atom::Function(name) => name == "adj",
             Atom::Group(group) if group.bracket != Bracket::Bars && !has_indices(factor) => {
                 group.parts.first().and_then(|part| part.sides.first()).is_some_and(|sum| self.holds_matrix(sum, depth))
             }
@@ -69,7 +70,8 @@ impl Lowering<'_, '_, '_> {
         // What a function takes is no factor; a derivative sign alone is found out one factor later.
         let mut function = false;
         factors.iter().any(|factor| {
-            let free = !std::mem::replace(&mut function, matches!(factor.atom, Atom::Function(_)));
+            let is_function = matches!(factor.atom, Atom::Function(_));
+            let free = !std::mem::replace(&mut function, is_function) || is_function;
             free && self.looks_like_matrix(std::slice::from_ref(factor), depth)
         })
     }
