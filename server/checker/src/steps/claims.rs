@@ -276,7 +276,7 @@ fn define(left: &Sum, right: &Sum, eyes: &Eyes<'_>, surroundings: &mut Surroundi
             let neglected = lowering.neglected;
             surroundings.neglected = least(surroundings.neglected, neglected);
             surroundings.define(&kernel, slots.clone(), body);
-            surroundings.let_move(&kernel, &slots);
+            surroundings.define_metric(&kernel, &slots);
         }
         // What cannot be lowered defines nothing that could be used: the kernel stays a field of unknown meaning.
         Err(_) => {}

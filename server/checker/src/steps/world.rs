@@ -166,8 +166,10 @@ impl<'a> Surroundings<'a> {
                 letters.contains(&slot.letter) || letters.is_empty() && self.meanings.family(&slot.letter).is_none()
             })
         };
-        let declared =
-            self.meanings.metrics().into_iter().find(|(_, known)| holds(known)).map(|((name, _), _)| name.clone());
+        let declared = self.meanings.metrics().into_iter().filter(|(_, known)| holds(known));
+        // Of several the one that everybody writes, and none that is flat.
+        let rank = |name: &str, known: &Known| (name != "g", known.role == Some(Role::Metric { constant: true }));
+        let declared = declared.min_by_key(|((name, _), known)| rank(name, known)).map(|((name, _), _)| name.clone());
         let name = declared.unwrap_or_else(|| CompactString::const_new("g"));
         let metric = self.metric(&name, family);
         if let Some(family) = self.world.families.get_mut(family) {
@@ -201,9 +203,7 @@ impl<'a> Surroundings<'a> {
 
     /// The metric of this name on a family, if it is defined by its components.
     pub fn defined_metric(&mut self, name: &CompactString, family: usize) -> Option<usize> {
-        let role = self.meanings.known(name, 2).and_then(|known| known.role.as_ref());
-        let plays = matches!(role, Some(Role::Metric { .. })) || role.is_none() && is_metric_by_custom(name);
-        if !plays || !self.is_defined(name, 2) {
+        if !self.plays_metric(name) || !self.is_defined(name, 2) {
             return None;
         }
         let metric = self.metric(name, family);
@@ -216,20 +216,66 @@ impl<'a> Surroundings<'a> {
         self.world.metrics.iter().filter(|metric| metric.family == family).count() > 1
     }
 
-    /// A metric that is defined moves the indices of its family where a flat one did before, that it is defined by.
-    pub fn let_move(&mut self, name: &CompactString, slots: &[Index]) {
+    /// Makes a metric of a kernel that has been defined and plays one; it moves the indices of its family where a flat
+    /// one did before, or, if it is declared, one that is not.
+    pub fn define_metric(&mut self, name: &CompactString, slots: &[Index]) {
         let [one, two] = slots else { return };
-        if [one.level, two.level] != [Level::Down, Level::Down] || one.family != two.family {
+        let levels = [one.level, two.level] == [Level::Down, Level::Down];
+        let Some(definition) = self.definition(name, 2).filter(|_| levels && one.family == two.family) else { return };
+        if !self.plays_metric(name) {
             return;
         }
-        let Some(metric) = self.defined_metric(name, one.family) else { return };
-        let metrics = &self.world.metrics;
-        let flat = |metric: usize| metrics.get(metric).is_some_and(|metric| metric.values == MetricValues::Flat);
-        if let Some(family) = self.world.families.get_mut(one.family)
-            && family.metric.is_none_or(flat)
+        let metric = self.metric(name, one.family);
+        if self.mentions(definition, metric) {
+            return;
+        }
+        if let Some(own) = self.world.metrics.get_mut(metric) {
+            own.values = MetricValues::Defined(definition);
+        }
+        let declared = self.is_declared_metric(name);
+        let gives_way = |other: usize| {
+            let flat = |own: &Metric| own.values == MetricValues::Flat;
+            let lesser = |own: &Metric| declared && !self.is_declared_metric(&own.name);
+            self.world.metrics.get(other).is_some_and(|own| flat(own) || lesser(own))
+        };
+        if self.world.families.get(one.family).is_some_and(|family| family.metric.is_none_or(gives_way))
+            && let Some(family) = self.world.families.get_mut(one.family)
         {
             family.metric = Some(metric);
         }
+    }
+
+    /// Whether a kernel with two slots is a metric, by declaration or by custom.
+    fn plays_metric(&self, name: &str) -> bool {
+        let role = self.meanings.known(name, 2).and_then(|known| known.role.as_ref());
+        self.is_declared_metric(name) || role.is_none() && is_metric_by_custom(name)
+    }
+
+    fn is_declared_metric(&self, name: &str) -> bool {
+        let role = self.meanings.known(name, 2).and_then(|known| known.role.as_ref());
+        matches!(role, Some(Role::Metric { .. }))
+    }
+
+    /// Whether a metric, or what follows from it, stands in a definition.
+    fn mentions(&self, definition: usize, metric: usize) -> bool {
+        let mut pending: Vec<&Expression> =
+            self.world.definitions.get(definition).map(|own| &own.body).into_iter().collect();
+        while let Some(part) = pending.pop() {
+            let own = match part {
+                Expression::Metric { metric, .. }
+                | Expression::Determinant(metric)
+                | Expression::Christoffel { metric, .. }
+                | Expression::Curvature { metric, .. }
+                | Expression::Covariant { metric, .. } => Some(*metric),
+                Expression::Epsilon { metric, .. } => *metric,
+                _ => None,
+            };
+            if own == Some(metric) {
+                return true;
+            }
+            pending.extend(part.parts());
+        }
+        false
     }
 
     /// The definition of a kernel with so many slots, if one stands before.

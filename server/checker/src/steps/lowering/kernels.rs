@@ -163,6 +163,10 @@ impl Lowering<'_, '_, '_> {
             return Err(format!("{} stands with {} indices", shown(&made.kernel), slots.len()));
         };
         let metric = self.surroundings.metric(&made.kernel, one.family);
+        // Indices are moved by the metric that is declared; where none is, by the first that is met.
+        if self.has_metric() {
+            self.surroundings.metric_of(one.family);
+        }
         if let Some(family) = self.surroundings.world.families.get_mut(one.family) {
             family.metric = family.metric.or(Some(metric));
         }

@@ -1,6 +1,8 @@
 //! Matrices without indices and terms that are left out: what is a matrix and what is not, what is refused, and that
 //! a counterexample can be computed again from what is printed.
 
+#![allow(clippy::unwrap_used)]
+
 use super::{document, findings, message};
 
 const MATRICES: &str = "A B C h are matrices; h is small; check this";
@@ -127,4 +129,21 @@ fn a_metric_that_is_defined_has_its_own_inverse() {
     assert_eq!(findings(&text(r"g^{ab} = \eta^{ab} - \eta^{ac} \eta^{bd} h_{cd}")), []);
     assert_eq!(findings(&text(r"g^{ac} g_{cb} = \delta^a_b + O(h^5)")), []);
     assert!(message(&text(r"g^{ab} = \eta^{ab} + \eta^{ac} \eta^{bd} h_{cd}")).contains("for terms of order 1"));
+}
+
+#[test]
+fn indices_are_moved_by_the_metric_that_is_declared() {
+    let text = |declared: &str, definition: &str, later: &str| {
+        let fields = "h_{ab} is symmetric; h_{ab} is small; \\Omega is a scalar";
+        format!("% indexwise: {declared}; {fields}\n$$ {definition} $$\n% indexwise: check this\n$$ {later} $$\n")
+    };
+    let flat = "g_{ab} is the metric; \\eta_{ab} is the metric, constant";
+    let connection = r"\Gamma^c_{ab} = \frac12 \eta^{cd} (\partial_a h_{bd} + \partial_b h_{ad} - \partial_d h_{ab})";
+    assert_eq!(findings(&text(flat, r"g_{ab} := \eta_{ab} + h_{ab}", connection)), []);
+    let whole = r"\Gamma^c_{ab} = \frac12 g^{cd} (\partial_a g_{bd} + \partial_b g_{ad} - \partial_d g_{ab})";
+    assert_eq!(findings(&text("g_{ab} is the metric", r"g_{ab} := \bar g_{ab} + h_{ab}", whole)), []);
+    // What is made of the metric does not take its place.
+    let scaled = r"\tilde g_{ab} := \Omega^2 g_{ab}";
+    assert_eq!(findings(&text("f is a scalar", scaled, r"\tilde g^{ab} = \Omega^{-2} g^{ab}")), []);
+    assert_eq!(findings(&text("f is a scalar", scaled, whole)), []);
 }
