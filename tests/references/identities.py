@@ -154,14 +154,22 @@ def det(M):
     return e('ijk,i,j,k->', E, M[0], M[1], M[2])
 
 
+def adjugate(M):
+    """The transposed matrix of cofactors."""
+    return e('jab,icd,ac,bd->ij', E, E, M, M) * HALF
+
+
+def inverse(M):
+    return adjugate(M) * reciprocal(det(M))
+
+
 class Space:
     """A metric and what follows from it; slots of derivatives come last."""
 
     def __init__(self, g):
         self.g = g
         self.det = det(g)
-        adjugate = e('jab,icd,ac,bd->ij', E, E, g, g) * HALF
-        self.gi = adjugate * reciprocal(self.det)
+        self.gi = adjugate(g) * reciprocal(self.det)
         self.dg = d(g)
         lower = (self.dg + np.transpose(self.dg, (0, 2, 1)) - np.transpose(self.dg, (2, 0, 1))) * HALF
         self.lower = lower
@@ -596,6 +604,126 @@ def variations():
     minus('vary-field', vary(d(A).T - d(A)), nd, nd.T)
 
 
+def without(T):
+    """Without the terms in the parameter."""
+    return in_order(T, 0)
+
+
+def in_order(T, order):
+    """The coefficient of a power of the parameter."""
+    T = np.array(T, dtype=object)
+    out = np.empty(T.shape, dtype=object)
+    for place in np.ndindex(*T.shape):
+        terms = series(T[place]).terms
+        out[place] = Series({m[:3] + (0,): c for m, c in terms.items() if m[3] == order})
+    return out if T.shape else out[()]
+
+
+def up_to(T, order):
+    """All that is compared of a side with terms left out: its coefficients below an order."""
+    return np.stack([np.array(in_order(T, k), dtype=object) for k in range(order)])
+
+
+def logarithm(f):
+    """The logarithm of a series whose value is 1."""
+    assert f.value() == 1
+    h = f - 1
+    return h - h * h * HALF + h * h * h * Fraction(1, 3)
+
+
+def matrices():
+    mul = lambda first, *rest: first if not rest else e('ij,jk->ik', first, mul(*rest))
+    tr = lambda M: e('ii->', M)
+    comm = lambda M, N: mul(M, N) - mul(N, M)
+    A, B, C = field(3, 3), field(3, 3), field(3, 3)
+    Ai, Bi, D = inverse(A), inverse(B), det(A)
+    over = reciprocal(D)
+    both('transpose-of-product', mul(A, B).T, mul(B.T, A.T), mul(A.T, B.T))
+    both('inverse-product', inverse(mul(A, B)), mul(Bi, Ai), mul(Ai, Bi))
+    both('inverse-transpose', inverse(A.T), Ai.T, Ai)
+    both('trace-of-cycle', tr(mul(A, B, C)), tr(mul(B, C, A)), tr(mul(B, A, C)))
+    both('frobenius', tr(mul(A.T, B)), e('ij,ij->', A, B), e('ij,ji->', A, B))
+    both('product-components', mul(A, B.T), e('ik,jk->ij', A, B), e('ik,kj->ij', A, B))
+    both('inverse-components', I, e('ij,jk->ik', Ai, A), e('ij,kj->ik', Ai, A))
+    both('determinant-product', det(mul(A, B)), D * det(B), D * D)
+    both('determinant-inverse', det(Ai), over, -over)
+    both('adjugate', mul(A, adjugate(A)), D * I, 2 * D * I)
+    aA, aB = adjugate(A), adjugate(B)
+    both('adjugate-product', adjugate(mul(A, B)), mul(aB, aA), mul(aA, aB))
+    both('inverse-adjugate', Ai, aA * over, aA)
+    t1, t2, t3 = tr(A), tr(mul(A, A)), tr(mul(A, A, A))
+    both('determinant-traces', 6 * D, t1 * t1 * t1 - 3 * t1 * t2 + 2 * t3, t1 * t1 * t1 - 3 * t1 * t2 + t3)
+    cayley = mul(A, A, A) - t1 * mul(A, A) + HALF * (t1 * t1 - t2) * A
+    zero('cayley-hamilton-bare', cayley - D * I, cayley + D * I)
+    pushed = inverse(I + mul(A, B))
+    both('push-through', mul(pushed, A), mul(A, inverse(I + mul(B, A))), mul(A, pushed))
+    both('sylvester', det(I + mul(A, B)), det(I + mul(B, A)), det(I - mul(B, A)))
+    two = comm(A, comm(B, C)) + comm(B, comm(C, A))
+    zero('commutators', two + comm(C, comm(A, B)), two + comm(C, comm(B, A)))
+    both('trace-of-commutator', tr(mul(A, comm(B, C))), tr(mul(comm(A, B), C)), tr(mul(comm(B, A), C)))
+    N, dA = without(A), vary(A)
+    Ni, DN = inverse(N), det(N)
+    both('jacobi', vary(D), DN * tr(mul(Ni, dA)), DN * tr(mul(N, dA)))
+    right = tr(mul(Ni, dA))
+    both('jacobi-logarithm', vary(D) * reciprocal(DN), right, HALF * right)
+    both('jacobi-adjugate', vary(D), tr(mul(adjugate(N), dA)), tr(mul(adjugate(N).T, dA)))
+    both('jacobi-components', d(D), D * e('ij,jik->k', Ai, d(A)), D * e('ij,ijk->k', Ai, d(A)))
+    right = mul(Ni, dA, Ni)
+    both('vary-inverse-matrix', vary(Ai), -right, right)
+    a = e('ijl,jk->ikl', d(A), B)
+    both('derivative-product', d(mul(A, B)), a + e('ij,jkl->ikl', A, d(B)), a + e('ijl,jk->ikl', d(B), A))
+    both('vary-power', vary(t3), 3 * tr(mul(N, N, dA)), 3 * tr(mul(N, dA)))
+    size = Series({(0, 0, 0, 1): 1})
+    h = without(field(3, 3)) * size
+    both('small-determinant', up_to(det(N + h) - DN, 2), up_to(DN * tr(mul(Ni, h)), 2), up_to(tr(mul(Ni, h)), 2))
+    s1, s2 = tr(h), tr(mul(h, h))
+    both('small-determinant-second', up_to(det(I + h), 3), up_to(1 + s1 + HALF * (s1 * s1 - s2), 3),
+         up_to(1 + s1 + HALF * (s1 * s1 + s2), 3))
+    first, second = Ni - mul(Ni, h, Ni), mul(Ni, h, Ni, h, Ni)
+    both('neumann', up_to(inverse(N + h), 3), up_to(first + second, 3), up_to(first - second, 3))
+    # The logarithm of a quotient: that of the determinant itself stands on both sides.
+    first, second = tr(mul(Ni, h)), HALF * tr(mul(Ni, h, Ni, h))
+    both('small-logarithm', up_to(logarithm(det(N + h) * reciprocal(DN)), 3), up_to(first - second, 3),
+         up_to(first + second, 3))
+
+
+def perturbations():
+    """A flat metric whose determinant is 1, and a perturbation in proportion to the fourth variable."""
+    flat = np.array(np.diag([1, -1, -1]), dtype=object)
+    H = without(field(3, 3))
+    H = H + H.T
+    h = H * Series({(0, 0, 0, 1): 1})
+    s = Space(flat + h)
+    raised = e('ac,bd,cd->ab', flat, flat, h)
+    both('small-inverse-metric', up_to(s.gi, 2), up_to(flat - raised, 2), up_to(flat + raised, 2))
+    square = e('ac,bd,ef,ce,df->ab', flat, flat, flat, h, h)
+    both('small-inverse-second', up_to(s.gi, 3), up_to(flat - raised + square, 3), up_to(flat - raised - square, 3))
+    trace = e('ab,ab->', flat, h)
+    both('small-metric-determinant', up_to(s.det, 2), up_to(1 + trace, 2), up_to(1 - trace, 2))
+    both('small-root', up_to(root(s.det), 2), up_to(1 + HALF * trace, 2), up_to(1 + trace, 2))
+    dh = d(h)  # h_ab with one derivative
+    two, one = e('bda->dab', dh) + e('adb->dab', dh), e('abd->dab', dh)
+    up = lambda lower: up_to(HALF * e('cd,dab->cab', flat, lower), 2)
+    both('small-connection', up_to(s.gam, 2), up(two - one), up(two + one))
+    ddh = d(dh)
+    three = e('adbc->abcd', ddh) + e('bcad->abcd', ddh) - e('bdac->abcd', ddh)
+    last = e('acbd->abcd', ddh)
+    both('small-riemann', up_to(s.low, 2), up_to(HALF * (three - last), 2), up_to(HALF * (three + last), 2))
+    three = e('cd,bdac->ab', flat, ddh) + e('cd,adbc->ab', flat, ddh) - e('cd,abcd->ab', flat, ddh)
+    last = e('cd,cdab->ab', flat, ddh)
+    both('small-ricci', up_to(s.ricci, 2), up_to(HALF * (three - last), 2), up_to(HALF * (three + last), 2))
+    a, b = e('ac,bd,cdab->', flat, flat, ddh), e('ab,cd,abcd->', flat, flat, ddh)
+    both('small-scalar', up_to(s.scalar, 2), up_to(a - b, 2), up_to(a + b, 2))
+
+
+def adjugates_agree_with_sympy():
+    """At singular matrices too, by SymPy's plain cofactors."""
+    for M in ([[1, 2, 3], [2, 4, 6], [0, 1, 5]], [[1, 2, 3], [2, 4, 6], [-1, -2, -3]], [[2, 1, 0], [0, 3, 4], [5, 0, 1]]):
+        expected = sympy.Matrix(M).adjugate()
+        found = adjugate(np.array(M, dtype=object))
+        assert all(found[place] == int(expected[place]) for place in np.ndindex(3, 3)), M
+
+
 def series_agree_with_sympy():
     """The inverse of a metric, its determinant's root and derivatives of both, by SymPy's plain matrices."""
     x = sympy.symbols('x y z')
@@ -629,8 +757,9 @@ def labels(folder):
 def main():
     folder = Path(sys.argv[1] if len(sys.argv) > 1 else Path(__file__).parent.parent / 'identities')
     for group in (vector_identities, tensor_algebra, determinants, geometry, curvature, elasticity, electrodynamics,
-                  variations):
+                  variations, matrices, perturbations):
         group()
+    adjugates_agree_with_sympy()
     series_agree_with_sympy()
     wrong = 0
     for kind, own in (('identity', labels(folder)), ('corrupted identity', labels(folder / 'corrupted'))):

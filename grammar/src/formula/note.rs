@@ -220,6 +220,11 @@ impl<'a> Writer<'_, 'a> {
         }
         self.out.push(made(TokenKind::BraceOpen, "{", mark.span));
         let mut end = mark.span;
+        if let Some(minus) = self.minus_of_power(mark) {
+            self.out.push(minus);
+            self.at += 1;
+            end = minus.span;
+        }
         while let Some(token) = self.tokens.get(self.at).copied().filter(|token| token.span.start == end.end) {
             if !self.belongs(token) {
                 break;
@@ -234,6 +239,14 @@ impl<'a> Writer<'_, 'a> {
         }
         let close = Span { start: end.end, end: end.end };
         self.out.push(made(TokenKind::BraceClose, "}", close));
+    }
+
+    /// The sign in `A^-1`, `A^-T`: nobody subtracts from a sign that has nothing above it.
+    fn minus_of_power(&self, mark: Token<'a>) -> Option<Token<'a>> {
+        let [minus, next, ..] = self.tokens.get(self.at..)? else { return None };
+        let close = minus.span.start == mark.span.end && next.span.start == minus.span.end;
+        let power = matches!(next.kind, TokenKind::Number | TokenKind::Letter);
+        (mark.kind == TokenKind::Up && minus.text == "-" && close && power).then_some(*minus)
     }
 
     /// Whether a token goes on with a script: letters, numbers, brackets of symmetry; a comma or a semicolon only

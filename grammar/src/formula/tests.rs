@@ -90,6 +90,7 @@ fn statements_and_rows() {
 #[test]
 fn words_and_functions() {
     reads(r"\det g_{ij} \operatorname{tr}(K) \mathrm{d}x", r"fn:det g_{i j} fn:tr Round(K) d x");
+    reads(r"\mathop{\mathrm{tr}} K", r"fn:tr K");
     reads(r"det \begin{bmatrix} a \end{bmatrix}", "fn:det matrix");
     reads(r"\text{Area} = 2", "“Area” Equal 2");
     reads(r"a \SI{3}{\metre}", r"a \SI");

@@ -179,6 +179,15 @@ pub struct World {
     pub dimensions: Vec<usize>,
     /// What is known besides, imposed on every draw.
     pub givens: Vec<Given>,
+    /// From which order on terms in small fields are left out; from the second on if nothing is said.
+    pub neglected: Option<usize>,
+}
+
+impl World {
+    /// The order in small fields up to which sides are compared.
+    pub fn order_compared(&self) -> usize {
+        self.neglected.map_or(1, |order| order.saturating_sub(1))
+    }
 }
 
 /// An index family.
@@ -329,6 +338,42 @@ impl Expression {
         }
     }
 
+    /// Puts a label in the place of another where it is free: not in the arguments of scalars, whose labels are their
+    /// own. The caller sees to it that no product inside sums over either.
+    pub fn rename_free(&mut self, from: Label, to: Label) {
+        let mut pending = vec![self];
+        while let Some(part) = pending.pop() {
+            for index in part.slots_mut() {
+                if index.filling == Filling::Label(from) {
+                    index.filling = Filling::Label(to);
+                }
+            }
+            match part {
+                Self::Sum(parts) | Self::Product(parts) => pending.extend(parts),
+                Self::Quotient(over, _) => pending.push(over),
+                Self::Partial(_, of) | Self::Covariant { of, .. } | Self::Vary { of, .. } => pending.push(of),
+                _ => {}
+            }
+        }
+    }
+
+    /// The slots of the node itself, those of an inverse or an adjugate among them.
+    fn slots_mut(&mut self) -> &mut [Index] {
+        match self {
+            Self::Field { slots, .. }
+            | Self::Defined { slots, .. }
+            | Self::Epsilon { slots, .. }
+            | Self::Curvature { slots, .. } => slots,
+            Self::Delta(slots)
+            | Self::Metric { slots, .. }
+            | Self::Inverse(_, _, slots)
+            | Self::Adjugate(_, _, slots) => slots,
+            Self::Christoffel { slots, .. } => slots,
+            Self::Coordinate(index) | Self::Partial(index, _) | Self::Covariant { index, .. } => slice::from_mut(index),
+            _ => &mut [],
+        }
+    }
+
     /// The parts of which it is made.
     pub fn parts(&self) -> Vec<&Self> {
         match self {
@@ -368,5 +413,18 @@ mod tests {
         assert_eq!(free(&field(&[1, 1])), []);
         let inverse = Expression::Inverse(Box::new(field(&[1, 2])), [1, 2], [index(4), index(5)]);
         assert_eq!(free(&inverse), labels(&[4, 5]));
+    }
+
+    #[test]
+    fn a_label_is_renamed_where_it_is_free() {
+        let inverse = |row| Expression::Inverse(Box::new(field(&[1, 2])), [1, 2], [index(row), index(2)]);
+        let determinant = Expression::Det(Box::new(field(&[1, 2])), [1, 2]);
+        let whole = |row| {
+            let derivative = Expression::Partial(index(row), Box::new(determinant.clone()));
+            Expression::Sum(vec![Expression::Product(vec![determinant.clone(), inverse(row)]), derivative])
+        };
+        let mut renamed = whole(1);
+        renamed.rename_free(1, 7);
+        assert_eq!(renamed, whole(7));
     }
 }

@@ -159,6 +159,8 @@ pub struct Counterexample {
     pub variables: Vec<String>,
     /// Which component differs: the members that the free labels take, zero-based.
     pub component: Vec<(crate::contraction::Label, usize)>,
+    /// The order in the small fields of the terms that differ; 0 without such fields.
+    pub order: usize,
     /// The left side there.
     pub left: Rational,
     /// The right side there.

@@ -16,6 +16,7 @@ pub mod uses;
 use std::cell::Cell;
 
 use compact_str::CompactString;
+use indexwise_grammar::conventions::Kind;
 use indexwise_grammar::span::Span;
 use indexwise_grammar::tree::Statement;
 use rustc_hash::{FxHashMap, FxHashSet};
@@ -55,9 +56,16 @@ const FACTORS: u32 = 20_000;
 impl<'a> Eyes<'a> {
     /// The eyes of a reading.
     pub fn new(sketch: &Sketch, choice: &Choice, prices: &Prices<'a>, customs: symmetries::Customs) -> Self {
-        let flat = |letter: &&CompactString| prices.level_habit(letter) == LevelHabit::Cartesian;
+        let meanings = &prices.declared.meanings;
+        // Where there are matrices and nothing that could move an index, levels that are not kept mean nothing.
+        let of_matrices = meanings.has_kind(Kind::Matrix) && meanings.metrics().is_empty();
+        let flat = |letter: &&CompactString| match prices.level_habit(letter) {
+            LevelHabit::Cartesian => true,
+            LevelHabit::Unclear => of_matrices,
+            LevelHabit::InForce => false,
+        };
         let mut eyes = Self {
-            meanings: &prices.declared.meanings,
+            meanings,
             customs,
             index: FxHashMap::default(),
             anywhere: FxHashMap::default(),

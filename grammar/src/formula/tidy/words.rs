@@ -6,6 +6,9 @@ use crate::vocabulary::{Class, class};
 
 use super::{Cursor, Kind, tidy};
 
+/// Faces in which the name of an operator may be set: `\mathop{\mathrm{tr}}`.
+const FACES: &[&str] = &["\\mathrm", "\\rm", "\\text", "\\mathsf"];
+
 /// Words that stand between two statements.
 const LINK_WORDS: &[&str] = &[
     "and",
@@ -66,8 +69,10 @@ impl<'a> Cursor<'_, 'a> {
         if self.peek().is_some_and(|next| next.text == "*") {
             self.at += 1;
         }
-        let end = self.peek().map_or(token.span, |next| next.span);
-        let name = self.group_words();
+        let words = self.group_words();
+        let last = self.at.checked_sub(1).and_then(|at| self.tokens.get(at));
+        let end = last.map_or(token.span, |last| last.span);
+        let name = FACES.iter().find_map(|face| words.strip_prefix(face)).unwrap_or(&words);
         self.push(Kind::Function, name, token.span.join(end));
     }
 

@@ -51,14 +51,15 @@ impl Needs {
         needs.parameters = parameters;
         needs.sized = world.fields.iter().zip(&needs.fields).any(|(field, need)| field.small && need.is_some());
         if needs.sized {
-            needs.one_small_order_more();
+            // The size itself takes an order, even where sides are compared without it.
+            needs.more_small_orders(world.order_compared().max(1));
         }
         Ok(needs)
     }
 
-    fn one_small_order_more(&mut self) {
+    fn more_small_orders(&mut self, more: usize) {
         let all = self.fields.iter_mut().chain(&mut self.metrics).chain(&mut self.definitions).flatten();
-        all.chain([&mut self.top]).for_each(|order| order.small += 1);
+        all.chain([&mut self.top]).for_each(|order| order.small += more);
     }
 }
 

@@ -151,7 +151,8 @@ impl<'a> Dimension<'a> {
         let point = Point::new(world, self.families.clone(), self.needs, ring, sampled, self.meter);
         point.prepare();
         let Some((left, right)) = sides(left, right, &point)? else { return Ok(None) };
-        Difference::new(left, right, self.needs.sized).map(Some)
+        let orders = if self.needs.sized { world.order_compared() } else { 0 };
+        Difference::new(left, right, orders).map(Some)
     }
 
     /// Each draw errs with a chance of at most `degree/p`, divided by the share of points that are defined.
@@ -215,22 +216,25 @@ pub(super) fn sides<N: Number>(
 pub(super) struct Difference<N: Number> {
     /// What the slots are.
     pub slots: Vec<crate::evaluation::Slot>,
-    /// The sides at the point; of a claim about small fields, first without them, then the terms of first order.
+    /// The sides at the point; of a claim about small fields, first without them, then the coefficients of the powers of
+    /// their common size, up to the order that is compared.
     sides: Vec<(Tensor<N>, Tensor<N>)>,
     /// Which of the sides, and which component, differ first.
     pub place: Option<(usize, Vec<usize>)>,
 }
 
 impl<N: Number> Difference<N> {
-    fn new(left: Value<N>, right: Value<N>, sized: bool) -> Outcome<Self> {
+    fn new(left: Value<N>, right: Value<N>, orders: usize) -> Outcome<Self> {
         let slots = left.slots;
-        let (left, right) = (left.tensor, right.tensor);
-        let mut sides = Vec::new();
-        if sized {
+        let mut last = (left.tensor, right.tensor);
+        let mut sides = Vec::with_capacity(orders + 1);
+        for order in (1..).take(orders) {
             let size = Variable::Small(0);
-            sides.push((left.derivative(size)?, right.derivative(size)?));
+            let share = N::from_integer(order).inverse().ok_or(Trouble::ZeroDivisor)?;
+            let next = (last.0.derivative(size)?.scaled(share), last.1.derivative(size)?.scaled(share));
+            sides.push(std::mem::replace(&mut last, next));
         }
-        sides.insert(0, (left, right));
+        sides.push(last);
         let mut place = None;
         for (number, (left, right)) in sides.iter().enumerate() {
             if let Some(component) = left.differs_at(right)? {

@@ -77,7 +77,11 @@ pub(super) fn bound(
         bounds.definitions.push(degree);
     }
     let (left, right) = (bounds.of(left), bounds.of(right));
-    let difference = left.plus(right);
+    let mut difference = left.plus(right);
+    if needs.sized {
+        // Each order in the size of small fields is a derivative more.
+        difference = (0..world.order_compared()).fold(difference, |degree, _| degree.derived());
+    }
     difference.upper.saturating_mul(bounds.roots).max(1)
 }
 

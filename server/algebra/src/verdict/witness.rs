@@ -149,7 +149,7 @@ impl Search<'_> {
         let difference = self.difference(&point)?;
         let (left, right) = difference.numbers()?;
         let (left, right) = (left.value()?, right.value()?);
-        let (_, place) = difference.place?;
+        let (order, place) = difference.place?;
         if left == right {
             return None;
         }
@@ -160,6 +160,7 @@ impl Search<'_> {
             variables: self.variables(),
             assignments: self.assignments(point)?,
             component,
+            order,
             left,
             right,
         })

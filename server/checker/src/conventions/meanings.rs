@@ -184,6 +184,11 @@ impl Meanings {
         self.kernels.iter().any(|((name, _), known)| name == kernel && known.kinds.contains(&kind))
     }
 
+    /// Whether any kernel is declared to be of a kind.
+    pub fn has_kind(&self, kind: Kind) -> bool {
+        self.kernels.values().any(|known| known.kinds.contains(&kind))
+    }
+
     /// Whether a letter in a script names a component by declaration and is no index.
     pub fn is_component(&self, letter: &str) -> bool {
         self.family_number(letter).is_none() && self.components.iter().any(|name| name == letter)

@@ -46,6 +46,8 @@ pub struct Step {
     pub letters: Vec<CompactString>,
     /// How many indices are antisymmetrised at once, at most.
     pub antisymmetrised: usize,
+    /// From which order on terms in small fields are left out, where a side says so.
+    pub neglected: Option<usize>,
 }
 
 /// The claims of a statement; its definitions go into the surroundings.
@@ -85,6 +87,7 @@ pub fn steps_of(
             others: Vec::new(),
             letters: Vec::new(),
             antisymmetrised: 0,
+            neglected: None,
         };
         lower(&mut step, left, right, eyes, surroundings);
         steps.push(step);
@@ -109,10 +112,14 @@ fn loosen(statement: &Statement, eyes: &Eyes<'_>, surroundings: &mut Surrounding
     }
 }
 
-/// A letter that is set again means the later thing from there on.
+/// A letter that is set again means the later thing from there on; with its indices on other levels it is not set but
+/// raised or lowered.
 fn define_again(left: &Sum, right: &Sum, eyes: &Eyes<'_>, surroundings: &mut Surroundings<'_>) {
     let lone = lone_factor(left).and_then(|factor| Lowering::new(surroundings, eyes, Way::Near).lone_kernel(factor));
-    if lone.is_some_and(|(kernel, slots)| surroundings.is_defined(&kernel, slots.len())) {
+    let Some((kernel, slots)) = lone else { return };
+    let Some(known) = surroundings.definition(&kernel, slots.len()) else { return };
+    let free = surroundings.world.definitions.get(known).map(|known| known.free.as_slice()).unwrap_or_default();
+    if free.iter().zip(&slots).all(|(one, other)| one.level == other.level) {
         define(left, right, eyes, surroundings, true);
     }
 }
@@ -135,20 +142,71 @@ pub fn relations_of(
     out
 }
 
-/// Both sides, in each way in which they may be read.
+/// Both sides, in each way in which they can be read.
 fn lower(step: &mut Step, left: &Sum, right: &Sum, eyes: &Eyes<'_>, surroundings: &mut Surroundings<'_>) {
+    let readings = readings(left, right, eyes, surroundings);
+    step.letters = readings.letters;
+    step.antisymmetrised = readings.antisymmetrised;
+    step.neglected = readings.neglected;
+    step.others = readings.others;
+    step.claims = readings.claims;
+}
+
+/// To first order it does not matter whether indices are moved by a metric or by what it differs little from.
+const FIRST_NEGLECTED: usize = 2;
+
+/// Two sides in each way in which they can be read.
+#[derive(Debug)]
+pub(super) struct Readings {
+    /// The sides in the likeliest way and in the others, or why there is none.
+    pub claims: Result<Vec<(Expression, Expression)>, String>,
+    /// The other ways, in the order of the claims after the first.
+    pub others: Vec<Way>,
+    /// The letters of the labels.
+    pub letters: Vec<CompactString>,
+    /// How many indices are antisymmetrised at once, at most.
+    pub antisymmetrised: usize,
+    /// From which order on terms in small fields are left out.
+    pub neglected: Option<usize>,
+}
+
+/// Two sides with derivatives and functions of matrices that reach the next factor, and in the other ways where they
+/// matter. How far a function reaches is often plain from what the sides are: what gives a matrix on one of them alone
+/// is no reading, and then another takes its place. With all other ways a refusal is one.
+pub(super) fn readings(left: &Sum, right: &Sum, eyes: &Eyes<'_>, surroundings: &mut Surroundings<'_>) -> Readings {
     let mut near = Lowering::new(surroundings, eyes, Way::Near);
-    let sides = pair(&mut near, left, right);
-    step.letters = near.letters().to_vec();
-    step.antisymmetrised = near.antisymmetrised;
-    step.others = near.others.clone();
-    step.claims = sides.and_then(|sides| {
-        let mut all = vec![sides];
-        for way in &step.others {
-            all.push(pair(&mut Lowering::new(surroundings, eyes, *way), left, right)?);
+    let first = pair(&mut near, left, right);
+    let (mut ways, moved) = (near.others.clone(), near.moved_among_metrics);
+    let (letters, antisymmetrised) = (near.letters().to_vec(), near.antisymmetrised);
+    // What a definition has left out is missing in what follows from it.
+    let neglected = least(near.neglected, surroundings.neglected);
+    let functions = ways.contains(&Way::Wide);
+    if functions && ways.contains(&Way::Far) {
+        ways.push(Way::FarAndWide);
+    }
+    let mut readings = Readings { claims: Ok(Vec::new()), others: Vec::new(), letters, antisymmetrised, neglected };
+    if moved && neglected.is_some_and(|order| order > FIRST_NEGLECTED) {
+        readings.claims = Err("indices are moved, but to this order it matters by which metric".to_owned());
+        return readings;
+    }
+    let mut read = Vec::new();
+    let mut refused = None;
+    let others = ways.into_iter().map(|way| (way, pair(&mut Lowering::new(surroundings, eyes, way), left, right)));
+    for (way, sides) in std::iter::once((Way::Near, first)).chain(others) {
+        match sides {
+            Ok(sides) => read.push((way, sides)),
+            Err(reason) => {
+                refused.get_or_insert(reason);
+            }
         }
-        Ok(all)
-    });
+    }
+    let (ways, claims): (Vec<Way>, Vec<_>) = read.into_iter().unzip();
+    readings.others = ways.into_iter().skip(1).collect();
+    readings.claims = match refused {
+        Some(reason) if !functions || claims.is_empty() => Err(reason),
+        _ => Ok(claims),
+    };
+    readings
 }
 
 /// Both sides; a side that is 0 takes the free labels of the other.
@@ -168,8 +226,16 @@ pub(super) fn pair(
             let zero = nothing_of(&left);
             Ok((left, zero))
         }
-        _ => Ok((lowering.side(left)?, lowering.side(right)?)),
+        _ => {
+            let (left, right) = (lowering.side(left)?, lowering.side(right)?);
+            lowering.fitted_sides(left, right)
+        }
     }
+}
+
+/// The lower of two orders.
+fn least(one: Option<usize>, two: Option<usize>) -> Option<usize> {
+    one.into_iter().chain(two).min()
 }
 
 /// Zero with the free labels of an expression.
@@ -201,9 +267,15 @@ fn define(left: &Sum, right: &Sum, eyes: &Eyes<'_>, surroundings: &mut Surroundi
     if !said && (lowering.is_meant(&kernel, &slots) || is_zero(right)) {
         return false;
     }
-    match lowering.survey([left, right]).and_then(|()| lowering.side(right)) {
+    lowering.defines = true;
+    match lowering.survey([left, right]).and_then(|()| lowering.body(right, &slots)) {
         Ok(body) if lowering.uses(&body, &kernel, slots.len()) => return said,
-        Ok(body) => surroundings.define(&kernel, slots, body),
+        Ok(body) => {
+            let neglected = lowering.neglected;
+            surroundings.neglected = least(surroundings.neglected, neglected);
+            surroundings.define(&kernel, slots.clone(), body);
+            surroundings.define_metric(&kernel, &slots);
+        }
         // What cannot be lowered defines nothing that could be used: the kernel stays a field of unknown meaning.
         Err(_) => {}
     }

@@ -7,7 +7,10 @@
 
 mod calls;
 mod kernels;
+mod matrices;
+mod orders;
 mod scripts;
+mod ways;
 
 use compact_str::CompactString;
 use indexwise_algebra::expression::{Expression, Filling, Index};
@@ -24,33 +27,7 @@ use crate::terms::Eyes;
 use crate::terms::uses::{self, Use, UsedSlot, use_of};
 
 use super::world::Surroundings;
-
-/// How what is not written is read.
-#[derive(Clone, Copy, Debug, PartialEq, Eq)]
-pub enum Way {
-    /// A derivative acts on the next factor, stacked indices come as they are written, and `\delta g^{ij}` is the change
-    /// of the inverse.
-    Near,
-    /// A derivative acts on all factors after it.
-    Far,
-    /// Of stacked indices the lower ones come first where the upper ones are written first, and the other way round.
-    Turned,
-    /// `\delta g^{ij}` is the change of the metric, raised.
-    Raised,
-}
-
-impl Way {
-    /// What a step depends on that holds in one way only, and what helps.
-    pub const fn words(self) -> &'static str {
-        match self {
-            Self::Near | Self::Far => "how far a derivative reaches: put brackets",
-            Self::Turned => "which of stacked indices comes first: put one after the other, as in T^a{}_b",
-            Self::Raised => {
-                "whether \\delta g^{ab} is the change of the inverse metric or that of the metric, raised: name one of them"
-            }
-        }
-    }
-}
+pub use ways::Way;
 
 /// Why a part could not be lowered: a clause that can stand by itself.
 pub type Refusal = String;
@@ -67,14 +44,20 @@ pub struct Lowering<'s, 'a, 'e> {
     letters: Vec<CompactString>,
     /// The other ways in which it could be read.
     pub others: Vec<Way>,
+    /// Whether an index is moved in a family that has more than one metric.
+    pub moved_among_metrics: bool,
     /// How many indices are antisymmetrised at once, at most.
     pub antisymmetrised: usize,
+    /// From which order on terms in small fields are left out, where a term says so.
+    pub neglected: Option<usize>,
+    /// Whether a side is lowered as a definition.
+    pub defines: bool,
     /// Nesting that is left.
     depth: usize,
 }
 
-/// Nesting beyond which a side is not lowered.
-const DEPTH: usize = 64;
+/// Nesting beyond which a side is not lowered; a bracket counts twice.
+const DEPTH: usize = 128;
 /// Terms of a bracket's permutations beyond which it is not written out.
 const PERMUTATIONS: usize = 120;
 
@@ -88,7 +71,10 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
             levelled: Vec::new(),
             letters: Vec::new(),
             others: Vec::new(),
+            moved_among_metrics: false,
             antisymmetrised: 0,
+            neglected: None,
+            defines: false,
             depth: DEPTH,
         }
     }
@@ -101,6 +87,7 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
     /// Looks at the sides before they are lowered: which families of levelled indices they have. A letter that no
     /// declaration has, beside letters of declared ranges, may be one of them or not: that is refused.
     pub fn survey(&mut self, sides: [&Sum; 2]) -> Result<(), Refusal> {
+        self.label_matrices();
         let mut declared = None;
         for letter in sides.into_iter().flat_map(|side| super::standing::slot_letters(side, self.eyes)) {
             let known = self.surroundings.meanings.family_number(&letter).is_some();
@@ -131,7 +118,8 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
     /// Lowers a side.
     pub fn side(&mut self, sum: &Sum) -> Lowered {
         self.depth = self.depth.checked_sub(1).ok_or("it is nested too deep")?;
-        let terms: Vec<Expression> = sum.terms.iter().map(|term| self.term(term)).collect::<Result<_, _>>()?;
+        let terms = self.terms(sum)?;
+        let terms = self.fitted(terms)?;
         self.depth += 1;
         match terms.len() {
             0 => Err("a side is empty".to_owned()),
@@ -165,12 +153,16 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
             match factor.joint {
                 Joint::Beside | Joint::Times(ProductSign::Dot | ProductSign::Star) => {
                     let (value, taken) = self.one(rest)?;
+                    if factor.joint != Joint::Beside && self.is_matrix(&value) {
+                        self.no_matrix(&parts, "the product of matrices with a sign between them is not plain")?;
+                    }
                     parts.push(value);
                     at += taken;
                 }
                 Joint::Slash => {
                     let over = parts.pop().ok_or("nothing stands before a slash")?;
                     let (under, taken) = self.one(rest)?;
+                    self.no_matrix(std::slice::from_ref(&under), "a matrix stands below a line")?;
                     parts.push(Expression::Quotient(Box::new(over), Box::new(under)));
                     at += taken;
                 }
@@ -179,6 +171,7 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
                 Joint::Apart => return Err("a list stands in a product".to_owned()),
             }
         }
+        let mut parts = self.joined(parts)?;
         Ok(match parts.len() {
             1 => parts.pop().unwrap_or_else(Expression::zero),
             _ => Expression::Product(parts),
@@ -187,9 +180,20 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
 
     /// The first factor with what belongs to it, and how many factors that are.
     fn one(&mut self, factors: &[Factor]) -> Result<(Expression, usize), Refusal> {
+        // What acts on what acts on something is nested as brackets are.
+        self.depth = self.depth.checked_sub(1).ok_or("it is nested too deep")?;
+        let value = self.first_factor(factors);
+        self.depth += 1;
+        value
+    }
+
+    fn first_factor(&mut self, factors: &[Factor]) -> Result<(Expression, usize), Refusal> {
         let Some(factor) = factors.first() else { return Err("a derivative acts on nothing".to_owned()) };
         let rest = factors.get(1..).unwrap_or_default();
         if let Atom::Kernel(kernel) = &factor.atom {
+            if let Some(value) = self.matrix_kernel(factor, kernel)? {
+                return Ok((value, 1 + self.arguments_of_matrix(rest)?));
+            }
             let made = use_of(factor, kernel, self.eyes, false);
             if is_derivative(&made.letter) && !self.is_quantity(&made) {
                 return self.derivative(factor, &made, rest);
@@ -228,6 +232,9 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
             let (value, taken) = self.call(name, factor, rest)?;
             return Ok((value, taken + 1));
         }
+        if let Some(identity) = self.identity_by_face(factor) {
+            return Ok((identity?, 1));
+        }
         Ok((self.atom(factor)?, 1))
     }
 
@@ -245,6 +252,9 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
         let operators: Vec<Operator> =
             made.slots.iter().map(|slot| self.operator(made, slot)).collect::<Result<_, _>>()?;
         let (of, taken) = self.acted_on(rest)?;
+        if operators.iter().any(|operator| matches!(operator, Operator::Covariant(..))) {
+            self.no_matrix(std::slice::from_ref(&of), "the covariant derivative of a matrix is not plain")?;
+        }
         Ok((wrapped(operators, of), taken + 1))
     }
 
@@ -258,40 +268,9 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
         }
         self.may_be(Way::Far);
         match self.way {
-            Way::Near | Way::Turned | Way::Raised => Ok((near, taken)),
-            Way::Far => Ok((self.product(rest.get(..reaches).unwrap_or_default())?, reaches)),
+            Way::Near | Way::Turned | Way::Raised | Way::Wide => Ok((near, taken)),
+            Way::Far | Way::FarAndWide => Ok((self.product(rest.get(..reaches).unwrap_or_default())?, reaches)),
         }
-    }
-
-    /// Notes that something could be read in another way.
-    fn may_be(&mut self, way: Way) {
-        if !self.others.contains(&way) {
-            self.others.push(way);
-        }
-    }
-
-    /// A change to first order; that of an inverse metric may be meant as that of the metric, raised.
-    fn varied(&mut self, parameter: usize, of: Expression) -> Expression {
-        if let Expression::Metric { metric, slots } = &of
-            && slots.iter().all(|index| index.level == Level::Up)
-        {
-            self.may_be(Way::Raised);
-            if self.way == Way::Raised {
-                let lower = slots.map(|slot| {
-                    let filling = Filling::Label(self.fresh());
-                    Index { filling, level: Level::Down, ..slot }
-                });
-                let change = Expression::Metric { metric: *metric, slots: lower };
-                let raised = slots.iter().zip(lower).map(|(slot, lower)| Expression::Metric {
-                    metric: *metric,
-                    slots: [*slot, Index { level: Level::Up, ..lower }],
-                });
-                let mut parts: Vec<Expression> = raised.collect();
-                parts.push(Expression::Vary { parameter, of: Box::new(change) });
-                return Expression::Product(parts);
-            }
-        }
-        Expression::Vary { parameter, of: Box::new(of) }
     }
 
     /// Whether a kernel is declared as a quantity with these slots: `D_i` may be a displacement.
@@ -411,6 +390,7 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
             Atom::Number(number) => Expression::Number(exact(number)?),
             Atom::Fraction(fraction) if fraction.kind == FractionKind::Quotient => {
                 let (over, under) = (self.side(&fraction.over)?, self.side(&fraction.under)?);
+                self.no_matrix(std::slice::from_ref(&under), "a matrix stands below a line")?;
                 match (&over, &under) {
                     (Expression::Number(over), Expression::Number(under)) => {
                         Expression::Number(over.checked_div(*under).ok_or("a number is divided by 0")?)
@@ -425,7 +405,9 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
                     Some(degree) => scripts::number_of(degree).ok_or("the degree of a root is no number")?,
                 };
                 let power = degree.inverse().ok_or("a root has the degree 0")?;
-                Expression::Power(Box::new(self.side(&root.body)?), power)
+                let body = self.side(&root.body)?;
+                self.no_matrix(std::slice::from_ref(&body), "a root of a matrix is not evaluated")?;
+                Expression::Power(Box::new(body), power)
             }
             Atom::Wrapped(sum) | Atom::Labelled(sum) if !sum.terms.is_empty() => self.side(sum)?,
             Atom::Big(Big::Integral, _) => return Err("an integral has no value here".to_owned()),
@@ -445,6 +427,9 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
 
     /// A value under the power that stands on its factor.
     fn powered(&mut self, value: Expression, factor: &Factor) -> Lowered {
+        if self.is_matrix(&value) {
+            return self.matrix_in_brackets(value, factor);
+        }
         match scripts::power(factor)? {
             None if factor.scripts.is_empty() => Ok(value),
             None => Err("indices stand on a bracket".to_owned()),
@@ -464,13 +449,24 @@ impl<'s, 'a, 'e> Lowering<'s, 'a, 'e> {
         let [sum] = part.sides.as_slice() else { return Err("a relation stands in brackets".to_owned()) };
         match group.bracket {
             Bracket::Round | Bracket::Square | Bracket::Curly => self.side(sum),
-            Bracket::Bars if group.left == "|" => Ok(Expression::Magnitude(Box::new(self.side(sum)?))),
+            Bracket::Bars if group.left == "|" => {
+                let of = self.side(sum)?;
+                self.no_matrix(std::slice::from_ref(&of), "bars around a matrix are a norm or a determinant")?;
+                Ok(Expression::Magnitude(Box::new(of)))
+            }
             _ => Err("a norm or an average is not evaluated".to_owned()),
         }
     }
 
     /// `[\nabla_a, \nabla_b] V^c`: both orders, on what stands after it.
     fn commutator(&mut self, group: &Group, rest: &[Factor]) -> Result<(Expression, usize), Refusal> {
+        if let [one, two] = group.parts.as_slice()
+            && let ([one], [two]) = (one.sides.as_slice(), two.sides.as_slice())
+            && self.has_matrix(one)
+            && self.has_matrix(two)
+        {
+            return Ok((self.commutator_of_matrices(one, two)?, 0));
+        }
         let operators = |part: &tree::Statement| match part.sides.as_slice() {
             [side] if side.terms.len() == 1 => side.terms.first().map(|term| term.factors.clone()),
             _ => None,

@@ -18,7 +18,7 @@ use indexwise_grammar::write::{Dialect, write_statement, write_sum};
 use crate::finding::{Edit, Fix};
 use crate::terms::Eyes;
 
-use super::claims::{is_zero, pair};
+use super::claims::{is_zero, pair, readings};
 use super::lowering::{Lowering, Way};
 use super::world::Surroundings;
 use edits::{Change, Kind, Page};
@@ -179,16 +179,13 @@ impl Search<'_, '_> {
 
     /// Whether two sides are equal, in whatever way they are read.
     fn equal(&mut self, left: &Sum, right: &Sum, look: Look) -> bool {
-        let mut lowering = Lowering::new(&mut self.surroundings, self.eyes, Way::Near);
-        let Ok((one, two)) = pair(&mut lowering, left, right) else { return false };
-        let others = lowering.others.clone();
+        let readings = readings(left, right, self.eyes, &mut self.surroundings);
+        self.surroundings.world.neglected = readings.neglected;
+        let Ok(claims) = readings.claims else { return false };
+        let ways = std::iter::once(Way::Near).chain(readings.others);
         // The usual change of an inverse metric is enough.
-        (self.holds)(&self.surroundings, &one, &two, look)
-            && others.into_iter().filter(|way| *way != Way::Raised).all(|way| {
-                let mut lowering = Lowering::new(&mut self.surroundings, self.eyes, way);
-                pair(&mut lowering, left, right)
-                    .is_ok_and(|(one, two)| (self.holds)(&self.surroundings, &one, &two, look))
-            })
+        let mut asked = claims.iter().zip(ways).filter(|(_, way)| *way != Way::Raised);
+        asked.all(|((one, two), _)| (self.holds)(&self.surroundings, one, two, look))
     }
 
     /// Whether a new term is another but for a simple number: then that one would have another number instead.

@@ -114,6 +114,7 @@ impl<'m> StepJudge<'m> {
         let mut told: Vec<Option<Finding>> = Vec::with_capacity(steps.len());
         for step in &steps {
             self.law = false;
+            self.surroundings.world.neglected = step.neglected;
             let before = self.counts;
             let finding = self.step(step, source.text, asked);
             self.mark(step, before, finding.as_ref());
@@ -147,6 +148,7 @@ impl<'m> StepJudge<'m> {
         // In a note nobody has asked; an ordinary page is no derivation.
         found.retain(|finding| asked != Asked::Quietly || finding.severity != Severity::Hint);
         self.surroundings.world.givens.clear();
+        self.surroundings.world.neglected = None;
         found
     }
 
@@ -183,6 +185,7 @@ impl<'m> StepJudge<'m> {
         let (left, right) = step.claims.as_ref().ok()?.first()?;
         let mut world = self.surroundings.world.clone();
         world.givens = givens.iter().map(|given| given.0.clone()).collect();
+        world.neglected = step.neglected;
         world.dimensions = dimensions(&world, &[left, right], step.antisymmetrised);
         Some(self.holds(step, text, left, right, world))
     }
@@ -204,7 +207,8 @@ impl<'m> StepJudge<'m> {
         let world = &self.surroundings.world;
         let holds = |left: &Expression, right: &Expression, signs| {
             let dimensions = dimensions(world, &[left, right], step.antisymmetrised);
-            self.holds(step, text, left, right, World { signs, dimensions, ..world.clone() })
+            let neglected = step.neglected;
+            self.holds(step, text, left, right, World { signs, dimensions, neglected, ..world.clone() })
         };
         let mut choices = other_signs(world.signs, Geometric::of(world, [left, right])).into_iter();
         if let Some((_, said)) = choices.find(|(signs, _)| holds(left, right, *signs)) {
@@ -407,12 +411,16 @@ impl<'m> StepJudge<'m> {
                 self.judged.push(JudgedStep { span: step.sign, verdict: view });
                 None
             }
-            Verdict::Fails(_) => {
+            Verdict::Fails(found) => {
                 self.counts.fails += 1;
                 let numbers = view.counterexample.clone().unwrap_or_default();
                 let place = in_words(&numbers.component);
+                let order = match found.order {
+                    0 => String::new(),
+                    order => format!(" for terms of order {order} in what is small"),
+                };
                 let message = format!(
-                    "this step does not hold: the left side can be {} where the right side is {}{place}",
+                    "this step does not hold{order}: the left side can be {} where the right side is {}{place}",
                     numbers.left, numbers.right
                 );
                 Some(told(rules::step_fails(step.sign, message), step, &view))

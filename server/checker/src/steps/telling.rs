@@ -52,7 +52,10 @@ fn counterexample(step: &Step, found: &verdict::Counterexample) -> Counterexampl
     let values = found.assignments.iter().map(|one| {
         let members: Vec<String> = one.component.iter().map(|member| (member + 1).to_string()).collect();
         let slots = if members.is_empty() { String::new() } else { format!("_{{{}}}", members.join(" ")) };
-        (format!("{}{slots}", shown(&one.name)), one.value.clone())
+        // Parameters are named in LaTeX.
+        let named = found.variables.iter().filter(|name| name.starts_with('\\'));
+        let value = named.fold(one.value.clone(), |value, name| value.replace(name.as_str(), &shown(name)));
+        (format!("{}{slots}", shown(&one.name)), value)
     });
     let letter = |label: u16| step.letters.get(label as usize).map(|letter| shown(letter)).unwrap_or_default();
     let level = |level: &Level| match level {

@@ -3,6 +3,8 @@
 //!
 //! The identities are textbook ones, from memory; that each holds as it stands is judged here before it is corrupted.
 
+mod matrices;
+
 use indexwise_grammar::hosts::Host;
 
 use crate::finding::{Finding, Fix};

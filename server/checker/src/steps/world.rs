@@ -12,7 +12,7 @@ use indexwise_algebra::sample::SlotSymmetry;
 use indexwise_grammar::conventions::{Bound, Kind, Range};
 use rustc_hash::FxHashMap;
 
-use crate::conventions::built_in::is_constant_metric;
+use crate::conventions::built_in::{is_constant_metric, is_metric_by_custom};
 use crate::conventions::meanings::{Known, Meanings, Role};
 
 /// The world of a document while it is being read.
@@ -34,6 +34,14 @@ pub struct Surroundings<'a> {
     pub open_signatures: Vec<usize>,
     /// Whether a definition among the conventions chooses signs of the curvature or of the epsilon tensor.
     pub signs_are_declared: bool,
+    /// From which order in small fields on definitions have left terms out.
+    pub neglected: Option<usize>,
+    /// Whether any kernel is declared a matrix.
+    has_matrices: bool,
+    /// The family of rows and columns, once a matrix has been met.
+    matrices: Option<usize>,
+    /// Defaults that a verdict has to name, by the family or kernel that asked for them.
+    pub assumptions: Vec<String>,
 }
 
 /// A family: a declared one by its number, else Cartesian or levelled letters.
@@ -94,6 +102,10 @@ impl<'a> Surroundings<'a> {
             under_roots: negated_radicands(text),
             open_signatures: Vec::new(),
             signs_are_declared: false,
+            neglected: None,
+            has_matrices: meanings.has_kind(Kind::Matrix),
+            matrices: None,
+            assumptions: Vec::new(),
         }
     }
 
@@ -122,6 +134,31 @@ impl<'a> Surroundings<'a> {
         let declared = self.meanings.metrics().into_iter().find_map(|(_, known)| known.slots.first());
         let letter = declared.map_or(CompactString::const_new("\\mu"), |slot| slot.letter.clone());
         self.family(&letter, false)
+    }
+
+    /// Whether any kernel is declared a matrix.
+    pub fn has_matrices(&self) -> bool {
+        self.has_matrices
+    }
+
+    /// The family of rows and columns of matrices: the declared one, else that of levelled letters beside the first
+    /// matrix, else Cartesian.
+    ///
+    /// # Errors
+    /// Several families are declared.
+    pub fn matrix_family(&mut self, beside: &[usize]) -> Result<usize, String> {
+        if let Some(family) = self.matrices {
+            return Ok(family);
+        }
+        let declared = self.meanings.families.first().and_then(|family| family.letters.first().cloned());
+        let family = match (self.meanings.families.len(), declared, beside) {
+            (0, ..) if !beside.is_empty() => beside.first().copied().unwrap_or_default(),
+            (0, ..) => self.family("i", true),
+            (1, Some(letter), _) => self.family(&letter, true),
+            _ => return Err("it is not said which of the declared ranges is that of the matrices".to_owned()),
+        };
+        self.matrices = Some(family);
+        Ok(family)
     }
 
     fn declared_family(&mut self, number: usize) -> Family {
@@ -165,8 +202,11 @@ impl<'a> Surroundings<'a> {
                 letters.contains(&slot.letter) || letters.is_empty() && self.meanings.family(&slot.letter).is_none()
             })
         };
-        let declared =
-            self.meanings.metrics().into_iter().find(|(_, known)| holds(known)).map(|((name, _), _)| name.clone());
+        let declared = self.meanings.metrics().into_iter().filter(|(_, known)| holds(known));
+        // Of several the one that everybody writes, and none that is flat.
+        let rank =
+            |name: &str, known: &Known| (name != "g", matches!(known.role, Some(Role::Metric { constant: true, .. })));
+        let declared = declared.min_by_key(|((name, _), known)| rank(name, known)).map(|((name, _), _)| name.clone());
         let name = declared.unwrap_or_else(|| CompactString::const_new("g"));
         let metric = self.metric(&name, family);
         if let Some(family) = self.world.families.get_mut(family) {
@@ -207,6 +247,83 @@ impl<'a> Surroundings<'a> {
         let number = self.world.metrics.len() - 1;
         self.metrics.insert(key, number);
         number
+    }
+
+    /// The metric of this name on a family, if it is defined by its components.
+    pub fn defined_metric(&mut self, name: &CompactString, family: usize) -> Option<usize> {
+        if !self.plays_metric(name) || !self.is_defined(name, 2) {
+            return None;
+        }
+        let metric = self.metric(name, family);
+        let values = self.world.metrics.get(metric).map(|metric| &metric.values);
+        matches!(values, Some(MetricValues::Defined(_))).then_some(metric)
+    }
+
+    /// Whether a family has more than one metric.
+    pub fn has_metrics(&self, family: usize) -> bool {
+        self.world.metrics.iter().filter(|metric| metric.family == family).count() > 1
+    }
+
+    /// Makes a metric of a kernel that has been defined and plays one; it moves the indices of its family where a flat
+    /// one did before, or, if it is declared, one that is not.
+    pub fn define_metric(&mut self, name: &CompactString, slots: &[Index]) {
+        let [one, two] = slots else { return };
+        let levels = [one.level, two.level] == [Level::Down, Level::Down];
+        let Some(definition) = self.definition(name, 2).filter(|_| levels && one.family == two.family) else { return };
+        if !self.plays_metric(name) {
+            return;
+        }
+        let metric = self.metric(name, one.family);
+        if self.mentions(definition, metric) {
+            return;
+        }
+        if let Some(own) = self.world.metrics.get_mut(metric) {
+            own.values = MetricValues::Defined(definition);
+        }
+        let declared = self.is_declared_metric(name);
+        let gives_way = |other: usize| {
+            let flat = |own: &Metric| own.values == MetricValues::Flat;
+            let lesser = |own: &Metric| declared && !self.is_declared_metric(&own.name);
+            self.world.metrics.get(other).is_some_and(|own| flat(own) || lesser(own))
+        };
+        if self.world.families.get(one.family).is_some_and(|family| family.metric.is_none_or(gives_way))
+            && let Some(family) = self.world.families.get_mut(one.family)
+        {
+            family.metric = Some(metric);
+        }
+    }
+
+    /// Whether a kernel with two slots is a metric, by declaration or by custom.
+    fn plays_metric(&self, name: &str) -> bool {
+        let role = self.meanings.known(name, 2).and_then(|known| known.role.as_ref());
+        self.is_declared_metric(name) || role.is_none() && is_metric_by_custom(name)
+    }
+
+    fn is_declared_metric(&self, name: &str) -> bool {
+        let role = self.meanings.known(name, 2).and_then(|known| known.role.as_ref());
+        matches!(role, Some(Role::Metric { .. }))
+    }
+
+    /// Whether a metric, or what follows from it, stands in a definition.
+    fn mentions(&self, definition: usize, metric: usize) -> bool {
+        let mut pending: Vec<&Expression> =
+            self.world.definitions.get(definition).map(|own| &own.body).into_iter().collect();
+        while let Some(part) = pending.pop() {
+            let own = match part {
+                Expression::Metric { metric, .. }
+                | Expression::Determinant(metric)
+                | Expression::Christoffel { metric, .. }
+                | Expression::Curvature { metric, .. }
+                | Expression::Covariant { metric, .. } => Some(*metric),
+                Expression::Epsilon { metric, .. } => *metric,
+                _ => None,
+            };
+            if own == Some(metric) {
+                return true;
+            }
+            pending.extend(part.parts());
+        }
+        false
     }
 
     /// The definition of a kernel with so many slots, if one stands before.
@@ -253,7 +370,8 @@ impl<'a> Surroundings<'a> {
             constant: is(Kind::Constant) || is_number_by_custom(kernel, slots.len()),
             small: is(Kind::Small),
             varies: true,
-            known: known.is_some_and(Known::is_settled) && !is_position(kernel, slots.len()),
+            known: (known.is_some_and(Known::is_settled) || is(Kind::Matrix) && slots.len() == 2)
+                && !is_position(kernel, slots.len()),
         };
         self.world.fields.push(field);
         let number = self.world.fields.len() - 1;

@@ -212,7 +212,27 @@ fn a_determinant_to_first_order_has_one_term_of_it() {
     let twice = times([int(2), adjugate(field(0, ".ij"), "ij", ".kl"), field(1, ".lk")]);
     let found = fails(minus(changed, det(field(0, ".ij"), "ij")), twice, &world);
     let doubled = found.left.checked_mul(Rational::from_integer(2));
-    assert_eq!(Some(found.right), doubled);
+    assert_eq!((Some(found.right), found.order), (doubled, 1));
+}
+
+#[test]
+fn terms_of_second_order_are_missed_where_they_are_asked_for() {
+    let mut h = named("h", "..");
+    h.small = true;
+    let mut world = cartesian(&[2], vec![h]);
+    let changed = || det(sum([delta(".ij"), field(0, ".ij")]), "ij");
+    let first = || sum([int(1), field(0, ".ii")]);
+    holds(changed(), first(), &world);
+    world.neglected = Some(3);
+    let found = fails(changed(), first(), &world);
+    assert_eq!((found.order, found.right), (2, Rational::ZERO));
+    // In dimension 2 the term of second order is the determinant.
+    let entry = |component: [usize; 2]| {
+        let own = found.assignments.iter().find(|own| own.name == "h" && own.component == component);
+        own.map_or(0, |own| own.value.parse::<i128>().unwrap())
+    };
+    let expected = entry([0, 0]) * entry([1, 1]) - entry([0, 1]) * entry([1, 0]);
+    assert_eq!(found.left, Rational::new(expected, 1).unwrap());
 }
 
 #[test]

@@ -74,6 +74,36 @@ fn a_determinant_to_first_order() {
 }
 
 #[test]
+fn a_determinant_to_second_order() {
+    let mut world = matrix_world(&[2, 3], true);
+    world.neglected = Some(3);
+    let h = || field(1, ".ij");
+    let changed = det(sum([delta(".ij"), h()]), "ij");
+    let squares = minus(times([field(1, ".ii"), field(1, ".jj")]), times([h(), field(1, ".ji")]));
+    let second = times([ratio(1, 2), squares]);
+    holds(changed.clone(), sum([int(1), field(1, ".ii"), second]), &world);
+    // Below the first order nothing of it is left.
+    world.neglected = Some(1);
+    holds(changed, int(1), &world);
+}
+
+#[test]
+fn a_determinant_to_first_order_at_a_singular_matrix() {
+    let mut h = named("h", "..");
+    h.small = true;
+    let mut world = cartesian(&[3], vec![named("u", "."), named("v", "."), named("w", "."), named("z", "."), h]);
+    let pair = |one, other| times([field(one, ".i"), field(other, ".j")]);
+    // Of rank 2 in dimension 3, so that the adjugate does not vanish.
+    world.definitions = vec![definition("A", ".ij", sum([pair(0, 1), pair(2, 3)]))];
+    let a = || defined(0, ".ij");
+    let changed = det(sum([a(), field(4, ".ij")]), "ij");
+    holds(changed, times([adjugate(a(), "ij", ".kl"), field(4, ".lk")]), &world);
+    holds(det(a(), "ij"), Expression::zero(), &world);
+    let nothing = verdict(adjugate(a(), "ij", ".kl"), Expression::zero(), &world);
+    assert!(matches!(nothing, Verdict::Fails(_)), "{nothing:?}");
+}
+
+#[test]
 fn the_metric_is_compatible() {
     let world = space(ALL, Vec::new());
     holds(nabla("_k", g("_ij")), Expression::zero(), &world);

@@ -66,7 +66,7 @@ impl Lowering<'_, '_, '_> {
     }
 
     /// `\phi(x)`, `A_i(x^j)`: where a field is taken, not a factor.
-    fn is_argument(&self, made: &Use, next: &Factor) -> bool {
+    pub(super) fn is_argument(&self, made: &Use, next: &Factor) -> bool {
         let Atom::Group(group) = &next.atom else { return false };
         let point = |factor: &Factor| match &factor.atom {
             Atom::Kernel(kernel) => matches!(kernel.letter.as_str(), "x" | "y" | "t" | "r" | "s" | "z"),
@@ -81,6 +81,9 @@ impl Lowering<'_, '_, '_> {
 
     fn meaning(&mut self, made: &Use, own: &[UsedSlot], slots: Vec<Index>) -> Lowered {
         if let Some(definition) = self.surroundings.definition(&made.kernel, slots.len()) {
+            if let Some(value) = self.defined_metric(made, &slots) {
+                return Ok(value);
+            }
             let own = self.surroundings.world.definitions.get(definition).map(|own| own.free.clone());
             self.move_slots(&slots, own.unwrap_or_default().iter().map(|index| index.level));
             return Ok(Expression::Defined { definition, slots });
@@ -106,6 +109,8 @@ impl Lowering<'_, '_, '_> {
         let plain = |made: &Use| made.kernel == made.letter;
         Ok(Some(match (made.letter.as_str(), slots) {
             ("\\delta", [one, two]) if plain(made) => Expression::Delta([*one, *two]),
+            // With nothing after it that it could vary.
+            ("\\delta", []) if plain(made) && self.surroundings.has_matrices() => Expression::Delta(self.frame()?),
             (_, [one, two]) if is_metric_by_custom(&made.kernel) => {
                 if one.level == Level::Inert || two.level == Level::Inert {
                     return Err(format!("{} stands with indices that have no levels", shown(&made.kernel)));
@@ -143,11 +148,25 @@ impl Lowering<'_, '_, '_> {
         }))
     }
 
+    /// `g^{ij}` of a metric that is defined is its inverse, whatever moves the indices of other tensors.
+    fn defined_metric(&mut self, made: &Use, slots: &[Index]) -> Option<Expression> {
+        let [one, two] = slots else { return None };
+        if (one.level, two.level) == (Level::Down, Level::Down) || one.level == Level::Inert {
+            return None;
+        }
+        let metric = self.surroundings.defined_metric(&made.kernel, one.family)?;
+        Some(Expression::Metric { metric, slots: [*one, *two] })
+    }
+
     fn metric(&mut self, made: &Use, slots: &[Index]) -> Lowered {
         let [one, two] = slots else {
             return Err(format!("{} stands with {} indices", shown(&made.kernel), slots.len()));
         };
         let metric = self.surroundings.metric(&made.kernel, one.family);
+        // Indices are moved by the metric that is declared; where none is, by the first that is met.
+        if self.has_metric() {
+            self.surroundings.metric_of(one.family);
+        }
         if let Some(family) = self.surroundings.world.families.get_mut(one.family) {
             family.metric = family.metric.or(Some(metric));
         }
@@ -209,8 +228,12 @@ impl Lowering<'_, '_, '_> {
 
     fn field(&mut self, made: &Use, own: &[UsedSlot], mut slots: Vec<Index>) -> Lowered {
         let meanings = self.surroundings.meanings;
-        if meanings.is_kind(&made.kernel, Kind::Matrix) {
-            return Err(format!("the matrix {} stands without its indices", shown(&made.kernel)));
+        let matrix = meanings.is_kind(&made.kernel, Kind::Matrix);
+        if matrix && slots.len() == 2 && !Self::are_matrix_levels(&slots) {
+            return Err(format!(
+                "the indices of the matrix {} have other levels than row and column",
+                shown(&made.kernel)
+            ));
         }
         let bare = Use { slots: own.to_vec(), ..made.clone() };
         let piece = Piece { made: bare, ..Piece::default() };
@@ -228,8 +251,10 @@ impl Lowering<'_, '_, '_> {
         }
         let natural: Vec<(usize, Level)> = slots.iter().map(|index| (index.family, index.level)).collect();
         let field = self.surroundings.field(&made.kernel, &natural, symmetries);
-        let own = self.surroundings.world.fields.get(field).map(|field| field.slots.clone()).unwrap_or_default();
-        self.move_slots(&slots, own.into_iter().map(|(_, level)| level));
+        if !matrix {
+            let own = self.surroundings.world.fields.get(field).map(|field| field.slots.clone()).unwrap_or_default();
+            self.move_slots(&slots, own.into_iter().map(|(_, level)| level));
+        }
         Ok(Expression::Field { field, slots })
     }
 
@@ -238,6 +263,7 @@ impl Lowering<'_, '_, '_> {
         for (index, own) in slots.iter().zip(own) {
             if index.level != own {
                 self.surroundings.metric_of(index.family);
+                self.moved_among_metrics |= self.surroundings.has_metrics(index.family);
             }
         }
     }
@@ -246,6 +272,12 @@ impl Lowering<'_, '_, '_> {
     pub fn lone_kernel(&mut self, factor: &Factor) -> Option<(CompactString, Vec<Index>)> {
         let Atom::Kernel(kernel) = &factor.atom else { return None };
         let made = crate::terms::uses::use_of(factor, kernel, self.eyes, false);
+        if let Some(slots) = self.lone_matrix(factor, &made) {
+            return Some((made.kernel, slots));
+        }
+        if self.is_acted_matrix(factor, kernel) {
+            return None;
+        }
         let plain =
             !made.unread && !made.power && factor.marks.is_empty() && made.own_slots().count() == made.slots.len();
         if !plain || made.slots.iter().any(|slot| slot.letter().is_none()) {

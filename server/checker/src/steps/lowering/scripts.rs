@@ -17,7 +17,7 @@ pub(super) fn power(factor: &Factor) -> Result<Option<Rational>, Refusal> {
 }
 
 /// `2`, `-1`, `1/2`, `-\frac12`: a number; nothing for anything else.
-fn power_of(items: &[Item]) -> Option<Rational> {
+pub(super) fn power_of(items: &[Item]) -> Option<Rational> {
     let (negative, items) = match items {
         [Item { kind: ItemKind::Sign(SignKind::Minus), .. }, rest @ ..] => (true, rest),
         [Item { kind: ItemKind::Sign(SignKind::Plus), .. }, rest @ ..] => (false, rest),
