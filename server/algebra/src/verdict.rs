@@ -78,7 +78,16 @@ impl Limits<'_> {
 
     /// The usual limits with a seed.
     pub const fn seeded(seed: u64) -> Self {
-        Self { seed, draws: 2, redraws: 64, step: 50_000_000, total: 1_000_000_000, trials: 400, stop: None, spent: None }
+        Self {
+            seed,
+            draws: 2,
+            redraws: 64,
+            step: 50_000_000,
+            total: 1_000_000_000,
+            trials: 400,
+            stop: None,
+            spent: None,
+        }
     }
 }
 

@@ -23,8 +23,8 @@ use crate::terms::Eyes;
 
 use super::claims::{Asked, Step, relations_of, steps_of};
 use super::conventions::{self, Geometric, exchanged, other_signs};
-use super::repairs::{Broken, Look, Source, repairs};
 use super::lowering::Way;
+use super::repairs::{Broken, Look, Source, repairs};
 use super::standing::{Doubt, conditioned, doubt, kernels};
 use super::telling::{in_words, is_number, kind, listed, numbers, plain_view, told};
 use super::words::loosening;
@@ -45,7 +45,7 @@ const REPAIR_WORK: [u64; 2] = [2_000_000, 30_000_000];
 /// Why a step is doubted, before the words that say so.
 const SAID: &str = "the text around it speaks of";
 /// Multiplications for all looks at the edits of one step together.
-const REPAIRS_WORK: u64 = 400_000_000;
+const REPAIRS_WORK: u64 = 100_000_000;
 /// Steps of one document that are tried to be mended.
 const MENDED: usize = 30;
 
@@ -318,8 +318,12 @@ impl<'m> StepJudge<'m> {
         let doubt = doubt.filter(|doubt| !doubt.may_be_law || !self.is_identity_if_flat(step, text, sides));
         // Whoever asks for a formula by itself means it as it stands.
         let loosening = if asked == Asked::All { None } else { loosening(text, step.sign) };
-        let by_words =
-            |phrase: &str| Doubt { why: SAID, names: vec![format!("\u{201c}{phrase}\u{201d}")], may_be_law: false, derived: false };
+        let by_words = |phrase: &str| Doubt {
+            why: SAID,
+            names: vec![format!("\u{201c}{phrase}\u{201d}")],
+            may_be_law: false,
+            derived: false,
+        };
         doubt.or_else(|| loosening.map(by_words))
     }
 
