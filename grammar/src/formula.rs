@@ -53,6 +53,7 @@ pub(crate) fn prepare_note(body: &str, base: usize) -> Draft {
         Draft::Prepared(mut prepared) => {
             prepared.labels.extend(note.label);
             prepared.no_sum |= note.no_sum;
+            prepared.reasons = note.reasons;
             Draft::Prepared(prepared)
         }
         unread => unread,
@@ -116,6 +117,7 @@ fn parse<'a>(
         labels: prepared.labels.clone(),
         unknown: prepared.unknown.clone(),
         no_sum: prepared.no_sum,
+        reasons: prepared.reasons.clone(),
         passed_over: prepared.passed_over,
         ..Formula::default()
     };

@@ -57,6 +57,8 @@ pub struct Formula {
     pub unknown: Vec<(CompactString, Span)>,
     /// `\label`s, and the leading `(name)` of a note's formula.
     pub labels: Vec<(CompactString, Span)>,
+    /// The trailing `[reason]`s of a note's lines, without their brackets, in order.
+    pub reasons: Vec<(CompactString, Span)>,
     /// Whether words in it say that no sum is meant.
     pub no_sum: bool,
     /// Whether something was passed over that may change the value: a bracket without a partner, words set over a
@@ -73,7 +75,8 @@ impl Formula {
         let spans = std::iter::once(&mut self.span)
             .chain(self.unread.iter_mut().map(|part| &mut part.span))
             .chain(self.unknown.iter_mut().map(|(_, span)| span))
-            .chain(self.labels.iter_mut().map(|(_, span)| span));
+            .chain(self.labels.iter_mut().map(|(_, span)| span))
+            .chain(self.reasons.iter_mut().map(|(_, span)| span));
         spans.for_each(|span| *span = to(*span));
     }
 }

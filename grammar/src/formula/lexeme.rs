@@ -136,6 +136,8 @@ pub(crate) struct Prepared {
     pub statements: Vec<std::ops::Range<usize>>,
     /// Labels found.
     pub labels: Vec<(CompactString, Span)>,
+    /// What stands in the trailing `[reason]`s of a note's lines.
+    pub reasons: Vec<(CompactString, Span)>,
     /// Unknown commands found.
     pub unknown: Vec<(CompactString, Span)>,
     /// Whether words in the formula say that no sum is meant.

@@ -17,6 +17,8 @@ pub(crate) struct NoteFormula<'a> {
     pub label: Option<(CompactString, Span)>,
     /// Whether a line says `no sum`.
     pub no_sum: bool,
+    /// What stands in a trailing `[reason]`, line by line.
+    pub reasons: Vec<(CompactString, Span)>,
 }
 
 /// Words that are commands in LaTeX.
@@ -47,16 +49,22 @@ pub(crate) fn note_tokens(text: &str, base: usize) -> NoteFormula<'_> {
     let (label, text, base) = take_label(text, base);
     let mut out = Vec::new();
     let mut no_sum = false;
+    let mut reasons = Vec::new();
     for line in lines(text) {
-        let (start, line) = line;
-        let (line, words) = (without_reason(line), line);
+        let (start, words) = line;
+        let line = without_reason(words);
         no_sum |= words.contains("no sum");
+        let reason = words.get(line.len()..).unwrap_or_default().trim();
+        if let Some(reason) = reason.strip_prefix('[').and_then(|reason| reason.strip_suffix(']')) {
+            let from = base + start + line.len();
+            reasons.push((reason.into(), Span::new(from, base + start + words.trim_end().len())));
+        }
         if !out.is_empty() {
             out.push(made(TokenKind::RowBreak, "\\\\", Span::new(base + start, base + start)));
         }
         Writer { tokens: lex(line, base + start).collect(), at: 0, out: &mut out }.line();
     }
-    NoteFormula { tokens: out, label, no_sum }
+    NoteFormula { tokens: out, label, no_sum, reasons }
 }
 
 fn lines(text: &str) -> impl Iterator<Item = (usize, &str)> {

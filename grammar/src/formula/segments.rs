@@ -19,6 +19,7 @@ pub(crate) fn cut(tidied: Tidied) -> Prepared {
         lexemes: cutter.out,
         statements: cutter.statements,
         labels: tidied.labels,
+        reasons: Vec::new(),
         unknown: tidied.unknown,
         no_sum: tidied.no_sum,
         passed_over: tidied.passed_over,

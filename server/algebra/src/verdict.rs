@@ -20,6 +20,8 @@ mod signs;
 mod text;
 mod witness;
 
+use std::cell::Cell;
+
 use crate::evaluation::Meter;
 use crate::evaluation::needs::{Needs, within_depth};
 use crate::expression::{Expression, World};
@@ -62,12 +64,30 @@ pub struct Limits<'a> {
     pub trials: usize,
     /// Asked now and then whether to end early.
     pub stop: Option<&'a dyn Fn() -> bool>,
+    /// Where the multiplications that were made are added up, if that is wanted.
+    pub spent: Option<&'a Cell<u64>>,
 }
 
 impl Limits<'_> {
+    /// Adds up what a meter has counted.
+    fn note(&self, meter: &Meter) {
+        if let Some(spent) = self.spent {
+            spent.set(spent.get().saturating_add(self.total.saturating_sub(meter.left())));
+        }
+    }
+
     /// The usual limits with a seed.
     pub const fn seeded(seed: u64) -> Self {
-        Self { seed, draws: 2, redraws: 64, step: 50_000_000, total: 1_000_000_000, trials: 400, stop: None }
+        Self {
+            seed,
+            draws: 2,
+            redraws: 64,
+            step: 50_000_000,
+            total: 1_000_000_000,
+            trials: 400,
+            stop: None,
+            spent: None,
+        }
     }
 }
 
@@ -193,25 +213,27 @@ pub struct Entry {
 
 /// The verdict about a claim. It depends on the claim and the limits alone, unless it is stopped.
 pub fn judge(claim: &Claim, limits: &Limits) -> Verdict {
-    match judged(claim, limits) {
+    let meter = Meter::new(limits.step, limits.total, limits.stop);
+    let judged = judged(claim, &meter, limits);
+    limits.note(&meter);
+    match judged {
         Ok(verdict) => verdict,
         Err(reason) => Verdict::Undecided(reason),
     }
 }
 
-fn judged(claim: &Claim, limits: &Limits) -> Result<Verdict, Reason> {
+fn judged(claim: &Claim, meter: &Meter, limits: &Limits) -> Result<Verdict, Reason> {
     let Claim { left, right, world } = claim;
     [left, right].into_iter().try_for_each(within_depth)?;
-    let meter = Meter::new(limits.step, limits.total, limits.stop);
     let needs = Needs::of([(left, 0), (right, 0)], world)?;
-    let found = Found::over(claim, &needs, &Givens::default(), &meter, limits)?;
+    let found = Found::over(claim, &needs, &Givens::default(), meter, limits)?;
     let settled = found.fails.is_empty() && found.undefined.is_empty();
     if settled || world.givens.is_empty() {
         return found.verdict(&needs, claim, limits);
     }
     // What holds without its givens holds with them; only else are they looked at.
     let (givens, needs) = Givens::new(claim)?;
-    let found = Found::over(claim, &needs, &givens, &meter, limits)?;
+    let found = Found::over(claim, &needs, &givens, meter, limits)?;
     if found.holds.is_empty()
         && found.fails.is_empty()
         && let Some(label) = givens.unmet.take()
@@ -310,7 +332,9 @@ fn shown(
     let meter = Meter::new(limits.step, limits.total, limits.stop);
     let none = Givens::default();
     let search = |dimension: &usize| witness::witness(&Dimension::new(claim, needs, *dimension, &meter, limits, &none));
-    match fails.iter().take(DIMENSIONS_SEARCHED).find_map(search) {
+    let witness = fails.iter().take(DIMENSIONS_SEARCHED).find_map(search);
+    limits.note(&meter);
+    match witness {
         Some(counterexample) => Ok(Ok(counterexample)),
         None if functions::used(claim, needs).related => Err(Reason::Functions),
         None if signs::Signs::of(claim, needs).bits.is_some() => Err(Reason::Signs),

@@ -19,7 +19,7 @@ mod world;
 pub use claims::{Asked, Step, steps_of};
 pub use lowering::{Lowering, Way};
 pub use repairs::Source;
-pub use report::{LabelledGiven, StepJudge};
+pub use report::{Granted, LabelledGiven, StepJudge};
 pub use world::Surroundings;
 
 #[cfg(test)]

@@ -194,8 +194,8 @@ impl<'a, N: Number> Imposing<'a, N> {
         Ok(true)
     }
 
-    /// What may give way, with the order of its derivatives: fields that have not yet before those that have, few
-    /// derivatives before many; metrics last.
+    /// What may give way, with the order of its derivatives: fields that vary before constants, those that have not yet
+    /// before those that have, few derivatives before many; metrics last.
     fn candidates(&self, condition: &Condition) -> Vec<(Part, usize)> {
         let world = &self.dimension.claim.world;
         let arbitrary = |part: Part| match part {
@@ -205,9 +205,13 @@ impl<'a, N: Number> Imposing<'a, N> {
             }
         };
         let mut candidates: Vec<_> = condition.depths.iter().copied().filter(|(part, _)| arbitrary(*part)).collect();
+        let is_constant = |part: Part| match part {
+            Part::Field(field) => world.fields.get(field).is_some_and(|field| field.constant),
+            Part::Metric(_) => false,
+        };
         let rank = |part: Part| {
             let before = self.gave_way.iter().any(|(_, other)| *other == part);
-            (matches!(part, Part::Metric(_)), before)
+            (matches!(part, Part::Metric(_)), is_constant(part), before)
         };
         candidates.sort_by_key(|(part, depth)| (rank(*part), *depth));
         candidates

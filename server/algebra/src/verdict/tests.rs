@@ -5,6 +5,7 @@
 
 mod build;
 mod failures;
+mod forms;
 mod givens;
 mod hostile;
 mod identities;

@@ -19,7 +19,7 @@ use crate::ledger::Judged;
 use crate::reading::{self, Reading};
 use crate::rules;
 use crate::sketch::Sketch;
-use crate::steps::{Asked, LabelledGiven, Source, StepJudge};
+use crate::steps::{Asked, Granted, LabelledGiven, Source, StepJudge};
 use crate::symbols::Gatherer;
 use crate::terms::symmetries::Customs;
 use crate::terms::{self, Eyes, Flattened};
@@ -225,6 +225,15 @@ impl<'d> Judge<'d> {
         for name in labels {
             givens.extend(given(self.document, &self.prices, self.customs, &mut self.trees, steps, &name.text));
         }
+        let mut reasoned = Vec::new();
+        for (words, span) in &judged.formula.reasons {
+            let mut own = Vec::new();
+            // A reason that is no label is for the reader.
+            for label in words_of(words).filter(|word| self.labels.contains(*word)) {
+                own.extend(given(self.document, &self.prices, self.customs, &mut self.trees, steps, label));
+            }
+            reasoned.push((*span, own));
+        }
         let read = &self.document.read;
         let place =
             self.trees.statements(read, number).iter().position(|statement| statement.span == judged.sketch.span);
@@ -232,7 +241,7 @@ impl<'d> Judge<'d> {
         let dialect = if read.host == Host::Note { Dialect::Note } else { Dialect::Latex };
         let source = Source { text: judged.text, dialect, reread: &reread };
         let mut found = self.trees.statement(read, number, judged.sketch.span, |statement| {
-            steps.statement(statement, &source, &eyes, asked, &givens)
+            steps.statement(statement, &source, &eyes, asked, &Granted { all: &givens, reasoned: &reasoned })
         });
         for finding in found.iter_mut().filter(|finding| finding.rule == "step-not-shown") {
             for label in labels_before(&read.document.formulas, number) {
@@ -362,6 +371,11 @@ impl<'d> Judge<'d> {
             }
         }
     }
+}
+
+/// The words of a reason, as labels are written.
+fn words_of(reason: &str) -> impl Iterator<Item = &str> {
+    reason.split(|sign: char| !sign.is_alphanumeric() && !"-_:.".contains(sign)).filter(|word| !word.is_empty())
 }
 
 /// Labelled formulas that are tried as given for a step that is not shown.

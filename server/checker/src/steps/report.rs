@@ -4,6 +4,7 @@
 //! draws follow from the step's own text. Where a derivative's reach can be read in two ways, both are judged. An
 //! error says that a proof is attached; whatever rests on a kernel of unknown meaning is a hint that names it.
 
+use std::cell::Cell;
 use std::hash::{Hash, Hasher};
 use std::time::{Duration, Instant};
 
@@ -43,13 +44,16 @@ const LARGEST_DIMENSION: usize = 6;
 const REPAIR_WORK: [u64; 2] = [2_000_000, 30_000_000];
 /// Why a step is doubted, before the words that say so.
 const SAID: &str = "the text around it speaks of";
+/// Multiplications for all looks at the edits of one step together.
+const REPAIRS_WORK: u64 = 100_000_000;
 /// Steps of one document that are tried to be mended.
 const MENDED: usize = 30;
 
 /// Judges the steps of a document, statement by statement in the order of the text.
 pub struct StepJudge<'m> {
     surroundings: Surroundings<'m>,
-    known: FxHashMap<u64, Verdict>,
+    /// Verdicts by the text of their steps, each with the sides that it is about.
+    known: FxHashMap<u64, Vec<Known>>,
     /// Kernels that the text states conditions on: they are no arbitrary fields.
     conditioned: FxHashSet<CompactString>,
     /// The verdicts so far, counted and one by one.
@@ -69,9 +73,30 @@ pub struct StepJudge<'m> {
     begun: Option<Instant>,
 }
 
+/// A verdict on two sides that is good for the definitions of one moment.
+type Known = (u64, Expression, Expression, Verdict);
+
 /// Something given, in the world of its document.
 #[derive(Clone, Debug)]
 pub struct LabelledGiven(Given);
+
+/// What is given for the steps of a statement.
+#[derive(Clone, Copy, Debug, Default)]
+pub struct Granted<'g> {
+    /// For all of them.
+    pub all: &'g [LabelledGiven],
+    /// By reasons, each with its place: for the last step before it.
+    pub reasoned: &'g [(Span, Vec<LabelledGiven>)],
+}
+
+impl<'g> Granted<'g> {
+    /// What the reason of a step gives.
+    fn reason(&self, step: &Step, steps: &[Step]) -> &'g [LabelledGiven] {
+        let next = steps.iter().map(|other| other.sign.start).filter(|start| *start > step.sign.start).min();
+        let own = |place: &Span| place.start >= step.sign.end && next.is_none_or(|next| place.start < next);
+        self.reasoned.iter().find(|(place, _)| own(place)).map(|(_, givens)| givens.as_slice()).unwrap_or_default()
+    }
+}
 
 impl<'m> StepJudge<'m> {
     /// For a document with these declarations.
@@ -99,23 +124,23 @@ impl<'m> StepJudge<'m> {
         self.conditioned.extend(conditioned(statement, eyes));
     }
 
-    /// Takes a statement: its definitions, and the findings about its claims. `givens` are statements that are taken as
-    /// given, by their labels, each with the eyes of its reading.
+    /// Takes a statement: its definitions, and the findings about its claims, under what is given.
     pub fn statement(
         &mut self,
         statement: &Statement,
         source: &Source<'_>,
         eyes: &Eyes<'_>,
         asked: Asked,
-        givens: &[LabelledGiven],
+        granted: &Granted<'_>,
     ) -> Vec<Finding> {
-        self.surroundings.world.givens = givens.iter().map(|given| given.0.clone()).collect();
         let steps = steps_of(statement, eyes, &mut self.surroundings, asked);
         let mut told: Vec<Option<Finding>> = Vec::with_capacity(steps.len());
         for step in &steps {
             self.law = false;
             self.surroundings.world.neglected = step.neglected;
             let before = self.counts;
+            let reason = granted.reason(step, &steps);
+            self.surroundings.world.givens = granted.all.iter().chain(reason).map(|given| given.0.clone()).collect();
             let finding = self.step(step, source.text, asked);
             self.mark(step, before, finding.as_ref());
             if let Some(verdict) = finding.as_ref().and_then(|finding| finding.verdict.clone()) {
@@ -129,6 +154,7 @@ impl<'m> StepJudge<'m> {
         }
         let held: Vec<(usize, bool)> =
             steps.iter().zip(&told).map(|(step, told)| (step.relation, told.is_none())).collect();
+        self.surroundings.world.givens = granted.all.iter().map(|given| given.0.clone()).collect();
         self.all_hold = !told.is_empty() && told.iter().all(Option::is_none);
         self.open.clear();
         let mut found: Vec<Finding> = Vec::new();
@@ -137,7 +163,7 @@ impl<'m> StepJudge<'m> {
             let broken = Broken { statement, relation: step.relation, others: &held };
             finding.fixes = self.fixes(step, &finding, &broken, eyes, source);
             let differs = finding.verdict.as_ref().is_some_and(|verdict| verdict.verdict == "differs");
-            if differs && givens.is_empty() && step.claims.as_ref().is_ok_and(|claims| claims.len() == 1) {
+            if differs && granted.all.is_empty() && step.claims.as_ref().is_ok_and(|claims| claims.len() == 1) {
                 self.open.push(step.clone());
             }
             if let Some(choice) = self.other_choice(step, &finding, source.text) {
@@ -231,7 +257,7 @@ impl<'m> StepJudge<'m> {
         let dimension = verdict.and_then(|verdict| verdict.fails.first().copied());
         let (Some(dimension), Some(left)) = (dimension, self.mended.checked_sub(1)) else { return Vec::new() };
         self.mended = left;
-        let (begun, seed) = (self.begun, seed(step, source.text));
+        let (begun, seed, spent) = (self.begun, seed(step, source.text), Cell::new(0));
         let holds = |surroundings: &Surroundings<'_>, left: &Expression, right: &Expression, look: Look| {
             let mut world = surroundings.world.clone();
             world.dimensions = match look {
@@ -239,10 +265,11 @@ impl<'m> StepJudge<'m> {
                 Look::InFull => dimensions(&world, &[left, right], step.antisymmetrised),
             };
             let stop = || begun.is_some_and(|begun| begun.elapsed() > DOCUMENT_TIME);
-            let usual = Limits { trials: 0, stop: Some(&stop), ..Limits::seeded(seed) };
+            let unspent = REPAIRS_WORK.saturating_sub(spent.get());
+            let usual = Limits { trials: 0, stop: Some(&stop), spent: Some(&spent), ..Limits::seeded(seed) };
             let limits = match look {
-                Look::Once => Limits { total: REPAIR_WORK[0], draws: 1, ..usual },
-                Look::InFull => Limits { total: REPAIR_WORK[1], ..usual },
+                Look::Once => Limits { total: unspent.min(REPAIR_WORK[0]), draws: 1, ..usual },
+                Look::InFull => Limits { total: unspent.min(REPAIR_WORK[1]), ..usual },
             };
             let claim = Claim { left: left.clone(), right: right.clone(), world };
             matches!(verdict::judge(&claim, &limits), Verdict::Holds { undefined, .. } if undefined.is_empty())
@@ -374,11 +401,10 @@ impl<'m> StepJudge<'m> {
 
     fn judged(&mut self, step: &Step, text: &str, left: &Expression, right: &Expression) -> Verdict {
         let seed = seed(step, text);
-        let key = seed ^ (self.surroundings.world.definitions.len() as u64).rotate_left(32);
-        let alone =
-            step.claims.as_ref().is_ok_and(|claims| claims.len() == 1) && self.surroundings.world.givens.is_empty();
-        if let Some(known) = self.known.get(&key).filter(|_| alone) {
-            return known.clone();
+        let (moment, alone) = (self.surroundings.moment, self.surroundings.world.givens.is_empty());
+        let same = |known: &&Known| alone && (known.0, &known.1, &known.2) == (moment, left, right);
+        if let Some(known) = self.known.get(&seed).and_then(|known| known.iter().find(same)) {
+            return known.3.clone();
         }
         let mut world = self.surroundings.world.clone();
         world.dimensions = dimensions(&world, &[left, right], step.antisymmetrised);
@@ -398,7 +424,8 @@ impl<'m> StepJudge<'m> {
             verdict = judge(world);
         }
         if alone {
-            self.known.insert(key, verdict.clone());
+            let known = (moment, left.clone(), right.clone(), verdict.clone());
+            self.known.entry(seed).or_default().push(known);
         }
         verdict
     }
@@ -438,6 +465,20 @@ impl<'m> StepJudge<'m> {
                         "the sides of this step differ, but no simple numbers were found that show it".to_owned()
                     }
                 };
+                Some(told(rules::step_not_shown(step.sign, message), step, &view))
+            }
+            Verdict::NeedsDimension { holds, fails, .. } if !self.surroundings.world.givens.is_empty() => {
+                self.counts.undecided += 1;
+                let mut labels: Vec<String> =
+                    self.surroundings.world.givens.iter().map(|given| given.label.clone()).collect();
+                labels.dedup();
+                let message = format!(
+                    "this step follows from {} in dimension {}, but not from that alone in {}",
+                    listed(&labels),
+                    numbers(holds),
+                    numbers(fails)
+                );
+                let view = StepVerdict { verdict: "differs", assumptions: labels, ..view };
                 Some(told(rules::step_not_shown(step.sign, message), step, &view))
             }
             Verdict::NeedsDimension { holds, fails, undefined, .. } => {
