@@ -75,6 +75,7 @@ fn what_is_not_plain_is_refused() {
     says(MATRICES, r"A^0 B = B A^0", "the scripts of A are not understood");
     // What is no matrix may carry them.
     holds(MATRICES, r"\lambda^{1/2} A \lambda^{1/2} = \lambda A");
+    holds(MATRICES, r"\partial_k A^{-1}_{ij} = - A^{-1}_{il} (\partial_k A_{lm}) A^{-1}_{mj}");
     holds(MATRICES, r"\lambda^* A B = A \lambda^* B");
     says(MATRICES, r"A_i B = B A_i", "the scripts of A are not understood");
     says(MATRICES, r"1 + ((((A^8)^8)^8)^8)^8 = A", "a power of a matrix is too large");
