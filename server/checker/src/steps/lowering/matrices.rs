@@ -32,7 +32,7 @@ const COLUMN: &str = "column";
 
 /// The highest power of a matrix that is written out.
 const POWER: i128 = 8;
-/// The most nodes of a power of a matrix.
+/// The most nodes of a power or of half a commutator of matrices: nested, they grow by multiples.
 const NODES: usize = 2_000;
 
 /// What scripts do to a matrix: the power comes first.
@@ -113,7 +113,11 @@ impl Lowering<'_, '_, '_> {
         if !self.surroundings.has_matrices() {
             return Ok(None);
         }
-        let (acts, rest) = acts(factor)?;
+        let (acts, rest) = match acts(factor) {
+            // Of what is no matrix these scripts say something else.
+            Err(refusal) => return if self.is_matrix_kernel(&kernel.name) { Err(refusal) } else { Ok(None) },
+            Ok(acts) => acts,
+        };
         let made = use_of(&rest, kernel, self.eyes, false);
         let own = made.own_slots().count();
         if !self.is_matrix_kernel(&made.kernel) || acts == Acts::NONE && own == 2 {
@@ -138,7 +142,7 @@ impl Lowering<'_, '_, '_> {
             return Ok(Expression::Defined { definition, slots: slots.to_vec() });
         }
         let known = self.surroundings.meanings.known(&made.kernel, 2);
-        if made.letter == "I" && known.is_none() {
+        if is_identity(&made.kernel) && known.is_none() {
             return Ok(Expression::Delta(slots));
         }
         let natural = slots.map(|index| (index.family, index.level));
@@ -220,6 +224,9 @@ impl Lowering<'_, '_, '_> {
         if !self.is_matrix(&one) || !self.is_matrix(&two) {
             return Err("a commutator of what are neither derivatives nor matrices is not evaluated".to_owned());
         }
+        if size(&one).saturating_add(size(&two)) > NODES {
+            return Err("a commutator of matrices is too large".to_owned());
+        }
         let ahead = Expression::Product(self.joined(vec![one.clone(), two.clone()])?);
         let back = Expression::Product(self.joined(vec![two, one])?);
         Ok(Expression::Sum(vec![ahead, back.negated()]))
@@ -244,7 +251,6 @@ impl Lowering<'_, '_, '_> {
         let [row, column] = self.frame()?;
         let labels = self.frame_labels().ok_or("a matrix has no rows")?;
         let mut value = match acts.power {
-            0 => return self.identity(),
             power if power.abs() > POWER || size(&value).saturating_mul(power.unsigned_abs() as usize) > NODES => {
                 return Err("a power of a matrix is too large".to_owned());
             }
@@ -369,10 +375,15 @@ fn act(script: &Script) -> Option<Result<Acts, Refusal>> {
         [Item { kind: ItemKind::Mark(mark), .. }] if matches!(mark.as_str(), "dagger" | "*" | "ast") => {
             Some(Err("the adjoint of a matrix is not evaluated".to_owned()))
         }
-        items => scripts::power_of(items).map(|power| match power.denominator() {
-            1 => Ok(Acts { power: power.numerator(), transposed: false }),
-            _ => Err("a root of a matrix is not evaluated".to_owned()),
-        }),
+        // `A^0` and `A^1` may be what is left of a series.
+        items => {
+            scripts::power_of(items).filter(|power| *power != Rational::ZERO && *power != Rational::ONE).map(|power| {
+                match power.denominator() {
+                    1 => Ok(Acts { power: power.numerator(), transposed: false }),
+                    _ => Err("a root of a matrix is not evaluated".to_owned()),
+                }
+            })
+        }
     }
 }
 
@@ -385,6 +396,11 @@ fn is_transpose(kind: &ItemKind) -> bool {
         ItemKind::Operator(Operator::Joint(Joint::Times(Product::Other(sign)))) => *sign == "\\intercal",
         _ => false,
     }
+}
+
+/// `I` in any face, without accents and labels.
+fn is_identity(kernel: &str) -> bool {
+    matches!(kernel, "I" | "\\mathbb I" | "\\mathbf I" | "\\mathrm I" | "\\bm I")
 }
 
 /// A plain number, or a product that ends with a written 1: nobody multiplies a scalar by it.

@@ -72,8 +72,15 @@ fn what_is_not_plain_is_refused() {
     says(MATRICES, r"\sqrt{A} = A^{1/2}", "a root of a matrix is not evaluated");
     says(MATRICES, r"\exp(A) = A", "a function of a matrix is not evaluated");
     says(MATRICES, r"A^\dagger = A^T", "the adjoint of a matrix is not evaluated");
+    says(MATRICES, r"A^0 B = B A^0", "the scripts of A are not understood");
+    // What is no matrix may carry them.
+    holds(MATRICES, r"\lambda^{1/2} A \lambda^{1/2} = \lambda A");
+    holds(MATRICES, r"\partial_k A^{-1}_{ij} = - A^{-1}_{il} (\partial_k A_{lm}) A^{-1}_{mj}");
+    holds(MATRICES, r"\lambda^* A B = A \lambda^* B");
     says(MATRICES, r"A_i B = B A_i", "the scripts of A are not understood");
     says(MATRICES, r"1 + ((((A^8)^8)^8)^8)^8 = A", "a power of a matrix is too large");
+    let nested = format!("{}B{} = A", "[A, ".repeat(20), "]".repeat(20));
+    says(MATRICES, &nested, "a commutator of matrices is too large");
     let ranges = "i j run from 1 to 3; a b run from 1 to 2; A B are matrices; check this";
     says(ranges, r"A B = B A", "which of the declared ranges");
     let levels = "g_{ij} is a metric; A is a matrix; v^i is a vector; check this";

@@ -9,6 +9,7 @@ use indexwise_grammar::tree::{Atom, Bracket, Factor, Joint, Kernel, Level, Sum};
 use crate::conventions::built_in::is_derivative;
 use crate::terms::uses::{Use, use_of};
 
+use super::super::super::standing::slot_letters;
 use super::super::{Lowering, Refusal, Way};
 use super::acts;
 
@@ -17,7 +18,7 @@ const NESTED: usize = 16;
 
 impl Lowering<'_, '_, '_> {
     /// How many of the factors after a matrix are what it depends on: `A(t)`. A bracket after a matrix that holds
-    /// neither matrices nor their functions may be an argument as well, `A(0)`, and is refused.
+    /// neither matrices nor their functions nor indices may be an argument as well, `A(0)`, and is refused.
     pub(in super::super) fn arguments_of_matrix(&self, rest: &[Factor]) -> Result<usize, Refusal> {
         let Some(next) = rest.first() else { return Ok(0) };
         if self.is_argument(&Use::default(), next) {
@@ -28,7 +29,8 @@ impl Lowering<'_, '_, '_> {
         let sums = || group.parts.iter().flat_map(|part| &part.sides);
         let functions = sums().flat_map(|sum| &sum.terms).flat_map(|term| &term.factors).any(is_function);
         let factor = functions || group.bracket != Bracket::Round || next.joint != Joint::Beside;
-        if factor || sums().any(|sum| self.has_matrix(sum)) {
+        let is_factor = |sum| self.has_matrix(sum) || !slot_letters(sum, self.eyes).is_empty();
+        if factor || sums().any(is_factor) {
             return Ok(0);
         }
         Err("what a matrix takes in brackets is not understood".to_owned())
@@ -36,11 +38,11 @@ impl Lowering<'_, '_, '_> {
 
     /// Whether the argument of a function begins with a matrix, by its looks.
     pub(in super::super) fn begins_with_matrix(&self, rest: &[Factor]) -> bool {
-        let first = rest.iter().find(|factor| !matches!(factor.atom, Atom::Number(_) | Atom::Fraction(_)));
-        first.is_some_and(|_| self.looks_like_matrix(rest, NESTED))
+        self.looks_like_matrix(rest, NESTED)
     }
 
-    /// Whether the first of these factors, with what it acts on, looks like a matrix; functions are not.
+    /// Whether the first of these factors that is no number, with what acts on it, looks like a matrix; of functions
+    /// the adjugate alone does.
     fn looks_like_matrix(&self, factors: &[Factor], depth: usize) -> bool {
         let Some(depth) = depth.checked_sub(1) else { return false };
         let mut rest = factors.iter();
