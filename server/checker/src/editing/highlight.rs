@@ -112,6 +112,11 @@ mod tests {
             "<!-- indexwise: E_{ij} is symmetric -->\n$‸E_{ij} = E_{ji}$, a field $E_i$, and $q = E_{kk}$",
             "<!-- indexwise: ⟦E⟧_{ij} is symmetric -->\n$⟦E⟧_{ij} = ⟦E⟧_{ji}$, a field $E_i$, and $q = ⟦E⟧_{kk}$",
         );
+        lights(
+            Host::Latex,
+            "% indexwise: ‸g_{ij} is the metric; \\Gamma^i_{jk} is the Christoffel symbol of g\n$g_{ij}$ and $g$",
+            "% indexwise: ⟦g⟧_{ij} is the metric; \\Gamma^i_{jk} is the Christoffel symbol of ⟦g⟧\n$⟦g⟧_{ij}$ and $g$",
+        );
         lights(Host::Note, "Sag:\n\n  s‸igma_ij n_j = sigma_ik n_k\n", "Sag:\n\n  ⟦sigma⟧_ij n_j = ⟦sigma⟧_ik n_k\n");
     }
 

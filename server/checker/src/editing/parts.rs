@@ -59,13 +59,20 @@ impl Parts {
 
 /// Takes a statement of `text` apart.
 pub(super) fn parts_of(asked: &Asked<'_>, text: &str) -> Parts {
-    let (sketch, mut parts) = (asked.sketch, Vec::new());
+    let (sketch, mut parts) = (asked.sketch, named_parts(asked, text));
     let indices = indices(sketch, &asked.reading.choice);
     for (number, index) in indices.iter().enumerate() {
         let spans = index.spans(sketch).into_iter();
         let part = |span| Part { span, what: What::Index(number), typed: is_typed(text, span, &index.letter) };
         parts.extend(spans.map(part));
     }
+    parts.sort_by_key(|part| (part.span, !part.typed));
+    Parts { indices, parts }
+}
+
+/// The parts of a statement that are no indices, in the order of the tree.
+pub(super) fn named_parts(asked: &Asked<'_>, text: &str) -> Vec<Part> {
+    let mut parts = Vec::new();
     let mut told = told(asked.tree, text, asked.eyes);
     for side in &asked.tree.sides {
         walk(side, &mut |factor| {
@@ -74,8 +81,7 @@ pub(super) fn parts_of(asked: &Asked<'_>, text: &str) -> Parts {
             }
         });
     }
-    parts.sort_by_key(|part| (part.span, !part.typed));
-    Parts { indices, parts }
+    parts
 }
 
 fn kernel_parts(
@@ -106,19 +112,23 @@ fn kernel_parts(
         }
     }
     for script in &factor.scripts {
-        label_parts(script, &made, told, text, parts);
+        label_parts(asked, script, (&made, told), text, parts);
     }
 }
 
 /// What of a script names something: what fills no slot and is no exponent. Letters side by side are one word.
-fn label_parts(script: &Script, made: &Use, told: &Told, text: &str, parts: &mut Vec<Part>) {
+fn label_parts(asked: &Asked<'_>, script: &Script, (made, told): (&Use, &Told), text: &str, parts: &mut Vec<Part>) {
     let mut last: Option<(Span, CompactString)> = None;
     let exponent = |span: Span| {
         told.letters.iter().any(|(_, role, other)| *other == span && matches!(role, LetterRole::Kernel(_)))
     };
+    // In an exponent, which is a formula of its own, nothing is known of a letter.
+    let read = |name: &CompactString, span: Span| {
+        asked.sketch.places.iter().any(|place| place.span == span && place.letter == *name)
+    };
     for item in &script.items {
         let name = match &item.kind {
-            ItemKind::Letter(name) if !exponent(item.span) => name,
+            ItemKind::Letter(name) if !exponent(item.span) && read(name, item.span) => name,
             ItemKind::Label(name) | ItemKind::Styled(name) => name,
             _ => continue,
         };

@@ -104,8 +104,8 @@ impl View {
     fn looker(&self, document: usize) -> Option<Looker<'_>> {
         let prices = self.prices(document)?;
         let own = self.documents.get(document)?;
-        let (scores, customs) = (own.scores(&prices), Customs::of(&own.read.text, &prices));
-        Some(Looker { own, prices, scores, customs, trees: Trees::default() })
+        let (scores, customs) = self.scored(document)?;
+        Some(Looker { own, prices, scores, customs: *customs, trees: Trees::default() })
     }
 }
 
@@ -113,7 +113,7 @@ impl View {
 struct Looker<'v> {
     own: &'v Sketched,
     prices: Prices<'v>,
-    scores: Vec<i32>,
+    scores: &'v [i32],
     customs: Customs,
     trees: Trees,
 }
@@ -122,7 +122,7 @@ impl Looker<'_> {
     fn look<T: Default>(&mut self, statement: &Statement, take: impl FnOnce(&Asked<'_>) -> T) -> T {
         let Some(formula) = self.own.read.document.formulas.get(statement.formula) else { return T::default() };
         let (sketch, prices) = (&*statement.sketch, &self.prices);
-        let reading = &statement.read(&self.scores);
+        let reading = &statement.read(self.scores);
         let eyes = &Eyes::new(sketch, &reading.choice, prices, self.customs);
         self.trees.statement(&self.own.read, statement.formula, sketch.span, |tree| {
             take(&Asked { formula, number: statement.formula, tree, sketch, reading, prices, eyes })
@@ -137,7 +137,7 @@ impl Looker<'_> {
         let mut known = self.own.statements.iter().skip(known).take_while(|statement| statement.formula == number);
         let prices = &self.prices;
         let (sketch, reading) = match known.find(|statement| statement.sketch.span == tree.span) {
-            Some(statement) => (statement.sketch.clone(), statement.read(&self.scores)),
+            Some(statement) => (statement.sketch.clone(), statement.read(self.scores)),
             None => {
                 let sketch = Sketch::of(tree);
                 let scores = sketch.units.iter().map(|unit| prices.score(unit)).collect();
