@@ -4,8 +4,11 @@
 
 use std::sync::Arc;
 
+use indexwise_grammar::read_regions;
 use indexwise_grammar::span::Span;
 use indexwise_grammar::tree::{self, Formula};
+
+use rustc_hash::FxHashSet;
 
 use crate::conventions::inferred::Prices;
 use crate::reading::{self, Reading};
@@ -16,6 +19,9 @@ use crate::terms::symmetries::Customs;
 use super::directed::skipped;
 use super::judging::{Trees, is_without_sum};
 use super::{Sketched, Statement, View};
+
+/// Formulas that are read together where many are looked at.
+const FORMULAS_AT_ONCE: usize = 64;
 
 /// A statement that somebody asks about.
 pub(crate) struct Asked<'a> {
@@ -85,17 +91,28 @@ impl View {
         }
     }
 
+    /// The numbers of the formulas of a document that the author says to skip.
+    pub(crate) fn skipped(&self, document: usize) -> FxHashSet<usize> {
+        let own = self.documents.get(document).map(|own| &own.read);
+        own.map(|read| skipped(&read.declared, &read.document.formulas)).unwrap_or_default()
+    }
+
     /// Hands every statement of a document that touches a stretch of the text to a function, in order: those without
     /// scripts and those that the author says to skip among them, read by the same evidence.
     pub(crate) fn each_tree(&self, document: usize, within: Span, mut take: impl FnMut(&Asked<'_>)) {
-        let Some((own, mut looker)) = self.documents.get(document).zip(self.looker(document)) else { return };
-        let formulas = &own.read.document.formulas;
+        let Some((own, looker)) = self.documents.get(document).zip(self.looker(document)) else { return };
+        let read = &own.read;
+        let formulas = &read.document.formulas;
         let first = formulas.partition_point(|formula| formula.span.end < within.start);
-        let touching = formulas.iter().enumerate().skip(first);
-        for (number, _) in touching.take_while(|(_, formula)| formula.span.start <= within.end) {
-            for tree in looker.trees.statements(&own.read, number).to_vec() {
-                if tree.span.start <= within.end && within.start <= tree.span.end {
-                    looker.look_at_tree(number, &tree, &mut take);
+        let end = formulas.partition_point(|formula| formula.span.start <= within.end).max(first);
+        // There is one formula for each region.
+        let regions = read.document.scan.regions.get(first..end).unwrap_or_default();
+        for (chunk, regions) in regions.chunks(FORMULAS_AT_ONCE).enumerate() {
+            let number = first + chunk * FORMULAS_AT_ONCE;
+            for (number, formula) in (number..).zip(read_regions(regions, &read.text, read.host, &read.macros)) {
+                let touching = |tree: &&tree::Statement| tree.span.start <= within.end && within.start <= tree.span.end;
+                for tree in formula.statements.iter().filter(touching) {
+                    looker.look_at_tree(number, tree, &mut take);
                 }
             }
         }
@@ -131,7 +148,7 @@ impl Looker<'_> {
 }
 
 impl Looker<'_> {
-    fn look_at_tree(&mut self, number: usize, tree: &tree::Statement, take: &mut impl FnMut(&Asked<'_>)) {
+    fn look_at_tree(&self, number: usize, tree: &tree::Statement, take: &mut impl FnMut(&Asked<'_>)) {
         let Some(formula) = self.own.read.document.formulas.get(number) else { return };
         let known = self.own.statements.partition_point(|statement| statement.formula < number);
         let mut known = self.own.statements.iter().skip(known).take_while(|statement| statement.formula == number);
