@@ -106,6 +106,16 @@ mod tests {
     }
 
     #[test]
+    fn letters_of_arguments_belong_together() {
+        let found = lights(
+            Host::Markdown,
+            "$T^{ab} = \\int G^{ab}(x^‸c, y^c) \\rho(y^c) dV$",
+            "$T^{ab} = \\int G^{ab}(x^⟦c⟧, y^⟦c⟧) \\rho(y^⟦c⟧) dV$",
+        );
+        assert!(found.iter().all(|one| !one.partner));
+    }
+
+    #[test]
     fn a_kernel_lights_up_with_its_number_of_slots() {
         lights(
             Host::Markdown,
