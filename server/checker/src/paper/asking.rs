@@ -5,8 +5,11 @@
 use std::borrow::Cow;
 use std::sync::Arc;
 
+use indexwise_grammar::read_regions;
 use indexwise_grammar::span::Span;
 use indexwise_grammar::tree::{self, Formula};
+
+use rustc_hash::FxHashSet;
 
 use crate::conventions::prices::Prices;
 use crate::reading::{self, Reading};
@@ -86,20 +89,30 @@ impl View {
         }
     }
 
+    /// The numbers of the formulas of a document that the author says to skip.
+    pub(crate) fn skipped(&self, document: usize) -> FxHashSet<usize> {
+        let own = self.documents.get(document).map(|own| &own.read);
+        own.map(|read| skipped(&read.declared, &read.document.formulas)).unwrap_or_default()
+    }
+
     /// Hands every statement of a document that touches a stretch of the text to a function, in order: those without
     /// scripts and those that the author says to skip among them, read by the same evidence.
     pub(crate) fn each_tree(&self, document: usize, within: Span, mut take: impl FnMut(&Asked<'_>)) {
-        let Some((own, mut looker)) = self.documents.get(document).zip(self.looker(document)) else { return };
-        let formulas = &own.read.document.formulas;
+        let Some((own, looker)) = self.documents.get(document).zip(self.looker(document)) else { return };
+        let read = &own.read;
+        let formulas = &read.document.formulas;
         let first = formulas.partition_point(|formula| formula.span.end < within.start);
-        let touching = formulas.iter().enumerate().skip(first);
-        for (number, _) in touching.take_while(|(_, formula)| formula.span.start <= within.end) {
-            for tree in looker.trees.statements(&own.read, number).to_vec() {
-                if tree.span.start <= within.end && within.start <= tree.span.end {
-                    looker.look_at_tree(number, &tree, &mut take);
-                }
+        let end = formulas.partition_point(|formula| formula.span.start <= within.end).max(first);
+        // There is one formula for each region.
+        let regions = read.document.scan.regions.get(first..end).unwrap_or_default();
+        let mut numbers = first..;
+        read_regions(regions.iter(), &read.text, read.host, &read.macros, |formula| {
+            let Some(number) = numbers.next() else { return };
+            let touching = |tree: &&tree::Statement| tree.span.start <= within.end && within.start <= tree.span.end;
+            for tree in formula.statements.iter().filter(touching) {
+                looker.look_at_tree(number, tree, &mut take);
             }
-        }
+        });
     }
 
     fn looker(&self, document: usize) -> Option<Looker<'_>> {
@@ -127,7 +140,7 @@ impl Looker<'_> {
         })
     }
 
-    fn look_at_tree(&mut self, number: usize, tree: &tree::Statement, take: &mut impl FnMut(&Asked<'_>)) {
+    fn look_at_tree(&self, number: usize, tree: &tree::Statement, take: &mut impl FnMut(&Asked<'_>)) {
         let Some(formula) = self.own.read.document.formulas.get(number) else { return };
         let known = self.own.statements.partition_point(|statement| statement.formula < number);
         let mut known = self.own.statements.iter().skip(known).take_while(|statement| statement.formula == number);
