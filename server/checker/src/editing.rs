@@ -3,4 +3,15 @@
 //! The command line asks the same functions. Nothing here reports a finding; what cannot be answered is said with
 //! its reason.
 
+pub mod actions;
+pub mod completion;
+#[cfg(test)]
+mod cursor;
+pub mod hints;
+pub mod lenses;
+mod letters;
+pub mod outline;
+mod rows;
+mod saying;
+mod spots;
 pub mod write_out;

@@ -266,7 +266,7 @@ impl<'d> Judge<'d> {
         if let Some(symbols) = &mut self.symbols {
             let eyes = Eyes::new(sketch, &reading.choice, &self.prices, self.customs);
             self.trees.statement(&self.document.read, number, sketch.span, |tree| {
-                symbols.take(tree, &*self.document.read.text, &eyes);
+                symbols.take(tree, &self.document.read.text, &eyes);
             });
         }
         reading.odd.retain(|(letter, _)| self.prices.is_index_notation(letter));
