@@ -7,7 +7,9 @@ pub mod actions;
 pub mod completion;
 #[cfg(test)]
 mod cursor;
+pub mod folding;
 pub mod hints;
+pub mod ledger_view;
 pub mod lenses;
 mod letters;
 pub mod outline;
