@@ -9,6 +9,7 @@ mod reads;
 mod sentences;
 #[cfg(test)]
 mod tests;
+mod trying;
 mod view;
 
 use std::sync::Arc;
@@ -28,6 +29,7 @@ pub use implying::Implications;
 pub use memory::Memory;
 use reads::{Read, Sketched, Statement};
 pub use sentences::problems;
+pub(crate) use trying::edited;
 pub use view::View;
 
 /// One text of a paper.

@@ -12,6 +12,7 @@ use indexwise_grammar::tree::{self, Formula};
 use rustc_hash::FxHashSet;
 
 use crate::conventions::prices::Prices;
+use crate::ledger::Judged;
 use crate::reading::{self, Reading};
 use crate::sketch::Sketch;
 use crate::terms::Eyes;
@@ -37,6 +38,14 @@ pub(crate) struct Asked<'a> {
     pub prices: &'a Prices<'a>,
     /// What its letters and kernels mean.
     pub eyes: &'a Eyes<'a>,
+}
+
+impl<'a> Asked<'a> {
+    /// The statement as the rules see it, without its faults; `text` is that of its document.
+    pub(crate) fn judged(&self, text: &'a str) -> Judged<'a> {
+        let (sketch, reading) = (Cow::Borrowed(self.sketch), self.reading.clone());
+        Judged { text, formula: self.formula, sketch, reading, prices: *self.prices, faults: Vec::new() }
+    }
 }
 
 /// Why there is no statement to ask about.

@@ -70,7 +70,7 @@ impl View {
         Analysis { documents: (0..self.documents.len()).map(|number| judged(number).unwrap_or_default()).collect() }
     }
 
-    fn judge_document(
+    pub(super) fn judge_document(
         &self,
         number: usize,
         settings: &Settings,
