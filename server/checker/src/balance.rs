@@ -47,6 +47,8 @@ pub enum Event {
     Captured(Vec<u32>, u32),
     /// The terms of one sum or of all sides: for each its free place, or none.
     Terms(Vec<Compared>),
+    /// A place that a sum sign binds, and the sign: where its letters begin in `Sketch::bound`.
+    Bound(u32, u32),
 }
 
 /// A term or side as compared with others.

@@ -141,9 +141,13 @@ impl Change {
 
 /// What the author typed at a place, if it is the letter.
 fn typed<'t>(text: &'t str, place: &Place) -> Option<&'t str> {
-    let own = place.span.of(text);
-    let latex = indexwise_grammar::latex_letter(own.trim());
-    (latex == place.letter || own.replace(' ', "") == place.letter.replace(' ', "")).then_some(own)
+    is_typed(text, place.span, &place.letter).then(|| place.span.of(text))
+}
+
+/// Whether the author typed a letter at a place; if not, a macro wrote it.
+pub(crate) fn is_typed(text: &str, span: Span, letter: &str) -> bool {
+    let own = span.of(text);
+    indexwise_grammar::latex_letter(own.trim()) == letter || own.replace(' ', "") == letter.replace(' ', "")
 }
 
 /// The spelling of a letter where another stood: as the author writes it (a Unicode sign for a Unicode sign, a name

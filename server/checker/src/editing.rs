@@ -3,4 +3,17 @@
 //! The command line asks the same functions. Nothing here reports a finding; what cannot be answered is said with
 //! its reason.
 
+mod commands;
+pub mod highlight;
+pub mod hover;
+mod indices;
+mod kernels;
+mod labels;
+mod parts;
+pub mod references;
+pub mod rename;
+pub mod tokens;
+#[cfg(test)]
+mod trying;
+mod under;
 pub mod write_out;

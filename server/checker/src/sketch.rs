@@ -31,8 +31,8 @@ pub struct Sketch {
     pub code: Vec<Op>,
     /// The terms of all sums.
     pub terms: Vec<Term>,
-    /// Letters that sum signs bind, each perhaps under a switch.
-    pub bound: Vec<(CompactString, Option<u32>)>,
+    /// Letters that sum signs bind.
+    pub bound: Vec<Bound>,
     /// Between the sides.
     pub relations: Vec<RelationKind>,
     /// Letters in scripts.
@@ -138,6 +138,17 @@ impl Op {
             Self::Term(_, end) | Self::Square(_, end) | Self::Argument(_, end) | Self::Switch(_, end) => Some(end),
         }
     }
+}
+
+/// A letter that a sum sign binds.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Bound {
+    /// The letter.
+    pub letter: CompactString,
+    /// Binds only while this switch is on.
+    pub switch: Option<u32>,
+    /// Where it stands at the sum sign.
+    pub span: Span,
 }
 
 /// A letter in a script.
@@ -259,6 +270,7 @@ impl Sketch {
             .chain(self.sides.iter_mut().map(|side| &mut side.span))
             .chain(self.terms.iter_mut().map(|term| &mut term.span))
             .chain(self.places.iter_mut().flat_map(|place| [&mut place.span, &mut place.script]))
+            .chain(self.bound.iter_mut().map(|bound| &mut bound.span))
             .chain(self.quantities.iter_mut().map(|(_, span)| span))
             .chain(self.swallowed.iter_mut().flat_map(|it| [&mut it.script, &mut it.from, &mut it.kept]))
             .chain(self.stacked.iter_mut().flat_map(|it| [&mut it.span, &mut it.second]));

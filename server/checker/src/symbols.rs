@@ -183,6 +183,25 @@ impl Gatherer {
     }
 }
 
+/// The kernels and letters of a statement, in the order of its tree.
+#[derive(Debug, Default)]
+pub(crate) struct Told {
+    /// Every use of a kernel; derivatives, differentials and words are none.
+    pub uses: Vec<Use>,
+    /// Letters, what they are used as, and where.
+    pub letters: Vec<(CompactString, LetterRole, Span)>,
+}
+
+/// What a statement of `text` uses its letters as.
+pub(crate) fn told(statement: &Statement, text: &str, eyes: &Eyes<'_>) -> Told {
+    let mut roles = Roles::new(statement, text, eyes);
+    for side in &statement.sides {
+        walk(side, &mut |factor| roles.take(factor));
+    }
+    let (kernels, letters) = roles.finish();
+    Told { uses: kernels.into_iter().map(|(made, _)| made).collect(), letters }
+}
+
 /// Counts a use of a kernel.
 fn count(kernels: &mut FxHashMap<(CompactString, usize), Symbol>, made: &Use, eyes: &Eyes<'_>) {
     let slots = made.own_slots().count();
@@ -202,7 +221,7 @@ fn count(kernels: &mut FxHashMap<(CompactString, usize), Symbol>, made: &Use, ey
 }
 
 /// What a use is symmetric in. Of stacked scripts the order of the slots is taken as written.
-fn symmetries(made: &Use, eyes: &Eyes<'_>) -> Vec<String> {
+pub(crate) fn symmetries(made: &Use, eyes: &Eyes<'_>) -> Vec<String> {
     let bare = Use { slots: made.own_slots().cloned().collect(), stacked: false, ..made.clone() };
     let piece = Piece { made: bare, ..Piece::default() };
     in_words(&exchanges(&piece, eyes.meanings, eyes.customs))

@@ -4,7 +4,7 @@
 //! letter and allocates only where events are asked for.
 
 use crate::conventions::built_in::{LetterClass, class_of, is_derivative};
-use crate::sketch::{Op, Place, Run, Shape, Sketch, Term};
+use crate::sketch::{Bound, Op, Place, Run, Shape, Sketch, Term};
 
 use super::{Choice, Compared, Event, Odd, compared_groups};
 
@@ -70,6 +70,9 @@ struct Comparison {
     list: Vec<Compared>,
 }
 
+/// The sum sign that binds the letter here, if one does: where its letters begin in `Sketch::bound`.
+type Binding = Option<u32>;
+
 /// A count of one letter under one choice.
 pub(super) struct Count<'a> {
     sketch: &'a Sketch,
@@ -91,7 +94,7 @@ impl<'a> Count<'a> {
             let mut compared = Comparison::default();
             let mut odd = Odd::Balanced;
             for (number, side) in (0_u32..).zip(&sketch.sides) {
-                odd = odd.max(self.terms(side.code, false, Some(number), &mut compared).odd);
+                odd = odd.max(self.terms(side.code, None, Some(number), &mut compared).odd);
             }
             return odd.max(self.compare(compared));
         };
@@ -100,7 +103,7 @@ impl<'a> Count<'a> {
             let mut compared = Comparison::default();
             for ((number, side), own) in (0_u32..).zip(&sketch.sides).zip(&groups) {
                 if *own == group {
-                    odd = odd.max(self.terms(side.code, false, Some(number), &mut compared).odd);
+                    odd = odd.max(self.terms(side.code, None, Some(number), &mut compared).odd);
                 }
             }
             odd = odd.max(self.compare(compared));
@@ -114,7 +117,7 @@ impl<'a> Count<'a> {
             return (None, None);
         }
         let mut tally = Tally::default();
-        self.product(inside, &mut false, &mut tally);
+        self.product(inside, &mut None, &mut tally);
         let settled = self.settle(tally);
         (settled.open.first(), settled.closed)
     }
@@ -135,7 +138,7 @@ impl<'a> Count<'a> {
     }
 
     /// Settles every term of a sum; those that can be compared are added to `out`.
-    fn terms(&mut self, run: Run, bound: bool, side: Option<u32>, out: &mut Comparison) -> Tally {
+    fn terms(&mut self, run: Run, bound: Binding, side: Option<u32>, out: &mut Comparison) -> Tally {
         let reach = self.sketch.reach.is_some_and(|switch| self.is_on(switch));
         let mut sum = Tally::default();
         let mut bound_so_far = bound;
@@ -219,7 +222,7 @@ impl<'a> Count<'a> {
         self.sketch.terms.get(number as usize).map(|term| (term, Run { start: at + 1, end }))
     }
 
-    fn product(&mut self, run: Run, bound: &mut bool, out: &mut Tally) {
+    fn product(&mut self, run: Run, bound: &mut Binding, out: &mut Tally) {
         let mut at = run.start;
         while at < run.end {
             let Some(op) = self.sketch.code.get(at as usize).copied() else { return };
@@ -228,11 +231,14 @@ impl<'a> Count<'a> {
     }
 
     /// One instruction; what it holds begins at `inside`. Returns where the next one stands.
-    fn op(&mut self, op: Op, inside: u32, bound: &mut bool, out: &mut Tally) -> u32 {
+    fn op(&mut self, op: Op, inside: u32, bound: &mut Binding, out: &mut Tally) -> u32 {
         match op {
             Op::Place(number) => {
-                if !*bound && self.is_index(number) {
-                    out.open.push(number);
+                if self.is_index(number) {
+                    match *bound {
+                        None => out.open.push(number),
+                        Some(sign) => self.tell(|| Event::Bound(number, sign)),
+                    }
                 }
                 inside
             }
@@ -282,23 +288,23 @@ impl<'a> Count<'a> {
             Op::Bind(start, end) => {
                 let letters = self.sketch.bound.get(start as usize..end as usize).unwrap_or_default();
                 let name = self.name();
-                let binds = |(letter, switch): &(compact_str::CompactString, Option<u32>)| {
-                    letter == name && switch.is_none_or(|switch| self.is_on(switch))
-                };
-                *bound |= letters.iter().any(binds);
+                let binds = |one: &Bound| one.letter == name && one.switch.is_none_or(|switch| self.is_on(switch));
+                if letters.iter().any(binds) {
+                    *bound = Some(start);
+                }
                 inside
             }
         }
     }
 
-    fn alone(&mut self, start: u32, end: u32, bound: &mut bool) -> Tally {
+    fn alone(&mut self, start: u32, end: u32, bound: &mut Binding) -> Tally {
         let mut tally = Tally::default();
         self.product(Run { start, end }, bound, &mut tally);
         tally
     }
 
     /// A sum in brackets brings a free index to the product around it; its dummies are its own.
-    fn sum(&mut self, run: Run, bound: bool) -> Tally {
+    fn sum(&mut self, run: Run, bound: Binding) -> Tally {
         let mut compared = Comparison::default();
         let mut tally = self.terms(run, bound, None, &mut compared);
         if let Some(free) = compared.first_free {

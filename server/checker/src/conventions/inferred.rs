@@ -126,8 +126,9 @@ impl Evidence {
 
     /// Sum signs speak against the summation convention, whether the statement balances or not.
     fn vote_sums(&mut self, sketch: &Sketch) {
-        for (n, (letter, _)) in sketch.bound.iter().enumerate() {
-            let again = sketch.bound.iter().take(n).any(|(other, _)| other == letter);
+        for (n, bound) in sketch.bound.iter().enumerate() {
+            let letter = &bound.letter;
+            let again = sketch.bound.iter().take(n).any(|other| other.letter == *letter);
             let counts = self.sums.get_mut(class_of(letter) as usize).filter(|_| !again);
             if let (Some(counts), Some(_)) = (counts, sketch.number_of(letter)) {
                 bump(counts, 1);
@@ -428,6 +429,11 @@ impl Prices<'_> {
     /// Whether levels are worth a word in messages: the file writes pairs one up, one down.
     pub fn speaks_of_levels(&self, letter: &str) -> bool {
         self.file.written[0] > 0 || self.level_habit(letter) == LevelHabit::InForce
+    }
+
+    /// Statements of the file in which a letter is surely an index.
+    pub fn index_votes(&self, letter: &str) -> u32 {
+        self.file.index.get(letter).copied().unwrap_or(0)
     }
 
     /// What is done about levels in a class of letters.

@@ -29,7 +29,7 @@ use crate::paper::{Asked, Unasked, View};
 
 use collecting::{Collected, collect};
 use place::{Located, factors_of, items_of, locate};
-use ranges::range_of;
+pub(in crate::editing) use ranges::range_of;
 
 /// The most terms that a contraction is written out to, before any are collected: four letters over four values.
 pub const TERMS_BUDGET: usize = 256;

@@ -2,11 +2,13 @@
 //!
 //! The view was read and counted as for a check, so that a question sees what the check saw.
 
+use std::sync::Arc;
+
 use indexwise_grammar::span::Span;
 use indexwise_grammar::tree::{self, Formula};
 
 use crate::conventions::inferred::Prices;
-use crate::reading::Reading;
+use crate::reading::{self, Reading};
 use crate::sketch::Sketch;
 use crate::terms::Eyes;
 use crate::terms::symmetries::Customs;
@@ -83,6 +85,22 @@ impl View {
         }
     }
 
+    /// Hands every statement of a document that touches a stretch of the text to a function, in order: those without
+    /// scripts and those that the author says to skip among them, read by the same evidence.
+    pub(crate) fn each_tree(&self, document: usize, within: Span, mut take: impl FnMut(&Asked<'_>)) {
+        let Some((own, mut looker)) = self.documents.get(document).zip(self.looker(document)) else { return };
+        let formulas = &own.read.document.formulas;
+        let first = formulas.partition_point(|formula| formula.span.end < within.start);
+        let touching = formulas.iter().enumerate().skip(first);
+        for (number, _) in touching.take_while(|(_, formula)| formula.span.start <= within.end) {
+            for tree in looker.trees.statements(&own.read, number).to_vec() {
+                if tree.span.start <= within.end && within.start <= tree.span.end {
+                    looker.look_at_tree(number, &tree, &mut take);
+                }
+            }
+        }
+    }
+
     fn looker(&self, document: usize) -> Option<Looker<'_>> {
         let prices = self.prices(document)?;
         let own = self.documents.get(document)?;
@@ -109,6 +127,26 @@ impl Looker<'_> {
         self.trees.statement(&self.own.read, statement.formula, sketch.span, |tree| {
             take(&Asked { formula, number: statement.formula, tree, sketch, reading, prices, eyes })
         })
+    }
+}
+
+impl Looker<'_> {
+    fn look_at_tree(&mut self, number: usize, tree: &tree::Statement, take: &mut impl FnMut(&Asked<'_>)) {
+        let Some(formula) = self.own.read.document.formulas.get(number) else { return };
+        let known = self.own.statements.partition_point(|statement| statement.formula < number);
+        let mut known = self.own.statements.iter().skip(known).take_while(|statement| statement.formula == number);
+        let prices = &self.prices;
+        let (sketch, reading) = match known.find(|statement| statement.sketch.span == tree.span) {
+            Some(statement) => (statement.sketch.clone(), statement.read(&self.scores)),
+            None => {
+                let sketch = Sketch::of(tree);
+                let scores = sketch.units.iter().map(|unit| prices.score(unit)).collect();
+                let reading = reading::read(&sketch, scores);
+                (Arc::new(sketch), reading)
+            }
+        };
+        let eyes = &Eyes::new(&sketch, &reading.choice, prices, self.customs);
+        take(&Asked { formula, number, tree, sketch: &sketch, reading: &reading, prices, eyes });
     }
 }
 

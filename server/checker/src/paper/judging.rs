@@ -266,7 +266,7 @@ impl<'d> Judge<'d> {
         if let Some(symbols) = &mut self.symbols {
             let eyes = Eyes::new(sketch, &reading.choice, &self.prices, self.customs);
             self.trees.statement(&self.document.read, number, sketch.span, |tree| {
-                symbols.take(tree, &*self.document.read.text, &eyes);
+                symbols.take(tree, &self.document.read.text, &eyes);
             });
         }
         reading.odd.retain(|(letter, _)| self.prices.is_index_notation(letter));
@@ -384,7 +384,8 @@ impl Trees {
         self.statements(read, number).iter().find(|statement| statement.span == span).map(take).unwrap_or_default()
     }
 
-    fn statements(&mut self, read: &Read, number: usize) -> &[tree::Statement] {
+    /// The statements of a formula.
+    pub(super) fn statements(&mut self, read: &Read, number: usize) -> &[tree::Statement] {
         if self.formula.as_ref().is_none_or(|(known, _)| *known != number) {
             let region = read.document.scan.regions.get(number);
             let tree = region.map(|region| read_region(region, &read.text, read.host, &read.macros));

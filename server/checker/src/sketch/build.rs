@@ -18,7 +18,7 @@ use super::habits::{
     is_zero, letters_of, matches_anything,
 };
 use super::scripts::{Carrier, Power, read_scripts};
-use super::{Shape, Sketch, Switch};
+use super::{Bound, Shape, Sketch, Switch};
 
 /// Price of taking several parts in a bracket for components rather than arguments or a commutator.
 const LIST_PRICE: i32 = 10;
@@ -387,7 +387,7 @@ impl Builder {
 
     /// A sum sign binds the letters of its bounds: those before a relation surely, those after one perhaps.
     fn bind(&mut self, walk: &mut Walk<'_>, factor: &Factor) {
-        let mut bound: Vec<(CompactString, Option<u32>)> = Vec::new();
+        let mut bound: Vec<Bound> = Vec::new();
         for script in factor.scripts.iter().filter(|script| script.level == Level::Down) {
             // A limit may bind the letter of its variable or leave it free.
             let limit = matches!(factor.atom, Atom::Big(Big::Limit, _));
@@ -395,9 +395,12 @@ impl Builder {
             for item in &script.items {
                 match &item.kind {
                     ItemKind::Relation(_) => doubtful = Some(self.switch(Switch::new(true, 0))),
-                    ItemKind::Letter(letter) | ItemKind::Styled(letter) => bound.push((letter.clone(), doubtful)),
+                    ItemKind::Letter(letter) | ItemKind::Styled(letter) => {
+                        bound.push(Bound { letter: letter.clone(), switch: doubtful, span: item.span });
+                    }
                     ItemKind::Factor(inner) => {
-                        bound.extend(letters_of(inner).into_iter().map(|letter| (letter, doubtful)));
+                        let own = letters_of(inner).into_iter();
+                        bound.extend(own.map(|(letter, span)| Bound { letter, switch: doubtful, span }));
                     }
                     _ => {}
                 }

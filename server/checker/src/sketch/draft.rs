@@ -1,9 +1,8 @@
 //! The tree that a statement is drafted in while its sketch is built, and its way into flat code.
 
-use compact_str::CompactString;
 use indexwise_grammar::span::Span;
 
-use super::{Op, Run, Side, Sketch, Term};
+use super::{Bound, Op, Run, Side, Sketch, Term};
 
 /// A term of a side or of a sum in brackets.
 #[derive(Clone, Debug)]
@@ -44,7 +43,7 @@ pub(super) enum Node {
     /// Counts only while the switch is on.
     Switch(u32, Box<Node>),
     /// A sum sign: letters bound in the rest of the product, each perhaps under a switch.
-    Bind(Vec<(CompactString, Option<u32>)>),
+    Bind(Vec<Bound>),
 }
 
 /// Adds a side to the code of a sketch.

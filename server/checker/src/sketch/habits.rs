@@ -1,6 +1,7 @@
 //! Habits of writing that the tree alone shows: what matches anything, what is a function's argument.
 
 use compact_str::CompactString;
+use indexwise_grammar::span::Span;
 use indexwise_grammar::tree::{Atom, Bracket, Factor, Group, Item, ItemKind, Joint, Kernel, Statement, Sum, Term};
 
 use crate::conventions::built_in::is_point_kernel;
@@ -83,13 +84,13 @@ pub(super) fn is_number(part: &Statement) -> bool {
 }
 
 /// The letters that a bound with scripts names: the kernel, the letters below it, and both together.
-pub(super) fn letters_of(factor: &Factor) -> Vec<CompactString> {
+pub(super) fn letters_of(factor: &Factor) -> Vec<(CompactString, Span)> {
     let Atom::Kernel(kernel) = &factor.atom else { return Vec::new() };
-    let mut out = vec![kernel.name.clone()];
+    let mut out = vec![(kernel.name.clone(), factor.span)];
     for item in factor.scripts.iter().flat_map(|script| &script.items) {
         if let ItemKind::Letter(letter) = &item.kind {
-            out.push(compact_str::format_compact!("{}_{letter}", kernel.name));
-            out.push(letter.clone());
+            out.push((compact_str::format_compact!("{}_{letter}", kernel.name), factor.span));
+            out.push((letter.clone(), item.span));
         }
     }
     out

@@ -88,7 +88,7 @@ pub(super) fn locate<'a>(asked: &Asked<'a>, offset: u32) -> Result<Located<'a>, 
 /// Why no sum stands at a place with these letters.
 fn refusal(asked: &Asked<'_>, term: &Term, letters: &[CompactString]) -> Refusal {
     for letter in letters {
-        if asked.sketch.bound.iter().any(|(bound, _)| bound == letter) {
+        if asked.sketch.bound.iter().any(|bound| bound.letter == *letter) {
             return Refusal::SumSign(letter.clone());
         }
         if asked.reading.odd.iter().any(|(other, odd)| other == letter && *odd == Odd::Thrice) {

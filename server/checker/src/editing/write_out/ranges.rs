@@ -26,7 +26,7 @@ const DEFAULT_RANGE_WITH_TIME: [u32; 2] = [0, 3];
 const MOST_MEMBERS: u32 = 65_536;
 
 /// The values of a letter that is summed in a term.
-pub(super) fn range_of(letter: &CompactString, term: &Term, asked: &Asked<'_>) -> Summed {
+pub(in crate::editing) fn range_of(letter: &CompactString, term: &Term, asked: &Asked<'_>) -> Summed {
     let meanings = asked.eyes.meanings;
     let family = meanings.family(letter).or_else(|| family_of_slot(letter, term, asked.eyes));
     let (values, source) = match family.and_then(|family| members(family, meanings)) {
