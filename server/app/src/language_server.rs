@@ -18,6 +18,7 @@ mod looking;
 mod outbox;
 mod papers;
 mod parent;
+mod places;
 mod publishing;
 mod pulling;
 mod reading;

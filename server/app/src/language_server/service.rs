@@ -21,7 +21,7 @@ use super::event::{Event, Question};
 use super::looking::Look;
 use super::reading::Judged;
 use super::settings::SECTION;
-use super::{actions, pulling};
+use super::{actions, places, pulling, tokens};
 
 /// The service.
 pub struct Service {
@@ -148,6 +148,9 @@ impl LanguageServer for Service {
     async fn diagnostic(&self, params: DocumentDiagnosticParams) -> Result<DocumentDiagnosticReportResult> {
         let before = params.previous_result_id;
         let report = self.ask(params.text_document.uri, Vec::new(), When::Unmoved, move |look| {
+            if !look.client().pulls {
+                return Err(Error::method_not_found());
+            }
             Ok(Some(pulling::document(&look.judged, look.document, before.as_deref())))
         });
         let report = report.await?.unwrap_or_else(pulling::nothing);
@@ -162,11 +165,63 @@ impl LanguageServer for Service {
         Ok(WorkspaceDiagnosticReportResult::Report(report.await?))
     }
 
+    async fn hover(&self, params: HoverParams) -> Result<Option<Hover>> {
+        let (uri, place) = at(params.text_document_position_params);
+        self.ask(uri, place, When::Freshly, |look| Ok(places::hover(look))).await
+    }
+
+    async fn document_highlight(&self, params: DocumentHighlightParams) -> Result<Option<Vec<DocumentHighlight>>> {
+        let (uri, place) = at(params.text_document_position_params);
+        self.ask(uri, place, When::Unmoved, |look| Ok(Some(places::highlights(look)))).await
+    }
+
+    async fn references(&self, params: ReferenceParams) -> Result<Option<Vec<Location>>> {
+        let (uri, place) = at(params.text_document_position);
+        let all = params.context.include_declaration;
+        self.ask(uri, place, When::Unmoved, move |look| Ok(Some(places::references(look, all)))).await
+    }
+
+    async fn goto_definition(&self, params: GotoDefinitionParams) -> Result<Option<GotoDefinitionResponse>> {
+        let (uri, place) = at(params.text_document_position_params);
+        let answer = |look: &Look| Ok(Some(GotoDefinitionResponse::Array(places::definition(look))));
+        self.ask(uri, place, When::Unmoved, answer).await
+    }
+
+    async fn prepare_rename(&self, params: TextDocumentPositionParams) -> Result<Option<PrepareRenameResponse>> {
+        let (uri, place) = at(params);
+        self.ask(uri, place, When::Unmoved, places::prepare_rename).await
+    }
+
+    async fn rename(&self, params: RenameParams) -> Result<Option<WorkspaceEdit>> {
+        let (uri, place) = at(params.text_document_position);
+        let name = params.new_name;
+        self.ask(uri, place, When::Unmoved, move |look| places::rename(look, &name)).await
+    }
+
+    async fn semantic_tokens_full(&self, params: SemanticTokensParams) -> Result<Option<SemanticTokensResult>> {
+        let answer = |look: &Look| Ok(Some(tokens::within(look, look.whole()).into()));
+        self.ask(params.text_document.uri, Vec::new(), When::Unmoved, answer).await
+    }
+
+    async fn semantic_tokens_range(
+        &self,
+        params: SemanticTokensRangeParams,
+    ) -> Result<Option<SemanticTokensRangeResult>> {
+        let places = vec![params.range.start, params.range.end];
+        let answer = |look: &Look| Ok(Some(tokens::within(look, look.selection()).into()));
+        self.ask(params.text_document.uri, places, When::Unmoved, answer).await
+    }
+
     async fn code_action(&self, params: CodeActionParams) -> Result<Option<CodeActionResponse>> {
         let CodeActionParams { text_document, range, context, .. } = params;
         let places = vec![range.start, range.end];
         self.ask(text_document.uri, places, When::Unmoved, move |look| Ok(actions::actions(look, &context))).await
     }
+}
+
+/// The document and the place of a question.
+fn at(params: TextDocumentPositionParams) -> (Url, Vec<Position>) {
+    (params.text_document.uri, vec![params.position])
 }
 
 /// The part of a client's settings that is ours: some send all of them, some only that part.
