@@ -205,17 +205,15 @@ fn parts_that_are_not_saved_count_as_they_stand_in_the_editor() {
     let folder = Folder::new(&[("main.tex", main), ("part.tex", b"on the disk")]);
     let mut client = Client::session(folder.path(), &rich());
     let (root, part) = (uri(&folder.path().join("main.tex")), uri(&folder.path().join("part.tex")));
-    client.open(&part, "latex", "$\\vel{i} = w_k$");
-    assert_eq!(rules(&client.diagnostics(&part)), ["free-index-mismatch"]);
+    client.open(&part, "latex", "$\\vel{i} = B^j C_{ij} + D_i + E_k$");
+    let first = json!(client.diagnostics(&part));
+    assert_eq!(first.as_array().unwrap().len(), 1);
     // The macro gets another meaning in the root, which is not saved either.
-    client.open(&root, "latex", &String::from_utf8_lossy(main).replace("v_{#1}", "v_k"));
-    assert_eq!(rules(&client.diagnostics(&part)), [""; 0]);
+    client.open(&root, "latex", &String::from_utf8_lossy(main).replace("v_{#1}", "s"));
+    client.wait("other findings", |client| (client.published(&part)?["diagnostics"] != first).then_some(()));
     // The root goes back to what is on the disk.
     client.notify("textDocument/didClose", json!({"textDocument": {"uri": root}}));
-    client.wait("the finding", |client| {
-        let published = client.published(&part)?;
-        (published["diagnostics"].as_array()?.len() == 1).then_some(())
-    });
+    client.wait("the first findings", |client| (client.published(&part)?["diagnostics"] == first).then_some(()));
     // A part that asks for another part is read with it at once.
     fs::write(folder.path().join("more.tex"), SLIP).unwrap();
     let more = uri(&folder.path().join("more.tex"));
@@ -247,10 +245,10 @@ fn languages_are_told_apart_by_their_names() {
     let folder = folder();
     let mut client = Client::session(folder.path(), &rich());
     for (language, text, found) in [
-        ("markdown", "$A_i = B_k$ and \\(A_i = B_k\\)", 1),
-        ("quarto", "$A_i = B_k$", 1),
-        ("indexwise-note", "A_i = B_k", 1),
-        ("plaintex", "$A_i = B_k$", 1),
+        ("markdown", "A word.\n\n    \\[ A_i = B^j C_{ij} + D_i + E_k \\]\n\n$A_i = B^j C_{ij} + D_i + E_k$\n", 1),
+        ("quarto", "$A_i = B^j C_{ij} + D_i + E_k$", 1),
+        ("indexwise-note", "  A_i = B^j C_ij + D_i + E_k\n", 1),
+        ("plaintex", SLIP, 1),
     ] {
         let name = format!("untitled:{language}");
         client.open(&name, language, text);
@@ -302,12 +300,22 @@ fn settings_and_configuration_files_change_what_is_found() {
     assert_eq!(client.end(), 0);
 }
 
+/// A sign got lost on the way.
+const DERIVATION: &str = "conventions
+  i j k l m run from 1 to 3
+  i j k l m are cartesian
+  u_i v_i are vectors
+
+  q_i = epsilon_ijk epsilon_klm u_j v_l u_m
+      = u_j v_i u_j + u_j v_j u_i
+";
+
 #[test]
 fn verdicts_come_after_the_rest() {
     let folder = folder();
     let mut client = Client::session(folder.path(), &rich());
     let name = uri(&folder.path().join("a.inote"));
-    client.open(&name, "indexwise-note", "v_i w_i = w_i v_i = 2 v_i w_i\n");
+    client.open(&name, "indexwise-note", DERIVATION);
     client.wait("the verdict", |client| {
         let list = client.published(&name)?["diagnostics"].as_array()?;
         list.iter().any(|one| one["code"].as_str().unwrap().starts_with("step-")).then_some(())

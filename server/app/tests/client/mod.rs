@@ -260,6 +260,11 @@ impl Client {
         })
     }
 
+    /// Forgets what was told. What is on its way has no version, since its text is closed.
+    pub fn forget(&mut self) {
+        self.told.clear();
+    }
+
     /// What was published last for a text.
     pub fn published(&self, uri: &str) -> Option<&Value> {
         let published = |told: &&Value| {
