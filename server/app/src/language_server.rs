@@ -24,9 +24,11 @@ mod pulling;
 mod reading;
 mod service;
 mod settings;
+mod structure;
 mod tokens;
 mod transport;
 mod worker;
+mod writing;
 
 use std::sync::Arc;
 use std::sync::mpsc::sync_channel;
@@ -78,7 +80,10 @@ async fn serve(events: std::sync::mpsc::SyncSender<Event>, outbox: Arc<Outbox>) 
         let answers = events.clone();
         let settings = move |section| drop(answers.send(Event::SettingsAnswered(section)));
         tokio::spawn(outbox.deliver(wire, settings));
-        Service::new(events.clone(), move |id| drop(parent.send(id)))
+        Service::new(events.clone(), move |id| {
+            // Whoever watches is gone when the session is over.
+            let _ = parent.send(id);
+        })
     });
     let session = transport::serve(tokio::io::stdin(), tokio::io::stdout(), service, socket);
     let orphaned = async {

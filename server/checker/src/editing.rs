@@ -3,15 +3,26 @@
 //! The command line asks the same functions. Nothing here reports a finding; what cannot be answered is said with
 //! its reason.
 
+pub mod actions;
 mod commands;
+pub mod completion;
+#[cfg(test)]
+mod cursor;
 pub mod highlight;
+pub mod hints;
 pub mod hover;
 mod indices;
 mod kernels;
 mod labels;
+pub mod lenses;
+mod letters;
+pub mod outline;
 mod parts;
 pub mod references;
 pub mod rename;
+mod rows;
+mod saying;
+mod spots;
 pub mod tokens;
 #[cfg(test)]
 mod trying;

@@ -111,6 +111,27 @@ pub struct Edit {
     pub text: String,
 }
 
+impl Edit {
+    /// The edit that puts a text at a place, set apart from words that it would run into.
+    pub(crate) fn pasted(text: &str, span: Span, by: &str) -> Self {
+        let before = text.get(..span.start as usize).unwrap_or_default();
+        let after = text.get(span.end as usize..).unwrap_or_default();
+        let word = |letter: Option<char>| letter.is_some_and(char::is_alphabetic);
+        let in_command =
+            before.trim_end_matches(char::is_alphabetic).ends_with('\\') && word(before.chars().next_back());
+        let command = by.trim_end_matches(char::is_alphabetic).ends_with('\\') && word(by.chars().next_back());
+        let mut put = String::new();
+        if in_command && word(by.chars().next()) {
+            put.push(' ');
+        }
+        put.push_str(by);
+        if command && word(after.chars().next()) {
+            put.push(' ');
+        }
+        Self { span, text: put }
+    }
+}
+
 /// The ledger of a statement as people see it: one row a side, or a term of a side.
 #[derive(Clone, Debug, PartialEq, Eq)]
 pub struct Ledger {

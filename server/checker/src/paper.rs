@@ -8,6 +8,7 @@ mod reads;
 mod sentences;
 #[cfg(test)]
 mod tests;
+mod trying;
 mod view;
 
 use std::sync::Arc;
@@ -26,6 +27,7 @@ pub(crate) use asking::{Asked, Unasked};
 pub use implying::Implications;
 use reads::{Read, Sketched, Statement};
 pub use sentences::problems;
+pub(crate) use trying::edited;
 pub use view::View;
 
 /// One text of a paper.

@@ -1,42 +1,66 @@
-//! Code actions: the fixes of findings.
+//! Code actions: fixes of findings, and what else may be done at a place; and edits as the client takes them.
 
 use std::collections::HashMap;
 
+use indexwise_checker::editing::actions::{Action, ActionKind, actions};
 use indexwise_checker::finding::{Edit, Finding};
+use serde_json::to_value;
 use tower_lsp::lsp_types::{
-    CodeAction, CodeActionContext, CodeActionKind, CodeActionOrCommand, CodeActionResponse,
+    CodeAction, CodeActionContext, CodeActionKind, CodeActionOrCommand, CodeActionResponse, Command, Diagnostic,
     DocumentChanges, OneOf, OptionalVersionedTextDocumentIdentifier, TextDocumentEdit, WorkspaceEdit,
 };
 
+use super::commands::APPLY;
 use super::convert::diagnostic;
 use super::looking::Look;
 
+/// What puts something in is a kind of its own below refactoring.
+const INSERT: CodeActionKind = CodeActionKind::new("refactor.insert");
+
 /// The actions at a selection.
-pub fn actions(look: &Look, context: &CodeActionContext) -> Option<CodeActionResponse> {
-    if !look.client().action_literals {
-        return None;
+pub fn at_selection(look: &Look, context: &CodeActionContext) -> Option<CodeActionResponse> {
+    let actions = offered(look);
+    let asked = actions.into_iter().filter(|action| wanted(context, &kind(action.kind)));
+    if look.client().action_literals {
+        return Some(asked.map(|action| CodeActionOrCommand::CodeAction(literal(look, action))).collect());
     }
-    let selection = look.selection();
-    let found = look.found()?;
-    let touching = |finding: &&Finding| finding.span.start <= selection.end && selection.start <= finding.span.end;
-    let mut actions = Vec::new();
-    for finding in found.findings.iter().filter(touching) {
-        for (place, fix) in finding.fixes.iter().enumerate() {
-            let kind = CodeActionKind::QUICKFIX;
-            if wanted(context, &kind) {
-                let preferred = place == 0 && fix.bulk.is_ok();
-                actions.push(CodeActionOrCommand::CodeAction(CodeAction {
-                    title: fix.title.clone(),
-                    kind: Some(kind),
-                    diagnostics: shown(look, finding).map(|shown| vec![shown]),
-                    edit: Some(edit(look, &fix.edits)),
-                    is_preferred: look.client().preferred_actions.then_some(preferred),
-                    ..CodeAction::default()
-                }));
-            }
-        }
+    // Such a client runs commands; without the ability to make our edits, nothing can be done.
+    let commands = asked.filter(|_| look.client().applies_edits).map(|action| {
+        let edit = to_value(edit(look, &action.edits)).unwrap_or_default();
+        let arguments = Some(vec![action.title.clone().into(), edit]);
+        CodeActionOrCommand::Command(Command { title: action.title, command: APPLY.to_owned(), arguments })
+    });
+    Some(commands.collect())
+}
+
+/// What may be done at a selection.
+pub fn offered(look: &Look) -> Vec<Action> {
+    let found = look.found().map(|found| actions(look.view(), look.document, look.selection(), found));
+    found.unwrap_or_default()
+}
+
+fn literal(look: &Look, action: Action) -> CodeAction {
+    let finding = match action.kind {
+        ActionKind::Fix { finding } => look.found().and_then(|found| found.findings.get(finding)),
+        _ => None,
+    };
+    CodeAction {
+        edit: Some(edit(look, &action.edits)),
+        title: action.title,
+        kind: Some(kind(action.kind)),
+        diagnostics: finding.and_then(|finding| shown(look, finding)).map(|shown| vec![shown]),
+        is_preferred: look.client().preferred_actions.then_some(action.preferred),
+        ..CodeAction::default()
     }
-    Some(actions)
+}
+
+const fn kind(kind: ActionKind) -> CodeActionKind {
+    match kind {
+        ActionKind::Fix { .. } | ActionKind::Declare => CodeActionKind::QUICKFIX,
+        ActionKind::Rewrite => CodeActionKind::REFACTOR_REWRITE,
+        ActionKind::Insert => INSERT,
+        ActionKind::Check => CodeActionKind::REFACTOR,
+    }
 }
 
 /// Whether actions of a kind are asked for: no kinds are all kinds, and a kind holds those below it.
@@ -49,7 +73,7 @@ fn wanted(context: &CodeActionContext, kind: &CodeActionKind) -> bool {
 }
 
 /// A finding as it was shown.
-fn shown(look: &Look, finding: &Finding) -> Option<tower_lsp::lsp_types::Diagnostic> {
+fn shown(look: &Look, finding: &Finding) -> Option<Diagnostic> {
     let pages = look.judged.picture.settings.pages.as_deref();
     Some(diagnostic(finding, &look.places()?, &look.uri, look.client(), pages))
 }

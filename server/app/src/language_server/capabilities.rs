@@ -6,8 +6,8 @@
 use tower_lsp::lsp_types::{
     ClientCapabilities, CodeActionKind, CodeActionOptions, CodeActionProviderCapability, CodeLensOptions,
     CompletionOptions, DiagnosticOptions, DiagnosticServerCapabilities, DiagnosticTag, ExecuteCommandOptions,
-    FoldingRangeProviderCapability, HoverProviderCapability, MarkupKind, OneOf, RenameOptions,
-    SelectionRangeProviderCapability, SemanticTokensFullOptions, SemanticTokensLegend, SemanticTokensOptions,
+    HoverProviderCapability, MarkupKind, OneOf, RenameOptions,
+    SemanticTokensFullOptions, SemanticTokensLegend, SemanticTokensOptions,
     ServerCapabilities, TextDocumentSyncCapability, TextDocumentSyncKind, TextDocumentSyncOptions, WorkDoneProgressOptions,
 };
 
@@ -28,8 +28,6 @@ pub struct Client {
     pub refreshes_hints: bool,
     /// Can be told to ask again for code lenses.
     pub refreshes_lenses: bool,
-    /// Can be told to ask again for semantic tokens.
-    pub refreshes_tokens: bool,
     /// Takes further places with a diagnostic.
     pub related: bool,
     /// Takes an address with the code of a diagnostic.
@@ -84,7 +82,6 @@ impl Client {
             refreshes_diagnostics: yes(workspace.and_then(|one| one.diagnostic.as_ref()?.refresh_support)),
             refreshes_hints: yes(workspace.and_then(|one| one.inlay_hint.as_ref()?.refresh_support)),
             refreshes_lenses: yes(workspace.and_then(|one| one.code_lens.as_ref()?.refresh_support)),
-            refreshes_tokens: yes(workspace.and_then(|one| one.semantic_tokens.as_ref()?.refresh_support)),
             related: yes(published.and_then(|published| published.related_information)),
             code_description: yes(published.and_then(|published| published.code_description_support)),
             data: yes(published.and_then(|published| published.data_support)),
@@ -154,8 +151,6 @@ pub fn offered(client: &Client, capabilities: &ClientCapabilities) -> ServerCapa
         code_lens_provider: Some(CodeLensOptions { resolve_provider: Some(false) }),
         document_symbol_provider: Some(OneOf::Left(true)),
         workspace_symbol_provider: Some(OneOf::Left(true)),
-        folding_range_provider: Some(FoldingRangeProviderCapability::Simple(true)),
-        selection_range_provider: Some(SelectionRangeProviderCapability::Simple(true)),
         execute_command_provider: Some(ExecuteCommandOptions {
             commands: COMMANDS.map(str::to_owned).to_vec(),
             work_done_progress_options: WorkDoneProgressOptions::default(),

@@ -20,13 +20,6 @@ pub struct RememberedDisk {
     read: Mutex<HashMap<PathBuf, (Stamp, Text)>>,
 }
 
-impl RememberedDisk {
-    /// Forgets all that was read.
-    pub fn forget(&self) {
-        self.read.lock().unwrap_or_else(PoisonError::into_inner).clear();
-    }
-}
-
 fn stamp(path: &Path) -> Option<Stamp> {
     let kind = path.metadata().ok()?;
     Some((kind.len(), kind.modified().ok()))

@@ -5,7 +5,7 @@ use std::sync::atomic::{AtomicU64, Ordering};
 
 use indexwise_checker::paper::{DocumentAnalysis, View};
 use indexwise_grammar::span::Span;
-use tower_lsp::lsp_types::{Range, TextEdit, Url};
+use tower_lsp::lsp_types::{Range, Url};
 
 use super::capabilities::Client;
 use super::convert::Places;
@@ -72,10 +72,5 @@ impl Look {
     /// A range of the document.
     pub fn range(&self, span: Span) -> Range {
         self.places().map(|places| places.range(span)).unwrap_or_default()
-    }
-
-    /// Edits of the document.
-    pub fn edits(&self, edits: &[indexwise_checker::finding::Edit]) -> Vec<TextEdit> {
-        self.places().map(|places| places.edits(edits)).unwrap_or_default()
     }
 }

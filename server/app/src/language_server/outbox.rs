@@ -41,8 +41,6 @@ pub enum Note {
     RefreshHints,
     /// The client asks again for code lenses.
     RefreshLenses,
-    /// The client asks again for semantic tokens.
-    RefreshTokens,
     /// Work that lasts has begun, under a token and a title; it has ended when the other end of the channel is gone.
     Work(String, String, oneshot::Receiver<()>),
     /// The client makes an edit.
@@ -122,7 +120,6 @@ async fn ask(wire: &Wire, note: Note, settings: impl Fn(Value)) {
         Note::RefreshDiagnostics => drop(wire.workspace_diagnostic_refresh().await),
         Note::RefreshHints => drop(wire.inlay_hint_refresh().await),
         Note::RefreshLenses => drop(wire.code_lens_refresh().await),
-        Note::RefreshTokens => drop(wire.semantic_tokens_refresh().await),
         Note::Work(token, title, ended) => work(wire, token, title, ended).await,
         Note::Apply(label, edit) => {
             let params = ApplyWorkspaceEditParams { label: Some(label), edit };

@@ -21,7 +21,8 @@ use super::event::{Event, Question};
 use super::looking::Look;
 use super::reading::Judged;
 use super::settings::SECTION;
-use super::{actions, places, pulling, tokens};
+use super::commands::{self, APPLY, About, CHECK_DERIVATION, Done, EXPLAIN, INSERT, SYMBOL_TABLE, WRITE_OUT};
+use super::{actions, places, pulling, structure, tokens, writing};
 
 /// The service.
 pub struct Service {
@@ -215,7 +216,61 @@ impl LanguageServer for Service {
     async fn code_action(&self, params: CodeActionParams) -> Result<Option<CodeActionResponse>> {
         let CodeActionParams { text_document, range, context, .. } = params;
         let places = vec![range.start, range.end];
-        self.ask(text_document.uri, places, When::Unmoved, move |look| Ok(actions::actions(look, &context))).await
+        self.ask(text_document.uri, places, When::Unmoved, move |look| Ok(actions::at_selection(look, &context))).await
+    }
+
+    async fn completion(&self, params: CompletionParams) -> Result<Option<CompletionResponse>> {
+        let (uri, place) = at(params.text_document_position);
+        let answer = |look: &Look| Ok(Some(CompletionResponse::List(writing::completion(look))));
+        self.ask(uri, place, When::Freshly, answer).await
+    }
+
+    async fn inlay_hint(&self, params: InlayHintParams) -> Result<Option<Vec<InlayHint>>> {
+        let places = vec![params.range.start, params.range.end];
+        let answer = |look: &Look| Ok(Some(writing::inlay_hints(look)));
+        self.ask(params.text_document.uri, places, When::Unmoved, answer).await
+    }
+
+    async fn code_lens(&self, params: CodeLensParams) -> Result<Option<Vec<CodeLens>>> {
+        let answer = |look: &Look| Ok(Some(writing::code_lenses(look)));
+        self.ask(params.text_document.uri, Vec::new(), When::Unmoved, answer).await
+    }
+
+    async fn document_symbol(&self, params: DocumentSymbolParams) -> Result<Option<DocumentSymbolResponse>> {
+        let answer = |look: &Look| Ok(Some(structure::symbols(look)));
+        self.ask(params.text_document.uri, Vec::new(), When::Unmoved, answer).await
+    }
+
+    async fn symbol(&self, params: WorkspaceSymbolParams) -> Result<Option<Vec<SymbolInformation>>> {
+        self.ask_all(move |all| Some(structure::of_all(all, &params.query))).await
+    }
+
+    async fn execute_command(&self, params: ExecuteCommandParams) -> Result<Option<Value>> {
+        let arguments = params.arguments;
+        match params.command.as_str() {
+            EXPLAIN => return commands::page(&arguments).map(Some),
+            APPLY => {
+                let (title, edit) = commands::given_edit(&arguments)?;
+                self.tell(Event::Apply(title, Box::new(edit)));
+                return Ok(None);
+            }
+            _ => {}
+        }
+        let run: fn(&Look, Option<&str>) -> Done = match params.command.as_str() {
+            WRITE_OUT => |look, _| (commands::written_out(look), None),
+            SYMBOL_TABLE => |look, _| (commands::symbol_table(look), None),
+            CHECK_DERIVATION => |look, _| commands::checked(look),
+            INSERT => commands::inserted,
+            other => return Err(Error::invalid_params(format!("there is no command {other}"))),
+        };
+        let About { text_document, position, label } = About::read(&arguments)?;
+        let answer = move |look: &Look| Ok(Some(run(look, label.as_deref())));
+        let done: Option<Done> = self.ask(text_document.uri, vec![position], When::Unmoved, answer).await?;
+        let Some((answer, edit)) = done else { return Ok(None) };
+        if let Some((title, edit)) = edit {
+            self.tell(Event::Apply(title, Box::new(edit)));
+        }
+        Ok(Some(answer))
     }
 }
 

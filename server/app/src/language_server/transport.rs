@@ -141,6 +141,7 @@ impl<S: LanguageServer, A: futures_util::Sink<Response> + Unpin> Session<S, A> {
                 // Some clients send empty parameters, which the library refuses.
                 message.as_object_mut().map(|fields| fields.remove("params"));
             }
+            "initialize" => spell_diagnostics(&mut message),
             _ => {}
         }
         let id = id_of(&message);
@@ -194,6 +195,16 @@ async fn send(outgoing: &mpsc::Sender<Outgoing>, answer: Option<Response>, permi
     if let Some(answer) = answer {
         // Without a writer nobody is there to be answered.
         let _ = outgoing.send((bytes(&answer), permit)).await;
+    }
+}
+
+/// The protocol says `workspace.diagnostics`; the library, which was written before it was fixed, says `diagnostic`.
+fn spell_diagnostics(message: &mut Value) {
+    let workspace = message.pointer_mut("/params/capabilities/workspace").and_then(Value::as_object_mut);
+    if let Some(workspace) = workspace
+        && let Some(diagnostics) = workspace.remove("diagnostics")
+    {
+        workspace.entry("diagnostic").or_insert(diagnostics);
     }
 }
 

@@ -6,7 +6,7 @@
 #![allow(clippy::unwrap_used, clippy::expect_used, clippy::panic, clippy::indexing_slicing, dead_code)]
 
 use std::collections::HashMap;
-use std::io::{BufRead, BufReader, Read, Write};
+use std::io::{BufRead, BufReader, Write};
 use std::path::Path;
 use std::process::{Child, ChildStdin, Command, Stdio};
 use std::sync::mpsc::{Receiver, channel};
@@ -80,8 +80,6 @@ pub fn counting(encoding: &str) -> Value {
 pub fn pulling() -> Value {
     let mut capabilities = rich();
     capabilities["textDocument"]["diagnostic"] = json!({"dynamicRegistration": false});
-    // The types that the server is built with spell the member of the workspace so; later versions add an s.
-    capabilities["workspace"]["diagnostic"] = json!({"refreshSupport": true});
     capabilities
 }
 

@@ -11,7 +11,7 @@
 //! kernel is antisymmetric in more slots than there are values is seen only where all of them have values.
 
 mod collecting;
-mod place;
+pub(super) mod place;
 mod ranges;
 mod scaling;
 #[cfg(test)]

@@ -2,12 +2,14 @@
 //!
 //! The view was read and counted as for a check, so that a question sees what the check saw.
 
+use std::borrow::Cow;
 use std::sync::Arc;
 
 use indexwise_grammar::span::Span;
 use indexwise_grammar::tree::{self, Formula};
 
 use crate::conventions::inferred::Prices;
+use crate::ledger::Judged;
 use crate::reading::{self, Reading};
 use crate::sketch::Sketch;
 use crate::terms::Eyes;
@@ -33,6 +35,14 @@ pub(crate) struct Asked<'a> {
     pub prices: &'a Prices<'a>,
     /// What its letters and kernels mean.
     pub eyes: &'a Eyes<'a>,
+}
+
+impl<'a> Asked<'a> {
+    /// The statement as the rules see it, without its faults; `text` is that of its document.
+    pub(crate) fn judged(&self, text: &'a str) -> Judged<'a> {
+        let (sketch, reading) = (Cow::Borrowed(self.sketch), self.reading.clone());
+        Judged { text, formula: self.formula, sketch, reading, prices: *self.prices, faults: Vec::new() }
+    }
 }
 
 /// Why there is no statement to ask about.

@@ -45,7 +45,7 @@ impl View {
         Analysis { documents: (0..self.documents.len()).map(|number| judged(number).unwrap_or_default()).collect() }
     }
 
-    fn judge_document(&self, number: usize, settings: &Settings) -> Option<DocumentAnalysis> {
+    pub(super) fn judge_document(&self, number: usize, settings: &Settings) -> Option<DocumentAnalysis> {
         let document = self.documents.get(number)?;
         let begin = document.read.text.find("\\begin{document}");
         let troubles = self.paper.troubles.iter().filter(|trouble| trouble.document == number);

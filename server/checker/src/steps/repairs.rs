@@ -11,7 +11,6 @@ mod missing;
 
 use indexwise_algebra::expression::Expression;
 use indexwise_algebra::rational::Rational;
-use indexwise_grammar::span::Span;
 use indexwise_grammar::tree::{Factor, Statement, Sum, Term, walk};
 use indexwise_grammar::write::{Dialect, write_statement, write_sum};
 
@@ -241,22 +240,4 @@ impl Search<'_, '_> {
         let written = |statement: &Statement| write_statement(statement, Dialect::Latex).text;
         (self.source.reread)(&change.edits).is_some_and(|again| written(&again) == written(&edited))
     }
-}
-
-/// The edit that puts a text at a place, set apart from words that it would run into.
-fn pasted(text: &str, span: Span, by: &str) -> Edit {
-    let before = text.get(..span.start as usize).unwrap_or_default();
-    let after = text.get(span.end as usize..).unwrap_or_default();
-    let word = |letter: Option<char>| letter.is_some_and(char::is_alphabetic);
-    let in_command = before.trim_end_matches(char::is_alphabetic).ends_with('\\') && word(before.chars().next_back());
-    let command = by.trim_end_matches(char::is_alphabetic).ends_with('\\') && word(by.chars().next_back());
-    let mut put = String::new();
-    if in_command && word(by.chars().next()) {
-        put.push(' ');
-    }
-    put.push_str(by);
-    if command && word(after.chars().next()) {
-        put.push(' ');
-    }
-    Edit { span, text: put }
 }

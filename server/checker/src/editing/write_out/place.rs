@@ -15,7 +15,7 @@ use super::{Refusal, understood};
 
 /// A term with the letters whose sums are to be written out.
 #[derive(Debug)]
-pub(super) struct Located<'t> {
+pub(in crate::editing) struct Located<'t> {
     pub term: &'t Term,
     /// In the order of their first place.
     pub letters: Vec<CompactString>,
@@ -58,7 +58,7 @@ impl Pair<'_> {
 }
 
 /// Finds the term and the letters that a place asks for.
-pub(super) fn locate<'a>(asked: &Asked<'a>, offset: u32) -> Result<Located<'a>, Refusal> {
+pub(in crate::editing) fn locate<'a>(asked: &Asked<'a>, offset: u32) -> Result<Located<'a>, Refusal> {
     let path = terms_at(asked.tree, offset);
     let (Some(outermost), Some(innermost)) = (path.first(), path.last()) else { return Err(Refusal::NoSum) };
     let under_cursor = letters_at(asked, innermost, offset);

@@ -12,7 +12,6 @@ use crate::finding::Edit;
 use crate::terms::Eyes;
 
 use super::coefficients::{coefficients, value};
-use super::pasted;
 
 /// What an edit does, the most local first.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash)]
@@ -78,7 +77,7 @@ impl Page<'_> {
 
     /// An edit that puts a text at a place.
     pub fn edit(&self, span: Span, by: &str) -> Edit {
-        pasted(self.text, span, by)
+        Edit::pasted(self.text, span, by)
     }
 }
 

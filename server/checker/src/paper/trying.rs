@@ -1,0 +1,212 @@
+//! What an editor's changes are tried on: formulas with their statements, and what a formula would be after edits.
+//!
+//! A change that an editor offers is made on the text, and the formula is read and judged again before it is offered.
+//! Only that formula is looked at, with the habits of the document as it is: a change that sways the habits of a whole
+//! document is not seen here.
+
+use std::borrow::Cow;
+
+use indexwise_grammar::conventions::Sentence;
+use indexwise_grammar::hosts::{Region, scan};
+use indexwise_grammar::read_region;
+use indexwise_grammar::span::Span;
+use indexwise_grammar::tree::{Formula, Statement};
+
+use crate::conventions::declared::Declared;
+use crate::conventions::inferred::Prices;
+use crate::finding::{Edit, Finding, Severity};
+use crate::ledger::Judged;
+use crate::reading::{self, Reading};
+use crate::rules;
+use crate::sketch::Sketch;
+use crate::terms::symmetries::Customs;
+use crate::terms::{Eyes, Flattened};
+
+use super::directed::{skipped, target};
+use super::judging::is_without_sum;
+use super::{Cancel, Settings, StepMode, View};
+
+/// A formula that is not in the document: its statements, and the text that their places lie in.
+pub(crate) struct Reread {
+    /// The whole text.
+    pub text: String,
+    /// The formula.
+    pub formula: Formula,
+}
+
+impl View {
+    /// A formula of a document, read again with its statements.
+    pub(crate) fn tree(&self, document: usize, number: usize) -> Option<Formula> {
+        let read = &self.documents.get(document)?.read;
+        let region = read.document.scan.regions.get(number)?;
+        Some(read_region(region, &read.text, read.host, &read.macros))
+    }
+
+    /// The number of the formula that holds an offset; its ends count where no other formula stands.
+    pub(crate) fn formula_number(&self, document: usize, offset: u32) -> Option<usize> {
+        let formulas = self.formulas(document);
+        let at = formulas.partition_point(|formula| formula.span.end <= offset);
+        let inside = formulas.get(at).filter(|formula| formula.span.start <= offset);
+        inside.map(|_| at).or_else(|| {
+            let before = at.checked_sub(1)?;
+            formulas.get(before).filter(|formula| formula.span.end == offset).map(|_| before)
+        })
+    }
+
+    /// The sketches of the statements with scripts, each with the number of its formula; not those that are skipped.
+    pub(crate) fn sketches(&self, document: usize) -> impl Iterator<Item = (usize, &Sketch)> {
+        let statements = self.documents.get(document).map_or(&[][..], |own| &own.statements);
+        statements.iter().map(|statement| (statement.formula, &*statement.sketch))
+    }
+
+    /// How a statement is read that is not in the document, with the habits of the document.
+    pub(crate) fn reading_of(&self, document: usize, statement: &Statement) -> Option<(Sketch, Reading)> {
+        let prices = self.prices(document)?;
+        let sketch = Sketch::of(statement);
+        let reading = reading::read(&sketch, sketch.units.iter().map(|unit| prices.score(unit)).collect());
+        Some((sketch, reading))
+    }
+
+    /// A formula after edits within its body, which are in order and apart. Nothing for a formula that holds what is no
+    /// mathematics, since the places of that move.
+    pub(crate) fn reread(&self, document: usize, number: usize, edits: &[Edit]) -> Option<Reread> {
+        let read = &self.documents.get(document)?.read;
+        let region = read.document.scan.regions.get(number).filter(|region| region.holes.is_empty())?;
+        if !edits.iter().all(|edit| region.body.holds(edit.span)) {
+            return None;
+        }
+        let text = edited(&read.text, edits)?;
+        let grown = |place: u32| (place as usize + text.len()).checked_sub(read.text.len());
+        let span = Span::new(region.span.start as usize, grown(region.span.end)?);
+        let body = Span::new(region.body.start as usize, grown(region.body.end)?);
+        let region = Region { span, body, ..region.clone() };
+        let formula = read_region(&region, &text, read.host, &read.macros);
+        Some(Reread { text, formula })
+    }
+
+    /// Whether a formula after edits reads as well as before: nothing more unread or unknown, and no more errors or
+    /// warnings of any rule about statements.
+    pub(crate) fn reads_as_well(&self, document: usize, number: usize, edits: &[Edit]) -> bool {
+        let (Some(before), Some(after)) = (self.tree(document, number), self.reread(document, number, edits)) else {
+            return false;
+        };
+        let odd = |formula: &Formula| {
+            (formula.unread.len(), formula.unknown.len(), formula.labels.len(), formula.passed_over)
+        };
+        let (old, new) = (odd(&before), odd(&after.formula));
+        if new.0 > old.0 || new.1 > old.1 || new.2 != old.2 || new.3 && !old.3 {
+            return false;
+        }
+        let known = self.grave(document, number, &before, self.text(document));
+        let mut left = known;
+        self.grave(document, number, &after.formula, &after.text).iter().all(|rule| {
+            let at = left.iter().position(|other| other == rule);
+            at.map(|at| left.swap_remove(at)).is_some()
+        })
+    }
+
+    /// The rules of the errors and warnings in a formula's statements, which need not be those of the document.
+    fn grave(&self, document: usize, number: usize, formula: &Formula, text: &str) -> Vec<&'static str> {
+        let (Some(own), Some(prices)) = (self.documents.get(document), self.prices(document)) else {
+            return Vec::new();
+        };
+        let skips = skipped(&own.read.declared, &own.read.document.formulas).contains(&number);
+        if skips || is_without_sum(&own.read, number) || formula.no_sum {
+            return Vec::new();
+        }
+        let customs = Customs::of(text, &prices);
+        let found = formula.statements.iter().flat_map(|statement| judged(statement, formula, text, prices, customs));
+        found.filter(|finding| finding.severity != Severity::Hint).map(|finding| finding.rule).collect()
+    }
+
+    /// The formula that a directive at a place of a changed text speaks of, by its number, and whether the scan sees
+    /// the sentence there.
+    pub(crate) fn target_after(&self, document: usize, edit: &Edit, sentence: &str) -> Option<usize> {
+        let read = &self.documents.get(document)?.read;
+        let text = edited(&read.text, std::slice::from_ref(edit))?;
+        let scan = scan(&text, read.host, &read.macros);
+        if scan.regions.len() != read.document.scan.regions.len() {
+            return None;
+        }
+        let near = |span: &Span| (edit.span.start..=edit.span.start + edit.text.len() as u32).contains(&span.start);
+        let sentences = scan.directives.iter().flat_map(|directive| &directive.sentences);
+        let (_, span) = sentences.into_iter().find(|(said, span)| said == sentence && near(span))?;
+        let spans = scan.regions.iter().map(|region| Formula { span: region.span, ..Formula::default() });
+        target(*span, &spans.collect::<Vec<_>>())
+    }
+
+    /// The places of `check this` sentences that speak of a formula, with the labels that they name.
+    pub(crate) fn checks_of(&self, document: usize, number: usize) -> Vec<(Span, usize)> {
+        let Some(declared) = self.declared(document) else { return Vec::new() };
+        let checks = declared.sentences.iter().filter_map(|(sentence, span)| match sentence {
+            Sentence::Check { using } => Some((*span, using.len())),
+            _ => None,
+        });
+        checks.filter(|(span, _)| target(*span, self.formulas(document)) == Some(number)).collect()
+    }
+
+    /// Whether a finding about a statement is gone once a sentence is declared, and nothing graver comes.
+    pub(crate) fn is_gone_with(&self, document: usize, finding: &Finding, declaration: &Edit) -> bool {
+        let Some(text) =
+            self.documents.get(document).and_then(|own| edited(&own.read.text, std::slice::from_ref(declaration)))
+        else {
+            return false;
+        };
+        let mut paper = self.paper().clone();
+        let Some(source) = paper.documents.get_mut(document) else { return false };
+        source.text = text.into();
+        let settings = Settings { steps: StepMode::Off, ..Settings::default() };
+        let counts = |view: &Self| {
+            let found = view.judge_document(document, &settings).unwrap_or_default().findings;
+            let own = found.iter().filter(|other| other.rule == finding.rule).count();
+            (own, found.iter().filter(|other| other.severity != Severity::Hint).count())
+        };
+        let (before, after) = (counts(self), counts(&Self::of(&paper, &Cancel::default())));
+        after.0 < before.0 && after.1 <= before.1
+    }
+
+    /// What a document declares after an edit; nothing if more sentences cannot be read than before.
+    pub(crate) fn declared_after(&self, document: usize, edit: &Edit) -> Option<Declared> {
+        let read = &self.documents.get(document)?.read;
+        let text = edited(&read.text, std::slice::from_ref(edit))?;
+        let scan = scan(&text, read.host, &read.macros);
+        let declared = Declared::read(&scan.directives, read.host, &read.macros, &read.declared.meanings);
+        let sound = declared.unreadable.len() <= read.declared.unreadable.len()
+            && declared.sentences.len() == read.declared.sentences.len() + 1
+            && scan.regions.len() == read.document.scan.regions.len();
+        sound.then_some(declared)
+    }
+}
+
+/// What is found in one statement, as a check would find it; steps are not judged.
+fn judged(statement: &Statement, formula: &Formula, text: &str, prices: Prices<'_>, customs: Customs) -> Vec<Finding> {
+    let sketch = Sketch::of(statement);
+    let mut reading = reading::read(&sketch, sketch.units.iter().map(|unit| prices.score(unit)).collect());
+    reading.odd.retain(|(letter, _)| prices.is_index_notation(letter));
+    if sketch.unjudged.is_some() || !prices.trusts(&sketch.unknown) {
+        return Vec::new();
+    }
+    let search = if reading.odd.is_empty() { rules::faults::level_faults } else { rules::faults::faults };
+    let mut faults = search(&sketch, &reading.choice, &prices);
+    faults.retain(|fault| fault.letter().is_none_or(|letter| prices.is_index_notation(letter)));
+    let judged = Judged { text, formula, sketch: Cow::Owned(sketch), reading, prices, faults };
+    let mut found = rules::check_statement(&judged);
+    if judged.reading.odd.is_empty() && found.iter().all(|finding| finding.ledger.is_none()) {
+        let eyes = Eyes::new(&judged.sketch, &judged.reading.choice, &prices, customs);
+        found.extend(rules::check_terms(&Flattened::new(statement, &judged, &eyes)));
+    }
+    found
+}
+
+/// A text with edits made, which are in order and apart; else nothing.
+pub(crate) fn edited(text: &str, edits: &[Edit]) -> Option<String> {
+    let (mut out, mut at) = (String::with_capacity(text.len()), 0);
+    for edit in edits {
+        out.push_str(text.get(at..edit.span.start as usize)?);
+        text.get(edit.span.range())?;
+        out.push_str(&edit.text);
+        at = edit.span.end as usize;
+    }
+    out.push_str(text.get(at..)?);
+    Some(out)
+}
