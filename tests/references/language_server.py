@@ -203,6 +203,14 @@ async def session(name, program, transcript, spoils):
     client.set_configuration({"indexwise": {"inlayHints": True, "steps": "auto"}})
     edits = []
 
+    # What the library has no answer for.
+    for method in [
+        types.CLIENT_REGISTER_CAPABILITY,
+        types.WORKSPACE_CODE_LENS_REFRESH,
+        types.WORKSPACE_INLAY_HINT_REFRESH,
+    ]:
+        client.feature(method)(lambda params: None)
+
     @client.feature(types.WORKSPACE_APPLY_EDIT)
     def apply(params):
         edits.append(params)

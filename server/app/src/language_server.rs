@@ -76,7 +76,7 @@ pub fn run(threads: usize) -> Result<bool, Failure> {
 
 async fn serve(events: std::sync::mpsc::SyncSender<Event>, outbox: Arc<Outbox>) -> Ended {
     let (parent, mut named) = tokio::sync::mpsc::unbounded_channel();
-    let (service, socket) = LspService::new(|wire| {
+    let (service, socket) = LspService::build(|wire| {
         let answers = events.clone();
         let settings = move |section| drop(answers.send(Event::SettingsAnswered(section)));
         tokio::spawn(outbox.deliver(wire, settings));
@@ -84,7 +84,9 @@ async fn serve(events: std::sync::mpsc::SyncSender<Event>, outbox: Arc<Outbox>) 
             // Whoever watches is gone when the session is over.
             let _ = parent.send(id);
         })
-    });
+    })
+    .custom_method("indexwise/ledger", Service::ledger)
+    .finish();
     let session = transport::serve(tokio::io::stdin(), tokio::io::stdout(), service, socket);
     let orphaned = async {
         match named.recv().await {

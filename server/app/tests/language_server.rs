@@ -117,12 +117,8 @@ fn a_message_that_is_too_large_is_refused_and_not_kept() {
 #[test]
 fn findings_are_published_with_all_that_a_client_takes() {
     let folder = folder();
-    let mut client = Client::session_with(
-        folder.path(),
-        &rich(),
-        "serve",
-        json!({"rulePages": "https://example.org/rules"}),
-    );
+    let mut client =
+        Client::session_with(folder.path(), &rich(), "serve", json!({"rulePages": "https://example.org/rules"}));
     let name = uri(&folder.path().join("a.tex"));
     client.open(&name, "latex", SLIP);
     let diagnostics = client.diagnostics(&name);
@@ -192,8 +188,11 @@ fn changes_are_made_where_the_client_counts_them() {
         assert_eq!(range["start"], json!({"line": 1, "character": column}), "{encoding}");
         // The letter to blame is put right at the place that the server names; a second change stands on the first.
         let line_end = json!({"line": 0, "character": 99});
-        client.change(&name, json!([{"range": range, "text": "i"},
-            {"range": {"start": line_end, "end": line_end}, "text": " 𝔸"}]));
+        client.change(
+            &name,
+            json!([{"range": range, "text": "i"},
+            {"range": {"start": line_end, "end": line_end}, "text": " 𝔸"}]),
+        );
         assert_eq!(rules(&client.diagnostics(&name)), [""; 0], "{encoding}");
         assert_eq!(client.end(), 0);
     }
@@ -201,7 +200,8 @@ fn changes_are_made_where_the_client_counts_them() {
 
 #[test]
 fn parts_that_are_not_saved_count_as_they_stand_in_the_editor() {
-    let main: &[u8] = b"\\documentclass{article}\\newcommand{\\vel}[1]{v_{#1}}\\begin{document}\\input{part}\\end{document}";
+    let main: &[u8] =
+        b"\\documentclass{article}\\newcommand{\\vel}[1]{v_{#1}}\\begin{document}\\input{part}\\end{document}";
     let folder = Folder::new(&[("main.tex", main), ("part.tex", b"on the disk")]);
     let mut client = Client::session(folder.path(), &rich());
     let (root, part) = (uri(&folder.path().join("main.tex")), uri(&folder.path().join("part.tex")));
@@ -320,8 +320,12 @@ fn verdicts_come_after_the_rest() {
         let list = client.published(&name)?["diagnostics"].as_array()?;
         list.iter().any(|one| one["code"].as_str().unwrap().starts_with("step-")).then_some(())
     });
-    let counts: Vec<usize> = client.told.iter().filter(|told| told["method"] == "textDocument/publishDiagnostics")
-        .map(|told| told["params"]["diagnostics"].as_array().unwrap().len()).collect();
+    let counts: Vec<usize> = client
+        .told
+        .iter()
+        .filter(|told| told["method"] == "textDocument/publishDiagnostics")
+        .map(|told| told["params"]["diagnostics"].as_array().unwrap().len())
+        .collect();
     assert_eq!(counts.first(), Some(&0), "{counts:?}");
     client.settings = json!({"steps": "off"});
     client.notify("workspace/didChangeConfiguration", json!({"settings": null}));
@@ -349,8 +353,13 @@ fn a_fix_makes_its_finding_go_away() {
         } else {
             action["edit"]["changes"][&name].clone()
         };
-        let changes: Vec<Value> = edits.as_array().unwrap().iter().rev()
-            .map(|edit| json!({"range": edit["range"], "text": edit["newText"]})).collect();
+        let changes: Vec<Value> = edits
+            .as_array()
+            .unwrap()
+            .iter()
+            .rev()
+            .map(|edit| json!({"range": edit["range"], "text": edit["newText"]}))
+            .collect();
         client.change(&name, json!(changes));
         assert_eq!(rules(&client.diagnostics(&name)), [""; 0]);
         let none = json!({"textDocument": {"uri": name}, "range": found["range"],

@@ -20,14 +20,37 @@ const RAPID: usize = 2000;
 
 /// What is typed or deleted: structure that opens and closes, indices, line ends, letters of up to four bytes.
 const PIECES: [&str; 24] = [
-    "", "", "", "i", "k", "_j", "^k", "_{ij}", "$", "\n", "\r\n", "\r", " ", "é", "𝔸", "𝔸_i", "\\mu", "{", "}", "%",
-    " = ", "\n\n$ A_i = B^j C_{ij} + D_i + E_k $\n\n", "\\nabla_i ", "\u{2028}",
+    "",
+    "",
+    "",
+    "i",
+    "k",
+    "_j",
+    "^k",
+    "_{ij}",
+    "$",
+    "\n",
+    "\r\n",
+    "\r",
+    " ",
+    "é",
+    "𝔸",
+    "𝔸_i",
+    "\\mu",
+    "{",
+    "}",
+    "%",
+    " = ",
+    "\n\n$ A_i = B^j C_{ij} + D_i + E_k $\n\n",
+    "\\nabla_i ",
+    "\u{2028}",
 ];
 
 const LATEX: &str = "\\newcommand{\\vel}[1]{v_{#1}}\r\nThe waves 𝔸:\r\n\\begin{equation}\\label{eq:é}\r\n  \
     A_i = B^j C_{ij} + D_i + E_k\r\n\\end{equation}\r\nand $\\vel{i} = \\delta_i^j v_j$, $T^{ab}{}_{;b} = 0$.\r\n";
 const MARKDOWN: &str = "# Wellen 𝔸\n\nIt holds $A_i = B^j C_{ij} + D_i + E_k$ — é.\n\n$$\nS^{ab} u_a = q^b + p_a\n$$\n";
-const NOTE: &str = "conventions\n  i j k run from 1 to 3\n\nDie Fläche 𝔸:\n\n  A_i = B_j C_ij + D_i + E_k\n  w_i = S_ij v_j\n";
+const NOTE: &str =
+    "conventions\n  i j k run from 1 to 3\n\nDie Fläche 𝔸:\n\n  A_i = B_j C_ij + D_i + E_k\n  w_i = S_ij v_j\n";
 
 /// Numbers that look random; the generator is Knuth's MMIX one, from memory.
 struct Random(u64);
@@ -139,8 +162,7 @@ fn edited_is_as_fresh(encoding: &str, language: &str, ending: &str, start: &str,
         // What was published for a text of the same version before is not what is waited for.
         fresh.forget();
         fresh.open(&name, language, &text);
-        let places: Vec<Value> =
-            (0..3).map(|_| position(&text, place(&text, &mut random), encoding)).collect();
+        let places: Vec<Value> = (0..3).map(|_| position(&text, place(&text, &mut random), encoding)).collect();
         let want = known(&mut fresh, &name, &places);
         assert_eq!(known(&mut edited, &name, &places), want, "{encoding} {language} after {done} edits: {text:?}");
         fresh.notify("textDocument/didClose", json!({"textDocument": {"uri": name}}));
@@ -185,7 +207,9 @@ fn rapid(threads: usize) {
         let at = position(&text, place(&text, &mut random), encoding);
         let document = json!({"uri": name});
         match number % 10 {
-            0 => asked.push((true, client.ask("textDocument/hover", json!({"textDocument": document, "position": at})))),
+            0 => {
+                asked.push((true, client.ask("textDocument/hover", json!({"textDocument": document, "position": at}))))
+            }
             5 => {
                 asked.push((false, client.ask("textDocument/semanticTokens/full", json!({"textDocument": document}))));
             }

@@ -8,12 +8,14 @@ mod commands;
 pub mod completion;
 #[cfg(test)]
 mod cursor;
+pub mod folding;
 pub mod highlight;
 pub mod hints;
 pub mod hover;
 mod indices;
 mod kernels;
 mod labels;
+pub mod ledger_view;
 pub mod lenses;
 mod letters;
 pub mod outline;

@@ -6,9 +6,10 @@
 use tower_lsp::lsp_types::{
     ClientCapabilities, CodeActionKind, CodeActionOptions, CodeActionProviderCapability, CodeLensOptions,
     CompletionOptions, DiagnosticOptions, DiagnosticServerCapabilities, DiagnosticTag, ExecuteCommandOptions,
-    HoverProviderCapability, MarkupKind, OneOf, RenameOptions,
-    SemanticTokensFullOptions, SemanticTokensLegend, SemanticTokensOptions,
-    ServerCapabilities, TextDocumentSyncCapability, TextDocumentSyncKind, TextDocumentSyncOptions, WorkDoneProgressOptions,
+    FoldingRangeProviderCapability, HoverProviderCapability, MarkupContent, MarkupKind, OneOf, RenameOptions,
+    SelectionRangeProviderCapability, SemanticTokensFullOptions, SemanticTokensLegend, SemanticTokensOptions,
+    ServerCapabilities, TextDocumentSyncCapability, TextDocumentSyncKind, TextDocumentSyncOptions,
+    WorkDoneProgressOptions,
 };
 
 use super::commands::COMMANDS;
@@ -44,10 +45,10 @@ pub struct Client {
     pub registers_settings: bool,
     /// Shows progress.
     pub progress: bool,
-    /// Shows Markdown when hovering.
-    pub markdown_hover: bool,
-    /// Shows Markdown beside a completion.
-    pub markdown_completion: bool,
+    /// How what is told when hovering is marked up; nothing for clients that know no markup.
+    pub hover: Option<Markup>,
+    /// How what stands beside a completion is marked up.
+    pub completion: Option<Markup>,
     /// Takes code actions, not only commands.
     pub action_literals: bool,
     /// Marks the preferred code action.
@@ -58,6 +59,36 @@ pub struct Client {
     pub nested_symbols: bool,
     /// Makes edits that the server asks for.
     pub applies_edits: bool,
+}
+
+/// A markup that a client shows.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Markup {
+    /// Markdown.
+    Markdown,
+    /// None: the text as it is.
+    Plain,
+}
+
+impl Markup {
+    /// Markdown, if the client takes it.
+    fn of(formats: &[MarkupKind]) -> Option<Self> {
+        let takes = |kind: MarkupKind| formats.contains(&kind);
+        if takes(MarkupKind::Markdown) {
+            Some(Self::Markdown)
+        } else {
+            takes(MarkupKind::PlainText).then_some(Self::Plain)
+        }
+    }
+
+    /// A text in this markup.
+    pub fn content(self, value: String) -> MarkupContent {
+        let kind = match self {
+            Self::Markdown => MarkupKind::Markdown,
+            Self::Plain => MarkupKind::PlainText,
+        };
+        MarkupContent { kind, value }
+    }
 }
 
 impl Client {
@@ -90,13 +121,14 @@ impl Client {
             has_settings: yes(workspace.and_then(|workspace| workspace.configuration)),
             registers_settings: yes(settings.and_then(|settings| settings.dynamic_registration)),
             progress: yes(capabilities.window.as_ref().and_then(|window| window.work_done_progress)),
-            markdown_hover: hover.is_some_and(|formats| formats.contains(&MarkupKind::Markdown)),
-            markdown_completion: documentation.is_some_and(|formats| formats.contains(&MarkupKind::Markdown)),
+            hover: hover.and_then(|formats| Markup::of(formats)),
+            completion: documentation.and_then(|formats| Markup::of(formats)),
             action_literals: action.is_some_and(|action| action.code_action_literal_support.is_some()),
             preferred_actions: yes(action.and_then(|action| action.is_preferred_support)),
             versioned_edits: yes(edits.and_then(|edits| edits.document_changes)),
-            nested_symbols: yes(text
-                .and_then(|text| text.document_symbol.as_ref()?.hierarchical_document_symbol_support)),
+            nested_symbols: yes(
+                text.and_then(|text| text.document_symbol.as_ref()?.hierarchical_document_symbol_support)
+            ),
             applies_edits: yes(workspace.and_then(|workspace| workspace.apply_edit)),
         }
     }
@@ -151,6 +183,8 @@ pub fn offered(client: &Client, capabilities: &ClientCapabilities) -> ServerCapa
         code_lens_provider: Some(CodeLensOptions { resolve_provider: Some(false) }),
         document_symbol_provider: Some(OneOf::Left(true)),
         workspace_symbol_provider: Some(OneOf::Left(true)),
+        folding_range_provider: Some(FoldingRangeProviderCapability::Simple(true)),
+        selection_range_provider: Some(SelectionRangeProviderCapability::Simple(true)),
         execute_command_provider: Some(ExecuteCommandOptions {
             commands: COMMANDS.map(str::to_owned).to_vec(),
             work_done_progress_options: WorkDoneProgressOptions::default(),

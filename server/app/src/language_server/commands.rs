@@ -4,9 +4,10 @@
 //! argument. Those that change a text have the client make the edit; the answer tells what it does.
 
 use indexwise_checker::editing::actions::{Action, ActionKind, insertions};
+use indexwise_checker::editing::ledger_view::ledger_at;
 use indexwise_checker::editing::write_out::{Forms, WrittenOut, write_out};
-use indexwise_checker::finding::Edit;
-use indexwise_checker::paper::{Cancel, Settings, StepMode};
+use indexwise_checker::finding::{Edit, LedgerIndex};
+use indexwise_checker::paper::{Cancel, Outcome, Settings, StepMode};
 use indexwise_checker::rules::find;
 use serde::Deserialize;
 use serde_json::{Value, json};
@@ -127,6 +128,29 @@ fn done(look: &Look, title: String, edits: &[Edit]) -> Done {
     (json!({ "title": title }), Some((title, edit(look, edits))))
 }
 
+/// The ledger of the statement at the place.
+pub fn ledger(look: &Look) -> Option<Value> {
+    let ledger = ledger_at(look.view(), look.document, look.offset(), look.found())?;
+    let letters = |letters: &[LedgerIndex]| {
+        let letters = letters.iter().map(|one| json!({ "letter": one.letter, "level": one.level, "odd": one.odd }));
+        letters.collect::<Vec<_>>()
+    };
+    let rows = ledger.rows.iter().map(|row| {
+        json!({ "title": row.title, "range": look.range(row.span), "free": letters(&row.free),
+            "summed": letters(&row.summed), "any": row.any, "vanishes": row.vanishes })
+    });
+    let marks = ledger.marks.iter().map(|mark| {
+        let outcome = match mark.outcome {
+            Outcome::Holds => "holds",
+            Outcome::Fails => "fails",
+            Outcome::Open => "undecided",
+        };
+        json!({ "range": look.range(mark.sign), "outcome": outcome, "said": mark.said })
+    });
+    Some(json!({ "range": look.range(ledger.span), "text": ledger.text, "rows": rows.collect::<Vec<_>>(),
+        "marks": marks.collect::<Vec<_>>() }))
+}
+
 /// The symbols of the document.
 pub fn symbol_table(look: &Look) -> Value {
     let settings = Settings { symbols: true, steps: StepMode::Off, ..Settings::default() };
@@ -138,9 +162,10 @@ pub fn symbol_table(look: &Look) -> Value {
             "declared": symbol.declared, "symmetries": symbol.symmetries, "first": look.range(symbol.first) })
     });
     let letters = table.letters.iter().map(|letter| {
-        let parts = letter.parts.iter().map(
-            |part| json!({ "part": part.role.words(), "uses": part.uses, "first": look.range(part.first) }),
-        );
+        let parts = letter
+            .parts
+            .iter()
+            .map(|part| json!({ "part": part.role.words(), "uses": part.uses, "first": look.range(part.first) }));
         json!({ "letter": letter.letter.as_str(), "parts": parts.collect::<Vec<_>>() })
     });
     json!({ "kernels": kernels.collect::<Vec<_>>(), "letters": letters.collect::<Vec<_>>() })

@@ -132,7 +132,9 @@ async fn ask(wire: &Wire, note: Note, settings: impl Fn(Value)) {
 /// A client may refuse to show progress, or the work may have ended before it agreed; then nothing of it is shown.
 async fn work(wire: &Wire, token: String, title: String, mut ended: oneshot::Receiver<()>) {
     let params = WorkDoneProgressCreateParams { token: ProgressToken::String(token.clone()) };
-    if wire.send_request::<WorkDoneProgressCreate>(params).await.is_err() || ended.try_recv() != Err(TryRecvError::Empty) {
+    if wire.send_request::<WorkDoneProgressCreate>(params).await.is_err()
+        || ended.try_recv() != Err(TryRecvError::Empty)
+    {
         return;
     }
     let begin = WorkDoneProgressBegin { title, cancellable: Some(false), message: None, percentage: None };

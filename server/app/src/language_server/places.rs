@@ -7,8 +7,8 @@ use indexwise_checker::editing::rename;
 use indexwise_grammar::lines::Lines;
 use tower_lsp::jsonrpc::{Error, ErrorCode, Result};
 use tower_lsp::lsp_types::{
-    DocumentHighlight, DocumentHighlightKind, Hover, HoverContents, Location, MarkupContent, MarkupKind,
-    PrepareRenameResponse, WorkspaceEdit,
+    DocumentHighlight, DocumentHighlightKind, Hover, HoverContents, Location, MarkedString, PrepareRenameResponse,
+    WorkspaceEdit,
 };
 
 use super::actions::edit_of_all;
@@ -18,8 +18,10 @@ use super::looking::Look;
 /// What is told when hovering. The Markdown is written so that it reads as plain text, too.
 pub fn hover(look: &Look) -> Option<Hover> {
     let hover = hover::hover(look.view(), look.document, look.offset(), look.found())?;
-    let kind = if look.client().markdown_hover { MarkupKind::Markdown } else { MarkupKind::PlainText };
-    let contents = HoverContents::Markup(MarkupContent { kind, value: hover.markdown });
+    let contents = match look.client().hover {
+        Some(markup) => HoverContents::Markup(markup.content(hover.markdown)),
+        None => HoverContents::Scalar(MarkedString::String(hover.markdown)),
+    };
     Some(Hover { contents, range: Some(look.range(hover.span)) })
 }
 

@@ -25,7 +25,8 @@ impl Worker {
         }
         let before = std::mem::replace(&mut paper.shown, shown.clone());
         if self.client.pulls {
-            let changed = before.iter().map(|(uri, (_, list))| (uri, list)).ne(shown.iter().map(|(uri, (_, list))| (uri, list)));
+            let changed =
+                before.iter().map(|(uri, (_, list))| (uri, list)).ne(shown.iter().map(|(uri, (_, list))| (uri, list)));
             // Who asked for this version waits for it; what came late has to be asked for again.
             if changed && judged.complete && self.client.refreshes_diagnostics {
                 self.outbox.put(Note::RefreshDiagnostics);

@@ -71,7 +71,8 @@ fn in_workspace(report: DocumentDiagnosticReport, uri: Url, version: Option<i64>
         }
         DocumentDiagnosticReport::Unchanged(report) => {
             let unchanged_document_diagnostic_report = report.unchanged_document_diagnostic_report;
-            let report = WorkspaceUnchangedDocumentDiagnosticReport { uri, version, unchanged_document_diagnostic_report };
+            let report =
+                WorkspaceUnchangedDocumentDiagnosticReport { uri, version, unchanged_document_diagnostic_report };
             WorkspaceDocumentDiagnosticReport::Unchanged(report)
         }
     }

@@ -17,11 +17,11 @@ use tower_lsp::lsp_types::*;
 use tower_lsp::{LanguageServer, async_trait};
 
 use super::capabilities::{Client, offered};
+use super::commands::{self, APPLY, About, CHECK_DERIVATION, Done, EXPLAIN, INSERT, SYMBOL_TABLE, WRITE_OUT};
 use super::event::{Event, Question};
 use super::looking::Look;
 use super::reading::Judged;
 use super::settings::SECTION;
-use super::commands::{self, APPLY, About, CHECK_DERIVATION, Done, EXPLAIN, INSERT, SYMBOL_TABLE, WRITE_OUT};
 use super::{actions, places, pulling, structure, tokens, writing};
 
 /// The service.
@@ -88,6 +88,14 @@ impl Service {
         let task = move |all: Vec<Judged>| drop(reply.send(answer(&all)));
         self.tell(Event::AskAll(Box::new(task)));
         answered.await.map_err(|_| Error::internal_error())
+    }
+}
+
+impl Service {
+    /// The request of our own: the ledger of the statement at a place.
+    pub async fn ledger(&self, params: TextDocumentPositionParams) -> Result<Option<Value>> {
+        let (uri, place) = at(params);
+        self.ask(uri, place, When::Unmoved, |look| Ok(commands::ledger(look))).await
     }
 }
 
@@ -158,10 +166,7 @@ impl LanguageServer for Service {
         Ok(DocumentDiagnosticReportResult::Report(report))
     }
 
-    async fn workspace_diagnostic(
-        &self,
-        params: WorkspaceDiagnosticParams,
-    ) -> Result<WorkspaceDiagnosticReportResult> {
+    async fn workspace_diagnostic(&self, params: WorkspaceDiagnosticParams) -> Result<WorkspaceDiagnosticReportResult> {
         let report = self.ask_all(move |all| pulling::workspace(all, &params.previous_result_ids));
         Ok(WorkspaceDiagnosticReportResult::Report(report.await?))
     }
@@ -243,6 +248,16 @@ impl LanguageServer for Service {
 
     async fn symbol(&self, params: WorkspaceSymbolParams) -> Result<Option<Vec<SymbolInformation>>> {
         self.ask_all(move |all| Some(structure::of_all(all, &params.query))).await
+    }
+
+    async fn folding_range(&self, params: FoldingRangeParams) -> Result<Option<Vec<FoldingRange>>> {
+        let answer = |look: &Look| Ok(Some(structure::folding(look)));
+        self.ask(params.text_document.uri, Vec::new(), When::Unmoved, answer).await
+    }
+
+    async fn selection_range(&self, params: SelectionRangeParams) -> Result<Option<Vec<SelectionRange>>> {
+        let answer = |look: &Look| Ok(Some(structure::selections(look)));
+        self.ask(params.text_document.uri, params.positions, When::Unmoved, answer).await
     }
 
     async fn execute_command(&self, params: ExecuteCommandParams) -> Result<Option<Value>> {

@@ -1,8 +1,10 @@
-//! Symbols: how a document is built.
+//! Symbols, folding and selection: how a document is built.
 
+use indexwise_checker::editing::folding::{folds, selection};
 use indexwise_checker::editing::outline::{Entry, EntryKind, outline};
+use indexwise_grammar::span::Span;
 use tower_lsp::lsp_types::{
-    DocumentSymbol, DocumentSymbolResponse, Location, SymbolInformation, SymbolKind,
+    DocumentSymbol, DocumentSymbolResponse, FoldingRange, Location, SelectionRange, SymbolInformation, SymbolKind,
 };
 
 use super::looking::Look;
@@ -84,4 +86,34 @@ pub fn of_all(all: &[Judged], query: &str) -> Vec<SymbolInformation> {
         }
     }
     found
+}
+
+/// What may be folded: whole lines, since some editors fold nothing else.
+pub fn folding(look: &Look) -> Vec<FoldingRange> {
+    let one = |span: Span| {
+        let range = look.range(span);
+        let lines = range.start.line < range.end.line;
+        lines.then(|| FoldingRange {
+            start_line: range.start.line,
+            end_line: range.end.line,
+            ..FoldingRange::default()
+        })
+    };
+    folds(look.view(), look.document).into_iter().filter_map(one).collect()
+}
+
+/// For each place, what holds it, from the inside out. A place that nothing holds stands for itself.
+pub fn selections(look: &Look) -> Vec<SelectionRange> {
+    let at = |offset: &u32| {
+        let mut spans = selection(look.view(), look.document, *offset);
+        if spans.is_empty() {
+            spans.push(Span { start: *offset, end: *offset });
+        }
+        let mut outer: Option<Box<SelectionRange>> = None;
+        for span in spans.iter().rev() {
+            outer = Some(Box::new(SelectionRange { range: look.range(*span), parent: outer }));
+        }
+        outer.map(|range| *range)
+    };
+    look.offsets.iter().filter_map(at).collect()
 }

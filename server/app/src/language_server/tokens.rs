@@ -44,7 +44,8 @@ fn encoded(tokens: &[Token], places: &Places<'_>) -> Vec<SemanticToken> {
         let range = places.range(token.span);
         let start = range.start;
         let delta_line = start.line.checked_sub(before.line)?;
-        let delta_start = if delta_line == 0 { start.character.checked_sub(before.character)? } else { start.character };
+        let delta_start =
+            if delta_line == 0 { start.character.checked_sub(before.character)? } else { start.character };
         let length = range.end.character.checked_sub(start.character).filter(|_| range.end.line == start.line)?;
         before = start;
         Some(SemanticToken {

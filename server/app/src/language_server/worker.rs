@@ -360,7 +360,8 @@ impl Worker {
 
     /// The paper that an open text is checked in.
     fn paper_of(&self, path: &Path) -> Option<usize> {
-        let key = self.documents.values().find(|document| document.path == path).and_then(|one| self.keys.get(&one.uri))?;
+        let key =
+            self.documents.values().find(|document| document.path == path).and_then(|one| self.keys.get(&one.uri))?;
         self.papers.iter().position(|paper| paper.key == *key)
     }
 

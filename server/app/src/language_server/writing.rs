@@ -6,7 +6,7 @@ use indexwise_checker::editing::lenses::{CHECK, Lens, lenses};
 use serde_json::json;
 use tower_lsp::lsp_types::{
     CodeLens, Command, CompletionItem, CompletionItemKind, CompletionList, CompletionTextEdit, Documentation,
-    InlayHint, InlayHintLabel, InlayHintTooltip, MarkupContent, MarkupKind, TextEdit,
+    InlayHint, InlayHintLabel, InlayHintTooltip, TextEdit,
 };
 
 use super::commands::CHECK_DERIVATION;
@@ -20,8 +20,10 @@ pub fn completion(look: &Look) -> CompletionList {
 
 fn item(look: &Look, suggestion: Suggestion) -> Option<CompletionItem> {
     let new_text = look.places()?.written(&suggestion.text);
-    let kind = if look.client().markdown_completion { MarkupKind::Markdown } else { MarkupKind::PlainText };
-    let markup = |value| Documentation::MarkupContent(MarkupContent { kind, value });
+    let markup = |words| match look.client().completion {
+        Some(markup) => Documentation::MarkupContent(markup.content(words)),
+        None => Documentation::String(words),
+    };
     Some(CompletionItem {
         label: suggestion.label,
         kind: Some(item_kind(suggestion.kind)),

@@ -192,7 +192,8 @@ impl Client {
                 return found;
             }
             let left = PATIENCE.saturating_sub(since.elapsed());
-            let message = self.messages.recv_timeout(left).unwrap_or_else(|_| panic!("{what} did not come: {:?}", self.told));
+            let message =
+                self.messages.recv_timeout(left).unwrap_or_else(|_| panic!("{what} did not come: {:?}", self.told));
             self.take(message);
         }
     }
@@ -265,9 +266,8 @@ impl Client {
 
     /// What was published last for a text.
     pub fn published(&self, uri: &str) -> Option<&Value> {
-        let published = |told: &&Value| {
-            told["method"] == "textDocument/publishDiagnostics" && told["params"]["uri"] == uri
-        };
+        let published =
+            |told: &&Value| told["method"] == "textDocument/publishDiagnostics" && told["params"]["uri"] == uri;
         self.told.iter().rev().find(published).map(|told| &told["params"])
     }
 
