@@ -7,6 +7,7 @@
 
 mod actions;
 mod capabilities;
+mod carrying;
 mod commands;
 mod convert;
 mod disk;

@@ -327,6 +327,16 @@ fn verdicts_come_after_the_rest() {
         .map(|told| told["params"]["diagnostics"].as_array().unwrap().len())
         .collect();
     assert_eq!(counts.first(), Some(&0), "{counts:?}");
+    // Where nobody touched it, the verdict holds on until it is found again; where somebody did, it is gone at once.
+    let first = |client: &mut Client, version: u64| {
+        client.diagnostics(&name);
+        let of_version = |told: &&Value| told["params"]["version"] == version && told["params"]["uri"] == name;
+        client.told.iter().find(of_version).map(|told| told["params"]["diagnostics"][0]["range"]["start"].clone())
+    };
+    client.replace(&name, &format!("A line before.\n\n{DERIVATION}"));
+    assert_eq!(first(&mut client, 2).unwrap()["line"], 8);
+    client.replace(&name, &DERIVATION.replace("u_j v_i u_j +", "u_j v_i u_j -"));
+    assert_eq!(first(&mut client, 3), Some(Value::Null));
     client.settings = json!({"steps": "off"});
     client.notify("workspace/didChangeConfiguration", json!({"settings": null}));
     client.wait("none", |client| client.published(&name)?["diagnostics"].as_array()?.is_empty().then_some(()));

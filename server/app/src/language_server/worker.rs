@@ -21,6 +21,7 @@ use tokio::sync::oneshot;
 use tower_lsp::lsp_types::{MessageType, TextDocumentContentChangeEvent, Url};
 
 use super::capabilities::Client;
+use super::carrying::carried;
 use super::disk::RememberedDisk;
 use super::documents::{self, Document};
 use super::event::{Event, Question, Refusal};
@@ -297,7 +298,12 @@ impl Worker {
         };
         let elsewhere = paper.asked.replace(picture.asked.clone()).is_some_and(|before| before != picture.asked);
         let judges = self.settings.steps != StepMode::Off;
-        let judged = Judged { analysis: picture.balance.clone(), picture, complete: !judges };
+        let before = paper.known.as_ref().filter(|(_, known)| judges && known.picture.settings == picture.settings);
+        let analysis = match before {
+            Some((_, before)) => Arc::new(carried(before, &picture)),
+            None => picture.balance.clone(),
+        };
+        let judged = Judged { analysis, picture, complete: !judges };
         paper.known = Some((revision, judged));
         paper.progress = None;
         paper.steps_due = judges.then(|| Instant::now() + SILENCE_BEFORE_STEPS);
