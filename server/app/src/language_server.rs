@@ -9,6 +9,7 @@ mod actions;
 mod capabilities;
 mod carrying;
 mod commands;
+mod configurations;
 mod convert;
 mod disk;
 mod documents;

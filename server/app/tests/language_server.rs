@@ -300,6 +300,23 @@ fn settings_and_configuration_files_change_what_is_found() {
     assert_eq!(client.end(), 0);
 }
 
+#[test]
+fn what_is_wrong_with_a_configuration_is_shown_in_it() {
+    let folder = Folder::new(&[("indexwise.toml", b"[conventions]\nlines = ['B_{ij} is marvellous']\n")]);
+    let mut client = Client::session(folder.path(), &rich());
+    let (name, file) = (uri(&folder.path().join("a.tex")), folder.path().join("indexwise.toml"));
+    client.open(&name, "latex", SLIP);
+    let found = client.wait("a finding", |client| client.published(&uri(&file)).cloned());
+    assert_eq!(rules(found["diagnostics"].as_array().unwrap()), ["convention-unreadable"]);
+    assert_eq!(found["diagnostics"][0]["range"]["start"], json!({"line": 1, "character": 10}));
+    fs::remove_file(&file).unwrap();
+    client.notify("workspace/didChangeWatchedFiles", json!({"changes": [{"uri": uri(&file), "type": 3}]}));
+    client.wait("no finding", |client| {
+        client.published(&uri(&file))?["diagnostics"].as_array()?.is_empty().then_some(())
+    });
+    assert_eq!(client.end(), 0);
+}
+
 /// A sign got lost on the way.
 const DERIVATION: &str = "conventions
   i j k l m run from 1 to 3

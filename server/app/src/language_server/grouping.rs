@@ -86,6 +86,7 @@ impl Worker {
         self.wrong = failures;
         if whole {
             self.scopes = scopes;
+            self.tell_of_configurations();
         } else {
             // Folders that are new have at least what can be read.
             self.scopes.adopt(scopes);

@@ -18,7 +18,7 @@ use indexwise_checker::paper::{Cancel, StepMode};
 use rayon::ThreadPool;
 use serde_json::Value;
 use tokio::sync::oneshot;
-use tower_lsp::lsp_types::{MessageType, TextDocumentContentChangeEvent, Url};
+use tower_lsp::lsp_types::{Diagnostic, MessageType, TextDocumentContentChangeEvent, Url};
 
 use super::capabilities::Client;
 use super::carrying::carried;
@@ -57,6 +57,8 @@ pub struct Worker {
     pub(super) keys: BTreeMap<Url, PaperKey>,
     /// What is wrong with configurations.
     pub(super) wrong: Vec<String>,
+    /// What was told of the sentences of configurations.
+    pub(super) configurations: BTreeMap<Url, Vec<Diagnostic>>,
     /// What else went wrong, so that it is said once.
     pub(super) told: Vec<String>,
     folder: PathBuf,
@@ -81,6 +83,7 @@ impl Worker {
             papers: Vec::new(),
             keys: BTreeMap::new(),
             wrong: Vec::new(),
+            configurations: BTreeMap::new(),
             told: Vec::new(),
             folder: PathBuf::new(),
             pool: Arc::new(pool),
