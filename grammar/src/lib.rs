@@ -69,7 +69,13 @@ fn draft(region: &Region, text: &str, host: Host, macros: &Macros) -> (Span, boo
 
 /// Reads one region of a scanned document; `macros` are all those of the document. Places are those of the text.
 pub fn read_region(region: &Region, text: &str, host: Host, macros: &Macros) -> Formula {
-    formula::parse_all(&[draft(region, text, host, macros)]).pop().unwrap_or_default()
+    read_regions(std::slice::from_ref(region), text, host, macros).pop().unwrap_or_default()
+}
+
+/// As `read_region`, for several regions at once, which is cheaper.
+pub fn read_regions(regions: &[Region], text: &str, host: Host, macros: &Macros) -> Vec<Formula> {
+    let drafts: Vec<_> = regions.iter().map(|region| draft(region, text, host, macros)).collect();
+    formula::parse_all(&drafts)
 }
 
 /// Reads the body of one formula by itself; places count from its start.

@@ -88,6 +88,11 @@ impl<'a> Eyes<'a> {
         here.unwrap_or_else(|| self.anywhere.get(letter).copied().unwrap_or(false))
     }
 
+    /// Whether a letter of a script at a place was read at all, as an index or not.
+    pub(crate) fn has_read(&self, letter: &CompactString, span: Span) -> bool {
+        self.index.contains_key(&(span.start, letter.clone()))
+    }
+
     /// Whether levels do not matter for a letter.
     pub fn is_cartesian(&self, letter: &CompactString) -> bool {
         self.cartesian.contains(letter)

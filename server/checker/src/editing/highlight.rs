@@ -106,11 +106,26 @@ mod tests {
     }
 
     #[test]
+    fn letters_of_arguments_belong_together() {
+        let found = lights(
+            Host::Markdown,
+            "$T^{ab} = \\int G^{ab}(x^‸c, y^c) \\rho(y^c) dV$",
+            "$T^{ab} = \\int G^{ab}(x^⟦c⟧, y^⟦c⟧) \\rho(y^⟦c⟧) dV$",
+        );
+        assert!(found.iter().all(|one| !one.partner));
+    }
+
+    #[test]
     fn a_kernel_lights_up_with_its_number_of_slots() {
         lights(
             Host::Markdown,
             "<!-- indexwise: E_{ij} is symmetric -->\n$‸E_{ij} = E_{ji}$, a field $E_i$, and $q = E_{kk}$",
             "<!-- indexwise: ⟦E⟧_{ij} is symmetric -->\n$⟦E⟧_{ij} = ⟦E⟧_{ji}$, a field $E_i$, and $q = ⟦E⟧_{kk}$",
+        );
+        lights(
+            Host::Latex,
+            "% indexwise: ‸g_{ij} is the metric; \\Gamma^i_{jk} is the Christoffel symbol of g\n$g_{ij}$ and $g$",
+            "% indexwise: ⟦g⟧_{ij} is the metric; \\Gamma^i_{jk} is the Christoffel symbol of ⟦g⟧\n$⟦g⟧_{ij}$ and $g$",
         );
         lights(Host::Note, "Sag:\n\n  s‸igma_ij n_j = sigma_ik n_k\n", "Sag:\n\n  ⟦sigma⟧_ij n_j = ⟦sigma⟧_ik n_k\n");
     }

@@ -12,6 +12,10 @@ use indexwise_grammar::span::Span;
 use crate::balance::{self, Choice, Event};
 use crate::sketch::{Op, Sketch};
 
+/// Places of one letter in one statement that are told apart; if there are more, they are taken as one index that is not
+/// judged.
+const PLACES_BUDGET: usize = 1024;
+
 /// What an index does in its statement; a later role is told before an earlier one.
 #[derive(Clone, Copy, Debug, Default, PartialEq, Eq, PartialOrd, Ord)]
 pub(super) enum Role {
@@ -52,7 +56,7 @@ impl Index {
 
 /// All indices of a statement, letter by letter.
 pub(super) fn indices(sketch: &Sketch, choice: &Choice) -> Vec<Index> {
-    let terms = terms_of_places(sketch);
+    let terms = terms_of_places(sketch, choice);
     sketch.letter_numbers().flat_map(|letter| indices_of(sketch, choice, letter, &terms)).collect()
 }
 
@@ -62,7 +66,12 @@ fn indices_of(sketch: &Sketch, choice: &Choice, letter: u16, terms: &[Option<u32
         let held = sketch.place(*place).filter(|held| held.number == letter);
         held.is_some_and(|held| choice.index.get(held.unit as usize) == Some(&true))
     };
-    let mut classes = Classes::of(numbers.filter(is_index).collect());
+    let name = sketch.letters.get(letter as usize).cloned().unwrap_or_default();
+    let places: Vec<u32> = numbers.filter(is_index).collect();
+    if places.len() > PLACES_BUDGET {
+        return vec![Index { letter: name, role: Role::Unjudged, places, signs: Vec::new() }];
+    }
+    let mut classes = Classes::of(places);
     classes.share_places(sketch);
     let (_, events) = balance::events(sketch, choice, letter);
     let mut outer: Vec<u32> = Vec::new();
@@ -82,14 +91,12 @@ fn indices_of(sketch: &Sketch, choice: &Choice, letter: u16, terms: &[Option<u32
     }
     // One free letter is one index of the statement, also where a relation does not compare.
     classes.join(&outer, Role::Free);
-    for (place, sign) in &signs {
-        let own: Vec<u32> = signs.iter().filter(|(_, other)| other == sign).map(|(place, _)| *place).collect();
-        classes.join(&own, Role::Bound);
-        classes.join(&[*place], Role::Bound);
+    signs.sort_unstable_by_key(|(place, sign)| (*sign, *place));
+    for own in signs.chunk_by(|one, two| one.1 == two.1) {
+        classes.join(&own.iter().map(|(place, _)| *place).collect::<Vec<_>>(), Role::Bound);
     }
     close_squares(sketch, choice, &mut classes);
     settle_unjudged(&mut classes, outer.first().copied(), terms);
-    let name = sketch.letters.get(letter as usize).cloned().unwrap_or_default();
     let mut all = classes.finish(&name);
     for index in all.iter_mut().filter(|index| index.role == Role::Bound) {
         let own = signs.iter().find(|(place, _)| index.places.contains(place)).map(|(_, sign)| *sign);
@@ -108,16 +115,20 @@ fn sign_spans(sketch: &Sketch, start: u32, letter: &str) -> Vec<Span> {
     own.iter().filter(|bound| bound.letter == letter).map(|bound| bound.span).collect()
 }
 
-/// For every place the number of the outermost term that it stands in.
-fn terms_of_places(sketch: &Sketch) -> Vec<Option<u32>> {
+/// For every place the number of the outermost term that it stands in; none for places in an argument that does not
+/// count.
+fn terms_of_places(sketch: &Sketch, choice: &Choice) -> Vec<Option<u32>> {
     let mut terms = vec![None; sketch.places.len()];
-    let mut until = 0;
+    let (mut until, mut argument_until) = (0, 0);
     let mut term = None;
     for (at, op) in (0_u32..).zip(&sketch.code) {
         match op {
             Op::Term(number, end) if at >= until => (term, until) = (Some(*number), *end),
+            Op::Argument(switch, end) if choice.on.get(*switch as usize) != Some(&true) => {
+                argument_until = argument_until.max(*end);
+            }
             Op::Place(place) => {
-                if let Some(held) = terms.get_mut(*place as usize) {
+                if let Some(held) = terms.get_mut(*place as usize).filter(|_| at >= argument_until) {
                     *held = term;
                 }
             }
@@ -148,14 +159,15 @@ fn close_squares(sketch: &Sketch, choice: &Choice, classes: &mut Classes) {
 fn settle_unjudged(classes: &mut Classes, free: Option<u32>, terms: &[Option<u32>]) {
     let open: Vec<u32> = classes.places().filter(|place| classes.role(*place) == Some(Role::Unjudged)).collect();
     let term = |place: u32| terms.get(place as usize).copied().flatten();
-    for place in &open {
-        let own: Vec<u32> = open.iter().copied().filter(|other| term(*other) == term(*place)).collect();
-        match (own.as_slice(), free) {
-            ([_, _], _) => classes.join(&own, Role::Summed),
-            (_, Some(free)) => classes.join(&[*place, free], Role::Free),
-            _ => classes.join(&open, Role::Unjudged),
+    let mut rest: Vec<u32> = free.into_iter().collect();
+    // Places stand in the order of their terms.
+    for own in open.chunk_by(|one, two| term(*one) == term(*two)) {
+        match own {
+            [first, _] if term(*first).is_some() => classes.join(own, Role::Summed),
+            _ => rest.extend(own),
         }
     }
+    classes.join(&rest, if free.is_some() { Role::Free } else { Role::Unjudged });
 }
 
 /// Places of one letter in classes: each place with the number of its class and the class's role.

@@ -6,12 +6,12 @@
 use compact_str::CompactString;
 use indexwise_grammar::conventions::{Name, Sentence, Tensor};
 use indexwise_grammar::span::Span;
-use indexwise_grammar::tree::{Atom, Claim, Factor, walk};
+use indexwise_grammar::tree::{Atom, Claim, Factor, Formula, walk};
 
 use crate::paper::{Asked, View};
 use crate::terms::uses::Use;
 
-use super::parts::{Part, What, head_of, parts_of};
+use super::parts::{Part, What, head_of, named_parts};
 
 /// A kernel: its name with decorations and labels, and how many slots it has.
 #[derive(Clone, Debug, PartialEq, Eq)]
@@ -62,7 +62,7 @@ pub(super) fn uses(view: &View, document: usize, kernel: &KernelName) -> Vec<Ker
 pub(super) fn each_use(view: &View, document: usize, mut take: impl FnMut(&Part, &Use)) {
     let text = view.text(document);
     view.each_tree(document, Span::new(0, text.len()), |asked| {
-        for part in &parts_of(asked, text).parts {
+        for part in &named_parts(asked, text) {
             if let What::Kernel(made) = &part.what {
                 take(part, made);
             }
@@ -93,6 +93,28 @@ pub(super) fn in_sentences(view: &View, document: usize, kernel: &KernelName) ->
     found.sort_by_key(|(place, declares)| (place.span, !declares));
     found.dedup();
     found
+}
+
+/// The kernel that a sentence names at an offset, and where.
+pub(super) fn named_at(view: &View, document: usize, offset: u32) -> Option<(Span, KernelName)> {
+    let text = view.text(document);
+    let sentences = &view.declared(document)?.sentences;
+    let (sentence, _) = sentences.iter().find(|(_, span)| span.start <= offset && offset <= span.end)?;
+    let at = |span: Span| span.start <= offset && offset <= span.end;
+    let mut found: Option<(Span, KernelName)> = None;
+    let mut take = |factor: &Factor| {
+        let Atom::Kernel(own) = &factor.atom else { return };
+        if let Some(head) = head_of(factor, own, text).filter(|head| at(*head)) {
+            let slots = Tensor { factor: factor.clone(), span: factor.span }.slots().len();
+            found = Some((head, KernelName { name: own.name.clone(), slots }));
+        }
+    };
+    tensors_of(sentence).iter().for_each(|tensor| take(&tensor.factor));
+    if let Sentence::Definition(statement) = sentence {
+        statement.sides.iter().for_each(|side| walk(side, &mut take));
+    }
+    let metric = || metrics_of(sentence).into_iter().find(|name| at(name.span));
+    found.or_else(|| metric().map(|name| (name.span, KernelName { name: name.text.clone(), slots: 2 })))
 }
 
 fn named(name: &Name) -> KernelPlace {
@@ -148,18 +170,29 @@ fn raised_by(sentence: &Sentence) -> &[Name] {
 pub(super) fn defined_in_formulas(view: &View, document: usize, kernel: &KernelName) -> Vec<(Span, Span)> {
     let text = view.text(document);
     let mut found = Vec::new();
-    view.each_tree(document, Span::new(0, text.len()), |asked| {
+    let defines = |formula: &&Formula| DEFINING.iter().any(|sign| formula.span.of(text).contains(sign));
+    // Neighbours that touch a formula are looked at with it, and so may be looked at twice.
+    let mut take = |asked: &Asked<'_>| {
         let Some(side) = defined_side(asked) else { return };
-        for part in parts_of(asked, text).parts.iter().filter(|part| side.holds(part.span)) {
+        for part in named_parts(asked, text).iter().filter(|part| side.holds(part.span)) {
             if let What::Kernel(made) = &part.what
                 && kernel.is(made)
             {
                 found.push((part.span, asked.tree.span));
             }
         }
-    });
+    };
+    for formula in view.formulas(document).iter().filter(defines) {
+        view.each_tree(document, formula.span, &mut take);
+    }
+    found.sort_unstable();
+    found.dedup();
     found
 }
+
+/// What stands in a formula that defines something; a macro of the author's may hide it, and then nothing is shown.
+const DEFINING: &[&str] =
+    &[":=", "=:", "coloneq", "eqcolon", "eqqcolon", "triangleq", "defeq", "colonequals", "≔", "≕"];
 
 /// The side that a statement defines, if it is one kernel.
 fn defined_side(asked: &Asked<'_>) -> Option<Span> {

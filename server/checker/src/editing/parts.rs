@@ -3,9 +3,13 @@
 //! Indices are those of `indices.rs`, kernels and labels those of the symbol table. A part that a macro wrote has the
 //! place of the macro's call; `typed` tells the two apart.
 
+use std::collections::VecDeque;
+
 use compact_str::CompactString;
 use indexwise_grammar::span::Span;
 use indexwise_grammar::tree::{Atom, Factor, ItemKind, Kernel, Script, walk};
+
+use rustc_hash::FxHashSet;
 
 use crate::changes::is_typed;
 use crate::conventions::built_in::is_derivative;
@@ -59,38 +63,47 @@ impl Parts {
 
 /// Takes a statement of `text` apart.
 pub(super) fn parts_of(asked: &Asked<'_>, text: &str) -> Parts {
-    let (sketch, mut parts) = (asked.sketch, Vec::new());
+    let (sketch, mut parts) = (asked.sketch, named_parts(asked, text));
     let indices = indices(sketch, &asked.reading.choice);
     for (number, index) in indices.iter().enumerate() {
         let spans = index.spans(sketch).into_iter();
         let part = |span| Part { span, what: What::Index(number), typed: is_typed(text, span, &index.letter) };
         parts.extend(spans.map(part));
     }
-    let mut told = told(asked.tree, text, asked.eyes);
+    parts.sort_by_key(|part| (part.span, !part.typed));
+    Parts { indices, parts }
+}
+
+/// The parts of a statement that are no indices, in the order of the tree.
+pub(super) fn named_parts(asked: &Asked<'_>, text: &str) -> Vec<Part> {
+    let mut parts = Vec::new();
+    let Told { uses, letters } = told(asked.tree, text, asked.eyes);
+    let mut uses = VecDeque::from(uses);
+    let exponents = letters.iter().filter(|(_, role, _)| matches!(role, LetterRole::Kernel(_)));
+    let exponents: FxHashSet<Span> = exponents.map(|(.., span)| *span).collect();
     for side in &asked.tree.sides {
         walk(side, &mut |factor| {
             if let Atom::Kernel(kernel) = &factor.atom {
-                kernel_parts(asked, text, (factor, kernel), &mut told, &mut parts);
+                kernel_parts(asked, text, (factor, kernel), (&exponents, &mut uses), &mut parts);
             }
         });
     }
-    parts.sort_by_key(|part| (part.span, !part.typed));
-    Parts { indices, parts }
+    parts
 }
 
 fn kernel_parts(
     asked: &Asked<'_>,
     text: &str,
     (factor, kernel): (&Factor, &Kernel),
-    told: &mut Told,
+    (exponents, uses): (&FxHashSet<Span>, &mut VecDeque<Use>),
     parts: &mut Vec<Part>,
 ) {
-    let known = told.uses.iter().position(|made| made.span == factor.span && made.letter == kernel.letter);
+    let known = uses.iter().position(|made| made.span == factor.span && made.letter == kernel.letter);
     let head = head_of(factor, kernel, text);
     let span = head.unwrap_or(factor.span);
-    if let Some(at) = known {
-        let made = Box::new(told.uses.remove(at));
-        parts.push(Part { span, what: What::Kernel(made), typed: head.is_some() });
+    // Uses come in the order of the factors, so that the one looked for is mostly the first.
+    if let Some(made) = known.and_then(|at| uses.remove(at)) {
+        parts.push(Part { span, what: What::Kernel(Box::new(made)), typed: head.is_some() });
     } else if differentiates(asked, kernel) {
         parts.push(Part { span, what: What::Derivative(kernel.name.clone()), typed: head.is_some() });
     }
@@ -106,19 +119,24 @@ fn kernel_parts(
         }
     }
     for script in &factor.scripts {
-        label_parts(script, &made, told, text, parts);
+        label_parts(asked, script, (&made, exponents), text, parts);
     }
 }
 
 /// What of a script names something: what fills no slot and is no exponent. Letters side by side are one word.
-fn label_parts(script: &Script, made: &Use, told: &Told, text: &str, parts: &mut Vec<Part>) {
+fn label_parts(
+    asked: &Asked<'_>,
+    script: &Script,
+    (made, exponents): (&Use, &FxHashSet<Span>),
+    text: &str,
+    parts: &mut Vec<Part>,
+) {
     let mut last: Option<(Span, CompactString)> = None;
-    let exponent = |span: Span| {
-        told.letters.iter().any(|(_, role, other)| *other == span && matches!(role, LetterRole::Kernel(_)))
-    };
+    // In an exponent, which is a formula of its own, nothing is known of a letter.
+    let named = |name: &CompactString, span: Span| !exponents.contains(&span) && asked.eyes.has_read(name, span);
     for item in &script.items {
         let name = match &item.kind {
-            ItemKind::Letter(name) if !exponent(item.span) => name,
+            ItemKind::Letter(name) if named(name, item.span) => name,
             ItemKind::Label(name) | ItemKind::Styled(name) => name,
             _ => continue,
         };

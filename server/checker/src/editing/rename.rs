@@ -14,6 +14,7 @@ mod tests;
 use compact_str::CompactString;
 use indexwise_grammar::hosts::Host;
 use indexwise_grammar::span::Span;
+use indexwise_grammar::tree::Sum;
 
 use crate::changes::is_typed;
 use crate::conventions::built_in::{is_derivative, shown};
@@ -140,7 +141,10 @@ fn rename_index(view: &View, document: usize, held: &Held, to: &str) -> Result<E
         return Err(clash);
     }
     let edit = |span: &Span| Edit { span: *span, text: respelled(&letter, *span, text, host) };
-    let edits = vec![(document, held.spans.iter().map(edit).collect::<Vec<Edit>>())];
+    let mut spans = held.spans.clone();
+    spans.extend(named_beside(view, document, held));
+    spans.sort_unstable();
+    let edits = vec![(document, spans.iter().map(edit).collect::<Vec<Edit>>())];
     let expected = Expected::Index { document, from: &held.index.letter, to: &letter };
     if reads_as_before(view, &edits, &expected) {
         return Ok(edits);
@@ -148,6 +152,29 @@ fn rename_index(view: &View, document: usize, held: &Held, to: &str) -> Result<E
     Err(clash
         .after_reading
         .unwrap_or_else(|| format!("the formula would be read in another way with {}", shown(&letter))))
+}
+
+/// `i = 1, 2, 3` beside the statement in its formula: there the letter names the free index, if no other statement of
+/// the formula has one of its name.
+fn named_beside(view: &View, document: usize, held: &Held) -> Vec<Span> {
+    let (text, letter) = (view.text(document), &held.index.letter);
+    let Some(formula) = view.formulas(document).get(held.formula).filter(|_| held.index.role == Role::Free) else {
+        return Vec::new();
+    };
+    let (mut named, mut other) = (Vec::new(), false);
+    view.each_tree(document, formula.span, |asked| {
+        let own = held.spans.iter().any(|span| asked.sketch.span.holds(*span));
+        if asked.number != held.formula || own {
+            return;
+        }
+        other |= asked.sketch.letters.contains(letter);
+        let lone = |side: &Sum| side.terms.iter().all(|term| term.factors.len() == 1);
+        if asked.sketch.places.is_empty() && asked.tree.sides.iter().all(lone) {
+            let quantities = asked.sketch.quantities.iter().filter(|(name, _)| name == letter);
+            named.extend(quantities.map(|(_, span)| *span).filter(|span| is_typed(text, *span, letter)));
+        }
+    });
+    if other { Vec::new() } else { named }
 }
 
 /// Whether the new letter may stand where the old one does, as far as the author declares.

@@ -40,7 +40,11 @@ pub struct Token {
 pub fn tokens(view: &View, document: usize, within: Span) -> Vec<Token> {
     let text = view.text(document);
     let mut found: Vec<Token> = Vec::new();
-    view.each_statement(document, within, |asked| {
+    let skipped = view.skipped(document);
+    view.each_tree(document, within, |asked| {
+        if skipped.contains(&asked.number) {
+            return;
+        }
         let parts = parts_of(asked, text);
         found.extend(parts.parts.iter().filter_map(|part| token(part, &parts, text)));
     });
@@ -163,6 +167,12 @@ mod tests {
             "\\newcommand{\\bend}[2]{\\kappa_{#1#2}}\\newcommand{\\trace}{\\kappa_{mm}}\n$\\bend ij n_j = \\trace q_i$",
             "kernel:\\bend free:i dummy:j kernel:n dummy:j kernel:\\trace kernel:q free:i",
         );
+    }
+
+    #[test]
+    fn what_is_skipped_has_no_tokens_and_what_has_no_letters_has() {
+        let text = "<!-- indexwise: skip this -->\n$A_i = B_i$\n\n$g_{00} = 1$";
+        reads(Host::Markdown, text, "kernel:g component:00");
     }
 
     #[test]

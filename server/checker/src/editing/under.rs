@@ -1,4 +1,5 @@
-//! What stands under a cursor: a label, a macro's name, an index or a kernel. All questions about a place begin here.
+//! What stands under a cursor: a label, a macro's name, an index or a kernel, in a formula or in a sentence of the
+//! conventions. All questions about a place begin here.
 
 use std::sync::Arc;
 
@@ -9,7 +10,7 @@ use crate::paper::View;
 
 use super::commands::call_at;
 use super::indices::{Index, Role};
-use super::kernels::KernelName;
+use super::kernels::{KernelName, named_at};
 use super::labels::{Mention, mention_at};
 use super::parts::{Part, What, parts_of};
 
@@ -45,6 +46,10 @@ pub(super) struct Held {
 pub(super) fn under(view: &View, document: usize, offset: u32) -> Option<Under> {
     if let Some(mention) = mention_at(view, document, offset) {
         return Some(Under::Label(mention));
+    }
+    if let Some((span, kernel)) = named_at(view, document, offset) {
+        let part = Part { span, what: What::Kernel(Box::default()), typed: true };
+        return Some(Under::Kernel(part, kernel));
     }
     let part = part_at(view, document, offset);
     match (call_at(view, document, offset), part) {

@@ -5,8 +5,11 @@
 use std::borrow::Cow;
 use std::sync::Arc;
 
+use indexwise_grammar::read_regions;
 use indexwise_grammar::span::Span;
 use indexwise_grammar::tree::{self, Formula};
+
+use rustc_hash::FxHashSet;
 
 use crate::conventions::inferred::Prices;
 use crate::ledger::Judged;
@@ -18,6 +21,9 @@ use crate::terms::symmetries::Customs;
 use super::directed::skipped;
 use super::judging::{Trees, is_without_sum};
 use super::{Sketched, Statement, View};
+
+/// Formulas that are read together where many are looked at.
+const FORMULAS_AT_ONCE: usize = 64;
 
 /// A statement that somebody asks about.
 pub(crate) struct Asked<'a> {
@@ -95,17 +101,28 @@ impl View {
         }
     }
 
+    /// The numbers of the formulas of a document that the author says to skip.
+    pub(crate) fn skipped(&self, document: usize) -> FxHashSet<usize> {
+        let own = self.documents.get(document).map(|own| &own.read);
+        own.map(|read| skipped(&read.declared, &read.document.formulas)).unwrap_or_default()
+    }
+
     /// Hands every statement of a document that touches a stretch of the text to a function, in order: those without
     /// scripts and those that the author says to skip among them, read by the same evidence.
     pub(crate) fn each_tree(&self, document: usize, within: Span, mut take: impl FnMut(&Asked<'_>)) {
-        let Some((own, mut looker)) = self.documents.get(document).zip(self.looker(document)) else { return };
-        let formulas = &own.read.document.formulas;
+        let Some((own, looker)) = self.documents.get(document).zip(self.looker(document)) else { return };
+        let read = &own.read;
+        let formulas = &read.document.formulas;
         let first = formulas.partition_point(|formula| formula.span.end < within.start);
-        let touching = formulas.iter().enumerate().skip(first);
-        for (number, _) in touching.take_while(|(_, formula)| formula.span.start <= within.end) {
-            for tree in looker.trees.statements(&own.read, number).to_vec() {
-                if tree.span.start <= within.end && within.start <= tree.span.end {
-                    looker.look_at_tree(number, &tree, &mut take);
+        let end = formulas.partition_point(|formula| formula.span.start <= within.end).max(first);
+        // There is one formula for each region.
+        let regions = read.document.scan.regions.get(first..end).unwrap_or_default();
+        for (chunk, regions) in regions.chunks(FORMULAS_AT_ONCE).enumerate() {
+            let number = first + chunk * FORMULAS_AT_ONCE;
+            for (number, formula) in (number..).zip(read_regions(regions, &read.text, read.host, &read.macros)) {
+                let touching = |tree: &&tree::Statement| tree.span.start <= within.end && within.start <= tree.span.end;
+                for tree in formula.statements.iter().filter(touching) {
+                    looker.look_at_tree(number, tree, &mut take);
                 }
             }
         }
@@ -114,8 +131,8 @@ impl View {
     fn looker(&self, document: usize) -> Option<Looker<'_>> {
         let prices = self.prices(document)?;
         let own = self.documents.get(document)?;
-        let (scores, customs) = (own.scores(&prices), Customs::of(&own.read.text, &prices));
-        Some(Looker { own, prices, scores, customs, trees: Trees::default() })
+        let (scores, customs) = self.scored(document)?;
+        Some(Looker { own, prices, scores, customs: *customs, trees: Trees::default() })
     }
 }
 
@@ -123,7 +140,7 @@ impl View {
 struct Looker<'v> {
     own: &'v Sketched,
     prices: Prices<'v>,
-    scores: Vec<i32>,
+    scores: &'v [i32],
     customs: Customs,
     trees: Trees,
 }
@@ -132,7 +149,7 @@ impl Looker<'_> {
     fn look<T: Default>(&mut self, statement: &Statement, take: impl FnOnce(&Asked<'_>) -> T) -> T {
         let Some(formula) = self.own.read.document.formulas.get(statement.formula) else { return T::default() };
         let (sketch, prices) = (&*statement.sketch, &self.prices);
-        let reading = &statement.read(&self.scores);
+        let reading = &statement.read(self.scores);
         let eyes = &Eyes::new(sketch, &reading.choice, prices, self.customs);
         self.trees.statement(&self.own.read, statement.formula, sketch.span, |tree| {
             take(&Asked { formula, number: statement.formula, tree, sketch, reading, prices, eyes })
@@ -141,13 +158,13 @@ impl Looker<'_> {
 }
 
 impl Looker<'_> {
-    fn look_at_tree(&mut self, number: usize, tree: &tree::Statement, take: &mut impl FnMut(&Asked<'_>)) {
+    fn look_at_tree(&self, number: usize, tree: &tree::Statement, take: &mut impl FnMut(&Asked<'_>)) {
         let Some(formula) = self.own.read.document.formulas.get(number) else { return };
         let known = self.own.statements.partition_point(|statement| statement.formula < number);
         let mut known = self.own.statements.iter().skip(known).take_while(|statement| statement.formula == number);
         let prices = &self.prices;
         let (sketch, reading) = match known.find(|statement| statement.sketch.span == tree.span) {
-            Some(statement) => (statement.sketch.clone(), statement.read(&self.scores)),
+            Some(statement) => (statement.sketch.clone(), statement.read(self.scores)),
             None => {
                 let sketch = Sketch::of(tree);
                 let scores = sketch.units.iter().map(|unit| prices.score(unit)).collect();

@@ -384,8 +384,7 @@ impl Trees {
         self.statements(read, number).iter().find(|statement| statement.span == span).map(take).unwrap_or_default()
     }
 
-    /// The statements of a formula.
-    pub(super) fn statements(&mut self, read: &Read, number: usize) -> &[tree::Statement] {
+    fn statements(&mut self, read: &Read, number: usize) -> &[tree::Statement] {
         if self.formula.as_ref().is_none_or(|(known, _)| *known != number) {
             let region = read.document.scan.regions.get(number);
             let tree = region.map(|region| read_region(region, &read.text, read.host, &read.macros));

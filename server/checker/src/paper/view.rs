@@ -2,6 +2,8 @@
 //!
 //! A view is immutable; an editor makes one for each version of its texts and asks it as often as it likes.
 
+use std::sync::OnceLock;
+
 use compact_str::CompactString;
 use indexwise_grammar::hosts::{Host, Scan};
 use indexwise_grammar::tree::Formula;
@@ -9,6 +11,7 @@ use rustc_hash::FxHashSet;
 
 use crate::conventions::declared::Declared;
 use crate::conventions::inferred::{Evidence, Prices};
+use crate::terms::symmetries::Customs;
 
 use super::judging::{judge_document, missing_part};
 use super::reads::{Sketched, gather, read_paper, total};
@@ -24,6 +27,8 @@ pub struct View {
     /// The labels of all formulas.
     labels: FxHashSet<CompactString>,
     paper: Paper,
+    /// For each document the scores of its units and its customs, once a question asks for them.
+    scored: Vec<OnceLock<(Vec<i32>, Customs)>>,
 }
 
 impl View {
@@ -34,7 +39,8 @@ impl View {
         let all = total(&evidence);
         let formulas = documents.iter().flat_map(|one| &one.read.document.formulas);
         let labels = formulas.flat_map(|formula| formula.labels.iter().map(|(label, _)| label.clone())).collect();
-        Self { documents, evidence, all, labels, paper: paper.clone() }
+        let scored = documents.iter().map(|_| OnceLock::new()).collect();
+        Self { documents, evidence, all, labels, paper: paper.clone(), scored }
     }
 
     /// Asks all rules. One analysis for each document, in their order.
@@ -94,6 +100,13 @@ impl View {
     /// What the author declares in a document, and around it.
     pub(crate) fn declared(&self, document: usize) -> Option<&Declared> {
         self.documents.get(document).map(|one| &one.read.declared)
+    }
+
+    /// The scores of a document's units, and its customs.
+    pub(super) fn scored(&self, document: usize) -> Option<&(Vec<i32>, Customs)> {
+        let (own, prices) = (self.documents.get(document)?, self.prices(document)?);
+        let scored = || (own.scores(&prices), Customs::of(&own.read.text, &prices));
+        self.scored.get(document).map(|cell| cell.get_or_init(scored))
     }
 
     /// The evidence that a document is read with.

@@ -62,6 +62,39 @@ fn a_letter_of_a_sum_sign() {
 }
 
 #[test]
+fn the_values_of_a_free_index_are_said_of_its_new_name() {
+    gives(Host::Latex, "\\[A_‸i = B_i , \\quad i = 1, 2, 3\\]", "k", "\\[A_k = B_k , \\quad k = 1, 2, 3\\]");
+    gives(
+        Host::Latex,
+        "\\[A_‸i = B_i , \\quad C_i = D_i , \\quad i = 1, 2\\]",
+        "k",
+        "\\[A_k = B_k , \\quad C_i = D_i , \\quad i = 1, 2\\]",
+    );
+}
+
+#[test]
+fn scopes_of_other_kinds() {
+    gives(Host::Latex, "$\\nabla_{[‸a} R_{bc]de} = 0$", "f", "$\\nabla_{[f} R_{bc]de} = 0$");
+    gives(Host::Latex, "$A_{ij}n_j \\approx B_‸i$", "k", "$A_{kj}n_j \\approx B_k$");
+    gives(Host::Latex, "$A_‸i \\leq B_i$ and $A_{ij} = B_{ij}$", "k", "$A_k \\leq B_k$ and $A_{ij} = B_{ij}$");
+    gives(Host::Latex, "$T^{ab}(x^‸c) = S^{ab}(x^c)$", "d", "$T^{ab}(x^d) = S^{ab}(x^d)$");
+    gives(Host::Latex, "$u_{i,‸j} n_j = t_i$", "k", "$u_{i,k} n_k = t_i$");
+    gives(
+        Host::Latex,
+        "$\\frac{\\partial \\sigma_{ij}}{\\partial x_‸j} + f_i = 0$",
+        "k",
+        "$\\frac{\\partial \\sigma_{ik}}{\\partial x_k} + f_i = 0$",
+    );
+    gives(Host::Latex, "$\\sum_{‸a<b} w_{ab} v_a v_b = q$", "c", "$\\sum_{c<b} w_{cb} v_c v_b = q$");
+    gives(
+        Host::Latex,
+        "$[\\nabla_‸a, \\nabla_b] V^c = R^c{}_{dab} V^d$",
+        "e",
+        "$[\\nabla_e, \\nabla_b] V^c = R^c{}_{deb} V^d$",
+    );
+}
+
+#[test]
 fn greek_is_written_in_the_author_s_way() {
     gives(Host::Latex, "$A^{\\‸mu}B_{\\mu a} = C_a$", "\\rho", "$A^{\\rho}B_{\\rho a} = C_a$");
     gives(Host::Latex, "$A_‸i B_{ia} = C_{a}$", "\\mu", "$A_\\mu B_{\\mu a} = C_{a}$");
