@@ -56,7 +56,7 @@ pub fn actions(view: &View, document: usize, selection: Span, analysis: &Documen
     let touched: Vec<(usize, &Finding)> = touched(selection, analysis).collect();
     let at = selection.start;
     let mut out: Vec<Action> = Vec::new();
-    out.extend(touched.iter().flat_map(|(number, finding)| fixes::mends(*number, finding)));
+    out.extend(touched.iter().flat_map(|(number, finding)| fixes::mends(view, document, *number, finding)));
     out.extend(touched.iter().filter_map(|(_, finding)| directives::holds_with(view, document, finding)));
     out.extend(touched.iter().flat_map(|(_, finding)| declaring::symmetries(view, document, finding)));
     out.extend(writing::written_out(view, document, at));

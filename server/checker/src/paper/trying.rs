@@ -1,8 +1,8 @@
 //! What an editor's changes are tried on: formulas with their statements, and what a formula would be after edits.
 //!
 //! A change that an editor offers is made on the text, and the formula is read and judged again before it is offered.
-//! Only that formula is looked at, with the habits of the document as it is: a change that sways the habits of a whole
-//! document is not seen here.
+//! In a long document only that formula is looked at, with the habits of the document as it is: a change that sways the
+//! habits of a long document is not seen here.
 
 use std::borrow::Cow;
 
@@ -25,6 +25,10 @@ use crate::terms::{Eyes, Flattened};
 use super::directed::{skipped, target};
 use super::judging::is_without_sum;
 use super::{Cancel, Settings, StepMode, View};
+
+/// Bytes of a document up to which a change is tried on the whole of it. A longer one has so many statements that one
+/// hardly sways its habits, and is too long to be read for every thing that is offered.
+const SHORT: usize = 40_000;
 
 /// A formula that is not in the document: its statements, and the text that their places lie in.
 pub(crate) struct Reread {
@@ -85,7 +89,8 @@ impl View {
     }
 
     /// Whether a formula after edits reads as well as before: nothing more unread or unknown, and no more errors or
-    /// warnings of any rule about statements.
+    /// warnings of any rule about statements. Of a short document the same is asked as a whole, since there one statement
+    /// sways the habits.
     pub(crate) fn reads_as_well(&self, document: usize, number: usize, edits: &[Edit]) -> bool {
         let (Some(before), Some(after)) = (self.tree(document, number), self.reread(document, number, edits)) else {
             return false;
@@ -98,11 +103,37 @@ impl View {
             return false;
         }
         let known = self.grave(document, number, &before, self.text(document));
-        let mut left = known;
-        self.grave(document, number, &after.formula, &after.text).iter().all(|rule| {
-            let at = left.iter().position(|other| other == rule);
-            at.map(|at| left.swap_remove(at)).is_some()
-        })
+        let found = self.grave(document, number, &after.formula, &after.text);
+        no_more(known, &found) && (after.text.len() > SHORT || self.whole_reads_as_well(document, after.text))
+    }
+
+    /// Whether a formula after edits has no error or warning of a rule that found none there before. True where that
+    /// cannot be told.
+    pub(crate) fn has_no_other_fault(&self, document: usize, number: usize, edits: &[Edit]) -> bool {
+        let (Some(before), Some(after)) = (self.tree(document, number), self.reread(document, number, edits)) else {
+            return true;
+        };
+        let known = self.grave(document, number, &before, self.text(document));
+        self.grave(document, number, &after.formula, &after.text).iter().all(|rule| known.contains(rule))
+    }
+
+    /// Whether a document with another text has no more errors or warnings of any rule; steps are not judged.
+    fn whole_reads_as_well(&self, document: usize, text: String) -> bool {
+        let Some(after) = self.with_text(document, text) else { return false };
+        let settings = Settings { steps: StepMode::Off, ..Settings::default() };
+        let grave = |view: &Self| {
+            let found = view.judge_document(document, &settings).unwrap_or_default().findings;
+            let grave = found.into_iter().filter(|finding| finding.severity != Severity::Hint);
+            grave.map(|finding| finding.rule).collect::<Vec<_>>()
+        };
+        no_more(grave(self), &grave(&after))
+    }
+
+    /// The paper with another text of one document.
+    fn with_text(&self, document: usize, text: String) -> Option<Self> {
+        let mut paper = self.paper().clone();
+        paper.documents.get_mut(document)?.text = text.into();
+        Some(Self::of(&paper, &Cancel::default()))
     }
 
     /// The rules of the errors and warnings in a formula's statements, which need not be those of the document.
@@ -147,21 +178,15 @@ impl View {
 
     /// Whether a finding about a statement is gone once a sentence is declared, and nothing graver comes.
     pub(crate) fn is_gone_with(&self, document: usize, finding: &Finding, declaration: &Edit) -> bool {
-        let Some(text) =
-            self.documents.get(document).and_then(|own| edited(&own.read.text, std::slice::from_ref(declaration)))
-        else {
-            return false;
-        };
-        let mut paper = self.paper().clone();
-        let Some(source) = paper.documents.get_mut(document) else { return false };
-        source.text = text.into();
+        let text = edited(self.text(document), std::slice::from_ref(declaration));
+        let Some(view) = text.and_then(|text| self.with_text(document, text)) else { return false };
         let settings = Settings { steps: StepMode::Off, ..Settings::default() };
         let counts = |view: &Self| {
             let found = view.judge_document(document, &settings).unwrap_or_default().findings;
             let own = found.iter().filter(|other| other.rule == finding.rule).count();
             (own, found.iter().filter(|other| other.severity != Severity::Hint).count())
         };
-        let (before, after) = (counts(self), counts(&Self::of(&paper, &Cancel::default())));
+        let (before, after) = (counts(self), counts(&view));
         after.0 < before.0 && after.1 <= before.1
     }
 
@@ -176,6 +201,14 @@ impl View {
             && scan.regions.len() == read.document.scan.regions.len();
         sound.then_some(declared)
     }
+}
+
+/// Whether each of the second stands among the first, as often.
+fn no_more(mut known: Vec<&'static str>, found: &[&'static str]) -> bool {
+    found.iter().all(|rule| {
+        let at = known.iter().position(|other| other == rule);
+        at.map(|at| known.swap_remove(at)).is_some()
+    })
 }
 
 /// What is found in one statement, as a check would find it; steps are not judged.

@@ -22,6 +22,9 @@ use super::{Action, ActionKind};
 /// Labelled equations that are offered at a place, the nearest before it first; a command may ask for all.
 const OFFERED: usize = 4;
 
+/// Labelled equations that are tried at a place before no more are offered.
+const TRIED: usize = 16;
+
 /// What an equation's own text may not hold to be put into another one.
 const LAYOUT: [&str; 9] = ["&", "\\\\", "%", "\\label", "\\nonumber", "\\notag", "\\tag", "\n", "\\begin"];
 
@@ -51,7 +54,7 @@ pub(super) fn offered(view: &View, document: usize, at: u32) -> Vec<Action> {
         let action = Action { title, kind: ActionKind::Insert, edits, preferred: false };
         view.reads_as_well(document, spot.number, &action.edits).then_some(action)
     };
-    labelled.into_iter().filter_map(fits).take(OFFERED).collect()
+    labelled.into_iter().take(TRIED).filter_map(fits).take(OFFERED).collect()
 }
 
 /// The labels of other formulas with the numbers of these.
