@@ -308,7 +308,7 @@ fn what_is_wrong_with_a_configuration_is_shown_in_it() {
     client.open(&name, "latex", SLIP);
     let found = client.wait("a finding", |client| client.published(&uri(&file)).cloned());
     assert_eq!(rules(found["diagnostics"].as_array().unwrap()), ["convention-unreadable"]);
-    assert_eq!(found["diagnostics"][0]["range"]["start"], json!({"line": 1, "character": 10}));
+    assert_eq!(found["diagnostics"][0]["range"]["start"], json!({"line": 1, "character": 20}));
     fs::remove_file(&file).unwrap();
     client.notify("workspace/didChangeWatchedFiles", json!({"changes": [{"uri": uri(&file), "type": 3}]}));
     client.wait("no finding", |client| {
