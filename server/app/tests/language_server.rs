@@ -229,6 +229,28 @@ fn parts_that_are_not_saved_count_as_they_stand_in_the_editor() {
 }
 
 #[test]
+fn parts_that_are_opened_while_their_paper_is_being_read_count_at_once() {
+    let main: &[u8] = b"\\documentclass{article}\\begin{document}\\input{part}\\end{document}";
+    for _ in 0..10 {
+        let folder = Folder::new(&[("main.tex", main), ("part.tex", b"on the disk"), ("more.tex", b"on the disk")]);
+        let mut client = Client::session(folder.path(), &rich());
+        let name = |file: &str| uri(&folder.path().join(file));
+        let (root, part, more) = (name("main.tex"), name("part.tex"), name("more.tex"));
+        client.open(&root, "latex", &String::from_utf8_lossy(main));
+        client.open(&part, "latex", SLIP);
+        client.replace(&part, &format!("{SLIP} \\input{{more}}"));
+        client.open(&more, "latex", SLIP);
+        assert_eq!(client.diagnostics(&more).len(), 1);
+        assert_eq!(client.diagnostics(&part).len(), 1);
+        client.notify("textDocument/didClose", json!({"textDocument": {"uri": more}}));
+        client.wait("what is on the disk", |client| {
+            client.published(&more)?["diagnostics"].as_array()?.is_empty().then_some(())
+        });
+        assert_eq!(client.end(), 0);
+    }
+}
+
+#[test]
 fn a_closed_text_has_no_diagnostics_any_more() {
     let folder = folder();
     let mut client = Client::session(folder.path(), &rich());

@@ -11,6 +11,9 @@ use std::time::SystemTime;
 use crate::files::Text;
 use crate::project::{Disk, Texts};
 
+/// When so many files have been read, all are forgotten: who works that long works on others by now.
+const MOST_FILES: usize = 4096;
+
 /// What tells one state of a file from another.
 type Stamp = (u64, Option<SystemTime>);
 
@@ -35,6 +38,9 @@ impl Texts for RememberedDisk {
             return Ok(text.clone());
         }
         let text = Disk.read(path)?;
+        if read.len() >= MOST_FILES {
+            read.clear();
+        }
         read.insert(path.to_owned(), (now, text.clone()));
         Ok(text)
     }

@@ -5,6 +5,7 @@
 //! holds on: nobody wants to see other findings while a file is being edited.
 
 use std::collections::BTreeMap;
+use std::path::PathBuf;
 use std::time::Instant;
 
 use tower_lsp::lsp_types::{MessageType, PublishDiagnosticsParams, Url};
@@ -17,13 +18,32 @@ use crate::configuration::Scopes;
 use crate::panics;
 use crate::project::{Overlay, PaperKey, Roots};
 
+/// What may have changed.
+pub enum Touched {
+    /// Any file: every paper is read again.
+    Everything,
+    /// A text was opened or closed: the papers that it is part of are read again.
+    Text(Url, PathBuf),
+    /// No text, only what they ask for.
+    Nothing,
+}
+
 impl Worker {
-    /// Finds the papers anew. `all`: files may have changed, so that every paper is read again.
-    pub(super) fn regroup(&mut self, all: bool) {
+    /// Finds the papers anew.
+    pub(super) fn regroup(&mut self, touched: &Touched) {
         self.enter_scopes();
-        self.keys = self.keys_of_all();
+        let keys = self.keys_of_all();
+        let before = std::mem::replace(&mut self.keys, keys);
+        // What is not read yet does not know its parts; so the paper that the text belonged to, and now does, counts too.
+        let meets = |paper: &PaperState, now: &BTreeMap<Url, PaperKey>| match touched {
+            Touched::Everything => true,
+            Touched::Nothing => false,
+            Touched::Text(uri, path) => {
+                paper.holds(path) || before.get(uri) == Some(&paper.key) || now.get(uri) == Some(&paper.key)
+            }
+        };
         let now = Instant::now();
-        let mut before = std::mem::take(&mut self.papers);
+        let mut papers = std::mem::take(&mut self.papers);
         let mut gone = Vec::new();
         for (uri, key) in &self.keys {
             if self.papers.iter().any(|paper| paper.key == *key) {
@@ -31,12 +51,11 @@ impl Worker {
             }
             let path = self.documents.get(uri).map(|document| document.path.clone()).unwrap_or_default();
             let scope = self.scopes.of(&path);
-            match before.iter().position(|paper| paper.key == *key) {
+            match papers.iter().position(|paper| paper.key == *key) {
                 Some(at) => {
-                    let mut paper = before.swap_remove(at);
+                    let mut paper = papers.swap_remove(at);
                     paper.scope = scope;
-                    // A document that has just been opened is in it with another version.
-                    if all {
+                    if meets(&paper, &self.keys) {
                         paper.moved(now);
                     }
                     self.papers.push(paper);
@@ -44,8 +63,8 @@ impl Worker {
                 None => self.papers.push(PaperState::new(key.clone(), scope, now)),
             }
         }
-        before.iter().for_each(|paper| gone.extend(paper.shown.keys().cloned()));
-        self.take_over(before);
+        papers.iter().for_each(|paper| gone.extend(paper.shown.keys().cloned()));
+        self.take_over(papers);
         for uri in gone {
             self.withdraw(&uri);
         }

@@ -103,9 +103,14 @@ impl PaperState {
         }
     }
 
-    /// Whether a file is part of it, as far as is known.
+    /// Whether it is being read for the first time, and nobody has been told.
+    pub fn is_first_read(&self) -> bool {
+        self.known.is_none() && self.reading.is_some() && self.progress.is_none()
+    }
+
+    /// Whether a file may be part of it: any may of one that has not been read yet.
     pub fn holds(&self, path: &Path) -> bool {
-        let known = self.known.as_ref().is_some_and(|(_, known)| known.picture.files.iter().any(|file| file == path));
+        let known = self.known.as_ref().is_none_or(|(_, known)| known.picture.files.iter().any(|file| file == path));
         known || self.key.root == path || self.key.appended.as_deref() == Some(path)
     }
 

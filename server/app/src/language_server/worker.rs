@@ -25,6 +25,7 @@ use super::carrying::carried;
 use super::disk::RememberedDisk;
 use super::documents::{self, Document};
 use super::event::{Event, Question, Refusal};
+use super::grouping::Touched;
 use super::looking::Look;
 use super::outbox::{Note, Outbox};
 use super::papers::{Held, PaperState};
@@ -120,8 +121,8 @@ impl Worker {
         let due = self.papers.iter().flat_map(|paper| {
             let reading = paper.due.filter(|_| paper.reading.is_none());
             let judging = paper.steps_due.filter(|_| paper.judging.is_none());
-            let waits = paper.known.is_none() && paper.progress.is_none() && self.client.progress;
-            [reading, judging, waits.then(|| paper.since + PATIENCE)]
+            let lasts = self.client.progress && paper.is_first_read();
+            [reading, judging, lasts.then(|| paper.since + PATIENCE)]
         });
         due.flatten().min()
     }
@@ -143,10 +144,11 @@ impl Worker {
             Event::Open { uri, language, version, text } => self.open(uri, &language, version, &text),
             Event::Change { uri, version, changes } => self.change(&uri, version, &changes),
             Event::Close(uri) => {
-                self.documents.remove(&uri);
-                self.regroup(true);
+                if let Some(document) = self.documents.remove(&uri) {
+                    self.regroup(&Touched::Text(uri, document.path));
+                }
             }
-            Event::Files => self.regroup(true),
+            Event::Files => self.regroup(&Touched::Everything),
             Event::Settings(section) if section.is_null() && self.client.has_settings => {
                 self.outbox.put(Note::AskSettings);
             }
@@ -196,8 +198,8 @@ impl Worker {
     fn open(&mut self, uri: Url, language: &str, version: i32, text: &str) {
         let path = documents::path_of(&uri, &self.folder);
         let host = documents::host(language, &path);
-        self.documents.insert(uri.clone(), Document::new(uri, path, host, version, text));
-        self.regroup(true);
+        self.documents.insert(uri.clone(), Document::new(uri.clone(), path.clone(), host, version, text));
+        self.regroup(&Touched::Text(uri, path));
     }
 
     fn change(&mut self, uri: &Url, version: i32, changes: &[TextDocumentContentChangeEvent]) {
@@ -222,14 +224,14 @@ impl Worker {
             let due = is_due(paper.due) || paper.due.is_some() && !paper.held.is_empty();
             let reads = due && paper.reading.is_none();
             let judges = is_due(paper.steps_due) && paper.judging.is_none();
-            let lasts = paper.known.is_none() && paper.progress.is_none() && paper.since + PATIENCE <= now;
+            let lasts = self.client.progress && paper.is_first_read() && paper.since + PATIENCE <= now;
             if reads {
                 self.start_reading(at);
             }
             if judges {
                 self.start_judging(at);
             }
-            if lasts && self.client.progress {
+            if lasts {
                 self.show_progress(at);
             }
         }
@@ -313,7 +315,7 @@ impl Worker {
         self.publish(at);
         self.answer_held(at);
         if elsewhere {
-            self.regroup(false);
+            self.regroup(&Touched::Nothing);
         }
     }
 
