@@ -30,6 +30,8 @@ pub enum Command {
     /// The nearest file indexwise.toml upwards from a document, within its repository, sets the levels of rules, further
     /// files with macros, and which files of a folder are checked. A file that is named as a PATH is always checked.
     Check(CheckArguments),
+    /// Serve an editor: the language server on standard input and output
+    Serve(ServeArguments),
     /// Write the contraction at a place out over its range
     ///
     /// With the place on a summed letter that letter's sum is written out, elsewhere in a term all sums of the term. The
@@ -94,6 +96,17 @@ pub struct CheckArguments {
     /// What standard input holds
     #[arg(long, value_enum)]
     pub host: Option<HostName>,
+}
+
+/// `serve`.
+#[derive(Debug, Args)]
+pub struct ServeArguments {
+    /// How many threads take and send messages
+    #[arg(long, value_name = "N", default_value_t = 2, value_parser = clap::value_parser!(u8).range(1..=64))]
+    pub threads: u8,
+    /// Serve on standard input and output, as is done anyway: some editors say so
+    #[arg(long, hide = true)]
+    pub stdio: bool,
 }
 
 /// `write-out`.

@@ -4,4 +4,5 @@ pub mod check;
 pub mod completions;
 pub mod explain;
 pub mod init;
+pub mod serve;
 pub mod write_out;

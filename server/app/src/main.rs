@@ -8,6 +8,7 @@ mod batch;
 mod commands;
 mod configuration;
 mod files;
+mod language_server;
 mod mend;
 mod nearest;
 mod output;
@@ -38,6 +39,7 @@ fn run(words: impl Iterator<Item = OsString>) -> Status {
     };
     match arguments.command {
         Command::Check(check) => commands::check::run(&check),
+        Command::Serve(serve) => commands::serve::run(&serve),
         Command::WriteOut(place) => commands::write_out::run(&place),
         Command::Init(init) => commands::init::run(&init),
         Command::Explain(explain) => commands::explain::run(explain.rule.as_deref()),

@@ -21,7 +21,8 @@ pub fn run(name: Option<&str>) -> Status {
     }
 }
 
-fn page(rule: &Rule) -> String {
+/// The page of a rule, in Markdown.
+pub fn page(rule: &Rule) -> String {
     let forms = if rule.name == SENTENCES { forms() } else { String::new() };
     format!("{}\n{forms}", rule.page.trim_end())
 }

@@ -105,6 +105,15 @@ impl Scopes {
         scope
     }
 
+    /// Takes the scopes of folders that were not entered here.
+    pub fn adopt(&mut self, other: Self) {
+        // Each folder has one scope, so that the order does not matter.
+        #[expect(clippy::iter_over_hash_type, reason = "entries are only put into a map")]
+        for (folder, scope) in other.scopes {
+            self.scopes.entry(folder).or_insert(scope);
+        }
+    }
+
     /// Whether a file that is found in a folder is to be checked.
     pub fn admits(&mut self, file: &Path) -> bool {
         self.enter(file).nearest.as_ref().is_none_or(|nearest| nearest.selection.admits(file))

@@ -37,6 +37,10 @@ pub struct Loaded {
     pub paper: Paper,
     /// For each document, where it came from.
     pub origins: Vec<Origin>,
+    /// For each style, its real path.
+    pub styles: Vec<PathBuf>,
+    /// What each document asks for, by kind and name: where this stays, the same files are read together.
+    pub asked: Vec<Vec<(ReferenceKind, String)>>,
     /// The documents by their real paths.
     known: HashMap<PathBuf, usize>,
 }
@@ -112,7 +116,9 @@ impl<'a> Reader<'a> {
 
     fn open(&mut self, path: PathBuf, text: Text, host: Host) {
         let document = self.loaded.paper.documents.len();
-        let references = outline(&text.text, host).references.into_iter();
+        let references = outline(&text.text, host).references;
+        self.loaded.asked.push(references.iter().map(|one| (one.kind, one.path.clone())).collect());
+        let references = references.into_iter();
         let shown = self.shown(&path);
         self.bytes += text.text.len();
         self.loaded.paper.documents.push(Source { path: shown, text: text.text.clone(), host });
@@ -207,6 +213,7 @@ impl<'a> Reader<'a> {
                 self.open_style(&folder, &reference, &mut open);
             } else if let Some(style) = open.pop() {
                 let path = self.shown(&style.path);
+                self.loaded.styles.push(style.path);
                 self.loaded.paper.styles.push(Source { path, text: style.text, host: Host::Latex });
             }
         }

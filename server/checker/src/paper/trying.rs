@@ -57,10 +57,11 @@ impl View {
         })
     }
 
-    /// The sketches of the statements with scripts, each with the number of its formula; not those that are skipped.
-    pub(crate) fn sketches(&self, document: usize) -> impl Iterator<Item = (usize, Cow<'_, Sketch>)> {
+    /// The sketches of the statements with scripts, each with the number of its formula; not those that are skipped. Their
+    /// places may be those of an earlier version of the text.
+    pub(crate) fn sketches(&self, document: usize) -> impl Iterator<Item = (usize, &Sketch)> {
         let statements = self.documents.get(document).map_or(&[][..], |own| &own.statements);
-        statements.iter().map(|statement| (statement.formula, statement.sketch()))
+        statements.iter().map(|statement| (statement.formula, &*statement.kept))
     }
 
     /// How a statement is read that is not in the document, with the habits of the document.
