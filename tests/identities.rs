@@ -20,6 +20,8 @@ use indexwise_tests::analyse;
 const LEAST: usize = 120;
 /// Slips that make an identity hold in some dimensions only, by label.
 const NEEDS_DIMENSION: &[&str] = &[];
+/// Slips that hold where a changed inverse metric is read as the change of the metric, raised: hints, and no proof.
+const READ_IN_TWO_WAYS: &[&str] = &["vary-inverse", "vary-kinetic"];
 
 /// The documents of a folder in the order of their names, with their texts.
 fn documents(folder: &str) -> Vec<(PathBuf, String)> {
@@ -62,7 +64,8 @@ fn judged(folder: &str, wrong: impl Fn(&str, &[&Finding]) -> bool, holds: bool) 
         }
         let steps = analysis.statistics.steps;
         let counted = if holds { (steps.holds, steps.fails) } else { (steps.fails, steps.holds) };
-        if (counted, steps.undecided) != ((labels.len(), 0), 0) {
+        let open = labels.keys().filter(|label| !holds && READ_IN_TWO_WAYS.contains(label)).count();
+        if (counted, steps.undecided) != ((labels.len() - open, 0), open) {
             objections.push(format!("{}: {} identities, but {steps:?}", path.display(), labels.len()));
         }
         all.extend(labels.keys().map(|label| (*label).to_owned()));
@@ -81,6 +84,7 @@ fn published_identities_hold() {
 fn corrupted_identities_fail_with_a_proof() {
     let wanted = |label: &str| if NEEDS_DIMENSION.contains(&label) { "step-needs-dimension" } else { "step-fails" };
     let wrong = |label: &str, found: &[&Finding]| match found {
+        [one] if READ_IN_TWO_WAYS.contains(&label) => one.rule != "step-not-shown",
         [one] => {
             let proved = one.verdict.as_ref().is_some_and(|verdict| verdict.counterexample.is_some());
             one.rule != wanted(label) || !proved
