@@ -313,34 +313,17 @@ impl<'d> Judge<'d> {
 
     /// What the rules find in a statement, and whether it balances.
     fn judged(&mut self, statement: &Statement, formula: &Formula) -> (Vec<Finding>, bool) {
-        let sketch = statement.sketch();
-        if sketch.unjudged.is_some()
-            || is_without_sum(&self.document.read, statement.formula)
-            || !self.prices.trusts(&sketch.unknown)
-        {
+        let read = &self.document.read;
+        if is_without_sum(read, statement.formula) {
             return (Vec::new(), false);
         }
-        let mut reading = Reading::clone(&statement.reading);
-        reading.odd.retain(|(letter, _)| self.prices.is_index_notation(letter));
-        let search = if reading.odd.is_empty() { rules::faults::level_faults } else { rules::faults::faults };
-        let mut faults = search(&sketch, &reading.choice, &self.prices);
-        faults.retain(|fault| fault.letter().is_none_or(|letter| self.prices.is_index_notation(letter)));
-        let text = &*self.document.read.text;
-        let judged = Judged { text, formula, sketch, reading, prices: self.prices, faults };
-        let mut found = rules::check_statement(&judged);
-        let balanced = judged.reading.odd.is_empty() && found.iter().all(|finding| finding.ledger.is_none());
-        if balanced && terms::asks_for_terms(&judged.sketch, &judged) {
-            found.extend(self.terms(statement.formula, &judged));
-        }
-        (found, balanced)
-    }
-
-    /// The rules about terms, on a statement that balances.
-    fn terms(&mut self, number: usize, judged: &Judged<'_>) -> Vec<Finding> {
-        let eyes = Eyes::new(&judged.sketch, &judged.reading.choice, &self.prices, self.customs);
-        self.trees.statement(&self.document.read, number, judged.sketch.span, |statement| {
-            rules::check_terms(&Flattened::new(statement, judged, &eyes))
-        })
+        let (prices, customs, trees) = (self.prices, self.customs, &mut self.trees);
+        let in_terms = |judged: &Judged<'_>| {
+            let take = |tree: &tree::Statement| found_in_terms(tree, judged, customs);
+            trees.statement(read, statement.formula, judged.sketch.span, take)
+        };
+        let (text, sketch, reading) = (&*read.text, statement.sketch(), Reading::clone(&statement.reading));
+        found_in((text, formula), sketch, reading, prices, in_terms)
     }
 
     /// Statements without a letter in their scripts have no sketch, but components and symbols.
@@ -376,6 +359,37 @@ impl<'d> Judge<'d> {
 /// The words of a reason, as labels are written.
 fn words_of(reason: &str) -> impl Iterator<Item = &str> {
     reason.split(|sign: char| !sign.is_alphanumeric() && !"-_:.".contains(sign)).filter(|word| !word.is_empty())
+}
+
+/// What the rules find in a statement of a formula, and whether it balances; `in_terms` looks at the terms of one that
+/// does.
+pub(super) fn found_in<'j>(
+    (text, formula): (&'j str, &'j Formula),
+    sketch: Cow<'j, Sketch>,
+    mut reading: Reading,
+    prices: Prices<'j>,
+    in_terms: impl FnOnce(&Judged<'_>) -> Vec<Finding>,
+) -> (Vec<Finding>, bool) {
+    if sketch.unjudged.is_some() || !prices.trusts(&sketch.unknown) {
+        return (Vec::new(), false);
+    }
+    reading.odd.retain(|(letter, _)| prices.is_index_notation(letter));
+    let search = if reading.odd.is_empty() { rules::faults::level_faults } else { rules::faults::faults };
+    let mut faults = search(&sketch, &reading.choice, &prices);
+    faults.retain(|fault| fault.letter().is_none_or(|letter| prices.is_index_notation(letter)));
+    let judged = Judged { text, formula, sketch, reading, prices, faults };
+    let mut found = rules::check_statement(&judged);
+    let balanced = judged.reading.odd.is_empty() && found.iter().all(|finding| finding.ledger.is_none());
+    if balanced && terms::asks_for_terms(&judged.sketch, &judged) {
+        found.extend(in_terms(&judged));
+    }
+    (found, balanced)
+}
+
+/// What the rules about terms find in a statement that balances.
+pub(super) fn found_in_terms(tree: &tree::Statement, judged: &Judged<'_>, customs: Customs) -> Vec<Finding> {
+    let eyes = Eyes::new(&judged.sketch, &judged.reading.choice, &judged.prices, customs);
+    rules::check_terms(&Flattened::new(tree, judged, &eyes))
 }
 
 /// Labelled formulas that are tried as given for a step that is not shown.

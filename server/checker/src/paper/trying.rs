@@ -17,13 +17,11 @@ use crate::conventions::prices::Prices;
 use crate::finding::{Edit, Finding, Severity};
 use crate::ledger::Judged;
 use crate::reading::{self, Reading};
-use crate::rules;
 use crate::sketch::Sketch;
 use crate::terms::symmetries::Customs;
-use crate::terms::{Eyes, Flattened};
 
 use super::directed::{skipped, target};
-use super::judging::is_without_sum;
+use super::judging::{found_in, found_in_terms, is_without_sum};
 use super::{Cancel, Settings, StepMode, View};
 
 /// Bytes of a document up to which a change is tried on the whole of it. A longer one has so many statements that one
@@ -215,21 +213,9 @@ fn no_more(mut known: Vec<&'static str>, found: &[&'static str]) -> bool {
 /// What is found in one statement, as a check would find it; steps are not judged.
 fn judged(statement: &Statement, formula: &Formula, text: &str, prices: Prices<'_>, customs: Customs) -> Vec<Finding> {
     let sketch = Sketch::of(statement);
-    let mut reading = reading::read(&sketch, sketch.units.iter().map(|unit| prices.score(unit)).collect());
-    reading.odd.retain(|(letter, _)| prices.is_index_notation(letter));
-    if sketch.unjudged.is_some() || !prices.trusts(&sketch.unknown) {
-        return Vec::new();
-    }
-    let search = if reading.odd.is_empty() { rules::faults::level_faults } else { rules::faults::faults };
-    let mut faults = search(&sketch, &reading.choice, &prices);
-    faults.retain(|fault| fault.letter().is_none_or(|letter| prices.is_index_notation(letter)));
-    let judged = Judged { text, formula, sketch: Cow::Owned(sketch), reading, prices, faults };
-    let mut found = rules::check_statement(&judged);
-    if judged.reading.odd.is_empty() && found.iter().all(|finding| finding.ledger.is_none()) {
-        let eyes = Eyes::new(&judged.sketch, &judged.reading.choice, &prices, customs);
-        found.extend(rules::check_terms(&Flattened::new(statement, &judged, &eyes)));
-    }
-    found
+    let reading = reading::read(&sketch, sketch.units.iter().map(|unit| prices.score(unit)).collect());
+    let in_terms = |judged: &Judged<'_>| found_in_terms(statement, judged, customs);
+    found_in((text, formula), Cow::Owned(sketch), reading, prices, in_terms).0
 }
 
 /// A text with edits made, which are in order and apart; else nothing.
