@@ -8,7 +8,7 @@
 //! - An index that is renamed to a fresh letter and back leaves the text as it was; with the fresh letter the tokens
 //!   are the same in number and kind, and no finding is new.
 //!
-//! Offsets and renames are sampled, the same ones in every run.
+//! Damaged documents are asked, too. Offsets and renames are sampled, the same ones in every run.
 
 #![allow(clippy::unwrap_used, clippy::expect_used, clippy::panic)]
 
@@ -26,11 +26,14 @@ use indexwise_grammar::span::Span;
 use indexwise_tests::annotations::Fixture;
 use indexwise_tests::documents_below;
 use indexwise_tests::laws::apply;
+use indexwise_tests::variants::damaged;
 
 /// Offsets of a text that are asked about, apart from the tokens below.
 const OFFSETS: usize = 6;
 /// Tokens of a text that are asked about.
 const TOKENS: usize = 4;
+/// Tokens of a damaged text that are asked about.
+const DAMAGED: usize = 2;
 /// Renames of a text that are tried.
 const RENAMES: usize = 1;
 /// Renames that have to succeed in all texts together: most of those that are tried.
@@ -75,17 +78,44 @@ fn fits(text: &str, span: Span, about: &str) {
     assert!(span.start <= span.end && text.get(span.range()).is_some(), "{about}: {span:?} does not fit the text");
 }
 
+/// Asserts the law of tokens, and gives them.
+#[track_caller]
+fn ordered_tokens(view: &View, text: &str, about: &str) -> Vec<Token> {
+    let all = tokens(view, 0, whole(text));
+    for token in &all {
+        fits(text, token.span, about);
+        let own = token.span.of(text);
+        assert!(!own.is_empty() && !own.contains(['\n', '\r']), "{about}: {token:?}");
+    }
+    assert!(all.is_sorted_by(|one, next| one.span.end <= next.span.start), "{about}: tokens overlap");
+    all
+}
+
+#[test]
+fn damaged_documents_are_answered_too() {
+    for (seed, (name, host, text)) in (1..).zip(texts()) {
+        let text = damaged(&text, seed);
+        let view = view_of(host, &text);
+        let about = format!("{name}, seed {seed}");
+        let starts: Vec<u32> = ordered_tokens(&view, &text, &about).iter().map(|token| token.span.start).collect();
+        for offset in sampled(&starts, DAMAGED).into_iter().chain([u32::try_from(text.len()).unwrap() / 2]) {
+            let about = format!("{about} at {offset}");
+            if let Some(found) = hover(&view, 0, offset, None) {
+                fits(&text, found.span, &about);
+            }
+            lights_up_together(&view, &text, offset, &about);
+            for (_, edits) in rename(&view, 0, offset, "q").unwrap_or_default() {
+                assert!(apply(&text, &edits).is_some(), "{about}: {edits:?}");
+            }
+        }
+    }
+}
+
 #[test]
 fn tokens_are_in_order_and_apart() {
     for (name, host, text) in texts() {
         let view = view_of(host, &text);
-        let all = tokens(&view, 0, whole(&text));
-        for token in &all {
-            fits(&text, token.span, &name);
-            let own = token.span.of(&text);
-            assert!(!own.is_empty() && !own.contains(['\n', '\r']), "{name}: {token:?}");
-        }
-        assert!(all.is_sorted_by(|one, next| one.span.end <= next.span.start), "{name}: tokens overlap");
+        let all = ordered_tokens(&view, &text, &name);
         let middle = Span::new(text.len() / 3, text.len() / 2);
         let touching = |token: &&Token| token.span.start <= middle.end && middle.start <= token.span.end;
         let expected: Vec<Token> = all.iter().filter(touching).copied().collect();

@@ -140,11 +140,11 @@ fn declared_families_are_kept() {
     };
     let text = said("$A_‸i B_i = q$");
     gives(Host::Markdown, &text, "k", &said("$A_k B_k = q$"));
-    refuses(Host::Markdown, &text, "a", "a and i are declared to run over different ranges");
+    refuses(Host::Markdown, &text, "a", "a and i are declared in different families");
     refuses(Host::Markdown, &text, "m", "m is not declared to run with i j k");
     refuses(Host::Markdown, &text, "L", "L is declared a label");
     refuses(Host::Markdown, &text, "z", "z is declared to name a component");
-    refuses(Host::Markdown, &said("$A_‸m B_m = q$"), "k", "k has a declared range and m has none");
+    refuses(Host::Markdown, &said("$A_‸m B_m = q$"), "k", "k belongs to a declared family and m to none");
 }
 
 #[test]
