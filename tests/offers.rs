@@ -174,7 +174,33 @@ fn what_is_offered_does_no_harm() {
         }
     }
     assert!(report.is_empty(), "{} of {done:?}\n{}", report.len(), report.join("\n"));
-    assert!(done.len() == 5 && done.values().all(|count| *count > 3), "{done:?}");
+    assert!(done.len() >= 4 && done.values().all(|count| *count > 3), "{done:?}");
+}
+
+#[test]
+fn labelled_equations_are_put_in_without_harm() {
+    let (mut done, mut report) = (0, Vec::new());
+    let labelled = |sheet: &Sheet| sheet.view.formulas(0).iter().any(|formula| !formula.labels.is_empty());
+    for sheet in sheets().into_iter().filter(|sheet| sheet.host == Host::Latex && labelled(sheet)) {
+        let end = sheet.view.formulas(0).last().unwrap().span.end as usize;
+        for room in ["\n\\[ \\]\n", "\n\\[ q = \\]\n", "\n\\[ q_i = 2 w_i + \\]\n"] {
+            let mut text = sheet.text.clone();
+            text.insert_str(end, room);
+            let at = (end + room.len() - "\\]\n".len()) as u32;
+            let view = view(sheet.host, &text);
+            let (analysis, name) = (judged(&view), sheet.name.clone());
+            let sheet = Sheet { name, host: sheet.host, text, view, analysis };
+            let found = actions(&sheet.view, 0, Span { start: at, end: at }, &sheet.analysis);
+            for action in found.iter().filter(|action| action.kind == ActionKind::Insert) {
+                done += 1;
+                let harm = harm(&sheet, action);
+                report
+                    .extend(harm.map(|harm| format!("{}: `{}` {harm}: {:?}", sheet.name, action.title, action.edits)));
+            }
+        }
+    }
+    assert!(report.is_empty(), "{} of {done}\n{}", report.len(), report.join("\n"));
+    assert!(done > 8, "{done}");
 }
 
 /// What is wrong after an action, if anything is.

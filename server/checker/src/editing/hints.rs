@@ -2,6 +2,7 @@
 
 use indexwise_grammar::span::Span;
 
+use crate::conventions::inferred::LevelHabit;
 use crate::ledger::{Judged, shown};
 use crate::paper::{Asked, DocumentAnalysis, Outcome, StepMark, View};
 
@@ -34,9 +35,12 @@ fn free_indices(judged: &Judged<'_>, asked: &Asked<'_>) -> Option<InlayHint> {
     }
     let row = judged.rows().into_iter().find(|row| !row.any)?;
     let own = row.free.iter().filter(|(letter, _)| asked.prices.is_index_notation(letter));
-    let free: Vec<String> = own
-        .map(|(letter, place)| format!("{} {}", shown(letter), judged.level(*place)).trim_end().to_owned())
-        .collect();
+    let level = |letter: &str, place| {
+        let flat = asked.prices.level_habit(letter) == LevelHabit::Cartesian;
+        if flat { "" } else { judged.level(place) }
+    };
+    let said = |letter: &str, place| format!("{} {}", shown(letter), level(letter, place)).trim_end().to_owned();
+    let free: Vec<String> = own.map(|(letter, place)| said(letter, *place)).collect();
     (!free.is_empty()).then(|| InlayHint {
         at: sketch.span.end,
         text: format!("free: {}", free.join(", ")),

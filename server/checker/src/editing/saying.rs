@@ -194,3 +194,108 @@ fn line_end(text: &str) -> &'static str {
     let first = text.find('\n').and_then(|at| at.checked_sub(1)).and_then(|before| text.as_bytes().get(before));
     if first == Some(&b'\r') { "\r\n" } else { "\n" }
 }
+
+#[cfg(test)]
+mod tests {
+    #![allow(clippy::unwrap_used)]
+
+    use super::*;
+    use crate::editing::cursor::view;
+    use crate::paper::edited;
+
+    const SENTENCE: &str = "check this";
+
+    /// The text with a directive before its last formula; nothing if there is no place for one.
+    fn directed(text: &str, host: Host) -> Option<String> {
+        let view = view(text, host);
+        let edit = before_formula(&view, 0, view.formulas(0).len() - 1, SENTENCE)?;
+        edited(text, &[edit])
+    }
+
+    #[track_caller]
+    fn before(host: Host, text: &str, want: &str) {
+        assert_eq!(directed(text, host).as_deref(), Some(want), "{text}");
+    }
+
+    #[test]
+    fn a_directive_in_latex() {
+        before(Host::Latex, "so ($x = y$)\n", "% indexwise: check this\nso ($x = y$)\n");
+        before(Host::Latex, "$a = b$,$x = y$", "$a = b$,%\n% indexwise: check this\n$x = y$");
+        before(Host::Latex, "A\r\n  \\[ x = y \\]\r\n", "A\r\n  % indexwise: check this\r\n  \\[ x = y \\]\r\n");
+        before(Host::Latex, "\\[ a = b\n\\] and $x = y$", "\\[ a = b\n\\] and \n% indexwise: check this\n$x = y$");
+    }
+
+    #[test]
+    fn a_directive_in_markdown() {
+        let said = "<!-- indexwise: check this -->";
+        before(Host::Markdown, "> Text\n>\n> $$ x = y $$\n", &format!("> Text\n>\n> {said}\n> $$ x = y $$\n"));
+        before(Host::Markdown, "Text $a_i$ and $x = y$", &format!("Text $a_i$ and {said} $x = y$"));
+        before(Host::Markdown, "- so $x = y$", &format!("- so {said} $x = y$"));
+        before(Host::Markdown, "```math\nx = y\n```\n", &format!("{said}\n```math\nx = y\n```\n"));
+        for text in ["- $x = y$", "| $x = y$ |"] {
+            assert_eq!(directed(text, Host::Markdown), None, "{text}");
+        }
+    }
+
+    #[test]
+    fn a_directive_in_a_note() {
+        before(Host::Note, "A\n\n  a = b\n  x = y\n", "A\n\n  a = b\n  indexwise: check this\n  x = y\n");
+    }
+
+    #[track_caller]
+    fn declares(host: Host, text: &str, want: &str) {
+        let sentence = if host == Host::Note { "T_ij is symmetric" } else { "T_{ij} is symmetric" };
+        let edit = declaration(&view(text, host), 0, sentence);
+        let after = edit.and_then(|edit| edited(text, &[edit]));
+        assert_eq!(after.as_deref(), Some(want), "{text}");
+    }
+
+    #[test]
+    fn a_declaration_joins_the_others() {
+        let said = "T_{ij} is symmetric";
+        declares(
+            Host::Latex,
+            "  % indexwise: h is small\n$x$",
+            &format!("  % indexwise: h is small\n  %   {said}\n$x$"),
+        );
+        declares(
+            Host::Latex,
+            "% indexwise:\n%   h is small\n$x$",
+            &format!("% indexwise:\n%   h is small\n%   {said}\n$x$"),
+        );
+        declares(
+            Host::Markdown,
+            "<!-- indexwise: h is small -->\n",
+            &format!("<!-- indexwise: h is small; {said} -->\n"),
+        );
+        declares(
+            Host::Markdown,
+            "```indexwise\nh is small\n```\n",
+            &format!("```indexwise\nh is small\n{said}\n```\n"),
+        );
+        declares(
+            Host::Note,
+            "conventions\n  h is small\n\n  a = b\n",
+            "conventions\n  h is small\n  T_ij is symmetric\n\n  a = b\n",
+        );
+        declares(Host::Note, "indexwise: h is small\n", "indexwise: h is small; T_ij is symmetric\n");
+    }
+
+    #[test]
+    fn the_first_declaration_opens_a_comment() {
+        let said = "T_{ij} is symmetric";
+        declares(
+            Host::Latex,
+            "\\documentclass{article}\n\\begin{document}\n% indexwise: skip this\n$x$",
+            &format!(
+                "\\documentclass{{article}}\n% indexwise: {said}\n\\begin{{document}}\n% indexwise: skip this\n$x$"
+            ),
+        );
+        declares(
+            Host::Markdown,
+            "---\na: b\n---\nText\n",
+            &format!("---\na: b\n---\n<!-- indexwise: {said} -->\n\nText\n"),
+        );
+        declares(Host::Note, "Title\n\n  a = b\n", "Title\n\nconventions\n  T_ij is symmetric\n\n  a = b\n");
+    }
+}

@@ -173,6 +173,13 @@ fn an_empty_formula_takes_the_whole_equation() {
 }
 
 #[test]
+fn a_number_is_not_put_in_nor_anything_right_before_a_factor() {
+    let free = format!("{LABELLED}\\begin{{equation}} \\label{{eq:free}} p_{{ij}} n_j = 0 \\end{{equation}}\n");
+    not(Host::Latex, &format!("{free}\\[ \\tau_{{ij}} = ‸ \\]"), "Insert (eq:free)");
+    not(Host::Latex, &format!("{free}\\[ \\tau_{{ij}} = ‸p_{{ij}} \\]"), "Insert");
+}
+
+#[test]
 fn no_equation_is_put_into_a_script_or_a_word() {
     for place in ["\\tau_{i‸j} = 0", "\\ta‸u_{ij} = 0", "\\tau_‸{ij} = 0"] {
         let placed = Placed::new(&format!("{LABELLED}\\[ {place} \\]"), Host::Latex);
