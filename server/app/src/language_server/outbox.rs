@@ -77,6 +77,12 @@ impl Outbox {
         self.wake.notify_one();
     }
 
+    /// The notes that wait.
+    #[cfg(test)]
+    pub fn take_notes(&self) -> Vec<Note> {
+        self.locked().notes.drain(..).collect()
+    }
+
     fn locked(&self) -> MutexGuard<'_, Waiting> {
         self.waiting.lock().unwrap_or_else(PoisonError::into_inner)
     }

@@ -8,6 +8,9 @@
 //! Traps: events that wait are all taken before anything is started, so that a burst of changes costs one reading. The
 //! judging of steps has a thread of its own, so that it never delays findings about balance.
 
+#[cfg(test)]
+mod tests;
+
 use std::collections::BTreeMap;
 use std::path::{Path, PathBuf};
 use std::sync::Arc;
