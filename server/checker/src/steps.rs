@@ -13,6 +13,7 @@ mod repairs;
 mod report;
 mod standing;
 mod telling;
+mod verdicts;
 mod words;
 mod world;
 
@@ -20,6 +21,7 @@ pub use claims::{Asked, Step, steps_of};
 pub use lowering::{Lowering, Way};
 pub use repairs::Source;
 pub use report::{Granted, LabelledGiven, StepJudge};
+pub use verdicts::Verdicts;
 pub use world::Surroundings;
 
 #[cfg(test)]

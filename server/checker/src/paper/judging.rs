@@ -19,14 +19,14 @@ use crate::ledger::Judged;
 use crate::reading::{self, Reading};
 use crate::rules;
 use crate::sketch::Sketch;
-use crate::steps::{Asked, Granted, LabelledGiven, Source, StepJudge};
+use crate::steps::{Asked, Granted, LabelledGiven, Source, StepJudge, Verdicts};
 use crate::symbols::Gatherer;
 use crate::terms::symmetries::Customs;
 use crate::terms::{self, Eyes, Flattened};
 
 use super::directed::{directed, skipped, target};
 use super::memory::{Basis, Remembered};
-use super::{DocumentAnalysis, Read, Settings, Sketched, Statement, Statistics, StepMode, Trouble};
+use super::{Cancel, DocumentAnalysis, Read, Settings, Sketched, Statement, Statistics, StepMode, Trouble};
 
 /// A document on its way through the rules.
 struct Judge<'d> {
@@ -50,6 +50,9 @@ struct Judge<'d> {
     labels: &'d FxHashSet<CompactString>,
     /// Findings about the conventions.
     about: Vec<Finding>,
+    /// Verdicts that are known.
+    verdicts: &'d Verdicts,
+    cancel: &'d Cancel,
     /// What is kept of an earlier version.
     remembered: Option<&'d mut Remembered>,
 }
@@ -62,6 +65,9 @@ pub(super) struct Judging<'d> {
     pub settings: &'d Settings,
     /// The labels of all formulas of the paper.
     pub labels: &'d FxHashSet<CompactString>,
+    /// Verdicts that are known.
+    pub verdicts: &'d Verdicts,
+    pub cancel: &'d Cancel,
 }
 
 /// Judges a document; `missing` are findings about parts that could not be had, `remembered` is what is kept of an
@@ -71,7 +77,7 @@ pub(super) fn judge_document(
     missing: Vec<Finding>,
     remembered: Option<&mut Remembered>,
 ) -> DocumentAnalysis {
-    let Judging { document, prices, customs, settings, labels } = judging;
+    let Judging { document, prices, customs, settings, labels, verdicts, cancel } = judging;
     let formulas = &document.read.document.formulas;
     let mut judge = Judge {
         document,
@@ -88,12 +94,14 @@ pub(super) fn judge_document(
         using: Vec::new(),
         labels,
         about: Vec::new(),
+        verdicts,
+        cancel,
         remembered,
     };
     judge.prepare_steps(settings.steps);
     let skipped = skipped(&document.read.declared, formulas);
     let mut plain = 0;
-    for statement in &document.statements {
+    for statement in document.statements.iter().take_while(|_| !cancel.is_cancelled()) {
         judge.steps_without_letters(plain..statement.formula, &skipped);
         plain = plain.max(statement.formula);
         judge.statement(statement);
@@ -146,7 +154,7 @@ impl<'d> Judge<'d> {
             StepMode::Asked => read.host == Host::Note || said,
         };
         if self.chains || !self.asked.is_empty() {
-            self.steps = Some(StepJudge::new(&self.prices.declared.meanings, &read.text));
+            self.steps = Some(StepJudge::new(&self.prices.declared.meanings, &read.text, self.verdicts, self.cancel));
             self.declared_definitions();
             self.conditions();
         }

@@ -21,6 +21,7 @@ use indexwise_grammar::{Document, macros_of};
 use crate::conventions::declared::{Declared, SharedConventions};
 use crate::conventions::inferred::Evidence;
 use crate::conventions::meanings::Meanings;
+use crate::steps::Verdicts;
 
 use super::directed::skipped;
 use super::reads::{Read, Sketched, Statement};
@@ -38,6 +39,8 @@ const ROUNDS: usize = 2;
 #[derive(Default)]
 pub struct Memory {
     documents: Vec<Remembered>,
+    /// Verdicts about steps; whoever judges steps elsewhere may share them.
+    pub verdicts: Verdicts,
 }
 
 /// What is kept of one document.

@@ -18,6 +18,7 @@ use crate::finding::{Edit, Finding, Severity};
 use crate::ledger::Judged;
 use crate::reading::{self, Reading};
 use crate::sketch::Sketch;
+use crate::steps::Verdicts;
 use crate::terms::symmetries::Customs;
 
 use super::directed::{skipped, target};
@@ -121,7 +122,10 @@ impl View {
         let Some(after) = self.with_text(document, text) else { return false };
         let settings = Settings { steps: StepMode::Off, ..Settings::default() };
         let grave = |view: &Self| {
-            let found = view.judge_document(document, &settings, None).unwrap_or_default().findings;
+            let found = view
+                .judge_document(document, &settings, None, (&Verdicts::default(), &Cancel::default()))
+                .unwrap_or_default()
+                .findings;
             let grave = found.into_iter().filter(|finding| finding.severity != Severity::Hint);
             grave.map(|finding| finding.rule).collect::<Vec<_>>()
         };
@@ -181,7 +185,10 @@ impl View {
         let Some(view) = text.and_then(|text| self.with_text(document, text)) else { return false };
         let settings = Settings { steps: StepMode::Off, ..Settings::default() };
         let counts = |view: &Self| {
-            let found = view.judge_document(document, &settings, None).unwrap_or_default().findings;
+            let found = view
+                .judge_document(document, &settings, None, (&Verdicts::default(), &Cancel::default()))
+                .unwrap_or_default()
+                .findings;
             let own = found.iter().filter(|other| other.rule == finding.rule).count();
             (own, found.iter().filter(|other| other.severity != Severity::Hint).count())
         };

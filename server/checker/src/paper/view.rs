@@ -12,12 +12,13 @@ use rustc_hash::FxHashSet;
 use crate::conventions::declared::Declared;
 use crate::conventions::inferred::Evidence;
 use crate::conventions::prices::Prices;
+use crate::steps::Verdicts;
 use crate::terms::symmetries::Customs;
 
 use super::judging::{Judging, judge_document, missing_part};
 use super::memory::{Memory, Remembered};
 use super::reads::Sketched;
-use super::{Analysis, Cancel, DocumentAnalysis, Paper, Settings};
+use super::{Analysis, Cancel, DocumentAnalysis, Paper, Settings, StepMode};
 
 /// A paper, read; its documents by their numbers, the root first.
 pub struct View {
@@ -49,16 +50,29 @@ impl View {
         view
     }
 
-    /// Asks all rules. One analysis for each document, in their order.
+    /// Asks all rules. One analysis for each document, in their order. A cancelled one is not worth a look.
     pub fn judge(&self, settings: &Settings, cancel: &Cancel) -> Analysis {
-        self.judge_each(cancel, |number| self.judge_document(number, settings, None))
+        self.judge_knowing(settings, &Verdicts::default(), cancel)
+    }
+
+    /// The same, where verdicts about steps may be known from an earlier version; those that are reached are added.
+    pub fn judge_knowing(&self, settings: &Settings, verdicts: &Verdicts, cancel: &Cancel) -> Analysis {
+        if settings.steps != StepMode::Off {
+            verdicts.turn();
+        }
+        self.judge_each(cancel, |number| self.judge_document(number, settings, None, (verdicts, cancel)))
     }
 
     /// The same, with what is kept of the judgements about an earlier version; the memory must be the one that this
     /// view was made from last.
     pub fn judge_again(&self, settings: &Settings, memory: &mut Memory, cancel: &Cancel) -> Analysis {
-        let analysis =
-            self.judge_each(cancel, |number| self.judge_document(number, settings, memory.of_document(number)));
+        let verdicts = memory.verdicts.clone();
+        if settings.steps != StepMode::Off {
+            verdicts.turn();
+        }
+        let analysis = self.judge_each(cancel, |number| {
+            self.judge_document(number, settings, memory.of_document(number), (&verdicts, cancel))
+        });
         if cancel.is_cancelled() {
             memory.forget_judgements();
         }
@@ -75,6 +89,7 @@ impl View {
         number: usize,
         settings: &Settings,
         mut remembered: Option<&mut Remembered>,
+        (verdicts, cancel): (&Verdicts, &Cancel),
     ) -> Option<DocumentAnalysis> {
         let document = self.documents.get(number)?;
         let begin = document.read.text.find("\\begin{document}");
@@ -87,7 +102,7 @@ impl View {
         });
         let prices = Prices { inquiries: inquiries.as_ref(), ..prices };
         let customs = *self.customs.get(number)?;
-        let judging = Judging { document, prices, customs, settings, labels: &self.labels };
+        let judging = Judging { document, prices, customs, settings, labels: &self.labels, verdicts, cancel };
         let mut analysis = judge_document(judging, missing, remembered.as_deref_mut());
         if let Some((remembered, inquiries)) = remembered.zip(inquiries) {
             remembered.known.take_back(inquiries);

@@ -6,18 +6,17 @@
 
 use std::cell::Cell;
 use std::hash::{Hash, Hasher};
-use std::time::{Duration, Instant};
 
 use compact_str::CompactString;
 use indexwise_algebra::expression::{Expression, Given, MetricValues, Size, World};
-use indexwise_algebra::verdict::{self, Claim, Limits, Reason, Unshown, Verdict};
+use indexwise_algebra::verdict::{Claim, Limits, Reason, Unshown, Verdict};
 use indexwise_grammar::span::Span;
 use indexwise_grammar::tree::Statement;
-use rustc_hash::{FxHashMap, FxHashSet, FxHasher};
+use rustc_hash::{FxHashSet, FxHasher};
 
 use crate::conventions::meanings::Meanings;
 use crate::finding::{Finding, Fix, JudgedStep, Severity, StepVerdict};
-use crate::paper::{Outcome, StepMark, Steps};
+use crate::paper::{Cancel, Outcome, StepMark, Steps};
 use crate::rules;
 use crate::terms::Eyes;
 
@@ -27,6 +26,7 @@ use super::lowering::Way;
 use super::repairs::{Broken, Look, Source, repairs};
 use super::standing::{Doubt, conditioned, doubt, kernels};
 use super::telling::{in_words, is_number, kind, listed, numbers, plain_view, told};
+use super::verdicts::{Court, Verdicts};
 use super::words::loosening;
 use super::world::Surroundings;
 
@@ -34,9 +34,6 @@ use super::world::Surroundings;
 const STEP_WORK: u64 = 100_000_000;
 /// Steps of one document that are judged.
 const STEPS: usize = 2_000;
-/// Time for the steps of one document. Beyond it the rest is undecided, and says so; it is the one thing in a report
-/// that a slow machine can change.
-const DOCUMENT_TIME: Duration = Duration::from_secs(60);
 /// The largest dimension that is tried because so many indices are antisymmetrised.
 const LARGEST_DIMENSION: usize = 6;
 
@@ -52,8 +49,7 @@ const MENDED: usize = 30;
 /// Judges the steps of a document, statement by statement in the order of the text.
 pub struct StepJudge<'m> {
     surroundings: Surroundings<'m>,
-    /// Verdicts by the text of their steps, each with the sides that it is about.
-    known: FxHashMap<u64, Vec<Known>>,
+    court: Court,
     /// Kernels that the text states conditions on: they are no arbitrary fields.
     conditioned: FxHashSet<CompactString>,
     /// The verdicts so far, counted and one by one.
@@ -70,11 +66,7 @@ pub struct StepJudge<'m> {
     mended: usize,
     /// The steps of the last statement that are not shown, by their signs.
     open: Vec<Step>,
-    begun: Option<Instant>,
 }
-
-/// A verdict on two sides that is good for the definitions of one moment.
-type Known = (u64, Expression, Expression, Verdict);
 
 /// Something given, in the world of its document.
 #[derive(Clone, Debug)]
@@ -99,12 +91,12 @@ impl<'g> Granted<'g> {
 }
 
 impl<'m> StepJudge<'m> {
-    /// For a document with these declarations.
-    pub fn new(meanings: &'m Meanings, text: &str) -> Self {
+    /// For a document with these declarations; `verdicts` are those that are known.
+    pub fn new(meanings: &'m Meanings, text: &str, verdicts: &Verdicts, cancel: &Cancel) -> Self {
         let surroundings = Surroundings::new(meanings, text);
         Self {
             surroundings,
-            known: FxHashMap::default(),
+            court: Court::new(verdicts, cancel),
             conditioned: FxHashSet::default(),
             counts: Steps::default(),
             marks: Vec::new(),
@@ -114,7 +106,6 @@ impl<'m> StepJudge<'m> {
             left: STEPS,
             mended: MENDED,
             open: Vec::new(),
-            begun: None,
         }
     }
 
@@ -218,11 +209,9 @@ impl<'m> StepJudge<'m> {
 
     /// Whether two expressions are equal in a world, with the work of a verdict about an edit.
     fn holds(&self, step: &Step, text: &str, left: &Expression, right: &Expression, world: World) -> bool {
-        let begun = self.begun;
-        let stop = || begun.is_some_and(|begun| begun.elapsed() > DOCUMENT_TIME);
-        let limits = Limits { total: REPAIR_WORK[1], trials: 0, stop: Some(&stop), ..Limits::seeded(seed(step, text)) };
+        let limits = Limits { total: REPAIR_WORK[1], trials: 0, ..Limits::seeded(seed(step, text)) };
         let claim = Claim { left: left.clone(), right: right.clone(), world };
-        matches!(verdict::judge(&claim, &limits), Verdict::Holds { undefined, .. } if undefined.is_empty())
+        matches!(self.court.judge(&claim, &limits, false), Verdict::Holds { undefined, .. } if undefined.is_empty())
     }
 
     /// Another usual choice of signs, or of what an epsilon is, with which a step holds that does not under that in
@@ -257,29 +246,27 @@ impl<'m> StepJudge<'m> {
         let dimension = verdict.and_then(|verdict| verdict.fails.first().copied());
         let (Some(dimension), Some(left)) = (dimension, self.mended.checked_sub(1)) else { return Vec::new() };
         self.mended = left;
-        let (begun, seed, spent) = (self.begun, seed(step, source.text), Cell::new(0));
+        let (court, seed, spent) = (&self.court, seed(step, source.text), Cell::new(0));
         let holds = |surroundings: &Surroundings<'_>, left: &Expression, right: &Expression, look: Look| {
             let mut world = surroundings.world.clone();
             world.dimensions = match look {
                 Look::Once => vec![dimension],
                 Look::InFull => dimensions(&world, &[left, right], step.antisymmetrised),
             };
-            let stop = || begun.is_some_and(|begun| begun.elapsed() > DOCUMENT_TIME);
             let unspent = REPAIRS_WORK.saturating_sub(spent.get());
-            let usual = Limits { trials: 0, stop: Some(&stop), spent: Some(&spent), ..Limits::seeded(seed) };
+            let usual = Limits { trials: 0, spent: Some(&spent), ..Limits::seeded(seed) };
             let limits = match look {
                 Look::Once => Limits { total: unspent.min(REPAIR_WORK[0]), draws: 1, ..usual },
                 Look::InFull => Limits { total: unspent.min(REPAIR_WORK[1]), ..usual },
             };
             let claim = Claim { left: left.clone(), right: right.clone(), world };
-            matches!(verdict::judge(&claim, &limits), Verdict::Holds { undefined, .. } if undefined.is_empty())
+            matches!(court.judge(&claim, &limits, false), Verdict::Holds { undefined, .. } if undefined.is_empty())
         };
         repairs(broken, eyes, source, &self.surroundings, &holds)
     }
 
     fn step(&mut self, step: &Step, text: &str, asked: Asked) -> Option<Finding> {
-        let begun = *self.begun.get_or_insert_with(Instant::now);
-        let late = begun.elapsed() > DOCUMENT_TIME;
+        let late = self.court.is_over();
         self.left = self.left.saturating_sub(1);
         if late || self.left == 0 {
             return Some(self.undecided(step, "the work for the steps of one document is used up"));
@@ -401,20 +388,13 @@ impl<'m> StepJudge<'m> {
 
     fn judged(&mut self, step: &Step, text: &str, left: &Expression, right: &Expression) -> Verdict {
         let seed = seed(step, text);
-        let (moment, alone) = (self.surroundings.moment, self.surroundings.world.givens.is_empty());
-        let same = |known: &&Known| alone && (known.0, &known.1, &known.2) == (moment, left, right);
-        if let Some(known) = self.known.get(&seed).and_then(|known| known.iter().find(same)) {
-            return known.3.clone();
-        }
         let mut world = self.surroundings.world.clone();
         world.dimensions = dimensions(&world, &[left, right], step.antisymmetrised);
-        let begun = self.begun;
-        let stop = || begun.is_some_and(|begun| begun.elapsed() > DOCUMENT_TIME);
-        let limits = Limits { total: STEP_WORK, stop: Some(&stop), ..Limits::seeded(seed) };
+        let limits = Limits { total: STEP_WORK, ..Limits::seeded(seed) };
         let other = self.surroundings.other_signature(&world);
         let judge = |world| {
             let claim = Claim { left: left.clone(), right: right.clone(), world };
-            verdict::holds_by_form(&claim).unwrap_or_else(|| verdict::judge(&claim, &limits))
+            self.court.judge(&claim, &limits, true)
         };
         let mut verdict = judge(world);
         // The root of a determinant may exist with the other sign alone.
@@ -422,10 +402,6 @@ impl<'m> StepJudge<'m> {
             && let Some(world) = other
         {
             verdict = judge(world);
-        }
-        if alone {
-            let known = (moment, left.clone(), right.clone(), verdict.clone());
-            self.known.entry(seed).or_default().push(known);
         }
         verdict
     }

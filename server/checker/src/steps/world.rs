@@ -28,8 +28,6 @@ pub struct Surroundings<'a> {
     /// Definitions by kernel and number of slots, the latest last.
     definitions: FxHashMap<(CompactString, usize), usize>,
     parameters: FxHashMap<CompactString, usize>,
-    /// How often what is defined has changed.
-    pub moment: u64,
     /// What stands under roots behind a minus sign in the text, without blanks: `g}` of `\sqrt{-g}`.
     under_roots: Vec<String>,
     /// Metrics whose signature nobody says.
@@ -101,7 +99,6 @@ impl<'a> Surroundings<'a> {
             fields: FxHashMap::default(),
             definitions: FxHashMap::default(),
             parameters: FxHashMap::default(),
-            moment: 0,
             under_roots: negated_radicands(text),
             open_signatures: Vec::new(),
             signs_are_declared: false,
@@ -342,21 +339,18 @@ impl<'a> Surroundings<'a> {
     /// Defines a kernel.
     pub fn define(&mut self, kernel: &CompactString, free: Vec<Index>, body: Expression) {
         let slots = free.len();
-        self.moment += 1;
         self.world.definitions.push(Definition { name: kernel.to_string(), free, body });
         self.definitions.insert((kernel.clone(), slots), self.world.definitions.len() - 1);
     }
 
     /// Takes the last definition back, which is that of this kernel: the kernel is an arbitrary field again.
     pub fn forget_last_definition(&mut self, kernel: &CompactString, slots: usize) {
-        self.moment += 1;
         self.world.definitions.pop();
         self.definitions.remove(&(kernel.clone(), slots));
     }
 
     /// Forgets what a kernel with so many slots is defined as.
     pub fn forget(&mut self, kernel: &CompactString, slots: usize) {
-        self.moment += 1;
         self.definitions.remove(&(kernel.clone(), slots));
     }
 
