@@ -25,7 +25,7 @@ use super::conventions::{self, Geometric, exchanged, other_signs};
 use super::lowering::Way;
 use super::repairs::{Broken, Look, Source, repairs};
 use super::standing::{Doubt, conditioned, doubt, kernels};
-use super::telling::{in_words, is_number, kind, listed, numbers, plain_view, told};
+use super::telling::{held, in_words, is_number, kind, listed, numbers, plain_view, told};
 use super::verdicts::{Court, Verdicts};
 use super::words::loosening;
 use super::world::Surroundings;
@@ -176,7 +176,11 @@ impl<'m> StepJudge<'m> {
             now if now.fails > before.fails => Outcome::Fails,
             _ => Outcome::Open,
         };
-        let said = finding.map_or_else(|| "this step holds".to_owned(), |finding| finding.message.clone());
+        let verdict = self.judged.last().filter(|judged| judged.span == step.sign).map(|judged| &judged.verdict);
+        let said = match finding {
+            Some(finding) => finding.message.clone(),
+            None => verdict.map(held).unwrap_or_default(),
+        };
         self.marks.push(StepMark { sign: step.sign, outcome, said });
     }
 

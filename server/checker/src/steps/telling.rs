@@ -80,6 +80,19 @@ fn counterexample(step: &Step, found: &verdict::Counterexample) -> Counterexampl
     }
 }
 
+/// That a step holds, in which dimensions and how surely, as a sentence without its full stop.
+pub(super) fn held(verdict: &StepVerdict) -> String {
+    let places = match verdict.holds.as_slice() {
+        [] => String::new(),
+        [one] => format!(" in dimension {one}"),
+        some => format!(" in dimensions {}", numbers(some)),
+    };
+    match verdict.error_bits {
+        Some(bits) => format!("this step holds{places}, wrongly with a chance of at most 2^-{bits}"),
+        None => format!("this step holds{places} by its form"),
+    }
+}
+
 /// The verdicts that have to agree where a step can be read in two ways.
 pub(super) fn kind(verdict: &Verdict) -> u8 {
     match verdict {

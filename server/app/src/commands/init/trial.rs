@@ -86,8 +86,9 @@ impl<'a> Trial<'a> {
         let run = Run { checker, mend: false, scopes: &scopes, progress: &progress };
         let mut files = batch::configurations(&scopes, settings);
         let mut taker = |mut file: FileReport| {
-            // How many steps a declaration helps to prove is no change of what is found.
+            // Which steps a declaration helps to prove is no change of what is found.
             file.statistics.steps = Steps::default();
+            file.steps.clear();
             files.push(file);
             true
         };

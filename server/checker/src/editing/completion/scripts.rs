@@ -77,7 +77,8 @@ fn said(wanted: &Wanted, level: Level, prices: &Prices<'_>) -> String {
     }
 }
 
-/// A letter of the family that is meant: one that is wanted, one that stands in the statement, one of the file's.
+/// A letter of the family that is meant: one that is wanted, one that stands in the statement, the file's most used; one
+/// of a declared family, if there is one and that letter is of none.
 fn like(judged: &Judged<'_>, right: &[Wanted], wrong: &[Wanted], script: &TypedScript) -> CompactString {
     let wanted = right.iter().chain(wrong).map(|wanted| &wanted.letter);
     let standing = judged.sketch.letter_numbers().zip(&judged.sketch.letters).filter(|(number, _)| {
@@ -85,7 +86,14 @@ fn like(judged: &Judged<'_>, right: &[Wanted], wrong: &[Wanted], script: &TypedS
         places.any(|(at, _)| judged.is_index(at))
     });
     let known = wanted.chain(&script.letters).chain(standing.map(|(_, letter)| letter)).next().cloned();
-    let of_file = || CLASSES.iter().find_map(|class| judged.prices.index_letters(*class).into_iter().next());
+    let of_file = || {
+        // The first of several that are used as often.
+        let leading = CLASSES.iter().rev().filter_map(|class| judged.prices.index_letters(*class).into_iter().next());
+        let used = leading.max_by_key(|letter| judged.prices.index_votes(letter));
+        let meanings = &judged.prices.declared.meanings;
+        let declared = || meanings.families.first()?.letters.first().cloned();
+        used.filter(|letter| meanings.families.is_empty() || meanings.family_number(letter).is_some()).or_else(declared)
+    };
     known.or_else(of_file).unwrap_or_else(|| CompactString::const_new("i"))
 }
 

@@ -181,7 +181,7 @@ fn a_relation_tells_its_verdict() {
         Host::Latex,
         &format!("{head}\\[q = A_{{ij}} T_{{ij}} ‸= A_{{ij}} T_{{ji}} \\]"),
         "=",
-        &["**verified**: this step holds"],
+        &["**verified**: this step holds in dimension 3 by its form"],
     );
     let (span, markdown) =
         asked(Host::Latex, &format!("{head}\\[q = A_{{ij}} B_{{ij}} ‸= A_{{ij}} B_{{ji}} \\]")).unwrap();
