@@ -7,9 +7,8 @@
 ;; in a folder that holds a copy of `shell.tex'.  The environment and the last line are those of `neovim.lua'.
 ;;
 ;; In a batch Eglot would wait for a hook that never runs, so that the connection is made by hand, and what arrives from
-;; the server is let in while waiting.  Never with -Q, by which Eglot is not found.  Tried with
-;; Emacs 28.2 and its Eglot 1.9, which counts columns in UTF-16 and is sent findings; the names with two dashes are that
-;; version's own.
+;; the server is let in while waiting.  Never with -Q, by which Eglot is not found.  Tried with Emacs 28.2 and its Eglot
+;; 1.9, which counts columns in UTF-16 and is sent findings; the names with two dashes are that version's own.
 
 ;;; Code:
 

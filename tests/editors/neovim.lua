@@ -4,10 +4,11 @@
 --
 -- The environment says what to start (INDEXWISE_SERVER, words with tabs between them), how many seconds to wait for
 -- anything (INDEXWISE_WAIT), what hovering has to tell (INDEXWISE_HOVER) and which fix to take (INDEXWISE_FIX). The
--- texts that have to come out stand in `renamed.tex` and `mended.tex` beside the document. The last line is "all as it should be", or "wrong: " with what; then the status is 1.
+-- texts that have to come out stand in `renamed.tex` and `mended.tex` beside the document. The last line is "all as it
+-- should be", or "wrong: " with what; then the status is 1.
 --
--- Tried with Neovim 0.7.2 and 0.11.4. Neovim 0.7 knows neither `vim.lsp.start` nor inlay hints, and counts columns in UTF-16. From 0.11 on
--- Neovim offers UTF-8, asks for findings instead of being sent them, and shows inlay hints.
+-- Tried with Neovim 0.7.2 and 0.11.4. The first knows neither `vim.lsp.start` nor inlay hints, and counts columns in
+-- UTF-16. The other offers UTF-8, asks for findings instead of being sent them, and shows inlay hints.
 
 local server = vim.split(vim.env.INDEXWISE_SERVER, '\t')
 local patience = tonumber(vim.env.INDEXWISE_WAIT) * 1000
@@ -80,6 +81,7 @@ local function agrees_on_columns(client)
   must(one.offset_encoding == wanted, 'columns are counted in ' .. tostring(one.offset_encoding) .. ' here')
   local said = one.server_capabilities.positionEncoding
   must(said == wanted, 'columns are counted in ' .. tostring(said) .. ' by the server')
+  must(not rich or one.server_capabilities.diagnosticProvider, 'findings cannot be asked for')
 end
 
 local function is_told_of_the_slip()
