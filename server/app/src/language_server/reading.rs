@@ -7,7 +7,7 @@
 use std::path::{Path, PathBuf};
 use std::sync::Arc;
 
-use indexwise_checker::paper::{Analysis, Cancel, DocumentAnalysis, Memory, StepMode, View};
+use indexwise_checker::paper::{Analysis, Cancel, DocumentAnalysis, Memory, Paper, StepMode, View};
 use indexwise_grammar::hosts::ReferenceKind;
 use indexwise_grammar::lines::Lines;
 use indexwise_grammar::span::Span;
@@ -121,22 +121,29 @@ fn pictured(order: &Order, memory: &mut Memory, cancel: &Cancel) -> Result<Optio
     if cancel.is_cancelled() {
         return Ok(None);
     }
-    let to_the_end = Cancel::default();
-    let view = View::again(&loaded.paper, memory, &to_the_end);
-    let settings = order.settings.in_scope(&order.scope, StepMode::Off);
-    let balance = view.judge_again(&settings, memory, &to_the_end);
-    Ok((!cancel.is_cancelled()).then(|| picture(order, loaded, view, balance)))
+    let lines = || loaded.origins.iter().map(|origin| Lines::new(&origin.text.text)).collect();
+    let ((view, balance), lines) = rayon::join(|| checked(order, &loaded.paper, memory), lines);
+    Ok((!cancel.is_cancelled()).then(|| picture(order, loaded, (view, balance), lines)))
 }
 
-fn picture(order: &Order, loaded: Loaded, view: View, balance: Analysis) -> Picture {
+/// A paper read and judged without its steps.
+fn checked(order: &Order, paper: &Paper, memory: &mut Memory) -> (View, Analysis) {
+    let to_the_end = Cancel::default();
+    let view = View::again(paper, memory, &to_the_end);
+    let settings = order.settings.in_scope(&order.scope, StepMode::Off);
+    let balance = view.judge_again(&settings, memory, &to_the_end);
+    (view, balance)
+}
+
+fn picture(order: &Order, loaded: Loaded, (view, balance): (View, Analysis), lines: Vec<Lines>) -> Picture {
     let named = |path: &Path| {
         let open = order.open.iter().find(|open| open.path == path);
         let uri = open.map_or_else(|| Url::from_file_path(path).ok(), |open| Some(open.uri.clone()));
         (uri, open.map(|open| open.version))
     };
-    let documents = loaded.origins.iter().map(|origin| {
+    let documents = loaded.origins.iter().zip(lines).map(|(origin, lines)| {
         let (uri, version) = named(&origin.path);
-        Pictured { uri, path: origin.path.clone(), version, lines: Lines::new(&origin.text.text) }
+        Pictured { uri, path: origin.path.clone(), version, lines }
     });
     let styles = loaded.styles.iter().zip(&loaded.paper.styles);
     Picture {

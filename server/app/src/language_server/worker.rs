@@ -312,15 +312,17 @@ impl Worker {
         let judges = self.settings.steps != StepMode::Off;
         let before = paper.known.as_ref().filter(|(_, known)| judges && known.picture.settings == picture.settings);
         let analysis = match before {
-            Some((_, before)) => Arc::new(carried(before, &picture)),
+            Some((_, before)) => carried(before, &picture),
             None => picture.balance.clone(),
         };
         let judged = Judged { analysis, picture, complete: !judges };
-        paper.known = Some((revision, judged));
+        let before = paper.known.replace((revision, judged));
         paper.progress = None;
         paper.steps_due = judges.then(|| Instant::now() + SILENCE_BEFORE_STEPS);
         self.publish(at);
         self.answer_held(at);
+        // A picture is large, and whoever waits for the new one need not wait until the old one is cleared away.
+        self.pool.spawn(move || drop(before));
         if elsewhere {
             self.regroup(&Touched::Nothing);
         }
