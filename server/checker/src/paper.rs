@@ -6,6 +6,7 @@ mod implying;
 mod judging;
 mod memory;
 mod reads;
+mod scanned;
 mod sentences;
 #[cfg(test)]
 mod tests;
@@ -28,6 +29,7 @@ pub(crate) use asking::{Asked, Unasked};
 pub use implying::Implications;
 pub use memory::Memory;
 use reads::{Read, Sketched, Statement};
+pub use scanned::Scanned;
 pub use sentences::problems;
 pub(crate) use trying::edited;
 pub use view::View;
@@ -67,6 +69,8 @@ pub struct Paper {
     pub troubles: Vec<Trouble>,
     /// Conventions that stand outside the paper, the outer scope first, so that a later one is nearer.
     pub shared: Vec<SharedConventions>,
+    /// Scans of documents that were made before, by the numbers of the documents; there may be fewer or none.
+    pub scans: Vec<Option<Scanned>>,
 }
 
 /// What the caller wants.

@@ -4,6 +4,8 @@
 //! rest on what is declared elsewhere, so that what is carried counts only until the steps have been judged anew;
 //! whatever stands in a formula that was touched is dropped.
 
+use std::sync::Arc;
+
 use indexwise_checker::finding::{Finding, Related};
 use indexwise_checker::paper::{Analysis, DocumentAnalysis, View};
 use indexwise_grammar::span::Span;
@@ -11,7 +13,10 @@ use indexwise_grammar::span::Span;
 use super::reading::{Judged, Picture};
 
 /// What was found without judging steps, with what is still known of them from before.
-pub fn carried(before: &Judged, picture: &Picture) -> Analysis {
+pub fn carried(before: &Judged, picture: &Picture) -> Arc<Analysis> {
+    if !before.analysis.documents.iter().any(knows_steps) {
+        return picture.balance.clone();
+    }
     let mut analysis = (*picture.balance).clone();
     for (number, document) in picture.documents.iter().enumerate() {
         let old = before.picture.document(&document.path);
@@ -20,7 +25,12 @@ pub fn carried(before: &Judged, picture: &Picture) -> Analysis {
         let change = Change::between(before.picture.view.text(old), &picture.view, number);
         carry(found, &change, into);
     }
-    analysis
+    Arc::new(analysis)
+}
+
+/// Whether anything is known of the steps of a document.
+fn knows_steps(found: &DocumentAnalysis) -> bool {
+    !found.marks.is_empty() || found.findings.iter().any(|finding| finding.verdict.is_some())
 }
 
 fn carry(found: &DocumentAnalysis, change: &Change, into: &mut DocumentAnalysis) {

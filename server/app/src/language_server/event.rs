@@ -2,7 +2,7 @@
 
 use std::path::PathBuf;
 
-use indexwise_checker::paper::Analysis;
+use indexwise_checker::paper::{Analysis, Memory};
 use serde_json::Value;
 use tower_lsp::jsonrpc::{Error, Result};
 use tower_lsp::lsp_types::{Position, TextDocumentContentChangeEvent, Url};
@@ -67,6 +67,8 @@ pub enum Event {
         revision: u64,
         /// The picture; nothing if it was given up.
         result: std::result::Result<Option<Box<Picture>>, String>,
+        /// What is kept of it for the next reading.
+        memory: Box<Memory>,
     },
     /// The steps of a paper were judged.
     Verdicts {

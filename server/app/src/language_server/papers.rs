@@ -10,7 +10,7 @@ use std::sync::Arc;
 use std::sync::atomic::{AtomicU64, Ordering};
 use std::time::Instant;
 
-use indexwise_checker::paper::Cancel;
+use indexwise_checker::paper::{Cancel, Memory};
 use indexwise_grammar::hosts::ReferenceKind;
 use tokio::sync::oneshot;
 use tower_lsp::lsp_types::{Diagnostic, Url};
@@ -50,6 +50,8 @@ pub struct PaperState {
     pub due: Option<Instant>,
     /// The reading that goes on.
     pub reading: Option<(u64, Cancel)>,
+    /// What is kept from one reading to the next; the one that goes on has it.
+    pub memory: Box<Memory>,
     /// When its steps are to be judged.
     pub steps_due: Option<Instant>,
     /// The judging that goes on.
@@ -77,6 +79,7 @@ impl PaperState {
             revision: Arc::default(),
             due: Some(now),
             reading: None,
+            memory: Box::default(),
             steps_due: None,
             judging: None,
             known: None,

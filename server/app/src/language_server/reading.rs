@@ -1,12 +1,13 @@
 //! A paper read: an immutable picture of all its texts at one moment, which questions look at.
 //!
 //! `read` is the one place where a view is made. It runs off the worker's thread; what panics in it costs this one
-//! picture.
+//! picture, and the memory of those before. Trap: a reading that was begun is not broken off when the text moves on,
+//! since that would cost the memory too, and the next reading more than this one has left to do.
 
 use std::path::{Path, PathBuf};
 use std::sync::Arc;
 
-use indexwise_checker::paper::{Analysis, Cancel, DocumentAnalysis, StepMode, View};
+use indexwise_checker::paper::{Analysis, Cancel, DocumentAnalysis, Memory, Paper, StepMode, View};
 use indexwise_grammar::hosts::ReferenceKind;
 use indexwise_grammar::lines::Lines;
 use indexwise_grammar::span::Span;
@@ -96,16 +97,21 @@ pub struct Judged {
     pub complete: bool,
 }
 
-/// Reads a paper. Nothing if it was asked to end; the error is what cannot be read, or what went wrong.
-pub fn read(order: &Order, cancel: &Cancel) -> Result<Option<Picture>, String> {
-    panics::caught(|| pictured(order, cancel)).unwrap_or_else(|cause| Err(internal(&order.key.root, &cause)))
+/// Reads a paper, with what is kept of its earlier versions; both come back. Nothing if it was asked to end; the error
+/// is what cannot be read, or what went wrong.
+pub fn read(order: &Order, mut memory: Memory, cancel: &Cancel) -> (Result<Option<Picture>, String>, Memory) {
+    match panics::caught(|| pictured(order, &mut memory, cancel)) {
+        Ok(result) => (result, memory),
+        // What is half done is no memory.
+        Err(cause) => (Err(internal(&order.key.root, &cause)), Memory::default()),
+    }
 }
 
 fn internal(path: &Path, cause: &str) -> String {
     format!("internal error while reading {}: {cause}", path.display())
 }
 
-fn pictured(order: &Order, cancel: &Cancel) -> Result<Option<Picture>, String> {
+fn pictured(order: &Order, memory: &mut Memory, cancel: &Cancel) -> Result<Option<Picture>, String> {
     let mut texts = Overlay::new(&*order.disk);
     for open in &order.open {
         texts.lay(open.path.clone(), open.text.clone());
@@ -115,24 +121,29 @@ fn pictured(order: &Order, cancel: &Cancel) -> Result<Option<Picture>, String> {
     if cancel.is_cancelled() {
         return Ok(None);
     }
-    let view = View::of(&loaded.paper, cancel);
-    let balance = balance(&view, order, cancel);
-    Ok((!cancel.is_cancelled()).then(|| picture(order, loaded, view, balance)))
+    let lines = || loaded.origins.iter().map(|origin| Lines::new(&origin.text.text)).collect();
+    let ((view, balance), lines) = rayon::join(|| checked(order, &loaded.paper, memory), lines);
+    Ok((!cancel.is_cancelled()).then(|| picture(order, loaded, (view, balance), lines)))
 }
 
-fn balance(view: &View, order: &Order, cancel: &Cancel) -> Analysis {
-    view.judge(&order.settings.in_scope(&order.scope, StepMode::Off), cancel)
+/// A paper read and judged without its steps.
+fn checked(order: &Order, paper: &Paper, memory: &mut Memory) -> (View, Analysis) {
+    let to_the_end = Cancel::default();
+    let view = View::again(paper, memory, &to_the_end);
+    let settings = order.settings.in_scope(&order.scope, StepMode::Off);
+    let balance = view.judge_again(&settings, memory, &to_the_end);
+    (view, balance)
 }
 
-fn picture(order: &Order, loaded: Loaded, view: View, balance: Analysis) -> Picture {
+fn picture(order: &Order, loaded: Loaded, (view, balance): (View, Analysis), lines: Vec<Lines>) -> Picture {
     let named = |path: &Path| {
         let open = order.open.iter().find(|open| open.path == path);
         let uri = open.map_or_else(|| Url::from_file_path(path).ok(), |open| Some(open.uri.clone()));
         (uri, open.map(|open| open.version))
     };
-    let documents = loaded.origins.iter().map(|origin| {
+    let documents = loaded.origins.iter().zip(lines).map(|(origin, lines)| {
         let (uri, version) = named(&origin.path);
-        Pictured { uri, path: origin.path.clone(), version, lines: Lines::new(&origin.text.text) }
+        Pictured { uri, path: origin.path.clone(), version, lines }
     });
     let styles = loaded.styles.iter().zip(&loaded.paper.styles);
     Picture {

@@ -159,7 +159,12 @@ impl Worker {
             Event::Ask(question) => self.ask(question),
             Event::AskAll(task) => self.ask_all(task),
             Event::Apply(label, edit) => self.outbox.put(Note::Apply(label, *edit)),
-            Event::Read { key, revision, result } => self.was_read(&key, revision, result),
+            Event::Read { key, revision, result, memory } => {
+                if let Some(paper) = self.papers.iter_mut().find(|paper| paper.key == key) {
+                    paper.memory = memory;
+                }
+                self.was_read(&key, revision, result);
+            }
             Event::Verdicts { key, revision, result } => self.was_judged(&key, revision, result),
             Event::Trouble(cause) => self.trouble(&cause),
             Event::Shutdown => {}
@@ -247,12 +252,14 @@ impl Worker {
         let (key, scope, revision, cancel) = (paper.key.clone(), paper.scope.clone(), paper.now(), Cancel::default());
         paper.due = None;
         paper.reading = Some((revision, cancel.clone()));
+        let memory = std::mem::take(&mut paper.memory);
         let events = self.events.clone();
         self.pool.spawn(move || {
             let order = Order { key, scope, settings, client, open, disk };
-            let result = reading::read(&order, &cancel).map(|picture| picture.map(Box::new));
+            let (result, memory) = reading::read(&order, *memory, &cancel);
+            let result = result.map(|picture| picture.map(Box::new));
             // When the worker is gone the session has ended.
-            let _ = events.send(Event::Read { key: order.key, revision, result });
+            let _ = events.send(Event::Read { key: order.key, revision, result, memory: Box::new(memory) });
         });
     }
 
@@ -308,15 +315,17 @@ impl Worker {
         let judges = self.settings.steps != StepMode::Off;
         let before = paper.known.as_ref().filter(|(_, known)| judges && known.picture.settings == picture.settings);
         let analysis = match before {
-            Some((_, before)) => Arc::new(carried(before, &picture)),
+            Some((_, before)) => carried(before, &picture),
             None => picture.balance.clone(),
         };
         let judged = Judged { analysis, picture, complete: !judges };
-        paper.known = Some((revision, judged));
+        let before = paper.known.replace((revision, judged));
         paper.progress = None;
         paper.steps_due = judges.then(|| Instant::now() + SILENCE_BEFORE_STEPS);
         self.publish(at);
         self.answer_held(at);
+        // A picture is large, and whoever waits for the new one need not wait until the old one is cleared away.
+        self.pool.spawn(move || drop(before));
         if elsewhere {
             self.regroup(&Touched::Nothing);
         }

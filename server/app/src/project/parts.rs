@@ -9,7 +9,7 @@ use std::path::{Path, PathBuf};
 use std::sync::Arc;
 use std::vec::IntoIter;
 
-use indexwise_checker::paper::{Paper, Source, Trouble};
+use indexwise_checker::paper::{Paper, Scanned, Source, Trouble};
 use indexwise_grammar::hosts::{Host, Reference, ReferenceKind};
 
 use super::roots::MOST_PARTS;
@@ -116,7 +116,10 @@ impl<'a> Reader<'a> {
 
     fn open(&mut self, path: PathBuf, text: Text, host: Host) {
         let document = self.loaded.paper.documents.len();
-        let references = outline(&text.text, host).references;
+        // Only LaTeX asks for files.
+        let scanned = (host == Host::Latex).then(|| Scanned::new(text.text.clone(), host));
+        let references = scanned.as_ref().map(|scanned| scanned.scan().references.clone()).unwrap_or_default();
+        self.loaded.paper.scans.push(scanned);
         self.loaded.asked.push(references.iter().map(|one| (one.kind, one.path.clone())).collect());
         let references = references.into_iter();
         let shown = self.shown(&path);

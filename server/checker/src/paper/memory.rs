@@ -70,8 +70,8 @@ impl Memory {
         let shared = shared_macros(paper);
         let project = shared_meanings(&paper.shared);
         let mut out: Vec<Sketched> = Vec::with_capacity(paper.documents.len());
-        for (source, remembered) in paper.documents.iter().zip(&mut self.documents) {
-            let scan = scan(&source.text, source.host, &shared);
+        for (number, (source, remembered)) in paper.documents.iter().zip(&mut self.documents).enumerate() {
+            let scan = paper.scan(number, source, &shared);
             let macros = macros_of(&scan, &shared);
             let outer = out.first().map_or(&project, |root| &root.read.declared.meanings);
             let declared = Declared::read(&scan.directives, source.host, &macros, outer);
@@ -152,8 +152,8 @@ fn shared_macros(paper: &Paper) -> Macros {
         shared = macros_of(&scan, &shared).inherited();
     }
     if paper.documents.len() > 1 {
-        for source in &paper.documents {
-            let scan = scan(&source.text, source.host, &shared);
+        for (number, source) in paper.documents.iter().enumerate() {
+            let scan = paper.scan(number, source, &shared);
             if !scan.definitions.is_empty() {
                 shared = macros_of(&scan, &shared).inherited();
             }

@@ -53,3 +53,17 @@ fn a_level_switches_on_what_is_off_by_default() {
     assert_eq!(unread(Some(Severity::Warning)), [("unread", Severity::Warning)]);
     assert_eq!(unread(None), []);
 }
+
+#[test]
+fn a_scan_made_before_counts_for_its_own_text_alone() {
+    let source = Source { path: "shell".to_owned(), text: TEXT.into(), host: Host::Markdown };
+    let elsewhere = Scanned::new("no formula".into(), Host::Markdown);
+    let of_another_host = Scanned::new(source.text.clone(), Host::Note);
+    let own = Scanned::new(source.text.clone(), Host::Markdown);
+    for made in [None, Some(elsewhere), Some(of_another_host), Some(own)] {
+        let paper = Paper { documents: vec![source.clone()], scans: vec![made], ..Paper::default() };
+        let documents = check(&paper, &Settings::default(), &Cancel::default()).documents;
+        let rules: Vec<_> = documents.iter().flat_map(|document| &document.findings).map(|found| found.rule).collect();
+        assert_eq!(rules, [MISMATCH]);
+    }
+}

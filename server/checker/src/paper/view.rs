@@ -45,6 +45,8 @@ impl View {
         let formulas = documents.iter().flat_map(|one| &one.read.document.formulas);
         let labels = formulas.flat_map(|formula| formula.labels.iter().map(|(label, _)| label.clone())).collect();
         let mut view = Self { documents, evidence, all, customs: Vec::new(), labels, paper: paper.clone() };
+        // Nobody asks for them any more.
+        view.paper.scans.clear();
         let customs = (0..view.len()).filter_map(|number| Some(Customs::of(view.text(number), &view.prices(number)?)));
         view.customs = customs.collect();
         view
