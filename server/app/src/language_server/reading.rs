@@ -8,6 +8,7 @@ use std::path::{Path, PathBuf};
 use std::sync::Arc;
 
 use indexwise_checker::paper::{Analysis, Cancel, DocumentAnalysis, Memory, Paper, StepMode, View};
+use indexwise_checker::steps::Verdicts;
 use indexwise_grammar::hosts::ReferenceKind;
 use indexwise_grammar::lines::Lines;
 use indexwise_grammar::span::Span;
@@ -79,6 +80,8 @@ pub struct Picture {
     pub asked: Vec<Vec<(ReferenceKind, String)>>,
     /// What was found without judging steps.
     pub balance: Arc<Analysis>,
+    /// Verdicts that are known from earlier versions.
+    verdicts: Verdicts,
     /// What the client wants.
     pub settings: Arc<Settings>,
     /// What the client can do.
@@ -123,7 +126,8 @@ fn pictured(order: &Order, memory: &mut Memory, cancel: &Cancel) -> Result<Optio
     }
     let lines = || loaded.origins.iter().map(|origin| Lines::new(&origin.text.text)).collect();
     let ((view, balance), lines) = rayon::join(|| checked(order, &loaded.paper, memory), lines);
-    Ok((!cancel.is_cancelled()).then(|| picture(order, loaded, (view, balance), lines)))
+    let verdicts = memory.verdicts.clone();
+    Ok((!cancel.is_cancelled()).then(|| picture(order, loaded, (view, balance, verdicts), lines)))
 }
 
 /// A paper read and judged without its steps.
@@ -135,7 +139,12 @@ fn checked(order: &Order, paper: &Paper, memory: &mut Memory) -> (View, Analysis
     (view, balance)
 }
 
-fn picture(order: &Order, loaded: Loaded, (view, balance): (View, Analysis), lines: Vec<Lines>) -> Picture {
+fn picture(
+    order: &Order,
+    loaded: Loaded,
+    (view, balance, verdicts): (View, Analysis, Verdicts),
+    lines: Vec<Lines>,
+) -> Picture {
     let named = |path: &Path| {
         let open = order.open.iter().find(|open| open.path == path);
         let uri = open.map_or_else(|| Url::from_file_path(path).ok(), |open| Some(open.uri.clone()));
@@ -153,6 +162,7 @@ fn picture(order: &Order, loaded: Loaded, (view, balance): (View, Analysis), lin
         asked: loaded.asked,
         view,
         balance: Arc::new(balance),
+        verdicts,
         settings: order.settings.clone(),
         client: order.client,
         scope: order.scope.clone(),
@@ -163,7 +173,7 @@ impl Picture {
     /// Judges the steps, too. Nothing if it was asked to end.
     pub fn judge(&self, cancel: &Cancel) -> Result<Option<Analysis>, String> {
         let settings = self.settings.in_scope(&self.scope, self.settings.steps);
-        let judged = panics::caught(|| self.view.judge(&settings, cancel));
+        let judged = panics::caught(|| self.view.judge_knowing(&settings, &self.verdicts, cancel));
         let root = self.documents.first().map(|root| root.path.as_path()).unwrap_or(Path::new(""));
         let judged = judged.map_err(|cause| internal(root, &cause))?;
         Ok((!cancel.is_cancelled()).then_some(judged))

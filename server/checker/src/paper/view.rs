@@ -59,24 +59,25 @@ impl View {
 
     /// The same, where verdicts about steps may be known from an earlier version; those that are reached are added.
     pub fn judge_knowing(&self, settings: &Settings, verdicts: &Verdicts, cancel: &Cancel) -> Analysis {
-        if settings.steps != StepMode::Off {
+        let analysis =
+            self.judge_each(cancel, |number| self.judge_document(number, settings, None, (verdicts, cancel)));
+        if settings.steps != StepMode::Off && !cancel.is_cancelled() {
             verdicts.turn();
         }
-        self.judge_each(cancel, |number| self.judge_document(number, settings, None, (verdicts, cancel)))
+        analysis
     }
 
     /// The same, with what is kept of the judgements about an earlier version; the memory must be the one that this
     /// view was made from last.
     pub fn judge_again(&self, settings: &Settings, memory: &mut Memory, cancel: &Cancel) -> Analysis {
         let verdicts = memory.verdicts.clone();
-        if settings.steps != StepMode::Off {
-            verdicts.turn();
-        }
         let analysis = self.judge_each(cancel, |number| {
             self.judge_document(number, settings, memory.of_document(number), (&verdicts, cancel))
         });
         if cancel.is_cancelled() {
             memory.forget_judgements();
+        } else if settings.steps != StepMode::Off {
+            verdicts.turn();
         }
         analysis
     }

@@ -2,8 +2,8 @@
 //! of a document that somebody is typing.
 //!
 //! A verdict is a function of its claim and of the limits, and is known by a hash of exactly these, 128 bits of their
-//! text. One that ended because time was up, or because nobody waits for it any more, is not kept. What has not been
-//! asked for while two versions of a paper were judged is forgotten.
+//! text. One that ended because time was up, or because nobody waits for it any more, is not kept. What a version of
+//! a paper does not ask for is forgotten once it is judged to its end.
 
 use std::cell::Cell;
 use std::fmt::{self, Write};
@@ -26,7 +26,7 @@ pub struct Verdicts(Arc<Mutex<Kept>>);
 
 #[derive(Default)]
 struct Kept {
-    /// Asked for since the last version was begun, and before that.
+    /// Asked for by the version that is judged, and by the one before.
     lately: FxHashMap<u128, Reached>,
     before: FxHashMap<u128, Reached>,
 }
@@ -85,7 +85,7 @@ impl Court {
 }
 
 impl Verdicts {
-    /// Begins with another version of a paper.
+    /// Ends with a version of a paper: what it did not ask for is forgotten.
     pub(crate) fn turn(&self) {
         let mut kept = self.0.lock().unwrap_or_else(PoisonError::into_inner);
         kept.before = std::mem::take(&mut kept.lately);

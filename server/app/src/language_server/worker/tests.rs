@@ -45,7 +45,7 @@ fn a_text_that_cannot_be_read_answers_nothing_and_is_told_of() {
     worker.take(Event::Ask(Question { uri, places: Vec::new(), freshly: true, task: Box::new(task) }));
     let key = worker.papers.first().unwrap().key.clone();
     let revision = worker.papers.first().unwrap().now();
-    worker.take(Event::Read { key, revision, result: Err("internal error: x".into()) });
+    worker.take(Event::Read { key, revision, result: Err("internal error: x".into()), memory: Box::default() });
     assert_eq!(answered.recv(), Ok(Some(Refusal::Unknown)));
     assert_eq!(said(&worker), (1, 1));
 }
@@ -58,7 +58,7 @@ fn what_is_late_does_not_count() {
     let paper = worker.papers.first().unwrap();
     let (key, revision) = (paper.key.clone(), paper.now());
     worker.take(Event::Change { uri, version: 2, changes: Vec::new() });
-    worker.take(Event::Read { key, revision, result: Err("late".into()) });
+    worker.take(Event::Read { key, revision, result: Err("late".into()), memory: Box::default() });
     assert_eq!(said(&worker), (0, 0));
     assert!(worker.papers.first().unwrap().due.is_some());
 }
