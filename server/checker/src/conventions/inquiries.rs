@@ -11,8 +11,6 @@ use rustc_hash::FxHashMap;
 
 use crate::sketch::Unit;
 
-use super::prices::Prices;
-
 /// A question that `Prices` answers; the function of a like name there says what it asks.
 #[derive(Clone, Debug, PartialEq, Eq, Hash)]
 pub enum Inquiry {
@@ -82,10 +80,10 @@ impl Inquiries {
     }
 
     /// Asks everything again under new evidence: for each question, whether its answer is another one.
-    pub fn ask_again(&self, prices: &Prices<'_>) -> Vec<bool> {
+    pub fn ask_again(&self, answer_to: impl Fn(&Inquiry) -> i64) -> Vec<bool> {
         let mut noted = self.0.borrow_mut();
         let again = |(inquiry, answer): &mut (Inquiry, i64)| {
-            let now = prices.answer(inquiry);
+            let now = answer_to(inquiry);
             std::mem::replace(answer, now) != now
         };
         noted.asked.iter_mut().map(again).collect()

@@ -82,7 +82,7 @@ impl Prices<'_> {
     }
 
     /// The answer to a question that was asked before, as a number; the question is not noted again.
-    pub(super) fn answer(&self, inquiry: &Inquiry) -> i64 {
+    pub(crate) fn answer(&self, inquiry: &Inquiry) -> i64 {
         match inquiry {
             Inquiry::Score(unit) => self.scored(unit).into(),
             Inquiry::WritesBelow => self.writes_below().into(),

@@ -83,7 +83,7 @@ impl Known {
 
     /// Asks all questions again, before the document is judged.
     pub fn ask_again(&mut self, prices: &Prices<'_>) {
-        self.changed = self.inquiries.ask_again(prices);
+        self.changed = self.inquiries.ask_again(|inquiry| prices.answer(inquiry));
         if self.changed.len() > QUESTIONS {
             self.forget();
         }
