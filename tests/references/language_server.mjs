@@ -1,11 +1,11 @@
 // Holds what the language server sent against JSON Schemas made from the protocol's own TypeScript types.
 //
-// usage: node language_server.mjs TRANSCRIPT MODULES [--break]
+// usage: node language_server.mjs RECORD MODULES [--break]
 //
-// TRANSCRIPT is what language_server.py wrote: one message a line with the method that it belongs to. MODULES is a
+// RECORD is what language_server.py wrote: one message a line with the method that it belongs to. MODULES is a
 // folder node_modules with vscode-languageserver-protocol (the types), ts-json-schema-generator (types to schemas) and
 // ajv (the check). No member may be there that the types do not know; `uinteger` and `integer` are numbers in TypeScript
-// and are checked as what they say. Every kind of message that the server may send must be in the transcript.
+// and are checked as what they say. Every kind of message that the server may send must be in the record.
 //
 // With --break every message is spoilt in two ways, by a member that nobody knows and by a number as a string, and
 // each of these must be noticed.
@@ -14,7 +14,7 @@ import { readFileSync, writeFileSync, mkdtempSync, rmSync } from "node:fs";
 import { createRequire } from "node:module";
 import { join, resolve } from "node:path";
 
-const [transcript, modules, mode] = process.argv.slice(2);
+const [record, modules, mode] = process.argv.slice(2);
 const require = createRequire(join(resolve(modules), "-"));
 const { createGenerator } = require("ts-json-schema-generator");
 const Ajv = require("ajv").default ?? require("ajv");
@@ -144,7 +144,7 @@ function spoilings(entry) {
 }
 
 const checks = schemas();
-const entries = readFileSync(transcript, "utf8").trim().split("\n").map((line) => JSON.parse(line));
+const entries = readFileSync(record, "utf8").trim().split("\n").map((line) => JSON.parse(line));
 let failures = 0;
 const fail = (words) => {
   failures += 1;

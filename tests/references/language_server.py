@@ -1,13 +1,13 @@
 #!/usr/bin/env python3
 """Holds the language server against the published types of the protocol.
 
-usage: language_server.py PROGRAM TRANSCRIPT [--break]
+usage: language_server.py PROGRAM RECORD [--break]
 
 PROGRAM serve is driven through a full session as three editors would drive it, with the capabilities that they
 announce: an old Neovim (pushed diagnostics, UTF-16, hardly anything else), Emacs, VS Code, and a new Neovim, to whose
 capabilities diagnostics that are asked for are added. Every answer is read with the types of lsprotocol, which refuses
 what does not fit; warnings of pytest-lsp about breaches of the specification are errors. All that the server sends is
-written to TRANSCRIPT, one message a line with the method that it belongs to, for `language_server.mjs`.
+written to RECORD, one message a line with the method that it belongs to, for `language_server.mjs`.
 
 With --break the numbers of lines are turned into words on their way, and every session has to fail.
 
@@ -74,7 +74,7 @@ def spoilt(value):
     return [spoilt(one) for one in value] if isinstance(value, list) else value
 
 
-async def between(transcript, spoils, command):
+async def between(record, spoils, command):
     """Runs the server, and writes down what it sends with the method that it belongs to."""
     server = await asyncio.create_subprocess_exec(*command, stdin=asyncio.subprocess.PIPE, stdout=asyncio.subprocess.PIPE)
     loop = asyncio.get_running_loop()
@@ -95,7 +95,7 @@ async def between(transcript, spoils, command):
 
     async def outwards():
         data = b""
-        with open(transcript, "a", encoding="utf-8") as out:
+        with open(record, "a", encoding="utf-8") as out:
             while piece := await server.stdout.read(1 << 16):
                 found, data = frames(data + piece)
                 for message in found:
@@ -191,7 +191,7 @@ class Session:
             assert await self.client.workspace_execute_command_async(params), command
 
 
-async def session(name, program, transcript, spoils):
+async def session(name, program, record, spoils):
     """A full session as one editor has it."""
     import pytest_lsp
     from lsprotocol import types
@@ -217,7 +217,7 @@ async def session(name, program, transcript, spoils):
         edits.append(params)
         return types.ApplyWorkspaceEditResult(applied=True)
 
-    between_us = [sys.executable, __file__, "--between", transcript, str(int(spoils)), program, "serve"]
+    between_us = [sys.executable, __file__, "--between", record, str(int(spoils)), program, "serve"]
     await client.start_io(*between_us)
     with tempfile.TemporaryDirectory() as folder:
         root = pathlib.Path(folder).resolve()
@@ -246,7 +246,7 @@ async def session(name, program, transcript, spoils):
     return one.answers
 
 
-async def main(program, transcript, spoils):
+async def main(program, record, spoils):
     """Runs all sessions."""
     warnings.simplefilter("error")
     # What the interpreter says of the libraries themselves is no concern of ours.
@@ -255,11 +255,11 @@ async def main(program, transcript, spoils):
     if spoils:
         # The library tells at length of every message that it refuses.
         logging.disable(logging.CRITICAL)
-    pathlib.Path(transcript).write_text("", encoding="utf-8")
+    pathlib.Path(record).write_text("", encoding="utf-8")
     wrong = 0
     for name in CLIENTS:
         try:
-            answers = await asyncio.wait_for(session(name, program, transcript, spoils), SECONDS)
+            answers = await asyncio.wait_for(session(name, program, record, spoils), SECONDS)
             print(f"{name}: {answers} answers of the right types")
             wrong += spoils
         except Exception as error:
