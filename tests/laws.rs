@@ -12,7 +12,7 @@
 
 use std::collections::BTreeMap;
 
-use indexwise_checker::finding::{Edit, Finding, Fix, Severity};
+use indexwise_checker::finding::{Finding, Fix, Severity, edited};
 use indexwise_checker::paper::{Cancel, DocumentAnalysis, Settings};
 use indexwise_grammar::hosts::Host;
 use indexwise_grammar::macros::Macros;
@@ -141,7 +141,7 @@ fn fixes(host: Host, text: &str, findings: &[Finding]) -> Vec<String> {
     let mut broken = Vec::new();
     for finding in findings {
         for fix in &finding.fixes {
-            let problem = match apply(text, &fix.edits) {
+            let problem = match edited(text, &fix.edits) {
                 None => Some("has edits that overlap or are out of order".to_owned()),
                 Some(mended) => worsened(findings, finding, &analyse(host, &mended).findings),
             };
@@ -153,21 +153,6 @@ fn fixes(host: Host, text: &str, findings: &[Finding]) -> Vec<String> {
 
 fn describe(finding: &Finding, fix: &Fix, problem: &str) -> String {
     format!("the fix `{}` of {} ({}) {problem}", fix.title, finding.rule, finding.message)
-}
-
-/// The text with edits applied; nothing unless they are in order, apart, and in the text.
-pub fn apply(text: &str, edits: &[Edit]) -> Option<String> {
-    let mut mended = String::with_capacity(text.len());
-    let mut done = 0;
-    for edit in edits {
-        let range = edit.span.range();
-        mended.push_str(text.get(done..range.start)?);
-        text.get(range.clone())?;
-        mended.push_str(&edit.text);
-        done = range.end;
-    }
-    mended.push_str(text.get(done..)?);
-    Some(mended)
 }
 
 /// What is wrong with the findings after the fix of one of those before. Offsets move with an edit, so that
@@ -237,6 +222,8 @@ fn map_spans(finding: &Finding, map: &mut dyn FnMut(Span) -> Span) -> Finding {
 
 #[cfg(test)]
 mod tests {
+    use indexwise_checker::finding::Edit;
+
     use super::*;
     use indexwise_checker::finding::{Ledger, Related};
 
@@ -286,11 +273,11 @@ mod tests {
 
     #[test]
     fn edits_are_applied_in_order_and_apart() {
-        assert_eq!(apply("A_i B_j", &[edit(2, 3, "k"), edit(6, 7, "kl")]).as_deref(), Some("A_k B_kl"));
-        assert_eq!(apply("A_i", &[edit(3, 3, "_j")]).as_deref(), Some("A_i_j"));
-        assert_eq!(apply("A_i B_j", &[edit(4, 6, ""), edit(5, 7, "")]), None);
-        assert_eq!(apply("A_i B_j", &[edit(4, 5, ""), edit(0, 1, "")]), None);
-        assert_eq!(apply("A_i", &[edit(2, 9, "")]), None);
+        assert_eq!(edited("A_i B_j", &[edit(2, 3, "k"), edit(6, 7, "kl")]).as_deref(), Some("A_k B_kl"));
+        assert_eq!(edited("A_i", &[edit(3, 3, "_j")]).as_deref(), Some("A_i_j"));
+        assert_eq!(edited("A_i B_j", &[edit(4, 6, ""), edit(5, 7, "")]), None);
+        assert_eq!(edited("A_i B_j", &[edit(4, 5, ""), edit(0, 1, "")]), None);
+        assert_eq!(edited("A_i", &[edit(2, 9, "")]), None);
     }
 
     #[test]

@@ -18,13 +18,12 @@ use indexwise_checker::editing::hints::hints;
 use indexwise_checker::editing::ledger_view::ledger_at;
 use indexwise_checker::editing::lenses::lenses;
 use indexwise_checker::editing::outline::{Entry, outline};
-use indexwise_checker::finding::Severity;
+use indexwise_checker::finding::{Severity, edited};
 use indexwise_checker::paper::{Cancel, DocumentAnalysis, Paper, Settings, Source, StepMode, View};
 use indexwise_grammar::hosts::Host;
 use indexwise_grammar::span::Span;
 use indexwise_tests::annotations::Fixture;
 use indexwise_tests::documents_below;
-use indexwise_tests::laws::apply;
 
 /// Places of a document at which everything is asked that is asked of a place.
 const PLACES: usize = 25;
@@ -106,7 +105,7 @@ fn every_place_has_its_answers() {
                 fits(&sheet, row.span);
             }
             for (label, edits) in insertions(&sheet.view, 0, at) {
-                assert!(apply(&sheet.text, &edits).is_some(), "{} at {at}: {label}", sheet.name);
+                assert!(edited(&sheet.text, &edits).is_some(), "{} at {at}: {label}", sheet.name);
             }
         }
     }
@@ -205,7 +204,7 @@ fn labelled_equations_are_put_in_without_harm() {
 
 /// What is wrong after an action, if anything is.
 fn harm(sheet: &Sheet, action: &Action) -> Option<String> {
-    let Some(text) = apply(&sheet.text, &action.edits) else { return Some("has edits out of order".to_owned()) };
+    let Some(text) = edited(&sheet.text, &action.edits) else { return Some("has edits out of order".to_owned()) };
     let after = judged(&view(sheet.host, &text));
     let counts = |analysis: &DocumentAnalysis| {
         let mut counts: BTreeMap<&str, usize> = BTreeMap::new();

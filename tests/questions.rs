@@ -20,12 +20,12 @@ use indexwise_checker::editing::hover::hover;
 use indexwise_checker::editing::references::{File, Location, definition, references};
 use indexwise_checker::editing::rename::{prepare_rename, rename};
 use indexwise_checker::editing::tokens::{Token, TokenKind, tokens};
+use indexwise_checker::finding::edited;
 use indexwise_checker::paper::{Cancel, DocumentAnalysis, Paper, Settings, Source, StepMode, View};
 use indexwise_grammar::hosts::Host;
 use indexwise_grammar::span::Span;
 use indexwise_tests::annotations::Fixture;
 use indexwise_tests::documents_below;
-use indexwise_tests::laws::apply;
 use indexwise_tests::variants::damaged;
 
 /// Offsets of a text that are asked about, apart from the tokens below.
@@ -105,7 +105,7 @@ fn damaged_documents_are_answered_too() {
             }
             lights_up_together(&view, &text, offset, &about);
             for (_, edits) in rename(&view, 0, offset, "q").unwrap_or_default() {
-                assert!(apply(&text, &edits).is_some(), "{about}: {edits:?}");
+                assert!(edited(&text, &edits).is_some(), "{about}: {edits:?}");
             }
         }
     }
@@ -193,7 +193,7 @@ fn a_rename_and_back_changes_nothing() {
             };
             let about = format!("{name}: {old} at {}", span.start);
             let [(0, edits)] = edits.as_slice() else { panic!("{about}: {edits:?}") };
-            let renamed = apply(&text, edits).expect("edits in order and apart");
+            let renamed = edited(&text, edits).expect("edits in order and apart");
             let after = view_of(host, &renamed);
             assert_eq!(kept(&after, &renamed), before, "{about}\n{renamed}");
             let shift = edits.iter().take_while(|edit| edit.span.start < span.start);
@@ -206,7 +206,7 @@ fn a_rename_and_back_changes_nothing() {
                 Err(reason) => panic!("{about}: {reason}"),
             };
             let [(0, back)] = back.as_slice() else { panic!("{about}: {back:?}") };
-            assert_eq!(apply(&renamed, back).as_deref(), Some(text.as_str()), "{about}");
+            assert_eq!(edited(&renamed, back).as_deref(), Some(text.as_str()), "{about}");
             done += 1;
         }
     }

@@ -26,7 +26,5 @@ mod rows;
 mod saying;
 mod spots;
 pub mod tokens;
-#[cfg(test)]
-mod trying;
 mod under;
 pub mod write_out;

@@ -127,6 +127,30 @@ pub struct JudgedStep {
     pub span: Span,
     /// What was found out.
     pub verdict: StepVerdict,
+    /// The same in one sentence: the message of the finding, or that the step holds.
+    pub said: String,
+}
+
+/// A verdict as a mark beside the step tells it.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Outcome {
+    /// It holds, in every dimension that was tried.
+    Holds,
+    /// It fails, or holds in certain dimensions only.
+    Fails,
+    /// It is not shown or not decided.
+    Open,
+}
+
+impl JudgedStep {
+    /// The verdict in short.
+    pub fn outcome(&self) -> Outcome {
+        match self.verdict.verdict {
+            "holds" | "holds by form" => Outcome::Holds,
+            "fails" | "needs dimension" => Outcome::Fails,
+            _ => Outcome::Open,
+        }
+    }
 }
 
 /// A further place that a finding speaks of.
@@ -177,6 +201,20 @@ impl Edit {
         }
         Self { span, text: put }
     }
+}
+
+/// A text with edits made; nothing unless they are in order, apart, and in the text.
+pub fn edited(text: &str, edits: &[Edit]) -> Option<String> {
+    let (mut out, mut at) = (String::with_capacity(text.len()), 0);
+    for edit in edits {
+        let range = edit.span.range();
+        out.push_str(text.get(at..range.start)?);
+        text.get(range.clone())?;
+        out.push_str(&edit.text);
+        at = range.end;
+    }
+    out.push_str(text.get(at..)?);
+    Some(out)
 }
 
 /// The ledger of a statement as people see it: one row a side, or a term of a side.

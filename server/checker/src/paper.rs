@@ -31,7 +31,6 @@ pub use memory::Memory;
 use reads::{Read, Sketched, Statement};
 pub use scanned::Scanned;
 pub use sentences::problems;
-pub(crate) use trying::edited;
 pub use view::View;
 
 /// One text of a paper.
@@ -154,30 +153,6 @@ pub struct DocumentAnalysis {
     pub symbols: Option<SymbolTable>,
     /// Every step that was judged, in the order of their places.
     pub steps: Vec<JudgedStep>,
-    /// The steps that were judged, in the order of the text.
-    pub marks: Vec<StepMark>,
-}
-
-/// A claimed step with its verdict.
-#[derive(Clone, Debug, PartialEq, Eq)]
-pub struct StepMark {
-    /// The relation sign.
-    pub sign: Span,
-    /// The verdict.
-    pub outcome: Outcome,
-    /// One sentence: the message of the finding, or that the step holds.
-    pub said: String,
-}
-
-/// The verdict about a step, as a mark beside it tells.
-#[derive(Clone, Copy, Debug, PartialEq, Eq)]
-pub enum Outcome {
-    /// It holds, in every dimension that was tried.
-    Holds,
-    /// It fails, or holds in certain dimensions only.
-    Fails,
-    /// It is not shown or not decided.
-    Open,
 }
 
 /// Counts of one document.

@@ -30,19 +30,19 @@ pub fn carried(before: &Judged, picture: &Picture) -> Arc<Analysis> {
 
 /// Whether anything is known of the steps of a document.
 fn knows_steps(found: &DocumentAnalysis) -> bool {
-    !found.marks.is_empty() || found.findings.iter().any(|finding| finding.verdict.is_some())
+    !found.steps.is_empty() || found.findings.iter().any(|finding| finding.verdict.is_some())
 }
 
 fn carry(found: &DocumentAnalysis, change: &Change, into: &mut DocumentAnalysis) {
     let steps = found.findings.iter().filter(|finding| finding.verdict.is_some());
     into.findings.extend(steps.filter_map(|finding| moved(finding, change)));
     into.findings.sort_by(|a, b| (a.span, a.rule, &a.message).cmp(&(b.span, b.rule, &b.message)));
-    into.marks = found
-        .marks
+    into.steps = found
+        .steps
         .iter()
         .filter_map(|mark| {
             let mut mark = mark.clone();
-            mark.sign = change.moved(mark.sign)?;
+            mark.span = change.moved(mark.span)?;
             Some(mark)
         })
         .collect();

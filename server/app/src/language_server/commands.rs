@@ -6,8 +6,8 @@
 use indexwise_checker::editing::actions::{Action, ActionKind, insertions};
 use indexwise_checker::editing::ledger_view::ledger_at;
 use indexwise_checker::editing::write_out::{Forms, WrittenOut, write_out};
-use indexwise_checker::finding::{Edit, LedgerIndex};
-use indexwise_checker::paper::{Cancel, Outcome, Settings, StepMode};
+use indexwise_checker::finding::{Edit, LedgerIndex, Outcome};
+use indexwise_checker::paper::{Cancel, Settings, StepMode};
 use indexwise_checker::rules::find;
 use serde::Deserialize;
 use serde_json::{Value, json};
@@ -140,12 +140,12 @@ pub fn ledger(look: &Look) -> Option<Value> {
             "summed": letters(&row.summed), "any": row.any, "vanishes": row.vanishes })
     });
     let marks = ledger.marks.iter().map(|mark| {
-        let outcome = match mark.outcome {
+        let outcome = match mark.outcome() {
             Outcome::Holds => "holds",
             Outcome::Fails => "fails",
             Outcome::Open => "undecided",
         };
-        json!({ "range": look.range(mark.sign), "outcome": outcome, "said": mark.said })
+        json!({ "range": look.range(mark.span), "outcome": outcome, "said": mark.said })
     });
     Some(json!({ "range": look.range(ledger.span), "text": ledger.text, "rows": rows.collect::<Vec<_>>(),
         "marks": marks.collect::<Vec<_>>() }))

@@ -1,6 +1,6 @@
 //! For tests: small documents whose cursor is the sign `‸`, twice for a selection.
 
-#![allow(clippy::panic)]
+#![allow(clippy::unwrap_used, clippy::expect_used, clippy::panic, clippy::indexing_slicing)]
 
 use std::sync::Arc;
 
@@ -10,7 +10,7 @@ use indexwise_grammar::span::Span;
 use crate::paper::{Cancel, DocumentAnalysis, Paper, Settings, Source, View};
 
 /// The sign, right before the character that the cursor stands on.
-const CURSOR: char = '‸';
+pub(super) const CURSOR: char = '‸';
 
 /// A document with a selection in it.
 pub(super) struct Placed {
@@ -41,11 +41,40 @@ impl Placed {
     }
 }
 
+/// A view of one text.
 pub(super) fn view(text: &str, host: Host) -> View {
-    let source = Source { path: "sheet".into(), text: Arc::from(text), host };
-    View::of(&Paper { documents: vec![source], ..Paper::default() }, &Cancel::default())
+    View::of(&paper_of(&[(host, text)], &[]), &Cancel::default())
 }
 
 pub(super) fn analysis(view: &View) -> DocumentAnalysis {
     view.judge(&Settings::default(), &Cancel::default()).documents.remove(0)
+}
+
+/// A paper of documents and styles.
+pub(super) fn paper_of(documents: &[(Host, &str)], styles: &[&str]) -> Paper {
+    let source =
+        |number: usize, host: Host, text: &str| Source { path: format!("sheet-{number}"), text: Arc::from(text), host };
+    let documents = documents.iter().enumerate().map(|(number, (host, text))| source(number, *host, text));
+    let styles = styles.iter().enumerate().map(|(number, text)| source(number, Host::Latex, text));
+    Paper { documents: documents.collect(), styles: styles.collect(), ..Paper::default() }
+}
+
+/// A text without its cursor, and where the cursor stood.
+#[track_caller]
+pub(super) fn with_cursor(text: &str) -> (String, u32) {
+    let at = text.find(CURSOR).expect("a cursor");
+    (text.replace(CURSOR, ""), u32::try_from(at).unwrap())
+}
+
+/// A text with every span put into `⟦..⟧`.
+pub(super) fn marked(text: &str, spans: &[Span]) -> String {
+    let mut spans = spans.to_vec();
+    spans.sort_unstable();
+    let (mut out, mut done) = (String::new(), 0);
+    for span in spans {
+        out.push_str(&text[done..span.start as usize]);
+        out.push_str(&format!("⟦{}⟧", span.of(text)));
+        done = span.end as usize;
+    }
+    out + &text[done..]
 }

@@ -51,13 +51,13 @@ pub fn highlight(view: &View, document: usize, offset: u32) -> Vec<Highlight> {
 mod tests {
     #![allow(clippy::unwrap_used, clippy::expect_used, clippy::panic, clippy::indexing_slicing)]
     use super::*;
-    use crate::editing::trying::{marked, view_of, with_cursor};
+    use crate::editing::cursor::{marked, view, with_cursor};
     use indexwise_grammar::hosts::Host;
 
     #[track_caller]
     fn lights(host: Host, text: &str, want: &str) -> Vec<Highlight> {
         let (text, offset) = with_cursor(text);
-        let found = highlight(&view_of(host, &text), 0, offset);
+        let found = highlight(&view(&text, host), 0, offset);
         let spans: Vec<Span> = found.iter().map(|one| one.span).collect();
         assert_eq!(marked(&text, &spans), want);
         found
@@ -147,7 +147,7 @@ mod tests {
     #[test]
     fn nothing_lights_up_in_prose() {
         lights(Host::Markdown, "The ‸sheet $A_i = B_i$", "The sheet $A_i = B_i$");
-        assert!(highlight(&view_of(Host::Markdown, "$A_i$"), 3, 1).is_empty());
-        assert!(highlight(&view_of(Host::Markdown, "$A_i$"), 0, 99).is_empty());
+        assert!(highlight(&view("$A_i$", Host::Markdown), 3, 1).is_empty());
+        assert!(highlight(&view("$A_i$", Host::Markdown), 0, 99).is_empty());
     }
 }

@@ -3,8 +3,9 @@
 use indexwise_grammar::span::Span;
 
 use crate::conventions::prices::LevelHabit;
+use crate::finding::{JudgedStep, Outcome};
 use crate::ledger::{Judged, shown};
-use crate::paper::{Asked, DocumentAnalysis, Outcome, StepMark, View};
+use crate::paper::{Asked, DocumentAnalysis, View};
 
 /// A word that is shown in the text and is not part of it.
 #[derive(Clone, Debug, PartialEq, Eq)]
@@ -21,7 +22,7 @@ pub struct InlayHint {
 pub fn hints(view: &View, document: usize, within: Span, analysis: &DocumentAnalysis) -> Vec<InlayHint> {
     let mut out: Vec<InlayHint> = Vec::new();
     view.each_statement(document, within, |asked| out.extend(free_indices(&asked.judged(view.text(document)), asked)));
-    out.extend(analysis.marks.iter().map(verdict));
+    out.extend(analysis.steps.iter().map(verdict));
     out.retain(|hint| within.start <= hint.at && hint.at <= within.end);
     out.sort_by_key(|hint| hint.at);
     out
@@ -49,13 +50,13 @@ fn free_indices(judged: &Judged<'_>, asked: &Asked<'_>) -> Option<InlayHint> {
 }
 
 /// The sign for a verdict.
-fn verdict(mark: &StepMark) -> InlayHint {
-    let text = match mark.outcome {
+fn verdict(mark: &JudgedStep) -> InlayHint {
+    let text = match mark.outcome() {
         Outcome::Holds => "✓",
         Outcome::Fails => "✗",
         Outcome::Open => "?",
     };
-    InlayHint { at: mark.sign.end, text: text.to_owned(), tooltip: mark.said.clone() }
+    InlayHint { at: mark.span.end, text: text.to_owned(), tooltip: mark.said.clone() }
 }
 
 #[cfg(test)]

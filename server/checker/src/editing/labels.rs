@@ -193,11 +193,11 @@ fn argument(after: &str) -> Option<(&str, usize)> {
 mod tests {
     #![allow(clippy::unwrap_used, clippy::expect_used, clippy::panic, clippy::indexing_slicing)]
     use super::*;
-    use crate::editing::trying::view_of;
+    use crate::editing::cursor::view;
 
     #[track_caller]
     fn finds(host: Host, text: &str, want: &[(&str, bool)]) {
-        let found = mentions(&view_of(host, text), 0);
+        let found = mentions(&view(text, host), 0);
         let found: Vec<(&str, bool)> = found.iter().map(|one| (one.span.of(text), one.given)).collect();
         assert_eq!(found, want, "{text}");
     }

@@ -2,9 +2,9 @@
 
 use indexwise_grammar::span::Span;
 
-use crate::finding::LedgerIndex;
+use crate::finding::{JudgedStep, LedgerIndex};
 use crate::ledger::{Judged, TermRow, shown, side_title};
-use crate::paper::{Asked, DocumentAnalysis, StepMark, View};
+use crate::paper::{Asked, DocumentAnalysis, View};
 use crate::terms::{Flattened, Product};
 
 /// A statement with its ledger.
@@ -17,7 +17,7 @@ pub struct LedgerView {
     /// Each side, and where a side has several terms each of these after it.
     pub rows: Vec<ViewRow>,
     /// The verdicts at its relations, in order.
-    pub marks: Vec<StepMark>,
+    pub marks: Vec<JudgedStep>,
 }
 
 /// One side or term.
@@ -41,8 +41,8 @@ pub struct ViewRow {
 pub fn ledger_at(view: &View, document: usize, offset: u32, analysis: Option<&DocumentAnalysis>) -> Option<LedgerView> {
     let text = view.text(document);
     let mut ledger = view.statement_at(document, offset, |asked| ledger(asked, text)).ok()?;
-    let marks = analysis.map_or(&[][..], |analysis| &analysis.marks);
-    ledger.marks = marks.iter().filter(|mark| ledger.span.holds(mark.sign)).cloned().collect();
+    let marks = analysis.map_or(&[][..], |analysis| &analysis.steps);
+    ledger.marks = marks.iter().filter(|mark| ledger.span.holds(mark.span)).cloned().collect();
     Some(ledger)
 }
 
@@ -174,7 +174,7 @@ mod tests {
                 "side 3:  | i, j",
             ],
         );
-        let signs: Vec<_> = ledger.unwrap().marks.iter().map(|mark| mark.outcome).collect();
-        assert!(signs.contains(&crate::paper::Outcome::Holds), "{signs:?}");
+        let signs: Vec<_> = ledger.unwrap().marks.iter().map(|mark| mark.outcome()).collect();
+        assert!(signs.contains(&crate::finding::Outcome::Holds), "{signs:?}");
     }
 }

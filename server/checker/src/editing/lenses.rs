@@ -3,7 +3,8 @@
 use indexwise_grammar::span::Span;
 use indexwise_grammar::tree::RelationKind;
 
-use crate::paper::{DocumentAnalysis, Outcome, View};
+use crate::finding::Outcome;
+use crate::paper::{DocumentAnalysis, View};
 
 /// What is shown above a formula.
 #[derive(Clone, Debug, PartialEq, Eq)]
@@ -23,17 +24,17 @@ pub(super) const SIDES: usize = 3;
 /// The lenses of a document in the order of its formulas.
 pub fn lenses(view: &View, document: usize, analysis: &DocumentAnalysis) -> Vec<Lens> {
     let chains: Vec<usize> = view.chains(document);
-    let mut marks = analysis.marks.iter().peekable();
+    let mut marks = analysis.steps.iter().peekable();
     let mut out = Vec::new();
     for (number, formula) in view.formulas(document).iter().enumerate() {
         let mut counts = [0_usize; 3];
-        while let Some(mark) = marks.next_if(|mark| mark.sign.start < formula.span.end) {
-            let at = match mark.outcome {
+        while let Some(mark) = marks.next_if(|mark| mark.span.start < formula.span.end) {
+            let at = match mark.outcome() {
                 Outcome::Holds => 0,
                 Outcome::Fails => 1,
                 Outcome::Open => 2,
             };
-            if let Some(count) = counts.get_mut(at).filter(|_| formula.span.holds(mark.sign)) {
+            if let Some(count) = counts.get_mut(at).filter(|_| formula.span.holds(mark.span)) {
                 *count += 1;
             }
         }

@@ -129,7 +129,7 @@ fn here(document: usize, spans: impl Iterator<Item = Span>) -> Vec<Location> {
 mod tests {
     #![allow(clippy::unwrap_used, clippy::expect_used, clippy::panic, clippy::indexing_slicing)]
     use super::*;
-    use crate::editing::trying::{paper_of, with_cursor};
+    use crate::editing::cursor::{paper_of, with_cursor};
     use crate::paper::Cancel;
     use indexwise_grammar::hosts::Host;
 

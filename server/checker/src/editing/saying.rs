@@ -201,7 +201,7 @@ mod tests {
 
     use super::*;
     use crate::editing::cursor::view;
-    use crate::paper::edited;
+    use crate::finding::edited;
 
     const SENTENCE: &str = "check this";
 

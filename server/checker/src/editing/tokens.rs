@@ -101,13 +101,13 @@ fn on_lines(token: Token, text: &str) -> Vec<Token> {
 mod tests {
     #![allow(clippy::unwrap_used, clippy::expect_used, clippy::panic, clippy::indexing_slicing)]
     use super::*;
-    use crate::editing::trying::view_of;
+    use crate::editing::cursor::view;
     use indexwise_grammar::hosts::Host;
 
     /// Every token of a text as `kind:letters`.
     #[track_caller]
     fn reads(host: Host, text: &str, want: &str) {
-        let view = view_of(host, text);
+        let view = view(text, host);
         let all = tokens(&view, 0, Span::new(0, text.len()));
         let word = |token: &Token| {
             let kind = match token.kind {
@@ -178,7 +178,7 @@ mod tests {
     #[test]
     fn only_what_touches_the_stretch() {
         let text = "$A_i = B_i$ and $C_j = D_j$";
-        let view = view_of(Host::Markdown, text);
+        let view = view(text, Host::Markdown);
         let second: Vec<&str> = tokens(&view, 0, Span::new(16, 20)).iter().map(|token| token.span.of(text)).collect();
         assert_eq!(second, ["C", "j"]);
         assert!(tokens(&view, 7, Span::new(0, 5)).is_empty());

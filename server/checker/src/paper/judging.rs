@@ -122,7 +122,7 @@ pub(super) fn judge_document(
         unknown_macros: formulas.iter().zip(&indexed).filter(|(f, flag)| **flag && !f.unknown.is_empty()).count(),
         steps: steps.as_ref().map(|steps| steps.counts).unwrap_or_default(),
     };
-    let (mut steps, marks) = steps.map(|steps| (steps.judged, steps.marks)).unwrap_or_default();
+    let mut steps = steps.map(|steps| steps.judged).unwrap_or_default();
     steps.sort_by_key(|step| step.span.start);
     let read = &document.read;
     let mut missing = missing;
@@ -130,7 +130,7 @@ pub(super) fn judge_document(
     missing.extend(about);
     let findings = directed(&read.declared, read.host, formulas, findings, missing);
     let symbols = symbols.map(|symbols| symbols.finish(&prices.declared.meanings, customs));
-    DocumentAnalysis { statistics, findings, symbols, marks, steps }
+    DocumentAnalysis { statistics, findings, symbols, steps }
 }
 
 impl<'d> Judge<'d> {

@@ -14,7 +14,7 @@ use indexwise_grammar::tree::{Formula, Statement};
 
 use crate::conventions::declared::Declared;
 use crate::conventions::prices::Prices;
-use crate::finding::{Edit, Finding, Severity};
+use crate::finding::{Edit, Finding, Severity, edited};
 use crate::ledger::Judged;
 use crate::reading::{self, Reading};
 use crate::sketch::Sketch;
@@ -223,17 +223,4 @@ fn judged(statement: &Statement, formula: &Formula, text: &str, prices: Prices<'
     let reading = reading::read(&sketch, sketch.units.iter().map(|unit| prices.score(unit)).collect());
     let in_terms = |judged: &Judged<'_>| found_in_terms(statement, judged, customs);
     found_in((text, formula), Cow::Owned(sketch), reading, prices, in_terms).0
-}
-
-/// A text with edits made, which are in order and apart; else nothing.
-pub(crate) fn edited(text: &str, edits: &[Edit]) -> Option<String> {
-    let (mut out, mut at) = (String::with_capacity(text.len()), 0);
-    for edit in edits {
-        out.push_str(text.get(at..edit.span.start as usize)?);
-        text.get(edit.span.range())?;
-        out.push_str(&edit.text);
-        at = edit.span.end as usize;
-    }
-    out.push_str(text.get(at..)?);
-    Some(out)
 }

@@ -16,7 +16,7 @@ use rustc_hash::{FxHashSet, FxHasher};
 
 use crate::conventions::meanings::Meanings;
 use crate::finding::{Finding, Fix, JudgedStep, Severity, StepVerdict};
-use crate::paper::{Cancel, Outcome, StepMark, Steps};
+use crate::paper::{Cancel, Steps};
 use crate::rules;
 use crate::terms::Eyes;
 
@@ -54,8 +54,6 @@ pub struct StepJudge<'m> {
     conditioned: FxHashSet<CompactString>,
     /// The verdicts so far, counted and one by one.
     pub counts: Steps,
-    /// The same one by one, in the order of the text.
-    pub marks: Vec<StepMark>,
     /// Each step with its verdict, whether it is told or not.
     pub judged: Vec<JudgedStep>,
     /// Whether the last statement had steps and all of them hold.
@@ -99,7 +97,6 @@ impl<'m> StepJudge<'m> {
             court: Court::new(verdicts, cancel),
             conditioned: FxHashSet::default(),
             counts: Steps::default(),
-            marks: Vec::new(),
             judged: Vec::new(),
             all_hold: false,
             law: false,
@@ -129,13 +126,11 @@ impl<'m> StepJudge<'m> {
         for step in &steps {
             self.law = false;
             self.surroundings.world.neglected = step.neglected;
-            let before = self.counts;
             let reason = granted.reason(step, &steps);
             self.surroundings.world.givens = granted.all.iter().chain(reason).map(|given| given.0.clone()).collect();
             let finding = self.step(step, source.text, asked);
-            self.mark(step, before, finding.as_ref());
-            if let Some(verdict) = finding.as_ref().and_then(|finding| finding.verdict.clone()) {
-                self.judged.push(JudgedStep { span: step.sign, verdict });
+            if let Some((verdict, said)) = finding.as_ref().and_then(|it| Some((it.verdict.clone()?, &it.message))) {
+                self.judged.push(JudgedStep { span: step.sign, verdict, said: said.clone() });
             }
             told.push(finding);
             // A law is a condition for what comes after it.
@@ -167,21 +162,6 @@ impl<'m> StepJudge<'m> {
         self.surroundings.world.givens.clear();
         self.surroundings.world.neglected = None;
         found
-    }
-
-    /// Notes a verdict at its sign.
-    fn mark(&mut self, step: &Step, before: Steps, finding: Option<&Finding>) {
-        let outcome = match self.counts {
-            now if now.holds > before.holds => Outcome::Holds,
-            now if now.fails > before.fails => Outcome::Fails,
-            _ => Outcome::Open,
-        };
-        let verdict = self.judged.last().filter(|judged| judged.span == step.sign).map(|judged| &judged.verdict);
-        let said = match finding {
-            Some(finding) => finding.message.clone(),
-            None => verdict.map(held).unwrap_or_default(),
-        };
-        self.marks.push(StepMark { sign: step.sign, outcome, said });
     }
 
     /// A statement as something given: each of its relations.
@@ -317,7 +297,8 @@ impl<'m> StepJudge<'m> {
             // The value of a scalar tells the dimension that the author means.
             self.counts.holds += 1;
             let verdict = StepVerdict { verdict: "holds", counterexample: None, ..self.view(step, first) };
-            self.judged.push(JudgedStep { span: step.sign, verdict });
+            let said = held(&verdict);
+            self.judged.push(JudgedStep { span: step.sign, verdict, said });
             return None;
         }
         self.finding(step, first)
@@ -415,7 +396,8 @@ impl<'m> StepJudge<'m> {
         match verdict {
             Verdict::Holds { .. } => {
                 self.counts.holds += 1;
-                self.judged.push(JudgedStep { span: step.sign, verdict: view });
+                let said = held(&view);
+                self.judged.push(JudgedStep { span: step.sign, verdict: view, said });
                 None
             }
             Verdict::Fails(found) => {

@@ -7,7 +7,7 @@ mod matrices;
 
 use indexwise_grammar::hosts::Host;
 
-use crate::finding::{Finding, Fix};
+use crate::finding::{Finding, Fix, edited};
 use crate::paper::{Cancel, Paper, Settings, Source, check};
 
 /// Declarations, and what is claimed under them.
@@ -61,11 +61,7 @@ fn findings_in(host: Host, text: &str) -> Vec<Finding> {
 }
 
 fn applied(text: &str, fix: &Fix) -> String {
-    let mut text = text.to_owned();
-    for edit in fix.edits.iter().rev() {
-        text.replace_range(edit.span.start as usize..edit.span.end as usize, &edit.text);
-    }
-    text
+    edited(text, &fix.edits).unwrap_or_default()
 }
 
 fn bare(text: &str) -> String {

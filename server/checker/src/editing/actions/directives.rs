@@ -34,7 +34,7 @@ pub(super) fn holds_with(view: &View, document: usize, finding: &Finding) -> Opt
 pub(super) fn check(view: &View, document: usize, at: u32, analysis: &DocumentAnalysis) -> Option<Action> {
     let number = view.formula_number(document, at)?;
     let formula = view.formulas(document).get(number)?;
-    let judged = analysis.marks.iter().any(|mark| formula.span.holds(mark.sign));
+    let judged = analysis.steps.iter().any(|mark| formula.span.holds(mark.span));
     if judged || !view.checks_of(document, number).is_empty() {
         return None;
     }

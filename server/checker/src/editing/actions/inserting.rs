@@ -15,9 +15,9 @@ use indexwise_grammar::write::{Dialect, write_statement, write_sum};
 use crate::balance::{self, Event};
 use crate::changes::Change;
 use crate::editing::letters::fresh_letters;
-use crate::finding::Edit;
+use crate::finding::{Edit, edited};
 use crate::ledger::Judged;
-use crate::paper::{View, edited};
+use crate::paper::View;
 
 use super::{Action, ActionKind};
 use spot::Spot;

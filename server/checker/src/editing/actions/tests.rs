@@ -6,7 +6,7 @@ use indexwise_grammar::hosts::Host;
 
 use super::*;
 use crate::editing::cursor::Placed;
-use crate::paper::edited;
+use crate::finding::edited;
 
 /// All actions with the texts that they leave.
 #[track_caller]

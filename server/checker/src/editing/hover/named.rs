@@ -6,9 +6,9 @@ use indexwise_grammar::hosts::Host;
 use indexwise_grammar::macros::{Macro, Parameter};
 use indexwise_grammar::span::Span;
 
-use crate::finding::Counterexample;
+use crate::finding::{Counterexample, Outcome};
 use crate::ledger::shown;
-use crate::paper::{DocumentAnalysis, Outcome, View};
+use crate::paper::{DocumentAnalysis, View};
 
 use crate::editing::commands::definitions;
 use crate::editing::labels::{Mention, mentions};
@@ -22,9 +22,9 @@ const VALUES_SHOWN: usize = 12;
 /// The verdict about the step at a relation sign.
 pub(super) fn relation(analysis: &DocumentAnalysis, offset: u32) -> Option<Hover> {
     let holds = |span: Span| span.start <= offset && offset < span.end;
-    let mark = analysis.marks.iter().find(|mark| holds(mark.sign))?;
-    let finding = analysis.findings.iter().find(|one| one.span == mark.sign && one.verdict.is_some());
-    let word = match mark.outcome {
+    let mark = analysis.steps.iter().find(|mark| holds(mark.span))?;
+    let finding = analysis.findings.iter().find(|one| one.span == mark.span && one.verdict.is_some());
+    let word = match mark.outcome() {
         Outcome::Holds => "verified",
         Outcome::Fails => "fails",
         Outcome::Open => "open",
@@ -41,7 +41,7 @@ pub(super) fn relation(analysis: &DocumentAnalysis, offset: u32) -> Option<Hover
         }
         lines.extend(verdict.counterexample.as_ref().map(counterexample));
     }
-    Some(Hover { span: mark.sign, markdown: lines.join("\n\n") })
+    Some(Hover { span: mark.span, markdown: lines.join("\n\n") })
 }
 
 fn numbers(numbers: &[usize]) -> String {

@@ -5,13 +5,13 @@
 use indexwise_grammar::hosts::Host;
 
 use super::*;
-use crate::editing::trying::{paper_of, view_of, with_cursor};
+use crate::editing::cursor::{paper_of, view, with_cursor};
 use crate::paper::{Cancel, Settings};
 
 /// The hover at the cursor of a text that is judged, with what it is about.
 fn asked(host: Host, text: &str) -> Option<(String, String)> {
     let (text, offset) = with_cursor(text);
-    let view = view_of(host, &text);
+    let view = view(&text, host);
     let analysis = view.judge(&Settings::default(), &Cancel::default());
     hover(&view, 0, offset, analysis.documents.first()).map(|one| (one.span.of(&text).to_owned(), one.markdown))
 }
@@ -31,7 +31,7 @@ const SAID: &str = "<!-- indexwise: i j k l run from 1 to 3; F_{ij} is antisymme
 fn nothing_is_said_in_prose() {
     assert_eq!(asked(Host::Markdown, "The ‸sheet $A_i = B_i$"), None);
     assert_eq!(asked(Host::Markdown, "$A_i ‸+ B_i$"), None);
-    assert!(hover(&view_of(Host::Markdown, "$A_i$"), 3, 1, None).is_none());
+    assert!(hover(&view("$A_i$", Host::Markdown), 3, 1, None).is_none());
 }
 
 #[test]

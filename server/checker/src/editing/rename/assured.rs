@@ -10,7 +10,7 @@ use compact_str::CompactString;
 use indexwise_grammar::span::Span;
 
 use crate::balance::Odd;
-use crate::finding::Edit;
+use crate::finding::{Edit, edited};
 use crate::paper::{Cancel, View};
 
 use crate::editing::indices::{Index, indices};
@@ -110,16 +110,4 @@ fn same(before: &[Kept], after: &[Kept], renamed: Option<(&CompactString, &Compa
                 && one.indices == two.indices
                 && two.odd.iter().all(|(letter, _)| known(one, letter))
         })
-}
-
-/// A text with edits made, which are in order and apart.
-fn edited(text: &str, edits: &[Edit]) -> Option<String> {
-    let (mut out, mut done) = (String::with_capacity(text.len()), 0);
-    for edit in edits {
-        out.push_str(text.get(done..edit.span.start as usize)?);
-        out.push_str(&edit.text);
-        done = edit.span.end as usize;
-    }
-    out.push_str(text.get(done..)?);
-    Some(out)
 }

@@ -3,7 +3,8 @@
 #![allow(clippy::unwrap_used, clippy::expect_used, clippy::panic, clippy::indexing_slicing)]
 
 use super::*;
-use crate::editing::trying::{edited, paper_of, view_of, with_cursor};
+use crate::editing::cursor::{paper_of, view, with_cursor};
+use crate::finding::edited;
 use crate::paper::{Cancel, Settings, StepMode};
 
 fn findings(view: &View) -> Vec<(&'static str, usize)> {
@@ -23,17 +24,17 @@ fn findings(view: &View) -> Vec<(&'static str, usize)> {
 #[track_caller]
 fn gives(host: Host, text: &str, to: &str, want: &str) {
     let (text, offset) = with_cursor(text);
-    let view = view_of(host, &text);
-    let edits = rename(&view, 0, offset, to).unwrap_or_else(|reason| panic!("{text}: {reason}"));
-    let after = edits.iter().fold(text.clone(), |text, (_, own)| edited(&text, own));
+    let before = view(&text, host);
+    let edits = rename(&before, 0, offset, to).unwrap_or_else(|reason| panic!("{text}: {reason}"));
+    let after = edits.iter().fold(text.clone(), |text, (_, own)| edited(&text, own).unwrap());
     assert_eq!(after, want);
-    assert_eq!(findings(&view_of(host, &after)), findings(&view), "{after}");
+    assert_eq!(findings(&view(&after, host)), findings(&before), "{after}");
 }
 
 #[track_caller]
 fn refuses(host: Host, text: &str, to: &str, want: &str) {
     let (text, offset) = with_cursor(text);
-    let edits = rename(&view_of(host, &text), 0, offset, to);
+    let edits = rename(&view(&text, host), 0, offset, to);
     assert_eq!(edits, Err(want.to_owned()), "{text}");
 }
 
@@ -197,7 +198,7 @@ fn gives_in_all(texts: &[&str], to: &str, want: &[&str]) {
     let edits = rename(&view, 0, offset, to).unwrap_or_else(|reason| panic!("{texts:?}: {reason}"));
     let mut after: Vec<String> = all.iter().map(|text| (*text).to_owned()).collect();
     for (number, own) in edits {
-        after[number] = edited(&after[number], &own);
+        after[number] = edited(&after[number], &own).unwrap();
     }
     assert_eq!(after, want);
 }
@@ -263,8 +264,8 @@ fn labels_in_all_documents() {
 #[test]
 fn what_may_be_renamed_is_told_before() {
     let (text, offset) = with_cursor("$A_{\\‸mu} B^\\mu = q$");
-    let found = prepare_rename(&view_of(Host::Latex, &text), 0, offset).unwrap();
+    let found = prepare_rename(&view(&text, Host::Latex), 0, offset).unwrap();
     assert_eq!((found.text.as_str(), found.span.of(&text)), ("\\mu", "\\mu"));
     let (text, offset) = with_cursor("The ‸sheet");
-    assert!(prepare_rename(&view_of(Host::Latex, &text), 0, offset).is_err());
+    assert!(prepare_rename(&view(&text, Host::Latex), 0, offset).is_err());
 }
